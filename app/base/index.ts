@@ -1,0 +1,6 @@
+export * from "./issue.ts";
+export * from "./note.ts";
+export * from "./quantity.ts";
+export * from "./estimates.ts";
+export * from "./random.ts";
+export * from "./watch.ts";
