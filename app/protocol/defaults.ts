@@ -1,0 +1,48 @@
+import { PROTOCOL_SCHEMA, type Protocol } from "./protocol-schema.ts";
+
+/** What holds where neither the user nor a preset says otherwise (DEVELOPERS.md gives the reasons). */
+export const DEFAULT_PROTOCOL: Protocol = {
+  schema: PROTOCOL_SCHEMA,
+  table: { encoding: null, delimiter: null, decimal: null, header_line: null },
+  axis: {
+    column: null,
+    unit: null,
+    medium: null,
+    air: { temperature_C: 15, pressure_Pa: 101325, humidity: 0, co2_ppm: 450 },
+    offset_sigma_eV: 0,
+    scale_sigma: 0,
+  },
+  signal: {
+    column: null,
+    quantity: null,
+    unit: null,
+    sigma_column: null,
+    reference_column: null,
+    dark_column: null,
+    thickness_um: null,
+    surface: { model: "none", reflectance: null, index: null, surround_index: 1 },
+  },
+  window_eV: null,
+  mask_eV: [],
+  noise: { sigma: null },
+  material: {
+    preset: null,
+    dimension: 3,
+    envelope: "S",
+    first_n: null,
+    gap_eV: null,
+    rydberg_eV: null,
+    defect0: null,
+    permittivity: null,
+    reduced_mass: null,
+    bohr_radius_nm: null,
+    index: null,
+  },
+  lines: { n: "auto", max_n: 40, slit_fwhm_eV: null, asymmetry: "shared", domain: "auto" },
+  tail: { model: "law", cutoff_n: null },
+  series: { defect: "constant", mode: "free", fit_n: "auto" },
+  width: { exponent: "free", base: "n", floor_kind: "lorentzian" },
+  strength: { law: "cubic", base: "n" },
+  background: [{ term: "polynomial", order: 2 }],
+  uncertainty: { level: 0.6827, scale_by_residuals: false, profile: true, systematic: true, seed: 1 },
+};

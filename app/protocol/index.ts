@@ -1,0 +1,13 @@
+export * from "./protocol-schema.ts";
+export * from "./result-schema.ts";
+export { DEFAULT_PROTOCOL } from "./defaults.ts";
+export { PRESETS, findPreset, type Preset } from "./presets.ts";
+export {
+  resolveProtocol,
+  wordProtocolIssue,
+  mergeChoices,
+  protocolJsonSchema,
+  type ProtocolIssue,
+} from "./resolve-protocol.ts";
+export { choicesFromSetting, composeChoices } from "./set-key.ts";
+export { nearestWord } from "./nearest-word.ts";

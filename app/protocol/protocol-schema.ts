@@ -1,0 +1,131 @@
+import { z } from "zod";
+
+// The page's content policy forbids code made from strings, which zod would otherwise use for speed.
+z.config({ jitless: true });
+
+export const PROTOCOL_SCHEMA = "rungline-protocol/1";
+
+const positive = z.number().positive();
+const interval = z
+  .tuple([z.number(), z.number()])
+  .refine(([low, high]) => low < high, "low end above high end");
+/** A column by its 1-based number or by its header name. */
+const column = z.union([z.int().positive(), z.string().min(1)]).nullable();
+
+export const backgroundTermSchema = z.discriminatedUnion("term", [
+  z.strictObject({ term: z.literal("polynomial"), order: z.int().min(0).max(8) }),
+  z.strictObject({ term: z.literal("square-root"), onset_eV: positive }),
+  z.strictObject({ term: z.literal("urbach"), energy_eV: positive }),
+  z.strictObject({
+    term: z.literal("measured"),
+    energy_eV: z.array(z.number()).min(2),
+    value: z.array(z.number()).min(2),
+  }),
+]);
+
+/**
+ * Every choice that turns a file into a result. Energies in eV, thickness in um. `null` means "not said": the
+ * reading or the analysis decides, and the result says what it decided in a note.
+ */
+export const protocolSchema = z.strictObject({
+  schema: z.literal(PROTOCOL_SCHEMA),
+  table: z.strictObject({
+    encoding: z.enum(["utf-8", "utf-16le", "utf-16be", "windows-1252", "iso-8859-1"]).nullable(),
+    delimiter: z.enum([",", ";", "\t", " "]).nullable(),
+    decimal: z.enum([".", ","]).nullable(),
+    header_line: z.int().min(0).nullable(),
+  }),
+  axis: z.strictObject({
+    column,
+    unit: z.enum(["eV", "meV", "nm", "Angstrom", "um", "cm-1", "THz"]).nullable(),
+    medium: z.enum(["air", "vacuum"]).nullable(),
+    air: z.strictObject({
+      temperature_C: z.number().min(-40).max(100),
+      pressure_Pa: z.number().min(0).max(140000),
+      humidity: z.number().min(0).max(1),
+      co2_ppm: z.number().min(0).max(2000),
+    }),
+    offset_sigma_eV: z.number().min(0),
+    scale_sigma: z.number().min(0),
+  }),
+  signal: z.strictObject({
+    column,
+    quantity: z
+      .enum(["transmittance", "absorbance", "optical-density", "optical-depth", "alpha", "counts"])
+      .nullable(),
+    /** The unit of the column where the header does not tell: fraction or percent of T; 1/cm, 1/mm, 1/um, 1/m of alpha. */
+    unit: z.enum(["fraction", "percent", "1/cm", "1/mm", "1/um", "1/m"]).nullable(),
+    sigma_column: column,
+    reference_column: column,
+    dark_column: column,
+    thickness_um: positive.nullable(),
+    surface: z.strictObject({
+      model: z.enum(["none", "single", "all"]),
+      reflectance: z.number().min(0).lt(1).nullable(),
+      index: positive.nullable(),
+      surround_index: positive,
+    }),
+  }),
+  window_eV: interval.nullable(),
+  mask_eV: z.array(interval),
+  noise: z.strictObject({ sigma: positive.nullable() }),
+  material: z.strictObject({
+    preset: z.string().nullable(),
+    dimension: z.number().min(1.5).max(3),
+    envelope: z.enum(["S", "P"]),
+    first_n: z.int().min(1).max(20).nullable(),
+    gap_eV: positive.nullable(),
+    rydberg_eV: positive.nullable(),
+    defect0: z.number().min(-3).max(3).nullable(),
+    permittivity: positive.nullable(),
+    reduced_mass: positive.nullable(),
+    bohr_radius_nm: positive.nullable(),
+    index: positive.nullable(),
+  }),
+  lines: z.strictObject({
+    n: z.union([z.literal("auto"), z.array(z.int().min(1).max(99)).min(1)]),
+    max_n: z.int().min(2).max(60),
+    slit_fwhm_eV: positive.nullable(),
+    asymmetry: z.enum(["shared", "free", "zero"]),
+    domain: z.enum(["auto", "alpha", "transmittance"]),
+  }),
+  tail: z.strictObject({
+    /** `law`: lines above the last resolved one and the continuum follow the laws; `none`: left out. */
+    model: z.enum(["law", "none"]),
+    /** Highest n of the tail; null: as many as the width law lets stand apart from the gap. */
+    cutoff_n: z.int().min(2).max(200).nullable(),
+  }),
+  series: z.strictObject({
+    defect: z.enum(["none", "constant", "ritz"]),
+    mode: z.enum(["free", "tied"]),
+    fit_n: z.union([z.literal("auto"), z.tuple([z.int().min(1), z.int().min(1)])]),
+  }),
+  width: z.strictObject({
+    exponent: z.union([z.number().min(0).max(8), z.literal("free")]),
+    base: z.enum(["n", "n-delta", "p-envelope"]),
+    floor_kind: z.enum(["lorentzian", "gaussian", "none"]),
+  }),
+  strength: z.strictObject({
+    law: z.enum(["cubic", "p-envelope", "sheet"]),
+    base: z.enum(["n", "n-delta"]),
+  }),
+  background: z.array(backgroundTermSchema),
+  uncertainty: z.strictObject({
+    level: z.number().gt(0).lt(1),
+    scale_by_residuals: z.boolean(),
+    profile: z.boolean(),
+    systematic: z.boolean(),
+    seed: z.int().min(0),
+  }),
+});
+
+export type Protocol = z.output<typeof protocolSchema>;
+export type BackgroundTerm = z.output<typeof backgroundTermSchema>;
+
+type PartialDeep<T> = T extends readonly unknown[]
+  ? T
+  : T extends object
+    ? { [K in keyof T]?: PartialDeep<T[K]> }
+    : T;
+/** What a user writes: any part of a protocol; the rest comes from the preset and the defaults. */
+export type ProtocolInput = PartialDeep<Protocol>;
