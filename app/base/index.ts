@@ -4,3 +4,4 @@ export * from "./quantity.ts";
 export * from "./estimates.ts";
 export * from "./random.ts";
 export * from "./watch.ts";
+export { sha256 } from "./sha256.ts";
