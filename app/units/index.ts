@@ -1,0 +1,4 @@
+export * from "./constants.ts";
+export * from "./air-index.ts";
+export * from "./light-axis.ts";
+export * from "./transmission.ts";
