@@ -1,0 +1,25 @@
+import { readdir, readFile, stat } from "node:fs/promises";
+import { basename, extname, join } from "node:path";
+import type { NamedBytes } from "../../app/tasks/index.ts";
+
+/** What is taken from a folder: its own non-hidden files with these endings, no subfolders. */
+export const SPECTRUM_ENDINGS: readonly string[] = ["csv", "tsv", "txt", "dat", "asc", "jdx"];
+
+/** Paths to files with their bytes; a folder stands for the spectra in it, in the order of their names. */
+export async function readNamedFiles(paths: readonly string[]): Promise<readonly NamedBytes[]> {
+  const files: NamedBytes[] = [];
+  for (const path of paths) {
+    if ((await stat(path)).isDirectory()) {
+      const names = (await readdir(path, { withFileTypes: true }))
+        .filter((entry) => entry.isFile() && !entry.name.startsWith(".") && isSpectrumName(entry.name))
+        .map((entry) => entry.name)
+        .sort();
+      for (const name of names) files.push({ name, bytes: await readFile(join(path, name)) });
+    } else files.push({ name: basename(path), bytes: await readFile(path) });
+  }
+  return files;
+}
+
+function isSpectrumName(name: string): boolean {
+  return SPECTRUM_ENDINGS.includes(extname(name).slice(1).toLowerCase());
+}
