@@ -1,0 +1,157 @@
+import { choleskyInto, backSubstitute, forwardSubstitute } from "./cholesky.ts";
+import { gramMatrix, residualOf, sumOfSquares, transposedTimes } from "./gram.ts";
+import { pivotedQr } from "./pivotedQr.ts";
+import { RowBlockTriangle } from "./rowBlockTriangle.ts";
+
+/** Columns of unit length count as dependent when less than this part of one stands free of the others. */
+export const RANK_TOLERANCE = 1e-13;
+
+/**
+ * Smallest squared sine between columns for which the normal equations are still used. With one correction by the
+ * true residual the coefficients then keep an error of about eps / sqrt(1e-8), that of an orthogonal solution.
+ */
+const NORMAL_LIMIT = 1e-8;
+
+/** Below this much work the orthogonal path costs nothing worth saving. */
+const SMALL_WORK = 20_000;
+
+/**
+ * What      min over c of |t - Phi c|: coefficients and residual, for one matrix after another of the same shape.
+ *           Normal equations of unit-length columns by Cholesky where the columns are well apart, else QR by row
+ *           blocks with column pivoting and rank detection (dependent columns get the coefficient 0); both followed
+ *           by a correction with the true residual (corrected semi-normal equations).
+ * Shapes    Phi (rows x k, column-major, leading dimension ld), t (rows), c (k), residual (rows).
+ * Units     weighted: Phi and t over sigma.
+ * Domain    finite numbers; k may be 0.
+ * Accuracy  tests/reference/strd-linear.test.ts lists the digits on certified problems.
+ * Source    Bjorck, Numerical Methods for Least Squares Problems (1996), 6.6.5 (corrected semi-normal equations).
+ */
+export class LinearStage {
+  readonly k: number;
+  readonly ld: number;
+  readonly rows: number;
+  /** True after a solve that used the normal equations: `factor` and `scale` then hold their Cholesky factor. */
+  normal = false;
+  rank = 0;
+  /** Cholesky factor of the Gram matrix of unit-length columns; column j of Phi times scale[j] has unit length. */
+  readonly factor: Float64Array;
+  readonly scale: Float64Array;
+  private readonly orthogonalOnly: boolean;
+  private readonly gram: Float64Array;
+  private readonly work: Float64Array;
+  private readonly correction: Float64Array;
+  private readonly triangle: RowBlockTriangle;
+  private readonly small: Float64Array;
+  private readonly permutation: Int32Array;
+
+  constructor(rows: number, k: number, ld: number, orthogonalOnly = false) {
+    this.rows = rows;
+    this.k = k;
+    this.ld = ld;
+    this.orthogonalOnly = orthogonalOnly || rows * k < SMALL_WORK;
+    this.factor = new Float64Array(k * k);
+    this.scale = new Float64Array(k);
+    this.gram = new Float64Array(k * k);
+    this.work = new Float64Array(k + 1);
+    this.correction = new Float64Array(k);
+    this.triangle = new RowBlockTriangle(k + 1);
+    this.small = new Float64Array((k + 1) * (k + 1));
+    this.permutation = new Int32Array(k + 1);
+  }
+
+  /** Writes c and the residual; returns the residual's sum of squares. */
+  solve(phi: Float64Array, target: Float64Array, c: Float64Array, residual: Float64Array): number {
+    const { k, ld, rows } = this;
+    if (k === 0) {
+      for (let i = 0; i < rows; i++) residual[i] = target[i]!;
+      this.normal = true;
+      return sumOfSquares(residual, rows);
+    }
+    this.normal = !this.orthogonalOnly && this.factorNormal(phi);
+    c.fill(0, 0, k);
+    if (this.normal) {
+      this.rank = k;
+      this.correct(phi, target, c);
+    } else {
+      this.factorOrthogonal(phi, target, c);
+    }
+    residualOf(phi, k, ld, rows, c, target, residual);
+    this.correct(phi, residual, c);
+    residualOf(phi, k, ld, rows, c, target, residual);
+    return sumOfSquares(residual, rows);
+  }
+
+  /** c += (Phi'Phi)^-1 Phi' residual, by the factor at hand. */
+  private correct(phi: Float64Array, residual: Float64Array, c: Float64Array): void {
+    const { k, scale, correction, work, permutation, rank, small } = this;
+    transposedTimes(phi, k, this.ld, this.rows, residual, correction);
+    if (this.normal) {
+      for (let j = 0; j < k; j++) work[j] = correction[j]! * scale[j]!;
+      forwardSubstitute(this.factor, k, work);
+      backSubstitute(this.factor, k, work);
+      for (let j = 0; j < k; j++) c[j] = c[j]! + work[j]! * scale[j]!;
+      return;
+    }
+    const rows = k + 1;
+    for (let j = 0; j < rank; j++) {
+      let sum = correction[permutation[j]!]! * scale[permutation[j]!]!;
+      for (let i = 0; i < j; i++) sum -= small[j * rows + i]! * work[i]!;
+      work[j] = sum / small[j * rows + j]!;
+    }
+    this.backSolve();
+    for (let j = 0; j < rank; j++) {
+      const at = permutation[j]!;
+      c[at] = c[at]! + work[j]! * scale[at]!;
+    }
+  }
+
+  /** work := R^-1 work for the leading `rank` columns. */
+  private backSolve(): void {
+    const { small, work, rank } = this;
+    const rows = this.k + 1;
+    for (let j = rank - 1; j >= 0; j--) {
+      const value = work[j]! / small[j * rows + j]!;
+      work[j] = value;
+      for (let i = 0; i < j; i++) work[i] = work[i]! - small[j * rows + i]! * value;
+    }
+  }
+
+  private factorNormal(phi: Float64Array): boolean {
+    const { k, gram, scale } = this;
+    gramMatrix(phi, k, this.ld, this.rows, gram);
+    for (let j = 0; j < k; j++) {
+      const diagonal = gram[j * k + j]!;
+      if (!(diagonal > 0)) return false;
+      scale[j] = 1 / Math.sqrt(diagonal);
+    }
+    for (let i = 0; i < k; i++) {
+      for (let j = 0; j < k; j++) gram[i * k + j] = gram[i * k + j]! * scale[i]! * scale[j]!;
+    }
+    return choleskyInto(gram, k, this.factor) > NORMAL_LIMIT;
+  }
+
+  private factorOrthogonal(phi: Float64Array, target: Float64Array, c: Float64Array): void {
+    const { k, ld, rows, triangle, small, scale, permutation, work } = this;
+    const n = k + 1;
+    triangle.factor([phi, target], [k, 1], [ld, ld], rows);
+    for (let j = 0; j < n; j++) {
+      permutation[j] = j;
+      let norm = 0;
+      for (let i = 0; i < n; i++) {
+        const value = triangle.r[i * n + j]!;
+        small[j * n + i] = value;
+        norm += value * value;
+      }
+      if (j === k) break;
+      scale[j] = norm > 0 ? 1 / Math.sqrt(norm) : 1;
+      for (let i = 0; i < n; i++) small[j * n + i] = small[j * n + i]! * scale[j]!;
+    }
+    this.rank = pivotedQr(small, n, n, 0, 0, k, permutation, RANK_TOLERANCE);
+    for (let j = 0; j < this.rank; j++) work[j] = small[k * n + j]!;
+    this.backSolve();
+    for (let j = 0; j < this.rank; j++) {
+      const at = permutation[j]!;
+      c[at] = work[j]! * scale[at]!;
+    }
+  }
+}

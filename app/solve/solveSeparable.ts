@@ -1,0 +1,419 @@
+import { NO_WATCH } from "../base/index.ts";
+import { analyseJacobian } from "./covariance.ts";
+import { scaledNorm, StepFinder } from "./dampedStep.ts";
+import type { Steering } from "./dampedStep.ts";
+import { sumOfSquares } from "./gram.ts";
+import { LinearStage } from "./linearStage.ts";
+import { SteeringBuilder } from "./steering.ts";
+import type { SeparableProblem, SeparableSolution, SolveOptions, Termination } from "./types.ts";
+
+const EPSILON = 2 ** -52;
+
+/**
+ * A stop by `step` or `cost` is believed only when the undamped step, too, promises less than this part of the cost:
+ * a radius that has collapsed for another reason is not convergence.
+ */
+const HONEST_PROMISE = 1e-10;
+
+/**
+ * What      Separable least squares, min over theta and c of |W (y - offset(theta) - Phi(theta) c)|^2, by variable
+ *           projection: c is solved exactly for every theta, and the Levenberg-Marquardt step in theta uses the
+ *           projected derivative J = P D, P the projection off the columns of Phi (Kaufman's form).
+ * Shapes    SeparableProblem in types.ts; start (p).
+ * Units     those of the problem; weights are 1/sigma, so that chi2 and covariance need no further scale.
+ * Domain    a start outside the bounds is moved onto them; a model that is not finite at a trial counts as a refused
+ *           step, at the start as `notFinite`.
+ * Accuracy  tests/reference/strd.test.ts (certified problems), tests/app/solve/separable.test.ts (pulls).
+ * Source    Golub and Pereyra, SIAM J. Numer. Anal. 10, 413 (1973); Kaufman, BIT 15, 49 (1975); More (1978) for
+ *           scaling, radius and gain; the tests for stopping are More's with the step without limit added.
+ */
+export function solveSeparable(
+  problem: SeparableProblem,
+  start: Float64Array,
+  options: SolveOptions = {},
+): SeparableSolution {
+  const search = new Search(problem, start, options);
+  return search.run();
+}
+
+class Search {
+  private readonly problem: SeparableProblem;
+  private readonly p: number;
+  private readonly k: number;
+  /** rows in use, and the leading dimension of every weighted matrix */
+  private readonly m: number;
+  private readonly used: Int32Array;
+  private readonly weight: Float64Array;
+  private readonly weightedData: Float64Array;
+  private readonly lower: Float64Array;
+  private readonly upper: Float64Array;
+  private readonly options: SolveOptions;
+  private readonly maxIterations: number;
+  private readonly tolerance: { gradient: number; step: number; cost: number };
+
+  private readonly rawColumns: Float64Array;
+  private readonly rawDerivatives: Float64Array;
+  private readonly rawOffset: Float64Array;
+  private readonly derivative: Float64Array;
+  private phi: Float64Array;
+  private trialPhi: Float64Array;
+  private target: Float64Array;
+  private trialTarget: Float64Array;
+  private readonly stage: LinearStage;
+  private readonly builder: SteeringBuilder;
+  private readonly finder: StepFinder;
+
+  private theta: Float64Array;
+  private trial: Float64Array;
+  private coefficients: Float64Array;
+  private trialCoefficients: Float64Array;
+  private residual: Float64Array;
+  private trialResidual: Float64Array;
+  private cost = Infinity;
+  private evaluations = 0;
+  private iterations = 0;
+  /** derivatives at theta are in `derivative` */
+  private haveDerivatives = false;
+  /** the raw columns are those at theta, not at a refused trial */
+  private rawIsCurrent = false;
+  /** largest length that each projected derivative has had */
+  private readonly longest: Float64Array;
+  private reachedGradient = Infinity;
+  private reachedStep = Infinity;
+  private reachedCost = Infinity;
+
+  constructor(problem: SeparableProblem, start: Float64Array, options: SolveOptions) {
+    const { rows, nonlinear: p, linear: k } = problem;
+    if (problem.data.length !== rows || problem.weights.length !== rows)
+      throw new Error("data and weights need one entry a row");
+    if (start.length !== p) throw new Error("start needs one entry a nonlinear parameter");
+    this.problem = problem;
+    this.options = options;
+    this.p = p;
+    this.k = k;
+    this.maxIterations = options.maxIterations ?? 200;
+    this.tolerance = {
+      gradient: options.gradientTolerance ?? 1e-9,
+      step: options.stepTolerance ?? 1e-12,
+      cost: options.costTolerance ?? 1e-13,
+    };
+    let m = 0;
+    for (let i = 0; i < rows; i++) if (problem.weights[i] !== 0) m++;
+    this.m = m;
+    this.used = new Int32Array(m);
+    this.weight = new Float64Array(m);
+    this.weightedData = new Float64Array(m);
+    for (let i = 0, at = 0; i < rows; i++) {
+      const w = problem.weights[i]!;
+      if (w === 0) continue;
+      if (!(w > 0)) throw new Error("weights must not be negative or NaN");
+      this.used[at] = i;
+      this.weight[at] = w;
+      this.weightedData[at++] = problem.data[i]! * w;
+    }
+    this.lower = options.lower ?? new Float64Array(p).fill(-Infinity);
+    this.upper = options.upper ?? new Float64Array(p).fill(Infinity);
+    for (let j = 0; j < p; j++) {
+      if (!(this.lower[j]! <= this.upper[j]!)) throw new Error("a lower bound lies above its upper bound");
+    }
+    this.rawColumns = new Float64Array(rows * k);
+    this.rawDerivatives = new Float64Array(rows * p);
+    this.rawOffset = new Float64Array(problem.offset === undefined ? 0 : rows);
+    this.phi = new Float64Array(m * k);
+    this.derivative = new Float64Array(m * p);
+    this.trialPhi = new Float64Array(m * k);
+    this.target = new Float64Array(m);
+    this.trialTarget = new Float64Array(m);
+    const orthogonal = options.steering === "orthogonal";
+    this.stage = new LinearStage(m, k, m, orthogonal);
+    this.builder = new SteeringBuilder(m, p, k, options.steering ?? "auto", options.stride ?? 1);
+    this.finder = new StepFinder(p);
+    this.theta = new Float64Array(p);
+    for (let j = 0; j < p; j++) this.theta[j] = clamp(start[j]!, this.lower[j]!, this.upper[j]!);
+    this.longest = new Float64Array(p);
+    this.trial = new Float64Array(p);
+    this.coefficients = new Float64Array(k);
+    this.trialCoefficients = new Float64Array(k);
+    this.residual = new Float64Array(m);
+    this.trialResidual = new Float64Array(m);
+  }
+
+  run(): SeparableSolution {
+    const { p, finder, tolerance, options } = this;
+    const watch = options.watch ?? NO_WATCH;
+    const scale = new Float64Array(p);
+    const low = new Float64Array(p);
+    const high = new Float64Array(p);
+    const delta = new Float64Array(p);
+    // What a sum of squares can resolve when its terms come from subtracting numbers of the size of the data.
+    const floor = 16 * EPSILON * EPSILON * sumOfSquares(this.weightedData, this.m);
+
+    this.trial.set(this.theta);
+    this.cost = this.evaluateTrial();
+    if (!Number.isFinite(this.cost)) return this.finish("notFinite");
+    this.acceptTrial();
+
+    let radius = 0;
+    let damping = 0;
+    const allowance = 10 * this.maxIterations + 20;
+    for (;;) {
+      if (watch.cancelled()) return this.finish("cancelled");
+      if (!this.takeDerivatives()) return this.finish("notFinite");
+      const steering = this.builder.build(this.stage, this.phi, this.derivative, this.residual);
+      this.updateScale(scale);
+      this.roomWithin(low, high);
+      this.reachedGradient = this.largestCosine(steering, low, high);
+      if (this.reachedGradient <= tolerance.gradient || this.cost === 0) return this.finish("gradient");
+      if (this.iterations >= this.maxIterations) return this.finish("iterationLimit");
+      if (this.iterations === 0) radius = this.firstRadius(scale);
+
+      for (;;) {
+        if (watch.cancelled()) return this.finish("cancelled");
+        if (this.evaluations > allowance) return this.finish("iterationLimit");
+        const step = finder.find(steering, scale, low, high, radius, damping, delta);
+        damping = step.damping;
+        let moved = false;
+        for (let j = 0; j < p; j++) {
+          this.trial[j] = clamp(this.theta[j]! + delta[j]!, this.lower[j]!, this.upper[j]!);
+          if (this.trial[j] !== this.theta[j]) moved = true;
+        }
+        if (!moved) {
+          this.reachedStep = 0;
+          const honest = step.predictedFree <= HONEST_PROMISE * this.cost + floor;
+          return this.finish(honest ? "step" : "iterationLimit");
+        }
+        if (this.iterations === 0) radius = Math.min(radius, step.length);
+        const cost = this.evaluateTrial();
+        if (!Number.isFinite(cost)) {
+          radius = 0.25 * Math.min(radius, step.length);
+          damping *= 4;
+          continue;
+        }
+        const actual = this.cost - cost;
+        const gain = step.predicted > 0 ? actual / step.predicted : -1;
+        if (gain <= 0.25) {
+          // The minimum of the parabola through both costs and the slope at the start, within a tenth and a half.
+          let part = actual >= 0 ? 0.5 : (0.5 * step.slope) / (step.slope - 0.5 * actual);
+          if (!(part >= 0.1) || cost >= 100 * this.cost) part = 0.1;
+          radius = part * Math.min(radius, 10 * step.length);
+          damping /= part;
+        } else if (damping === 0 || gain >= 0.75) {
+          radius = 2 * step.length;
+          damping *= 0.5;
+        }
+        const accepted = gain >= 1e-4;
+        const size = scaledNorm(accepted ? this.trial : this.theta, scale);
+        this.reachedStep = size > 0 ? step.length / size : Infinity;
+        this.reachedCost = Math.max(Math.abs(actual), step.predicted) / this.cost;
+        const honest = step.predictedFree <= HONEST_PROMISE * this.cost + floor;
+        const resolved = tolerance.cost * this.cost + floor;
+        const costDone = honest && Math.abs(actual) <= resolved && step.predicted <= resolved && gain <= 2;
+        const stepDone = honest && step.length <= tolerance.step * size;
+        if (accepted) {
+          this.cost = cost;
+          this.acceptTrial();
+          this.iterations++;
+          watch.report(this.iterations / this.maxIterations, `least squares, iteration ${this.iterations}`);
+        }
+        if (costDone || stepDone) return this.finish(costDone ? "cost" : "step");
+        if (accepted) break;
+        if (this.builder.thinned) {
+          // A refused step may be the thinning's fault: from here on every row steers.
+          this.builder.useEveryRow();
+          this.stage.solve(this.phi, this.target, this.trialCoefficients, this.trialResidual);
+          this.builder.build(this.stage, this.phi, this.derivative, this.residual);
+          this.updateScale(scale);
+        }
+      }
+    }
+  }
+
+  /** Columns, coefficients and residual at `trial`; the cost there, NaN or Infinity where the model is not finite. */
+  private evaluateTrial(): number {
+    const { problem, m, k, used, weight, trialPhi, trialTarget, rawColumns, rawOffset } = this;
+    this.evaluations++;
+    this.rawIsCurrent = false;
+    if (k > 0) problem.columns(this.trial, rawColumns);
+    if (!gather(rawColumns, problem.rows, k, used, weight, trialPhi)) return NaN;
+    if (problem.offset === undefined) {
+      trialTarget.set(this.weightedData);
+    } else {
+      problem.offset(this.trial, rawOffset);
+      for (let r = 0; r < m; r++) trialTarget[r] = this.weightedData[r]! - rawOffset[used[r]!]! * weight[r]!;
+    }
+    return this.stage.solve(trialPhi, trialTarget, this.trialCoefficients, this.trialResidual);
+  }
+
+  private acceptTrial(): void {
+    [this.theta, this.trial] = [this.trial, this.theta];
+    [this.phi, this.trialPhi] = [this.trialPhi, this.phi];
+    [this.target, this.trialTarget] = [this.trialTarget, this.target];
+    [this.coefficients, this.trialCoefficients] = [this.trialCoefficients, this.coefficients];
+    [this.residual, this.trialResidual] = [this.trialResidual, this.residual];
+    this.haveDerivatives = false;
+    this.rawIsCurrent = true;
+  }
+
+  private takeDerivatives(): boolean {
+    const { problem, p, used, weight, rawDerivatives, derivative } = this;
+    if (p > 0) problem.derivatives(this.theta, this.coefficients, rawDerivatives);
+    this.haveDerivatives = gather(rawDerivatives, problem.rows, p, used, weight, derivative);
+    return this.haveDerivatives;
+  }
+
+  private updateScale(scale: Float64Array): void {
+    for (let j = 0; j < this.p; j++) {
+      this.longest[j] = Math.max(this.longest[j]!, this.builder.projected[j]!);
+      if (this.options.scale !== undefined) scale[j] = 1 / this.options.scale[j]!;
+      else scale[j] = this.longest[j]! > 0 ? this.longest[j]! : 1 / (Math.abs(this.theta[j]!) || 1);
+    }
+  }
+
+  private firstRadius(scale: Float64Array): number {
+    if (this.options.scale !== undefined) return 10 * Math.sqrt(this.p);
+    return 100 * scaledNorm(this.theta, scale) || 100;
+  }
+
+  private roomWithin(low: Float64Array, high: Float64Array): void {
+    for (let j = 0; j < this.p; j++) {
+      low[j] = this.lower[j]! - this.theta[j]!;
+      high[j] = this.upper[j]! - this.theta[j]!;
+    }
+  }
+
+  /** Largest cosine between the residual and a projected derivative along which the parameter may still move. */
+  private largestCosine(steering: Steering, low: Float64Array, high: Float64Array): number {
+    const { projected, plain } = this.builder;
+    const length = Math.sqrt(this.cost);
+    let largest = 0;
+    for (let j = 0; j < this.p; j++) {
+      const g = steering.gradient[j]!;
+      if ((g <= 0 && low[j] === 0) || (g >= 0 && high[j] === 0)) continue;
+      // A derivative within the span of the linear columns has no direction of its own.
+      if (!(projected[j]! > 1e-12 * plain[j]!)) continue;
+      largest = Math.max(largest, Math.abs(g) / (projected[j]! * length));
+    }
+    return largest;
+  }
+
+  private finish(termination: Termination): SeparableSolution {
+    const { problem, p, k, m } = this;
+    const n = p + k;
+    const finite = Number.isFinite(this.cost);
+    if (!this.rawIsCurrent && finite) {
+      if (k > 0) problem.columns(this.theta, this.rawColumns);
+      problem.offset?.(this.theta, this.rawOffset);
+    }
+    const activeBounds = new Int8Array(p);
+    const undetermined = new Uint8Array(n);
+    const covariance = new Float64Array(n * n).fill(NaN);
+    let rank = 0;
+    let condition = NaN;
+    let remaining = NaN;
+    let reached = termination;
+    if (finite && termination !== "cancelled" && !this.haveDerivatives && termination !== "notFinite") {
+      // The last step was accepted: what is reported about the gradient is that of the final point.
+      if (this.takeDerivatives()) {
+        const steering = this.builder.build(this.stage, this.phi, this.derivative, this.residual);
+        const low = new Float64Array(p);
+        const high = new Float64Array(p);
+        this.roomWithin(low, high);
+        this.reachedGradient = this.largestCosine(steering, low, high);
+      } else {
+        reached = "notFinite";
+      }
+    }
+    if (this.haveDerivatives) {
+      const free: number[] = [];
+      for (let j = 0; j < p; j++) {
+        activeBounds[j] = this.boundHeld(j);
+        if (activeBounds[j] === 0) free.push(j);
+      }
+      const columns = new Float64Array(m * free.length);
+      free.forEach((j, at) => columns.set(this.derivative.subarray(j * m, (j + 1) * m), at * m));
+      const analysis = analyseJacobian([columns, this.phi], [free.length, k], m, m, this.residual);
+      ({ rank, condition, remaining } = analysis);
+      const place = [...free, ...Array.from({ length: k }, (_, j) => p + j)];
+      covariance.fill(0);
+      place.forEach((i, a) => {
+        undetermined[i] = analysis.undetermined[a]!;
+        place.forEach((j, b) => (covariance[i * n + j] = analysis.covariance[a * place.length + b]!));
+      });
+    }
+    const fitted = new Float64Array(problem.rows);
+    const residuals = new Float64Array(problem.rows);
+    for (let i = 0; i < problem.rows; i++) {
+      let sum = problem.offset === undefined ? 0 : this.rawOffset[i]!;
+      for (let j = 0; j < k; j++) sum += this.coefficients[j]! * this.rawColumns[j * problem.rows + i]!;
+      fitted[i] = sum;
+    }
+    for (let r = 0; r < m; r++) residuals[this.used[r]!] = this.residual[r]!;
+    return {
+      theta: this.theta,
+      coefficients: this.coefficients,
+      fitted,
+      residuals,
+      chi2: this.cost,
+      degreesOfFreedom: m - rank,
+      termination: reached,
+      converged: reached === "gradient" || reached === "step" || reached === "cost",
+      iterations: this.iterations,
+      evaluations: this.evaluations,
+      reached: { gradient: this.reachedGradient, step: this.reachedStep, cost: this.reachedCost },
+      tolerances: { ...this.tolerance },
+      remaining,
+      rank,
+      condition,
+      activeBounds,
+      undetermined,
+      covariance,
+    };
+  }
+
+  /** -1 or 1 where the parameter stands at a bound and the cost would fall beyond it (or the bounds coincide). */
+  private boundHeld(j: number): -1 | 0 | 1 {
+    const { m, derivative, residual } = this;
+    const atLower = this.theta[j] === this.lower[j];
+    const atUpper = this.theta[j] === this.upper[j];
+    if (!atLower && !atUpper) return 0;
+    let g = 0;
+    for (let r = 0; r < m; r++) g += derivative[j * m + r]! * residual[r]!;
+    if (atLower && (g <= 0 || atUpper)) return -1;
+    return atUpper && g >= 0 ? 1 : 0;
+  }
+}
+
+/** Weighted rows of the columns that are in use; false where one of them is not finite. */
+function gather(
+  raw: Float64Array,
+  rawRows: number,
+  count: number,
+  used: Int32Array,
+  weight: Float64Array,
+  out: Float64Array,
+): boolean {
+  const m = used.length;
+  let check = 0;
+  for (let j = 0; j < count; j++) {
+    const from = j * rawRows;
+    const to = j * m;
+    if (m === rawRows) {
+      for (let r = 0; r < m; r++) {
+        const value = raw[from + r]! * weight[r]!;
+        out[to + r] = value;
+        check += value * 0;
+      }
+    } else {
+      for (let r = 0; r < m; r++) {
+        const value = raw[from + used[r]!]! * weight[r]!;
+        out[to + r] = value;
+        check += value * 0;
+      }
+    }
+  }
+  return check === 0;
+}
+
+function clamp(value: number, low: number, high: number): number {
+  return Math.min(Math.max(value, low), high);
+}
