@@ -1,0 +1,6 @@
+export * from "./types.ts";
+export { readTable } from "./read-table.ts";
+export { wordTableIssue } from "./wording.ts";
+export { splitColumnName } from "./column-name.ts";
+export type { ColumnName } from "./column-name.ts";
+export { isKnownUnit } from "./unit-text.ts";
