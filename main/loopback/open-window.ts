@@ -14,14 +14,18 @@ export interface WindowOptions {
 }
 
 /** `rungline window`: the page on loopback, in an installed browser's own window or at a printed address. */
-export async function openWindow(options: WindowOptions, io: ShellIo): Promise<number> {
+export async function openWindow(
+  options: WindowOptions,
+  io: ShellIo,
+  place: Place = findPlace(),
+): Promise<number> {
   for (const path of options.paths) {
     if (!(await exists(path))) {
       io.error(`rungline: ${path}: no such file or folder\n`);
       return 3;
     }
   }
-  const server = await startServer(findPlace(), options.paths, options.choices, io);
+  const server = await startServer(place, options.paths, options.choices, io);
   if (server === null) return 1;
   try {
     const browser = options.serve ? null : await openIfPossible(server, io);

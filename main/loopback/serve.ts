@@ -27,10 +27,8 @@ export interface LoopbackServer {
  *   GET /?token=T          exchanges the token for a cookie and leads to /
  *   GET /...               the page's own files
  *   GET /host/about        HostFacts
- *   GET /host/start        { names: string[], choices }
- *   GET /host/start/0 ...  the bytes of each
- *   GET /host/demo         { names: string[] }
- *   GET /host/demo/0 ...   the bytes of each
+ *   GET /host/start        { files: { name, base64 }[], choices }
+ *   GET /host/demo         { files: { name, base64 }[] }
  *
  * Opening and saving files need no server: the page does both itself.
  */
@@ -105,24 +103,29 @@ function notLetIn(): PageAnswer {
   );
 }
 
-async function answerHost(path: string, host: LoopbackHost): Promise<PageAnswer> {
-  const [what, index, ...rest] = path.split("/");
-  if (rest.length > 0) return plainAnswer(404, "There is nothing at this address.");
-  if (what === "about" && index === undefined) return jsonAnswer(host.facts);
-  if (what === "start" || what === "demo") {
-    const { files, choices } =
-      what === "start" ? await host.startFiles() : { files: await host.demoFiles(), choices: undefined };
-    if (index === undefined) return jsonAnswer({ names: files.map((file) => file.name), choices });
-    const file = /^\d{1,6}$/.test(index) ? files[Number(index)] : undefined;
-    if (file !== undefined) return bytesAnswer(file.bytes, "application/octet-stream");
+async function answerHost(what: string, host: LoopbackHost): Promise<PageAnswer> {
+  switch (what) {
+    case "about":
+      return jsonAnswer(host.facts);
+    case "start": {
+      const { files, choices } = await host.startFiles();
+      return jsonAnswer({ files: files.map(encode), choices });
+    }
+    case "demo":
+      return jsonAnswer({ files: (await host.demoFiles()).map(encode) });
+    default:
+      return plainAnswer(404, "There is nothing at this address.");
   }
-  return plainAnswer(404, "There is nothing at this address.");
+}
+
+function encode({ name, bytes }: NamedBytes): { name: string; base64: string } {
+  return { name, base64: Buffer.from(bytes.buffer, bytes.byteOffset, bytes.byteLength).toString("base64") };
 }
 
 function jsonAnswer(value: unknown): PageAnswer {
-  return bytesAnswer(new TextEncoder().encode(JSON.stringify(value)), "application/json; charset=utf-8");
-}
-
-function bytesAnswer(body: Uint8Array, type: string): PageAnswer {
-  return { status: 200, headers: { ...pageHeaders(null), "Content-Type": type }, body };
+  return {
+    status: 200,
+    headers: { ...pageHeaders(null), "Content-Type": "application/json; charset=utf-8" },
+    body: new TextEncoder().encode(JSON.stringify(value)),
+  };
 }

@@ -12,8 +12,7 @@ import type { ShellIo } from "./shell-io.ts";
  * `npm start`: opens the window on the demo run, says where it is, and prints the demo's result, so that a machine
  * without a display shows the main job too. Nothing is ever downloaded.
  */
-export async function startDemo(io: ShellIo): Promise<number> {
-  const place = findPlace();
+export async function startDemo(io: ShellIo, place: Place = findPlace()): Promise<number> {
   const electron = electronFor(place, io);
   if (electron !== null) {
     io.out("Window: Electron\n\n");
