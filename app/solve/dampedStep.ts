@@ -11,6 +11,8 @@ export interface Steering {
   readonly right: Float64Array;
   /** g = J'r (p), always from every row. */
   readonly gradient: Float64Array;
+  /** |J_j| (p) as the matrix has it. */
+  readonly lengths: Float64Array;
 }
 
 export interface DampedStep {
@@ -24,7 +26,10 @@ export interface DampedStep {
   readonly slope: number;
 }
 
-/** Damping of the undamped step, relative to the scaling: keeps singular systems solvable, changes no digit else. */
+/**
+ * Damping of the undamped step, relative to the present length of each column (not to the largest it ever had, or a
+ * parameter whose influence has died away would look as if it stood at its minimum).
+ */
 const LEAST_DAMPING = 1e-14;
 
 /**
@@ -50,6 +55,7 @@ export class StepFinder {
   private readonly lower: Float64Array;
   private readonly stacked: Float64Array;
   private readonly image: Float64Array;
+  private readonly ridge: Float64Array;
   private count = 0;
 
   constructor(p: number) {
@@ -62,6 +68,7 @@ export class StepFinder {
     this.lower = new Float64Array(p * p);
     this.stacked = new Float64Array(2 * p * (p + 1));
     this.image = new Float64Array(p);
+    this.ridge = new Float64Array(p);
   }
 
   find(
@@ -74,7 +81,9 @@ export class StepFinder {
     delta: Float64Array,
   ): DampedStep {
     const { p } = this;
-    this.solveBox(steering, scale, low, high, LEAST_DAMPING, delta);
+    const { ridge } = this;
+    for (let j = 0; j < p; j++) ridge[j] = steering.lengths[j]! > 0 ? steering.lengths[j]! : scale[j]!;
+    this.solveBox(steering, ridge, low, high, LEAST_DAMPING, delta);
     let length = scaledNorm(delta, scale);
     const predictedFree = this.promise(steering, delta);
     if (length <= 1.1 * radius) {

@@ -15,7 +15,7 @@ export interface LinearSolution {
 }
 
 /**
- * What      min over c of sum_i w_i^2 (y_i - sum_k c_k Phi_ik)^2, always by orthogonal factorisation.
+ * What      min over c of sum_i w_i^2 (y_i - sum_k c_k Phi_ik)^2, always by orthogonal factorisation, refined.
  * Shapes    columns (rows x k, column-major); data, weights (rows). Residuals are (y - model) w.
  * Units     weights are 1/sigma of the data; a weight of 0 leaves the row out, whatever its data say.
  * Domain    finite numbers where the weight is not 0; dependent columns get the coefficient 0 and are flagged.
@@ -44,7 +44,8 @@ export function linearLeastSquares(
   const coefficients = new Float64Array(k);
   const residual = new Float64Array(used);
   const stage = new LinearStage(used, k, used, true);
-  const chi2 = stage.solve(phi, target, coefficients, residual);
+  stage.solve(phi, target, coefficients, residual);
+  const chi2 = stage.refine(phi, target, coefficients, residual);
   const analysis = analyseJacobian([phi], [k], used, used, residual);
   const residuals = new Float64Array(rows);
   at = 0;

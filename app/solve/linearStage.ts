@@ -1,4 +1,5 @@
 import { choleskyInto, backSubstitute, forwardSubstitute } from "./cholesky.ts";
+import { accurateResidual } from "./accurateResidual.ts";
 import { gramMatrix, residualOf, sumOfSquares, transposedTimes } from "./gram.ts";
 import { pivotedQr } from "./pivotedQr.ts";
 import { RowBlockTriangle } from "./rowBlockTriangle.ts";
@@ -81,10 +82,43 @@ export class LinearStage {
     return sumOfSquares(residual, rows);
   }
 
+  /**
+   * Refines the last solution with residuals in twice the working precision, for as long as the corrections shrink.
+   * Returns the sum of squares.
+   */
+  refine(phi: Float64Array, target: Float64Array, c: Float64Array, residual: Float64Array): number {
+    const { k, ld, rows, correction } = this;
+    const previous = new Float64Array(k);
+    let last = Infinity;
+    accurateResidual(phi, k, ld, rows, target, c, residual, correction);
+    let cost = sumOfSquares(residual, rows);
+    for (let turn = 0; turn < 6; turn++) {
+      previous.set(c);
+      this.applyCorrection(c);
+      let size = 0;
+      for (let j = 0; j < k; j++) size = Math.max(size, Math.abs(c[j]! - previous[j]!) / this.scale[j]!);
+      accurateResidual(phi, k, ld, rows, target, c, residual, correction);
+      const next = sumOfSquares(residual, rows);
+      // Where the columns are too close to dependent the correction does not contract: take it back.
+      if (!(size < 0.5 * last) || next > cost * (1 + 1e-12)) {
+        c.set(previous);
+        accurateResidual(phi, k, ld, rows, target, c, residual, correction);
+        break;
+      }
+      last = size;
+      cost = next;
+    }
+    return sumOfSquares(residual, rows);
+  }
+
   /** c += (Phi'Phi)^-1 Phi' residual, by the factor at hand. */
   private correct(phi: Float64Array, residual: Float64Array, c: Float64Array): void {
+    transposedTimes(phi, this.k, this.ld, this.rows, residual, this.correction);
+    this.applyCorrection(c);
+  }
+
+  private applyCorrection(c: Float64Array): void {
     const { k, scale, correction, work, permutation, rank, small } = this;
-    transposedTimes(phi, k, this.ld, this.rows, residual, correction);
     if (this.normal) {
       for (let j = 0; j < k; j++) work[j] = correction[j]! * scale[j]!;
       forwardSubstitute(this.factor, k, work);

@@ -146,7 +146,8 @@ class Search {
     const high = new Float64Array(p);
     const delta = new Float64Array(p);
     // What a sum of squares can resolve when its terms come from subtracting numbers of the size of the data.
-    const floor = 16 * EPSILON * EPSILON * sumOfSquares(this.weightedData, this.m);
+    const dataSquare = sumOfSquares(this.weightedData, this.m);
+    const floor = 16 * EPSILON * EPSILON * dataSquare;
 
     this.trial.set(this.theta);
     this.cost = this.evaluateTrial();
@@ -155,6 +156,8 @@ class Search {
 
     let radius = 0;
     let damping = 0;
+    let leastPromise = Infinity;
+    let stalled = 0;
     const allowance = 10 * this.maxIterations + 20;
     for (;;) {
       if (watch.cancelled()) return this.finish("cancelled");
@@ -170,7 +173,17 @@ class Search {
       for (;;) {
         if (watch.cancelled()) return this.finish("cancelled");
         if (this.evaluations > allowance) return this.finish("iterationLimit");
-        const step = finder.find(steering, scale, low, high, radius, damping, delta);
+        // Rounding error of the cost itself: a smaller fall cannot be seen in it.
+        const noise = 64 * EPSILON * (this.cost + Math.sqrt((dataSquare * this.cost) / this.m)) + floor;
+        let step = finder.find(steering, scale, low, high, radius, damping, delta);
+        // Where even the full step promises less than that, the gradient alone leads, by full steps, for as long as
+        // the promise keeps falling.
+        const blind = step.predictedFree <= noise;
+        if (blind) {
+          if (step.predictedFree > 0.9 * leastPromise && ++stalled === 2) return this.finish("cost");
+          leastPromise = Math.min(leastPromise, step.predictedFree);
+          if (step.damping > 0) step = finder.find(steering, scale, low, high, Infinity, 0, delta);
+        }
         damping = step.damping;
         let moved = false;
         for (let j = 0; j < p; j++) {
@@ -201,7 +214,8 @@ class Search {
           radius = 2 * step.length;
           damping *= 0.5;
         }
-        const accepted = gain >= 1e-4;
+        const accepted = gain >= 1e-4 || (blind && actual >= -4 * noise);
+        if (blind && accepted) radius = Math.max(radius, 2 * step.length);
         const size = scaledNorm(accepted ? this.trial : this.theta, scale);
         this.reachedStep = size > 0 ? step.length / size : Infinity;
         this.reachedCost = Math.max(Math.abs(actual), step.predicted) / this.cost;
@@ -271,7 +285,7 @@ class Search {
 
   private firstRadius(scale: Float64Array): number {
     if (this.options.scale !== undefined) return 10 * Math.sqrt(this.p);
-    return 100 * scaledNorm(this.theta, scale) || 100;
+    return scaledNorm(this.theta, scale) || 1;
   }
 
   private roomWithin(low: Float64Array, high: Float64Array): void {

@@ -33,6 +33,7 @@ export class SteeringBuilder {
     matrix: Float64Array;
     right: Float64Array;
     gradient: Float64Array;
+    lengths: Float64Array;
   };
   /** |J_j| and |D_j| */
   readonly projected: Float64Array;
@@ -62,8 +63,9 @@ export class SteeringBuilder {
       matrix: new Float64Array(p * p),
       right: new Float64Array(p),
       gradient: new Float64Array(p),
+      lengths: new Float64Array(p),
     };
-    this.projected = new Float64Array(p);
+    this.projected = this.steering.lengths;
     this.plain = new Float64Array(p);
     this.cross = new Float64Array(p * k);
     this.scaled = new Float64Array(p * p);
