@@ -1,4 +1,4 @@
-import { groupMarkOf, kindOfNoNumber, parseNumber } from "./number-text.ts";
+import { groupMarkOf, kindOfNoNumber, parseNumber, saysMissing } from "./number-text.ts";
 import { filledLength, joinPairs } from "./row-shape.ts";
 import type { RowShape } from "./row-shape.ts";
 import { splitRecords } from "./split-fields.ts";
@@ -49,7 +49,7 @@ function creditOf(cells: readonly string[], decimal: DecimalMark, group: string)
     }
     const kind = kindOfNoNumber(cell);
     if (kind === "not-finite") filled++;
-    else if (kind === "text") words++;
+    else if (kind === "text" && !saysMissing(cell)) words++;
   }
   if (numbers === 0 || cells.length < 2) return { credit: 0, whole };
   if (words > 0) return { credit: numbers >= 2 ? 0.5 * factor : 0, whole };
@@ -118,7 +118,7 @@ function groupsDigits(rows: readonly (readonly string[])[], decimal: DecimalMark
  * What      Delimiter and decimal mark, decided together: every pair is tried on the sampled lines and the one wins
  *           under which most lines have the same number of fields, all of them numbers.
  * Domain    Ties go to tab, semicolon, comma, spaces in this order, and to the point before the comma. A tab or a
- *           semicolon that explains four fifths of what the best pair explains wins over a comma or spaces, since
+ *           semicolon that explains seven tenths of what the best pair explains wins over a comma or spaces, since
  *           these occur inside numbers. Null where no pair makes a row of numbers.
  */
 export function chooseShape(sample: readonly string[], choices: TableChoices): ScoredShape | null {
@@ -150,7 +150,7 @@ export function chooseShape(sample: readonly string[], choices: TableChoices): S
   let clear: ScoredShape | null = null;
   for (const shape of scored) {
     if (shape.delimiter !== "\t" && shape.delimiter !== ";") continue;
-    if (shape.score >= 0.8 * best.score && (clear === null || shape.score > clear.score)) clear = shape;
+    if (shape.score >= 0.7 * best.score && (clear === null || shape.score > clear.score)) clear = shape;
   }
   return clear ?? best;
 }

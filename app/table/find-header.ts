@@ -17,6 +17,8 @@ export interface FoundHeader {
   readonly units: readonly string[];
   /** Lines of a third header row, joined to the names. */
   readonly usedLines: readonly number[];
+  /** Lines below the heading that should be rows but begin with words. */
+  readonly badLines: readonly number[];
   readonly reason: string;
 }
 
@@ -44,7 +46,7 @@ function openPart(text: string): string {
   return at >= 0 && !/[\])}]/.test(text.slice(at)) ? text.slice(at) : "";
 }
 
-/** Greedy last resort: words go with what follows until as many headings are left as there are columns. */
+/** Bare units go with the word before them: `Energy eV T %`. */
 function mergeUnits(tokens: readonly string[]): string[] {
   const merged: string[] = [];
   for (const token of tokens) {
@@ -121,6 +123,8 @@ function isUnitRow(cells: readonly string[]): boolean {
   return filled.every(isUnit) && filled.some((cell) => isStrongUnit(unbracketed(cell)) || /^[[(]/.test(cell));
 }
 
+const hasUnit = (cells: readonly string[]): boolean =>
+  cells.some((cell) => splitColumnName(cell).unit !== "");
 const letters = (cells: readonly string[]): boolean => cells.some((cell) => /\p{L}|%|°/u.test(cell));
 
 function withUnits(
@@ -135,7 +139,7 @@ function withUnits(
     const unit = unbracketed(unitRow?.[j] ?? "");
     return /^-*$/.test(unit) ? "" : unit;
   });
-  return { headerLine, unitLine, headers, units, usedLines: used, reason };
+  return { headerLine, unitLine, headers, units, usedLines: used, badLines: [], reason };
 }
 
 /**
@@ -156,12 +160,16 @@ export function findHeader(
     headers: none,
     units: none,
     usedLines: [],
+    badLines: [],
     reason,
   });
   if (wanted === 0) return empty("the user says that there is no header");
   const filled = before.filter((record) => wordsOf(record) !== "");
   const cellsOf = (record: TextRecord | undefined): string[] | null =>
-    record === undefined ? null : headingCells(wordsOf(record), columns, shape.delimiter);
+    record === undefined
+      ? null
+      : // Not trimmed: a leading tab is a blank first cell.
+        headingCells(record.mark === "" ? record.text : wordsOf(record), columns, shape.delimiter);
   if (wanted !== undefined) {
     const at = filled.findIndex((record) => record.line === wanted);
     const record = filled[at];
@@ -216,6 +224,27 @@ export function findHeader(
       );
     }
   }
+  if (
+    near !== undefined &&
+    nearUnits !== null &&
+    aboveCells !== null &&
+    above !== undefined &&
+    hasUnit(aboveCells)
+  ) {
+    const rest = nearUnits.slice(1).filter((cell) => cell !== "");
+    if (rest.length > 0 && rest.every((cell) => /^[+-]?[\d.,]+([eE][+-]?\d+)?$/.test(cell))) {
+      const first = splitColumnName(nearUnits[0]!);
+      const labels = first.name === "" || factKeyOf(first.name, first.unit) !== "other";
+      const named = [];
+      for (const [j, name] of aboveCells.entries())
+        named.push(
+          j === 0 || !labels || columns < 3 ? name : clean(`${name} ${nearUnits[j]!} ${first.unit}`),
+        );
+      const reason = `line ${above.line} names columns with units`;
+      const found = withUnits(above.line, named, null, null, labels ? [near.line] : [], reason);
+      return labels ? found : { ...found, badLines: [near.line] };
+    }
+  }
   if (near !== undefined && nearCells !== null)
     return withUnits(
       near.line,
@@ -230,8 +259,7 @@ export function findHeader(
     const record = filled[i]!;
     const cells = usable(record);
     if (cells === null) continue;
-    const certain = cells.filter((cell) => splitColumnName(cell).unit !== "").length;
-    if (certain === 0) continue;
+    if (!hasUnit(cells)) continue;
     return withUnits(
       record.line,
       cells,

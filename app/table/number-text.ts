@@ -67,6 +67,13 @@ export function groupMarkOf(cell: string, group: string): string {
   return group !== "" && cell.includes(group) ? group : "";
 }
 
+const MISSING = /^(n\/?a\.?|#n\/a|na|null|none|missing|k\.?\s?a\.?|fehlt|[-\u2013\u2014]+|\*+|\?+|\.+)$/i;
+
+/** Words and strokes by which a value is said to be missing. */
+export function saysMissing(cell: string): boolean {
+  return MISSING.test(cell.trim());
+}
+
 /** Why a cell that parseNumber refused holds no number. A number too large for a double counts as not finite. */
 export function kindOfNoNumber(cell: string): "blank" | "not-finite" | "text" {
   const text = cell.trim();

@@ -1,5 +1,5 @@
 import { commentMarkOf, isCommentStart } from "./comment-mark.ts";
-import { groupMarkOf, kindOfNoNumber, parseNumber } from "./number-text.ts";
+import { groupMarkOf, kindOfNoNumber, parseNumber, saysMissing } from "./number-text.ts";
 import { filledLength, joinPairs } from "./row-shape.ts";
 import type { RowShape } from "./row-shape.ts";
 import { splitPlainBlock, splitRecords } from "./split-fields.ts";
@@ -18,7 +18,6 @@ export interface RowsRead {
 }
 
 const BLOCK_LINES = 4096;
-const MISSING_WORD = /^(n\/?a\.?|na|null|none|missing|k\.?a\.?|fehlt)$/i;
 /** An exponent, sign or decimal mark without what should follow, or a character cut in its middle. */
 const CUT_NUMBER = /^[+-]?[.,]?$|[eEdD][+-]?$|\ufffd/;
 
@@ -113,7 +112,7 @@ export function readRows(
       }
       const head = cells[axis]!.trim();
       if (bad[0]! <= axis && values[axis]![rows] !== values[axis]![rows] && /^\p{L}/u.test(head)) {
-        if (kindOfNoNumber(head) === "text" && !MISSING_WORD.test(head)) {
+        if (kindOfNoNumber(head) === "text" && !saysMissing(head)) {
           skip(line, null, "non-numeric", text());
           free({ line, text: text(), mark: "" });
           return;

@@ -5,7 +5,7 @@ import type { ScoredShape } from "./choose-shape.ts";
 import { splitColumnName } from "./column-name.ts";
 import { commentMarkOf } from "./comment-mark.ts";
 import { decodeText } from "./decode-text.ts";
-import { findHeader } from "./find-header.ts";
+import { findHeader, headingCells } from "./find-header.ts";
 import type { FoundHeader } from "./find-header.ts";
 import { factsOfLine } from "./header-fact.ts";
 import { parseNumber } from "./number-text.ts";
@@ -17,7 +17,7 @@ import { lineText, splitLines } from "./text-lines.ts";
 import type { TextLines } from "./text-lines.ts";
 import { readRecords, wordsOf } from "./text-records.ts";
 import type { TextRecord } from "./text-records.ts";
-import type { HeaderFact, Table, TableChoices, TableIssue, TableIssueCode } from "./types.ts";
+import type { HeaderFact, SkippedRow, Table, TableChoices, TableIssue, TableIssueCode } from "./types.ts";
 
 const MOST_BYTES = 400_000_000;
 const SAMPLE_ALL = 600;
@@ -110,9 +110,22 @@ export function readTable(
   };
   const headingLines = new Set([header.headerLine, header.unitLine, ...header.usedLines]);
   const repeated = new Set<string>();
+  const early: SkippedRow[] = [];
   for (const record of before) {
-    if (record.text.trim() !== "") repeated.add(record.text.trim());
-    if (!headingLines.has(record.line)) takeWords(record);
+    const text = record.text.trim();
+    if (text !== "") repeated.add(text);
+    if (headingLines.has(record.line)) continue;
+    // Numbers above the table that did not become rows are said, not dropped.
+    const isData = record.mark === "" && text !== "" && isRow(cellsOf(record, shape), shape);
+    const bad = header.badLines.includes(record.line);
+    if (bad || isData)
+      early.push({
+        line: record.line,
+        column: null,
+        reason: bad ? "non-numeric" : "comment",
+        found: text.slice(0, 80),
+      });
+    else takeWords(record);
   }
 
   const read = readRows(lines, firstRow, { ...shape, columns }, repeated, takeWords);
@@ -142,7 +155,7 @@ export function readTable(
     rowLines: read.rowLines,
     facts,
     comments,
-    skipped: read.skipped,
+    skipped: [...early, ...read.skipped],
     dialect: {
       encoding: decoded.encoding,
       byteOrderMark: decoded.byteOrderMark,
@@ -319,10 +332,17 @@ function findFirstRow(
       return isRow(cells, shape) ? "row" : isRowLike(cells, shape) ? "like" : "no";
     });
     for (let i = 0; i < block.records.length; i++) {
-      if (rows[i] === "row") {
+      if (rows[i] === "row" || rows[i] === "like") {
         const next = rows.slice(i + 1, i + 24).filter((row) => row !== null);
         const three = next.slice(0, 3);
-        if (three.filter((row) => row !== "no").length * 2 >= three.length)
+        const sound = rows[i] === "row" || three.includes("row");
+        // `2 1000` above the heading counts columns and rows; it is no row.
+        const after = records.slice(i + 1).find((_, k) => rows[i + 1 + k] !== null);
+        const aboveHeading =
+          three[0] === "no" &&
+          three[1] === "row" &&
+          headingCells(after!.text, shape.columns, shape.delimiter) !== null;
+        if (sound && !aboveHeading && three.filter((row) => row !== "no").length * 2 >= three.length)
           return { before, firstRow: block.records[i]!.line - 1 };
       }
       before.push(block.records[i]!);
@@ -364,6 +384,7 @@ function headWithBlankCorner(
     headers: cells,
     units: cells.map(() => ""),
     usedLines: [],
+    badLines: [],
     reason: `line ${record.line} leaves the first column blank and names the others by a value`,
   };
   return { header, record, next };

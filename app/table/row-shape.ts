@@ -1,4 +1,4 @@
-import { kindOfNoNumber, parseNumber } from "./number-text.ts";
+import { kindOfNoNumber, parseNumber, saysMissing } from "./number-text.ts";
 import type { DecimalMark, Delimiter } from "./types.ts";
 
 /** How a line of this table is cut into cells, and what its cells may be. */
@@ -38,7 +38,8 @@ export function isRow(cells: readonly string[], shape: RowShape): boolean {
   for (let j = 0; j < shape.columns; j++) {
     const cell = cells[j]!;
     if (Number.isFinite(parseNumber(cell, shape.decimal, shape.group))) numbers++;
-    else if (shape.wordColumns[j] !== true && kindOfNoNumber(cell) === "text") return false;
+    else if (shape.wordColumns[j] !== true && kindOfNoNumber(cell) === "text" && !saysMissing(cell))
+      return false;
   }
   return numbers > 0;
 }
