@@ -1,0 +1,10 @@
+export * from "./format-quantity.ts";
+export { csvLine } from "./csv.ts";
+export { cautionsFor, CRYOGEN_CAUTION, LASER_CAUTION } from "./cautions.ts";
+export { gravestFirst, noteLine } from "./notes.ts";
+export { protocolInWords } from "./protocol-in-words.ts";
+export { areaUnit, signalUnitWords, signalName } from "./area-unit.ts";
+export { resultToText, RESULT_TEXT_MARK } from "./result-to-text.ts";
+export { resultToCsv, RESULT_CSV_MARK, summaryToCsv, SUMMARY_MARK } from "./result-to-csv.ts";
+export { resultToJson, resultsToJson, protocolToJson } from "./result-to-json.ts";
+export { inspectionToText, type ReadingShown } from "./inspection-to-text.ts";

@@ -1,0 +1,78 @@
+import { findPreset, type BackgroundTerm, type Protocol } from "../protocol/index.ts";
+
+/** The choices that shape a number, in the words of a methods section. */
+export function protocolInWords(protocol: Protocol): readonly string[] {
+  const { material, signal, axis, lines, series, width, strength, tail, uncertainty } = protocol;
+  const said: string[] = [];
+  if (material.preset === null) said.push("no material preset");
+  else {
+    const title = findPreset(material.preset)?.title;
+    said.push(`material ${material.preset}${title === undefined ? "" : ` (${title})`}: starting values only`);
+  }
+  if (protocol.window_eV !== null) said.push(`window ${protocol.window_eV.join(" to ")} eV`);
+  if (protocol.mask_eV.length > 0)
+    said.push(`left out ${protocol.mask_eV.map((mask) => mask.join(" to ")).join(", ")} eV`);
+  if (axis.offset_sigma_eV > 0) said.push(`axis offset uncertain by ${axis.offset_sigma_eV} eV`);
+  if (axis.scale_sigma > 0) said.push(`axis scale uncertain by ${axis.scale_sigma}`);
+  if (signal.thickness_um !== null) said.push(`thickness ${signal.thickness_um} µm`);
+  said.push(surfaceInWords(signal.surface));
+  said.push(lines.n === "auto" ? `lines found, n up to ${lines.max_n}` : `lines n = ${lines.n.join(", ")}`);
+  said.push(
+    { shared: "one asymmetry for all lines", free: "asymmetry free per line", zero: "symmetric lines" }[
+      lines.asymmetry
+    ],
+  );
+  if (lines.slit_fwhm_eV !== null) said.push(`instrument ${lines.slit_fwhm_eV} eV full width`);
+  said.push(`background ${protocol.background.map(termInWords).join(" + ") || "none"}`);
+  said.push(tail.model === "law" ? "tail of the series tied to the laws" : "tail of the series left out");
+  said.push(
+    {
+      none: "quantum defect held at zero",
+      constant: "constant quantum defect",
+      ritz: "quantum defect after Ritz",
+    }[series.defect],
+  );
+  said.push(series.mode === "free" ? "free levels" : "levels tied to the series law");
+  if (series.fit_n !== "auto") said.push(`series from n = ${series.fit_n[0]} to ${series.fit_n[1]}`);
+  said.push(
+    `widths on ${width.base} with exponent ${width.exponent === "free" ? "free" : `held at ${width.exponent}`}, ${
+      width.floor_kind === "none" ? "no floor" : `${width.floor_kind} floor`
+    }`,
+  );
+  said.push(`strengths ${strength.law} on ${strength.base}`);
+  said.push(
+    uncertainty.scale_by_residuals
+      ? "standard errors scaled by the residuals"
+      : "standard errors from the given or estimated noise",
+  );
+  said.push(`intervals at ${percent(uncertainty.level)}`);
+  return said;
+}
+
+export function percent(level: number): string {
+  return `${Number((100 * level).toPrecision(4))} %`;
+}
+
+function surfaceInWords(surface: Protocol["signal"]["surface"]): string {
+  if (surface.model === "none") return "surfaces not corrected";
+  const by =
+    surface.reflectance !== null
+      ? `R = ${surface.reflectance}`
+      : surface.index !== null
+        ? `index ${surface.index} against ${surface.surround_index}`
+        : "R from the material's index";
+  return `surfaces corrected (${surface.model === "all" ? "all reflections" : "single pass"}, ${by})`;
+}
+
+function termInWords(term: BackgroundTerm): string {
+  switch (term.term) {
+    case "polynomial":
+      return `polynomial of order ${term.order}`;
+    case "square-root":
+      return `square-root onset at ${term.onset_eV} eV`;
+    case "urbach":
+      return `Urbach tail of ${term.energy_eV} eV`;
+    case "measured":
+      return `measured curve of ${term.energy_eV.length} points`;
+  }
+}

@@ -1,0 +1,514 @@
+import type { LineResult, RunglineResult } from "../protocol/index.ts";
+import { areaUnit, signalName, signalUnitWords } from "./area-unit.ts";
+import { cautionsFor } from "./cautions.ts";
+import {
+  ELECTRONVOLT,
+  energyUnit,
+  ends,
+  formatEnergy,
+  formatNumber,
+  formatQuantity,
+  MICROELECTRONVOLT,
+  MILLIELECTRONVOLT,
+  NOT_DETERMINED_WORDS,
+  scaleQuantity,
+  type EnergyUnit,
+} from "./format-quantity.ts";
+import { gravestFirst } from "./notes.ts";
+import { percent, protocolInWords } from "./protocol-in-words.ts";
+import { labelled, textTable, wrap, type Align } from "./text-table.ts";
+
+type Quantity = LineResult["energy_eV"];
+
+/** The first words of a result as text; by them a file is known as one that may be replaced. */
+export const RESULT_TEXT_MARK = "Exciton series of ";
+
+/** A result as a table in a paper: what was read, the numbers, how good they are, and every doubt. */
+export function resultToText(result: RunglineResult): string {
+  const lines = [
+    ...header(result),
+    ...seriesPart(result),
+    ...widthPart(result),
+    ...strengthPart(result),
+    ...tailPart(result),
+    ...linesPart(result),
+    ...derivedPart(result),
+    ...backgroundPart(result),
+    ...fitPart(result),
+    ...notesPart(result),
+    ...cautionsPart(result),
+  ];
+  return `${lines.join("\n").trimEnd()}\n`;
+}
+
+function header(result: RunglineResult): string[] {
+  const { source, reading, run } = result;
+  const title = RESULT_TEXT_MARK + source.file;
+  const facts = reading.facts.map((fact) => `${fact.label}: ${fact.text}`).join("; ");
+  const [low, high] = reading.range_eV;
+  return [
+    title,
+    "=".repeat(Array.from(title).length),
+    "",
+    ...labelled("File", `${source.file}, ${source.points} points, SHA-256 ${source.sha256}`),
+    ...(facts === "" ? [] : labelled("Header", facts)),
+    ...labelled("Reading", columnsInWords(result)),
+    ...labelled(
+      "Signal",
+      `${signalName(reading.signal_unit)}; ${formatNumber(low, 6)} to ${formatNumber(high, 6)} eV; ${
+        reading.used_points
+      } of ${source.points} points used, ${reading.skipped} rows skipped; noise ${noiseInWords(result)}`,
+    ),
+    ...labelled("Protocol", protocolInWords(result.protocol).join("; ")),
+    ...labelled("Status", statusInWords(result)),
+    ...labelled("Made by", `Rungline ${run.version} on ${run.node}, ${run.started}`),
+  ];
+}
+
+function columnsInWords(result: RunglineResult): string {
+  const { columns } = result.reading;
+  if (columns.length === 0) return "no columns named";
+  return columns
+    .map(
+      (column) =>
+        `${column.role} from column ${column.column}${column.header === "" ? "" : ` "${column.header}"`} (${column.reason})`,
+    )
+    .join("; ");
+}
+
+function noiseInWords(result: RunglineResult): string {
+  const { source, median_sigma } = result.reading.noise;
+  const unit = signalUnitWords(result.reading.signal_unit);
+  const from =
+    { column: "given in the file", protocol: "given in the protocol", estimated: "estimated from the data" }[
+      source
+    ] ?? source;
+  if (median_sigma === null) return `${NOT_DETERMINED_WORDS} (${from})`;
+  return `${formatNumber(median_sigma, 3)}${unit === "" ? "" : ` ${unit}`} a point in the median (${from})`;
+}
+
+function statusInWords(result: RunglineResult): string {
+  const why = result.fit === null ? "" : ` (stopped by ${TERMINATION_WORDS[result.fit.termination]})`;
+  switch (result.status) {
+    case "converged":
+      return `converged${why}`;
+    case "not-converged":
+      return `NOT CONVERGED${why}: the numbers below are where the fit stood, not a result`;
+    case "no-series":
+      return `NO SERIES SEEN${why}`;
+  }
+}
+
+const TERMINATION_WORDS: Readonly<Record<NonNullable<RunglineResult["fit"]>["termination"], string>> = {
+  gradient: "a small gradient",
+  step: "a small step",
+  cost: "a small change of chi square",
+  iterationLimit: "the limit of iterations",
+  cancelled: "the user",
+  notFinite: "a number that is not finite",
+};
+
+function heading(text: string): string[] {
+  return ["", text, "-".repeat(Array.from(text).length)];
+}
+
+function isOneSigma(level: number): boolean {
+  return Math.abs(level - 0.6827) < 0.002;
+}
+
+/**
+ * An energy in one unit. Unequal sides of the interval stand behind the value only where the interval is that of
+ * one standard error; at other levels the interval has its own column.
+ */
+function energy(quantity: Quantity, unit: EnergyUnit, level: number): string {
+  return isOneSigma(level)
+    ? formatEnergy(quantity, unit)
+    : formatEnergy({ ...quantity, low: null, high: null }, unit);
+}
+
+function seriesPart(result: RunglineResult): string[] {
+  const { series, systematic } = result;
+  if (series === null)
+    return [...heading("Series"), `  gap, Rydberg energy and quantum defect ${NOT_DETERMINED_WORDS}`];
+  const level = result.protocol.uncertainty.level;
+  const ritz = series.defect2.value !== null;
+  const rydberg = energyUnit(series.rydberg_eV.value);
+  const rows: string[][] = [
+    ["", "value(standard error)", "systematic", `interval at ${percent(level)}`],
+    [
+      "gap E_g",
+      energy(series.gap_eV, ELECTRONVOLT, level),
+      systematicWords(systematic?.gap_eV ?? null),
+      interval(series.gap_eV, ELECTRONVOLT),
+    ],
+    [
+      "Rydberg energy Ry",
+      energy(series.rydberg_eV, rydberg, level),
+      systematicWords(systematic?.rydberg_eV ?? null),
+      interval(series.rydberg_eV, rydberg),
+    ],
+    [
+      ritz ? "quantum defect delta_0" : "quantum defect delta",
+      pure(series.defect0),
+      systematic?.defect0 === null || systematic === null
+        ? NOT_DETERMINED_WORDS
+        : `±${formatNumber(systematic.defect0, 2)}`,
+      interval(series.defect0, PURE),
+    ],
+    ...(ritz ? [["Ritz term delta_2", pure(series.defect2), "", interval(series.defect2, PURE)]] : []),
+  ];
+  const out = [
+    ...heading(`Series: E_n = E_g - Ry/(n - delta)^2, n = ${series.fit_n[0]} to ${series.fit_n[1]}`),
+    ...textTable(rows, ["left", "left", "left", "left"]),
+    `  chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, p = ${formatNumber(series.p, 3)}`,
+    "  The standard error is statistical only; the systematic part is the spread over defensible choices.",
+  ];
+  if (series.scaled !== null) {
+    out.push(
+      "  Scaled by the root of reduced chi square, since the law is rejected: " +
+        `E_g = ${formatEnergy(series.scaled.gap_eV, ELECTRONVOLT)}, ` +
+        `Ry = ${formatEnergy(series.scaled.rydberg_eV, rydberg)}, delta = ${pure(series.scaled.defect0)}`,
+    );
+  }
+  const { names, matrix } = series.correlation;
+  const pairs = names.flatMap((name, i) =>
+    names.slice(i + 1).map((other, k) => `${name}, ${other} ${(matrix[i]?.[i + 1 + k] ?? 0).toFixed(3)}`),
+  );
+  if (pairs.length > 0) out.push(`  Correlations: ${pairs.join("; ")}`);
+  if (series.readings.length > 1) out.push(...readingsTable(series.readings));
+  if (series.ranges.length > 1) out.push(...rangesTable(series.ranges, rydberg));
+  if (systematic !== null && systematic.trials.length > 0) out.push(...trialsTable(systematic.trials));
+  return out;
+}
+
+type Series = NonNullable<RunglineResult["series"]>;
+
+function readingsTable(readings: Series["readings"]): string[] {
+  return [
+    "",
+    "  Readings of n (not decided by energies; ranked by strengths and widths):",
+    ...textTable(
+      [
+        ["shift of n", "delta", "chi square of strengths", "of widths", ""],
+        ...readings.map((one) => [
+          one.shift > 0 ? `+${one.shift}` : String(one.shift),
+          formatNumber(one.defect0, 4),
+          formatNumber(one.strength_chi2),
+          formatNumber(one.width_chi2),
+          one.chosen ? "chosen" : "",
+        ]),
+      ],
+      ["right", "right", "right", "right", "left"],
+      "    ",
+    ),
+  ];
+}
+
+function rangesTable(ranges: Series["ranges"], rydberg: EnergyUnit): string[] {
+  return [
+    "",
+    "  The same law for other ranges of n:",
+    ...textTable(
+      [
+        ["n", "E_g", "Ry", "delta", "chi square", "dof", "p"],
+        ...ranges.map((one) => [
+          `${one.n_min} to ${one.n_max}`,
+          formatEnergy(one.gap_eV, ELECTRONVOLT),
+          formatEnergy(one.rydberg_eV, rydberg),
+          pure(one.defect0),
+          formatNumber(one.chi2),
+          String(one.dof),
+          formatNumber(one.p, 2),
+        ]),
+      ],
+      ["left", "left", "left", "left", "right", "right", "right"],
+      "    ",
+    ),
+  ];
+}
+
+function trialsTable(trials: NonNullable<RunglineResult["systematic"]>["trials"]): string[] {
+  return [
+    "",
+    "  Trials behind the systematic part:",
+    ...textTable(
+      [
+        ["trial", "E_g/eV", "Ry/meV", "delta", "chi square", "BIC", "p of runs"],
+        ...trials.map((one) => [
+          one.name,
+          one.gap_eV === null ? NOT_DETERMINED_WORDS : one.gap_eV.toFixed(6),
+          one.rydberg_eV === null ? NOT_DETERMINED_WORDS : (1e3 * one.rydberg_eV).toFixed(3),
+          one.defect0 === null ? NOT_DETERMINED_WORDS : one.defect0.toFixed(4),
+          formatNumber(one.chi2, 5),
+          formatNumber(one.bic, 6),
+          formatNumber(one.runs_p, 2),
+        ]),
+      ],
+      ["left", "right", "right", "right", "right", "right", "right"],
+      "    ",
+    ),
+  ];
+}
+
+const PURE: EnergyUnit = { name: "", perElectronvolt: 1 };
+
+function pure(quantity: Quantity): string {
+  return formatQuantity(quantity.value, quantity.sigma, "", { ...ends(quantity), exactWord: "held" });
+}
+
+function systematicWords(value_eV: number | null): string {
+  if (value_eV === null) return NOT_DETERMINED_WORDS;
+  const unit = energyUnit(value_eV);
+  return `±${formatNumber(value_eV * unit.perElectronvolt, 2)} ${unit.name}`;
+}
+
+/** Both ends to the place of the standard error, so that they can be laid beside the value. */
+function interval(quantity: Quantity, unit: EnergyUnit): string {
+  const { low, high, sigma } = scaleQuantity(quantity, unit.perElectronvolt);
+  if (low === null || high === null) return NOT_DETERMINED_WORDS;
+  const spread = sigma !== null && sigma > 0 ? sigma : (high - low) / 2;
+  const digits = Math.min(12, Math.max(0, spread > 0 ? 1 - Math.floor(Math.log10(spread)) : 6));
+  return `${low.toFixed(digits)} to ${high.toFixed(digits)}${unit.name === "" ? "" : ` ${unit.name}`}`;
+}
+
+function widthPart(result: RunglineResult): string[] {
+  const law = result.width_law;
+  if (law === null) return [...heading("Width law"), `  ${NOT_DETERMINED_WORDS}`];
+  const kind = result.protocol.width.floor_kind;
+  const floor = kind === "none" ? "" : "G_0 + ";
+  const formula =
+    law.base === "p-envelope"
+      ? `G_n = ${floor}G_1 [(n^2 - 1)/n^5]^(k/3)`
+      : `G_n = ${floor}G_1 (${law.base})^-k`;
+  return [
+    ...heading(`Width law: ${formula} (full widths at half maximum), n = ${law.fit_n[0]} to ${law.fit_n[1]}`),
+    ...textTable(
+      [
+        [
+          `floor G_0${kind === "gaussian" ? " (added in quadrature)" : ""}`,
+          held(law.floor_eV, MICROELECTRONVOLT),
+        ],
+        ["coefficient G_1", held(law.coefficient_eV, energyUnit(law.coefficient_eV.value))],
+        ["exponent k", pure(law.exponent)],
+      ],
+      ["left", "left"],
+    ),
+    `  chi square ${formatNumber(law.chi2)} for ${law.dof} degrees of freedom, p = ${formatNumber(law.p, 3)}`,
+  ];
+}
+
+function held(quantity: Quantity, unit: EnergyUnit): string {
+  return formatEnergy(quantity, unit, { exactWord: "held" });
+}
+
+function strengthPart(result: RunglineResult): string[] {
+  const law = result.strength_law;
+  if (law === null) return [...heading("Strength law"), `  ${NOT_DETERMINED_WORDS}`];
+  const b = law.base === "n" ? "n" : "(n - delta)";
+  const formula =
+    { cubic: `A_n = C ${b}^-3`, "p-envelope": "A_n = C (n^2 - 1)/n^5", sheet: "A_n = C (n - 1/2)^-3" }[
+      law.law
+    ] ?? law.law;
+  return [
+    ...heading(`Strength law: ${formula}, n = ${law.fit_n[0]} to ${law.fit_n[1]}`),
+    ...textTable(
+      [
+        [
+          "coefficient C",
+          formatQuantity(law.coefficient.value, law.coefficient.sigma, areaUnit(result.reading.signal_unit), {
+            ...ends(law.coefficient),
+          }),
+        ],
+        [
+          "area n^3 down to half of the law",
+          law.half_at_n === null ? "not within the lines seen" : `at n = ${formatNumber(law.half_at_n, 3)}`,
+        ],
+      ],
+      ["left", "left"],
+    ),
+    `  chi square ${formatNumber(law.chi2)} for ${law.dof} degrees of freedom, p = ${formatNumber(law.p, 3)}`,
+  ];
+}
+
+function tailPart(result: RunglineResult): string[] {
+  const { tail } = result;
+  if (tail === null) return [];
+  return [
+    ...heading("Tail: lines above the last one told apart, and the continuum"),
+    `  factor on the strength law ${pure(tail.factor)}, n = ${tail.from_n} to ${tail.to_n}`,
+  ];
+}
+
+function linesPart(result: RunglineResult): string[] {
+  if (result.lines.length === 0) return [...heading("Lines"), "  none"];
+  const widthUnit = smallestUnit(result.lines.map((line) => line.width_eV.value));
+  const unit = areaUnit(result.reading.signal_unit);
+  const signalUnit = signalUnitWords(result.reading.signal_unit);
+  const rows = [
+    [
+      "n",
+      "E_n/eV",
+      `G_n/${widthUnit.name}`,
+      `area/(${unit})`,
+      "q",
+      "area/sigma",
+      "E_n - law/µeV",
+      signalUnit === "" ? "peak" : `peak/(${signalUnit})`,
+      "G_n/spacing",
+      "lifetime/ps",
+    ],
+    ...result.lines.map((line) => [
+      String(line.n),
+      bare(line.energy_eV, 1),
+      bare(line.width_eV, widthUnit.perElectronvolt),
+      bare(line.area, 1),
+      bare(line.asymmetry, 1),
+      formatNumber(line.significance, 3),
+      bare(line.law_offset_eV, 1e6) + (line.in_level_fit ? "" : " *"),
+      bare(line.peak, 1),
+      formatNumber(line.width_over_spacing, 2),
+      bare(line.lifetime_ps, 1),
+    ]),
+  ];
+  const align: Align[] = ["right", ...Array.from({ length: 9 }, (): Align => "left")];
+  const strengths = result.lines.filter((line) => line.strength_per_cm3.value !== null);
+  const left = result.lines.some((line) => !line.in_level_fit);
+  return [
+    ...heading("Lines"),
+    ...textTable(rows, align),
+    "  G_n: full width at half maximum of the Lorentzian part; q: asymmetry.",
+    ...(left ? ["  * not in the fit of the level law"] : []),
+    ...(strengths.length === 0
+      ? []
+      : [
+          "",
+          "  Oscillator strength times density:",
+          ...textTable(
+            strengths.map((line) => [
+              `n = ${line.n}`,
+              formatQuantity(line.strength_per_cm3.value, line.strength_per_cm3.sigma, "1/cm^3"),
+            ]),
+            ["left", "left"],
+            "    ",
+          ),
+        ]),
+  ];
+}
+
+function smallestUnit(values: readonly (number | null)[]): EnergyUnit {
+  const known = values.filter((value): value is number => value !== null && value > 0);
+  const median = [...known].sort((a, b) => a - b)[Math.floor(known.length / 2)];
+  return median === undefined || median < 2e-3 ? MICROELECTRONVOLT : MILLIELECTRONVOLT;
+}
+
+/** Value and error where the unit stands in the head of the column. */
+function bare(quantity: Quantity, factor: number): string {
+  const scaled = scaleQuantity(quantity, factor);
+  if (scaled.value !== null && scaled.sigma === null) return `${formatNumber(scaled.value, 6)}(?)`;
+  return formatQuantity(scaled.value, scaled.sigma, "", { ...ends(scaled), exactWord: "held" });
+}
+
+function derivedPart(result: RunglineResult): string[] {
+  const { derived } = result;
+  if (derived === null) return [];
+  const rows: string[][] = [
+    [
+      "Bohr radius",
+      formatQuantity(
+        derived.bohr_radius_nm.value,
+        derived.bohr_radius_nm.sigma,
+        "nm",
+        ends(derived.bohr_radius_nm),
+      ),
+      derived.bohr_radius_from,
+    ],
+    [
+      `binding energy of n = ${derived.binding_eV.n}`,
+      formatEnergy(derived.binding_eV, energyUnit(derived.binding_eV.value)),
+      "",
+    ],
+    ["apparent gap", formatEnergy(derived.apparent_gap_eV, ELECTRONVOLT), ""],
+    ["highest n seen", derived.highest_n === null ? NOT_DETERMINED_WORDS : String(derived.highest_n), ""],
+    [
+      "highest n told apart",
+      derived.highest_resolved_n === null ? NOT_DETERMINED_WORDS : String(derived.highest_resolved_n),
+      "width below spacing",
+    ],
+    ...derived.radius_um.map((radius) => [
+      `radius of n = ${radius.n}`,
+      formatQuantity(radius.value, radius.sigma, "µm", ends(radius)),
+      "",
+    ]),
+  ];
+  return [...heading("Derived"), ...textTable(rows, ["left", "left", "left"])];
+}
+
+function backgroundPart(result: RunglineResult): string[] {
+  if (result.background.length === 0) return [];
+  return [
+    ...heading("Background"),
+    ...textTable(
+      result.background.map((one) => [
+        one.term,
+        one.name,
+        formatQuantity(one.quantity.value, one.quantity.sigma, signalUnitWords(one.unit), ends(one.quantity)),
+      ]),
+      ["left", "left", "left"],
+    ),
+  ];
+}
+
+function fitPart(result: RunglineResult): string[] {
+  const { fit } = result;
+  if (fit === null) return [];
+  const reached = Object.entries(fit.reached)
+    .map(
+      ([name, value]) =>
+        `${name} ${formatNumber(value, 2)} (limit ${formatNumber(fit.tolerances[name] ?? null, 2)})`,
+    )
+    .join("; ");
+  const rows: string[][] = [
+    [
+      "window",
+      `${formatNumber(fit.window_eV[0], 6)} to ${formatNumber(fit.window_eV[1], 6)} eV, fitted as ${fit.domain}`,
+    ],
+    ["stopped by", `${TERMINATION_WORDS[fit.termination]} after ${fit.iterations} iterations`],
+    ["reached", reached === "" ? NOT_DETERMINED_WORDS : reached],
+    [
+      "chi square",
+      `${formatNumber(fit.chi2, 6)} for ${fit.dof} degrees of freedom, reduced ${formatNumber(fit.reduced_chi2)}`,
+    ],
+    ["AIC, BIC", `${formatNumber(fit.aic, 6)}, ${formatNumber(fit.bic, 6)}`],
+    [
+      "residuals",
+      `p of runs ${formatNumber(fit.runs_p, 2)}; Durbin-Watson ${formatNumber(fit.durbin_watson, 3)}; correlation of neighbours ${formatNumber(
+        fit.lag1,
+        2,
+      )}; effective points ${formatNumber(fit.effective_points, 5)}`,
+    ],
+    ["parameters", `${fit.parameters}, rank ${fit.rank}, condition ${formatNumber(fit.condition, 2)}`],
+    [
+      "standard errors",
+      fit.sigma_from === "given" ? "from the given or estimated noise" : "scaled by the residuals",
+    ],
+  ];
+  return [...heading("Fit"), ...textTable(rows, ["left", "left"])];
+}
+
+function notesPart(result: RunglineResult): string[] {
+  if (result.notes.length === 0) return [...heading("Notes"), "  none"];
+  return [
+    ...heading("Notes"),
+    ...gravestFirst(result.notes).flatMap((note) => [
+      `  ${note.level === "doubt" ? "DOUBT" : "assumed"} ${note.code} (${note.about})`,
+      ...wrap(note.text, "    "),
+      ...(note.remedy === "" ? [] : wrap(`Remedy: ${note.remedy}`, "    ")),
+    ]),
+  ];
+}
+
+function cautionsPart(result: RunglineResult): string[] {
+  const cautions = cautionsFor(result);
+  if (cautions.length === 0) return [];
+  return [...heading("Cautions"), ...cautions.flatMap((caution) => wrap(caution, "  "))];
+}

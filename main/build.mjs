@@ -1,0 +1,181 @@
+/**
+ * Builds the parts of Rungline into dist/. Each part carries a stamp of its sources (path, size, time of change);
+ * a part whose stamp still fits is left alone. Files are built beside and renamed one by one, those that others
+ * refer to first, so that starts at the same moment cannot hand each other half a program.
+ *
+ *   node main/build.mjs [PART...]     parts: command-line, electron, window; all without a word
+ */
+import { createHash } from "node:crypto";
+import { mkdir, readdir, rename, rm, stat, writeFile } from "node:fs/promises";
+import { existsSync, readdirSync, readFileSync, statSync } from "node:fs";
+import { dirname, join, relative } from "node:path";
+import { fileURLToPath } from "node:url";
+
+export const ROOT = dirname(dirname(fileURLToPath(import.meta.url)));
+const DIST = join(ROOT, "dist");
+
+/** What each part is made of, and how. */
+const PARTS = {
+  "command-line": { sources: ["app", "main"], build: buildCommandLine },
+  electron: { sources: ["app", "main"], build: buildElectron },
+  window: { sources: ["app", "renderer"], build: buildWindow },
+};
+const SHARED_SOURCES = ["package.json", "package-lock.json", "main/build.mjs"];
+
+export const PART_NAMES = Object.keys(PARTS);
+
+/** True where dist holds this part as its sources stand now. */
+export function isFresh(part) {
+  const file = stampFile(part);
+  return existsSync(file) && readFileSync(file, "utf8") === stampOf(part);
+}
+
+/** Builds those of the parts that are not fresh; words about it go to standard error. */
+export async function buildParts(parts) {
+  for (const part of parts) {
+    if (isFresh(part)) continue;
+    const stamp = stampOf(part);
+    const began = Date.now();
+    process.stderr.write(`rungline: building ${part} ...\n`);
+    await PARTS[part].build();
+    await putFile(stampFile(part), stamp);
+    process.stderr.write(`rungline: built ${part} in ${((Date.now() - began) / 1000).toFixed(1)} s\n`);
+  }
+}
+
+function stampFile(part) {
+  return join(DIST, `.${part}.stamp`);
+}
+
+function stampOf(part) {
+  const hash = createHash("sha256");
+  const add = (path) => {
+    const { size, mtimeMs } = statSync(path);
+    hash.update(`${relative(ROOT, path)} ${size} ${mtimeMs}\n`);
+  };
+  const walk = (folder) => {
+    for (const entry of readdirSync(folder, { withFileTypes: true }).sort((a, b) =>
+      a.name < b.name ? -1 : 1,
+    )) {
+      const path = join(folder, entry.name);
+      if (entry.isDirectory()) walk(path);
+      else add(path);
+    }
+  };
+  for (const folder of PARTS[part].sources) walk(join(ROOT, folder));
+  for (const file of SHARED_SOURCES) add(join(ROOT, file));
+  return hash.digest("hex");
+}
+
+function version() {
+  return JSON.parse(readFileSync(join(ROOT, "package.json"), "utf8")).version;
+}
+
+async function bundle(options) {
+  const { build } = await import("esbuild");
+  const { outputFiles } = await build({
+    absWorkingDir: ROOT,
+    bundle: true,
+    minify: true,
+    keepNames: true,
+    platform: "node",
+    target: "node20",
+    legalComments: "none",
+    logLevel: "warning",
+    logOverride: { "empty-import-meta": "silent" },
+    define: { RUNGLINE_VERSION: JSON.stringify(version()) },
+    ...options,
+    write: false,
+  });
+  return outputFiles;
+}
+
+async function buildCommandLine() {
+  const folder = join(DIST, "main");
+  const files = await bundle({
+    entryPoints: {
+      "command-line": "main/command-line/main.ts",
+      "fit-thread": "main/services/fit-thread.ts",
+    },
+    outdir: folder,
+    format: "esm",
+    splitting: true,
+    outExtension: { ".js": ".mjs" },
+    chunkNames: "parts/[name]-[hash]",
+    // Packages written for `require` ask for Node's own modules through it.
+    banner: {
+      js: 'import{createRequire as $require}from"node:module";const require=$require(import.meta.url);',
+    },
+  });
+  const isEntry = (path) => dirname(path) === folder;
+  for (const file of files) if (!isEntry(file.path)) await putFile(file.path, file.contents);
+  for (const file of files) if (isEntry(file.path)) await putFile(file.path, file.contents);
+  await removeOthers(join(folder, "parts"), new Set(files.map((file) => file.path)));
+}
+
+async function buildElectron() {
+  const { electronBuildOptions } = await import("./electron/build-options.mjs");
+  for (const options of electronBuildOptions(ROOT))
+    for (const file of await bundle(options)) await putFile(file.path, file.contents);
+}
+
+async function buildWindow() {
+  const { build } = await import("vite");
+  const beside = join(DIST, `.renderer-${process.pid}`);
+  const folder = join(DIST, "renderer");
+  try {
+    await build({
+      root: join(ROOT, "renderer"),
+      configFile: join(ROOT, "renderer", "vite.config.ts"),
+      logLevel: "error",
+      build: { outDir: beside, emptyOutDir: true },
+    });
+    const built = await listFiles(beside);
+    // index.html last: it names the others, whose names carry a hash of what they hold.
+    const isIndex = (path) => path === "index.html";
+    const ordered = [...built.filter((path) => !isIndex(path)), ...built.filter(isIndex)];
+    for (const path of ordered) {
+      await mkdir(dirname(join(folder, path)), { recursive: true });
+      await rename(join(beside, path), join(folder, path));
+    }
+    await removeOthers(folder, new Set(built.map((path) => join(folder, path))));
+  } finally {
+    await rm(beside, { recursive: true, force: true });
+  }
+}
+
+async function putFile(path, contents) {
+  await mkdir(dirname(path), { recursive: true });
+  const beside = `${path}.${process.pid}.part`;
+  await writeFile(beside, contents);
+  await rename(beside, path);
+}
+
+/** Left over from earlier builds; a file made within the last minute may belong to a build under way. */
+async function removeOthers(folder, keep) {
+  for (const path of await listFiles(folder)) {
+    const full = join(folder, path);
+    if (keep.has(full)) continue;
+    const age = Date.now() - (await stat(full).catch(() => ({ mtimeMs: Date.now() }))).mtimeMs;
+    if (age > 60_000) await rm(full, { force: true });
+  }
+}
+
+async function listFiles(folder, below = "") {
+  const files = [];
+  for (const entry of await readdir(join(folder, below), { withFileTypes: true }).catch(() => [])) {
+    const path = below === "" ? entry.name : `${below}/${entry.name}`;
+    if (entry.isDirectory()) files.push(...(await listFiles(folder, path)));
+    else files.push(path);
+  }
+  return files;
+}
+
+if (process.argv[1] !== undefined && fileURLToPath(import.meta.url) === process.argv[1]) {
+  const asked = process.argv.slice(2);
+  const unknown = asked.filter((part) => !PART_NAMES.includes(part));
+  if (unknown.length > 0) {
+    process.stderr.write(`rungline: no part ${unknown.join(", ")}; parts: ${PART_NAMES.join(", ")}\n`);
+    process.exitCode = 2;
+  } else await buildParts(asked.length > 0 ? asked : PART_NAMES);
+}

@@ -1,0 +1,51 @@
+import { readFile } from "node:fs/promises";
+import { resolve } from "node:path";
+import { inspectionToText } from "../../app/report/index.ts";
+import { inspectFile, wordIssue } from "../../app/tasks/index.ts";
+import { listInputs, reasonInWords } from "../services/index.ts";
+import { readChoices, type ChoiceOptions } from "./choices.ts";
+import type { CommandLineIo } from "./command-line-io.ts";
+import { EXIT } from "./exit-status.ts";
+import { sayFault } from "./say.ts";
+
+/** `rungline inspect FILE...`: how each file was read, and what was skipped. */
+export async function inspectCommand(
+  words: readonly string[],
+  options: ChoiceOptions,
+  io: CommandLineIo,
+  signal: AbortSignal,
+): Promise<number> {
+  const { choices } = await readChoices(options, io.workingFolder);
+  const inputs = await listInputs(words, io.workingFolder);
+  let status: number = EXIT.done;
+  for (const folder of inputs.emptyFolders) {
+    io.stderr(`rungline: ${folder}: no spectrum files in this folder\n`);
+    status = EXIT.input;
+  }
+  let shown = 0;
+  for (const { path, file } of inputs.files) {
+    if (signal.aborted) return EXIT.cancelled;
+    let bytes: Uint8Array;
+    try {
+      bytes = await readFile(resolve(io.workingFolder, path));
+    } catch (cause) {
+      io.stderr(`rungline: ${path}: ${reasonInWords(cause)}\n`);
+      status = Math.max(status, EXIT.input);
+      continue;
+    }
+    try {
+      const inspection = inspectFile({ file, bytes, choices });
+      if (inspection.ok) {
+        await io.stdout((shown++ > 0 ? "\n" : "") + inspectionToText(inspection.value));
+        continue;
+      }
+      for (const { message, remedy } of inspection.issues.map(wordIssue))
+        io.stderr(`rungline: ${message}${remedy === "" ? "" : `\n  ${remedy}`}\n`);
+      status = Math.max(status, EXIT.input);
+    } catch (thrown) {
+      sayFault(thrown, io, path);
+      status = Math.max(status, EXIT.fault);
+    }
+  }
+  return status;
+}

@@ -1,0 +1,105 @@
+import { basename, dirname, extname, join, resolve } from "node:path";
+import {
+  makeFolder,
+  mayReplace,
+  pathKind,
+  requireFolderOf,
+  resultNames,
+  type InputList,
+  type OutputKind,
+} from "../services/index.ts";
+import { UsageError } from "./exit-status.ts";
+
+export type Format = "json" | "csv" | "text";
+
+/** Where results go. `print`: standard output; `file`: one result; `folder`: one a file and a summary. */
+export type OutputPlace =
+  | { readonly kind: "print"; readonly format: Format }
+  | { readonly kind: "file"; readonly format: Format; readonly result: string; readonly protocol: string }
+  | {
+      readonly kind: "folder";
+      readonly format: Format;
+      readonly folder: string;
+      readonly protocol: string;
+      readonly summary: string;
+      readonly failures: string;
+      /** NAME.json for each input, in order. */
+      readonly results: readonly string[];
+      /** NAME.csv or NAME.txt beside it, where that format was asked for. */
+      readonly others: readonly (string | null)[];
+    };
+
+/** Found out and, where something is in the way, refused before any work is done. */
+export async function placeOutput(
+  out: string | undefined,
+  format: Format | undefined,
+  inputs: InputList,
+  workingFolder: string,
+): Promise<OutputPlace> {
+  if (out === undefined) return { kind: "print", format: format ?? "text" };
+  const path = resolve(workingFolder, out);
+  const toFolder = inputs.hasFolder || inputs.files.length > 1;
+  return toFolder
+    ? placeInFolder(path, out, format ?? "json", inputs, workingFolder)
+    : placeInFile(path, out, format ?? formatOf(path));
+}
+
+function formatOf(path: string): Format {
+  const ending = extname(path).toLowerCase();
+  return ending === ".json" ? "json" : ending === ".csv" ? "csv" : "text";
+}
+
+async function placeInFile(path: string, shown: string, format: Format): Promise<OutputPlace> {
+  if (shown.endsWith("/") || (await pathKind(path)) === "folder")
+    throw new UsageError(`--out ${shown}: is a folder, but for one input it names a file`);
+  const protocol = join(dirname(path), `${basename(path, extname(path))}.protocol.json`);
+  await refuseOthers([
+    [path, "result"],
+    [protocol, "protocol"],
+  ]);
+  await requireFolderOf(path);
+  return { kind: "file", format, result: path, protocol };
+}
+
+async function placeInFolder(
+  folder: string,
+  shown: string,
+  format: Format,
+  inputs: InputList,
+  workingFolder: string,
+): Promise<OutputPlace> {
+  const kind = await pathKind(folder);
+  if (kind !== "none" && kind !== "folder")
+    throw new UsageError(`--out ${shown}: is a file, but for several inputs or a folder it names a folder`);
+  const names = resultNames(inputs.files, workingFolder);
+  const ending = format === "csv" ? ".csv" : format === "text" ? ".txt" : null;
+  const place: OutputPlace = {
+    kind: "folder",
+    format,
+    folder,
+    protocol: join(folder, "protocol.json"),
+    summary: join(folder, "summary.csv"),
+    failures: join(folder, "failures.json"),
+    results: names.map((name) => join(folder, `${name}.json`)),
+    others: names.map((name) => (ending === null ? null : join(folder, name + ending))),
+  };
+  await refuseOthers([
+    [place.protocol, "protocol"],
+    [place.summary, "summary"],
+    [place.failures, "failures"],
+    ...place.results.map((file): [string, OutputKind] => [file, "result"]),
+    ...place.others.flatMap((file): [string, OutputKind][] => (file === null ? [] : [[file, "result"]])),
+  ]);
+  await makeFolder(folder);
+  return place;
+}
+
+/** A result may be replaced by a result; nothing else that exists is touched. */
+async function refuseOthers(files: readonly (readonly [string, OutputKind])[]): Promise<void> {
+  for (const [file, kind] of files) {
+    if (!(await mayReplace(file, kind)))
+      throw new UsageError(
+        `${file}: exists and is not a ${kind} of Rungline; it is not replaced, choose another --out`,
+      );
+  }
+}

@@ -1,0 +1,162 @@
+import { Command, CommanderError, InvalidArgumentError, Option } from "commander";
+import type { WindowOptions } from "../loopback/index.ts";
+import { OutputError, programVersion } from "../services/index.ts";
+import type { CommandLineIo } from "./command-line-io.ts";
+import { EXIT, UsageError } from "./exit-status.ts";
+import type { FitOptions } from "./fit-command.ts";
+import type { ChoiceOptions } from "./choices.ts";
+import { sayFault } from "./say.ts";
+
+/**
+ * The command line as a function: arguments (without the program's own name) to an exit status. Results go to
+ * standard output, everything else to standard error. Never throws.
+ */
+export async function runCommandLine(
+  argv: readonly string[],
+  io: CommandLineIo,
+  signal: AbortSignal,
+): Promise<number> {
+  let status: number = EXIT.done;
+  let help = "";
+  const program = describeProgram(
+    io,
+    signal,
+    (value) => {
+      status = value;
+    },
+    (text) => {
+      help += text;
+    },
+  );
+  try {
+    await program.parseAsync([...argv], { from: "user" });
+    if (help !== "") await io.stdout(help);
+    return status;
+  } catch (thrown) {
+    if (thrown instanceof CommanderError) {
+      if (thrown.exitCode !== 0) return EXIT.usage;
+      try {
+        await io.stdout(help);
+        return EXIT.done;
+      } catch {
+        return EXIT.output;
+      }
+    }
+    if (thrown instanceof UsageError) {
+      io.stderr(`rungline: ${thrown.message}\n`);
+      return EXIT.usage;
+    }
+    if (thrown instanceof OutputError) {
+      io.stderr(`rungline: ${thrown.message}\n`);
+      return EXIT.output;
+    }
+    sayFault(thrown, io);
+    return EXIT.fault;
+  }
+}
+
+function describeProgram(
+  io: CommandLineIo,
+  signal: AbortSignal,
+  end: (status: number) => void,
+  say: (text: string) => void,
+): Command {
+  const program = new Command("rungline")
+    .description(
+      "From absorption or transmission files of a crystal to the gap, Rydberg energy, quantum defect and linewidth law of its exciton series.",
+    )
+    .version(programVersion(), "--version", "print the version")
+    .exitOverride()
+    .configureOutput({
+      writeOut: say,
+      writeErr: (text) => io.stderr(text),
+      outputError: (text, write) => write(`rungline: ${text.replace(/^error: /, "")}`),
+    })
+    .showSuggestionAfterError(true)
+    .helpCommand(false)
+    .addHelpText(
+      "after",
+      "\nExit status: 0 done; 1 fault; 2 wrong usage; 3 input unreadable; 4 not converged or no series; 5 output not written; 130 cancelled.\nProgress and notes go to standard error.",
+    );
+
+  addChoices(
+    program
+      .command("inspect")
+      .description("what was read: dialect, columns, units, range, noise, what was skipped")
+      .argument("<file...>", "spectra, or folders of spectra"),
+  ).action(async (files: string[], options: ChoiceOptions) => {
+    const { inspectCommand } = await import("./inspect-command.ts");
+    end(await inspectCommand(files, options, io, signal));
+  });
+
+  addChoices(
+    program
+      .command("fit")
+      .description("spectrum to result")
+      .argument("<file...>", "spectra, or folders of spectra"),
+  )
+    .option("--out <path>", "a file for one input; a folder for several or for a folder")
+    .addOption(new Option("--format <format>", "how results are written").choices(["json", "csv", "text"]))
+    .action(async (files: string[], options: FitOptions) => {
+      const { fitCommand } = await import("./fit-command.ts");
+      end(await fitCommand(files, options, io, signal));
+    });
+
+  addChoices(
+    program
+      .command("window")
+      .description("open the window; without a path on the demo run")
+      .argument("[path...]", "spectra or folders to open"),
+  )
+    .option("--serve", "only serve it on loopback, print the address with its token, and stay", false)
+    .action(async (paths: string[], options: ChoiceOptions & { serve: boolean }) => {
+      const { readChoices } = await import("./choices.ts");
+      const { choices } = await readChoices(options, io.workingFolder);
+      const { openWindow } = await import("../loopback/index.ts");
+      const request: WindowOptions = { paths, choices, serve: options.serve };
+      end(await openWindow(request, shellIo(io, signal)));
+    });
+
+  program
+    .command("start")
+    .description("open the window on the demo run and print its result")
+    .action(async () => {
+      const { startDemo } = await import("../loopback/index.ts");
+      end(await startDemo(shellIo(io, signal)));
+    });
+
+  return program;
+}
+
+function addChoices(command: Command): Command {
+  return command
+    .option("--protocol <file>", "the choices that turn a spectrum into a result, as a protocol file", once())
+    .option("--material <id>", "material preset: starting values only", once())
+    .option(
+      "--set <key=value>",
+      "one choice by its dotted key; may be repeated, later ones win",
+      (setting: string, before: readonly string[]) => [...before, setting],
+      [],
+    );
+}
+
+/** An option that is given twice is more likely a slip than a wish. */
+function once(): (value: string, before: string | undefined) => string {
+  return (value, before) => {
+    if (before !== undefined && before !== value) throw new InvalidArgumentError("It is given twice.");
+    return value;
+  };
+}
+
+function shellIo(
+  io: CommandLineIo,
+  signal: AbortSignal,
+): Parameters<typeof import("../loopback/index.ts").startDemo>[0] {
+  return {
+    out: (text) => void io.stdout(text),
+    error: (text) => io.stderr(text),
+    environment: io.environment,
+    interactive: io.interactive,
+    cancel: signal,
+  };
+}
