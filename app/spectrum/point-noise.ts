@@ -1,0 +1,113 @@
+import { assumption, doubt, type Note } from "../base/index.ts";
+import { estimateNoise } from "./estimate-noise.ts";
+import type { Points } from "./gather-points.ts";
+import { count } from "./gather-points.ts";
+import { smoothCurve } from "./smooth-curve.ts";
+import type { Spectrum } from "./spectrum.ts";
+
+export interface PointNoise {
+  readonly source: Spectrum["noise"]["source"];
+  /** One standard deviation per point in the unit of the value; above zero everywhere. */
+  readonly sigma: Float64Array;
+  /** The value without its noise, for weights. */
+  readonly smooth: Float64Array;
+  readonly notes: readonly Note[];
+}
+
+const ABOUT = "fit";
+/** So many given neighbours stand for a missing standard deviation. */
+const NEIGHBOURS = 11;
+
+/** `fixed`: the protocol's sigma in the unit of the value, null where it says nothing; `counts`: it is one of counts. */
+export function pointNoise(points: Points, fixed: number | null, counts: boolean): PointNoise {
+  const { energy_eV, value, relative, sigma } = points;
+  if (fixed !== null) {
+    const all = value.map((T, i) => {
+      // A reading of counts has the noise of S and of F in it: sigma_T = sigma sqrt(1 + T^2)/(F - D).
+      const factor = counts ? Math.sqrt(1 + T * T) / points.divisor[i]! : 1;
+      return fixed * relative[i]! * factor;
+    });
+    return { source: "protocol", sigma: all, smooth: smoothCurve(value, all), notes: [] };
+  }
+  const notes: Note[] = [];
+  if (sigma !== null) {
+    const missing = sigma.reduce((sum, one) => sum + (one > 0 ? 0 : 1), 0);
+    if (missing > 0)
+      notes.push(
+        doubt(
+          "sigma-missing",
+          ABOUT,
+          missing === sigma.length
+            ? "the column of standard deviations holds none above zero: the noise is estimated from the data instead"
+            : `${count(missing, "point")} of ${sigma.length} have a standard deviation of zero or none, which means unknown and not exact: each takes the median of its ${NEIGHBOURS} nearest given ones`,
+          "complete the column, or set noise.sigma",
+        ),
+      );
+    if (missing < sigma.length) {
+      const filled = fillMissing(sigma);
+      return { source: "column", sigma: filled, smooth: smoothCurve(value, filled), notes };
+    }
+  }
+  const estimate = estimateNoise(energy_eV, value, relative);
+  if (estimate.sigma.some((one) => !(one > 0))) {
+    const range = Math.max(spread(value), Number.MIN_VALUE);
+    notes.push(
+      doubt(
+        "noise-not-seen",
+        ABOUT,
+        "the data show no noise from point to point (smoothed or computed): errors cannot be estimated from them, and a billionth of the signal's range stands in",
+        "set noise.sigma, or fit the unsmoothed readings",
+      ),
+    );
+    const sigmas = relative.map((factor) => 1e-9 * range * factor);
+    return { source: "estimated", sigma: sigmas, smooth: value.slice(), notes };
+  }
+  const varies = estimate.varies ? "it changes with the height of the signal" : "the same for all points";
+  notes.push(
+    assumption(
+      "noise-estimated",
+      ABOUT,
+      `no standard deviation is given; the noise from point to point is estimated from the data: ${shortest(estimate.sigma)} (median, in the unit of the reading), ${varies}`,
+      "name a column with signal.sigma_column, or set noise.sigma",
+    ),
+  );
+  return { source: "estimated", sigma: estimate.sigma, smooth: estimate.smooth, notes };
+}
+
+/** Gaps filled with the median of the nearest given values, in order of place. */
+function fillMissing(sigma: Float64Array): Float64Array {
+  const given: number[] = [];
+  for (let i = 0; i < sigma.length; i++) if (sigma[i]! > 0) given.push(i);
+  const out = sigma.slice();
+  let first = 0;
+  for (let i = 0; i < sigma.length; i++) {
+    if (sigma[i]! > 0) continue;
+    // `first` is the start of the nearest run of given places; it only moves up.
+    while (first + NEIGHBOURS < given.length && i - given[first]! > given[first + NEIGHBOURS]! - i) first++;
+    const near = given
+      .slice(first, first + NEIGHBOURS)
+      .map((place) => sigma[place]!)
+      .sort((a, b) => a - b);
+    out[i] = near[near.length >> 1]!;
+  }
+  return out;
+}
+
+function spread(values: Float64Array): number {
+  let low = Infinity;
+  let high = -Infinity;
+  for (const value of values) {
+    low = Math.min(low, value);
+    high = Math.max(high, value);
+  }
+  return high - low;
+}
+
+export function median(values: Float64Array): number {
+  const sorted = values.filter((value) => Number.isFinite(value)).sort();
+  return sorted.length === 0 ? NaN : sorted[sorted.length >> 1]!;
+}
+
+function shortest(sigma: Float64Array): string {
+  return String(Number(median(sigma).toPrecision(3)));
+}
