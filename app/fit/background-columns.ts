@@ -1,0 +1,57 @@
+import {
+  interpolateColumn,
+  measuredTerm,
+  polynomialTerm,
+  squareRootOnsetTerm,
+  urbachTerm,
+  type BackgroundTerm as LineTerm,
+} from "../lines/index.ts";
+import type { BackgroundTerm } from "../protocol/index.ts";
+import type { BackgroundColumn } from "./model-spec.ts";
+
+/** The protocol's background terms as columns on these energies; `gap` is where an Urbach tail is referred to. */
+export function backgroundColumns(
+  terms: readonly BackgroundTerm[],
+  energy: Float64Array,
+  signalUnit: string,
+  gap: number,
+): BackgroundColumn[] {
+  const m = energy.length;
+  const middle = (energy[0]! + energy[m - 1]!) / 2;
+  const halfSpan = Math.max((energy[m - 1]! - energy[0]!) / 2, Number.MIN_VALUE);
+  return terms.flatMap((choice): BackgroundColumn[] => {
+    const { term, nonlinear, unit } = lineTerm(choice, energy, signalUnit, middle, halfSpan, gap);
+    const out = new Float64Array(m * term.columns.length);
+    term.fill(energy, 0, m, nonlinear, out, 0, m);
+    return term.columns.map((name, j) => ({
+      term: choice.term,
+      name,
+      unit,
+      values: out.subarray(j * m, (j + 1) * m),
+    }));
+  });
+}
+
+function lineTerm(
+  choice: BackgroundTerm,
+  energy: Float64Array,
+  signalUnit: string,
+  middle: number,
+  halfSpan: number,
+  gap: number,
+): { term: LineTerm; nonlinear: number[]; unit: string } {
+  switch (choice.term) {
+    case "polynomial":
+      return { term: polynomialTerm(choice.order, middle, halfSpan), nonlinear: [], unit: signalUnit };
+    case "square-root":
+      return { term: squareRootOnsetTerm(choice.onset_eV), nonlinear: [], unit: `${signalUnit} eV^-1/2` };
+    case "urbach":
+      return { term: urbachTerm(gap), nonlinear: [choice.energy_eV], unit: signalUnit };
+    case "measured": {
+      const column = new Float64Array(energy.length);
+      const source = [Float64Array.from(choice.energy_eV), Float64Array.from(choice.value)] as const;
+      interpolateColumn(source[0], source[1], energy, 0, energy.length, column);
+      return { term: measuredTerm(column), nonlinear: [], unit: "1" };
+    }
+  }
+}

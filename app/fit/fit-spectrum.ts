@@ -1,0 +1,183 @@
+import { NO_WATCH, type Watch } from "../base/index.ts";
+import { LEVEL, levelLaw } from "../laws/index.ts";
+import { solveSeparable, type SeparableSolution } from "../solve/index.ts";
+import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
+import { SpectrumProblem } from "./spectrum-problem.ts";
+
+/** Where the parameters of the lines stand in `LineParameters`. */
+export interface LineParameters {
+  readonly ns: readonly number[];
+  readonly energy: Float64Array;
+  readonly width: Float64Array;
+  readonly area: Float64Array;
+  /** One q per line (the same where it is shared). */
+  readonly asymmetry: Float64Array;
+  /** Covariance of [energies, widths, areas, asymmetries], each block in the order of ns: 4k x 4k, row-major. */
+  readonly covariance: Float64Array;
+}
+
+export interface SpectrumFit {
+  readonly problem: SpectrumProblem;
+  readonly solution: SeparableSolution;
+  readonly lines: LineParameters;
+  readonly asymmetry: { readonly value: number; readonly sigma: number };
+  readonly factor: { readonly value: number; readonly sigma: number; readonly atBound: boolean } | null;
+  readonly laws: { readonly levels: LevelValues; readonly widths: WidthValues } | null;
+  readonly background: readonly {
+    readonly term: string;
+    readonly name: string;
+    readonly unit: string;
+    readonly value: number;
+    readonly sigma: number;
+  }[];
+  /** n of lines that ended at a bound of their energy or width. */
+  readonly atBound: readonly number[];
+}
+
+export interface FitStart {
+  readonly lines: readonly LineStart[];
+  readonly asymmetry: number;
+  readonly factor: number;
+  /** Half width of the interval that each line's energy may move in (eV), by n. */
+  readonly reach: ReadonlyMap<number, number>;
+}
+
+export interface FitControl {
+  readonly maxIterations?: number;
+  readonly gradientTolerance?: number;
+  readonly costTolerance?: number;
+  readonly watch?: Watch;
+}
+
+/** Largest |q|; far beyond what any published exciton line shows. */
+const ASYMMETRY_BOUND = 5;
+/** The tied lines may fall short of the strength law, and exceed it a little (PHYSICS of the tail). */
+export const FACTOR_BOUND = 1.2;
+const WIDTH_BOUND_FACTOR = 30;
+
+/** Fits one spectrum and returns the parameters of its lines with their full covariance. */
+export function fitSpectrum(
+  points: FitPoints,
+  spec: ModelSpec,
+  start: FitStart,
+  control: FitControl = {},
+): SpectrumFit {
+  const problem = new SpectrumProblem(points, spec);
+  const theta = problem.startFrom(start.lines, start.asymmetry, start.factor);
+  const { lower, upper } = bounds(problem, start, theta);
+  for (let i = 0; i < theta.length; i++) theta[i] = Math.min(upper[i]!, Math.max(lower[i]!, theta[i]!));
+  const solution = solveSeparable(problem, theta, {
+    lower,
+    upper,
+    maxIterations: control.maxIterations ?? 100,
+    gradientTolerance: control.gradientTolerance ?? 1e-7,
+    costTolerance: control.costTolerance ?? 1e-11,
+    watch: control.watch ?? NO_WATCH,
+  });
+  return describeFit(problem, solution);
+}
+
+function bounds(
+  problem: SpectrumProblem,
+  start: FitStart,
+  theta: Float64Array,
+): { lower: Float64Array; upper: Float64Array } {
+  const { layout, spec } = problem;
+  const lower = new Float64Array(layout.count).fill(-Infinity);
+  const upper = new Float64Array(layout.count).fill(Infinity);
+  spec.ns.forEach((n, j) => {
+    const e = layout.energyAt[j]!;
+    const reach = start.reach.get(n);
+    if (e >= 0 && reach !== undefined) {
+      lower[e] = theta[e]! - reach;
+      upper[e] = theta[e]! + reach;
+    }
+    const w = layout.widthAt[j]!;
+    lower[w] = theta[w]! / WIDTH_BOUND_FACTOR;
+    upper[w] = theta[w]! * WIDTH_BOUND_FACTOR;
+  });
+  if (layout.asymmetryAt >= 0) {
+    lower[layout.asymmetryAt] = -ASYMMETRY_BOUND;
+    upper[layout.asymmetryAt] = ASYMMETRY_BOUND;
+  }
+  if (layout.factorAt >= 0) {
+    lower[layout.factorAt] = 0;
+    upper[layout.factorAt] = FACTOR_BOUND;
+  }
+  if (layout.lawCount > 1) lower[1] = 1e-9;
+  return { lower, upper };
+}
+
+function describeFit(problem: SpectrumProblem, solution: SeparableSolution): SpectrumFit {
+  const { spec, layout } = problem;
+  const { theta, coefficients, covariance } = solution;
+  const k = spec.ns.length;
+  const p = layout.count;
+  const size = p + problem.linear;
+  const free = spec.asymmetry === "free";
+  const energy = Float64Array.from(spec.ns, (_, j) => problem.energyOf(j, theta));
+  const width = Float64Array.from(spec.ns, (_, j) => theta[layout.widthAt[j]!]!);
+  const area = coefficients.slice(0, k);
+  const shared = problem.asymmetryOf(theta);
+  const asymmetry = Float64Array.from(spec.ns, (_, j) => (free ? coefficients[k + j]! / area[j]! : shared));
+  // Rows of d(line parameters)/d(theta, c), sparse: place and factor.
+  const rows: [number, number][][] = [];
+  const law = new Float64Array(LEVEL.size);
+  for (let j = 0; j < k; j++) {
+    if (layout.energyAt[j]! >= 0) rows.push([[layout.energyAt[j]!, 1]]);
+    else {
+      levelLaw(spec.ns[j]!, { ...problem.lawsAt(theta).levels, defect4: 0 }, law);
+      rows.push(Array.from({ length: layout.lawCount }, (_, i): [number, number] => [i, law[1 + i]!]));
+    }
+  }
+  for (let j = 0; j < k; j++) rows.push([[layout.widthAt[j]!, 1]]);
+  for (let j = 0; j < k; j++) rows.push([[p + j, 1]]);
+  for (let j = 0; j < k; j++) {
+    if (free)
+      rows.push([
+        [p + k + j, 1 / area[j]!],
+        [p + j, -asymmetry[j]! / area[j]!],
+      ]);
+    else rows.push(layout.asymmetryAt >= 0 ? [[layout.asymmetryAt, 1]] : []);
+  }
+  const count = 4 * k;
+  const lineCovariance = new Float64Array(count * count);
+  for (let a = 0; a < count; a++) {
+    for (let b = 0; b <= a; b++) {
+      let sum = 0;
+      for (const [i, fi] of rows[a]!)
+        for (const [j, fj] of rows[b]!) sum += fi * fj * covariance[i * size + j]!;
+      lineCovariance[a * count + b] = sum;
+      lineCovariance[b * count + a] = sum;
+    }
+  }
+  const sigmaAt = (i: number): number => Math.sqrt(covariance[i * size + i]!);
+  const atBound = spec.ns.filter(
+    (_, j) =>
+      (layout.energyAt[j]! >= 0 && solution.activeBounds[layout.energyAt[j]!] !== 0) ||
+      solution.activeBounds[layout.widthAt[j]!] !== 0,
+  );
+  return {
+    problem,
+    solution,
+    lines: { ns: spec.ns, energy, width, area, asymmetry, covariance: lineCovariance },
+    asymmetry: { value: shared, sigma: layout.asymmetryAt >= 0 ? sigmaAt(layout.asymmetryAt) : 0 },
+    factor:
+      spec.tail === null
+        ? null
+        : {
+            value: problem.factorOf(theta),
+            sigma: layout.factorAt >= 0 ? sigmaAt(layout.factorAt) : 0,
+            atBound: layout.factorAt >= 0 && solution.activeBounds[layout.factorAt] !== 0,
+          },
+    laws: spec.tail === null ? null : problem.lawsAt(theta),
+    background: spec.background.map((column, b) => ({
+      term: column.term,
+      name: column.name,
+      unit: column.unit,
+      value: coefficients[problem.backgroundAt + b]!,
+      sigma: sigmaAt(p + problem.backgroundAt + b),
+    })),
+    atBound,
+  };
+}

@@ -1,0 +1,279 @@
+import { LEVEL, levelLaw } from "../laws/index.ts";
+import { linePair, linePairWithDerivatives } from "../lines/index.ts";
+import type { SeparableProblem } from "../solve/index.ts";
+import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
+import { TailEvaluator } from "./tail.ts";
+
+/** Places of the nonlinear parameters in theta. */
+export interface ThetaLayout {
+  /** Law parameters first where levels are tied, then the free line energies. */
+  readonly lawCount: number;
+  /** Place of the energy of line j, or -1 where the level law gives it. */
+  readonly energyAt: Int32Array;
+  readonly widthAt: Int32Array;
+  /** Place of q, or -1. */
+  readonly asymmetryAt: number;
+  /** Place of f, or -1. */
+  readonly factorAt: number;
+  readonly count: number;
+}
+
+/**
+ * What      One spectrum as a separable least-squares problem:
+ *           signal = sum_j A_j [L_j + 2 q D_j + share_j T] (+ sum_j B_j 2 D_j with q free line by line) + background,
+ *           T the tail of unit strength, whose laws follow from the free lines (LawLink).
+ * Shapes    theta (layout.count); linear: areas (k), odd areas B = q A (k, only with asymmetry "free"), background.
+ * Units     energies and widths in eV relative to nothing; areas in eV times the unit of the signal.
+ * Source    Golub and Pereyra, SIAM J. Numer. Anal. 10, 413 (1973) for the separation.
+ */
+export class SpectrumProblem implements SeparableProblem {
+  readonly rows: number;
+  readonly nonlinear: number;
+  readonly linear: number;
+  readonly data: Float64Array;
+  readonly weights: Float64Array;
+  readonly layout: ThetaLayout;
+  readonly spec: ModelSpec;
+  private readonly points: FitPoints;
+  private readonly tail: TailEvaluator | null;
+  private readonly profile: {
+    l: Float64Array;
+    d: Float64Array;
+    lE: Float64Array;
+    lG: Float64Array;
+    dE: Float64Array;
+    dG: Float64Array;
+  };
+  private readonly law = new Float64Array(LEVEL.size);
+
+  constructor(points: FitPoints, spec: ModelSpec) {
+    this.points = points;
+    this.spec = spec;
+    const m = points.energy.length;
+    const k = spec.ns.length;
+    this.rows = m;
+    this.data = points.signal;
+    this.weights = Float64Array.from(points.sigma, (sigma) => 1 / sigma);
+    this.layout = makeLayout(spec);
+    this.nonlinear = this.layout.count;
+    this.linear = k * (spec.asymmetry === "free" ? 2 : 1) + spec.background.length;
+    this.tail = spec.tail === null ? null : new TailEvaluator(points, spec.tail, spec.gaussStd);
+    const make = (): Float64Array => new Float64Array(m);
+    this.profile = { l: make(), d: make(), lE: make(), lG: make(), dE: make(), dG: make() };
+  }
+
+  /** The nonlinear start from the lines' start values. */
+  startFrom(lines: readonly LineStart[], asymmetry: number, factor: number): Float64Array {
+    const theta = new Float64Array(this.nonlinear);
+    const { layout, spec } = this;
+    if (spec.tiedLevels !== null) {
+      const { gap, rydberg, defect0, defect2 } = spec.tiedLevels.values;
+      theta.set([gap, rydberg, defect0, defect2].slice(0, layout.lawCount));
+    }
+    spec.ns.forEach((n, j) => {
+      const line = lines.find((one) => one.n === n);
+      if (line === undefined) throw new Error(`no start for line n = ${n}`);
+      if (layout.energyAt[j]! >= 0) theta[layout.energyAt[j]!] = line.energy;
+      theta[layout.widthAt[j]!] = line.width;
+    });
+    if (layout.asymmetryAt >= 0) theta[layout.asymmetryAt] = asymmetry;
+    if (layout.factorAt >= 0) theta[layout.factorAt] = factor;
+    return theta;
+  }
+
+  /** Energy of line j. */
+  energyOf(j: number, theta: Float64Array): number {
+    const at = this.layout.energyAt[j]!;
+    if (at >= 0) return theta[at]!;
+    levelLaw(this.spec.ns[j]!, this.tiedLaw(theta), this.law);
+    return this.law[LEVEL.energy]!;
+  }
+
+  asymmetryOf(theta: Float64Array): number {
+    return this.layout.asymmetryAt >= 0 ? theta[this.layout.asymmetryAt]! : 0;
+  }
+
+  factorOf(theta: Float64Array): number {
+    return this.layout.factorAt >= 0 ? theta[this.layout.factorAt]! : (this.spec.tail?.factor ?? 0);
+  }
+
+  /** Laws of the tail at theta. */
+  lawsAt(theta: Float64Array): { levels: LevelValues; widths: WidthValues } {
+    const tail = this.spec.tail;
+    if (tail === null) throw new Error("this model has no tail");
+    const k = this.spec.ns.length;
+    let levels: LevelValues;
+    if (this.spec.tiedLevels !== null) levels = this.tiedLaw(theta);
+    else {
+      const base = [tail.levels.gap, tail.levels.rydberg, tail.levels.defect0, tail.levels.defect2];
+      const { gain, at, parameters } = tail.levelLink;
+      for (let p = 0; p < parameters; p++)
+        for (let j = 0; j < k; j++)
+          base[p]! += gain[p * k + j]! * (theta[this.layout.energyAt[j]!]! - at[j]!);
+      levels = { gap: base[0]!, rydberg: base[1]!, defect0: base[2]!, defect2: base[3]! };
+    }
+    const width = [tail.widths.floor, tail.widths.coefficient, tail.widths.exponent];
+    const { gain, at, parameters } = tail.widthLink;
+    for (let p = 0; p < parameters; p++)
+      for (let j = 0; j < k; j++) width[p]! += gain[p * k + j]! * (theta[this.layout.widthAt[j]!]! - at[j]!);
+    return {
+      levels,
+      widths: { ...tail.widths, floor: width[0]!, coefficient: width[1]!, exponent: width[2]! },
+    };
+  }
+
+  /** Columns of the background begin here among the linear coefficients. */
+  get backgroundAt(): number {
+    return this.linear - this.spec.background.length;
+  }
+
+  columns(theta: Float64Array, phi: Float64Array): void {
+    const { points, spec, layout, rows: m } = this;
+    const { l, d } = this.profile;
+    const k = spec.ns.length;
+    const q = this.asymmetryOf(theta);
+    const free = spec.asymmetry === "free";
+    const tail = this.tailColumn(theta, false);
+    for (let j = 0; j < k; j++) {
+      linePair(points.energy, 0, m, this.energyOf(j, theta), theta[layout.widthAt[j]!]!, spec.gaussStd, l, d);
+      const at = j * m;
+      const share = spec.tail?.strengthShare[j] ?? 0;
+      const odd = free ? 0 : 2 * q;
+      for (let i = 0; i < m; i++) phi[at + i] = l[i]! + odd * d[i]!;
+      if (tail !== null && share !== 0) for (let i = 0; i < m; i++) phi[at + i]! += share * tail[i]!;
+      if (free) {
+        const second = (k + j) * m;
+        for (let i = 0; i < m; i++) phi[second + i] = 2 * d[i]!;
+      }
+    }
+    spec.background.forEach((column, b) => phi.set(column.values, (this.backgroundAt + b) * m));
+  }
+
+  derivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
+    const { points, spec, layout, rows: m } = this;
+    const { l, d, lE, lG, dE, dG } = this.profile;
+    const k = spec.ns.length;
+    const q = this.asymmetryOf(theta);
+    const free = spec.asymmetry === "free";
+    out.fill(0);
+    const tied = spec.tiedLevels === null ? null : this.tiedLaw(theta);
+    for (let j = 0; j < k; j++) {
+      const energy = this.energyOf(j, theta);
+      linePairWithDerivatives(
+        points.energy,
+        0,
+        m,
+        energy,
+        theta[layout.widthAt[j]!]!,
+        spec.gaussStd,
+        l,
+        d,
+        lE,
+        lG,
+        dE,
+        dG,
+      );
+      const a = coefficients[j]!;
+      const b = 2 * (free ? coefficients[k + j]! : q * a);
+      const widthColumn = layout.widthAt[j]! * m;
+      for (let i = 0; i < m; i++) out[widthColumn + i]! += a * lG[i]! + b * dG[i]!;
+      if (layout.energyAt[j]! >= 0) {
+        const energyColumn = layout.energyAt[j]! * m;
+        for (let i = 0; i < m; i++) out[energyColumn + i]! += a * lE[i]! + b * dE[i]!;
+      } else if (tied !== null) {
+        levelLaw(spec.ns[j]!, tied, this.law);
+        for (let p = 0; p < layout.lawCount; p++) {
+          const slope = this.law[1 + p]!;
+          for (let i = 0; i < m; i++) out[p * m + i]! += slope * (a * lE[i]! + b * dE[i]!);
+        }
+      }
+      if (layout.asymmetryAt >= 0) {
+        const column = layout.asymmetryAt * m;
+        for (let i = 0; i < m; i++) out[column + i]! += 2 * a * d[i]!;
+      }
+    }
+    this.tailDerivatives(theta, coefficients, out);
+  }
+
+  /** T at theta (m), or null; with `derivatives` the evaluator's derivative columns are filled too. */
+  private tailColumn(theta: Float64Array, derivatives: boolean): Float64Array | null {
+    const { tail } = this;
+    if (tail === null) return null;
+    const { levels, widths } = this.lawsAt(theta);
+    const f = this.factorOf(theta);
+    const q = this.asymmetryOf(theta);
+    tail.evaluate(levels, widths, f, q, derivatives);
+    const { tiedEven, tiedOdd, heldEven, heldOdd } = tail.columns;
+    const sum = new Float64Array(this.rows);
+    for (let i = 0; i < sum.length; i++)
+      sum[i] = f * (tiedEven[i]! + 2 * q * tiedOdd[i]!) + heldEven[i]! + 2 * q * heldOdd[i]!;
+    return sum;
+  }
+
+  private tailDerivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
+    const { tail, spec, layout, rows: m } = this;
+    if (tail === null || spec.tail === null) return;
+    const k = spec.ns.length;
+    let strength = 0;
+    for (let j = 0; j < k; j++) strength += spec.tail.strengthShare[j]! * coefficients[j]!;
+    this.tailColumn(theta, true);
+    const { tiedEven, tiedOdd, heldOdd, byLevel, byWidth } = tail.columns;
+    const f = this.factorOf(theta);
+    const q = this.asymmetryOf(theta);
+    if (layout.asymmetryAt >= 0) {
+      const column = layout.asymmetryAt * m;
+      for (let i = 0; i < m; i++) out[column + i]! += 2 * strength * (f * tiedOdd[i]! + heldOdd[i]!);
+    }
+    if (layout.factorAt >= 0) {
+      const column = layout.factorAt * m;
+      for (let i = 0; i < m; i++) out[column + i]! += strength * (tiedEven[i]! + 2 * q * tiedOdd[i]!);
+    }
+    const add = (target: number, source: Float64Array, factor: number): void => {
+      if (factor === 0) return;
+      const column = target * m;
+      for (let i = 0; i < m; i++) out[column + i]! += factor * source[i]!;
+    };
+    if (spec.tiedLevels !== null) for (let p = 0; p < layout.lawCount; p++) add(p, byLevel[p]!, strength);
+    else {
+      const { gain, parameters } = spec.tail.levelLink;
+      for (let j = 0; j < k; j++)
+        for (let p = 0; p < parameters; p++)
+          add(layout.energyAt[j]!, byLevel[p]!, strength * gain[p * k + j]!);
+    }
+    const { gain, parameters } = spec.tail.widthLink;
+    for (let j = 0; j < k; j++)
+      for (let p = 0; p < parameters; p++) add(layout.widthAt[j]!, byWidth[p]!, strength * gain[p * k + j]!);
+  }
+
+  /** The tail alone for these parameters: C T. */
+  tailCurve(theta: Float64Array, coefficients: Float64Array): Float64Array | null {
+    const column = this.tailColumn(theta, false);
+    if (column === null || this.spec.tail === null) return null;
+    let strength = 0;
+    this.spec.tail.strengthShare.forEach((share, j) => (strength += share * coefficients[j]!));
+    return column.map((value) => strength * value);
+  }
+
+  private tiedLaw(theta: Float64Array): LevelValues & { defect4: number } {
+    const tied = this.spec.tiedLevels;
+    if (tied === null) throw new Error("levels are free in this model");
+    const { gap, rydberg, defect0, defect2 } = tied.values;
+    const value = [gap, rydberg, defect0, defect2];
+    for (let p = 0; p < this.layout.lawCount; p++) value[p] = theta[p]!;
+    return { gap: value[0]!, rydberg: value[1]!, defect0: value[2]!, defect2: value[3]!, defect4: 0 };
+  }
+}
+
+function makeLayout(spec: ModelSpec): ThetaLayout {
+  const k = spec.ns.length;
+  const lawCount = spec.tiedLevels?.count ?? 0;
+  let count = lawCount;
+  const energyAt = new Int32Array(k).fill(-1);
+  const widthAt = new Int32Array(k);
+  for (let j = 0; j < k; j++)
+    if (!(spec.tiedLevels?.tiedNs.includes(spec.ns[j]!) ?? false)) energyAt[j] = count++;
+  for (let j = 0; j < k; j++) widthAt[j] = count++;
+  const asymmetryAt = spec.asymmetry === "shared" ? count++ : -1;
+  const factorAt = spec.tail !== null && spec.tail.factorFree ? count++ : -1;
+  return { lawCount, energyAt, widthAt, asymmetryAt, factorAt, count };
+}

@@ -1,0 +1,298 @@
+import { LEVEL, levelLaw, strength, WIDTH, widthLaw, type LevelParameters } from "../laws/index.ts";
+import {
+  averagedTail,
+  continuumPair,
+  linePairWithDerivatives,
+  type AveragedTailOutputs,
+} from "../lines/index.ts";
+import { addFromGrid, makeSparseGrid, type SparseGrid } from "./sparse-grid.ts";
+import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec.ts";
+
+/**
+ * What      Absorption of everything that is tied to the laws, for a strength law of coefficient C = 1:
+ *           T(E) = f [sum_tied s_n (L_n + 2 q D_n) + band] + sum_below s_n (L_n + 2 q D_n) + continuum.
+ *           The band stands for the lines above `toN`, which run together: a rectangle of height 1/(2 Ry) from
+ *           E(toN + 1/2) to the gap, broadened by the width there. The continuum has the height 1/(2 Ry) at the gap.
+ * Shapes    all columns (m).
+ * Units     eV, 1/eV.
+ * Accuracy  the band replaces lines whose width is at least `BLENDED` spacings: ripple exp(-pi BLENDED) of its height.
+ * Source    PHYSICS of the series limit: Elliott, Phys. Rev. 108, 1384 (1957); midpoint rule for the sum over n.
+ */
+export interface TailColumns {
+  /** f-part without the odd partner, and the odd partner (times 2 q). */
+  readonly tiedEven: Float64Array;
+  readonly tiedOdd: Float64Array;
+  readonly heldEven: Float64Array;
+  readonly heldOdd: Float64Array;
+  /** d T/d p at the given f and q: gap, Rydberg energy, delta0, delta2, then floor and coefficient, exponent. */
+  readonly byLevel: readonly Float64Array[];
+  readonly byWidth: readonly Float64Array[];
+}
+
+type BandColumn = keyof Required<AveragedTailOutputs>;
+
+const LEVEL_COUNT = 4;
+const WIDTH_COUNT = 3;
+const FAR_N = 1e6;
+const LEAST_WIDTH = 1e-8;
+const FWHM_OF_STD = 2 * Math.sqrt(2 * Math.LN2);
+
+export class TailEvaluator {
+  readonly columns: TailColumns;
+  private readonly points: FitPoints;
+  private readonly spec: TailSpec;
+  private readonly gaussStd: number;
+  private readonly grid: SparseGrid;
+  private readonly scratch: Float64Array[];
+  private readonly sums: Float64Array[];
+  private readonly bandScratch: Record<BandColumn, Float64Array>;
+
+  constructor(points: FitPoints, spec: TailSpec, gaussStd: number) {
+    this.points = points;
+    this.spec = spec;
+    this.gaussStd = gaussStd;
+    const m = points.energy.length;
+    const { gap, rydberg, defect0 } = spec.levels;
+    const low = spec.toN >= spec.fromN ? gap - rydberg / (spec.fromN - defect0) ** 2 : gap;
+    this.grid = makeSparseGrid(points.energy, low, gap, 1.5 * (gap - low) + 30 * spec.widths.floor);
+    const nodes = this.grid.nodes.length;
+    this.scratch = Array.from({ length: 6 }, () => new Float64Array(nodes));
+    this.sums = Array.from({ length: 2 + LEVEL_COUNT + WIDTH_COUNT }, () => new Float64Array(nodes));
+    const node = (): Float64Array => new Float64Array(nodes);
+    this.bandScratch = {
+      absorptive: node(),
+      dispersive: node(),
+      absorptiveByGap: node(),
+      absorptiveByRydberg: node(),
+      absorptiveByBroadening: node(),
+      dispersiveByGap: node(),
+      dispersiveByRydberg: node(),
+      dispersiveByBroadening: node(),
+    };
+    const make = (): Float64Array => new Float64Array(m);
+    this.columns = {
+      tiedEven: make(),
+      tiedOdd: make(),
+      heldEven: make(),
+      heldOdd: make(),
+      byLevel: Array.from({ length: LEVEL_COUNT }, make),
+      byWidth: Array.from({ length: WIDTH_COUNT }, make),
+    };
+  }
+
+  /** Fills `columns`; the derivatives only where asked for. */
+  evaluate(levels: LevelValues, widths: WidthValues, factor: number, q: number, derivatives: boolean): void {
+    const { spec, columns, sums } = this;
+    for (const column of [columns.tiedEven, columns.tiedOdd, columns.heldEven, columns.heldOdd])
+      column.fill(0);
+    for (const column of [...columns.byLevel, ...columns.byWidth]) column.fill(0);
+    for (const sum of sums) sum.fill(0);
+    const law = { ...levels, defect4: 0 };
+    for (let n = spec.fromN; n <= spec.toN; n++)
+      this.addLine(n, law, widths, factor, q, derivatives, this.grid.nodes);
+    this.addBand(law, widths, factor, q, derivatives);
+    addFromGrid(this.grid, sums[0]!, 1, columns.tiedEven);
+    addFromGrid(this.grid, sums[1]!, 1, columns.tiedOdd);
+    if (derivatives) {
+      for (let i = 0; i < LEVEL_COUNT; i++) addFromGrid(this.grid, sums[2 + i]!, 1, columns.byLevel[i]!);
+      for (let i = 0; i < WIDTH_COUNT; i++)
+        addFromGrid(this.grid, sums[2 + LEVEL_COUNT + i]!, 1, columns.byWidth[i]!);
+    }
+    this.addBelow(law, widths, q, derivatives);
+    this.addContinuum(law, widths, q, derivatives);
+  }
+
+  private addLine(
+    n: number,
+    law: LevelParameters,
+    widths: WidthValues,
+    factor: number,
+    q: number,
+    derivatives: boolean,
+    energies: Float64Array,
+  ): void {
+    const { sums, spec } = this;
+    const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
+    const place = this.pair(n, law, widths, energies);
+    const [l, d, lE, lG, dE, dG] = this.scratch as [
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+    ];
+    const even = sums[0]!;
+    const odd = sums[1]!;
+    for (let i = 0; i < energies.length; i++) {
+      even[i]! += s * l[i]!;
+      odd[i]! += s * d[i]!;
+    }
+    if (!derivatives) return;
+    for (let i = 0; i < energies.length; i++) {
+      const byE = factor * s * (lE[i]! + 2 * q * dE[i]!);
+      const byG = factor * s * (lG[i]! + 2 * q * dG[i]!);
+      for (let p = 0; p < LEVEL_COUNT; p++) sums[2 + p]![i]! += byE * place.level[1 + p]!;
+      for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byG * place.width[1 + p]!;
+    }
+  }
+
+  private pair(
+    n: number,
+    law: LevelParameters,
+    widths: WidthValues,
+    energies: Float64Array,
+  ): { level: Float64Array; width: Float64Array } {
+    const level = new Float64Array(LEVEL.size);
+    const width = new Float64Array(WIDTH.size);
+    levelLaw(n, law, level);
+    widthLaw(n, this.spec.levels.defect0, widths, width);
+    const [l, d, lE, lG, dE, dG] = this.scratch as [
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+    ];
+    linePairWithDerivatives(
+      energies,
+      0,
+      energies.length,
+      level[LEVEL.energy]!,
+      width[WIDTH.width]!,
+      this.gaussStd,
+      l,
+      d,
+      lE,
+      lG,
+      dE,
+      dG,
+    );
+    return { level, width };
+  }
+
+  /** The lines above toN run together: one band from E(toN + 1/2) to the gap, each piece as wide as the lines there. */
+  private addBand(
+    law: LevelParameters,
+    widths: WidthValues,
+    factor: number,
+    q: number,
+    derivatives: boolean,
+  ): void {
+    const { sums, spec, bandScratch: band } = this;
+    const nodes = this.grid.nodes;
+    const level = new Float64Array(LEVEL.size);
+    const width = new Float64Array(WIDTH.size);
+    levelLaw(spec.toN + 0.5, law, level);
+    widthLaw(spec.toN + 0.5, spec.levels.defect0, widths, width);
+    const lawWidth = width[WIDTH.width]!;
+    const nu = level[LEVEL.effectiveN]!;
+    averagedTail(nodes, 0, nodes.length, law.gap, law.rydberg, nu, this.edgeWidth(lawWidth), band);
+    const slope = this.edgeSlope(lawWidth);
+    // The lower edge also moves with the defect: dE/d(delta) at fixed gap and Rydberg energy, height 1/(2 Ry).
+    const height = 1 / (2 * law.rydberg);
+    const edge = level[LEVEL.energy]!;
+    const g = this.edgeWidth(lawWidth) / 2;
+    for (let i = 0; i < nodes.length; i++) {
+      sums[0]![i]! += band.absorptive[i]!;
+      sums[1]![i]! += band.dispersive[i]!;
+      if (!derivatives) continue;
+      const of = (even: Float64Array, odd: Float64Array): number => factor * (even[i]! + 2 * q * odd[i]!);
+      const a = nodes[i]! - edge;
+      const byEdge = (-factor * height * (g + 2 * q * a)) / (Math.PI * (a * a + g * g));
+      sums[2]![i]! += of(band.absorptiveByGap, band.dispersiveByGap);
+      sums[3]![i]! += of(band.absorptiveByRydberg, band.dispersiveByRydberg);
+      sums[4]![i]! += byEdge * level[LEVEL.byDefect0]!;
+      sums[5]![i]! += byEdge * level[LEVEL.byDefect2]!;
+      const byWidth = slope * of(band.absorptiveByBroadening, band.dispersiveByBroadening);
+      for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
+    }
+  }
+
+  /** The continuum, its edge as broad as the width law's limit at infinite n. */
+  private addContinuum(law: LevelParameters, widths: WidthValues, q: number, derivatives: boolean): void {
+    const { columns, spec, bandScratch: out, grid } = this;
+    const nodes = grid.nodes;
+    const width = new Float64Array(WIDTH.size);
+    widthLaw(FAR_N, spec.levels.defect0, widths, width);
+    const limit = Math.max(0, width[WIDTH.width]!);
+    continuumPair(nodes, 0, nodes.length, law.gap, law.rydberg, spec.envelope, this.edgeWidth(limit), out);
+    addFromGrid(grid, out.absorptive, 1, columns.heldEven);
+    if (spec.continuumOdd) addFromGrid(grid, out.dispersive, 1, columns.heldOdd);
+    if (!derivatives) return;
+    const odd = spec.continuumOdd ? 2 * q : 0;
+    addFromGrid(grid, out.absorptiveByGap, 1, columns.byLevel[0]!);
+    addFromGrid(grid, out.dispersiveByGap, odd, columns.byLevel[0]!);
+    addFromGrid(grid, out.absorptiveByRydberg, 1, columns.byLevel[1]!);
+    addFromGrid(grid, out.dispersiveByRydberg, odd, columns.byLevel[1]!);
+    const slope = this.edgeSlope(limit);
+    for (let p = 0; p < WIDTH_COUNT; p++) {
+      const factor = slope * width[1 + p]!;
+      if (factor === 0) continue;
+      addFromGrid(grid, out.absorptiveByBroadening, factor, columns.byWidth[p]!);
+      addFromGrid(grid, out.dispersiveByBroadening, factor * odd, columns.byWidth[p]!);
+    }
+  }
+
+  /**
+   * FWHM of an edge under a Lorentzian and a Gaussian: joined as for a Voigt line (Olivero and Longbothum 1977). At
+   * least a hundredth of a ueV, because an edge of no width has no derivative.
+   */
+  private edgeWidth(width: number): number {
+    if (this.gaussStd === 0) return width + LEAST_WIDTH;
+    const gauss = FWHM_OF_STD * this.gaussStd;
+    return 0.5346 * width + Math.sqrt(0.2166 * width * width + gauss * gauss) + LEAST_WIDTH;
+  }
+
+  private addBelow(law: LevelParameters, widths: WidthValues, q: number, derivatives: boolean): void {
+    const { columns, spec, points } = this;
+    if (spec.below.length === 0) return;
+    const m = points.energy.length;
+    const [l, d, lE, lG, dE, dG] = Array.from({ length: 6 }, () => new Float64Array(m)) as [
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+      Float64Array,
+    ];
+    for (const n of spec.below) {
+      const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
+      const level = new Float64Array(LEVEL.size);
+      const width = new Float64Array(WIDTH.size);
+      levelLaw(n, law, level);
+      widthLaw(n, spec.levels.defect0, widths, width);
+      linePairWithDerivatives(
+        points.energy,
+        0,
+        m,
+        level[LEVEL.energy]!,
+        width[WIDTH.width]!,
+        this.gaussStd,
+        l,
+        d,
+        lE,
+        lG,
+        dE,
+        dG,
+      );
+      for (let i = 0; i < m; i++) {
+        columns.heldEven[i]! += s * l[i]!;
+        columns.heldOdd[i]! += s * d[i]!;
+        if (!derivatives) continue;
+        const byE = s * (lE[i]! + 2 * q * dE[i]!);
+        const byG = s * (lG[i]! + 2 * q * dG[i]!);
+        for (let p = 0; p < LEVEL_COUNT; p++) columns.byLevel[p]![i]! += byE * level[1 + p]!;
+        for (let p = 0; p < WIDTH_COUNT; p++) columns.byWidth[p]![i]! += byG * width[1 + p]!;
+      }
+    }
+  }
+
+  /** d(edgeWidth)/d width. */
+  private edgeSlope(width: number): number {
+    if (this.gaussStd === 0) return 1;
+    const gauss = FWHM_OF_STD * this.gaussStd;
+    return 0.5346 + (0.2166 * width) / Math.sqrt(0.2166 * width * width + gauss * gauss);
+  }
+}
