@@ -10,11 +10,13 @@ export async function readNamedFiles(paths: readonly string[]): Promise<readonly
   const files: NamedBytes[] = [];
   for (const path of paths) {
     if ((await stat(path)).isDirectory()) {
-      const names = (await readdir(path, { withFileTypes: true }))
-        .filter((entry) => entry.isFile() && !entry.name.startsWith(".") && isSpectrumName(entry.name))
-        .map((entry) => entry.name)
+      const names = (await readdir(path))
+        .filter((name) => !name.startsWith(".") && isSpectrumName(name))
         .sort();
-      for (const name of names) files.push({ name, bytes: await readFile(join(path, name)) });
+      for (const name of names) {
+        if ((await stat(join(path, name))).isFile())
+          files.push({ name, bytes: await readFile(join(path, name)) });
+      }
     } else files.push({ name: basename(path), bytes: await readFile(path) });
   }
   return files;
