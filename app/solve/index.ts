@@ -6,3 +6,8 @@ export type { LinearSolution } from "./linearLeastSquares.ts";
 export { choleskyFactor, choleskyInverse, choleskySolve, invertPositiveDefinite } from "./cholesky.ts";
 export { backSubstitute, forwardSubstitute } from "./cholesky.ts";
 export { singularValues } from "./singularValues.ts";
+export { fitLaw } from "./fitLaw.ts";
+export type { LawFit, LawOptions, LawProblem } from "./fitLaw.ts";
+export * from "./statistics.ts";
+export { profileInterval } from "./profile.ts";
+export type { ProfileInterval, ProfileProblem } from "./profile.ts";
