@@ -30,7 +30,7 @@ export function inspectionToText(inspection: ReadingShown): string {
     "=".repeat(Array.from(title).length),
     "",
     ...labelled("File", `${inspection.file}, ${inspection.rows} rows, SHA-256 ${spectrum.sha256}`),
-    ...labelled("Dialect", dialectInWords(spectrum.dialect)),
+    ...dialectInWords(spectrum.dialect),
     ...labelled(
       "Axis",
       `read in ${spectrum.axisUnitRead} (${spectrum.medium}), ${range(spectrum.energy_eV)} eV, ${points} points, median step ${step(
@@ -114,17 +114,37 @@ const DELIMITER_WORDS: Readonly<Record<string, string>> = {
   " ": "spaces",
 };
 
-function dialectInWords(dialect: Spectrum["dialect"]): string {
-  return Object.entries(dialect)
-    .filter(([, value]) => value !== null && value !== "")
+/** What was decided, then why; what does not apply is left out. */
+function dialectInWords(dialect: Spectrum["dialect"]): string[] {
+  const spoken = Object.entries(dialect)
+    .filter(([, value]) => value !== null && value !== "" && value !== false)
     .map(([key, value]) => {
-      const words = key === "delimiter" ? (DELIMITER_WORDS[String(value)] ?? String(value)) : String(value);
-      return `${key
+      const name = key
         .replace(/([A-Z])/g, " $1")
         .replaceAll("_", " ")
-        .toLowerCase()} ${words}`;
-    })
-    .join("; ");
+        .toLowerCase();
+      if (value === true) return { name, words: name };
+      const shown =
+        key === "delimiter"
+          ? (DELIMITER_WORDS[String(value)] ?? String(value))
+          : key === "decimal" || key === "thousands"
+            ? `"${String(value)}"`
+            : String(value);
+      return { name, words: `${name} ${shown}` };
+    });
+  const isReason = (name: string): boolean => name.endsWith("reason");
+  return [
+    ...labelled(
+      "Dialect",
+      spoken
+        .filter(({ name }) => !isReason(name))
+        .map(({ words }) => words)
+        .join("; "),
+    ),
+    ...spoken
+      .filter(({ name }) => isReason(name))
+      .flatMap(({ name, words }) => labelled("", `${name.slice(0, -7)}: ${words.slice(name.length + 1)}`)),
+  ];
 }
 
 function range(x: Float64Array): string {

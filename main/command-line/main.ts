@@ -1,4 +1,6 @@
-import { makeThreadRunner, OutputError } from "../services/index.ts";
+// Single files, not the room's index: what is not needed to start is loaded when a command asks for it.
+import { OutputError } from "../services/output-error.ts";
+import { makeThreadRunner } from "../services/thread-runner.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT } from "./exit-status.ts";
 import { runCommandLine } from "./run-command-line.ts";

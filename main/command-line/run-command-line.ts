@@ -1,6 +1,8 @@
 import { Command, CommanderError, InvalidArgumentError, Option } from "commander";
-import type { WindowOptions } from "../loopback/index.ts";
-import { OutputError, programVersion } from "../services/index.ts";
+import type { ShellIo, WindowOptions } from "../loopback/index.ts";
+// Single files, not the room's index: what is not needed to start is loaded when a command asks for it.
+import { OutputError } from "../services/output-error.ts";
+import { programVersion } from "../services/version.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT, UsageError } from "./exit-status.ts";
 import type { FitOptions } from "./fit-command.ts";
@@ -148,12 +150,10 @@ function once(): (value: string, before: string | undefined) => string {
   };
 }
 
-function shellIo(
-  io: CommandLineIo,
-  signal: AbortSignal,
-): Parameters<typeof import("../loopback/index.ts").startDemo>[0] {
+function shellIo(io: CommandLineIo, signal: AbortSignal): ShellIo {
   return {
-    out: (text) => void io.stdout(text),
+    // A window whose terminal has gone away goes on.
+    out: (text) => void Promise.resolve(io.stdout(text)).catch(() => undefined),
     error: (text) => io.stderr(text),
     environment: io.environment,
     interactive: io.interactive,

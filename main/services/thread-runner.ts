@@ -1,6 +1,6 @@
 import { Worker } from "node:worker_threads";
 import type { WorkerReply, WorkerRequest } from "../../app/tasks/index.ts";
-import { faultOf, type FitOutcome, type FitRunner } from "./fit-runner.ts";
+import { faultOf, type FitOutcome, type FitRunner } from "./fit-outcome.ts";
 
 /** Fits in one thread that is started at once, so that it loads while the input is read. */
 export function makeThreadRunner(program: URL): FitRunner {
