@@ -25,7 +25,7 @@ export function pageHeaders(nonce: string | null): Record<string, string> {
     "Cross-Origin-Opener-Policy": "same-origin",
     "Cross-Origin-Embedder-Policy": "require-corp",
     "Cross-Origin-Resource-Policy": "same-origin",
-    "Permissions-Policy": "camera=(), microphone=(), geolocation=(), usb=(), serial=(), hid=(), bluetooth=()",
+    "Permissions-Policy": "camera=(), microphone=(), geolocation=(), usb=(), serial=(), hid=()",
     "Referrer-Policy": "no-referrer",
     "X-Content-Type-Options": "nosniff",
     // Asset names carry their own hash, but a browser that asks again costs nothing on this machine.
