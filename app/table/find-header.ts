@@ -70,16 +70,14 @@ export function headingCells(text: string, columns: number, delimiter: Delimiter
     const options = [
       text.trim().split(/\s*\t\s*/),
       text.trim().split(/ {2,}|\t/),
+      splitOne(text, ";"),
+      splitOne(text, ","),
       merged,
       mergeUnits(merged),
       tokens,
     ];
     for (const option of options) {
-      const cells = fits(option.map((cell) => cell.replace(/^"(.*)"$/, "$1")));
-      if (cells !== null) return cells;
-    }
-    for (const other of [";", ","] as const) {
-      const cells = fits(splitOne(text, other));
+      const cells = fits(option.map((cell) => cell.trim().replace(/^"(.*)"$/, "$1")));
       if (cells !== null) return cells;
     }
     return null;

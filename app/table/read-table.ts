@@ -32,6 +32,16 @@ export function readTable(
   bytes: Uint8Array,
   choices: TableChoices = {},
 ): Result<Table, TableIssue> {
+  return readWith(file, bytes, choices, false);
+}
+
+/** `pairsByHeading`: the choices of delimiter and decimal mark come from the heading and not from the user. */
+function readWith(
+  file: string,
+  bytes: Uint8Array,
+  choices: TableChoices,
+  pairsByHeading: boolean,
+): Result<Table, TableIssue> {
   const refuse = (
     code: TableIssueCode,
     line: number | null,
@@ -90,6 +100,10 @@ export function readTable(
     }
   }
   const headings = header.headers.filter((text) => text !== "").length;
+  const halves =
+    shape.delimiter === "," && shape.decimal === "." && shape.whole && headings * 2 === shape.fields;
+  if (halves && headings >= 2 && choices.delimiter === undefined && choices.decimal === undefined)
+    return readWith(file, bytes, { ...choices, delimiter: ",", decimal: "," }, true);
   const ambiguous =
     shape.delimiter === "," &&
     shape.decimal === "." &&
@@ -169,7 +183,9 @@ export function readTable(
       ambiguous,
       reasons: {
         encoding: decoded.reason,
-        delimiter: sayDelimiter(shape, choices, ambiguous),
+        delimiter: pairsByHeading
+          ? `${sayDelimiter(shape, {}, false)}; the heading names half as many columns as there are commas' fields, so every second comma is a decimal mark`
+          : sayDelimiter(shape, choices, ambiguous),
         header: header.reason,
       },
     },
@@ -276,7 +292,8 @@ function noTable(
       `${shape.fitting} line${shape.fitting === 1 ? "" : "s"} of numbers`,
     );
   const chosen = choices.delimiter !== undefined || choices.decimal !== undefined;
-  if (!chosen && looksLikeHeading(sample)) return refuse("table/only-header", first, quote(sample.at(-1)!));
+  if (!chosen && looksLikeHeading(sample))
+    return refuse("table/only-header", lastFilledLine(lines), quote(sample.at(-1)!));
   return refuse(
     "table/only-text",
     first,
@@ -297,6 +314,11 @@ function looksLikeHeading(sample: readonly string[]): boolean {
 
 function firstFilledLine(lines: TextLines): number {
   for (let i = 0; i < lines.count; i++) if (lineText(lines, i).trim() !== "") return i + 1;
+  return 1;
+}
+
+function lastFilledLine(lines: TextLines): number {
+  for (let i = lines.count - 1; i >= 0; i--) if (lineText(lines, i).trim() !== "") return i + 1;
   return 1;
 }
 
