@@ -1,0 +1,29 @@
+export {
+  fitLevels,
+  LEVEL_NAMES,
+  REJECTED_BELOW,
+  type DefectChoice,
+  type LevelFit,
+  type LevelInput,
+} from "./level-fit.ts";
+export { chooseLevelRange, type RangeChoice, type RangeInput, type RangeStep } from "./level-range.ts";
+export {
+  conventionalShift,
+  rankReadings,
+  type Reading,
+  type Readings,
+  type ReadingsInput,
+} from "./readings.ts";
+export { fitWidths, type WidthFit, type WidthInput } from "./width-fit.ts";
+export { fitStrengths, type StrengthFit, type StrengthInput } from "./strength-fit.ts";
+export { bindingOf, lawAt, offsetFromLaw, type Derived, type LineEnergies } from "./relation.ts";
+export {
+  deriveQuantities,
+  type DeriveInput,
+  type DerivedLine,
+  type DerivedLineInput,
+  type DerivedQuantities,
+} from "./derive.ts";
+export { wordSeriesIssue, type SeriesIssue } from "./wording.ts";
+export { profileLevels, type LevelProfile } from "./level-profile.ts";
+export { seriesToResult, strengthsToResult, widthsToResult } from "./to-result.ts";

@@ -1,0 +1,171 @@
+import { doubt, failure, success, symmetric, type Note, type Quantity, type Result } from "../base/index.ts";
+import { fitLevels, format, type LevelFit, type LevelInput } from "./level-fit.ts";
+import { placesWithin, selectMatrix, selectVector } from "./select-lines.ts";
+import type { SeriesIssue } from "./wording.ts";
+
+export interface RangeInput extends LevelInput {
+  readonly fit_n: "auto" | readonly [number, number];
+  /** Half width of the interval in standard errors (1 for 68.27 %); default 1. */
+  readonly factor?: number | undefined;
+}
+
+/** The same law for one range of n. */
+export interface RangeStep {
+  readonly n_min: number;
+  readonly n_max: number;
+  readonly gap_eV: Quantity;
+  readonly rydberg_eV: Quantity;
+  readonly defect0: Quantity;
+  readonly chi2: number;
+  readonly dof: number;
+  readonly p: number;
+}
+
+export interface RangeChoice {
+  readonly fit: LevelFit;
+  /** Lowest and highest n of the fit. */
+  readonly fit_n: readonly [number, number];
+  /** Every lowest n with the highest n of the fit, then every highest n with its lowest. */
+  readonly ranges: readonly RangeStep[];
+  readonly notes: readonly Note[];
+}
+
+/** Lines that a range chosen by itself must keep. */
+const FEWEST_LINES = 5;
+/** Chi square above this probability: the law holds. */
+const HOLDS_ABOVE = 0.05;
+
+/**
+ * What      Which lines follow the level law: the lowest n_min with p > 0.05 and at least five lines up to the highest.
+ *           Where none has it, the n_min whose scaled standard error of the gap is smallest, and a note says so.
+ * Units     eV.
+ * Domain    fewer than five lines are all used. A range that is asked for is taken as it is.
+ */
+export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesIssue> {
+  const count = input.n.length;
+  if (count === 0) {
+    return failure({ code: "series/too-few-lines", facts: { law: "level", found: 0, needed: 2 } });
+  }
+  const highest = Math.max(...input.n);
+  const factor = input.factor ?? 1;
+  if (input.fit_n !== "auto") {
+    const [min, max] = input.fit_n;
+    const fit = fitWithin(input, min, max);
+    if (!fit.ok) return fit;
+    return finish(input, fit.value, factor, []);
+  }
+  if (count < FEWEST_LINES) {
+    const fit = fitWithin(input, 0, highest);
+    if (!fit.ok) return fit;
+    return finish(input, fit.value, factor, []);
+  }
+  let fallback: LevelFit | null = null;
+  let fallbackError = Infinity;
+  let failed: Result<LevelFit, SeriesIssue> | null = null;
+  for (let first = 0; count - first >= FEWEST_LINES; first++) {
+    const fit = fitWithin(input, input.n[first]!, highest);
+    if (!fit.ok) {
+      failed = fit;
+      continue;
+    }
+    if (fit.value.p > HOLDS_ABOVE) return finish(input, fit.value, factor, skipNotes(input, first));
+    const error = Math.sqrt(
+      (fit.value.estimates.covariance[0]! * fit.value.chi2) / Math.max(1, fit.value.degreesOfFreedom),
+    );
+    if (error < fallbackError) {
+      fallbackError = error;
+      fallback = fit.value;
+    }
+  }
+  if (fallback === null) return failed as Exclude<typeof failed, null | { ok: true }>;
+  return finish(input, fallback, factor, [
+    doubt(
+      "no-range-follows-law",
+      "series.fit_n",
+      `No range of five lines or more follows the level law with p > 0.05. Taken: n = ${fallback.n[0]} to ${highest}, where the scaled error of the gap is smallest (p = ${fallback.p.toExponential(1)}).`,
+      "name the range (series.fit_n), allow a Ritz term (series.defect=ritz), or look for blends in the residuals",
+    ),
+  ]);
+}
+
+function skipNotes(input: LevelInput, first: number): Note[] {
+  if (first === 0) return [];
+  const skipped = input.n.slice(0, first);
+  return [
+    doubt(
+      "low-n-off-law",
+      "series.fit_n",
+      `The law is fitted from n = ${input.n[first]}: with n = ${skipped.join(", ")} chi square rejects it. Their energies minus the law stand in the lines table.`,
+      "nothing to do where the lowest lines are known to lie off the law; else name the range (series.fit_n)",
+    ),
+  ];
+}
+
+function fitWithin(input: LevelInput, min: number, max: number): Result<LevelFit, SeriesIssue> {
+  const places = placesWithin(input.n, min, max);
+  return fitLevels({
+    ...input,
+    n: places.map((i) => input.n[i]!),
+    energy_eV: selectVector(input.energy_eV, places),
+    covariance: selectMatrix(input.covariance, input.n.length, places),
+  });
+}
+
+function finish(
+  input: LevelInput,
+  fit: LevelFit,
+  factor: number,
+  notes: readonly Note[],
+): Result<RangeChoice, SeriesIssue> {
+  const min = fit.n[0]!;
+  const max = fit.n[fit.n.length - 1]!;
+  const ranges: RangeStep[] = [];
+  const add = (low: number, high: number): void => {
+    const step = low === min && high === max ? success(fit) : fitWithin(input, low, high);
+    if (step.ok) ranges.push(toStep(step.value, factor));
+  };
+  for (const low of input.n) if (low < max) add(low, max);
+  for (const high of input.n) if (high > min && high !== max) add(min, high);
+  return success({
+    fit,
+    fit_n: [min, max],
+    ranges,
+    notes: [...notes, ...fit.notes, ...movingNotes(fit, ranges)],
+  });
+}
+
+/** A gap that walks by more than its errors when one more line is left out is a sign of a wrong law. */
+function movingNotes(fit: LevelFit, ranges: readonly RangeStep[]): Note[] {
+  const gap = fit.estimates.values[0]!;
+  const sigma = Math.sqrt(fit.estimates.covariance[0]!);
+  const index = ranges.findIndex((step) => step.n_min === fit.n[0] && step.n_max === fit.n[fit.n.length - 1]);
+  const next = ranges[index + 1];
+  if (next === undefined || next.n_min <= fit.n[0]! || next.dof < 1) return [];
+  // The variance of the change between nested fits is the difference of their variances.
+  const change = Math.abs(next.gap_eV.value! - gap);
+  const expected = Math.sqrt(Math.max(0, next.gap_eV.sigma! ** 2 - sigma ** 2));
+  if (!(change > 3 * expected && expected > 0)) return [];
+  return [
+    doubt(
+      "gap-depends-on-range",
+      "series.gap_eV",
+      `Leaving out n = ${fit.n[0]} moves the gap by ${format(change * 1e6)} ueV, ${format(change / expected)} times what chance allows.`,
+      "look at the table of ranges, and start higher (series.fit_n)",
+    ),
+  ];
+}
+
+function toStep(fit: LevelFit, factor: number): RangeStep {
+  const { values, covariance } = fit.estimates;
+  const quantity = (i: number): Quantity => symmetric(values[i]!, Math.sqrt(covariance[i * 6]!), factor);
+  return {
+    n_min: fit.n[0]!,
+    n_max: fit.n[fit.n.length - 1]!,
+    gap_eV: quantity(0),
+    rydberg_eV: quantity(1),
+    defect0: quantity(2),
+    chi2: fit.chi2,
+    dof: fit.degreesOfFreedom,
+    p: fit.p,
+  };
+}
