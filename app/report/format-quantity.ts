@@ -44,14 +44,16 @@ export function formatQuantity(
   const sides = unequalSides(value, options.low, options.high);
   const leading = sides === null ? sigma : Math.min(sides.up, sides.down);
   const power = scientificPower(value, sides === null ? sigma : Math.max(sides.up, sides.down));
-  const scale = 10 ** power;
-  const { place } = roundSigma(leading / scale);
+  const scaled = (x: number): number => shift(x, -power);
+  const { place } = roundSigma(scaled(leading));
   const bracket =
     sides === null
-      ? inLastPlace(sigma / scale, place, space)
-      : `+${inLastPlace(sides.up / scale, place, space)}/-${inLastPlace(sides.down / scale, place, space)}`;
+      ? inLastPlace([scaled(sigma)], place, space)[0]!
+      : inLastPlace([scaled(sides.up), scaled(sides.down)], place, space)
+          .map((side, i) => (i === 0 ? `+${side}` : `-${side}`))
+          .join("/");
   const tens = power === 0 ? "" : ` × 10${superscript(power)}`;
-  return `${fixed(value / scale, place, space)}(${bracket})${tens}${after}`;
+  return `${fixed(scaled(value), place, space)}(${bracket})${tens}${after}`;
 }
 
 /**
@@ -140,11 +142,11 @@ function scientificPower(value: number, sigma: number): number {
   return exponent < -3 || exponent > 5 ? exponent : 0;
 }
 
-/** Sigma in units of the value's last digit where it lies wholly behind the decimal point, else as a plain number. */
-function inLastPlace(sigma: number, place: number, space: string): string {
-  const units = roundHalfEven(sigma, place);
-  if (place >= 0) return fixed(sigma, place, space);
-  return units >= 10 ** -place ? fixed(sigma, place, space) : String(units);
+/** In units of the value's last digit where all lie wholly behind the decimal point, else as plain numbers. */
+function inLastPlace(sigmas: readonly number[], place: number, space: string): string[] {
+  const units = sigmas.map((sigma) => roundHalfEven(sigma, place));
+  const across = place >= 0 || units.some((one) => one >= 10 ** -place);
+  return sigmas.map((sigma, i) => (across ? fixed(sigma, place, space) : String(units[i]!)));
 }
 
 /** x / 10^place to the nearest integer, ties to even (ISO 80000-1:2022, annex B, rule A), in decimal. */

@@ -55,7 +55,7 @@ function header(result: RunglineResult): string[] {
     ...labelled("Reading", columnsInWords(result)),
     ...labelled(
       "Signal",
-      `${signalName(reading.signal_unit)}; ${formatNumber(low, 6)} to ${formatNumber(high, 6)} eV; ${
+      `${signalName(reading.signal_unit)}; ${formatNumber(low, 8)} to ${formatNumber(high, 8)} eV; ${
         reading.used_points
       } of ${source.points} points used, ${reading.skipped} rows skipped; noise ${noiseInWords(result)}`,
     ),
@@ -138,13 +138,13 @@ function seriesPart(result: RunglineResult): string[] {
     [
       "gap E_g",
       energy(series.gap_eV, ELECTRONVOLT, level),
-      systematicWords(systematic?.gap_eV ?? null),
+      systematicWords(systematic?.gap_eV ?? null, null),
       interval(series.gap_eV, ELECTRONVOLT),
     ],
     [
       "Rydberg energy Ry",
       energy(series.rydberg_eV, rydberg, level),
-      systematicWords(systematic?.rydberg_eV ?? null),
+      systematicWords(systematic?.rydberg_eV ?? null, rydberg),
       interval(series.rydberg_eV, rydberg),
     ],
     [
@@ -240,7 +240,7 @@ function trialsTable(trials: NonNullable<RunglineResult["systematic"]>["trials"]
           one.rydberg_eV === null ? NOT_DETERMINED_WORDS : (1e3 * one.rydberg_eV).toFixed(3),
           one.defect0 === null ? NOT_DETERMINED_WORDS : one.defect0.toFixed(4),
           formatNumber(one.chi2, 5),
-          formatNumber(one.bic, 6),
+          criterion(one.bic),
           formatNumber(one.runs_p, 2),
         ]),
       ],
@@ -256,9 +256,10 @@ function pure(quantity: Quantity): string {
   return formatQuantity(quantity.value, quantity.sigma, "", { ...ends(quantity), exactWord: "held" });
 }
 
-function systematicWords(value_eV: number | null): string {
+/** In the unit of its neighbour where that is small enough, else in one of its own. */
+function systematicWords(value_eV: number | null, given: EnergyUnit | null): string {
   if (value_eV === null) return NOT_DETERMINED_WORDS;
-  const unit = energyUnit(value_eV);
+  const unit = given ?? energyUnit(value_eV);
   return `±${formatNumber(value_eV * unit.perElectronvolt, 2)} ${unit.name}`;
 }
 
@@ -279,7 +280,7 @@ function widthPart(result: RunglineResult): string[] {
   const formula =
     law.base === "p-envelope"
       ? `G_n = ${floor}G_1 [(n^2 - 1)/n^5]^(k/3)`
-      : `G_n = ${floor}G_1 (${law.base})^-k`;
+      : `G_n = ${floor}G_1 ${law.base === "n" ? "n" : `(${law.base})`}^-k`;
   return [
     ...heading(`Width law: ${formula} (full widths at half maximum), n = ${law.fit_n[0]} to ${law.fit_n[1]}`),
     ...textTable(
@@ -470,7 +471,7 @@ function fitPart(result: RunglineResult): string[] {
   const rows: string[][] = [
     [
       "window",
-      `${formatNumber(fit.window_eV[0], 6)} to ${formatNumber(fit.window_eV[1], 6)} eV, fitted as ${fit.domain}`,
+      `${formatNumber(fit.window_eV[0], 8)} to ${formatNumber(fit.window_eV[1], 8)} eV, fitted as ${fit.domain}`,
     ],
     ["stopped by", `${TERMINATION_WORDS[fit.termination]} after ${fit.iterations} iterations`],
     ["reached", reached === "" ? NOT_DETERMINED_WORDS : reached],
@@ -478,7 +479,7 @@ function fitPart(result: RunglineResult): string[] {
       "chi square",
       `${formatNumber(fit.chi2, 6)} for ${fit.dof} degrees of freedom, reduced ${formatNumber(fit.reduced_chi2)}`,
     ],
-    ["AIC, BIC", `${formatNumber(fit.aic, 6)}, ${formatNumber(fit.bic, 6)}`],
+    ["AIC, BIC", `${criterion(fit.aic)}, ${criterion(fit.bic)}`],
     [
       "residuals",
       `p of runs ${formatNumber(fit.runs_p, 2)}; Durbin-Watson ${formatNumber(fit.durbin_watson, 3)}; correlation of neighbours ${formatNumber(
@@ -493,6 +494,11 @@ function fitPart(result: RunglineResult): string[] {
     ],
   ];
   return [...heading("Fit"), ...textTable(rows, ["left", "left"])];
+}
+
+/** Only differences count, of which one is little and ten is much. */
+function criterion(value: number | null): string {
+  return value === null ? NOT_DETERMINED_WORDS : value.toFixed(1);
 }
 
 function notesPart(result: RunglineResult): string[] {
