@@ -2,7 +2,7 @@ import type { MenuItemConstructorOptions } from "electron";
 import { CRYOGEN_CAUTION, LASER_CAUTION } from "../../app/report/index.ts";
 
 /** What the menu asks of the page; the page's own controls do the same. */
-export type MenuCommand = "open" | "demo" | "save-result" | "save-protocol" | "undo" | "redo";
+export type MenuCommand = "open" | "save" | "undo" | "redo";
 
 export interface MenuActions {
   send(command: MenuCommand): void;
@@ -27,10 +27,7 @@ export function menuTemplate(
       label: "&File",
       submenu: [
         command("&Open Spectra…", "open", "CmdOrCtrl+O"),
-        command("Open &Demo Run", "demo"),
-        { type: "separator" },
-        command("&Save Result…", "save-result", "CmdOrCtrl+S"),
-        command("Save &Protocol…", "save-protocol", "CmdOrCtrl+Shift+S"),
+        command("&Save Result and Protocol…", "save", "CmdOrCtrl+S"),
         { type: "separator" },
         facts.mac ? { role: "close" } : { role: "quit" },
       ],

@@ -312,7 +312,7 @@ describe("the menu", () => {
     item("Save Result").click!();
     expect(electron.windows[0]!.sent).toEqual([
       ["rungline:command", "open"],
-      ["rungline:command", "save-result"],
+      ["rungline:command", "save"],
     ]);
   });
 
