@@ -31,7 +31,10 @@ export interface Assignment {
  * Source    hypothesis and verification in the manner of Fischler and Bolles, Commun. ACM 24, 381 (1981), exhaustive
  *           instead of random, hence without a seed.
  */
-export function assignPrincipalNumbers(peaks: readonly Peak[], choices: AssignmentChoices): Assignment | null {
+export function assignPrincipalNumbers(
+  peaks: readonly Peak[],
+  choices: AssignmentChoices,
+): Assignment | null {
   if (peaks.length < 3) return null;
   let best: Assignment | null = null;
   const strongest = peaks
@@ -45,7 +48,7 @@ export function assignPrincipalNumbers(peaks: readonly Peak[], choices: Assignme
     if (place < 2) continue;
     const spacing = peaks[top]!.energy_eV - peaks[strongest[place - 1]!]!.energy_eV;
     for (let k = 0; k < GAP_TRIALS; k++) {
-      const gap = peaks[top]!.energy_eV + spacing * 0.2 * (150 ** (k / (GAP_TRIALS - 1)));
+      const gap = peaks[top]!.energy_eV + spacing * 0.2 * 150 ** (k / (GAP_TRIALS - 1));
       const t = strongest.slice(0, place + 1).map((i) => 1 / Math.sqrt(gap - peaks[i]!.energy_eV));
       for (let a = 0; a < t.length - 1; a++) {
         for (let b = a + 1; b < Math.min(t.length, a + 4); b++) {
@@ -64,7 +67,13 @@ export function assignPrincipalNumbers(peaks: readonly Peak[], choices: Assignme
 
 const GAP_TRIALS = 60;
 
-function judge(peaks: readonly Peak[], gap: number, rydberg: number, choices: AssignmentChoices, known?: number): Assignment | null {
+function judge(
+  peaks: readonly Peak[],
+  gap: number,
+  rydberg: number,
+  choices: AssignmentChoices,
+  known?: number,
+): Assignment | null {
   const nu = peaks.map((peak) => (peak.energy_eV < gap ? Math.sqrt(rydberg / (gap - peak.energy_eV)) : NaN));
   let defect = known ?? choices.defectCentre;
   if (known === undefined && !choices.defectHeld) {
@@ -107,7 +116,12 @@ function judge(peaks: readonly Peak[], gap: number, rydberg: number, choices: As
   let gain = 0;
   for (const one of byN.values()) gain += one.gain;
   const score =
-    gain - loss - 2.5 * missing - strengthLoss(peaks, byN) - 0.8 * Math.abs(defect - choices.defectCentre) - 0.15 * ns[0]!;
+    gain -
+    loss -
+    2.5 * missing -
+    strengthLoss(peaks, byN) -
+    0.8 * Math.abs(defect - choices.defectCentre) -
+    0.15 * ns[0]!;
   const used = new Set([...byN.values()].map((one) => one.peak));
   const low = peaks[byN.get(ns[0]!)!.peak]!.energy_eV;
   return {
@@ -115,7 +129,9 @@ function judge(peaks: readonly Peak[], gap: number, rydberg: number, choices: As
     rydberg_eV: rydberg,
     defect,
     matched: ns.map((n) => ({ n, peak: byN.get(n)!.peak })),
-    unmatched: peaks.map((_, i) => i).filter((i) => !used.has(i) && peaks[i]!.energy_eV >= low && peaks[i]!.energy_eV < gap),
+    unmatched: peaks
+      .map((_, i) => i)
+      .filter((i) => !used.has(i) && peaks[i]!.energy_eV >= low && peaks[i]!.energy_eV < gap),
     score,
   };
 }
@@ -129,7 +145,9 @@ function merit(peak: Peak): number {
 
 /** Area n^3 should vary smoothly: the spread of its logarithm about the median, beyond a factor two, costs. */
 function strengthLoss(peaks: readonly Peak[], byN: ReadonlyMap<number, { peak: number }>): number {
-  const logs = [...byN].map(([n, one]) => Math.log(Math.max(1e-300, peaks[one.peak]!.height * peaks[one.peak]!.width_eV * n ** 3)));
+  const logs = [...byN].map(([n, one]) =>
+    Math.log(Math.max(1e-300, peaks[one.peak]!.height * peaks[one.peak]!.width_eV * n ** 3)),
+  );
   const sorted = [...logs].sort((a, b) => a - b);
   const median = sorted[Math.floor(sorted.length / 2)]!;
   return logs.reduce((sum, value) => sum + 0.5 * Math.max(0, Math.abs(value - median) - Math.LN2), 0);

@@ -24,7 +24,12 @@ const HALF_WINDOW_WIDTHS = 2.5;
 const CENTRES_PER_WIDTH = 4;
 const BASIS = 5;
 
-export function findPeaks(energy: Float64Array, signal: Float64Array, sigma: Float64Array, threshold = 6): Peak[] {
+export function findPeaks(
+  energy: Float64Array,
+  signal: Float64Array,
+  sigma: Float64Array,
+  threshold = 6,
+): Peak[] {
   const m = energy.length;
   if (m < 20) return [];
   const span = energy[m - 1]! - energy[0]!;
@@ -106,7 +111,8 @@ function scanWidth(
       }
     }
     // A line needs points on both flanks and on its top; at the ends of the range a shortened window is enough.
-    if (filled < 9 || core < 3 || middle - low < BINS_PER_WIDTH / 2 || high - middle < BINS_PER_WIDTH / 2) continue;
+    if (filled < 9 || core < 3 || middle - low < BINS_PER_WIDTH / 2 || high - middle < BINS_PER_WIDTH / 2)
+      continue;
     const solved = solveFirst(normal, right, total);
     if (solved === null) continue;
     const reduced = Math.max(1, solved.chi2 / Math.max(1, filled - BASIS));
@@ -116,12 +122,19 @@ function scanWidth(
   }
   for (let c = 0; c < count; c++) {
     const s = significance[c]!;
-    if (s < threshold || (c > 0 && significance[c - 1]! > s) || (c < count - 1 && significance[c + 1]! >= s)) continue;
+    if (s < threshold || (c > 0 && significance[c - 1]! > s) || (c < count - 1 && significance[c + 1]! >= s))
+      continue;
     const before = c > 0 ? significance[c - 1]! : s;
     const after = c < count - 1 ? significance[c + 1]! : s;
     const curvature = 2 * s - before - after;
     const shift = curvature > 0 ? Math.max(-0.5, Math.min(0.5, (after - before) / (2 * curvature))) : 0;
-    out.push({ energy_eV: first + (c + shift) * stride, width_eV: width, height: height[c]!, odd: odd[c]!, significance: s });
+    out.push({
+      energy_eV: first + (c + shift) * stride,
+      width_eV: width,
+      height: height[c]!,
+      odd: odd[c]!,
+      significance: s,
+    });
   }
 }
 

@@ -1,0 +1,229 @@
+import {
+  backgroundColumns,
+  levelLink,
+  strengthShare,
+  widthLink,
+  type FitPoints,
+  type FitStart,
+  type LevelValues,
+  type LinkData,
+  type ModelSpec,
+  type SpectrumFit,
+  type TailSpec,
+  type WidthValues,
+} from "../fit/index.ts";
+import { levelEnergy, levelSpacing, WIDTH, widthLaw } from "../laws/index.ts";
+import type { BackgroundTerm, Protocol } from "../protocol/index.ts";
+import type { Spectrum } from "../spectrum/index.ts";
+
+/**
+ * What is known of the series so far: start values for the next fit, and the errors that weigh the laws the tail is
+ * tied to. Arrays run with `ns`.
+ */
+export interface LadderState {
+  readonly ns: readonly number[];
+  readonly energy: Float64Array;
+  readonly energySigma: Float64Array;
+  readonly width: Float64Array;
+  readonly widthSigma: Float64Array;
+  readonly areaSigma: Float64Array;
+  /** Whether the level law speaks for this line. */
+  readonly include: readonly boolean[];
+  readonly levels: LevelValues;
+  readonly widths: WidthValues;
+  readonly asymmetry: number;
+  readonly factor: number;
+}
+
+export interface ModelChoices {
+  readonly background: readonly BackgroundTerm[];
+  readonly tail: boolean;
+  readonly continuumOdd: boolean;
+  readonly asymmetry: Protocol["lines"]["asymmetry"];
+}
+
+/** Widths of this many spacings make neighbouring lines one smooth band (ripple below exp(-2 pi)). */
+const BLENDED = 2;
+const MOST_TIED_LINES = 60;
+
+/** The model of one spectrum for this state, its laws linked to the free lines. */
+export function buildModel(
+  points: FitPoints,
+  state: LadderState,
+  protocol: Protocol,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+): { spec: ModelSpec; state: LadderState; start: FitStart } {
+  const defectCount = freeDefects(protocol, state.include.filter(Boolean).length);
+  const energies: LinkData = {
+    ns: state.ns,
+    value: state.energy,
+    sigma: state.energySigma,
+    include: state.include,
+  };
+  const levels = levelLink(energies, state.levels, 2 + defectCount);
+  const widths = widthLink(
+    { ns: state.ns, value: state.width, sigma: state.widthSigma, include: state.include },
+    {
+      ...state.widths,
+      base: protocol.width.base,
+      floorKind: protocol.width.floor_kind === "gaussian" ? "gaussian" : "lorentzian",
+    },
+    { floor: protocol.width.floor_kind !== "none", exponent: protocol.width.exponent === "free" },
+    levels.values.defect0,
+  );
+  const updated: LadderState = { ...state, levels: levels.values, widths: widths.values };
+  const gaussStd = (protocol.lines.slit_fwhm_eV ?? 0) / (2 * Math.sqrt(2 * Math.LN2));
+  const tied = protocol.series.mode === "tied";
+  const spec: ModelSpec = {
+    ns: state.ns,
+    gaussStd,
+    asymmetry: choices.asymmetry,
+    tiedLevels: tied
+      ? { values: levels.values, count: 2 + defectCount, tiedNs: state.ns.filter((_, j) => state.include[j]) }
+      : null,
+    tail: choices.tail ? describeTail(points, updated, protocol, levels.link, widths.link, choices) : null,
+    background: backgroundColumns(choices.background, points.energy, unit, levels.values.gap),
+  };
+  const reach = new Map(state.ns.map((n) => [n, 0.6 * spacing(n, levels.values)]));
+  return {
+    spec,
+    state: updated,
+    start: {
+      lines: state.ns.map((n, j) => ({ n, energy: state.energy[j]!, width: state.width[j]! })),
+      asymmetry: state.asymmetry,
+      factor: state.factor,
+      reach,
+    },
+  };
+}
+
+/** Defect parameters that these lines can carry beside gap and Rydberg energy. */
+function freeDefects(protocol: Protocol, lines: number): number {
+  const wanted = protocol.series.defect === "none" ? 0 : protocol.series.defect === "constant" ? 1 : 2;
+  return Math.max(0, Math.min(wanted, lines - 3));
+}
+
+function describeTail(
+  points: FitPoints,
+  state: LadderState,
+  protocol: Protocol,
+  levels: TailSpec["levelLink"],
+  widths: TailSpec["widthLink"],
+  choices: ModelChoices,
+): TailSpec {
+  const fromN = state.ns[state.ns.length - 1]! + 1;
+  const strength = { law: protocol.strength.law, base: protocol.strength.base };
+  return {
+    fromN,
+    toN: protocol.tail.cutoff_n ?? lastTiedLine(points, state, fromN),
+    below: linesBelow(points, state, protocol),
+    levels: state.levels,
+    levelLink: levels,
+    widths: state.widths,
+    widthLink: widths,
+    strengthShare: strengthShare(
+      { ns: state.ns, value: state.areaSigma, sigma: state.areaSigma, include: state.include },
+      strength,
+      state.levels.defect0,
+    ),
+    strength,
+    envelope:
+      protocol.material.dimension < 2.5
+        ? "allowed-2d"
+        : protocol.material.envelope === "P"
+          ? "forbidden-3d"
+          : "allowed-3d",
+    continuumOdd: choices.continuumOdd,
+    factorFree: true,
+    factor: state.factor,
+  };
+}
+
+/** Lines are summed one by one until they run together, or stand closer than the points can tell. */
+function lastTiedLine(points: FitPoints, state: LadderState, fromN: number): number {
+  const out = new Float64Array(WIDTH.size);
+  const { energy } = points;
+  let i = energy.length - 1;
+  for (let n = fromN; n < fromN + MOST_TIED_LINES; n++) {
+    const gap = spacing(n, state.levels);
+    widthLaw(n, state.levels.defect0, state.widths, out);
+    const at = energyOf(n, state.levels);
+    while (i > 1 && energy[i - 1]! > at) i--;
+    const step = i > 0 ? energy[i]! - energy[i - 1]! : 0;
+    if (out[WIDTH.width]! >= BLENDED * gap || gap < 2 * step) return n - 1;
+  }
+  return fromN + MOST_TIED_LINES - 1;
+}
+
+/** Lines of the series below the lowest free one, which reach into the window with their wings. */
+function linesBelow(points: FitPoints, state: LadderState, protocol: Protocol): number[] {
+  const lowest = protocol.material.first_n ?? (protocol.material.envelope === "P" ? 2 : 1);
+  const below: number[] = [];
+  for (let n = lowest; n < state.ns[0]!; n++) {
+    if (n - state.levels.defect0 > 0.3 && energyOf(n, state.levels) < points.energy[0]!) below.push(n);
+  }
+  return below;
+}
+
+/** The state after a fit: values and errors of the lines it fitted. */
+export function stateAfter(fit: SpectrumFit, before: LadderState): LadderState {
+  const { lines, laws } = fit;
+  const k = lines.ns.length;
+  const error = (block: number, j: number): number => {
+    const i = block * k + j;
+    const variance = lines.covariance[i * 4 * k + i]!;
+    return variance > 0 ? Math.sqrt(variance) : NaN;
+  };
+  // A line held at a bound has no error of its own; it must not steer the laws.
+  const known = (values: Float64Array): Float64Array =>
+    values.map((value) => (Number.isFinite(value) ? value : 1e3));
+  return {
+    ...before,
+    energy: lines.energy,
+    width: lines.width,
+    energySigma: known(Float64Array.from(lines.ns, (_, j) => error(0, j))),
+    widthSigma: known(Float64Array.from(lines.ns, (_, j) => error(1, j))),
+    areaSigma: known(Float64Array.from(lines.ns, (_, j) => error(2, j))),
+    levels: laws?.levels ?? before.levels,
+    widths: laws?.widths ?? before.widths,
+    asymmetry: fit.asymmetry.value,
+    factor: fit.factor?.value ?? before.factor,
+  };
+}
+
+/** The same state with lines added at the top (from the laws) or taken away. */
+export function withLines(state: LadderState, ns: readonly number[]): LadderState {
+  const out = new Float64Array(WIDTH.size);
+  const pick = (values: Float64Array, otherwise: (n: number) => number): Float64Array =>
+    Float64Array.from(ns, (n) => {
+      const j = state.ns.indexOf(n);
+      return j >= 0 ? values[j]! : otherwise(n);
+    });
+  const widthAt = (n: number): number => {
+    widthLaw(n, state.levels.defect0, state.widths, out);
+    return Math.max(out[WIDTH.width]!, 1e-9);
+  };
+  const last = state.ns.length - 1;
+  return {
+    ...state,
+    ns,
+    energy: pick(state.energy, (n) => energyOf(n, state.levels)),
+    width: pick(state.width, widthAt),
+    energySigma: pick(state.energySigma, (n) => widthAt(n)),
+    widthSigma: pick(state.widthSigma, (n) => widthAt(n)),
+    areaSigma: pick(state.areaSigma, () => state.areaSigma[last]! * 3),
+    include: ns.map((n) => {
+      const j = state.ns.indexOf(n);
+      return j >= 0 ? state.include[j]! : true;
+    }),
+  };
+}
+
+export function energyOf(n: number, levels: LevelValues): number {
+  return levelEnergy(n, levels.gap, levels.rydberg, levels.defect0, levels.defect2);
+}
+
+export function spacing(n: number, levels: LevelValues): number {
+  return levelSpacing(n, levels.rydberg, levels.defect0, levels.defect2);
+}
