@@ -44,7 +44,12 @@ async function demoOnLoopback(place: Place, server: LoopbackServer, io: ShellIo)
   io.error(`${WHY_ADDRESS}\n`);
   io.out("\n");
   const status = await printDemo(place, io);
-  if (!io.interactive) return status;
+  if (!io.interactive) {
+    io.error(
+      "\nStandard input is no terminal, so this ends here: `npx rungline window --serve` keeps the window open.\n",
+    );
+    return status;
+  }
   io.error("\nThe address above works until Ctrl+C, for one browser.\n");
   await untilCancelled(io.cancel);
   return 0;
