@@ -28,6 +28,7 @@ interface RowCredit {
  * filled; less where digits had to be taken as grouped; half where words stand beside two numbers; 0 otherwise.
  */
 function creditOf(cells: readonly string[], decimal: DecimalMark, group: string): RowCredit {
+  if (cells.length < 2) return { credit: 0, whole: true };
   let numbers = 0;
   let filled = 0;
   let words = 0;
@@ -51,7 +52,7 @@ function creditOf(cells: readonly string[], decimal: DecimalMark, group: string)
     if (kind === "not-finite") filled++;
     else if (kind === "text" && !saysMissing(cell)) words++;
   }
-  if (numbers === 0 || cells.length < 2) return { credit: 0, whole };
+  if (numbers === 0) return { credit: 0, whole };
   if (words > 0) return { credit: numbers >= 2 ? 0.5 * factor : 0, whole };
   return { credit: filled >= 2 ? factor : 0.3, whole };
 }

@@ -123,6 +123,7 @@ function isUnitRow(cells: readonly string[]): boolean {
 
 const hasUnit = (cells: readonly string[]): boolean =>
   cells.some((cell) => splitColumnName(cell).unit !== "");
+const isNumber = (cell: string): boolean => /^[+-]?(\d+[.,]?\d*|[.,]\d+)([eE][+-]?\d+)?$/.test(cell);
 const letters = (cells: readonly string[]): boolean => cells.some((cell) => /\p{L}|%|°/u.test(cell));
 
 function withUnits(
@@ -222,15 +223,14 @@ export function findHeader(
       );
     }
   }
-  if (
-    near !== undefined &&
-    nearUnits !== null &&
-    aboveCells !== null &&
-    above !== undefined &&
-    hasUnit(aboveCells)
-  ) {
+  if (near !== undefined && nearUnits !== null && aboveCells !== null && above !== undefined) {
     const rest = nearUnits.slice(1).filter((cell) => cell !== "");
-    if (rest.length > 0 && rest.every((cell) => /^[+-]?[\d.,]+([eE][+-]?\d+)?$/.test(cell))) {
+    const numbers = rest.filter(isNumber);
+    // Below names with units, or with a decimal mark in them, numbers belong to a row or to labels, not to names.
+    const below = hasUnit(aboveCells)
+      ? rest.length > 0 && numbers.length === rest.length
+      : numbers.some((cell) => /[.,]\d/.test(cell));
+    if (below && !aboveCells.some(isNumber)) {
       const first = splitColumnName(nearUnits[0]!);
       const labels = first.name === "" || factKeyOf(first.name, first.unit) !== "other";
       const named = [];
@@ -238,7 +238,7 @@ export function findHeader(
         named.push(
           j === 0 || !labels || columns < 3 ? name : clean(`${name} ${nearUnits[j]!} ${first.unit}`),
         );
-      const reason = `line ${above.line} names columns with units`;
+      const reason = `line ${above.line} names the columns; numbers stand below it`;
       const found = withUnits(above.line, named, null, null, labels ? [near.line] : [], reason);
       return labels ? found : { ...found, badLines: [near.line] };
     }

@@ -62,6 +62,13 @@ function slowNumber(original: string, decimal: DecimalMark, group: string): numb
 
 /** The mark between groups of three digits in a cell that is a number, "" where there is none. */
 export function groupMarkOf(cell: string, group: string): string {
+  // Most cells hold no such mark: look before matching.
+  let plain = true;
+  for (let i = 1; i < cell.length - 3 && plain; i++) {
+    const code = cell.charCodeAt(i);
+    plain = code > 39 && code < 127;
+  }
+  if (plain && group === "") return "";
   const grouped = GROUPED.exec(cell.trim().replace(MINUS, "-"));
   if (grouped !== null) return grouped[2]![0]!;
   return group !== "" && cell.includes(group) ? group : "";

@@ -20,7 +20,7 @@ import type { TextRecord } from "./text-records.ts";
 import type { HeaderFact, SkippedRow, Table, TableChoices, TableIssue, TableIssueCode } from "./types.ts";
 
 const MOST_BYTES = 400_000_000;
-const SAMPLE_ALL = 600;
+const SAMPLE_ALL = 400;
 
 /**
  * What      Bytes of an instrument's file to columns of numbers: text, lines, dialect, heading, rows, facts.
@@ -238,8 +238,8 @@ function sampleLines(lines: TextLines): string[] {
     for (let i = 0; i < n; i++) take(i);
     return picked;
   }
-  const head = 120;
-  const tail = 40;
+  const head = 100;
+  const tail = 30;
   const between = SAMPLE_ALL - head - tail;
   for (let i = 0; i < head; i++) take(i);
   for (let k = 0; k < between; k++) take(head + Math.floor(((n - head - tail) * k) / between));

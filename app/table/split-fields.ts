@@ -23,14 +23,13 @@ export function splitPlainBlock(block: string, delimiter: Delimiter): string[][]
   return rows;
 }
 
-/** Quotes that never close are plain characters; they are dropped so that they cannot swallow what follows. */
+/** Quotes that never close are plain characters: they stay in their cell, which then is no number, and swallow nothing. */
 export function splitOne(record: string, delimiter: Delimiter): string[] {
   const spaces = delimiter === " ";
   let text = spaces ? collapseSpaces(record.trim()) : record;
   const quotes = text.split('"').length - 1;
-  if (quotes % 2 === 1) text = text.replaceAll('"', "");
   // A quote may follow padding: `1.5, "2.5"`.
-  else if (quotes > 0 && !spaces)
+  if (quotes > 0 && quotes % 2 === 0 && !spaces)
     text = text.replace(/(^|[,;\t]) +"/g, '$1"').replace(/" +(?=[,;\t]|$)/g, '"');
   const rows = Papa.parse(text, {
     delimiter,
