@@ -42,8 +42,8 @@ export interface ModelChoices {
   readonly asymmetry: Protocol["lines"]["asymmetry"];
 }
 
-/** Widths of this many spacings make neighbouring lines one smooth band (ripple below exp(-2 pi)). */
-const BLENDED = 2;
+/** Widths of this many spacings make neighbouring lines one smooth band (ripple 2 exp(-3 pi), 2e-4 of its height). */
+const BLENDED = 3;
 const MOST_TIED_LINES = 60;
 
 /** The model of one spectrum for this state, its laws linked to the free lines. */

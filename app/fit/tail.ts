@@ -1,4 +1,4 @@
-import { LEVEL, levelLaw, strength, WIDTH, widthLaw, type LevelParameters } from "../laws/index.ts";
+import { defectAt, LEVEL, levelLaw, strength, WIDTH, widthLaw, type LevelParameters } from "../laws/index.ts";
 import {
   averagedTail,
   continuumPair,
@@ -11,8 +11,8 @@ import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec
 /**
  * What      Absorption of everything that is tied to the laws, for a strength law of coefficient C = 1:
  *           T(E) = f [sum_tied s_n (L_n + 2 q D_n) + band] + sum_below s_n (L_n + 2 q D_n) + continuum.
- *           The band stands for the lines above `toN`, which run together: a rectangle of height 1/(2 Ry) from
- *           E(toN + 1/2) to the gap, broadened by the width there. The continuum has the height 1/(2 Ry) at the gap.
+ *           The band stands for the lines above `toN`, which run together, from E(toN + 1/2) to the gap, as high as
+ *           the strength law says (towards 1/(2 Ry)) and broadened by the width there. The continuum has the height 1/(2 Ry) at the gap.
  * Shapes    all columns (m).
  * Units     eV, 1/eV.
  * Accuracy  the band replaces lines whose width is at least `BLENDED` spacings: ripple exp(-pi BLENDED) of its height.
@@ -45,12 +45,14 @@ export class TailEvaluator {
   private readonly grid: SparseGrid;
   private readonly scratch: Float64Array[];
   private readonly sums: Float64Array[];
+  private readonly bands: readonly BandEdge[];
   private readonly bandScratch: Record<BandColumn, Float64Array>;
 
   constructor(points: FitPoints, spec: TailSpec, gaussStd: number) {
     this.points = points;
     this.spec = spec;
     this.gaussStd = gaussStd;
+    this.bands = groupBands(spec);
     const m = points.energy.length;
     const { gap, rydberg, defect0 } = spec.levels;
     const low = spec.toN >= spec.fromN ? gap - rydberg / (spec.fromN - defect0) ** 2 : gap;
@@ -172,7 +174,11 @@ export class TailEvaluator {
     return { level, width };
   }
 
-  /** The lines above toN run together: one band from E(toN + 1/2) to the gap, each piece as wide as the lines there. */
+  /**
+   * The lines above toN run together. They are taken in groups, each group a band as high as its lines are strong,
+   * which is the sum over the groups' lower edges of (height - height of the group before) times the band from there to
+   * the gap.
+   */
   private addBand(
     law: LevelParameters,
     widths: WidthValues,
@@ -184,29 +190,40 @@ export class TailEvaluator {
     const nodes = this.grid.nodes;
     const level = new Float64Array(LEVEL.size);
     const width = new Float64Array(WIDTH.size);
-    levelLaw(spec.toN + 0.5, law, level);
-    widthLaw(spec.toN + 0.5, spec.levels.defect0, widths, width);
-    const lawWidth = width[WIDTH.width]!;
-    const nu = level[LEVEL.effectiveN]!;
-    averagedTail(nodes, 0, nodes.length, law.gap, law.rydberg, nu, this.edgeWidth(lawWidth), band);
-    const slope = this.edgeSlope(lawWidth);
-    // The lower edge also moves with the defect: dE/d(delta) at fixed gap and Rydberg energy, height 1/(2 Ry).
-    const height = 1 / (2 * law.rydberg);
-    const edge = level[LEVEL.energy]!;
-    const g = this.edgeWidth(lawWidth) / 2;
-    for (let i = 0; i < nodes.length; i++) {
-      sums[0]![i]! += band.absorptive[i]!;
-      sums[1]![i]! += band.dispersive[i]!;
-      if (!derivatives) continue;
-      const of = (even: Float64Array, odd: Float64Array): number => factor * (even[i]! + 2 * q * odd[i]!);
-      const a = nodes[i]! - edge;
-      const byEdge = (-factor * height * (g + 2 * q * a)) / (Math.PI * (a * a + g * g));
-      sums[2]![i]! += of(band.absorptiveByGap, band.dispersiveByGap);
-      sums[3]![i]! += of(band.absorptiveByRydberg, band.dispersiveByRydberg);
-      sums[4]![i]! += byEdge * level[LEVEL.byDefect0]!;
-      sums[5]![i]! += byEdge * level[LEVEL.byDefect2]!;
-      const byWidth = slope * of(band.absorptiveByBroadening, band.dispersiveByBroadening);
-      for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
+    for (const { edgeN, step } of this.bands) {
+      levelLaw(edgeN, law, level);
+      widthLaw(edgeN, spec.levels.defect0, widths, width);
+      const lawWidth = width[WIDTH.width]!;
+      averagedTail(
+        nodes,
+        0,
+        nodes.length,
+        law.gap,
+        law.rydberg,
+        level[LEVEL.effectiveN]!,
+        this.edgeWidth(lawWidth),
+        band,
+      );
+      const slope = this.edgeSlope(lawWidth);
+      // The lower edge also moves with the defect, at fixed gap and Rydberg energy; the height there is 1/(2 Ry).
+      const height = 1 / (2 * law.rydberg);
+      const edge = level[LEVEL.energy]!;
+      const g = this.edgeWidth(lawWidth) / 2;
+      for (let i = 0; i < nodes.length; i++) {
+        sums[0]![i]! += step * band.absorptive[i]!;
+        sums[1]![i]! += step * band.dispersive[i]!;
+        if (!derivatives) continue;
+        const of = (even: Float64Array, odd: Float64Array): number =>
+          factor * step * (even[i]! + 2 * q * odd[i]!);
+        const a = nodes[i]! - edge;
+        const byEdge = (-factor * step * height * (g + 2 * q * a)) / (Math.PI * (a * a + g * g));
+        sums[2]![i]! += of(band.absorptiveByGap, band.dispersiveByGap);
+        sums[3]![i]! += of(band.absorptiveByRydberg, band.dispersiveByRydberg);
+        sums[4]![i]! += byEdge * level[LEVEL.byDefect0]!;
+        sums[5]![i]! += byEdge * level[LEVEL.byDefect2]!;
+        const byWidth = slope * of(band.absorptiveByBroadening, band.dispersiveByBroadening);
+        for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
+      }
     }
   }
 
@@ -294,5 +311,40 @@ export class TailEvaluator {
     if (this.gaussStd === 0) return 1;
     const gauss = FWHM_OF_STD * this.gaussStd;
     return 0.5346 + (0.2166 * width) / Math.sqrt(0.2166 * width * width + gauss * gauss);
+  }
+}
+
+/** Lower edge of a group of lines, as a half-integer n, and by how much its height exceeds that of the group below. */
+interface BandEdge {
+  readonly edgeN: number;
+  readonly step: number;
+}
+
+const GROUP_RATIO = 1.2;
+const LAST_GROUP_N = 400;
+
+/**
+ * Heights in units of 1/(2 Ry): sum of s_n over the lines of a group by sum of (n-delta)^-3, that is by the energy it
+ * spans. They differ from 1 because s_n is a law of n and the spacing one of n - delta. Taken at the law the tail was
+ * built with, so they are constants of the fit.
+ */
+function groupBands(spec: TailSpec): BandEdge[] {
+  const { defect0, defect2 } = spec.levels;
+  const nu = (n: number): number => n - defectAt(n, defect0, defect2);
+  const edges: BandEdge[] = [];
+  let before = 0;
+  for (let low = spec.toN + 1; ;) {
+    const high = Math.max(low + 1, Math.round(low * GROUP_RATIO));
+    const edgeN = low - 0.5;
+    if (high > LAST_GROUP_N) {
+      edges.push({ edgeN, step: 1 - before });
+      return edges;
+    }
+    let sum = 0;
+    for (let n = low; n < high; n++) sum += strength(n, defect0, spec.strength.law, spec.strength.base);
+    const height = (2 * sum) / (nu(edgeN) ** -2 - nu(high - 0.5) ** -2);
+    edges.push({ edgeN, step: height - before });
+    before = height;
+    low = high;
   }
 }

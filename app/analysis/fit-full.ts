@@ -1,0 +1,84 @@
+import { stopIfCancelled, type Watch } from "../base/index.ts";
+import { fitSpectrum, type FitPoints } from "../fit/index.ts";
+import type { Protocol } from "../protocol/index.ts";
+import type { RangeChoice } from "../series/index.ts";
+import type { Spectrum } from "../spectrum/index.ts";
+import { leastSignificance, significances, type Climbed } from "./climb-ladder.ts";
+import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
+import { judgeLevels, withLevelRange } from "./level-range.ts";
+
+export interface FullFit extends Climbed {
+  readonly range: RangeChoice | null;
+  /** Seconds of the last fit, from its start values through its covariance. */
+  readonly solveSeconds: number;
+  /** Whether the laws of the tail and those of the lines came to agree. */
+  readonly selfConsistent: boolean;
+}
+
+const MOST_PASSES = 6;
+/** The laws that the tail is tied to agree with those fitted afterwards to this part of a standard error. */
+const AGREEMENT = 0.02;
+
+/**
+ * The fit on every point. The laws of the tail are linearised about the line parameters of the pass before, so passes
+ * follow each other until gap and Rydberg energy stand still; lines that turn out insignificant go.
+ */
+export function fitEveryPoint(
+  points: FitPoints,
+  initial: LadderState,
+  protocol: Protocol,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+  watch: Watch,
+  report: (pass: number) => void,
+): FullFit {
+  const needed = leastSignificance(points.energy.length);
+  let state = initial;
+  let result: FullFit | null = null;
+  let settled = false;
+  for (let pass = 0; pass < MOST_PASSES && !settled; pass++) {
+    report(pass);
+    stopIfCancelled(watch);
+    const model = buildModel(points, state, protocol, unit, choices);
+    const began = watch.seconds();
+    const fit = fitSpectrum(points, model.spec, model.start, { watch });
+    const solveSeconds = watch.seconds() - began;
+    stopIfCancelled(watch);
+    const range = judgeLevels(fit, protocol);
+    const next = withLevelRange(stateAfter(fit, model.state), range);
+    const seen = significances(fit);
+    let keep = state.ns.length;
+    if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
+    const dropped = keep < state.ns.length;
+    settled = !dropped && agrees(model.state, stateAfter(fit, model.state), next.include, range);
+    result = { fit, state: next, range, solveSeconds, selfConsistent: settled };
+    state = dropped ? withLines(next, state.ns.slice(0, keep)) : next;
+  }
+  if (result === null) throw new Error("no pass was made");
+  return result;
+}
+
+/** The laws at the start of a pass (fitted to the lines of the pass before) and those at its end are the same. */
+function agrees(
+  before: LadderState,
+  after: LadderState,
+  include: readonly boolean[],
+  range: RangeChoice | null,
+): boolean {
+  if (range === null) return true;
+  if (before.include.some((one, j) => one !== include[j])) return false;
+  const { values, covariance } = range.fit.estimates;
+  const size = values.length;
+  const close = (i: number, a: number, b: number): boolean => {
+    const sigma = Math.sqrt(covariance[i * size + i]!);
+    return !(sigma > 0) || Math.abs(a - b) <= AGREEMENT * sigma;
+  };
+  const widthSteady =
+    Math.abs(before.widths.coefficient - after.widths.coefficient) <= 1e-3 * after.widths.coefficient;
+  return (
+    widthSteady &&
+    close(0, before.levels.gap, after.levels.gap) &&
+    close(1, before.levels.rydberg, after.levels.rydberg) &&
+    close(2, before.levels.defect0, after.levels.defect0)
+  );
+}
