@@ -1,4 +1,13 @@
-import { FAR_FIELD, TWO_OVER_ROOT_PI, farField, farFieldDerivative, nearField } from "./faddeeva.ts";
+import {
+  FAR_4,
+  FAR_FIELD,
+  FAR_LARGEST,
+  FOUR_NODES,
+  TWO_OVER_ROOT_PI,
+  farField,
+  farFieldDerivative,
+  nearField,
+} from "./faddeeva.ts";
 import { TINY_GAUSS } from "./voigt.ts";
 
 /**
@@ -42,9 +51,28 @@ export function linePair(
   const y = g * scale;
   const y2 = y * y;
   const w = new Float64Array(2);
+  // Wings are most of the points: there farField's rule of four nodes is written out with one division, and without the
+  // way through memory, which takes half the time.
+  const { nodeA, nodeB, weightA, weightB } = FOUR_NODES;
+  const wings = y > 1e-10 ? FAR_4 : Infinity;
   for (let i = from; i < to; i++) {
     const x = (energies[i]! - center) * scale;
-    const r2 = x * x + y2;
+    const x2 = x * x;
+    const r2 = x2 + y2;
+    if (r2 >= wings && r2 < FAR_LARGEST) {
+      const a = x2 - y2;
+      const b = 4 * x2 * y2;
+      const dA = (a - nodeA) * (a - nodeA) + b;
+      const dB = (a - nodeB) * (a - nodeB) + b;
+      const inverse = 1 / (dA * dB);
+      const termA = weightA * dB * inverse;
+      const termB = weightB * dA * inverse;
+      const sum = r2 * (termA + termB);
+      const moment = termA * nodeA + termB * nodeB;
+      absorptive[offset + i] = height * y * (sum + moment);
+      dispersive[offset + i] = height * x * (sum - moment);
+      continue;
+    }
     if (r2 >= FAR_FIELD) farField(x, y, r2, w);
     else nearField(x, y, r2, w);
     absorptive[offset + i] = height * w[0]!;
@@ -103,11 +131,50 @@ export function linePairWithDerivatives(
   const y2 = y * y;
   const w = new Float64Array(2);
   const derivative = new Float64Array(2);
+  const { nodeA, nodeB, weightA, weightB } = FOUR_NODES;
+  const wings = y > 1e-10 ? FAR_4 : Infinity;
   for (let i = from; i < to; i++) {
     const x = (energies[i]! - center) * scale;
-    const r2 = x * x + y2;
+    const x2 = x * x;
+    const r2 = x2 + y2;
+    const k = offset + i;
     let re: number;
     let im: number;
+    if (r2 >= wings && r2 < FAR_LARGEST) {
+      // farField and farFieldDerivative with four nodes, written out as in linePair.
+      const a = x2 - y2;
+      const b = 2 * x * y;
+      const b2 = b * b;
+      const realA = a - nodeA;
+      const realB = a - nodeB;
+      const dA = realA * realA + b2;
+      const dB = realB * realB + b2;
+      const inverse = 1 / (dA * dB);
+      const inverseA = dB * inverse;
+      const inverseB = dA * inverse;
+      const termA = weightA * inverseA;
+      const termB = weightB * inverseB;
+      const sum = r2 * (termA + termB);
+      const moment = termA * nodeA + termB * nodeB;
+      absorptive[k] = height * y * (sum + moment);
+      dispersive[k] = height * x * (sum - moment);
+      const squareA = slope * termA * inverseA;
+      const squareB = slope * termB * inverseB;
+      const differenceA = realA * realA - b2;
+      const differenceB = realB * realB - b2;
+      const plusA = a + nodeA;
+      const plusB = a + nodeB;
+      re = b * (squareA * (differenceA - 2 * realA * plusA) + squareB * (differenceB - 2 * realB * plusB));
+      im = -(
+        squareA * (plusA * differenceA + 2 * realA * b2) +
+        squareB * (plusB * differenceB + 2 * realB * b2)
+      );
+      absorptiveByCenter[k] = -re;
+      absorptiveByWidth[k] = -0.5 * im;
+      dispersiveByCenter[k] = -im;
+      dispersiveByWidth[k] = 0.5 * re;
+      continue;
+    }
     if (r2 >= FAR_FIELD) {
       farField(x, y, r2, w);
       farFieldDerivative(x, y, r2, derivative);
@@ -118,7 +185,6 @@ export function linePairWithDerivatives(
       re = -2 * slope * (x * w[0]! - y * w[1]!);
       im = slope * (TWO_OVER_ROOT_PI - 2 * (x * w[1]! + y * w[0]!));
     }
-    const k = offset + i;
     absorptive[k] = height * w[0]!;
     dispersive[k] = height * w[1]!;
     absorptiveByCenter[k] = -re;

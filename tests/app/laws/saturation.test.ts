@@ -82,22 +82,23 @@ describe("saturation laws", () => {
   });
 
   test("reading a Gaussian self-probed series with the plain hyperbola reads S low by a tenth to a half", () => {
-    // The least-squares S of A0/(1 + S P) on ten even powers up to S P_max.
-    const fitted = (top: number): number => {
-      const powers = Array.from({ length: 10 }, (_, i) => ((i + 1) / 10) * top);
+    // Best A0 and S of A0/(1 + S P) for equal relative errors on 200 even powers from 0 to S P_max; A0 is solved for.
+    const shortfall = (top: number): number => {
+      const powers = Array.from({ length: 200 }, (_, i) => (i / 199) * top);
       const data = powers.map((p) => area("gaussian-self", p, 1, 1));
-      const cost = (s: number): number =>
-        powers.reduce((c, p, i) => c + (area("separate-pump", p, 1, s) - data[i]!) ** 2, 0);
+      const cost = (s: number): number => {
+        const ratio = powers.map((p, i) => area("separate-pump", p, 1, s) / data[i]!);
+        const [one, two] = ratio.reduce(([a, b], r) => [a + r, b + r * r], [0, 0]);
+        return 200 - (one * one) / two;
+      };
       let best = 1;
-      for (let s = 0.2; s < 1.2; s += 0.0005) if (cost(s) < cost(best)) best = s;
+      for (let s = 0.2; s < 1.2; s += 0.002) if (cost(s) < cost(best)) best = s;
       return 1 - best;
     };
-    // Source: PHYSICS notes of the project: 13, 29, 44, 55 per cent for S P_max = 0.5, 2, 5, 10, there with A0 free and
-    // another choice of powers, so only the order and the size are compared
-    const lows = [0.5, 2, 5, 10].map(fitted);
-    expect(lows[0]).toBeGreaterThan(0.05);
-    expect(lows[3]).toBeLessThan(0.65);
-    expect([...lows].sort((a, b) => a - b)).toEqual(lows);
+    // Source: project notes on the physics, section 9: 13, 29, 44, 55 per cent; the weights behind them are not stated there,
+    // hence the margin of 2.5 points
+    const stated = [0.13, 0.29, 0.44, 0.55];
+    [0.5, 2, 5, 10].forEach((top, i) => expect(Math.abs(shortfall(top) - stated[i]!)).toBeLessThan(0.025));
   });
 
   test("outside their domain the laws say NaN", () => {

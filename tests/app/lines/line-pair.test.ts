@@ -2,6 +2,8 @@ import fc from "fast-check";
 import { describe, expect, test } from "vitest";
 import {
   GAUSS_FWHM,
+  faddeeva,
+  faddeevaDerivative,
   linePair,
   linePairByGaussStd,
   linePairWithDerivatives,
@@ -144,6 +146,27 @@ describe("line pair", () => {
       }),
       { seed: 11, numRuns: 1000 },
     );
+  });
+
+  test("wings written out in the loops equal the complex error function and its derivative", () => {
+    const w = new Float64Array(2);
+    for (const g of [0, 1e-3, 0.5, 30, 4000]) {
+      for (let k = -20; k <= 60; k++) {
+        const x = (k % 2 === 0 ? 1 : -1) * 10 ** (k / 10);
+        faddeeva(x, g, w);
+        const [re, im] = [w[0]!, w[1]!];
+        faddeevaDerivative(x, g, re, im, w);
+        // Derived: with s = 1/sqrt(2) z is x + i g, and L = Re w/sqrt(pi), dL/dE0 = -Re w'/sqrt(pi) and so on
+        const root = Math.sqrt(Math.PI);
+        const expected = [re, im, -w[0]!, -w[1]! / 2, -w[1]!, w[0]! / 2].map((v) => v / root);
+        const found = all(x, 0, 2 * g, Math.SQRT1_2);
+        const slope = Math.hypot(w[0]!, w[1]!) / root;
+        expected.forEach((v, j) => {
+          const scale = j < 2 ? Math.abs(v) : slope;
+          expect(Math.abs(found[j]! - v)).toBeLessThanOrEqual((j < 2 ? 4e-15 : 1e-13) * scale);
+        });
+      }
+    }
   });
 
   test("values from both kernels are the same to the last bit", () => {
