@@ -13,6 +13,8 @@ export interface NoiseEstimate {
 
 /** Fewest points for which a change of the noise with the height can be told. */
 const ENOUGH = 600;
+/** Gain in chi square over a constant from which on the change is believed. */
+const CLEARLY = 16;
 /** Sum of the squared autocorrelations of sixth differences: so many contrasts count as one. */
 const CONTRASTS_PER_POINT = 3.17;
 
@@ -79,10 +81,8 @@ function binByHeight(height: Float64Array, z: Float64Array, order: number): Bin[
 /** The best a + b u + c u^2 with no negative part, or null where a constant is not clearly refused. */
 function fitVariance(bins: readonly Bin[]): readonly [number, number, number] | null {
   if (bins.some((bin) => !(bin.variance > 0))) return null;
-  const ratio = Math.max(...bins.map((bin) => bin.variance)) / Math.min(...bins.map((bin) => bin.variance));
   const constant = solve(bins, [0]);
-  const doubtful = bins.length - 1 + 5 * Math.sqrt(2 * (bins.length - 1));
-  if (ratio < 1.3 || constant === null || constant.chi2 < doubtful) return null;
+  if (constant === null) return null;
   const subsets = [[0], [1], [2], [0, 1], [0, 2], [1, 2], [0, 1, 2]];
   let best: { chi2: number; terms: readonly number[] } | null = null;
   for (const subset of subsets) {
@@ -90,8 +90,8 @@ function fitVariance(bins: readonly Bin[]): readonly [number, number, number] | 
     if (trial === null || trial.terms.some((term) => term < 0)) continue;
     if (best === null || trial.chi2 < best.chi2 - 1e-9) best = trial;
   }
-  // A height that explains nothing (noise that follows something else) leaves the constant.
-  if (best === null || best.chi2 > 0.5 * constant.chi2) return null;
+  // Four standard errors: a height that explains no more than chance leaves the constant.
+  if (best === null || constant.chi2 - best.chi2 < CLEARLY) return null;
   const [a = 0, b = 0, c = 0] = best.terms;
   // Below the lowest class nothing is known: keep a floor there.
   const floor = 0.05 * Math.min(...bins.map((bin) => bin.variance));

@@ -112,6 +112,11 @@ const SIGNAL_UNITS: Readonly<Record<string, NonNullable<HeaderMeaning["signalUni
   perm: "1/m",
 };
 
+/** Units of a bare detector reading: with a word for a signal it is counts, whatever else the header says. */
+const READING_UNITS = /^([munp]?[vwa]|counts?|cts|cps|counts\/s|cts\/s|adu)$/;
+const READING_WORDS =
+  /transmi|signal|sample|probe|echantillon|intens|counts|photodiode|detector|detektor|^t$/;
+
 /** Units that say for certain that a column is neither light axis nor signal. */
 const OTHER_UNITS =
   /^(k|mk|degc|°c|c|w|mw|uw|nw|pw|s|ms|us|min|h|v|mv|kv|a|ma|mbar|pa|hpa|t|mt|mm|deg|°|rad)$/;
@@ -151,7 +156,7 @@ const QUANTITIES: readonly (readonly [SignalQuantity | "counts", RegExp])[] = [
   ],
   [
     "transmittance",
-    /transmi(ss|tt|tan)|^trans\b|transmissionsgrad|durchlass|transmitanc|transmision|^%? ?t ?%?$|\bt\/t0\b|^i ?\/ ?i_? ?0$/,
+    /transmi(ss|tt|tan)|^trans\b|transmissionsgrad|durchlass|transmitanc|transmision|^%? ?t ?%?$|\bt\/t0\b|^i ?\/ ?i_? ?0$|\b(sample|signal|probe|s) ?\/ ?(ref|reference|referenz|monitor|lamp|r|f)\b|\bratio\b|\bverhaltnis\b/,
   ],
   ["absorbance", /absorbanc|absorbanz|extin[ck]tion|absorbancia|^abs$|^abs\b(?!.*coeff)|^a$|-log/],
   [
@@ -188,6 +193,8 @@ export function readHeader(name: string, unit: string, whole: string): HeaderMea
   if (REFLECTANCE.test(words) && (quantity === null || quantity === "counts"))
     return { ...nothing, kind: "reflectance" };
   if (REFERENCE.test(words) && quantity !== "transmittance") return { ...nothing, kind: "reference" };
+  if (READING_UNITS.test(plain) && READING_WORDS.test(words) && !OTHER.test(words))
+    return { ...nothing, kind: "signal", quantity: "counts" };
   if (OTHER_UNITS.test(plain)) return { ...nothing, kind: "other" };
 
   const light = LIGHT.find(([, pattern]) => pattern.test(words))?.[0] ?? null;
@@ -201,7 +208,7 @@ export function readHeader(name: string, unit: string, whole: string): HeaderMea
     const perLength = signalUnit !== null && signalUnit !== "percent" && signalUnit !== "fraction";
     return { ...nothing, kind: "signal", quantity: perLength ? "alpha" : null };
   }
-  if (quantity === "counts") return { ...nothing, kind: "signal", quantity };
+  if (quantity === "counts" && !OTHER.test(words)) return { ...nothing, kind: "signal", quantity };
   if (axis !== null && (name === "" || signalUnit === null)) return { ...nothing, kind: "axis", axis, light };
   if (axis !== null && /^x$/.test(words)) return { ...nothing, kind: "axis", axis, light };
   if (signalUnit !== null)

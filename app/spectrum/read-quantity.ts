@@ -23,6 +23,8 @@ export interface QuantityReading {
 const ABOUT = "lines";
 /** A transmission without unit that reaches beyond this is in percent. */
 const NOT_A_FRACTION = 5;
+const NOT_PERCENT = 500;
+const NOISE_ABOVE_ONE = 1.5;
 
 export function readQuantity(
   table: Table,
@@ -161,7 +163,22 @@ function transmittanceScale(
   const sorted = signal.column.values.filter((value) => Number.isFinite(value)).sort();
   const high = sorted[Math.floor(0.98 * (sorted.length - 1))] ?? 0;
   // Noise and interference reach a little above one, a spectrum scaled to some point a few times one.
-  if (high <= NOT_A_FRACTION) return 1;
+  const arbitrary =
+    /^(a\.? ?u\.?|arb.*|w\.? ?e\.?|counts?|cts|cps|counts\/s|adu|[mun\u00b5\u03bc]?[vwa])$/i.test(
+      signal.column.unit.trim(),
+    );
+  if (high <= (arbitrary ? NOISE_ABOVE_ONE : NOT_A_FRACTION)) return 1;
+  if (arbitrary || high > NOT_PERCENT) {
+    notes.push(
+      assumption(
+        "scale-arbitrary",
+        ABOUT,
+        `the transmission reaches ${short(high)}, neither fraction nor percent; it is divided by that, so that the optical depth carries an unknown constant, which the background takes up`,
+        "name the reading without sample with signal.reference_column, or give a transmission",
+      ),
+    );
+    return 1 / high;
+  }
   notes.push(
     assumption(
       "percent-assumed",

@@ -9,7 +9,8 @@
  * Source    local polynomials: Savitzky and Golay, Anal. Chem. 36, 1627 (1964); choice of window: Goldenshluger and
  *           Nemirovski, Math. Methods Stat. 6, 135 (1997).
  */
-const HALF_WIDTHS = [2, 3, 5, 8, 12, 18, 27];
+/** The bare reading comes first: where a line is narrower than the narrowest window nothing is smoothed. */
+const HALF_WIDTHS = [0, 2, 3, 5, 8, 12, 18, 27];
 const AGREE = 2.5;
 
 export function smoothCurve(y: Float64Array, sigma: Float64Array): Float64Array {
@@ -45,6 +46,7 @@ export function smoothCurve(y: Float64Array, sigma: Float64Array): Float64Array 
 /** Weights of a least-squares quadratic over 2 half + 1 even places, evaluated at each place (one row a place). */
 function quadraticRows(half: number): readonly Float64Array[] {
   const size = 2 * half + 1;
+  if (half === 0) return [Float64Array.of(1)];
   let s2 = 0;
   let s4 = 0;
   for (let u = -half; u <= half; u++) {
