@@ -1,5 +1,5 @@
 import { spawn } from "node:child_process";
-import { join, relative } from "node:path";
+import { join } from "node:path";
 import { findPlace, type Place } from "../page/index.ts";
 import { hasDisplay, type BrowserWindow } from "./browser.ts";
 import { demoFit } from "./demo-fit.ts";
@@ -72,15 +72,15 @@ function openElectron(program: string, place: Place): BrowserWindow {
 
 /** The demo's result through the command line in a process of its own, so that the window is served meanwhile. */
 async function printDemo(place: Place, io: ShellIo): Promise<number> {
-  const words = await demoFit(place.demo);
+  const words = await demoFit(place);
   if (words === null) {
     io.error(`rungline: no demo spectra in ${place.demo}\n`);
     return 3;
   }
-  const shown = words.map((word) => (word.startsWith(place.demo) ? relative(place.root, word) : word));
-  io.out(`$ npx rungline ${shown.join(" ")}\n\n`);
+  io.out(`$ npx rungline ${words.join(" ")}\n\n`);
   return new Promise((resolve) => {
     const child = spawn(process.execPath, [join(place.root, "main", "rungline.mjs"), ...words], {
+      cwd: place.root,
       stdio: ["ignore", "pipe", "pipe"],
     });
     child.stdout.setEncoding("utf8").on("data", (text: string) => io.out(text));
