@@ -158,6 +158,7 @@ class Search {
     let damping = 0;
     let leastPromise = Infinity;
     let stalled = 0;
+    let refusedBlind = false;
     const allowance = 10 * this.maxIterations + 20;
     for (;;) {
       if (watch.cancelled()) return this.finish("cancelled");
@@ -178,9 +179,12 @@ class Search {
         let step = finder.find(steering, scale, low, high, radius, damping, delta);
         // Where even the full step promises less than that, the gradient alone leads, by full steps, for as long as
         // the promise keeps falling.
-        const blind = step.predictedFree <= noise;
+        const blind: boolean = !refusedBlind && step.predictedFree <= noise;
         if (blind) {
-          if (step.predictedFree > 0.9 * leastPromise && ++stalled === 2) return this.finish("cost");
+          const seen = Math.max(step.predictedFree, this.reachedCost * this.cost);
+          if (step.predictedFree > 0.9 * leastPromise && seen <= 8 * noise && ++stalled === 2) {
+            return this.finish("cost");
+          }
           leastPromise = Math.min(leastPromise, step.predictedFree);
           if (step.damping > 0) step = finder.find(steering, scale, low, high, Infinity, 0, delta);
         }
@@ -198,6 +202,7 @@ class Search {
         if (this.iterations === 0) radius = Math.min(radius, step.length);
         const cost = this.evaluateTrial();
         if (!Number.isFinite(cost)) {
+          refusedBlind = true;
           radius = 0.25 * Math.min(radius, step.length);
           damping *= 4;
           continue;
@@ -214,7 +219,8 @@ class Search {
           radius = 2 * step.length;
           damping *= 0.5;
         }
-        const accepted = gain >= 1e-4 || (blind && actual >= -4 * noise);
+        const accepted: boolean = gain >= 1e-4 || (blind && actual >= -4 * noise);
+        refusedBlind = !accepted && (blind || refusedBlind);
         if (blind && accepted) radius = Math.max(radius, 2 * step.length);
         const size = scaledNorm(accepted ? this.trial : this.theta, scale);
         this.reachedStep = size > 0 ? step.length / size : Infinity;
@@ -299,6 +305,7 @@ class Search {
   private largestCosine(steering: Steering, low: Float64Array, high: Float64Array): number {
     const { projected, plain } = this.builder;
     const length = Math.sqrt(this.cost);
+    if (length === 0) return 0;
     let largest = 0;
     for (let j = 0; j < this.p; j++) {
       const g = steering.gradient[j]!;

@@ -316,11 +316,28 @@ describe("bounds", () => {
 describe("trouble", () => {
   const { problem } = lineProblem(300, TWO_LINES, 0.02, 8);
 
-  test("a far start still arrives", () => {
+  test("a start with centres a width off and widths twice too large still arrives", () => {
     const near = solveSeparable(problem, START);
-    const far = solveSeparable(problem, Float64Array.from([-0.5, 0.25, 0.5, 0.2]));
+    const far = solveSeparable(problem, Float64Array.from([-0.4, 0.25, 0.45, 0.2]));
     expect(far.converged).toBe(true);
     expect(far.chi2 / near.chi2).toBeCloseTo(1, 9);
+  });
+
+  test("lines that run into one another end soon, and a verdict of convergence is true of the values reached", () => {
+    // From these starts the lines merge or leave the window: other minima, or none.
+    for (const start of [
+      [-0.5, 0.25, 0.5, 0.2],
+      [-0.6, 0.4, 0.5, 0.4],
+      [-0.15, 0.3, 0.5, 0.02],
+      [-0.5, 0.2, 0.2, 0.2],
+    ]) {
+      const solution = solveSeparable(problem, Float64Array.from(start));
+      expect(solution.evaluations).toBeLessThan(400);
+      const { reached, tolerances, termination } = solution;
+      if (termination === "cost") expect(reached.cost).toBeLessThan(1e-11);
+      if (termination === "step") expect(reached.step).toBeLessThanOrEqual(tolerances.step);
+      if (termination === "gradient") expect(reached.gradient).toBeLessThanOrEqual(tolerances.gradient);
+    }
   });
 
   test("a column given twice lowers the rank and flags just its coefficients", () => {
