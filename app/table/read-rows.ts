@@ -17,7 +17,7 @@ export interface RowsRead {
   readonly thousands: string;
 }
 
-const BLOCK_LINES = 4096;
+const BLOCK_LINES = 512;
 /** An exponent, sign or decimal mark without what should follow, or a character cut in its middle. */
 const CUT_NUMBER = /^[+-]?[.,]?$|[eEdD][+-]?$|\ufffd/;
 

@@ -10,7 +10,7 @@ import type { FoundHeader } from "./find-header.ts";
 import { factsOfLine } from "./header-fact.ts";
 import { parseNumber } from "./number-text.ts";
 import { readRows } from "./read-rows.ts";
-import { isRow, isRowLike, joinPairs } from "./row-shape.ts";
+import { isRow, rowLikeness, joinPairs } from "./row-shape.ts";
 import { signatureOf, textSignatureOf } from "./signature.ts";
 import { splitOne, splitRecords } from "./split-fields.ts";
 import { lineText, splitLines } from "./text-lines.ts";
@@ -285,7 +285,12 @@ function noTable(
       first,
       `${Math.max(alone, shape?.fitting ?? 0)} lines with one number each`,
     );
-  if (shape !== null && shape.fitting > 0)
+  const spoilt = cellWithMore(lines);
+  if (spoilt !== null)
+    return refuse("table/only-text", spoilt.line, `${spoilt.cell} where a number should be`, {
+      spoilt: true,
+    });
+  if (shape !== null && shape.score >= 0.9)
     return refuse(
       "table/too-few-rows",
       first,
@@ -299,6 +304,23 @@ function noTable(
     first,
     `${sample.length} line${sample.length === 1 ? "" : "s"} of text beginning ${quote(sample[0]!)}`,
   );
+}
+
+/** A line that begins with a number and goes on with cells like `50 %` or `2.1 eV`: the first such cell. */
+function cellWithMore(lines: TextLines): { line: number; cell: string } | null {
+  for (let i = 0; i < Math.min(lines.count, 1000); i++) {
+    const text = lineText(lines, i);
+    if (!/^\s*[+-]?\d/.test(text) || text.length > 2000) continue;
+    for (const delimiter of ["\t", ";", ","] as const) {
+      const cells = splitOne(text, delimiter).map((cell) => cell.trim());
+      if (cells.length < 2) continue;
+      const cell = cells.find((part) => /^[+-]?\d[\d.,]*\s*[^\d\s.,:/-]\S*$/.test(part));
+      if (cell !== undefined && !Number.isFinite(parseNumber(cell, ".", "")))
+        return { line: i + 1, cell: quote(cell) };
+      break;
+    }
+  }
+  return null;
 }
 
 function looksLikeHeading(sample: readonly string[]): boolean {
@@ -329,16 +351,15 @@ function cellsOf(record: TextRecord, shape: ScoredShape): string[] {
 
 /**
  * The first line, from `from` (0-based) on, that is a row and is followed by rows: of the next three lines that are
- * neither blank nor comments at least half are rows too, if perhaps with a bad cell.
+ * neither blank nor comments at least half are rows too, if perhaps with a bad cell or of another length.
  */
 function findFirstRow(
   lines: TextLines,
   shape: ScoredShape,
   from: number,
 ): { before: TextRecord[]; firstRow: number } | null {
-  const before: TextRecord[] = [];
-  const head = readRecords(lines, 0, from).records;
-  before.push(...head);
+  const before: TextRecord[] = [...readRecords(lines, 0, from).records];
+  let fallback: { before: TextRecord[]; firstRow: number } | null = null;
   let at = from;
   while (at < lines.count) {
     const block = readRecords(lines, at, Math.min(lines.count, at + 256));
@@ -351,7 +372,7 @@ function findFirstRow(
     const rows = records.map((record, i) => {
       if (record.mark !== "" || record.text.trim() === "") return null;
       const cells = shape.paired && !record.text.includes('"') ? joinPairs(plain[i]!) : plain[i]!;
-      return isRow(cells, shape) ? "row" : isRowLike(cells, shape) ? "like" : "no";
+      return isRow(cells, shape) ? "row" : rowLikeness(cells, shape);
     });
     for (let i = 0; i < block.records.length; i++) {
       if (rows[i] === "row" || rows[i] === "like") {
@@ -367,11 +388,13 @@ function findFirstRow(
         if (sound && !aboveHeading && three.filter((row) => row !== "no").length * 2 >= three.length)
           return { before, firstRow: block.records[i]!.line - 1 };
       }
+      if (rows[i] === "row" && fallback === null)
+        fallback = { before: [...before], firstRow: block.records[i]!.line - 1 };
       before.push(block.records[i]!);
     }
     at = block.next;
   }
-  return null;
+  return fallback;
 }
 
 /** How many columns the last line before the rows names: an empty column with a name is kept. */

@@ -44,10 +44,14 @@ export function isRow(cells: readonly string[], shape: RowShape): boolean {
   return numbers > 0;
 }
 
-/** A row with bad cells: the right number of fields, and a number in the first column that is not of words. */
-export function isRowLike(cells: readonly string[], shape: RowShape): boolean {
-  if (cells.length < shape.columns || filledLength(cells) > shape.columns) return false;
+/**
+ * Of a line that is no row: `like` where it has the right number of fields and begins with a number, so that only
+ * other cells are bad; `ragged` where it begins with a number but has another number of fields; else `no`.
+ */
+export function rowLikeness(cells: readonly string[], shape: RowShape): "like" | "ragged" | "no" {
   let axis = 0;
   while (axis < shape.columns - 1 && shape.wordColumns[axis] === true) axis++;
-  return Number.isFinite(parseNumber(cells[axis]!, shape.decimal, shape.group));
+  if (!Number.isFinite(parseNumber(cells[axis] ?? "", shape.decimal, shape.group))) return "no";
+  if (cells.length >= shape.columns && filledLength(cells) <= shape.columns) return "like";
+  return cells.length > 1 ? "ragged" : "no";
 }

@@ -23,8 +23,10 @@ const REMEDIES: Readonly<Record<TableIssue["code"], (issue: TableIssue) => strin
   "table/other-format": () =>
     `This format packs its numbers in a way of its own and is not read yet. ${EXPORT}`,
   "table/too-large": () => "Split the file, or export fewer points.",
-  "table/only-text": () =>
-    `${EXPORT} If the numbers are there but were not seen, name the delimiter and the decimal mark.`,
+  "table/only-text": (issue) =>
+    issue.facts["spoilt"] === true
+      ? "Export numbers without a unit or a sign of per cent in the cell; the unit belongs into the heading."
+      : `${EXPORT} If the numbers are there but were not seen, name the delimiter and the decimal mark.`,
   "table/only-header": () =>
     "The heading is there but no numbers follow: check that the measurement was stored.",
   "table/one-column": () =>

@@ -140,4 +140,13 @@ describe("the heading is found where instruments put it", () => {
     expect(tableOf(text, { headerLine: 0 }).columns[0]!.header).toBe("");
     expect(tableOf(text, { headerLine: 0 }).rows).toBe(3);
   });
+
+  it("ragged rows near the top do not push the table down", () => {
+    const table = tableOf("x,y1,y2\n1.0,2.0,3.0\n1.1,2.1,3.1\n1.2,2.2\n1.3,2.3\n1.4,2.4,3.4\n");
+    expect(table.dialect.firstDataLine).toBe(2);
+    expect(skippedOf(table)).toEqual([
+      [4, null, "ragged"],
+      [5, null, "ragged"],
+    ]);
+  });
 });
