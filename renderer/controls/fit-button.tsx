@@ -1,0 +1,39 @@
+import { Button, ProgressBar } from "react-aria-components";
+import { fitIsOld, useController, useWindow } from "../store/context.ts";
+
+/** Fit, or how far the running fit is with a way out. */
+export function FitButton() {
+  const controller = useController();
+  const job = useWindow((state) => state.job);
+  const old = useWindow(fitIsOld);
+  const none = useWindow((state) => state.session.currentId === null);
+  if (job === null)
+    return (
+      <Button
+        className="button button-main"
+        data-old={old || undefined}
+        isDisabled={none}
+        onPress={() => void controller.fit()}
+      >
+        {old ? "Fit again" : "Fit"}
+      </Button>
+    );
+  return (
+    <div className="fit-job" data-state={job.cancelling ? "cancelling" : "running"}>
+      <ProgressBar value={100 * job.fraction} className="progress" aria-label="Fit">
+        {({ percentage }) => (
+          <>
+            <svg className="progress-track" aria-hidden="true">
+              <rect className="progress-ground" width="100%" height="100%" rx="2" />
+              <rect className="progress-fill" width={`${percentage ?? 0}%`} height="100%" rx="2" />
+            </svg>
+            <span className="small progress-step">{job.cancelling ? "stopping" : job.step}</span>
+          </>
+        )}
+      </ProgressBar>
+      <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
+        Cancel
+      </Button>
+    </div>
+  );
+}

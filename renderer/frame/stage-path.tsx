@@ -1,0 +1,136 @@
+import { formatQuantity } from "../../app/report/index.ts";
+import {
+  currentFile,
+  currentFit,
+  currentReading,
+  fitIsOld,
+  useController,
+  useWindow,
+} from "../store/context.ts";
+import type { Stage, WindowState } from "../store/store.ts";
+
+export type Mark = "done" | "doubt" | "not-yet" | "busy" | "refused";
+
+interface StageState {
+  readonly stage: Stage;
+  readonly title: string;
+  readonly mark: Mark;
+  readonly words: string;
+}
+
+const MARKS: Readonly<Record<Mark, string>> = {
+  done: "●",
+  doubt: "▲",
+  "not-yet": "○",
+  busy: "◐",
+  refused: "✕",
+};
+const MARK_WORDS: Readonly<Record<Mark, string>> = {
+  done: "done",
+  doubt: "in doubt",
+  "not-yet": "not yet",
+  busy: "at work",
+  refused: "refused",
+};
+
+/** The way from file to ladder, each stage with its state in words and mark. */
+export function StagePath() {
+  const controller = useController();
+  const shown = useWindow((state) => state.stage);
+  const reading = useWindow(readState);
+  const lines = useWindow(linesState);
+  const ladder = useWindow(ladderState);
+  const readingMark = useWindow(readMark);
+  const linesMark = useWindow(linesMarkOf);
+  const ladderMark = useWindow(ladderMarkOf);
+  const stages: readonly StageState[] = [
+    { stage: "read", title: "Read", mark: readingMark, words: reading },
+    { stage: "lines", title: "Lines", mark: linesMark, words: lines },
+    { stage: "ladder", title: "Ladder", mark: ladderMark, words: ladder },
+  ];
+  return (
+    <nav className="path" aria-label="Stages">
+      <ol>
+        {stages.map(({ stage, title, mark, words }) => (
+          <li key={stage}>
+            <button
+              type="button"
+              className="path-stage"
+              aria-current={shown === stage ? "step" : undefined}
+              data-stage={stage}
+              data-state={mark}
+              onClick={() => controller.show(stage)}
+            >
+              <span className="path-mark" data-mark={mark} role="img" aria-label={MARK_WORDS[mark]}>
+                {MARKS[mark]}
+              </span>
+              <span className="path-title">{title}</span>
+              <span className="path-words">{words}</span>
+            </button>
+          </li>
+        ))}
+      </ol>
+    </nav>
+  );
+}
+
+function readMark(state: WindowState): Mark {
+  const reading = currentReading(state);
+  if (currentFile(state) === null || reading === null) return "not-yet";
+  if (reading.state === "reading") return "busy";
+  if (reading.state === "refused") return "refused";
+  return reading.inspection.spectrum.notes.some((note) => note.level === "doubt") ? "doubt" : "done";
+}
+
+function readState(state: WindowState): string {
+  const reading = currentReading(state);
+  if (currentFile(state) === null || reading === null) return "no file";
+  if (reading.state === "reading") return "reading";
+  if (reading.state === "refused") return "not a spectrum";
+  return `${reading.inspection.spectrum.energy_eV.length} points`;
+}
+
+function linesMarkOf(state: WindowState): Mark {
+  const fit = currentFit(state);
+  if (isFitting(state)) return "busy";
+  if (refused(state)) return "refused";
+  if (fit === null) return "not-yet";
+  const { result } = fit.analysed;
+  const doubt = result.notes.some(
+    ({ level, about }) => level === "doubt" && /^(lines|fit|background|tail)/.test(about),
+  );
+  return fitIsOld(state) || result.status === "not-converged" || doubt ? "doubt" : "done";
+}
+
+function linesState(state: WindowState): string {
+  const fit = currentFit(state);
+  if (isFitting(state)) return `fitting ${Math.round(100 * (state.job?.fraction ?? 0))} %`;
+  if (refused(state)) return "refused";
+  if (fit === null) return "not fitted";
+  if (fitIsOld(state)) return "choices changed";
+  const { result } = fit.analysed;
+  if (result.status === "not-converged") return "not converged";
+  return `${result.lines.length} ${result.lines.length === 1 ? "line" : "lines"}`;
+}
+
+function ladderMarkOf(state: WindowState): Mark {
+  const fit = currentFit(state);
+  if (fit === null || fit.analysed.result.series === null) return "not-yet";
+  const doubt = fit.analysed.result.notes.some(
+    ({ level, about }) => level === "doubt" && /^(series|width_law|strength_law|derived)/.test(about),
+  );
+  return fitIsOld(state) || doubt ? "doubt" : "done";
+}
+
+function ladderState(state: WindowState): string {
+  const fit = currentFit(state);
+  if (fit === null) return "no series yet";
+  const { series } = fit.analysed.result;
+  if (series === null) return "no series seen";
+  return formatQuantity(series.gap_eV.value, series.gap_eV.sigma, "eV", { groupSpace: "\u2009" });
+}
+
+const isFitting = (state: WindowState): boolean =>
+  state.job !== null && state.job.fileId === state.session.currentId;
+const refused = (state: WindowState): boolean =>
+  state.session.currentId !== null && state.refusals[state.session.currentId] !== undefined;

@@ -1,0 +1,133 @@
+import type { Wording } from "../../app/base/index.ts";
+import type {
+  AnalysedFile,
+  FileRequest,
+  Inspection,
+  RunFacts,
+  WorkerReply,
+  WorkerRequest,
+} from "../../app/tasks/index.ts";
+
+/** How a job ended; bad input and cancelling are outcomes, not errors. */
+export type Outcome<T> =
+  | { readonly kind: "done"; readonly value: T }
+  | { readonly kind: "refused"; readonly wordings: readonly Wording[] }
+  | { readonly kind: "cancelled" }
+  | { readonly kind: "fault"; readonly message: string; readonly stack: string };
+
+export interface RunningJob<T> {
+  readonly outcome: Promise<Outcome<T>>;
+  cancel(): void;
+}
+
+/** The part of a Worker that is used; a test hands in its own. */
+export interface WorkerLike {
+  postMessage(message: WorkerRequest): void;
+  terminate(): void;
+  onmessage: ((event: MessageEvent<WorkerReply>) => void) | null;
+  onerror: ((event: ErrorEvent) => void) | null;
+}
+
+type Settle = (outcome: Outcome<never> | Outcome<AnalysedFile> | Outcome<Inspection>) => void;
+interface Pending {
+  readonly settle: Settle;
+  readonly progress: ((fraction: number, step: string) => void) | null;
+}
+
+/** How long a worker that can be told to stop may take to obey before it is ended. */
+const OBEY_MS = 1500;
+
+/**
+ * One page worker and what is waiting for it. Cancelling sets a shared flag that the fit looks at; where memory
+ * cannot be shared, or the flag is not obeyed in time, the worker is ended and a new one made for the next job.
+ */
+export class JobClient {
+  readonly #make: () => WorkerLike;
+  readonly #shared: boolean;
+  #worker: WorkerLike | null = null;
+  #pending = new Map<number, Pending>();
+  #nextId = 1;
+
+  constructor(make: () => WorkerLike, shared: boolean) {
+    this.#make = make;
+    this.#shared = shared;
+  }
+
+  inspect(request: FileRequest): Promise<Outcome<Inspection>> {
+    const id = this.#nextId++;
+    return new Promise((resolve) => {
+      this.#pending.set(id, { settle: resolve as Settle, progress: null });
+      this.#ready().postMessage({ type: "inspect", id, request });
+    });
+  }
+
+  analyse(
+    request: FileRequest,
+    run: RunFacts,
+    progress: (fraction: number, step: string) => void,
+  ): RunningJob<AnalysedFile> {
+    const id = this.#nextId++;
+    const cancel = this.#shared ? new Int32Array(new SharedArrayBuffer(4)) : null;
+    const outcome = new Promise<Outcome<AnalysedFile>>((resolve) => {
+      this.#pending.set(id, { settle: resolve as Settle, progress });
+      this.#ready().postMessage({ type: "analyse", id, request, run, cancel });
+    });
+    return {
+      outcome,
+      cancel: () => {
+        if (cancel === null) {
+          this.#end({ kind: "cancelled" });
+          return;
+        }
+        Atomics.store(cancel, 0, 1);
+        setTimeout(() => {
+          if (this.#pending.has(id)) this.#end({ kind: "cancelled" });
+        }, OBEY_MS);
+      },
+    };
+  }
+
+  close(): void {
+    this.#end({ kind: "cancelled" });
+  }
+
+  #ready(): WorkerLike {
+    if (this.#worker !== null) return this.#worker;
+    const worker = this.#make();
+    worker.onmessage = (event) => this.#hear(event.data);
+    worker.onerror = (event) =>
+      this.#end({ kind: "fault", message: event.message || "the worker could not be started", stack: "" });
+    this.#worker = worker;
+    return worker;
+  }
+
+  #hear(reply: WorkerReply): void {
+    const pending = this.#pending.get(reply.id);
+    if (pending === undefined) return;
+    if (reply.type === "progress") {
+      pending.progress?.(reply.fraction, reply.step);
+      return;
+    }
+    this.#pending.delete(reply.id);
+    switch (reply.type) {
+      case "analysed":
+        return pending.settle({ kind: "done", value: reply.analysed });
+      case "inspected":
+        return pending.settle({ kind: "done", value: reply.inspection });
+      case "refused":
+        return pending.settle({ kind: "refused", wordings: reply.wordings });
+      case "cancelled":
+        return pending.settle({ kind: "cancelled" });
+      case "fault":
+        return pending.settle({ kind: "fault", message: reply.message, stack: reply.stack });
+    }
+  }
+
+  #end(outcome: Outcome<never>): void {
+    this.#worker?.terminate();
+    this.#worker = null;
+    const waiting = [...this.#pending.values()];
+    this.#pending.clear();
+    for (const { settle } of waiting) settle(outcome);
+  }
+}

@@ -1,0 +1,41 @@
+import type { Note, Quantity } from "../../app/base/index.ts";
+
+/** A symbol as a paper sets it: an upright or slanted letter with an upright subscript. */
+export interface LedgerSymbol {
+  readonly letter: string;
+  readonly below?: string;
+}
+
+/** What the small card of a number says. */
+export interface CardText {
+  readonly definition: string;
+  readonly formula: string;
+  readonly source: string;
+  readonly improve: string;
+}
+
+/** One number of the ledger; `scale` takes the quantity's unit to the printed one. */
+export interface LedgerEntry {
+  readonly id: string;
+  readonly symbol: LedgerSymbol;
+  readonly name: string;
+  readonly quantity: Quantity;
+  readonly unit: string;
+  readonly scale: number;
+  readonly notes: readonly Note[];
+  readonly card: CardText;
+  readonly correlations: readonly { readonly with: string; readonly value: number }[];
+  /** A number without uncertainty of its own (a count, a chi square), printed as it is. */
+  readonly plain?: string;
+  readonly main?: boolean;
+}
+
+export interface LedgerSection {
+  readonly title: string;
+  readonly entries: readonly LedgerEntry[];
+  readonly remark?: string;
+}
+
+export function notesAbout(notes: readonly Note[], ...paths: readonly string[]): readonly Note[] {
+  return notes.filter(({ about }) => paths.some((path) => about === path || about.startsWith(`${path}.`)));
+}

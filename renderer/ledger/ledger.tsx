@@ -1,0 +1,124 @@
+import { Button, Dialog, DialogTrigger, Popover } from "react-aria-components";
+import { formatQuantity, scaleQuantity } from "../../app/report/index.ts";
+import type { LedgerEntry, LedgerSection, LedgerSymbol } from "./ledger-entry.ts";
+
+const THIN = "\u2009";
+
+/** The numbers of a stage in the order a paper would give them; each opens its card. */
+export function Ledger({ sections }: { readonly sections: readonly LedgerSection[] }) {
+  return (
+    <div className="ledger">
+      {sections.map(({ title, entries, remark }) => (
+        <section key={title} className="ledger-section" aria-label={title}>
+          <h3>{title}</h3>
+          {entries.map((entry) => (
+            <Row key={entry.id} entry={entry} />
+          ))}
+          {remark !== undefined && <p className="small ledger-remark">{remark}</p>}
+        </section>
+      ))}
+    </div>
+  );
+}
+
+function Row({ entry }: { readonly entry: LedgerEntry }) {
+  const text = valueText(entry);
+  const doubt = entry.notes.some((note) => note.level === "doubt");
+  return (
+    <DialogTrigger>
+      <Button className="ledger-row" data-main={entry.main || undefined} data-entry={entry.id}>
+        <Symbol symbol={entry.symbol} />
+        <span className="ledger-name">{entry.name}</span>
+        <span className="ledger-value">
+          {text.value}
+          {text.unit !== "" && <span className="ledger-unit"> {text.unit}</span>}
+        </span>
+        <span className="ledger-mark">
+          {doubt && (
+            <span className="mark-doubt" role="img" aria-label="in doubt">
+              ▲
+            </span>
+          )}
+        </span>
+      </Button>
+      <Popover className="card" placement="left top" offset={6}>
+        <Dialog className="card-dialog" aria-label={entry.name}>
+          <Card entry={entry} />
+        </Dialog>
+      </Popover>
+    </DialogTrigger>
+  );
+}
+
+function Card({ entry }: { readonly entry: LedgerEntry }) {
+  const { value, unit } = valueText(entry);
+  const whole = unit === "" ? value : `${value} ${unit}`;
+  const { low, high } = scaleQuantity(entry.quantity, entry.scale);
+  return (
+    <>
+      <header>
+        <Symbol symbol={entry.symbol} />
+        <strong>{entry.name}</strong>
+      </header>
+      <p className="card-value">{whole}</p>
+      {entry.plain === undefined && low !== null && high !== null && (
+        <p className="small">
+          interval {low.toPrecision(7)} to {high.toPrecision(7)} {unit}
+        </p>
+      )}
+      <dl>
+        <dt>What it is</dt>
+        <dd>{entry.card.definition}</dd>
+        <dt>From</dt>
+        <dd className="card-formula">{entry.card.formula}</dd>
+        <dt>Source</dt>
+        <dd>{entry.card.source}</dd>
+        {entry.correlations.length > 0 && (
+          <>
+            <dt>Correlation</dt>
+            <dd className="tabular">
+              {entry.correlations.map((one) => `${one.with} ${one.value.toFixed(2)}`).join(", ")}
+            </dd>
+          </>
+        )}
+        {entry.notes.map((note) => (
+          <div key={note.code + note.about}>
+            <dt>{note.level === "doubt" ? "▲ Doubt" : "Assumed"}</dt>
+            <dd>
+              {note.text}
+              {note.remedy !== "" && <> Remedy: {note.remedy}.</>}
+            </dd>
+          </div>
+        ))}
+        <dt>To better it</dt>
+        <dd>{entry.card.improve}</dd>
+      </dl>
+      <Button
+        className="button"
+        onPress={() => void navigator.clipboard?.writeText(whole.replaceAll(THIN, " "))}
+      >
+        Copy
+      </Button>
+    </>
+  );
+}
+
+export function Symbol({ symbol }: { readonly symbol: LedgerSymbol }) {
+  return (
+    <span className="symbol">
+      <i>{symbol.letter}</i>
+      {symbol.below !== undefined && <sub>{symbol.below}</sub>}
+    </span>
+  );
+}
+
+/** Value with its uncertainty, and the unit apart, so that each can have its own type. */
+export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit" | "plain">): {
+  readonly value: string;
+  readonly unit: string;
+} {
+  if (entry.plain !== undefined) return { value: entry.plain, unit: entry.unit };
+  if (entry.quantity.value === null) return { value: "not determined", unit: "" };
+  const { value, sigma, low, high } = scaleQuantity(entry.quantity, entry.scale);
+  return { value: formatQuantity(value, sigma, "", { low, high, groupSpace: THIN }), unit: entry.unit };
+}

@@ -1,0 +1,182 @@
+import { NOT_DETERMINED } from "../../app/base/index.ts";
+import type { RunglineResult } from "../../app/protocol/index.ts";
+import { formatNumber } from "../../app/report/index.ts";
+import type { CardText, LedgerEntry, LedgerSection } from "../ledger/ledger-entry.ts";
+import { notesOfLine } from "../rungs/rung-layout.ts";
+
+const SHAPE = "α_n = (A_n/π)[g + 2q(E − E_n)]/[(E − E_n)² + g²], g = Γ_n/2";
+const TOYOZAWA = "Toyozawa, J. Phys. Chem. Solids 25, 59 (1964)";
+const CLEARER = "less noise or finer steps across this line; a thickness at which its peak depth is near 1";
+
+const CARDS = {
+  energy: {
+    definition: "Energy of the level; the maximum of an asymmetric line lies beside it.",
+    formula: SHAPE,
+    source: TOYOZAWA,
+    improve: CLEARER,
+  },
+  width: {
+    definition: "Full width at half maximum of the Lorentzian part.",
+    formula: SHAPE,
+    source: TOYOZAWA,
+    improve: "state the slit width; measure colder and at lower power",
+  },
+  area: {
+    definition: "Area under the line alone.",
+    formula: SHAPE,
+    source: TOYOZAWA,
+    improve: "thickness and surface losses known",
+  },
+  asymmetry: {
+    definition: "Mixing of the dispersive part: interference with the continuum below.",
+    formula: SHAPE,
+    source: `${TOYOZAWA}; Fano, Phys. Rev. 124, 1866 (1961)`,
+    improve: "a wider window with a stiffer background",
+  },
+  peak: {
+    definition: "Highest point of the line alone.",
+    formula: "at E_n + g[√(1 + 4q²) − 1]/(2q)",
+    source: "from the line shape",
+    improve: CLEARER,
+  },
+  lifetime: {
+    definition: "Lifetime that the width allows at most.",
+    formula: "τ = ħ/Γ, ħ = 658.2119569 µeV ps",
+    source: "CODATA; a floor or slit in the width makes it too short",
+    improve: "a width free of slit and strain",
+  },
+  offset: {
+    definition: "Energy of the line minus the level law.",
+    formula: "E_n − [E_g − Ry/(n − δ_n)²]",
+    source: "definition",
+    improve: "see the level law in Ladder",
+  },
+  ratio: {
+    definition: "Width over the distance to the next level; above 1 the lines run together.",
+    formula: "Γ_n/(E_{n+1} − E_n)",
+    source: "definition",
+    improve: CLEARER,
+  },
+} as const satisfies Record<string, CardText>;
+
+/** The numbers of the chosen line. */
+export function lineSection(result: RunglineResult, n: number): LedgerSection | null {
+  const index = result.lines.findIndex((line) => line.n === n);
+  const line = result.lines[index];
+  if (line === undefined) return null;
+  const about = notesOfLine(result.notes, index, n);
+  const perCm = result.reading.signal_unit === "1/cm";
+  const entry = (
+    id: keyof typeof CARDS,
+    letter: string,
+    below: string | undefined,
+    name: string,
+    quantity: LedgerEntry["quantity"],
+    unit: string,
+    scale: number,
+    key: string,
+    plain?: string,
+  ): LedgerEntry => ({
+    id: `line-${id}`,
+    symbol: below === undefined ? { letter } : { letter, below },
+    name,
+    quantity,
+    unit,
+    scale,
+    notes: about.filter(
+      (note) => note.about.endsWith(`.${key}`) || (key === "energy_eV" && note.about.endsWith("]")),
+    ),
+    card: CARDS[id],
+    correlations: [],
+    ...(plain !== undefined && { plain }),
+  });
+  const sub = String(n);
+  return {
+    title: `Line n = ${n}`,
+    entries: [
+      entry("energy", "E", sub, "Energy", line.energy_eV, "eV", 1, "energy_eV"),
+      entry("width", "Γ", sub, "Width", line.width_eV, "µeV", 1e6, "width_eV"),
+      entry("area", "A", sub, "Area", line.area, perCm ? "meV/cm" : "meV", 1e3, "area"),
+      entry("asymmetry", "q", sub, "Asymmetry", line.asymmetry, "", 1, "asymmetry"),
+      entry("peak", "α", sub, "Peak", line.peak, perCm ? "1/cm" : "", 1, "peak"),
+      entry("offset", "Δ", sub, "From the law", line.law_offset_eV, "µeV", 1e6, "law_offset_eV"),
+      entry("lifetime", "τ", sub, "Lifetime", line.lifetime_ps, "ps", 1, "lifetime_ps"),
+      entry(
+        "ratio",
+        "Γ/Δ",
+        sub,
+        "Width/spacing",
+        NOT_DETERMINED,
+        "",
+        1,
+        "width_over_spacing",
+        formatNumber(line.width_over_spacing, 2),
+      ),
+    ],
+  };
+}
+
+const FIT_CARDS = {
+  chi: {
+    definition: "Weighted sum of squares per degree of freedom: 1 where model and noise are right.",
+    formula: "χ²/ν",
+    source: "least squares",
+    improve: "residuals with structure ask for another background, a satellite, or the slit",
+  },
+  watson: {
+    definition: "Whether neighbouring residuals are alike: 2 where they are independent.",
+    formula: "Σ(r_i − r_{i−1})²/Σr_i²",
+    source: "Durbin and Watson, Biometrika 37, 409 (1950)",
+    improve: "the noise of the detector may be correlated; errors are then too small",
+  },
+  runs: {
+    definition: "Probability of so few or so many runs of one sign by chance.",
+    formula: "runs test",
+    source: "Wald and Wolfowitz, Ann. Math. Stat. 11, 147 (1940)",
+    improve: "see where the residuals leave the ±2 band",
+  },
+} as const satisfies Record<string, CardText>;
+
+/** How good the fit is. */
+export function fitSection(result: RunglineResult): LedgerSection | null {
+  const { fit } = result;
+  if (fit === null) return null;
+  const plain = (
+    id: string,
+    letter: string,
+    name: string,
+    value: number | null,
+    card: CardText,
+  ): LedgerEntry => ({
+    id,
+    symbol: { letter },
+    name,
+    quantity: NOT_DETERMINED,
+    unit: "",
+    scale: 1,
+    notes: result.notes.filter((note) => note.about === "fit" || note.about.startsWith(`fit.${id}`)),
+    card,
+    correlations: [],
+    plain: formatNumber(value, 3),
+  });
+  return {
+    title: "Fit",
+    entries: [
+      plain("reduced_chi2", "χ²/ν", `Reduced, ν = ${fit.dof ?? "?"}`, fit.reduced_chi2, FIT_CARDS.chi),
+      plain("durbin_watson", "d", "Durbin–Watson", fit.durbin_watson, FIT_CARDS.watson),
+      plain("runs_p", "p", "Runs test", fit.runs_p, FIT_CARDS.runs),
+    ],
+    remark: `${result.status === "converged" ? "Converged" : "Not converged"}: ${TERMINATION[fit.termination]}, ${
+      fit.iterations ?? "?"
+    } steps, ${fit.parameters ?? "?"} parameters, ${fit.domain === "alpha" ? "absorption" : "transmittance"} domain`,
+  };
+}
+
+const TERMINATION = {
+  gradient: "gradient small",
+  step: "step small",
+  cost: "change of χ² small",
+  iterationLimit: "out of steps",
+  cancelled: "cancelled",
+  notFinite: "model not finite",
+} as const;

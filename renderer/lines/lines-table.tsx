@@ -1,0 +1,141 @@
+import { useMemo } from "react";
+import {
+  createColumnHelper,
+  createSortedRowModel,
+  rowSortingFeature,
+  tableFeatures,
+  useTable,
+} from "@tanstack/react-table";
+import type { Quantity } from "../../app/base/index.ts";
+import type { LineResult, RunglineResult } from "../../app/protocol/index.ts";
+import { valueText } from "../ledger/ledger.tsx";
+import { notesOfLine } from "../rungs/rung-layout.ts";
+import { colourOfN } from "../plot/colours.ts";
+import { useMode } from "../frame/theme.ts";
+import { useController, useWindow } from "../store/context.ts";
+
+const features = tableFeatures({ rowSortingFeature, sortedRowModel: createSortedRowModel() });
+const helper = createColumnHelper<typeof features, LineResult>();
+
+const shown = (quantity: Quantity, scale: number): string => valueText({ quantity, scale, unit: "" }).value;
+
+/** The lines as a table: sortable, its rows light with the rungs. */
+export function LinesTable({ result }: { readonly result: RunglineResult }) {
+  const controller = useController();
+  const pointed = useWindow((state) => state.pointedN);
+  const selected = useWindow((state) => state.selectedN);
+  const mode = useMode();
+  const perCm = result.reading.signal_unit === "1/cm";
+  const columns = useMemo(
+    () =>
+      helper.columns([
+        helper.accessor("n", { id: "n", header: "n", cell: (cell) => cell.getValue() }),
+        helper.accessor((line) => line.energy_eV.value ?? undefined, {
+          id: "energy",
+          header: "E / eV",
+          cell: ({ row }) => shown(row.original.energy_eV, 1),
+        }),
+        helper.accessor((line) => line.width_eV.value ?? undefined, {
+          id: "width",
+          header: "Γ / µeV",
+          cell: ({ row }) => shown(row.original.width_eV, 1e6),
+        }),
+        helper.accessor((line) => line.area.value ?? undefined, {
+          id: "area",
+          header: perCm ? "A / (µeV/cm)" : "A / µeV",
+          cell: ({ row }) => shown(row.original.area, 1e6),
+        }),
+        helper.accessor("significance", {
+          id: "significance",
+          header: "A/σ",
+          cell: (cell) => cell.getValue().toFixed(0),
+        }),
+      ]),
+    [perCm],
+  );
+  const table = useTable({ features, columns, data: result.lines, getRowId: (line) => String(line.n) });
+  return (
+    <table className="lines-table">
+      <caption className="hidden">Fitted lines</caption>
+      <thead>
+        {table.getHeaderGroups().map((group) => (
+          <tr key={group.id}>
+            {group.headers.map((header) => {
+              const sorted = header.column.getIsSorted();
+              return (
+                <th
+                  key={header.id}
+                  scope="col"
+                  aria-sort={sorted === "asc" ? "ascending" : sorted === "desc" ? "descending" : "none"}
+                >
+                  <button type="button" onClick={header.column.getToggleSortingHandler()}>
+                    <table.FlexRender header={header} />
+                    <span aria-hidden="true" className="sort-mark">
+                      {sorted === "asc" ? "↑" : sorted === "desc" ? "↓" : ""}
+                    </span>
+                  </button>
+                </th>
+              );
+            })}
+          </tr>
+        ))}
+      </thead>
+      <tbody>
+        {table.getRowModel().rows.map((row) => {
+          const { n, significance } = row.original;
+          const doubtful =
+            significance < 5 ||
+            notesOfLine(result.notes, row.index, n).some((note) => note.level === "doubt");
+          return (
+            <tr
+              key={row.id}
+              data-n={n}
+              data-lit={pointed === n || undefined}
+              data-chosen={selected === n || undefined}
+              onPointerEnter={() => controller.point(n)}
+              onPointerLeave={() => controller.point(null)}
+              onClick={() => controller.select(selected === n ? null : n)}
+            >
+              {row.getAllCells().map((cell) =>
+                cell.column.id === "n" ? (
+                  <th key={cell.id} scope="row">
+                    <button
+                      type="button"
+                      className="line-button"
+                      aria-pressed={selected === n}
+                      aria-label={`n = ${n}${doubtful ? ", in doubt" : ""}`}
+                      onClick={(event) => {
+                        event.stopPropagation();
+                        controller.select(selected === n ? null : n);
+                      }}
+                      onFocus={() => controller.point(n)}
+                      onBlur={() => controller.point(null)}
+                    >
+                      <svg width="10" height="10" aria-hidden="true">
+                        <rect
+                          x="1"
+                          y="1"
+                          width="8"
+                          height="8"
+                          rx="1"
+                          fill={doubtful ? "none" : colourOfN(n, mode)}
+                          stroke={colourOfN(n, mode)}
+                          strokeWidth="1.4"
+                        />
+                      </svg>
+                      {n}
+                    </button>
+                  </th>
+                ) : (
+                  <td key={cell.id}>
+                    <table.FlexRender cell={cell} />
+                  </td>
+                ),
+              )}
+            </tr>
+          );
+        })}
+      </tbody>
+    </table>
+  );
+}
