@@ -169,7 +169,7 @@ function findSignal(
   // A second column with a bare 1/cm beside the axis is an absorption coefficient.
   const isBare = (one: Candidate): boolean =>
     one.meaning.kind === "axis" && one.meaning.light === null && one.meaning.signalUnit !== null;
-  const groups: (readonly [Candidate[], string])[] = [
+  const groups: (readonly [readonly Candidate[], string])[] = [
     [
       free.filter((one) => isSignal(one) && wanted !== null && one.meaning.quantity === wanted),
       `the header says ${wanted}`,
@@ -182,7 +182,10 @@ function findSignal(
       "no header names a signal; it is the first column of numbers beside the axis",
     ],
   ];
-  for (const [group, reason] of groups) {
+  const lively = (one: Candidate): boolean => one.look.max > one.look.min;
+  // A column with one value all along is a setting; it is the signal only where nothing else is left.
+  const ordered = [...groups.map(([group, reason]) => [group.filter(lively), reason] as const), ...groups];
+  for (const [group, reason] of ordered) {
     const first = group[0];
     if (first === undefined) continue;
     const others = group.slice(1);

@@ -31,9 +31,15 @@ interface Row {
 /** Two energies closer than this part of the median step are one. */
 const SAME = 1e-6;
 
-export function gatherPoints(table: Table, chosen: ChosenColumns, axis: AxisReading, scale: number): Points {
+export function gatherPoints(
+  table: Table,
+  chosen: ChosenColumns,
+  axis: AxisReading,
+  scale: number,
+  sigmaScale: number,
+): Points {
   const notes: Note[] = [];
-  const rows = readRows(table, chosen, axis, scale, notes);
+  const rows = readRows(table, chosen, axis, scale, sigmaScale, notes);
   const order = describeOrder(rows, axis.scale.reversed, notes);
   const sorted = rows.slice().sort((a, b) => a.energy - b.energy || a.line - b.line);
   const groups = groupRepeated(sorted, notes);
@@ -54,6 +60,7 @@ function readRows(
   chosen: ChosenColumns,
   axis: AxisReading,
   scale: number,
+  sigmaScale: number,
   notes: Note[],
 ): Row[] {
   const rows: Row[] = [];
@@ -83,7 +90,7 @@ function readRows(
       dark.push(line);
       continue;
     }
-    const given = sd === null ? NaN : (sd[i]! * scale) / divisor;
+    const given = sd === null ? NaN : (sd[i]! * sigmaScale) / divisor;
     rows.push({
       line,
       energy,

@@ -156,7 +156,7 @@ const QUANTITIES: readonly (readonly [SignalQuantity | "counts", RegExp])[] = [
   ],
   [
     "transmittance",
-    /transmi(ss|tt|tan)|^trans\b|transmissionsgrad|durchlass|transmitanc|transmision|^%? ?t ?%?$|\bt\/t0\b|^i ?\/ ?i_? ?0$|\b(sample|signal|probe|s) ?\/ ?(ref|reference|referenz|monitor|lamp|r|f)\b|\bratio\b|\bverhaltnis\b/,
+    /transmi(ss|tt|tan)|^trans\b|transmissionsgrad|durchlass|transmitanc|transmision|^%? ?t ?%?$|^t \d|\bt\/t0\b|^i ?\/ ?i_? ?0$|\b(sample|signal|probe|s) ?\/ ?(ref|reference|referenz|monitor|lamp|r|f)\b|\bratio\b|\bverhaltnis\b/,
   ],
   ["absorbance", /absorbanc|absorbanz|extin[ck]tion|absorbancia|^abs$|^abs\b(?!.*coeff)|^a$|-log/],
   [

@@ -8,8 +8,6 @@ export interface ValueLook {
   readonly monotonic: number;
   /** 0, 1, 2 ... or 1, 2, 3 ...: a row or pixel number. */
   readonly counting: boolean;
-  /** Sharp features point up (1), down (-1) or neither (0). */
-  readonly features: -1 | 0 | 1;
 }
 
 export function lookAtValues(values: Float64Array): ValueLook {
@@ -32,16 +30,16 @@ export function lookAtValues(values: Float64Array): ValueLook {
     median: count > 0 ? sorted[count >> 1]! : NaN,
     monotonic: up + down === 0 ? 0.5 : Math.max(up, down) / (up + down),
     counting,
-    features: featureDirection(finite),
   };
 }
 
 /**
- * Which way sharp features point: the distances of the 1st and 99th percentile from the median of the readings,
+ * Which way sharp features point, up (1), down (-1) or neither (0): the distances of the 1st and 99th percentile from the median of the readings,
  * after a running median over a tenth of the points is taken off. Lines are dips of transmission and peaks of
  * absorption; a difference below a third decides nothing.
  */
-function featureDirection(values: Float64Array): -1 | 0 | 1 {
+export function featureDirection(readings: Float64Array): -1 | 0 | 1 {
+  const values = readings.filter((value) => Number.isFinite(value));
   const m = values.length;
   if (m < 20) return 0;
   const half = Math.max(5, Math.floor(m / 20));

@@ -1,17 +1,19 @@
 import { assumption, failure, success, type Note, type Result } from "../base/index.ts";
 import type { Table } from "../table/index.ts";
-import { PER_CM, reflectance, type SurfaceModel } from "../units/index.ts";
+import { DEPTH_PER_ABSORBANCE, PER_CM, reflectance, type SurfaceModel } from "../units/index.ts";
 import type { Candidate, ChosenColumns } from "./choose-columns.ts";
 import { describeColumn } from "./find-column.ts";
 import type { SpectrumIssue } from "./issue.ts";
-import { lookAtValues } from "./look-at-values.ts";
+import { featureDirection } from "./look-at-values.ts";
 import type { ReadingChoices, SignalQuantity } from "./spectrum.ts";
 
-/** What the signal column holds and how it becomes T, optical depth or alpha in 1/cm. */
+/** What the signal column holds and how it becomes T, natural optical depth or alpha in 1/cm. */
 export interface QuantityReading {
   readonly quantity: SignalQuantity | "counts";
-  /** Factor from the reading to fraction, 1/cm, or nothing to do. */
+  /** Factor from the reading to a fraction, natural optical depth, or 1/cm; 1 for counts. */
   readonly scale: number;
+  /** The same for the column of standard deviations, which may have a unit of its own. */
+  readonly sigmaScale: number;
   readonly surface: SurfaceModel;
   readonly reflectance: number;
   /** null where unknown or not needed. */
@@ -67,6 +69,10 @@ export function readQuantity(
       ),
     );
 
+  if (quantity !== "alpha" && quantity !== "transmittance" && quantity !== "counts")
+    scale = quantity === "optical-depth" ? 1 : DEPTH_PER_ABSORBANCE;
+  const sigmaScale = scaleOfSigma(chosen.sigma, quantity, scale);
+
   const ratio = quantity === "transmittance" || quantity === "counts";
   let surface: SurfaceModel = "none";
   let R = 0;
@@ -89,7 +95,7 @@ export function readQuantity(
     }
   }
   const thickness_um = quantity === "alpha" ? null : findThickness(table, choices, notes);
-  return success({ quantity, scale, surface, reflectance: R, thickness_um, reason, notes });
+  return success({ quantity, scale, sigmaScale, surface, reflectance: R, thickness_um, reason, notes });
 }
 
 function findQuantity(
@@ -137,9 +143,11 @@ function guessQuantity(
   signal: Candidate,
   absorption: boolean,
 ): { quantity: SignalQuantity; because: string } | null {
-  const { min, max, features, median } = signal.look;
+  const { min, max, median } = signal.look;
+  // A reading of a detector is a ratio only where it looks like one; peaks of it may be emission.
+  if (signal.meaning.quantity === "counts" && max > 1.6) return null;
   const range = `values from ${short(min)} to ${short(max)}`;
-  if (absorption || features === 1) {
+  if (absorption || featureDirection(signal.column.values) === 1) {
     const what = absorption ? "the header speaks of absorption" : "its sharp features are peaks";
     if (max <= 6) return { quantity: "absorbance", because: `${what} and ${range} fit an absorbance` };
     return { quantity: "alpha", because: `${what} and ${range} fit an absorption coefficient in 1/cm` };
@@ -204,6 +212,13 @@ function coefficientScale(signal: Candidate, choices: ReadingChoices, notes: Not
     ),
   );
   return 1;
+}
+
+function scaleOfSigma(sigma: Candidate | null, quantity: SignalQuantity | "counts", scale: number): number {
+  const unit = sigma?.meaning.signalUnit ?? null;
+  if (unit === null || unit === "fraction") return scale;
+  if (quantity === "transmittance" && unit === "percent") return 0.01;
+  return quantity === "alpha" && unit !== "percent" ? PER_CM[unit] : scale;
 }
 
 function findReflectance(choices: ReadingChoices, notes: Note[]): number | null {
@@ -271,20 +286,6 @@ function findThickness(table: Table, choices: ReadingChoices, notes: Note[]): nu
     ),
   );
   return null;
-}
-
-/** Exported for the tests of the guess on bare numbers. */
-export function guessQuantityOf(values: Float64Array): SignalQuantity | null {
-  const column = { index: 2, header: "", name: "", unit: "", values };
-  const meaning = {
-    kind: "nothing",
-    word: "",
-    axis: null,
-    light: null,
-    quantity: null,
-    signalUnit: null,
-  } as const;
-  return guessQuantity({ column, meaning, look: lookAtValues(values) }, false)?.quantity ?? null;
 }
 
 function short(value: number): string {

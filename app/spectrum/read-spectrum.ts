@@ -1,6 +1,6 @@
 import { doubt, failure, success, type Note, type Result } from "../base/index.ts";
 import type { Table } from "../table/index.ts";
-import { CM_PER_UM, DEPTH_PER_ABSORBANCE, depthFromTransmittance, depthSigma } from "../units/index.ts";
+import { CM_PER_UM, depthFromTransmittance, depthSigma } from "../units/index.ts";
 import { chooseColumns } from "./choose-columns.ts";
 import { describeColumn } from "./find-column.ts";
 import { count, gatherPoints } from "./gather-points.ts";
@@ -35,8 +35,7 @@ export function readSpectrum(
 
   const read = quantity.value;
   const ratio = read.quantity === "transmittance" || read.quantity === "counts";
-  const scale = ratio || read.quantity === "alpha" ? read.scale : depthScale(read);
-  const points = gatherPoints(table, chosen.value, axis.value, scale);
+  const points = gatherPoints(table, chosen.value, axis.value, read.scale, read.sigmaScale);
   const m = points.energy_eV.length;
   if (m > 0 && m < FEWEST && points.energy_eV[0] === points.energy_eV[m - 1])
     return failure({
@@ -58,7 +57,7 @@ export function readSpectrum(
       },
     });
 
-  const fixed = choices.noise.sigma === null ? null : choices.noise.sigma * scale;
+  const fixed = choices.noise.sigma === null ? null : choices.noise.sigma * read.scale;
   const noise = pointNoise(points, fixed, chosen.value.reference !== null);
   const thickness_cm = read.thickness_um === null ? 1 : read.thickness_um * CM_PER_UM;
   const notes: Note[] = [
@@ -115,11 +114,6 @@ export function readSpectrum(
     skippedRows: points.dropped + wholeLinesSkipped(table),
     notes,
   });
-}
-
-/** Readings of a logarithm to natural optical depth. */
-function depthScale(read: QuantityReading): number {
-  return read.quantity === "optical-depth" ? 1 : DEPTH_PER_ABSORBANCE;
 }
 
 /** alpha d and its standard deviation; weights from the smoothed T, since those of the single reading bias alpha d. */

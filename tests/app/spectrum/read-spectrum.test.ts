@@ -231,6 +231,18 @@ describe("transmission", () => {
     expect(spectrum.transmittance!.sigma[10]).toBeCloseTo(0.002, 14);
   });
 
+  it("a standard deviation in another unit than the signal is converted", () => {
+    const percent = fileText(["Energy (eV)", "T", "sd (%)"], rowsOf([eV, T, () => 0.3]));
+    // Derived: 0.3 % is 0.003
+    expect(spectrumOf(percent).transmittance!.sigma[10]).toBeCloseTo(0.003, 14);
+    const alpha = fileText(["Energy (eV)", "alpha (1/cm)", "error (1/mm)"], rowsOf([eV, depthAt, () => 0.3]));
+    // Derived: 0.3/mm is 3/cm
+    expect(spectrumOf(alpha).sigma[10]).toBeCloseTo(3, 12);
+    const bare = fileText(["Energy (eV)", "Absorbance", "sd"], rowsOf([eV, depthAt, () => 0.01]));
+    // Derived: ln 10 times the absorbance
+    expect(spectrumOf(bare).sigma[10]).toBeCloseTo(0.01 * Math.LN10, 12);
+  });
+
   it("missing standard deviations take the median of their neighbours, are counted, and stay in use", () => {
     const text = fileText(
       ["Energy (eV)", "T", "sd"],
@@ -292,6 +304,17 @@ describe("several signals", () => {
     expect(note(spectrum, "several-signals")).toContain("column 3");
     // Derived: the standard deviation stands after the second signal and belongs to it
     expect(roleColumn(spectrum, "sigma")).toBeUndefined();
+  });
+
+  it("a column with one value all along is not the signal where another is", () => {
+    const constant = fileText(["E (eV)", "T", "alpha (1/cm)"], rowsOf([eV, () => 4.2, depthAt]));
+    expect(roleColumn(spectrumOf(constant), "signal")).toBe(3);
+  });
+
+  it("one transmission for each power is a transmission", () => {
+    const powers = fileText(["E (eV)", "T (1 uW)", "T (5 uW)"], rowsOf([eV, T, T]));
+    expect(spectrumOf(powers).quantityRead).toBe("transmittance");
+    expect(codes(spectrumOf(powers))).toContain("several-signals");
   });
 
   it("another is taken by number or by name", () => {
