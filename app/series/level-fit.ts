@@ -29,6 +29,8 @@ export interface LevelInput {
   readonly heldRydberg_eV?: number | undefined;
   /** Highest Ritz term that is free; default 2. */
   readonly ritzOrder?: 2 | 4 | undefined;
+  /** How the minimum is found (law-fit.ts); default `search`. */
+  readonly how?: "search" | "newton" | undefined;
 }
 
 export interface LevelFit {
@@ -149,8 +151,8 @@ function scanDefect(input: LevelInput, shifted: Float64Array, defect: number | n
   const candidates: number[] = [];
   if (defect !== null) candidates.push(defect);
   else
-    for (let j = 0; j <= 120; j++)
-      candidates.push(first - 0.15 * Math.exp((j / 120) * Math.log((first + 2) / 0.15)));
+    for (let j = 0; j <= 48; j++)
+      candidates.push(first - 0.15 * Math.exp((j / 48) * Math.log((first + 2) / 0.15)));
   let best: Float64Array | null = null;
   let bestChi2 = Infinity;
   for (const delta of candidates) {
@@ -206,6 +208,7 @@ export function makeLevelProblem(
     observed: shifted,
     covariance: input.covariance,
     start,
+    how: input.how,
     held: [false, input.heldRydberg_eV !== undefined, freeDefects < 1, freeDefects < 2, freeDefects < 3],
     model: (theta, values) => {
       for (let i = 0; i < k; i++) {

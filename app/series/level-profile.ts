@@ -24,6 +24,7 @@ export function profileLevels(input: LevelInput, fit: LevelFit, factor = 1): Lev
   const places = fit.n.map((n) => input.n.indexOf(n));
   const lines: LevelInput = {
     ...input,
+    how: "newton",
     n: fit.n,
     energy_eV: selectVector(input.energy_eV, places),
     covariance: selectMatrix(input.covariance, input.n.length, places),

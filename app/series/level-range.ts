@@ -63,12 +63,15 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
   let fallbackError = Infinity;
   let failed: Result<LevelFit, SeriesIssue> | null = null;
   for (let first = 0; count - first >= FEWEST_LINES; first++) {
-    const fit = fitWithin(input, input.n[first]!, highest);
+    const fit = fitWithin(input, input.n[first]!, highest, "newton");
     if (!fit.ok) {
       failed = fit;
       continue;
     }
-    if (fit.value.p > HOLDS_ABOVE) return finish(input, fit.value, factor, skipNotes(input, first));
+    if (fit.value.p > HOLDS_ABOVE) {
+      const final = fitWithin(input, input.n[first]!, highest);
+      return final.ok ? finish(input, final.value, factor, skipNotes(input, first)) : final;
+    }
     const error = Math.sqrt(
       (fit.value.estimates.covariance[0]! * fit.value.chi2) / Math.max(1, fit.value.degreesOfFreedom),
     );
@@ -78,7 +81,9 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
     }
   }
   if (fallback === null) return failed as Exclude<typeof failed, null | { ok: true }>;
-  return finish(input, fallback, factor, [
+  const final = fitWithin(input, fallback.n[0]!, highest);
+  if (!final.ok) return final;
+  return finish(input, final.value, factor, [
     doubt(
       "no-range-follows-law",
       "series.fit_n",
@@ -101,10 +106,16 @@ function skipNotes(input: LevelInput, first: number): Note[] {
   ];
 }
 
-function fitWithin(input: LevelInput, min: number, max: number): Result<LevelFit, SeriesIssue> {
+function fitWithin(
+  input: LevelInput,
+  min: number,
+  max: number,
+  how: "search" | "newton" = "search",
+): Result<LevelFit, SeriesIssue> {
   const places = placesWithin(input.n, min, max);
   return fitLevels({
     ...input,
+    how,
     n: places.map((i) => input.n[i]!),
     energy_eV: selectVector(input.energy_eV, places),
     covariance: selectMatrix(input.covariance, input.n.length, places),
@@ -121,7 +132,7 @@ function finish(
   const max = fit.n[fit.n.length - 1]!;
   const ranges: RangeStep[] = [];
   const add = (low: number, high: number): void => {
-    const step = low === min && high === max ? success(fit) : fitWithin(input, low, high);
+    const step = low === min && high === max ? success(fit) : fitWithin(input, low, high, "newton");
     if (step.ok) ranges.push(toStep(step.value, factor));
   };
   for (const low of input.n) if (low < max) add(low, max);

@@ -65,7 +65,14 @@ export function rankReadings(input: ReadingsInput): Readings {
       defect0,
       judgeRange: false,
     });
-    const widths = fitWidths({ ...input.widths, n: input.widths.n.map(move), defect0, judgeRange: false });
+    const widths = fitWidths({
+      ...input.widths,
+      n: input.widths.n.map(move),
+      defect0,
+      judgeRange: false,
+      testExponent: false,
+      how: "newton",
+    });
     if (!strengths.ok || !widths.ok) continue;
     readings.push({
       shift: by,

@@ -44,7 +44,7 @@ const FEWEST_LINES = 3;
 
 /**
  * What      Strength law A_n = C s(n) (laws/strength.ts) by generalised least squares, which is linear in C. The law
- *           is taken from the longest run of neighbouring lines that follow it (p > 0.05, three lines or more, the lowest
+ *           is taken from all lines unless these reject it (p < 0.01), else from the longest run of neighbouring lines that follow it (p > 0.05, three lines or more, the lowest
  *           run first); lines that have fallen off at high n, or a lowest line that stands out, are then compared with it.
  * Units     area in eV times the unit of the signal; C likewise.
  * Accuracy  tests/app/series/strength-fit.test.ts.
@@ -60,7 +60,7 @@ export function fitStrengths(input: StrengthInput): Result<StrengthFit, SeriesIs
   if (whole === null)
     return failure({ code: "series/bad-covariance", facts: { law: "strength", lines: count } });
   let [from, to, solution] = [0, count, whole];
-  if (!(whole.p > HOLDS_ABOVE) && input.judgeRange !== false) {
+  if (!(whole.p > REJECTED_BELOW) && input.judgeRange !== false) {
     search: for (let length = count - 1; length >= FEWEST_LINES; length--) {
       for (let first = 0; first + length <= count; first++) {
         const run = fitRun(input, law, first, first + length);
@@ -103,6 +103,8 @@ function fitRun(input: StrengthInput, law: Float64Array, from: number, to: numbe
   const anchor = s.findIndex((one) => one > 0);
   if (anchor < 0) return null;
   return fitToLaw({
+    // Linear in C: one step.
+    how: "newton",
     observed: areas,
     covariance: selectMatrix(input.covariance, input.n.length, places),
     start: Float64Array.of(areas[anchor]! / s[anchor]!),

@@ -22,6 +22,10 @@ export interface WidthInput {
   readonly factor?: number | undefined;
   /** Judge whether the lowest line follows; default true. */
   readonly judgeRange?: boolean | undefined;
+  /** Test a held exponent by freeing it, and profile a free one; default true. */
+  readonly testExponent?: boolean | undefined;
+  /** How the minimum is found (law-fit.ts); default `search`. */
+  readonly how?: "search" | "newton" | undefined;
 }
 
 export interface WidthFit {
@@ -65,20 +69,20 @@ export function fitWidths(input: WidthInput): Result<WidthFit, SeriesIssue> {
   if (count < 1)
     return failure({ code: "series/too-few-lines", facts: { law: "width", found: count, needed: 1 } });
   const all = input.n.map((_, i) => i);
-  const whole = fitLines(input, all, input.exponent);
+  const whole = fitLines(input, all, input.exponent, input.how);
   if (whole === null) {
     return failure({ code: "series/bad-covariance", facts: { law: "width", lines: count } });
   }
   let chosen = whole;
   if (input.judgeRange !== false && count >= 5 && whole.solution.p < 0.05) {
-    const others = fitLines(input, all.slice(1), input.exponent);
+    const others = fitLines(input, all.slice(1), input.exponent, input.how);
     // What counts is whether the line is foreign to the others, not whether the others are perfect.
     if (others !== null && whole.solution.chi2 - others.solution.chi2 > 9) chosen = others;
   }
   const { solution, places, exponentFree, floorFree } = chosen;
   const values = solution.values;
   const offset = Float64Array.from(input.n, (n, i) => input.width_eV[i]! - predict(input, n, values));
-  const exponentTest = testExponent(input, chosen);
+  const exponentTest = input.testExponent === false ? null : testExponent(input, chosen);
   const notes = describe(input, chosen, exponentTest);
   return success({
     n: places.map((i) => input.n[i]!),
@@ -115,7 +119,8 @@ function fitLines(
   input: WidthInput,
   places: readonly number[],
   exponent: number | "free",
-  startExponent = DEFAULT_EXPONENT,
+  how: "search" | "newton" = "search",
+  start: ArrayLike<number> | null = null,
 ): Chosen | null {
   const n = places.map((i) => input.n[i]!);
   const widths = selectVector(input.width_eV, places);
@@ -124,12 +129,13 @@ function fitLines(
   const floorFree = input.floorKind !== "none" && room > 0;
   if (floorFree) room -= 1;
   const exponentFree = exponent === "free" && room > 0;
-  const power = exponent === "free" ? startExponent : exponent;
+  const power = exponent === "free" ? (start?.[2] ?? DEFAULT_EXPONENT) : exponent;
 
   const attempt = (freeFloor: boolean): LawSolution | null =>
     fitToLaw({
       observed: widths,
       covariance,
+      how,
       start: startValues(input, n, widths, power, freeFloor),
       held: [!freeFloor, false, !exponentFree],
       model: (theta, out) => {
@@ -198,13 +204,13 @@ function testExponent(input: WidthInput, chosen: Chosen): WidthFit["exponentTest
   if (chosen.places.length < 4) return null;
   const free = chosen.exponentFree
     ? chosen
-    : fitLines(input, chosen.places, "free", chosen.solution.values[2]!);
+    : fitLines(input, chosen.places, "free", "search", chosen.solution.values);
   if (free === null || !free.exponentFree) return null;
   const value = free.solution.values[2]!;
   const sigma = Math.sqrt(free.solution.covariance[8]!);
   const factor = input.factor ?? 1;
   const { low, high } = profileInterval({
-    minimised: (held) => fitLines(input, chosen.places, held)?.solution.chi2 ?? Number.NaN,
+    minimised: (held) => fitLines(input, chosen.places, held, "newton")?.solution.chi2 ?? Number.NaN,
     best: value,
     chi2: free.solution.chi2,
     sigma,
