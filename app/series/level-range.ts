@@ -18,7 +18,8 @@ export interface RangeStep {
   readonly defect0: Quantity;
   readonly chi2: number;
   readonly dof: number;
-  readonly p: number;
+  /** Null where nothing is left to test. */
+  readonly p: number | null;
 }
 
 export interface RangeChoice {
@@ -177,6 +178,6 @@ function toStep(fit: LevelFit, factor: number): RangeStep {
     defect0: quantity(2),
     chi2: fit.chi2,
     dof: fit.degreesOfFreedom,
-    p: fit.p,
+    p: fit.degreesOfFreedom > 0 ? fit.p : null,
   };
 }

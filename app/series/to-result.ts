@@ -47,7 +47,7 @@ export function seriesToResult(
     fit_n: [choice.fit_n[0], choice.fit_n[1]],
     chi2: fit.chi2,
     dof: fit.degreesOfFreedom,
-    p: fit.p,
+    p: fit.degreesOfFreedom > 0 ? fit.p : null,
     scaled:
       errorScale === null
         ? null
@@ -93,7 +93,7 @@ export function widthsToResult(fit: WidthFit, base: string, factor = 1): WidthPa
     fit_n: [fit.n[0]!, fit.n[fit.n.length - 1]!],
     chi2: fit.chi2,
     dof: fit.degreesOfFreedom,
-    p: fit.p,
+    p: fit.degreesOfFreedom > 0 ? fit.p : null,
   };
 }
 
@@ -106,7 +106,7 @@ export function strengthsToResult(fit: StrengthFit, law: string, base: string, f
     fit_n: [fit.n[0]!, fit.n[fit.n.length - 1]!],
     chi2: fit.chi2,
     dof: fit.degreesOfFreedom,
-    p: fit.p,
+    p: fit.degreesOfFreedom > 0 ? fit.p : null,
     half_at_n: fit.half_at_n,
   };
 }
