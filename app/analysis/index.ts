@@ -1,2 +1,2 @@
-export { analyse, type AnalysisResult } from "./analyse.ts";
+export { analyse, type Analysis, type AnalysisResult } from "./analyse.ts";
 export type { Curves } from "./curves.ts";

@@ -72,7 +72,8 @@ export function fitSpectrum(
     maxIterations: control.maxIterations ?? 100,
     gradientTolerance: control.gradientTolerance ?? 1e-7,
     costTolerance: control.costTolerance ?? 1e-11,
-    watch: control.watch ?? NO_WATCH,
+    // Whoever asks for the fit reports where the whole job is; the solver only hears whether to stop.
+    watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
   });
   return describeFit(problem, solution);
 }

@@ -1,0 +1,281 @@
+import { assumption, doubt, type Note } from "../base/index.ts";
+import type { FitPoints } from "../fit/index.ts";
+import { findPreset, type Protocol, type RunglineResult } from "../protocol/index.ts";
+import type { Spectrum } from "../spectrum/index.ts";
+import { normalCdf } from "../solve/index.ts";
+import type { Assignment } from "./assign-n.ts";
+import type { Peak } from "./find-peaks.ts";
+import type { FullFit } from "./fit-full.ts";
+import { energyOf } from "./ladder-model.ts";
+import { findSatellites } from "./satellites.ts";
+
+type Fit = NonNullable<RunglineResult["fit"]>;
+
+export interface DoubtInput {
+  readonly spectrum: Spectrum;
+  readonly protocol: Protocol;
+  readonly points: FitPoints;
+  readonly peaks: readonly Peak[];
+  readonly assignment: Assignment;
+  readonly full: FullFit;
+  readonly fit: Fit;
+  readonly lines: RunglineResult["lines"];
+  readonly tail: RunglineResult["tail"];
+  readonly series: RunglineResult["series"];
+}
+
+const meV = (value: number): string => `${(1e3 * value).toPrecision(6)} meV`;
+const ueV = (value: number): string => `${(1e6 * value).toPrecision(3)} ueV`;
+
+/** Everything that the fit itself gives reason to doubt; each note names its number and a remedy. */
+export function findDoubts(input: DoubtInput): Note[] {
+  return [
+    ...doubtsOfFit(input),
+    ...doubtsOfLines(input),
+    ...doubtsOfTail(input),
+    ...doubtsOfSampling(input),
+    ...doubtsOfUnexplained(input),
+    ...presetNotes(input.protocol),
+  ];
+}
+
+export function presetNotes(protocol: Protocol): Note[] {
+  const preset = protocol.material.preset === null ? undefined : findPreset(protocol.material.preset);
+  if (preset === undefined) return [];
+  return [
+    assumption(
+      "preset-starting-values",
+      "protocol.material",
+      `The preset ${preset.id} gave starting values and defaults only (${preset.source}).`,
+      "override single values with material.* in the protocol",
+    ),
+  ];
+}
+
+function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
+  const notes: Note[] = [];
+  if (!full.fit.solution.converged) {
+    notes.push(
+      doubt(
+        "fit-not-converged",
+        "fit.termination",
+        `The spectrum fit ended by ${fit.termination} after ${fit.iterations} steps without meeting a convergence criterion.`,
+        "shorten the window, lower the background order, or name the lines (lines.n)",
+      ),
+    );
+  }
+  if (!full.selfConsistent) {
+    notes.push(
+      doubt(
+        "tail-not-settled",
+        "tail.factor",
+        "The laws that the tail is tied to and those of the fitted lines had not come to full agreement when the passes ended.",
+        "name the lines (lines.n) or the range of n (series.fit_n)",
+      ),
+    );
+  }
+  if (full.fit.solution.rank < fit.parameters) {
+    notes.push(
+      doubt(
+        "parameters-degenerate",
+        "fit.rank",
+        `The data determine ${fit.rank} combinations of ${fit.parameters} parameters.`,
+        "lower the background order or leave out a background term",
+      ),
+    );
+  }
+  // Chi square is nearly normal for many degrees of freedom (Fisher: sqrt(2 chi2) - sqrt(2 dof - 1)).
+  const excess = Math.sqrt(2 * fit.chi2) - Math.sqrt(2 * fit.dof - 1);
+  const reduced = fit.chi2 / Math.max(1, fit.dof);
+  const lag1 = fit.lag1 ?? 0;
+  const independent = fit.effective_points ?? points.energy.length;
+  const estimated = spectrum.noise.source === "estimated";
+  const limit = estimated ? 1.15 : 1;
+  if (reduced > limit && 1 - normalCdf(excess) < 1e-3) {
+    notes.push(
+      doubt(
+        "misfit",
+        "fit.reduced_chi2",
+        `Reduced chi square is ${reduced.toPrecision(4)} for ${fit.dof} degrees of freedom: the model leaves more than the ${estimated ? "estimated" : "given"} noise, so standard errors are too small.`,
+        "look at the residuals; free the asymmetry, change the background, or set uncertainty.scale_by_residuals=true",
+      ),
+    );
+  }
+  if (lag1 > 0.3) {
+    notes.push(
+      doubt(
+        "residuals-correlated",
+        "fit.lag1",
+        `Neighbouring residuals correlate by ${lag1.toFixed(2)}: about ${Math.round(independent)} of ${points.energy.length} points are independent, and standard errors are too small by about ${Math.sqrt(points.energy.length / independent).toFixed(2)}.`,
+        "measure with a step no finer than the instrument resolves, or scale the errors (uncertainty.scale_by_residuals)",
+      ),
+    );
+  }
+  return notes;
+}
+
+function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: DoubtInput): Note[] {
+  const notes: Note[] = [];
+  const { ns } = full.state;
+  for (const n of full.fit.atBound) {
+    notes.push(
+      doubt(
+        "line-at-bound",
+        `lines[n=${n}]`,
+        `Line n = ${n} ended at a bound of its energy or width; its errors are not determined.`,
+        "leave this n out (lines.n) or look for a blend in the residuals",
+      ),
+    );
+  }
+  const absent = [];
+  for (let n = ns[0]!; n < ns[ns.length - 1]!; n++) if (!ns.includes(n)) absent.push(n);
+  if (absent.length > 0) {
+    notes.push(
+      doubt(
+        "line-missing",
+        "lines",
+        `No significant line at n = ${absent.join(", ")}, although its neighbours are seen.`,
+        "look at the spectrum there: a masked stretch, a field effect or a wrong assignment",
+      ),
+    );
+  }
+  const highest = lines[lines.length - 1];
+  if (highest !== undefined && highest.width_over_spacing !== null && highest.width_over_spacing > 1) {
+    notes.push(
+      doubt(
+        "highest-line-blended",
+        `lines[n=${highest.n}]`,
+        `The highest line, n = ${highest.n}, is ${highest.width_over_spacing.toFixed(2)} times as wide as its distance to the next: its energy depends on the tail.`,
+        "read highest_resolved_n for lines that stand apart, or end the ladder lower (lines.max_n)",
+      ),
+    );
+  }
+  const q = full.fit.asymmetry;
+  if (protocol.lines.asymmetry === "shared" && !(Math.abs(q.value) > 3 * q.sigma)) {
+    notes.push(
+      assumption(
+        "asymmetry-insignificant",
+        "lines.asymmetry",
+        `The shared asymmetry is ${q.value.toPrecision(2)} with a standard error of ${q.sigma.toPrecision(2)}: not told from zero.`,
+        "keep it free, so that its uncertainty is carried, or set lines.asymmetry=zero",
+      ),
+    );
+  }
+  const widest = Math.max(...full.state.width);
+  const window = points.energy[points.energy.length - 1]! - points.energy[0]!;
+  if (window < 10 * widest) {
+    notes.push(
+      doubt(
+        "window-short",
+        "fit.window_eV",
+        `The window is ${(window / widest).toFixed(1)} times the widest line; asymmetry and background are told apart only from about 10.`,
+        "measure further below the first line, or leave the first line out of the window",
+      ),
+    );
+  }
+  const strays = assignment.unmatched
+    .map((i) => peaks[i]!)
+    .filter((peak) => energyOf(ns[0]!, full.state.levels) < peak.energy_eV);
+  for (const peak of strays) {
+    const owner = ns.some(
+      (_, j) => Math.abs(full.state.energy[j]! - peak.energy_eV) < 1.5 * full.state.width[j]!,
+    );
+    if (owner) continue;
+    notes.push(
+      doubt(
+        "line-unassigned",
+        "lines",
+        `A line at ${meV(peak.energy_eV)} (width about ${ueV(peak.width_eV)}) fits no n of the series and is not in the model.`,
+        "mask it (mask_eV) if it is of another origin",
+      ),
+    );
+  }
+  return notes;
+}
+
+function doubtsOfTail({ tail, full }: DoubtInput): Note[] {
+  if (tail === null || full.fit.factor === null) return [];
+  const { value, sigma, atBound } = full.fit.factor;
+  if (atBound && value > 1) {
+    return [
+      doubt(
+        "tail-stronger-than-law",
+        "tail.factor",
+        "The lines above the last free one want more strength than 1.2 times the law.",
+        "look for absorption near the gap that is not of this series; try another background",
+      ),
+    ];
+  }
+  if (value + sigma < 0.8 || (atBound && value === 0)) {
+    return [
+      doubt(
+        "tail-weaker-than-law",
+        "tail.factor",
+        `The lines above n = ${tail.from_n - 1} have ${value.toFixed(2)} times the strength of the law: high lines are lost.`,
+        "charged impurities, residual fields or too much light; compare strengths against n",
+      ),
+    ];
+  }
+  return [];
+}
+
+function doubtsOfSampling({ points, full }: DoubtInput): Note[] {
+  const { ns, energy, width } = full.state;
+  const coarse = ns.filter((_, j) => {
+    const i = points.energy.findIndex((value) => value >= energy[j]!);
+    if (i < 1) return false;
+    return points.energy[i]! - points.energy[i - 1]! > width[j]! / 3;
+  });
+  if (coarse.length === 0) return [];
+  return [
+    doubt(
+      "sampling-coarse",
+      `lines[n=${coarse.join(",")}]`,
+      `The sampling step exceeds a third of the width at n = ${coarse.join(", ")}.`,
+      "measure with a finer step there",
+    ),
+  ];
+}
+
+function doubtsOfUnexplained({ points, full, fit, spectrum }: DoubtInput): Note[] {
+  const notes: Note[] = [];
+  const found = findSatellites(
+    points,
+    full.fit.solution.residuals,
+    full.state,
+    fit.chi2 / Math.max(1, fit.dof),
+  );
+  if (found.length > 0) {
+    const worst = [...found].sort((a, b) => Math.abs(b.significance) - Math.abs(a.significance));
+    const shown = worst
+      .slice(0, 4)
+      .map((one) => `${meV(one.energy_eV)} (${one.significance.toFixed(1)} standard errors)`);
+    notes.push(
+      doubt(
+        "satellite",
+        "fit",
+        `Residuals with the shape of a line stand at ${shown.join(", ")}${worst.length > 4 ? ` and ${worst.length - 4} more places` : ""}: not explained by this series.`,
+        "another series (F beside P, S and D with field or strain), a bound exciton, or a background that is too stiff",
+      ),
+    );
+  }
+  if (spectrum.unit === "1/cm") {
+    // Extinction coefficient k = alpha hbar c/(2 E); hbar c = 1.973269804e-5 eV cm (CODATA 2018).
+    const strongest = Math.max(
+      ...full.fit.lines.area.map((area, j) => (2 * area) / (Math.PI * full.fit.lines.width[j]!)),
+    );
+    const index = 2.5;
+    const k = (strongest * 1.973269804e-5) / (2 * full.state.energy[0]!);
+    if (k / index > 0.01) {
+      notes.push(
+        doubt(
+          "low-n-coherent",
+          "lines",
+          "The strongest line changes the refractive index so much that Beer's law fails for it.",
+          "leave the lowest lines out of the window",
+        ),
+      );
+    }
+  }
+  return notes;
+}

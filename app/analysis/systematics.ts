@@ -1,0 +1,171 @@
+import { type Watch } from "../base/index.ts";
+import { fitSpectrum, type FitPoints } from "../fit/index.ts";
+import type { BackgroundTerm, Protocol, RunglineResult } from "../protocol/index.ts";
+import { fitLevels, type LevelFit } from "../series/index.ts";
+import { informationCriteria, runsTest } from "../solve/index.ts";
+import type { Spectrum } from "../spectrum/index.ts";
+import { buildModel, energyOf, type LadderState, type ModelChoices } from "./ladder-model.ts";
+import { covarianceBlock, determinedPlaces } from "./level-range.ts";
+
+type Systematic = NonNullable<RunglineResult["systematic"]>;
+
+interface Trial {
+  readonly name: string;
+  readonly choices: ModelChoices;
+  readonly low: number;
+  readonly high: number;
+  /** Fits the same points as the reference, so that information criteria can be compared. */
+  readonly samePoints: boolean;
+}
+
+/** A background is defensible when its information criterion is within this of the best one. */
+const DEFENSIBLE_BIC = 10;
+
+/**
+ * What      Spread that other defensible backgrounds and windows put on gap, Rydberg energy and defect: half the range
+ *           of the values, the chosen model among them. Trials on the same points count when their BIC is within 10 of
+ *           the best (Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995): "very strong" evidence beyond); trials of
+ *           another window always count. Every trial is listed, whether it counts or not.
+ * Shapes    points: the averaged points (differences between trials are what matters).
+ */
+export function judgeSystematics(
+  points: FitPoints,
+  state: LadderState,
+  reference: LevelFit,
+  protocol: Protocol,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+  watch: Watch,
+): Systematic {
+  const trials = planTrials(points, state, protocol, choices);
+  const rows: (Systematic["trials"][number] & { samePoints: boolean })[] = [];
+  for (const trial of trials) {
+    const row = runTrial(points, state, reference, protocol, unit, trial, watch);
+    if (row !== null) rows.push({ ...row, samePoints: trial.samePoints });
+  }
+  const bics = rows.filter((row) => row.samePoints && row.bic !== null).map((row) => row.bic!);
+  const best = Math.min(...bics);
+  const counted = rows.filter(
+    (row) => row.gap_eV !== null && (!row.samePoints || row.bic! <= best + DEFENSIBLE_BIC),
+  );
+  const chosen = rows[0];
+  if (chosen !== undefined && !counted.includes(chosen)) counted.push(chosen);
+  const half = (pick: (row: Systematic["trials"][number]) => number | null): number | null => {
+    const values = counted.map(pick).filter((value): value is number => value !== null);
+    return values.length < 2 ? null : (Math.max(...values) - Math.min(...values)) / 2;
+  };
+  const axis = Math.hypot(protocol.axis.offset_sigma_eV, protocol.axis.scale_sigma * state.levels.gap);
+  const gap = half((row) => row.gap_eV);
+  const rydberg = half((row) => row.rydberg_eV);
+  return {
+    gap_eV: gap === null ? null : Math.hypot(gap, axis),
+    rydberg_eV:
+      rydberg === null ? null : Math.hypot(rydberg, protocol.axis.scale_sigma * state.levels.rydberg),
+    defect0: half((row) => row.defect0),
+    trials: rows.map(({ samePoints: _, ...row }) => row),
+  };
+}
+
+function planTrials(
+  points: FitPoints,
+  state: LadderState,
+  protocol: Protocol,
+  choices: ModelChoices,
+): Trial[] {
+  const low = points.energy[0]!;
+  const high = points.energy[points.energy.length - 1]!;
+  const same = { low, high, samePoints: true };
+  const trials: Trial[] = [{ name: "as chosen", choices, ...same }];
+  const polynomial = choices.background.find((term) => term.term === "polynomial");
+  if (polynomial !== undefined) {
+    for (const order of [polynomial.order - 1, polynomial.order + 1]) {
+      if (order < 0 || order > 8) continue;
+      const background = choices.background.map((term): BackgroundTerm =>
+        term === polynomial ? { ...polynomial, order } : term,
+      );
+      trials.push({ name: `polynomial of order ${order}`, choices: { ...choices, background }, ...same });
+    }
+  }
+  const onset = choices.background.find((term) => term.term === "square-root");
+  if (onset !== undefined) {
+    const background = choices.background.filter((term) => term !== onset);
+    if (background.length > 0)
+      trials.push({ name: "without square-root onset", choices: { ...choices, background }, ...same });
+  }
+  if (choices.tail) {
+    trials.push({
+      name: choices.continuumOdd ? "continuum without odd part" : "continuum with odd part",
+      choices: { ...choices, continuumOdd: !choices.continuumOdd },
+      ...same,
+    });
+    const top = state.ns[state.ns.length - 1]!;
+    const background: BackgroundTerm[] = [
+      ...choices.background,
+      { term: "urbach", energy_eV: Math.max(1e-6, (state.levels.gap - energyOf(top, state.levels)) / 2) },
+    ];
+    trials.push({
+      name: "Urbach tail instead of the series tail",
+      choices: { ...choices, tail: false, background },
+      ...same,
+    });
+  }
+  const first = state.energy[0]!;
+  const narrower = low + 0.4 * Math.max(0, first - low);
+  if (narrower > low)
+    trials.push({ name: "window from higher up", choices, low: narrower, high, samePoints: false });
+  const gap = state.levels.gap;
+  if (high > gap && protocol.window_eV === null) {
+    trials.push({
+      name: "window to nearer the gap",
+      choices,
+      low,
+      high: gap + 0.4 * (high - gap),
+      samePoints: false,
+    });
+  }
+  return trials;
+}
+
+function runTrial(
+  points: FitPoints,
+  state: LadderState,
+  reference: LevelFit,
+  protocol: Protocol,
+  unit: Spectrum["unit"],
+  trial: Trial,
+  watch: Watch,
+): Systematic["trials"][number] | null {
+  const inside = (value: number): boolean => value >= trial.low && value <= trial.high;
+  const keep = [...points.energy.keys()].filter((i) => inside(points.energy[i]!));
+  const part: FitPoints = {
+    energy: Float64Array.from(keep, (i) => points.energy[i]!),
+    signal: Float64Array.from(keep, (i) => points.signal[i]!),
+    sigma: Float64Array.from(keep, (i) => points.sigma[i]!),
+  };
+  const model = buildModel(part, state, protocol, unit, trial.choices);
+  const fit = fitSpectrum(part, model.spec, model.start, {
+    watch,
+    maxIterations: 20,
+    gradientTolerance: 1e-4,
+    costTolerance: 1e-6,
+  });
+  const places = determinedPlaces(fit, 0).filter((j) => reference.n.includes(fit.lines.ns[j]!));
+  const levels = fitLevels({
+    n: places.map((j) => fit.lines.ns[j]!),
+    energy_eV: Float64Array.from(places, (j) => fit.lines.energy[j]!),
+    covariance: covarianceBlock(fit, 0, places),
+    defect: reference.defect,
+    heldDefect: reference.estimates.values[2],
+  });
+  const parameters = fit.problem.nonlinear + fit.problem.linear;
+  const values = levels.ok ? levels.value.estimates.values : null;
+  return {
+    name: trial.name,
+    gap_eV: values?.[0] ?? null,
+    rydberg_eV: values?.[1] ?? null,
+    defect0: values?.[2] ?? null,
+    chi2: fit.solution.chi2,
+    bic: informationCriteria(fit.solution.chi2, part.energy.length, parameters).bic,
+    runs_p: runsTest(fit.solution.residuals).p,
+  };
+}
