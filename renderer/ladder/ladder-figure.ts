@@ -2,7 +2,7 @@ import type { Quantity } from "../../app/base/index.ts";
 import type { LineResult, RunglineResult } from "../../app/protocol/index.ts";
 import { colourOfN, type Palette } from "../plot/colours.ts";
 import type { Axis, FigureDescription, Trace } from "../plot/figure-description.ts";
-import { axis, baseLayout } from "../plot/layout.ts";
+import { axis, baseLayout, logarithmic } from "../plot/layout.ts";
 
 export type LadderPanel = "all" | "levels" | "widths" | "strengths" | "ranges";
 export type RangeQuantity = "gap" | "rydberg" | "defect";
@@ -167,7 +167,11 @@ function widths(result: RunglineResult, palette: Palette): { data: Trace[]; x: A
       "µeV",
     ),
   );
-  return { data, x: logN(palette, result), y: axis(palette, "Width (FWHM) / µeV", logarithmic()) };
+  return {
+    data,
+    x: logN(palette, result),
+    y: axis(palette, "Width (FWHM) / µeV", logarithmic(shownValues(result, "width_eV", 1e6))),
+  };
 }
 
 function strengths(result: RunglineResult, palette: Palette): { data: Trace[]; x: Axis; y: Axis } {
@@ -204,7 +208,11 @@ function strengths(result: RunglineResult, palette: Palette): { data: Trace[]; x
       unit,
     ),
   );
-  return { data, x: logN(palette, result), y: axis(palette, `Area / ${unit}`, logarithmic()) };
+  return {
+    data,
+    x: logN(palette, result),
+    y: axis(palette, `Area / ${unit}`, logarithmic(shownValues(result, "area", 1e3))),
+  };
 }
 
 const RANGED = {
@@ -285,6 +293,7 @@ function points(
     mode: "markers",
     customdata: shown.map((line) => line.n),
     marker: {
+      opacity: 1,
       size: shown.map(() => 8),
       symbol: shown.map((line) => (line.in_level_fit ? "circle" : "circle-open")),
       color: shown.map((line) => colourOfN(line.n, palette.mode)),
@@ -341,4 +350,6 @@ function logN(palette: Palette, result: RunglineResult): Axis {
   });
 }
 
-const logarithmic = (): Axis => ({ type: "log", dtick: 1, exponentformat: "power", showgrid: true });
+function shownValues(result: RunglineResult, key: "width_eV" | "area", scale: number): number[] {
+  return result.lines.flatMap((line) => (line[key].value === null ? [] : [line[key].value * scale]));
+}

@@ -89,7 +89,7 @@ const CARDS = {
   systematic: {
     definition: "Spread over defensible backgrounds and windows with the axis offset; never mixed into σ.",
     formula: "spread of the trials listed in the result",
-    source: "PHYSICS of this program; see trials in the saved result",
+    source: "the trials are listed in the saved result",
     improve: "a reference spectrum of the background and a calibrated axis",
   },
 } as const satisfies Record<string, CardText>;

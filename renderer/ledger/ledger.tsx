@@ -1,5 +1,5 @@
 import { Button, Dialog, DialogTrigger, Popover } from "react-aria-components";
-import { formatQuantity, scaleQuantity } from "../../app/report/index.ts";
+import { formatQuantity, roundSigma, scaleQuantity } from "../../app/report/index.ts";
 import type { LedgerEntry, LedgerSection, LedgerSymbol } from "./ledger-entry.ts";
 
 const THIN = "\u2009";
@@ -63,14 +63,16 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
       <p className="card-value">{whole}</p>
       {entry.plain === undefined && low !== null && high !== null && (
         <p className="small">
-          interval {low.toPrecision(7)} to {high.toPrecision(7)} {unit}
+          interval {endText(low, entry)} to {endText(high, entry)} {unit}
         </p>
       )}
       <dl>
         <dt>What it is</dt>
         <dd>{entry.card.definition}</dd>
         <dt>From</dt>
-        <dd className="card-formula">{entry.card.formula}</dd>
+        <dd className="card-formula">
+          <Formula text={entry.card.formula} />
+        </dd>
         <dt>Source</dt>
         <dd>{entry.card.source}</dd>
         {entry.correlations.length > 0 && (
@@ -101,6 +103,19 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
       </Button>
     </>
   );
+}
+
+/** An end of the interval, one digit finer than the value. */
+function endText(end: number, entry: LedgerEntry): string {
+  const sigma = (entry.quantity.sigma ?? 0) * entry.scale;
+  return sigma > 0 ? end.toFixed(Math.min(12, Math.max(0, 1 - roundSigma(sigma).place))) : String(end);
+}
+
+/** `E_n` with its subscript lowered. */
+function Formula({ text }: { readonly text: string }) {
+  return text
+    .split(/(_\{[^}]*\}|_[\p{L}\p{N}∞])/u)
+    .map((part, i) => (part.startsWith("_") ? <sub key={i}>{part.replace(/[_{}]/g, "")}</sub> : part));
 }
 
 export function Symbol({ symbol }: { readonly symbol: LedgerSymbol }) {

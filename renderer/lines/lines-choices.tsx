@@ -108,7 +108,7 @@ export function LinesChoices() {
             label="Tail of the series"
             value={protocol.tail.model}
             options={[
-              { value: "law", text: "a tail after the laws" },
+              { value: "law", text: "a tail tied to the laws" },
               { value: "none", text: "no tail" },
             ]}
             onPick={(model) => controller.change({ tail: { model } }, `tail ${model}`)}

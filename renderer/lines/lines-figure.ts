@@ -89,7 +89,7 @@ export function linesFigure(
     ...quiet,
     meta: { part: "model" },
   });
-  data.push(labels(curves, result, palette));
+  data.push(labels(curves, result, palette, range));
   data.push({
     type: "scatter",
     name: "residual",
@@ -221,18 +221,29 @@ function gapMark(result: RunglineResult, palette: Palette): object[] {
   ];
 }
 
+/** Share of the shown range that the number of a line takes. */
+const LABEL_ROOM = 0.022;
+
 /** n over each line that has room for it. */
-function labels(curves: Curves, result: RunglineResult, palette: Palette): Trace {
+function labels(
+  curves: Curves,
+  result: RunglineResult,
+  palette: Palette,
+  [from, to]: readonly [number, number],
+): Trace {
+  const room = LABEL_ROOM * (to - from);
+  let taken = -Infinity;
   const x: number[] = [];
   const y: number[] = [];
   const text: string[] = [];
   const colours: string[] = [];
   for (const line of result.lines) {
     const energy = line.energy_eV.value;
-    if (energy === null) continue;
+    if (energy === null || energy - taken < room) continue;
     const at = nearestIndex(curves.energy_eV, energy);
     const top = curves.model[at]!;
     if (!Number.isFinite(top)) continue;
+    taken = energy;
     x.push(energy);
     y.push(top);
     text.push(String(line.n));
@@ -253,10 +264,17 @@ function labels(curves: Curves, result: RunglineResult, palette: Palette): Trace
   };
 }
 
+/** A line alone, standing on the background; nothing where there is none. */
 function onBackground(energy: Float64Array, value: Float64Array, curves: Curves): Float64Array {
   const out = new Float64Array(energy.length);
-  for (let i = 0; i < energy.length; i++)
-    out[i] = value[i]! + curves.background[nearestIndex(curves.energy_eV, energy[i]!)]!;
+  const first = curves.energy_eV[0]!;
+  const last = curves.energy_eV[curves.energy_eV.length - 1]!;
+  for (let i = 0; i < energy.length; i++) {
+    const outside = energy[i]! < first || energy[i]! > last;
+    out[i] = outside
+      ? Number.NaN
+      : value[i]! + curves.background[nearestIndex(curves.energy_eV, energy[i]!)]!;
+  }
   return out;
 }
 

@@ -180,3 +180,28 @@ const TERMINATION = {
   cancelled: "cancelled",
   notFinite: "model not finite",
 } as const;
+
+const BACKGROUND_CARD: CardText = {
+  definition: "A parameter of the background under the lines.",
+  formula: "the sum of the terms that the protocol names",
+  source: "fitted with the lines",
+  improve: "a reference spectrum of the background",
+};
+
+export function backgroundSection(result: RunglineResult): LedgerSection | null {
+  if (result.background.length === 0) return null;
+  return {
+    title: "Background",
+    entries: result.background.map(({ term, name, unit, quantity }, i) => ({
+      id: `background-${i}`,
+      symbol: { letter: "b", below: String(i) },
+      name: `${term}, ${name}`,
+      quantity,
+      unit: unit === "1" ? "" : unit,
+      scale: 1,
+      notes: result.notes.filter((note) => note.about.startsWith(`background[${i}]`)),
+      card: BACKGROUND_CARD,
+      correlations: [],
+    })),
+  };
+}

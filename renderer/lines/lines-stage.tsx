@@ -5,7 +5,7 @@ import { StageFrame } from "../frame/stage-frame.tsx";
 import { Ledger } from "../ledger/ledger.tsx";
 import { Figure, type FigureHandle } from "../plot/figure.tsx";
 import { currentAnalysed, useController, useWindow } from "../store/context.ts";
-import { fitSection, lineSection } from "./lines-ledger.ts";
+import { backgroundSection, fitSection, lineSection } from "./lines-ledger.ts";
 import { LinesChoices } from "./lines-choices.tsx";
 import { fittedWindow, linesFigure, type LinesView } from "./lines-figure.ts";
 import { LinesTable } from "./lines-table.tsx";
@@ -27,9 +27,11 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
   const sections = useMemo(() => {
     if (analysed === null) return [];
     const { result } = analysed;
-    return [selected === null ? null : lineSection(result, selected), fitSection(result)].filter(
-      (section) => section !== null,
-    );
+    return [
+      selected === null ? null : lineSection(result, selected),
+      fitSection(result),
+      selected === null ? backgroundSection(result) : null,
+    ].filter((section) => section !== null);
   }, [analysed, selected]);
   if (analysed === null || figure === null) return <Unfitted choices={<LinesChoices />} />;
   const { result, curves } = analysed;
@@ -95,6 +97,9 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
       ledger={
         <>
           <LinesTable result={result} />
+          {selected === null && (
+            <p className="small ledger-hint">Choose a line here or on the ladder to see its numbers.</p>
+          )}
           <Ledger sections={sections} />
         </>
       }

@@ -26,14 +26,14 @@ export function readFigure(spectrum: Spectrum, palette: Palette): FigureDescript
   const edge = { width: 0, color: palette.muted };
   const data: Trace[] = [
     band("one standard deviation below", low, { line: edge }),
-    band("one standard deviation above", high, { line: edge, fill: "tonexty", fillcolor: palette.band }),
+    band("one standard deviation above", high, { line: edge, fill: "tonexty", fillcolor: palette.noise }),
     {
       type: "scatter",
       name: "signal",
       x: energy,
       y: shown,
       mode: "lines",
-      line: { width: 1.2, color: palette.ink },
+      line: { width: 1, color: palette.ink },
       hovertemplate: "%{x:.6f} eV<br>%{y:.5g}<extra></extra>",
       meta: { part: "signal" },
     },

@@ -6,8 +6,8 @@ import { useMode } from "../frame/theme.ts";
 import { expectedLayout, rungLayout, type Rung } from "./rung-layout.ts";
 
 const WIDTH = 148;
-const LEFT = 34;
-const RIGHT = 82;
+const LEFT = 32;
+const RIGHT = 86;
 
 const KIND_WORDS = {
   determined: "determined",
@@ -75,8 +75,8 @@ export function RungStrip() {
               <text className="rung-number" x={LEFT - 12} y={layout.gapY + 4} textAnchor="end">
                 ∞
               </text>
-              <text className="rung-energy" x={RIGHT + 12} y={layout.gapY + 4}>
-                {layout.gap_eV.toFixed(4)}
+              <text className="rung-energy" x={RIGHT + 10} y={layout.gapY + 4}>
+                {layout.gap_eV.toFixed(5)}
               </text>
             </svg>
             <svg
@@ -184,8 +184,8 @@ function RungMark({ rung, top, bottom, colour, pointed, selected, onPoint, onCho
         </text>
       )}
       {(rung.measured || lit) && (
-        <text className="rung-energy" x={RIGHT + 12} y={y + 4}>
-          {rung.energy_eV.toFixed(4)}
+        <text className="rung-energy" x={RIGHT + 10} y={y + 4}>
+          {rung.energy_eV.toFixed(5)}
         </text>
       )}
       {selected && <path className="rung-pointer" d={`M2 ${y - 5}l7 5l-7 5z`} />}
