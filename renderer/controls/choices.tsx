@@ -94,12 +94,6 @@ export function Amount({ label, value, placeholder, width, onCommit }: AmountPro
   );
 }
 
-/** A number as people type it, with point or comma; null where it is none. */
-export function parseNumber(text: string): number | null {
-  const value = Number(text.replace(",", "."));
-  return text === "" || !Number.isFinite(value) ? null : value;
-}
-
 interface SegmentsProps<T extends string> {
   readonly label: string;
   readonly value: T;

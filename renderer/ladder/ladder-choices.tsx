@@ -1,5 +1,6 @@
 import { resolveProtocol } from "../../app/protocol/index.ts";
-import { Amount, Clause, parseNumber, Pick, Sentence } from "../controls/choices.tsx";
+import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
+import { parseNumber } from "../controls/parse-number.ts";
 import { FitButton } from "../controls/fit-button.tsx";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 

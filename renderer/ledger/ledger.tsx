@@ -1,8 +1,7 @@
 import { Button, Dialog, DialogTrigger, Popover } from "react-aria-components";
-import { formatQuantity, roundSigma, scaleQuantity } from "../../app/report/index.ts";
+import { roundSigma, scaleQuantity } from "../../app/report/index.ts";
+import { THIN, valueText } from "./value-text.ts";
 import type { LedgerEntry, LedgerSection, LedgerSymbol } from "./ledger-entry.ts";
-
-const THIN = "\u2009";
 
 /** The numbers of a stage in the order a paper would give them; each opens its card. */
 export function Ledger({ sections }: { readonly sections: readonly LedgerSection[] }) {
@@ -125,15 +124,4 @@ export function Symbol({ symbol }: { readonly symbol: LedgerSymbol }) {
       {symbol.below !== undefined && <sub>{symbol.below}</sub>}
     </span>
   );
-}
-
-/** Value with its uncertainty, and the unit apart, so that each can have its own type. */
-export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit" | "plain">): {
-  readonly value: string;
-  readonly unit: string;
-} {
-  if (entry.plain !== undefined) return { value: entry.plain, unit: entry.unit };
-  if (entry.quantity.value === null) return { value: "not determined", unit: "" };
-  const { value, sigma, low, high } = scaleQuantity(entry.quantity, entry.scale);
-  return { value: formatQuantity(value, sigma, "", { low, high, groupSpace: THIN }), unit: entry.unit };
 }

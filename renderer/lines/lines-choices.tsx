@@ -1,6 +1,8 @@
 import { PRESETS, resolveProtocol, type BackgroundTerm } from "../../app/protocol/index.ts";
-import { Amount, Clause, parseNumber, Pick, Sentence } from "../controls/choices.tsx";
+import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
+import { parseNumber } from "../controls/parse-number.ts";
 import { FitButton } from "../controls/fit-button.tsx";
+import { parseList } from "./parse-list.ts";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 
 const NO_PRESET = "";
@@ -146,21 +148,6 @@ export function LinesChoices() {
     controller.change({ window_eV: moved }, `window ${moved[0]} to ${moved[1]} eV`);
     return null;
   }
-}
-
-/** `2-9, 11` to a list; empty: found by the program. */
-export function parseList(text: string): number[] | "auto" | null {
-  if (text === "" || text === "auto") return "auto";
-  const list = new Set<number>();
-  for (const part of text.split(/[\s,;]+/).filter((one) => one !== "")) {
-    const match = /^(\d{1,2})(?:[-–](\d{1,2}))?$/.exec(part);
-    if (match === null) return null;
-    const from = Number(match[1]);
-    const to = Number(match[2] ?? match[1]);
-    if (from < 1 || to < from) return null;
-    for (let n = from; n <= to; n++) list.add(n);
-  }
-  return [...list].sort((a, b) => a - b);
 }
 
 function withOrder(terms: readonly BackgroundTerm[], order: string): BackgroundTerm[] {

@@ -8,7 +8,7 @@ import {
 } from "@tanstack/react-table";
 import type { Quantity } from "../../app/base/index.ts";
 import type { LineResult, RunglineResult } from "../../app/protocol/index.ts";
-import { valueText } from "../ledger/ledger.tsx";
+import { valueText } from "../ledger/value-text.ts";
 import { notesOfLine } from "../rungs/rung-layout.ts";
 import { colourOfN } from "../plot/colours.ts";
 import { useMode } from "../frame/theme.ts";

@@ -1,7 +1,8 @@
 import type { ReactNode } from "react";
 import { resolveProtocol, type ProtocolInput } from "../../app/protocol/index.ts";
 import type { Inspection } from "../../app/tasks/index.ts";
-import { Amount, Clause, parseNumber, Pick, Sentence } from "../controls/choices.tsx";
+import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
+import { parseNumber } from "../controls/parse-number.ts";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 
 type Signal = NonNullable<ProtocolInput["signal"]>;

@@ -126,7 +126,12 @@ function isDoubtful(notes: readonly Note[], index: number, n: number, significan
   return significance < SURE || notesOfLine(notes, index, n).some((note) => note.level === "doubt");
 }
 
-/** Notes about one line: `lines[i]...`, i its place in the result. */
+/** Notes about one line: `lines[n=7]...`, `lines[n=7,8]...`, or `lines[i]...` with i its place in the result. */
 export function notesOfLine(notes: readonly Note[], index: number, n: number): readonly Note[] {
-  return notes.filter(({ about }) => about.startsWith(`lines[${index}]`) || about.startsWith(`lines.n=${n}`));
+  return notes.filter(({ about }) => {
+    const match = /^lines\[(n=)?([\d,]+)\]/.exec(about);
+    if (match === null) return false;
+    const numbers = match[2]!.split(",").map(Number);
+    return match[1] === undefined ? numbers[0] === index : numbers.includes(n);
+  });
 }
