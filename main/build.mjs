@@ -102,9 +102,13 @@ async function buildCommandLine() {
     splitting: true,
     outExtension: { ".js": ".mjs" },
     chunkNames: "parts/[name]-[hash]",
-    // Packages written for `require` ask for Node's own modules through it.
+    // Packages written for `require` ask for it, and for their own place.
     banner: {
-      js: 'import{createRequire as $require}from"node:module";const require=$require(import.meta.url);',
+      js: [
+        'import { createRequire as makeRequire } from "node:module";',
+        'import { fileURLToPath as toPath } from "node:url";',
+        "const require = makeRequire(import.meta.url), __filename = toPath(import.meta.url);",
+      ].join(""),
     },
   });
   const isEntry = (path) => dirname(path) === folder;

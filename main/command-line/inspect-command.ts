@@ -1,7 +1,7 @@
 import { readFile } from "node:fs/promises";
 import { resolve } from "node:path";
 import { inspectionToText } from "../../app/report/index.ts";
-import { inspectFile, wordIssue } from "../../app/tasks/index.ts";
+import { inspectFile, wordIssue, type FileRequest } from "../../app/tasks/index.ts";
 import { listInputs, reasonInWords } from "../services/index.ts";
 import { readChoices, type ChoiceOptions } from "./choices.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
@@ -33,19 +33,26 @@ export async function inspectCommand(
       status = Math.max(status, EXIT.input);
       continue;
     }
-    try {
-      const inspection = inspectFile({ file, bytes, choices });
-      if (inspection.ok) {
-        await io.stdout((shown++ > 0 ? "\n" : "") + inspectionToText(inspection.value));
-        continue;
-      }
+    const inspection = tryInspect({ file, bytes, choices });
+    if (inspection instanceof Error) {
+      sayFault(inspection, io, path);
+      status = Math.max(status, EXIT.fault);
+    } else if (inspection.ok) {
+      await io.stdout((shown++ > 0 ? "\n" : "") + inspectionToText(inspection.value));
+    } else {
       for (const { message, remedy } of inspection.issues.map(wordIssue))
         io.stderr(`rungline: ${message}${remedy === "" ? "" : `\n  ${remedy}`}\n`);
       status = Math.max(status, EXIT.input);
-    } catch (thrown) {
-      sayFault(thrown, io, path);
-      status = Math.max(status, EXIT.fault);
     }
   }
   return status;
+}
+
+/** A fault in one file is said and does not keep the others from being shown. */
+function tryInspect(request: FileRequest): ReturnType<typeof inspectFile> | Error {
+  try {
+    return inspectFile(request);
+  } catch (thrown) {
+    return thrown instanceof Error ? thrown : new Error(String(thrown));
+  }
 }

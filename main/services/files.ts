@@ -26,15 +26,21 @@ export async function writeWhole(file: string, text: string): Promise<void> {
       }
     } else await writeFileAtomic(file, text);
   } catch (cause) {
-    throw new OutputError(file, cause);
+    throw outputError(file, cause);
   }
+}
+
+/** What the operating system refuses is about the output; anything else is a fault and stays one. */
+function outputError(file: string, cause: unknown): unknown {
+  const fromSystem = cause instanceof Error && "code" in cause && typeof cause.code === "string";
+  return fromSystem ? new OutputError(file, cause) : cause;
 }
 
 export async function makeFolder(folder: string): Promise<void> {
   try {
     await mkdir(folder, { recursive: true });
   } catch (cause) {
-    throw new OutputError(folder, cause);
+    throw outputError(folder, cause);
   }
 }
 
