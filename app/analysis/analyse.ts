@@ -1,4 +1,5 @@
 import {
+  doubt,
   NOT_DETERMINED,
   stopIfCancelled,
   symmetric,
@@ -19,7 +20,7 @@ import {
 import { durbinWatson, informationCriteria, neighbourCorrelation, runsTest } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { assignPrincipalNumbers, type Assignment } from "./assign-n.ts";
-import { bicGain, climbLadder, significances, startLadder } from "./climb-ladder.ts";
+import { bicGain, climbLadder, significances, startLadder, type Climbed } from "./climb-ladder.ts";
 import { drawCurves, emptyCurves, type Curves } from "./curves.ts";
 import { describeSeries } from "./describe-series.ts";
 import { findDoubts, presetNotes } from "./find-doubts.ts";
@@ -31,7 +32,7 @@ import { covarianceBlock, determinedPlaces } from "./level-range.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { judgeSystematics } from "./systematics.ts";
 import { thinPoints } from "./thin-points.ts";
-import { doubt } from "../base/index.ts";
+import { fitWithoutTail } from "./without-tail.ts";
 
 /** The result without what only a shell knows (version, clock). */
 export type AnalysisResult = Omit<RunglineResult, "run"> & {
@@ -78,13 +79,20 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     asymmetry: protocol.lines.asymmetry,
   };
   const climbed = climbLadder(thinned, start, protocol, spectrum.unit, choices, watch);
+  const chosen = chooseTail(spectrum, protocol, start, points, climbed, choices, watch);
   const guessSeconds = watch.seconds() - began;
-  const full = fitEveryPoint(points, climbed.state, protocol, spectrum.unit, choices, watch, (pass) =>
-    watch.report(Math.min(0.8, 0.4 + 0.1 * pass), `fitting every point, pass ${pass + 1}`),
+  const full = fitEveryPoint(
+    chosen.points,
+    chosen.state,
+    protocol,
+    spectrum.unit,
+    chosen.choices,
+    watch,
+    (pass) => watch.report(Math.min(0.8, 0.4 + 0.1 * pass), `fitting every point, pass ${pass + 1}`),
   );
   watch.report(0.8, "uncertainties");
   const uncertaintyBegan = watch.seconds();
-  const parts = describe(spectrum, protocol, points, peaks, assignment, full, choices, watch);
+  const parts = describe(spectrum, protocol, chosen.points, peaks, assignment, full, chosen.choices, watch);
   watch.report(1, "done");
   return {
     result: {
@@ -95,8 +103,37 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
         uncertainty: watch.seconds() - uncertaintyBegan,
       },
     },
-    curves: drawCurves(spectrum, points, full),
+    curves: drawCurves(spectrum, chosen.points, full),
   };
+}
+
+interface ChosenTail {
+  readonly points: SelectedPoints;
+  readonly state: LadderState;
+  readonly choices: ModelChoices;
+}
+
+/** A misfit beyond this on averaged points asks for the second reading, which is taken when it at least halves it. */
+const GROSS_MISFIT = 2;
+
+/** The tail tied to the laws, unless the spectrum flatly contradicts it and a window below the tail does not. */
+function chooseTail(
+  spectrum: Spectrum,
+  protocol: Protocol,
+  start: LadderState,
+  points: SelectedPoints,
+  climbed: Climbed,
+  choices: ModelChoices,
+  watch: Watch,
+): ChosenTail {
+  const withTail: ChosenTail = { points, state: climbed.state, choices };
+  const { chi2, degreesOfFreedom } = climbed.fit.solution;
+  const reduced = chi2 / Math.max(1, degreesOfFreedom);
+  if (!choices.tail || reduced < GROSS_MISFIT) return withTail;
+  watch.report(0.3, "trying without a tail");
+  const other = fitWithoutTail(spectrum, protocol, start, points.energy[0]!, choices, watch);
+  if (other === null || other.reducedChi2 > reduced / GROSS_MISFIT) return withTail;
+  return { points: other.points, state: other.state, choices: { ...choices, tail: false } };
 }
 
 /** Readings of n are told apart by the convention |defect - centre| <= 0.5, unless a preset or the user pins it. */

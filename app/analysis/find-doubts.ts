@@ -193,7 +193,17 @@ function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: Dou
   return notes;
 }
 
-function doubtsOfTail({ tail, full }: DoubtInput): Note[] {
+function doubtsOfTail({ tail, full, protocol }: DoubtInput): Note[] {
+  if (tail === null && protocol.tail.model === "law") {
+    return [
+      doubt(
+        "tail-left-out",
+        "tail",
+        `The lines do not follow a strength law that the tail could be tied to, so the window ends above n = ${full.state.ns[full.state.ns.length - 1]!} and nothing is said of what lies beyond.`,
+        "look at the strengths against n; choose another strength law, or set tail.model=none and window_eV yourself",
+      ),
+    ];
+  }
   if (tail === null || full.fit.factor === null) return [];
   const { value, sigma, atBound } = full.fit.factor;
   if (atBound && value > 1) {
@@ -237,7 +247,10 @@ function doubtsOfSampling({ points, full }: DoubtInput): Note[] {
   ];
 }
 
-function doubtsOfUnexplained({ points, full, fit, spectrum }: DoubtInput): Note[] {
+/** Refractive index where the protocol names neither index nor permittivity; common practice, no source. */
+const USUAL_INDEX = 2.5;
+
+function doubtsOfUnexplained({ points, full, fit, spectrum, protocol }: DoubtInput): Note[] {
   const notes: Note[] = [];
   const found = findSatellites(
     points,
@@ -264,7 +277,7 @@ function doubtsOfUnexplained({ points, full, fit, spectrum }: DoubtInput): Note[
     const strongest = Math.max(
       ...full.fit.lines.area.map((area, j) => (2 * area) / (Math.PI * full.fit.lines.width[j]!)),
     );
-    const index = 2.5;
+    const index = protocol.material.index ?? Math.sqrt(protocol.material.permittivity ?? USUAL_INDEX ** 2);
     const k = (strongest * 1.973269804e-5) / (2 * full.state.energy[0]!);
     if (k / index > 0.01) {
       notes.push(

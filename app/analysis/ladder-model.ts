@@ -61,7 +61,7 @@ export function buildModel(
     sigma: state.energySigma,
     include: state.include,
   };
-  const levels = levelLink(energies, state.levels, 2 + defectCount);
+  const levels = sensibleLevels(levelLink(energies, state.levels, 2 + defectCount), state);
   const widths = widthLink(
     { ns: state.ns, value: state.width, sigma: state.widthSigma, include: state.include },
     {
@@ -85,7 +85,13 @@ export function buildModel(
     tail: choices.tail ? describeTail(points, updated, protocol, levels.link, widths.link, choices) : null,
     background: backgroundColumns(choices.background, points.energy, unit, levels.values.gap),
   };
-  const reach = new Map(state.ns.map((n) => [n, 0.6 * spacing(n, levels.values)]));
+  // A line that leaves its own place has become another line or part of the background.
+  const reach = new Map(
+    state.ns.map((n, j) => [
+      n,
+      Math.min(0.45 * spacing(n, levels.values), 2 * state.width[j]! + 3 * state.energySigma[j]!),
+    ]),
+  );
   return {
     spec,
     state: updated,
@@ -96,6 +102,27 @@ export function buildModel(
       reach,
     },
   };
+}
+
+/** Whether a law fitted anew is still the law of this ladder. */
+export function isSensible(levels: LevelValues, state: LadderState): boolean {
+  const { rydberg, defect0 } = state.levels;
+  return (
+    levels.rydberg > 0.2 * rydberg &&
+    levels.rydberg < 5 * rydberg &&
+    Math.abs(levels.defect0 - defect0) < 0.8 &&
+    state.ns[0]! - levels.defect0 > 0.2 &&
+    spacing(state.ns[0]!, levels) > 0
+  );
+}
+
+/** A law that the lines at hand do not support (too few, or one astray) must not carry the tail away. */
+function sensibleLevels(
+  fitted: ReturnType<typeof levelLink>,
+  state: LadderState,
+): ReturnType<typeof levelLink> {
+  if (isSensible(fitted.values, state)) return fitted;
+  return { values: state.levels, link: { ...fitted.link, gain: new Float64Array(fitted.link.gain.length) } };
 }
 
 /** Defect parameters that these lines can carry beside gap and Rydberg energy. */

@@ -1,7 +1,7 @@
 import type { SpectrumFit } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import { chooseLevelRange, type RangeChoice } from "../series/index.ts";
-import type { LadderState } from "./ladder-model.ts";
+import { isSensible, type LadderState } from "./ladder-model.ts";
 import { intervalFactor } from "./interval.ts";
 
 /** Square block `block` of the 4k x 4k covariance of the line parameters, for lines with a finite error. */
@@ -58,5 +58,6 @@ export function withLevelRange(state: LadderState, range: RangeChoice | null): L
     number,
     number,
   ];
-  return { ...state, include, levels: { gap, rydberg, defect0, defect2 } };
+  const levels = { gap, rydberg, defect0, defect2 };
+  return isSensible(levels, state) ? { ...state, include, levels } : state;
 }

@@ -53,7 +53,8 @@ export interface FitControl {
 const ASYMMETRY_BOUND = 5;
 /** The tied lines may fall short of the strength law, and exceed it a little (PHYSICS of the tail). */
 export const FACTOR_BOUND = 1.2;
-const WIDTH_BOUND_FACTOR = 30;
+/** A fit may change a width by this factor from its start. */
+const WIDTH_BOUND_FACTOR = 8;
 
 /** Fits one spectrum and returns the parameters of its lines with their full covariance. */
 export function fitSpectrum(

@@ -38,7 +38,8 @@ const HOLDS_ABOVE = 0.05;
 
 /**
  * What      Which lines follow the level law: the lowest n_min with p > 0.05 and at least five lines up to the highest.
- *           Where none has it, the n_min whose scaled standard error of the gap is smallest, and a note says so.
+ *           Where none has it, the n_min whose scaled standard errors of gap and Rydberg energy have the smallest product (low n pin
+ *           the Rydberg energy where they are on the law at all), and a note says so.
  * Units     eV.
  * Domain    fewer than five lines are all used. A range that is asked for is taken as it is.
  */
@@ -73,9 +74,7 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
       const final = fitWithin(input, input.n[first]!, highest);
       return final.ok ? finish(input, final.value, factor, skipNotes(input, first)) : final;
     }
-    const error = Math.sqrt(
-      (fit.value.estimates.covariance[0]! * fit.value.chi2) / Math.max(1, fit.value.degreesOfFreedom),
-    );
+    const error = scaledUncertainty(fit.value);
     if (error < fallbackError) {
       fallbackError = error;
       fallback = fit.value;
@@ -88,7 +87,7 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
     doubt(
       "no-range-follows-law",
       "series.fit_n",
-      `No range of five lines or more follows the level law with p > 0.05. Taken: n = ${fallback.n[0]} to ${highest}, where the scaled error of the gap is smallest (p = ${fallback.p.toExponential(1)}).`,
+      `No range of five lines or more follows the level law with p > 0.05. Taken: n = ${fallback.n[0]} to ${highest}, where gap and Rydberg energy have the smallest scaled errors (p = ${fallback.p.toExponential(1)}).`,
       "name the range (series.fit_n), allow a Ritz term (series.defect=ritz), or look for blends in the residuals",
     ),
   ]);
@@ -180,4 +179,11 @@ function toStep(fit: LevelFit, factor: number): RangeStep {
     dof: fit.degreesOfFreedom,
     p: fit.degreesOfFreedom > 0 ? fit.p : null,
   };
+}
+
+function scaledUncertainty(fit: LevelFit): number {
+  const { covariance, values } = fit.estimates;
+  const size = values.length;
+  const reduced = fit.chi2 / Math.max(1, fit.degreesOfFreedom);
+  return Math.sqrt(covariance[0]! * covariance[size + 1]!) * reduced;
 }
