@@ -162,7 +162,8 @@ const ABOUT: readonly (readonly [RegExp, string])[] = [
   [/^systematic/, "Systematic"],
   [/^(source|axis|reading)/, "Reading"],
   [/^(signal)/, "Signal"],
-  [/^(material)/, "Material"],
+  [/^(protocol\.)?material/, "Material"],
+  [/^protocol/, "Protocol"],
 ];
 
 /** The dotted path of a note in words. */

@@ -1,16 +1,48 @@
-import type { ReactNode } from "react";
+import { useMemo, type ReactNode, type Ref } from "react";
+import { Figure, type FigureHandle } from "../plot/figure.tsx";
+import { readFigure } from "../read/read-figure.ts";
+import { StageFrame } from "./stage-frame.tsx";
+import { usePalette } from "./theme.ts";
 import { currentFile, currentReading, useController, useWindow } from "../store/context.ts";
 import { EmptyPlace } from "./empty-place.tsx";
 import { Button } from "react-aria-components";
 
 /** A stage that waits for a fit: it says what to do next, or why the last try was refused. */
-export function Unfitted({ choices }: { readonly choices: ReactNode }) {
+export function Unfitted({
+  choices,
+  figureRef,
+}: {
+  readonly choices: ReactNode;
+  readonly figureRef: Ref<FigureHandle>;
+}) {
+  const palette = usePalette();
   const controller = useController();
   const file = useWindow(currentFile);
   const reading = useWindow(currentReading);
   const refusals = useWindow((state) => (file === null ? undefined : state.refusals[file.id]));
   const fitting = useWindow((state) => state.job !== null && state.job.fileId === file?.id);
+  const inspection =
+    reading?.state === "read" ? reading.inspection : reading?.state === "reading" ? reading.before : null;
+  const figure = useMemo(
+    () => (inspection === null ? null : readFigure(inspection.spectrum, palette)),
+    [inspection, palette],
+  );
   if (file === null) return <EmptyPlace />;
+  if (figure !== null && refusals === undefined)
+    return (
+      <StageFrame
+        choices={choices}
+        tools={null}
+        figure={<Figure ref={figureRef} figure={figure} lit={null} />}
+        ledger={
+          <p className="hint ledger-hint" data-state={fitting ? "fitting" : "not-yet"}>
+            {fitting
+              ? "The numbers stand here once the fit is done."
+              : "Not fitted yet. Choose the material on the left and press Fit."}
+          </p>
+        }
+      />
+    );
   const unread = reading?.state === "refused";
   return (
     <div

@@ -270,9 +270,25 @@ function ranges(
   });
   return {
     data,
-    x: axis(palette, "Lowest n in the fit", { dtick: 1 }),
-    y: axis(palette, title, { nticks: 5 }),
+    x: axis(palette, "Lowest n in the fit", { dtick: x.length > 9 ? 2 : 1, tickangle: 0 }),
+    y: axis(palette, title, { nticks: 5, ...rangedReach(x, y, error, fitted, (chosen - origin) * scale) }),
   };
+}
+
+/** Ranges that begin with lines off the law lie far away; those from the chosen one upward set the scale. */
+function rangedReach(
+  x: readonly number[],
+  y: readonly number[],
+  error: readonly number[],
+  fitted: number | undefined,
+  chosen: number,
+): Axis {
+  let reach = 0;
+  x.forEach((n, i) => {
+    if (fitted !== undefined && n >= fitted && n <= fitted + 4)
+      reach = Math.max(reach, Math.abs(y[i]! - chosen) + 1.5 * error[i]!);
+  });
+  return reach > 0 ? { range: [chosen - 1.8 * reach, chosen + 1.8 * reach] } : {};
 }
 
 function points(

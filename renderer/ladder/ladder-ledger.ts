@@ -125,9 +125,20 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
   sections.push({
     title: "Series",
     entries: [
-      entry("gap", "E", "g", "Gap", series?.gap_eV ?? q, "eV", 1, CARDS.gap, ["series", "series.gap_eV"], {
-        main: true,
-      }),
+      entry(
+        "gap",
+        "E",
+        "g",
+        "Gap",
+        series?.gap_eV ?? q,
+        "eV",
+        1,
+        CARDS.gap,
+        ["series", "series.fit_n", "series.gap_eV"],
+        {
+          main: true,
+        },
+      ),
       entry(
         "rydberg",
         "Ry",

@@ -24,7 +24,8 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
     [analysed, palette, panel, ranged],
   );
   const sections = useMemo(() => (analysed === null ? [] : ladderLedger(analysed.result)), [analysed]);
-  if (analysed === null || figure === null) return <Unfitted choices={<LadderChoices />} />;
+  if (analysed === null || figure === null)
+    return <Unfitted choices={<LadderChoices />} figureRef={figureRef} />;
   return (
     <StageFrame
       choices={<LadderChoices />}

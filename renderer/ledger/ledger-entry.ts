@@ -36,6 +36,9 @@ export interface LedgerSection {
   readonly remark?: string;
 }
 
+/** Notes about these paths and what lies below them; a path of one word means the whole and takes only itself. */
 export function notesAbout(notes: readonly Note[], ...paths: readonly string[]): readonly Note[] {
-  return notes.filter(({ about }) => paths.some((path) => about === path || about.startsWith(`${path}.`)));
+  return notes.filter(({ about }) =>
+    paths.some((path) => about === path || (path.includes(".") && about.startsWith(`${path}.`))),
+  );
 }

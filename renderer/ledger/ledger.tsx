@@ -60,6 +60,9 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
         <strong>{entry.name}</strong>
       </header>
       <p className="card-value">{whole}</p>
+      {entry.plain === undefined && entry.quantity.value !== null && entry.quantity.sigma === null && (
+        <p className="small">its uncertainty is not known</p>
+      )}
       {entry.plain === undefined && low !== null && high !== null && (
         <p className="small">
           interval {endText(low, entry)} to {endText(high, entry)} {unit}

@@ -1,4 +1,4 @@
-import { formatQuantity, scaleQuantity } from "../../app/report/index.ts";
+import { formatNumber, formatQuantity, scaleQuantity } from "../../app/report/index.ts";
 import type { LedgerEntry } from "./ledger-entry.ts";
 
 export const THIN = "\u2009";
@@ -11,5 +11,11 @@ export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit"
   if (entry.plain !== undefined) return { value: entry.plain, unit: entry.unit };
   if (entry.quantity.value === null) return { value: "not determined", unit: "" };
   const { value, sigma, low, high } = scaleQuantity(entry.quantity, entry.scale);
+  if (value !== null && (sigma === null || sigma === 0)) {
+    // A column of numbers has no room for a clause: a question mark stands for an unknown uncertainty.
+    const plain = formatNumber(value, 6);
+    const exact = entry.unit === "" ? "exact" : `${entry.unit} exact`;
+    return sigma === null ? { value: `${plain}(?)`, unit: entry.unit } : { value: plain, unit: exact };
+  }
   return { value: formatQuantity(value, sigma, "", { low, high, groupSpace: THIN }), unit: entry.unit };
 }

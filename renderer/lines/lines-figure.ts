@@ -7,6 +7,9 @@ import { axis, baseLayout, signalTitle } from "../plot/layout.ts";
 /** The part of the fitted window that is shown. */
 export type LinesView = "window" | "high-n" | "line";
 
+/** Where the signal's axis begins over that of the residuals, as a share of the height. */
+const SIGNAL_FOOT = 0.27;
+
 /** Data, model, components, background and tail above; residuals in standard deviations below. */
 export function linesFigure(
   curves: Curves,
@@ -89,7 +92,8 @@ export function linesFigure(
     ...quiet,
     meta: { part: "model" },
   });
-  data.push(labels(curves, result, palette, range));
+  const values = signalRange(curves, range);
+  data.push(labels(curves, result, palette, range, 0.012 * (values[1] - values[0])));
   data.push({
     type: "scatter",
     name: "residual",
@@ -108,7 +112,7 @@ export function linesFigure(
     yref: "paper",
     x0: x,
     x1: x,
-    y0: 0.3,
+    y0: SIGNAL_FOOT,
     y1: 1,
     editable: true,
     line: { width: 3, color: palette.muted, dash: "dot" },
@@ -124,12 +128,12 @@ export function linesFigure(
       uirevision: `${result.source.sha256} ${view} ${view === "line" ? selectedN : ""} ${window.join(" ")}`,
       xaxis: axis(palette, "Photon energy / eV", { range, anchor: "y2", tickformat: "" }),
       yaxis: axis(palette, signalTitle(curves.unit), {
-        domain: [0.3, 1],
-        range: signalRange(curves, range),
+        domain: [SIGNAL_FOOT, 1],
+        range: values,
         showgrid: false,
       }),
       yaxis2: axis(palette, "Residual / σ", {
-        domain: [0, 0.22],
+        domain: [0, 0.23],
         range: [-5, 5],
         tickvals: [-4, -2, 0, 2, 4],
       }),
@@ -213,7 +217,7 @@ function gapMark(result: RunglineResult, palette: Palette): object[] {
       yref: "paper",
       x0: gap,
       x1: gap,
-      y0: 0.3,
+      y0: SIGNAL_FOOT,
       y1: 1,
       line: { width: 1.2, color: palette.ink },
       layer: "below",
@@ -230,6 +234,7 @@ function labels(
   result: RunglineResult,
   palette: Palette,
   [from, to]: readonly [number, number],
+  lift: number,
 ): Trace {
   const room = LABEL_ROOM * (to - from);
   let taken = -Infinity;
@@ -245,7 +250,7 @@ function labels(
     if (!Number.isFinite(top)) continue;
     taken = energy;
     x.push(energy);
-    y.push(top);
+    y.push(top + lift);
     text.push(String(line.n));
     colours.push(colourOfN(line.n, palette.mode));
   }

@@ -168,7 +168,7 @@ export function fitSection(result: RunglineResult): LedgerSection | null {
     ],
     remark: `${result.status === "converged" ? "Converged" : "Not converged"}: ${TERMINATION[fit.termination]}, ${
       fit.iterations ?? "?"
-    } steps, ${fit.parameters ?? "?"} parameters, ${fit.domain === "alpha" ? "absorption" : "transmittance"} domain`,
+    } ${fit.iterations === 1 ? "step" : "steps"}, ${fit.parameters ?? "?"} parameters, ${fit.domain === "alpha" ? "absorption" : "transmittance"} domain`,
   };
 }
 

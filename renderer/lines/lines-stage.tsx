@@ -33,7 +33,8 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
       selected === null ? backgroundSection(result) : null,
     ].filter((section) => section !== null);
   }, [analysed, selected]);
-  if (analysed === null || figure === null) return <Unfitted choices={<LinesChoices />} />;
+  if (analysed === null || figure === null)
+    return <Unfitted choices={<LinesChoices />} figureRef={figureRef} />;
   const { result, curves } = analysed;
   const near = (x: number): number | null => {
     let best: number | null = null;

@@ -17,6 +17,9 @@ import { useController, useWindow } from "../store/context.ts";
 const features = tableFeatures({ rowSortingFeature, sortedRowModel: createSortedRowModel() });
 const helper = createColumnHelper<typeof features, LineResult>();
 
+/** eV, or eV/cm: above it areas are printed in milli-units. */
+const LARGE_AREA = 0.02;
+
 const shown = (quantity: Quantity, scale: number): string => valueText({ quantity, scale, unit: "" }).value;
 
 /** The lines as a table: sortable, its rows light with the rungs. */
@@ -26,6 +29,8 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
   const selected = useWindow((state) => state.selectedN);
   const mode = useMode();
   const perCm = result.reading.signal_unit === "1/cm";
+  // One unit for the column, so that the areas can be compared at a glance.
+  const large = result.lines.some((line) => (line.area.value ?? 0) > LARGE_AREA);
   const columns = useMemo(
     () =>
       helper.columns([
@@ -42,8 +47,8 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
         }),
         helper.accessor((line) => line.area.value ?? undefined, {
           id: "area",
-          header: perCm ? "A / (µeV/cm)" : "A / µeV",
-          cell: ({ row }) => shown(row.original.area, 1e6),
+          header: `A / ${perCm ? `(${large ? "meV" : "µeV"}/cm)` : large ? "meV" : "µeV"}`,
+          cell: ({ row }) => shown(row.original.area, large ? 1e3 : 1e6),
         }),
         helper.accessor("significance", {
           id: "significance",
@@ -51,7 +56,7 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
           cell: (cell) => cell.getValue().toFixed(0),
         }),
       ]),
-    [perCm],
+    [perCm, large],
   );
   const table = useTable({ features, columns, data: result.lines, getRowId: (line) => String(line.n) });
   return (

@@ -129,7 +129,7 @@ export function ReadChoices({
           <Amount
             label="Thickness in micrometres"
             value={signal.thickness_um === null ? "" : String(signal.thickness_um)}
-            placeholder="?"
+            placeholder={thicknessRead(inspection)}
             width={4}
             onCommit={(text) => {
               const value = parseNumber(text);
@@ -177,6 +177,13 @@ export function ReadChoices({
       {after}
     </div>
   );
+}
+
+/** The thickness that the header gave, in um. */
+function thicknessRead(inspection: Inspection | null): string {
+  const spectrum = inspection?.spectrum;
+  if (spectrum === undefined || spectrum.transmittance === null || spectrum.unit !== "1/cm") return "unknown";
+  return String(Number((spectrum.transmittance.thickness_cm * 1e4).toPrecision(6)));
 }
 
 export function columnName(column: number, header: string): string {
