@@ -1,0 +1,1 @@
+export function countReport(report: unknown): { passed: number; failed: number; skipped: number };
