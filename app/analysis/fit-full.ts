@@ -1,5 +1,5 @@
 import { stopIfCancelled, type Watch } from "../base/index.ts";
-import { fitSpectrum, type FitPoints } from "../fit/index.ts";
+import { fitSpectrum, withScaledErrors, type FitPoints } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { RangeChoice } from "../series/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
@@ -41,9 +41,13 @@ export function fitEveryPoint(
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
     const began = watch.seconds();
-    const fit = fitSpectrum(points, model.spec, model.start, { watch });
+    const plain = fitSpectrum(points, model.spec, model.start, { watch });
     const solveSeconds = watch.seconds() - began;
     stopIfCancelled(watch);
+    const { chi2, degreesOfFreedom } = plain.solution;
+    const fit = protocol.uncertainty.scale_by_residuals
+      ? withScaledErrors(plain, chi2 / Math.max(1, degreesOfFreedom))
+      : plain;
     const range = judgeLevels(fit, protocol);
     const next = withLevelRange(stateAfter(fit, model.state), range);
     const seen = significances(fit);

@@ -1,6 +1,6 @@
 import type { SpectrumFit } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
-import { chooseLevelRange, type RangeChoice } from "../series/index.ts";
+import { chooseLevelRange, type LevelInput, type RangeChoice } from "../series/index.ts";
 import { isSensible, type LadderState } from "./ladder-model.ts";
 import { intervalFactor } from "./interval.ts";
 
@@ -29,17 +29,26 @@ export function determinedPlaces(fit: SpectrumFit, block: number): number[] {
     });
 }
 
-/** The level law on the line energies with their full covariance; null where too few are determined. */
-export function judgeLevels(fit: SpectrumFit, protocol: Protocol): RangeChoice | null {
+/** Line energies with their full covariance, as the level law takes them; null where too few are determined. */
+export function levelInput(fit: SpectrumFit, protocol: Protocol): LevelInput | null {
   const places = determinedPlaces(fit, 0);
   if (places.length < 2) return null;
   const centre = (3 - protocol.material.dimension) / 2;
-  const chosen = chooseLevelRange({
+  return {
     n: places.map((j) => fit.lines.ns[j]!),
     energy_eV: Float64Array.from(places, (j) => fit.lines.energy[j]!),
     covariance: covarianceBlock(fit, 0, places),
     defect: protocol.series.defect,
     heldDefect: protocol.series.defect === "none" ? centre : (protocol.material.defect0 ?? centre),
+  };
+}
+
+/** The level law over the range of n that the protocol asks for or the lines support. */
+export function judgeLevels(fit: SpectrumFit, protocol: Protocol): RangeChoice | null {
+  const input = levelInput(fit, protocol);
+  if (input === null) return null;
+  const chosen = chooseLevelRange({
+    ...input,
     fit_n: protocol.series.fit_n,
     factor: intervalFactor(protocol.uncertainty.level),
   });

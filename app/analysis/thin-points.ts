@@ -1,4 +1,7 @@
 import type { FitPoints } from "../fit/index.ts";
+import { WIDTH, widthLaw } from "../laws/index.ts";
+import type { Protocol } from "../protocol/index.ts";
+import { energyOf, type LadderState } from "./ladder-model.ts";
 
 /**
  * What      Neighbouring points averaged where the spectrum cannot change between them: a bin is at most 1/`parts` of
@@ -41,4 +44,20 @@ export function thinPoints(
     signal: Float64Array.from(out.signal),
     sigma: Float64Array.from(out.sigma),
   };
+}
+
+/** Free lines, the tied ones above and the edge of the gap: wherever the spectrum may change quickly. */
+export function linesForThinning(
+  start: LadderState,
+  protocol: Protocol,
+): { energy: number; width: number }[] {
+  const out = new Float64Array(WIDTH.size);
+  const lines = start.ns.map((_, j) => ({ energy: start.energy[j]!, width: start.width[j]! }));
+  const narrowest = Math.min(...start.width);
+  for (let n = start.ns[start.ns.length - 1]! + 1; n <= protocol.lines.max_n + 20; n++) {
+    widthLaw(n, start.levels.defect0, start.widths, out);
+    lines.push({ energy: energyOf(n, start.levels), width: Math.max(out[WIDTH.width]!, narrowest / 4) });
+  }
+  lines.push({ energy: start.levels.gap, width: narrowest / 4 });
+  return lines;
 }

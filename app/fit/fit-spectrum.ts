@@ -65,7 +65,7 @@ export function fitSpectrum(
 ): SpectrumFit {
   const problem = new SpectrumProblem(points, spec);
   const theta = problem.startFrom(start.lines, start.asymmetry, start.factor);
-  const { lower, upper } = bounds(problem, start, theta);
+  const { lower, upper } = parameterBounds(problem, start, theta);
   for (let i = 0; i < theta.length; i++) theta[i] = Math.min(upper[i]!, Math.max(lower[i]!, theta[i]!));
   const solution = solveSeparable(problem, theta, {
     lower,
@@ -79,7 +79,8 @@ export function fitSpectrum(
   return describeFit(problem, solution);
 }
 
-function bounds(
+/** Bounds of theta about its start; the coefficients have none. */
+export function parameterBounds(
   problem: SpectrumProblem,
   start: FitStart,
   theta: Float64Array,
@@ -110,7 +111,8 @@ function bounds(
   return { lower, upper };
 }
 
-function describeFit(problem: SpectrumProblem, solution: SeparableSolution): SpectrumFit {
+/** A solution as parameters of lines, laws and background. */
+export function describeFit(problem: SpectrumProblem, solution: SeparableSolution): SpectrumFit {
   const { spec, layout } = problem;
   const { theta, coefficients, covariance } = solution;
   const k = spec.ns.length;
@@ -181,5 +183,17 @@ function describeFit(problem: SpectrumProblem, solution: SeparableSolution): Spe
       sigma: sigmaAt(p + problem.backgroundAt + b),
     })),
     atBound,
+  };
+}
+
+/** The same fit with every variance multiplied: standard errors scaled by the residuals. */
+export function withScaledErrors(fit: SpectrumFit, variance: number): SpectrumFit {
+  const scale = Math.sqrt(variance);
+  return {
+    ...fit,
+    lines: { ...fit.lines, covariance: fit.lines.covariance.map((value) => value * variance) },
+    asymmetry: { ...fit.asymmetry, sigma: fit.asymmetry.sigma * scale },
+    factor: fit.factor === null ? null : { ...fit.factor, sigma: fit.factor.sigma * scale },
+    background: fit.background.map((column) => ({ ...column, sigma: column.sigma * scale })),
   };
 }

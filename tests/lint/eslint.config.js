@@ -12,6 +12,7 @@ export default tseslint.config(
       // noUncheckedIndexedAccess makes `!` the plain way to read a typed array inside a counted loop.
       "@typescript-eslint/no-non-null-assertion": "off",
       "@typescript-eslint/consistent-type-imports": "error",
+      "@typescript-eslint/no-unused-vars": ["error", { ignoreRestSiblings: true, varsIgnorePattern: "^_", argsIgnorePattern: "^_" }],
       eqeqeq: "error",
     },
   },
