@@ -90,6 +90,16 @@ async function bundle(options) {
   return outputFiles;
 }
 
+/** Of zod's messages in forty languages only the English ones are used; the rest would be a third of the program. */
+const ENGLISH_ONLY = {
+  name: "english-only",
+  setup({ onLoad }) {
+    onLoad({ filter: /[\\/]zod[\\/]v4[\\/]locales[\\/]index\.js$/ }, () => ({
+      contents: 'export { default as en } from "./en.js";',
+    }));
+  },
+};
+
 async function buildCommandLine() {
   const folder = join(DIST, "main");
   const files = await bundle({
@@ -99,6 +109,7 @@ async function buildCommandLine() {
     },
     outdir: folder,
     format: "esm",
+    plugins: [ENGLISH_ONLY],
     splitting: true,
     outExtension: { ".js": ".mjs" },
     chunkNames: "parts/[name]-[hash]",

@@ -236,9 +236,9 @@ function trialsTable(trials: NonNullable<RunglineResult["systematic"]>["trials"]
         ["trial", "E_g/eV", "Ry/meV", "delta", "chi square", "BIC", "p of runs"],
         ...trials.map((one) => [
           one.name,
-          one.gap_eV === null ? NOT_DETERMINED_WORDS : one.gap_eV.toFixed(6),
-          one.rydberg_eV === null ? NOT_DETERMINED_WORDS : (1e3 * one.rydberg_eV).toFixed(3),
-          one.defect0 === null ? NOT_DETERMINED_WORDS : one.defect0.toFixed(4),
+          one.gap_eV === null ? NOT_DETERMINED_WORDS : one.gap_eV.toFixed(8),
+          one.rydberg_eV === null ? NOT_DETERMINED_WORDS : (1e3 * one.rydberg_eV).toFixed(4),
+          one.defect0 === null ? NOT_DETERMINED_WORDS : one.defect0.toFixed(5),
           formatNumber(one.chi2, 5),
           criterion(one.bic),
           formatNumber(one.runs_p, 2),

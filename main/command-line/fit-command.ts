@@ -94,12 +94,13 @@ export async function fitCommand(
         continue;
       }
       const { result } = outcome;
+      // Written first, then said to be done.
+      if (place.kind === "file") await writeFile(place, result, choices);
+      else if (place.kind === "folder") await writeInFolder(place, i, result, outcome.kept);
       progress.end(outcomeInWords(outcome));
       for (const note of gravestFirst(result.notes)) io.stderr(`  ${noteLine(note)}\n`);
       if (result.status !== "converged") status = Math.max(status, EXIT.fit);
       results.push(result);
-      if (place.kind === "file") await writeFile(place, result, choices);
-      else if (place.kind === "folder") await writeInFolder(place, i, result, outcome.kept);
     }
     if (place.kind === "folder") {
       await writeWhole(place.summary, summaryToCsv(results));
