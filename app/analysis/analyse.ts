@@ -9,6 +9,7 @@ import { presetNotes } from "./find-doubts.ts";
 import { findPeaks, type Peak } from "./find-peaks.ts";
 import { fitEveryPoint } from "./fit-full.ts";
 import type { LadderState, ModelChoices } from "./ladder-model.ts";
+import { fitInDomain } from "./measured-domain.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 import { fitWithoutTail } from "./without-tail.ts";
@@ -60,7 +61,7 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
   const climbed = climbLadder(thinned, start, protocol, spectrum.unit, choices, watch);
   const chosen = chooseTail(spectrum, protocol, start, points, climbed, choices, watch);
   const guessSeconds = watch.seconds() - began;
-  const full = fitEveryPoint(
+  const absorption = fitEveryPoint(
     chosen.points,
     chosen.state,
     protocol,
@@ -69,18 +70,18 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     watch,
     (pass) => watch.report(Math.min(0.8, 0.4 + 0.1 * pass), `fitting every point, pass ${pass + 1}`),
   );
-  watch.report(0.8, "uncertainties");
-  const uncertaintyBegan = watch.seconds();
-  const parts = describeResult(
+  const { full, points: fitted } = fitInDomain(
+    absorption,
     spectrum,
-    protocol,
     chosen.points,
-    peaks,
-    assignment,
-    full,
+    protocol,
     chosen.choices,
     watch,
+    (pass) => watch.report(Math.min(0.8, 0.6 + 0.05 * pass), `fitting the light, pass ${pass + 1}`),
   );
+  watch.report(0.8, "uncertainties");
+  const uncertaintyBegan = watch.seconds();
+  const parts = describeResult(spectrum, protocol, fitted, peaks, assignment, full, chosen.choices, watch);
   watch.report(1, "done");
   return {
     result: {
@@ -91,7 +92,7 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
         uncertainty: watch.seconds() - uncertaintyBegan,
       },
     },
-    curves: drawCurves(spectrum, chosen.points, full),
+    curves: drawCurves(spectrum, fitted, full),
   };
 }
 

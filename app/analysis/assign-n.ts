@@ -36,14 +36,15 @@ export function assignPrincipalNumbers(
   choices: AssignmentChoices,
 ): Assignment | null {
   if (peaks.length < 3) return null;
-  let best: Assignment | null = null;
+  const judge = new Judge(peaks, choices);
+  let best = -Infinity;
+  let hypothesis: { gap: number; rydberg: number } | null = null;
   const strongest = peaks
     .map((_, i) => i)
     .sort((a, b) => peaks[b]!.significance - peaks[a]!.significance)
     .slice(0, 16)
     .sort((a, b) => a - b);
-  const tops = strongest.slice(Math.max(0, strongest.length - 6));
-  for (const top of tops) {
+  for (const top of strongest.slice(-MOST_TOPS)) {
     const place = strongest.indexOf(top);
     if (place < 2) continue;
     const spacing = peaks[top]!.energy_eV - peaks[strongest[place - 1]!]!.energy_eV;
@@ -55,85 +56,144 @@ export function assignPrincipalNumbers(
           for (let step = 1; step <= 2; step++) {
             const root = step / (t[b]! - t[a]!);
             if (root * t[0]! > choices.highestN) continue;
-            const trial = judge(peaks, gap, root * root, choices);
-            if (trial !== null && (best === null || trial.score > best.score)) best = trial;
+            const score = judge.score(gap, root * root, null, best);
+            if (score > best) {
+              best = score;
+              hypothesis = { gap, rydberg: root * root };
+            }
           }
         }
       }
     }
   }
-  return best === null ? null : refine(peaks, best, choices);
+  if (hypothesis === null) return null;
+  const start = judge.assignment(hypothesis.gap, hypothesis.rydberg, null);
+  return start === null ? null : refine(peaks, judge, start, choices);
 }
 
 const GAP_TRIALS = 60;
+const MOST_TOPS = 6;
 
-function judge(
-  peaks: readonly Peak[],
-  gap: number,
-  rydberg: number,
-  choices: AssignmentChoices,
-  known?: number,
-): Assignment | null {
-  const nu = peaks.map((peak) => (peak.energy_eV < gap ? Math.sqrt(rydberg / (gap - peak.energy_eV)) : NaN));
-  let defect = known ?? choices.defectCentre;
-  if (known === undefined && !choices.defectHeld) {
-    // Circular mean of the fractional parts, taken on the turn that keeps the defect nearest to its centre.
+/** Judges hypotheses on one set of peaks; its arrays are reused, since thousands are judged. */
+class Judge {
+  private readonly peaks: readonly Peak[];
+  private readonly choices: AssignmentChoices;
+  private readonly merits: Float64Array;
+  private readonly nu: Float64Array;
+  /** By n: the peak that has it (-1 for none) and what it gains. */
+  private readonly owner: Int32Array;
+  private readonly gain: Float64Array;
+  private defect = 0;
+
+  constructor(peaks: readonly Peak[], choices: AssignmentChoices) {
+    this.peaks = peaks;
+    this.choices = choices;
+    this.merits = Float64Array.from(peaks, merit);
+    this.nu = new Float64Array(peaks.length);
+    this.owner = new Int32Array(choices.highestN + 1);
+    this.gain = new Float64Array(choices.highestN + 1);
+  }
+
+  /** Score of a gap and a Rydberg energy; -Infinity with fewer than three lines, or where it cannot exceed `least`. */
+  score(gap: number, rydberg: number, defect: number | null, least: number): number {
+    const { peaks, choices, merits, nu, owner, gain } = this;
+    for (let i = 0; i < peaks.length; i++) {
+      const depth = gap - peaks[i]!.energy_eV;
+      nu[i] = depth > 0 ? Math.sqrt(rydberg / depth) : NaN;
+    }
+    this.defect = defect ?? (choices.defectHeld ? choices.defectCentre : this.meanDefect());
+    owner.fill(-1);
+    let score = 0;
+    for (let i = 0; i < peaks.length; i++) {
+      const weight = merits[i]!;
+      if (Number.isNaN(nu[i]!)) {
+        score -= 0.3 * weight;
+        continue;
+      }
+      const at = nu[i]! + this.defect;
+      const n = Math.round(at);
+      const offset = at - n;
+      if (n < choices.lowestN || n > choices.highestN || Math.abs(offset) > TOLERANCE) {
+        score -= (n < choices.lowestN ? 0.4 : 0.7) * weight;
+        continue;
+      }
+      const worth = weight * (1 - (offset / TOLERANCE) ** 2);
+      const other = owner[n]!;
+      if (other < 0) {
+        owner[n] = i;
+        gain[n] = worth;
+        score += worth;
+      } else if (worth > gain[n]!) {
+        score += worth - gain[n]! - 0.5 * merits[other]!;
+        owner[n] = i;
+        gain[n] = worth;
+      } else score -= 0.5 * weight;
+    }
+    let first = 0;
+    let last = 0;
+    let count = 0;
+    for (let n = 1; n < owner.length; n++) {
+      if (owner[n]! < 0) continue;
+      if (count === 0) first = n;
+      last = n;
+      count++;
+    }
+    if (count < 3) return -Infinity;
+    score -=
+      2.5 * (last - first + 1 - count) + 0.8 * Math.abs(this.defect - choices.defectCentre) + 0.15 * first;
+    if (score <= least) return -Infinity;
+    return score - this.strengthLoss(count);
+  }
+
+  /** The assignment behind a score. */
+  assignment(gap: number, rydberg: number, defect: number | null): Assignment | null {
+    const score = this.score(gap, rydberg, defect, -Infinity);
+    if (score === -Infinity) return null;
+    const { peaks, owner } = this;
+    const matched: { n: number; peak: number }[] = [];
+    for (let n = 1; n < owner.length; n++) if (owner[n]! >= 0) matched.push({ n, peak: owner[n]! });
+    const used = new Set(matched.map((one) => one.peak));
+    const low = peaks[matched[0]!.peak]!.energy_eV;
+    return {
+      gap_eV: gap,
+      rydberg_eV: rydberg,
+      defect: this.defect,
+      matched,
+      unmatched: peaks
+        .map((_, i) => i)
+        .filter((i) => !used.has(i) && peaks[i]!.energy_eV >= low && peaks[i]!.energy_eV < gap),
+      score,
+    };
+  }
+
+  /** Circular mean of the fractional parts, taken on the turn that keeps the defect nearest to its centre. */
+  private meanDefect(): number {
+    const { nu, merits, choices } = this;
     let sine = 0;
     let cosine = 0;
     for (let i = 0; i < nu.length; i++) {
       if (Number.isNaN(nu[i]!)) continue;
-      const weight = merit(peaks[i]!);
-      sine += weight * Math.sin(2 * Math.PI * nu[i]!);
-      cosine += weight * Math.cos(2 * Math.PI * nu[i]!);
+      sine += merits[i]! * Math.sin(2 * Math.PI * nu[i]!);
+      cosine += merits[i]! * Math.cos(2 * Math.PI * nu[i]!);
     }
     const turn = -Math.atan2(sine, cosine) / (2 * Math.PI) - choices.defectCentre;
-    defect = choices.defectCentre + turn - Math.round(turn);
+    return choices.defectCentre + turn - Math.round(turn);
   }
-  const byN = new Map<number, { peak: number; offset: number; gain: number }>();
-  let loss = 0;
-  for (let i = 0; i < peaks.length; i++) {
-    if (Number.isNaN(nu[i]!)) {
-      loss += 0.3 * merit(peaks[i]!);
-      continue;
+
+  /** Area n^3 should vary smoothly: the spread of its logarithm about the median, beyond a factor two, costs. */
+  private strengthLoss(count: number): number {
+    const { peaks, owner } = this;
+    const logs = new Float64Array(count);
+    let at = 0;
+    for (let n = 1; n < owner.length; n++) {
+      if (owner[n]! < 0) continue;
+      const peak = peaks[owner[n]!]!;
+      logs[at++] = Math.log(Math.max(1e-300, peak.height * peak.width_eV * n ** 3));
     }
-    const at = nu[i]! + defect;
-    const n = Math.round(at);
-    const offset = at - n;
-    const gain = merit(peaks[i]!) * (1 - (offset / TOLERANCE) ** 2);
-    if (n < choices.lowestN || n > choices.highestN || Math.abs(offset) > TOLERANCE) {
-      loss += (n < choices.lowestN ? 0.4 : 0.7) * merit(peaks[i]!);
-      continue;
-    }
-    const other = byN.get(n);
-    if (other === undefined || gain > other.gain) {
-      if (other !== undefined) loss += 0.5 * merit(peaks[other.peak]!);
-      byN.set(n, { peak: i, offset, gain });
-    } else loss += 0.5 * merit(peaks[i]!);
+    logs.sort();
+    const median = logs[Math.floor(count / 2)]!;
+    return logs.reduce((sum, value) => sum + 0.5 * Math.max(0, Math.abs(value - median) - Math.LN2), 0);
   }
-  if (byN.size < 3) return null;
-  const ns = [...byN.keys()].sort((a, b) => a - b);
-  const missing = ns[ns.length - 1]! - ns[0]! + 1 - ns.length;
-  let gain = 0;
-  for (const one of byN.values()) gain += one.gain;
-  const score =
-    gain -
-    loss -
-    2.5 * missing -
-    strengthLoss(peaks, byN) -
-    0.8 * Math.abs(defect - choices.defectCentre) -
-    0.15 * ns[0]!;
-  const used = new Set([...byN.values()].map((one) => one.peak));
-  const low = peaks[byN.get(ns[0]!)!.peak]!.energy_eV;
-  return {
-    gap_eV: gap,
-    rydberg_eV: rydberg,
-    defect,
-    matched: ns.map((n) => ({ n, peak: byN.get(n)!.peak })),
-    unmatched: peaks
-      .map((_, i) => i)
-      .filter((i) => !used.has(i) && peaks[i]!.energy_eV >= low && peaks[i]!.energy_eV < gap),
-    score,
-  };
 }
 
 const TOLERANCE = 0.3;
@@ -143,18 +203,13 @@ function merit(peak: Peak): number {
   return Math.log2(1 + peak.significance / 5);
 }
 
-/** Area n^3 should vary smoothly: the spread of its logarithm about the median, beyond a factor two, costs. */
-function strengthLoss(peaks: readonly Peak[], byN: ReadonlyMap<number, { peak: number }>): number {
-  const logs = [...byN].map(([n, one]) =>
-    Math.log(Math.max(1e-300, peaks[one.peak]!.height * peaks[one.peak]!.width_eV * n ** 3)),
-  );
-  const sorted = [...logs].sort((a, b) => a - b);
-  const median = sorted[Math.floor(sorted.length / 2)]!;
-  return logs.reduce((sum, value) => sum + 0.5 * Math.max(0, Math.abs(value - median) - Math.LN2), 0);
-}
-
 /** Least squares of the level law on the matched lines, each with a tolerance of a part of its spacing; then judged again. */
-function refine(peaks: readonly Peak[], start: Assignment, choices: AssignmentChoices): Assignment {
+function refine(
+  peaks: readonly Peak[],
+  judge: Judge,
+  start: Assignment,
+  choices: AssignmentChoices,
+): Assignment {
   let best = start;
   for (let round = 0; round < 4; round++) {
     const held = choices.defectHeld || best.matched.length < 5;
@@ -185,7 +240,7 @@ function refine(peaks: readonly Peak[], start: Assignment, choices: AssignmentCh
     if (!(rydberg > 0) || !Number.isFinite(gap + rydberg + defect)) return best;
     const turn = defect - choices.defectCentre;
     if (!held) defect -= Math.round(turn);
-    const again = judge(peaks, gap, rydberg, choices, defect);
+    const again = judge.assignment(gap, rydberg, defect);
     if (again === null || again.score <= best.score) break;
     best = again;
   }

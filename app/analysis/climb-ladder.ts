@@ -157,17 +157,21 @@ function highestPromised(
   const last = points.energy[points.energy.length - 1]!;
   const ahead: number[] = [];
   for (let n = top + 1; n <= limit && energyOf(n, current.state.levels) < last; n++) ahead.push(n);
-  // Too many lines freed at once spoil each other's errors, so the count is lowered until the highest one holds.
-  for (let count = ahead.length; count > 0; count = count > 4 ? count - 3 : count - 1) {
+  // Too many lines freed at once spoil each other's errors, so the count is lowered until the highest one holds; with
+  // fewer lines every error shrinks, hence the lower mark for where to look next.
+  const needed = leastSignificance(points.energy.length);
+  for (let count = ahead.length; count > 0;) {
     const ns = [...current.state.ns, ...ahead.slice(0, count)];
     const trial = run(withLines(current.state, ns), { maxIterations: 1 });
-    const significant = significances(trial.fit);
-    const needed = leastSignificance(points.energy.length);
-    if (significant.slice(current.state.ns.length).every((value) => value > needed))
-      return ns[ns.length - 1]!;
+    const significant = significances(trial.fit).slice(current.state.ns.length);
+    if (significant.every((value) => value > needed)) return ns[ns.length - 1]!;
+    const hopeful = significant.findIndex((value) => !(value > HOPEFUL * needed));
+    count = Math.min(count - 1, hopeful < 0 ? count - 1 : hopeful);
   }
   return top;
 }
+
+const HOPEFUL = 0.35;
 
 /** Area over its standard error, by line; 0 where a line ended at a bound or has no error. */
 export function significances(fit: SpectrumFit): number[] {

@@ -131,7 +131,7 @@ export function describeResult(
   const criteria = informationCriteria(solution.chi2, m, parameters);
   const lag1 = neighbourCorrelation(solution.residuals);
   const fitPart: NonNullable<RunglineResult["fit"]> = {
-    domain: "alpha",
+    domain: full.domain.name,
     termination: solution.termination,
     sigma_from: protocol.uncertainty.scale_by_residuals ? "residuals" : "given",
     chi2: solution.chi2,
@@ -161,7 +161,8 @@ export function describeResult(
         };
   const { series } = laws;
   const notes = sortNotes([
-    ...spectrum.notes,
+    ...spectrum.notes.filter((note) => !full.domain.answered.includes(note.code)),
+    ...full.domain.notes,
     ...findDoubts({ spectrum, protocol, points, peaks, assignment, full, fit: fitPart, lines, tail, series }),
     ...laws.notes,
     ...derivedParts.notes,

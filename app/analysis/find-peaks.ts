@@ -79,15 +79,32 @@ function scanWidth(
   const odd = new Float64Array(count);
   const normal = new Float64Array(BASIS * BASIS);
   const right = new Float64Array(BASIS);
-  const basis = new Float64Array(BASIS);
   for (let c = 0; c < count; c++) {
     const at = first + c * stride;
     const middle = Math.floor((at - first) / binWidth);
-    normal.fill(0);
-    right.fill(0);
+    // Sums of w b_i b_j and w b_i y for the basis l = 1/(1+4u^2), o = 2 u l, 1, u, u^2, written out: this is the
+    // innermost loop of the search.
+    let ll = 0,
+      lo = 0,
+      l1 = 0,
+      lu = 0,
+      l2 = 0,
+      oo = 0,
+      ou = 0,
+      o2 = 0;
+    let s0 = 0,
+      s1 = 0,
+      s2 = 0,
+      s3 = 0,
+      s4 = 0,
+      ly = 0,
+      oy = 0,
+      y0 = 0,
+      y1 = 0,
+      y2 = 0,
+      total = 0;
     let filled = 0;
     let core = 0;
-    let total = 0;
     const low = Math.max(0, middle - half);
     const high = Math.min(bins - 1, middle + half);
     for (let b = low; b <= high; b++) {
@@ -95,21 +112,64 @@ function scanWidth(
       if (w === 0) continue;
       filled++;
       const u = (centre[b]! - at) / width;
-      if (Math.abs(u) < 0.5) core++;
-      const lorentz = 1 / (1 + 4 * u * u);
-      basis[0] = lorentz;
-      basis[1] = 2 * u * lorentz;
-      basis[2] = 1;
-      basis[3] = u;
-      basis[4] = u * u;
+      const uu = u * u;
+      if (uu < 0.25) core++;
+      const l = 1 / (1 + 4 * uu);
+      const o = 2 * u * l;
       const y = mean[b]!;
+      const wl = w * l;
+      const wo = w * o;
+      const wu = w * u;
+      const wuu = w * uu;
+      ll += wl * l;
+      lo += wl * o;
+      l1 += wl;
+      lu += wl * u;
+      l2 += wl * uu;
+      oo += wo * o;
+      ou += wo * u;
+      o2 += wo * uu;
+      s0 += w;
+      s1 += wu;
+      s2 += wuu;
+      s3 += wuu * u;
+      s4 += wuu * uu;
+      ly += wl * y;
+      oy += wo * y;
+      y0 += w * y;
+      y1 += wu * y;
+      y2 += wuu * y;
       total += w * y * y;
-      for (let i = 0; i < BASIS; i++) {
-        const wi = w * basis[i]!;
-        right[i]! += wi * y;
-        for (let j = 0; j <= i; j++) normal[i * BASIS + j]! += wi * basis[j]!;
-      }
     }
+    // The odd basis function is 2 u l, so its sum with 1 is twice that of u l.
+    normal.set([
+      ll,
+      0,
+      0,
+      0,
+      0,
+      lo,
+      oo,
+      0,
+      0,
+      0,
+      l1,
+      2 * lu,
+      s0,
+      0,
+      0,
+      lu,
+      ou,
+      s1,
+      s2,
+      0,
+      l2,
+      o2,
+      s2,
+      s3,
+      s4,
+    ]);
+    right.set([ly, oy, y0, y1, y2]);
     // A line needs points on both flanks and on its top; at the ends of the range a shortened window is enough.
     if (filled < 9 || core < 3 || middle - low < BINS_PER_WIDTH / 2 || high - middle < BINS_PER_WIDTH / 2)
       continue;

@@ -1,5 +1,5 @@
-import { stopIfCancelled, type Watch } from "../base/index.ts";
-import { fitSpectrum, withScaledErrors, type FitPoints } from "../fit/index.ts";
+import { stopIfCancelled, type Note, type Watch } from "../base/index.ts";
+import { fitSpectrum, withScaledErrors, type FitPoints, type SpectrumFit } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { RangeChoice } from "../series/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
@@ -7,7 +7,18 @@ import { leastSignificance, significances, type Climbed } from "./climb-ladder.t
 import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { judgeLevels, withLevelRange } from "./level-range.ts";
 
+/** What was fitted: the absorption, or the transmitted light itself (measured-domain.ts). */
+export interface FitDomain {
+  readonly name: "alpha" | "transmittance";
+  readonly notes: readonly Note[];
+  /** Codes of notes of the reading that hold for a fit of the absorption only. */
+  readonly answered: readonly string[];
+}
+
+const ABSORPTION: FitDomain = { name: "alpha", notes: [], answered: [] };
+
 export interface FullFit extends Climbed {
+  readonly domain: FitDomain;
   readonly range: RangeChoice | null;
   /** Seconds of the last fit, from its start values through its covariance. */
   readonly solveSeconds: number;
@@ -18,6 +29,9 @@ export interface FullFit extends Climbed {
 const MOST_PASSES = 6;
 /** The laws that the tail is tied to agree with those fitted afterwards to this part of a standard error. */
 const AGREEMENT = 0.02;
+
+/** One pass: the model of a state fitted to the points. */
+export type FitPass = (model: ReturnType<typeof buildModel>) => SpectrumFit;
 
 /**
  * The fit on every point. The laws of the tail are linearised about the line parameters of the pass before, so passes
@@ -31,6 +45,7 @@ export function fitEveryPoint(
   choices: ModelChoices,
   watch: Watch,
   report: (pass: number) => void,
+  fitPass: FitPass = (model) => fitSpectrum(points, model.spec, model.start, { watch }),
 ): FullFit {
   const needed = leastSignificance(points.energy.length);
   let state = initial;
@@ -41,7 +56,7 @@ export function fitEveryPoint(
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
     const began = watch.seconds();
-    const plain = fitSpectrum(points, model.spec, model.start, { watch });
+    const plain = fitPass(model);
     const solveSeconds = watch.seconds() - began;
     stopIfCancelled(watch);
     const { chi2, degreesOfFreedom } = plain.solution;
@@ -55,7 +70,7 @@ export function fitEveryPoint(
     if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
     const dropped = keep < state.ns.length;
     settled = !dropped && agrees(model.state, stateAfter(fit, model.state), next.include, range);
-    result = { fit, state: next, range, solveSeconds, selfConsistent: settled };
+    result = { fit, state: next, range, solveSeconds, selfConsistent: settled, domain: ABSORPTION };
     state = dropped ? withLines(next, state.ns.slice(0, keep)) : next;
   }
   if (result === null) throw new Error("no pass was made");

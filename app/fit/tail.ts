@@ -202,7 +202,7 @@ export class TailEvaluator {
         law.rydberg,
         level[LEVEL.effectiveN]!,
         this.edgeWidth(lawWidth),
-        band,
+        derivatives ? band : { absorptive: band.absorptive, dispersive: band.dispersive },
       );
       const slope = this.edgeSlope(lawWidth);
       // The lower edge also moves with the defect, at fixed gap and Rydberg energy; the height there is 1/(2 Ry).
@@ -213,15 +213,14 @@ export class TailEvaluator {
         sums[0]![i]! += step * band.absorptive[i]!;
         sums[1]![i]! += step * band.dispersive[i]!;
         if (!derivatives) continue;
-        const of = (even: Float64Array, odd: Float64Array): number =>
-          factor * step * (even[i]! + 2 * q * odd[i]!);
         const a = nodes[i]! - edge;
         const byEdge = (-factor * step * height * (g + 2 * q * a)) / (Math.PI * (a * a + g * g));
-        sums[2]![i]! += of(band.absorptiveByGap, band.dispersiveByGap);
-        sums[3]![i]! += of(band.absorptiveByRydberg, band.dispersiveByRydberg);
+        sums[2]![i]! += factor * step * (band.absorptiveByGap[i]! + 2 * q * band.dispersiveByGap[i]!);
+        sums[3]![i]! += factor * step * (band.absorptiveByRydberg[i]! + 2 * q * band.dispersiveByRydberg[i]!);
         sums[4]![i]! += byEdge * level[LEVEL.byDefect0]!;
         sums[5]![i]! += byEdge * level[LEVEL.byDefect2]!;
-        const byWidth = slope * of(band.absorptiveByBroadening, band.dispersiveByBroadening);
+        const byWidth =
+          slope * factor * step * (band.absorptiveByBroadening[i]! + 2 * q * band.dispersiveByBroadening[i]!);
         for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
       }
     }
@@ -320,8 +319,8 @@ interface BandEdge {
   readonly step: number;
 }
 
-const GROUP_RATIO = 1.2;
-const LAST_GROUP_N = 400;
+const GROUP_RATIO = 1.35;
+const LAST_GROUP_N = 200;
 
 /**
  * Heights in units of 1/(2 Ry): sum of s_n over the lines of a group by sum of (n-delta)^-3, that is by the energy it

@@ -1,0 +1,273 @@
+import { assumption, doubt, type Note, type Watch } from "../base/index.ts";
+import {
+  backgroundColumns,
+  fitTransmittance,
+  slitBias,
+  type FitPoints,
+  type MeasuredLight,
+} from "../fit/index.ts";
+import type { Protocol } from "../protocol/index.ts";
+import type { Spectrum } from "../spectrum/index.ts";
+import { fitEveryPoint, type FullFit } from "./fit-full.ts";
+import type { ModelChoices } from "./ladder-model.ts";
+import type { SelectedPoints } from "./select-points.ts";
+
+/** The fit in the domain that was chosen, `full.domain`, and its points. */
+export interface DomainFit {
+  readonly full: FullFit;
+  /**
+   * In the transmittance domain T <= 0 is among the points, and signal and sigma are those of T linearised about the fit,
+   * so that a trial fit of the signal starts from the same place.
+   */
+  readonly points: SelectedPoints;
+}
+
+/** Above this relative noise of T the logarithm is biased by more than half a percent of an optical depth. */
+const NOISY = 0.1;
+const STD_OF_FWHM = 1 / (2 * Math.sqrt(2 * Math.LN2));
+/** A loss of area below this part is not worth a doubt. */
+const LEAST_BIAS = 5e-4;
+const ABOUT = "fit.domain";
+
+/**
+ * What      After the fit of the signal has settled: whether the light itself has to be fitted, and the fit of it. A slit
+ *           averages light, not absorption, and the logarithm of noisy light is biased and does not exist at T <= 0.
+ * Domain    `auto` takes the transmittance domain where transmittance was read and its noise exceeds a tenth of it somewhere
+ *           in the window, and wherever a slit is given and the optical depth is known. Where absorption was read,
+ *           T = exp(-optical depth) is the light; its noise follows from that of the depth and the model's T.
+ */
+export function fitInDomain(
+  full: FullFit,
+  spectrum: Spectrum,
+  points: SelectedPoints,
+  protocol: Protocol,
+  choices: ModelChoices,
+  watch: Watch,
+  report: (pass: number) => void,
+): DomainFit {
+  const slit = protocol.lines.slit_fwhm_eV ?? 0;
+  const depth = depthPerSignal(spectrum);
+  const noise = noiseOfLight(spectrum, points);
+  const { domain } = protocol.lines;
+  const needed = slit > 0 || (spectrum.transmittance !== null && noise.noisy + noise.dark > 0);
+  const asSignal = (notes: readonly Note[]): DomainFit => ({
+    full: {
+      ...full,
+      domain: {
+        name: "alpha",
+        notes: [...notes, ...(needed ? biasNotes(full, slit, depth, noise) : [])],
+        answered: [],
+      },
+    },
+    points,
+  });
+  if (domain === "alpha" || (domain === "auto" && !needed)) return asSignal([]);
+  if (depth === null) return asSignal([noDepthNote()]);
+
+  const selected =
+    spectrum.transmittance === null ? points : everyReading(spectrum, points, protocol.mask_eV);
+  const light = lightOf(spectrum, selected, full, depth, slit * STD_OF_FWHM);
+  const frame = [light.energy[0]!, light.energy[light.energy.length - 1]!] as const;
+  let last = full.fit;
+  let linearised: FitPoints = selected;
+  const measured = fitEveryPoint(
+    selected,
+    full.state,
+    { ...protocol, lines: { ...protocol.lines, slit_fwhm_eV: null } },
+    spectrum.unit,
+    choices,
+    watch,
+    report,
+    (model) => {
+      const columns = (energy: Float64Array): ReturnType<typeof backgroundColumns> =>
+        backgroundColumns(choices.background, energy, spectrum.unit, model.state.levels.gap, frame);
+      const done = fitTransmittance(light, model.spec, columns, model.start, last, { watch });
+      last = done.fit;
+      linearised = done.linearised;
+      return done.fit;
+    },
+  );
+  if (!measured.fit.solution.converged && domain === "auto" && full.fit.solution.converged)
+    return asSignal([failedNote()]);
+  return {
+    full: {
+      ...measured,
+      domain: {
+        name: "transmittance",
+        notes: [domainNote(spectrum, protocol, noise, depth)],
+        answered: ["saturated-points", "low-transmission"],
+      },
+    },
+    points: { ...linearised, place: selected.place },
+  };
+}
+
+/** Optical depth of one unit of the signal; null where alpha was read and the thickness is not known. */
+function depthPerSignal(spectrum: Spectrum): number | null {
+  if (spectrum.transmittance !== null) return spectrum.transmittance.thickness_cm;
+  return spectrum.unit === "1" ? 1 : spectrum.thickness_cm;
+}
+
+interface Noise {
+  /** Points with sigma_T above a tenth of T, the largest sigma_T/T, and points with T <= 0. */
+  readonly noisy: number;
+  readonly largest: number;
+  readonly dark: number;
+}
+
+/** From the smoothed T, as the standard deviation of the signal has it. */
+function noiseOfLight(spectrum: Spectrum, points: SelectedPoints): Noise {
+  if (spectrum.transmittance === null) return { noisy: 0, largest: 0, dark: 0 };
+  const d = spectrum.transmittance.thickness_cm;
+  let noisy = 0;
+  let largest = 0;
+  for (const sigma of points.sigma) {
+    if (sigma * d > NOISY) noisy++;
+    largest = Math.max(largest, sigma * d);
+  }
+  const last = points.place.length - 1;
+  let dark = 0;
+  for (let i = points.place[0]!; i <= points.place[last]!; i++)
+    if (!(spectrum.transmittance.value[i]! > 0)) dark++;
+  return { noisy, largest, dark };
+}
+
+/** The points of the window with those that have no logarithm. */
+function everyReading(
+  spectrum: Spectrum,
+  points: SelectedPoints,
+  masks: Protocol["mask_eV"],
+): SelectedPoints {
+  const { value, sigma } = spectrum.transmittance!;
+  const place: number[] = [];
+  for (let i = points.place[0]!; i <= points.place[points.place.length - 1]!; i++) {
+    const energy = spectrum.energy_eV[i]!;
+    if (!(sigma[i]! > 0) || !Number.isFinite(value[i]!)) continue;
+    if (masks.some(([from, to]) => energy >= from && energy <= to)) continue;
+    place.push(i);
+  }
+  const pick = (values: Float64Array): Float64Array => Float64Array.from(place, (i) => values[i]!);
+  return {
+    place: Int32Array.from(place),
+    energy: pick(spectrum.energy_eV),
+    signal: pick(spectrum.signal),
+    sigma: pick(spectrum.sigma),
+  };
+}
+
+function lightOf(
+  spectrum: Spectrum,
+  points: SelectedPoints,
+  full: FullFit,
+  depth: number,
+  slitStd: number,
+): MeasuredLight {
+  const { transmittance } = spectrum;
+  const common = { energy: points.energy, depthPerSignal: depth, slitStd };
+  if (transmittance !== null) {
+    const pick = (values: Float64Array): Float64Array => Float64Array.from(points.place, (i) => values[i]!);
+    return {
+      ...common,
+      value: pick(transmittance.value),
+      sigma: pick(transmittance.sigma),
+      surface: transmittance.surface,
+      reflectance: transmittance.reflectance,
+    };
+  }
+  const { fitted } = full.fit.solution;
+  return {
+    ...common,
+    value: points.signal.map((signal) => Math.exp(-depth * signal)),
+    // Weights from the model: those of the single reading would follow its noise.
+    sigma: points.sigma.map((sigma, i) => depth * sigma * Math.exp(-depth * fitted[i]!)),
+    surface: "none",
+    reflectance: 0,
+  };
+}
+
+const percent = (part: number): string => `${(100 * part).toPrecision(2)} %`;
+const ueV = (value: number): string => `${Number((1e6 * value).toPrecision(4))} ueV`;
+const countOf = (number: number): string => `${number} point${number === 1 ? "" : "s"}`;
+
+function domainNote(spectrum: Spectrum, protocol: Protocol, noise: Noise, depth: number): Note {
+  const slit = protocol.lines.slit_fwhm_eV;
+  const reasons = [
+    ...(protocol.lines.domain === "transmittance" ? ["the protocol asks for it"] : []),
+    ...(slit === null ? [] : [`the slit of ${ueV(slit)} averages light, not absorption`]),
+    ...(noise.noisy > 0
+      ? [
+          `the noise exceeds a tenth of the transmitted light at ${countOf(noise.noisy)}, where the logarithm is biased`,
+        ]
+      : []),
+    ...(noise.dark > 0
+      ? [`${countOf(noise.dark)} with no light above zero count too, which have no logarithm`]
+      : []),
+  ];
+  const how =
+    spectrum.transmittance !== null
+      ? ""
+      : spectrum.unit === "1"
+        ? " The light is exp(-optical depth) of the file."
+        : ` The light is exp(-alpha d) of the file with d = ${Number((1e4 * depth).toPrecision(6))} um.`;
+  return assumption(
+    "transmittance-domain",
+    ABOUT,
+    `The transmitted light itself is fitted and not its logarithm: ${reasons.join("; ")}.${how}`,
+    "set lines.domain=alpha to fit the absorption instead",
+  );
+}
+
+function biasNotes(full: FullFit, slit: number, depth: number | null, noise: Noise): Note[] {
+  const parts: string[] = [];
+  if (slit > 0 && depth === null)
+    parts.push(
+      "the slit averages light, not absorption, and without the optical depth the lost area cannot be estimated",
+    );
+  if (slit > 0 && depth !== null) {
+    const { ns, area, width } = full.fit.lines;
+    let worst = { n: 0, loss: 0 };
+    ns.forEach((n, j) => {
+      const peak = (2 * area[j]! * depth) / (Math.PI * width[j]!);
+      const loss = slitBias(Math.min(5, peak), Math.min(3, slit / width[j]!)).area;
+      if (Math.abs(loss) > Math.abs(worst.loss)) worst = { n, loss };
+    });
+    if (Math.abs(worst.loss) > LEAST_BIAS)
+      parts.push(
+        `the slit averages light, not absorption: the area of n = ${worst.n} comes out by about ${percent(worst.loss)}, the other lines' by less`,
+      );
+  }
+  if (noise.noisy > 0)
+    parts.push(
+      `the noise is up to ${percent(noise.largest)} of the transmitted light, which puts the logarithm off by about ${(0.5 * noise.largest ** 2).toPrecision(2)} in optical depth there`,
+    );
+  if (noise.dark > 0) parts.push(`${countOf(noise.dark)} with no light above zero had to be left out`);
+  if (parts.length === 0) return [];
+  return [
+    doubt(
+      "alpha-domain-biased",
+      ABOUT,
+      `The absorption was fitted, and not the transmitted light: ${parts.join("; ")}.`,
+      depth === null
+        ? "give the thickness (signal.thickness_um), so that the light can be computed"
+        : "set lines.domain=auto or transmittance",
+    ),
+  ];
+}
+
+function noDepthNote(): Note {
+  return doubt(
+    "transmittance-domain-not-possible",
+    ABOUT,
+    "The transmitted light cannot be computed from an absorption coefficient without the thickness; the absorption is fitted.",
+    "set signal.thickness_um",
+  );
+}
+
+function failedNote(): Note {
+  return doubt(
+    "transmittance-fit-failed",
+    ABOUT,
+    "The fit of the transmitted light did not converge; the fit of the absorption stands.",
+    "shorten the window, name the lines (lines.n), or set lines.domain=transmittance to see where it ended",
+  );
+}
