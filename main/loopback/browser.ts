@@ -1,5 +1,5 @@
 import { spawn } from "node:child_process";
-import { accessSync, constants } from "node:fs";
+import { accessSync, constants, rmSync } from "node:fs";
 import { mkdtemp, rm } from "node:fs/promises";
 import { tmpdir } from "node:os";
 import { delimiter, join } from "node:path";
@@ -95,7 +95,14 @@ export async function openBrowser(program: string, address: string): Promise<Bro
     child.once("error", () => resolve(null));
     child.once("exit", (code) => resolve(code));
   });
+  // An end at once (a second Ctrl+C; npm hands the first one on as well) must leave neither window nor profile behind.
+  const onExit = (): void => {
+    child.kill("SIGKILL");
+    rmSync(profile, { recursive: true, force: true, maxRetries: 10, retryDelay: 50 });
+  };
+  process.once("exit", onExit);
   const closed = ended.then(async (code) => {
+    process.off("exit", onExit);
     // A browser's helpers may still be writing for a moment; a profile left behind would be worse than a short wait.
     await rm(profile, { recursive: true, force: true, maxRetries: 10, retryDelay: 100 }).catch(
       () => undefined,

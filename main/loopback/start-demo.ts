@@ -63,10 +63,13 @@ function electronFor(place: Place, io: ShellIo): string | null {
 
 function openElectron(program: string, place: Place): BrowserWindow {
   const child = spawn(program, [place.root], { stdio: "ignore" });
+  const onExit = (): void => void child.kill("SIGTERM");
+  process.once("exit", onExit);
   const closed = new Promise<number | null>((resolve) => {
     child.once("error", () => resolve(null));
     child.once("exit", (code) => resolve(code));
   });
+  void closed.then(() => process.off("exit", onExit));
   return { closed, close: () => child.kill("SIGTERM") };
 }
 
@@ -87,9 +90,11 @@ async function printDemo(place: Place, io: ShellIo): Promise<number> {
     child.stderr.setEncoding("utf8").on("data", (text: string) => io.error(text));
     const stop = (): void => void child.kill("SIGTERM");
     io.cancel.addEventListener("abort", stop, { once: true });
+    process.once("exit", stop);
     child.once("error", () => resolve(1));
     child.once("close", (code) => {
       io.cancel.removeEventListener("abort", stop);
+      process.off("exit", stop);
       resolve(code ?? (io.cancel.aborted ? 130 : 1));
     });
   });
