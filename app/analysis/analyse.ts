@@ -7,7 +7,7 @@ import { drawCurves, emptyCurves, type Curves } from "./curves.ts";
 import { describeReading, describeResult, sortNotes } from "./describe-result.ts";
 import { presetNotes } from "./find-doubts.ts";
 import { findPeaks, type Peak } from "./find-peaks.ts";
-import { fitEveryPoint } from "./fit-full.ts";
+import { fitEveryPoint, type FullFit } from "./fit-full.ts";
 import type { LadderState, ModelChoices } from "./ladder-model.ts";
 import { fitInDomain } from "./measured-domain.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
@@ -59,25 +59,16 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     asymmetry: protocol.lines.asymmetry,
   };
   const climbed = climbLadder(thinned, start, protocol, spectrum.unit, choices, watch);
-  const chosen = chooseTail(spectrum, protocol, start, points, climbed, choices, watch);
   const guessSeconds = watch.seconds() - began;
-  const absorption = fitEveryPoint(
-    chosen.points,
-    chosen.state,
-    protocol,
-    spectrum.unit,
-    chosen.choices,
-    watch,
-    (pass) => watch.report(Math.min(0.8, 0.4 + 0.1 * pass), `fitting every point, pass ${pass + 1}`),
-  );
+  const chosen = fitWithTailOrWithout(spectrum, protocol, start, points, climbed, choices, watch);
   const { full, points: fitted } = fitInDomain(
-    absorption,
+    chosen.full,
     spectrum,
     chosen.points,
     protocol,
     chosen.choices,
     watch,
-    (pass) => watch.report(Math.min(0.8, 0.6 + 0.05 * pass), `fitting the light, pass ${pass + 1}`),
+    (pass) => watch.report(Math.min(0.8, 0.7 + 0.02 * pass), `fitting the light, pass ${pass + 1}`),
   );
   watch.report(0.8, "uncertainties");
   const uncertaintyBegan = watch.seconds();
@@ -96,17 +87,17 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
   };
 }
 
-interface ChosenTail {
+interface ChosenFit {
   readonly points: SelectedPoints;
-  readonly state: LadderState;
   readonly choices: ModelChoices;
+  readonly full: FullFit;
 }
 
-/** A misfit beyond this on averaged points asks for the second reading, which is taken when it at least halves it. */
+/** A misfit beyond this asks for the second reading, which is taken when it at least halves the reduced chi square. */
 const GROSS_MISFIT = 2;
 
 /** The tail tied to the laws, unless the spectrum flatly contradicts it and a window below the tail does not. */
-function chooseTail(
+function fitWithTailOrWithout(
   spectrum: Spectrum,
   protocol: Protocol,
   start: LadderState,
@@ -114,15 +105,27 @@ function chooseTail(
   climbed: Climbed,
   choices: ModelChoices,
   watch: Watch,
-): ChosenTail {
-  const withTail: ChosenTail = { points, state: climbed.state, choices };
-  const { chi2, degreesOfFreedom } = climbed.fit.solution;
-  const reduced = chi2 / Math.max(1, degreesOfFreedom);
-  if (!choices.tail || reduced < GROSS_MISFIT) return withTail;
-  watch.report(0.3, "trying without a tail");
+): ChosenFit {
+  const fit = (on: SelectedPoints, state: LadderState, how: ModelChoices, from: number): ChosenFit => ({
+    points: on,
+    choices: how,
+    full: fitEveryPoint(on, state, protocol, spectrum.unit, how, watch, (pass) =>
+      watch.report(from + 0.02 * Math.min(pass, 5), `fitting every point, pass ${pass + 1}`),
+    ),
+  });
+  const first = fit(points, climbed.state, choices, 0.4);
+  const reduced = reducedChi2(first.full);
+  if (!choices.tail || reduced < GROSS_MISFIT) return first;
+  watch.report(0.6, "trying without a tail");
   const other = fitWithoutTail(spectrum, protocol, start, points.energy[0]!, choices, watch);
-  if (other === null || other.reducedChi2 > reduced / GROSS_MISFIT) return withTail;
-  return { points: other.points, state: other.state, choices: { ...choices, tail: false } };
+  if (other === null || other.reducedChi2 > reduced / GROSS_MISFIT) return first;
+  const second = fit(other.points, other.state, { ...choices, tail: false }, 0.6);
+  return reducedChi2(second.full) < reduced / GROSS_MISFIT ? second : first;
+}
+
+function reducedChi2(full: FullFit): number {
+  const { chi2, degreesOfFreedom } = full.fit.solution;
+  return chi2 / Math.max(1, degreesOfFreedom);
 }
 
 /** Readings of n are told apart by the convention |defect - centre| <= 0.5, unless a preset or the user pins it. */
