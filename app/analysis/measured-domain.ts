@@ -233,7 +233,7 @@ function biasNotes(full: FullFit, slit: number, depth: number | null, noise: Noi
     });
     if (Math.abs(worst.loss) > LEAST_BIAS)
       parts.push(
-        `the slit averages light, not absorption: the area of n = ${worst.n} comes out by about ${percent(worst.loss)}, the other lines' by less`,
+        `the slit averages light, not absorption: the area of n = ${worst.n} comes out about ${percent(Math.abs(worst.loss))} too ${worst.loss < 0 ? "small" : "large"}, the others are off by less`,
       );
   }
   if (noise.noisy > 0)

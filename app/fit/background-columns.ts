@@ -9,16 +9,20 @@ import {
 import type { BackgroundTerm } from "../protocol/index.ts";
 import type { BackgroundColumn } from "./model-spec.ts";
 
-/** The protocol's background terms as columns on these energies; `gap` is where an Urbach tail is referred to. */
+/**
+ * The protocol's background terms as columns on these energies; `gap` is where an Urbach tail is referred to. The
+ * polynomial runs from -1 to 1 over `frame`, by default the first and last of the energies.
+ */
 export function backgroundColumns(
   terms: readonly BackgroundTerm[],
   energy: Float64Array,
   signalUnit: string,
   gap: number,
+  frame: readonly [number, number] = [energy[0]!, energy[energy.length - 1]!],
 ): BackgroundColumn[] {
   const m = energy.length;
-  const middle = (energy[0]! + energy[m - 1]!) / 2;
-  const halfSpan = Math.max((energy[m - 1]! - energy[0]!) / 2, Number.MIN_VALUE);
+  const middle = (frame[0] + frame[1]) / 2;
+  const halfSpan = Math.max((frame[1] - frame[0]) / 2, Number.MIN_VALUE);
   return terms.flatMap((choice): BackgroundColumn[] => {
     const { term, nonlinear, unit } = lineTerm(choice, energy, signalUnit, middle, halfSpan, gap);
     const out = new Float64Array(m * term.columns.length);

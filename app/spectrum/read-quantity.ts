@@ -18,6 +18,8 @@ export interface QuantityReading {
   readonly reflectance: number;
   /** null where unknown or not needed. */
   readonly thickness_um: number | null;
+  /** null where unknown; alpha does not need it, but the light that was absorbed does. */
+  readonly knownThickness_um: number | null;
   readonly reason: string;
   readonly notes: readonly Note[];
 }
@@ -95,7 +97,18 @@ export function readQuantity(
     }
   }
   const thickness_um = quantity === "alpha" ? null : findThickness(table, choices, notes);
-  return success({ quantity, scale, sigmaScale, surface, reflectance: R, thickness_um, reason, notes });
+  const knownThickness_um = thickness_um ?? findThickness(table, choices, []);
+  return success({
+    quantity,
+    scale,
+    sigmaScale,
+    surface,
+    reflectance: R,
+    thickness_um,
+    knownThickness_um,
+    reason,
+    notes,
+  });
 }
 
 function findQuantity(

@@ -99,6 +99,7 @@ export function readSpectrum(
     energy_eV: points.energy_eV,
     signal,
     unit: read.quantity === "alpha" || read.thickness_um !== null ? "1/cm" : "1",
+    thickness_cm: read.knownThickness_um === null ? null : read.knownThickness_um * CM_PER_UM,
     sigma,
     noise: { source: noise.source, medianSigma: median(sigma) },
     transmittance,

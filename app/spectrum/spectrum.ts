@@ -57,6 +57,8 @@ export interface Spectrum {
   /** Absorption coefficient alpha (1/cm) where the thickness is known or alpha was read, else optical depth alpha d (1). */
   readonly signal: Float64Array;
   readonly unit: "1/cm" | "1";
+  /** d where it is known (protocol or header), also where alpha was read; null where not. */
+  readonly thickness_cm: number | null;
   /** One standard deviation of `signal` per point; NaN where a given sigma is missing (zero or blank). */
   readonly sigma: Float64Array;
   /** `column`, `protocol` or `estimated` (from the data, white part). */

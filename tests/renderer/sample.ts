@@ -60,6 +60,7 @@ export function sampleInspection(file = "crystal-7.csv"): Inspection {
       energy_eV: curves.energy_eV,
       signal: curves.signal,
       unit: "1/cm",
+      thickness_cm: null,
       sigma: curves.sigma,
       noise: { source: "estimated", medianSigma: 0.5 },
       transmittance: null,

@@ -1,0 +1,180 @@
+import { NO_WATCH } from "../base/index.ts";
+import { WIDTH, widthLaw } from "../laws/index.ts";
+import { solveGeneral, type SeparableSolution } from "../solve/index.ts";
+import { depthFromTransmittance, transmittanceSlope } from "../units/index.ts";
+import {
+  describeFit,
+  parameterBounds,
+  type FitControl,
+  type FitStart,
+  type SpectrumFit,
+} from "./fit-spectrum.ts";
+import type { BackgroundColumn, FitPoints, ModelSpec } from "./model-spec.ts";
+import { SpectrumProblem } from "./spectrum-problem.ts";
+import { makeSlitGrid, type Feature } from "./transmittance-grid.ts";
+import { TransmittanceProblem, type MeasuredLight } from "./transmittance-problem.ts";
+
+export interface TransmittanceFit {
+  /**
+   * As a fit of the signal, so that all that follows is the same: `residuals` are in standard deviations of T, `fitted`
+   * is the signal that belongs to the fitted T (as the measured signal belongs to the measured T).
+   */
+  readonly fit: SpectrumFit;
+  /**
+   * The measured T linearised about the fit: signal = model with the slit acting on the signal + (T - T_fit)/(dT/d signal),
+   * sigma = sigma_T/|dT/d signal|. A fit of these is one Gauss-Newton step of the fit of T, and T <= 0 is no exception.
+   */
+  readonly linearised: FitPoints;
+}
+
+const FAR_N = 1e6;
+/** Below this slope a reading says nothing about the signal; its standard deviation stays finite. */
+const LEAST_SLOPE = 1e-200;
+
+/**
+ * What      Fits transmitted light: start from a fit of the signal (`from`), end in the measured domain.
+ * Shapes    spec: the model on the points of `light` (its `gaussStd` is not used: the slit acts on the light);
+ *           background: the same columns on any energies.
+ * Units     those of SpectrumProblem and MeasuredLight.
+ * Accuracy  tests/app/fit/transmittance-fit.test.ts.
+ */
+export function fitTransmittance(
+  light: MeasuredLight,
+  spec: ModelSpec,
+  background: (energy: Float64Array) => readonly BackgroundColumn[],
+  start: FitStart,
+  from: SpectrumFit,
+  control: FitControl = {},
+): TransmittanceFit {
+  const sharp: ModelSpec = { ...spec, gaussStd: 0 };
+  const points: FitPoints = { energy: light.energy, signal: light.value, sigma: light.sigma };
+  const outer = new SpectrumProblem(points, sharp);
+  const grid = makeSlitGrid(light.energy, light.slitStd, featuresOf(sharp, start), coarsest(light, sharp));
+  const { nodes } = grid;
+  const inner = grid.identity
+    ? outer
+    : new SpectrumProblem(
+        // Only the energies matter there: nothing is measured on the nodes.
+        {
+          energy: nodes,
+          signal: new Float64Array(nodes.length),
+          sigma: new Float64Array(nodes.length).fill(1),
+        },
+        { ...sharp, background: background(nodes) },
+      );
+  const problem = new TransmittanceProblem(light, inner, grid);
+  const p = outer.nonlinear;
+  const theta = outer.startFrom(start.lines, start.asymmetry, start.factor);
+  const bounds = parameterBounds(outer, start, theta);
+  const lower = new Float64Array(problem.parameters).fill(-Infinity);
+  const upper = new Float64Array(problem.parameters).fill(Infinity);
+  lower.set(bounds.lower);
+  upper.set(bounds.upper);
+  const first = new Float64Array(problem.parameters);
+  first.set(theta);
+  first.set(startCoefficients(outer, from), p);
+  const solution = solveGeneral(problem, first, {
+    lower,
+    upper,
+    maxIterations: control.maxIterations ?? 100,
+    gradientTolerance: control.gradientTolerance ?? 1e-7,
+    costTolerance: control.costTolerance ?? 1e-11,
+    watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
+  });
+  return asSignal(light, outer, spec, solution);
+}
+
+function startCoefficients(problem: SpectrumProblem, from: SpectrumFit): Float64Array {
+  const { spec } = problem;
+  const k = spec.ns.length;
+  const out = new Float64Array(problem.linear);
+  spec.ns.forEach((n, j) => {
+    const place = from.lines.ns.indexOf(n);
+    const area = place < 0 ? 0 : from.lines.area[place]!;
+    out[j] = area;
+    if (spec.asymmetry === "free") out[k + j] = place < 0 ? 0 : area * from.lines.asymmetry[place]!;
+  });
+  spec.background.forEach((column, b) => {
+    const known = from.background.find((one) => one.term === column.term && one.name === column.name);
+    out[problem.backgroundAt + b] = known?.value ?? 0;
+  });
+  return out;
+}
+
+/** Free lines, tied lines, lines below the window, and the edges of band and continuum. */
+function featuresOf(spec: ModelSpec, start: FitStart): Feature[] {
+  const features: Feature[] = start.lines
+    .filter((line) => spec.ns.includes(line.n))
+    .map(({ energy, width }) => ({ energy, width }));
+  const { tail } = spec;
+  if (tail === null) return features;
+  const { gap, rydberg, defect0, defect2 } = tail.levels;
+  const out = new Float64Array(WIDTH.size);
+  const widthOf = (n: number): number => {
+    widthLaw(n, defect0, tail.widths, out);
+    return Math.max(0, out[WIDTH.width]!);
+  };
+  const energyOf = (n: number): number => gap - rydberg / (n - defect0 - defect2 / (n - defect0) ** 2) ** 2;
+  for (const n of tail.below) features.push({ energy: energyOf(n), width: widthOf(n) });
+  for (let n = tail.fromN; n <= tail.toN; n++) features.push({ energy: energyOf(n), width: widthOf(n) });
+  features.push({ energy: energyOf(tail.toN + 0.5), width: widthOf(tail.toN + 0.5) });
+  features.push({ energy: gap, width: widthOf(FAR_N) });
+  return features;
+}
+
+/** A measured background is known from point to point and may be anything in between. */
+function coarsest(light: MeasuredLight, spec: ModelSpec): number {
+  if (!spec.background.some((column) => column.term === "measured")) return Infinity;
+  const m = light.energy.length;
+  return (light.energy[m - 1]! - light.energy[0]!) / Math.max(1, m - 1);
+}
+
+function asSignal(
+  light: MeasuredLight,
+  outer: SpectrumProblem,
+  spec: ModelSpec,
+  solution: SeparableSolution,
+): TransmittanceFit {
+  const { depthPerSignal, reflectance, surface } = light;
+  const p = outer.nonlinear;
+  const theta = solution.theta.slice(0, p);
+  const coefficients = solution.theta.slice(p);
+  const fitted = solution.fitted.map((T) => depthFromTransmittance(T, reflectance, surface) / depthPerSignal);
+  const parts: SeparableSolution = {
+    ...solution,
+    theta,
+    coefficients,
+    fitted,
+    activeBounds: solution.activeBounds.slice(0, p),
+  };
+  const m = light.energy.length;
+  const signal = signalModel(light, outer, spec, theta, coefficients);
+  const sigma = new Float64Array(m);
+  for (let i = 0; i < m; i++) {
+    const slope = depthPerSignal * transmittanceSlope(fitted[i]! * depthPerSignal, reflectance, surface);
+    sigma[i] = light.sigma[i]! / Math.max(LEAST_SLOPE, Math.abs(slope));
+    // T falls where the signal rises.
+    signal[i]! -= solution.residuals[i]! * sigma[i]!;
+  }
+  return { fit: describeFit(outer, parts), linearised: { energy: light.energy, signal, sigma } };
+}
+
+/** The signal at these parameters with the slit acting on the signal, as a fit of the signal would have it. */
+function signalModel(
+  light: MeasuredLight,
+  outer: SpectrumProblem,
+  spec: ModelSpec,
+  theta: Float64Array,
+  coefficients: Float64Array,
+): Float64Array {
+  const m = light.energy.length;
+  const points: FitPoints = { energy: light.energy, signal: light.value, sigma: light.sigma };
+  const problem =
+    light.slitStd > 0 ? new SpectrumProblem(points, { ...spec, gaussStd: light.slitStd }) : outer;
+  const phi = new Float64Array(m * problem.linear);
+  problem.columns(theta, phi);
+  const out = new Float64Array(m);
+  for (let j = 0; j < problem.linear; j++)
+    for (let i = 0; i < m; i++) out[i]! += coefficients[j]! * phi[j * m + i]!;
+  return out;
+}
