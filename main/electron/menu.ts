@@ -1,7 +1,7 @@
 import type { MenuItemConstructorOptions } from "electron";
 import { CRYOGEN_CAUTION, LASER_CAUTION } from "../../app/report/index.ts";
 
-/** What the menu asks of the page; the page's own controls do the same. */
+/** What the menu asks of the page; the preload script presses the page's own keys for it. */
 export type MenuCommand = "open" | "save" | "undo" | "redo";
 
 export interface MenuActions {
@@ -14,13 +14,13 @@ export function menuTemplate(
   facts: { readonly version: string; readonly mac: boolean; readonly devTools: boolean },
   actions: MenuActions,
 ): MenuItemConstructorOptions[] {
-  const command = (label: string, name: MenuCommand, accelerator?: string): MenuItemConstructorOptions => ({
+  const command = (label: string, name: MenuCommand, accelerator: string): MenuItemConstructorOptions => ({
     label,
-    ...(accelerator !== undefined && { accelerator }),
+    accelerator,
+    // The keys belong to the page, which knows whether a text field is being typed in; the menu only shows them.
+    registerAccelerator: false,
     click: () => actions.send(name),
   });
-  // The page has its own undo, and text fields have theirs: the keys stay with the page, the menu only shows them.
-  const shownOnly = { registerAccelerator: false };
   return [
     ...(facts.mac ? [{ role: "appMenu" } as const] : []),
     {
@@ -35,8 +35,8 @@ export function menuTemplate(
     {
       label: "&Edit",
       submenu: [
-        { ...command("&Undo", "undo", "CmdOrCtrl+Z"), ...shownOnly },
-        { ...command("&Redo", "redo", "CmdOrCtrl+Shift+Z"), ...shownOnly },
+        command("&Undo", "undo", "CmdOrCtrl+Z"),
+        command("&Redo", "redo", "CmdOrCtrl+Shift+Z"),
         { type: "separator" },
         { role: "cut" },
         { role: "copy" },

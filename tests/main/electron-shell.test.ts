@@ -316,9 +316,11 @@ describe("the menu", () => {
     ]);
   });
 
-  it("leaves the keys of undo to the page and its text fields", () => {
-    expect(item("Undo").registerAccelerator).toBe(false);
-    expect(item("Redo").registerAccelerator).toBe(false);
+  it("shows the page's keys and leaves them to the page", () => {
+    for (const label of ["Open Spectra", "Save Result", "Undo", "Redo"]) {
+      expect(item(label).accelerator, label).toMatch(/^CmdOrCtrl\+/);
+      expect(item(label).registerAccelerator, label).toBe(false);
+    }
   });
 
   it("shows the cautions", () => {
@@ -335,7 +337,8 @@ describe("the preload script", () => {
   async function loadBridge(): Promise<{
     bridge: Bridge;
     exposed: string[];
-    emit: (...sent: unknown[]) => void;
+    pressed: object[];
+    emit: (command: unknown) => void;
   }> {
     const { outputFiles } = await build({
       entryPoints: ["main/electron/preload/index.ts"],
@@ -348,7 +351,13 @@ describe("the preload script", () => {
     });
     const exposed: Record<string, Bridge> = {};
     const heard = new Map<string, (...sent: unknown[]) => void>();
+    const pressed: object[] = [];
+    const press = function (this: object, type: string, init: object): void {
+      Object.assign(this, { type, ...init });
+    };
     runInNewContext(outputFiles[0]!.text, {
+      window: { dispatchEvent: (event: object) => pressed.push({ ...event }) },
+      KeyboardEvent: press,
       require: (name: string) => {
         if (name !== "electron") throw new Error(`the sandbox has no ${name}`);
         return {
@@ -359,7 +368,6 @@ describe("the preload script", () => {
               return handler(fromPage(), ...sent);
             },
             on: (channel: string, listener: (...sent: unknown[]) => void) => heard.set(channel, listener),
-            off: (channel: string) => heard.delete(channel),
           },
         };
       },
@@ -368,14 +376,15 @@ describe("the preload script", () => {
     return {
       bridge: exposed["runglineBridge"]!,
       exposed: Object.keys(exposed),
-      emit: (...sent) => heard.get("rungline:command")?.({}, ...sent),
+      pressed,
+      emit: (command) => heard.get("rungline:command")!({}, command),
     };
   }
 
   it("puts one method per host call on the page, and nothing of Electron itself", async () => {
     const { bridge, exposed } = await loadBridge();
     expect(exposed).toEqual(["runglineBridge"]);
-    expect(Object.keys(bridge).sort()).toEqual([...METHODS, "onCommand"].sort());
+    expect(Object.keys(bridge).sort()).toEqual([...METHODS].sort());
   });
 
   it("reaches a handler of the main process with every method", async () => {
@@ -394,14 +403,15 @@ describe("the preload script", () => {
     );
   });
 
-  it("hands on the menu's commands until it is told to stop", async () => {
-    const { bridge, emit } = await loadBridge();
-    const heard: unknown[] = [];
-    const stop = bridge["onCommand"]!((command: unknown) => heard.push(command)) as () => void;
-    emit("open");
-    emit({ not: "a command" });
-    stop();
-    emit("open");
-    expect(heard).toEqual(["open"]);
+  it("presses the page's own keys for the menu's commands, and for nothing else", async () => {
+    const { pressed, emit } = await loadBridge();
+    for (const command of ["open", "save", "undo", "redo", "constructor", "other", { not: "a command" }])
+      emit(command);
+    expect(pressed).toEqual([
+      { type: "keydown", key: "o", ctrlKey: true },
+      { type: "keydown", key: "s", ctrlKey: true },
+      { type: "keydown", key: "z", ctrlKey: true },
+      { type: "keydown", key: "z", shiftKey: true, ctrlKey: true },
+    ]);
   });
 });

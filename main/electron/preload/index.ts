@@ -2,7 +2,7 @@ import { contextBridge, ipcRenderer } from "electron";
 import type { Host } from "../../../app/tasks/index.ts";
 
 /**
- * The only thing that the page sees of this process: one method per host call, and the native menu's commands. Main
+ * The only thing that the page sees of this process: one method per host call. Main
  * answers with data in either case; a refusal becomes an error here, on the page's side of the bridge, where its
  * message is all that is needed.
  */
@@ -16,24 +16,25 @@ async function call<M extends HostMethod>(method: M, ...sent: Parameters<Host[M]
   return answer.value as never;
 }
 
-interface Bridge extends Omit<Host, "shell"> {
-  /** Calls `listener` with each command of the native menu; returns how to stop. */
-  onCommand(listener: (command: string) => void): () => void;
-}
-
-const bridge: Bridge = {
+const bridge: Omit<Host, "shell"> = {
   about: () => call("about"),
   startFiles: () => call("startFiles"),
   demoFiles: () => call("demoFiles"),
   openFiles: () => call("openFiles"),
   saveFile: (suggestedName, bytes) => call("saveFile", suggestedName, bytes),
-  onCommand(listener) {
-    const hear = (_event: unknown, command: unknown): void => {
-      if (typeof command === "string") listener(command);
-    };
-    ipcRenderer.on("rungline:command", hear);
-    return () => void ipcRenderer.off("rungline:command", hear);
-  },
 };
 
 contextBridge.exposeInMainWorld("runglineBridge", bridge);
+
+/** The native menu presses the page's own keys, so that page and menu can never do different things. */
+const KEYS: Readonly<Record<string, KeyboardEventInit>> = {
+  open: { key: "o" },
+  save: { key: "s" },
+  undo: { key: "z" },
+  redo: { key: "z", shiftKey: true },
+};
+
+ipcRenderer.on("rungline:command", (_event, command: unknown) => {
+  const keys = typeof command === "string" && Object.hasOwn(KEYS, command) ? KEYS[command] : undefined;
+  if (keys !== undefined) window.dispatchEvent(new KeyboardEvent("keydown", { ...keys, ctrlKey: true }));
+});
