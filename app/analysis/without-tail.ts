@@ -42,7 +42,7 @@ export function fitWithoutTail(
   const top = start.ns[start.ns.length - 1]!;
   const most = protocol.lines.n === "auto" ? Math.min(MOST_LINES_ABOVE, protocol.lines.max_n - top) : 0;
   for (let above = 0; above <= most; above++) {
-    const from = withLines(best?.state ?? start, [
+    const from = addOnTop(best?.state ?? start, [
       ...start.ns,
       ...Array.from({ length: above }, (_, i) => top + 1 + i),
     ]);
@@ -70,4 +70,16 @@ export function fitWithoutTail(
     best = { points, state: withLevelRange(after, judgeLevels(fit, protocol)), reducedChi2 };
   }
   return best;
+}
+
+/** New lines start as wide as the last one: where no strength law holds, a width law need not either. */
+function addOnTop(state: LadderState, ns: readonly number[]): LadderState {
+  const next = withLines(state, ns);
+  const widest = state.width[state.ns.length - 1]!;
+  return {
+    ...next,
+    width: next.width.map((width, j) =>
+      state.ns.includes(ns[j]!) ? width : Math.min(widest, 0.5 * spacing(ns[j]!, state.levels)),
+    ),
+  };
 }

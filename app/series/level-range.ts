@@ -1,4 +1,5 @@
 import { doubt, failure, success, symmetric, type Note, type Quantity, type Result } from "../base/index.ts";
+import { fSurvival } from "../solve/index.ts";
 import { fitLevels, format, type LevelFit, type LevelInput } from "./level-fit.ts";
 import { placesWithin, selectMatrix, selectVector } from "./select-lines.ts";
 import type { SeriesIssue } from "./wording.ts";
@@ -37,7 +38,8 @@ const FEWEST_LINES = 5;
 const HOLDS_ABOVE = 0.05;
 
 /**
- * What      Which lines follow the level law: the lowest n_min with p > 0.05 and at least five lines up to the highest.
+ * What      Which lines follow the level law: the lowest n_min with p > 0.05 and at least five lines up to the highest,
+ *           and below it the lines that an F test does not tell from those kept.
  *           Where none has it, the n_min whose scaled standard errors of gap and Rydberg energy have the smallest product (low n pin
  *           the Rydberg energy where they are on the law at all), and a note says so.
  * Units     eV.
@@ -64,6 +66,7 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
   let fallback: LevelFit | null = null;
   let fallbackError = Infinity;
   let failed: Result<LevelFit, SeriesIssue> | null = null;
+  const tried: { first: number; fit: LevelFit }[] = [];
   for (let first = 0; count - first >= FEWEST_LINES; first++) {
     const fit = fitWithin(input, input.n[first]!, highest, "newton");
     if (!fit.ok) {
@@ -71,9 +74,11 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
       continue;
     }
     if (fit.value.p > HOLDS_ABOVE) {
-      const final = fitWithin(input, input.n[first]!, highest);
-      return final.ok ? finish(input, final.value, factor, skipNotes(input, first)) : final;
+      const lowest = lowestCompatible(fit.value, tried);
+      const final = fitWithin(input, input.n[lowest]!, highest);
+      return final.ok ? finish(input, final.value, factor, skipNotes(input, lowest)) : final;
     }
+    tried.push({ first, fit: fit.value });
     const error = scaledUncertainty(fit.value);
     if (error < fallbackError) {
       fallbackError = error;
@@ -91,6 +96,22 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
       "name the range (series.fit_n), allow a Ritz term (series.defect=ritz), or look for blends in the residuals",
     ),
   ]);
+}
+
+/**
+ * Place of the lowest line that may stay. Lines are left out because the law of the higher ones rejects them, not
+ * because a shorter range passes by luck: an F test asks whether the lines below are further off than the scatter of
+ * those kept (or their errors, if that is larger) allows. Where they are not, they stay, and the whole may be rejected.
+ */
+function lowestCompatible(kept: LevelFit, tried: readonly { first: number; fit: LevelFit }[]): number {
+  const scatter = Math.max(1, kept.chi2 / Math.max(1, kept.degreesOfFreedom));
+  for (const { first, fit } of tried) {
+    const lines = fit.degreesOfFreedom - kept.degreesOfFreedom;
+    if (lines < 1 || fit.defect !== kept.defect) continue;
+    const ratio = (fit.chi2 - kept.chi2) / lines / scatter;
+    if (fSurvival(Math.max(0, ratio), lines, kept.degreesOfFreedom) > HOLDS_ABOVE) return first;
+  }
+  return tried.length === 0 ? 0 : tried[tried.length - 1]!.first + 1;
 }
 
 function skipNotes(input: LevelInput, first: number): Note[] {

@@ -11,3 +11,4 @@ export type { LawFit, LawOptions, LawProblem } from "./fitLaw.ts";
 export * from "./statistics.ts";
 export { profileInterval } from "./profile.ts";
 export type { ProfileInterval, ProfileProblem } from "./profile.ts";
+export { fSurvival } from "./fDistribution.ts";
