@@ -95,7 +95,7 @@ const ENGLISH_ONLY = {
   name: "english-only",
   setup({ onLoad }) {
     onLoad({ filter: /[\\/]zod[\\/]v4[\\/]locales[\\/]index\.js$/ }, () => ({
-      contents: 'export { default as en } from "./en.js";',
+      contents: `export { default as en } from ${JSON.stringify("./en.js")};`,
     }));
   },
 };
