@@ -56,6 +56,9 @@ export interface WidthFit {
 }
 
 const DEFAULT_EXPONENT = 3;
+/** Outside these a power of n is no width law. */
+const LEAST_EXPONENT = 0.1;
+const MOST_EXPONENT = 10;
 
 /**
  * What      Width law G_n = floor + G_1 b^-k (laws/width.ts) fitted to line widths with their covariance, the floor
@@ -103,7 +106,10 @@ export function fitWidths(input: WidthInput): Result<WidthFit, SeriesIssue> {
     exponentTest,
     converged: solution.converged,
     gain: solution.gain,
-    notes: [...fewNotes(input, exponentFree, floorFree, chosen.floorAtZero), ...notes],
+    notes: [
+      ...fewNotes(input, exponentFree, floorFree, chosen.floorAtZero, chosen.exponentLost === true),
+      ...notes,
+    ],
   });
 }
 
@@ -113,6 +119,8 @@ interface Chosen {
   readonly exponentFree: boolean;
   readonly floorFree: boolean;
   readonly floorAtZero: boolean;
+  /** The exponent was to be free, but the widths follow no falling power of n. */
+  readonly exponentLost?: boolean;
 }
 
 function fitLines(
@@ -148,14 +156,22 @@ function fitLines(
         }
       },
     });
+  const sensible = (solution: LawSolution | null): solution is LawSolution =>
+    solution !== null &&
+    solution.values[0]! >= 0 &&
+    solution.values[1]! > 0 &&
+    (!exponentFree || (solution.values[2]! > LEAST_EXPONENT && solution.values[2]! < MOST_EXPONENT));
   if (floorFree) {
     const solution = attempt(true);
-    if (solution !== null && solution.values[0]! >= 0 && solution.values[1]! > 0) {
-      return { solution, places, exponentFree, floorFree, floorAtZero: false };
-    }
+    if (sensible(solution)) return { solution, places, exponentFree, floorFree, floorAtZero: false };
   }
   const solution = attempt(false);
   if (solution === null) return null;
+  if (exponentFree && !sensible(solution)) {
+    // Widths that do not fall with n leave no power law; one with the usual exponent is then said to be rejected.
+    const held = fitLines(input, places, DEFAULT_EXPONENT, how);
+    return held === null ? null : { ...held, exponentLost: true };
+  }
   return { solution, places, exponentFree, floorFree, floorAtZero: floorFree };
 }
 
@@ -224,6 +240,7 @@ function fewNotes(
   exponentFree: boolean,
   floorFree: boolean,
   floorAtZero: boolean,
+  exponentLost: boolean,
 ): Note[] {
   const notes: Note[] = [];
   if (input.exponent === "free" && !exponentFree) {
@@ -231,7 +248,9 @@ function fewNotes(
       doubt(
         "width-exponent-held",
         "width_law.exponent",
-        `${input.n.length} lines are too few to find the exponent of the widths: held at ${DEFAULT_EXPONENT}.`,
+        exponentLost
+          ? `The widths do not fall as a power of n between ${LEAST_EXPONENT} and ${MOST_EXPONENT}: the exponent is held at ${DEFAULT_EXPONENT}.`
+          : `${input.n.length} lines are too few to find the exponent of the widths: held at ${DEFAULT_EXPONENT}.`,
         "measure more lines, or set width.exponent",
       ),
     );
