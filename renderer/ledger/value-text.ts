@@ -13,7 +13,7 @@ export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit"
   const { value, sigma, low, high } = scaleQuantity(entry.quantity, entry.scale);
   if (value !== null && (sigma === null || sigma === 0)) {
     // A column of numbers has no room for a clause: a question mark stands for an unknown uncertainty.
-    const plain = formatNumber(value, 6);
+    const plain = formatNumber(value, sigma === null ? 4 : 8);
     const exact = entry.unit === "" ? "exact" : `${entry.unit} exact`;
     return sigma === null ? { value: `${plain}(?)`, unit: entry.unit } : { value: plain, unit: exact };
   }

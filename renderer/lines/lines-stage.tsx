@@ -27,11 +27,10 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
   const sections = useMemo(() => {
     if (analysed === null) return [];
     const { result } = analysed;
-    return [
-      selected === null ? null : lineSection(result, selected),
-      fitSection(result),
-      selected === null ? backgroundSection(result) : null,
-    ].filter((section) => section !== null);
+    const line = selected === null ? null : lineSection(result, selected);
+    return (line === null ? [fitSection(result), backgroundSection(result)] : [line]).filter(
+      (section) => section !== null,
+    );
   }, [analysed, selected]);
   if (analysed === null || figure === null)
     return <Unfitted choices={<LinesChoices />} figureRef={figureRef} />;

@@ -60,8 +60,29 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
   );
   const table = useTable({ features, columns, data: result.lines, getRowId: (line) => String(line.n) });
   return (
-    <table className="lines-table">
-      <caption className="hidden">Fitted lines</caption>
+    <table
+      className="lines-table"
+      role="grid"
+      tabIndex={0}
+      aria-activedescendant={selected === null ? undefined : `line-row-${selected}`}
+      onKeyDown={(event) => {
+        if (event.target !== event.currentTarget) return;
+        const numbers = table.getRowModel().rows.map((row) => row.original.n);
+        const at = selected === null ? -1 : numbers.indexOf(selected);
+        const last = numbers.length - 1;
+        const next = {
+          ArrowDown: Math.min(last, at + 1),
+          ArrowUp: at < 0 ? last : Math.max(0, at - 1),
+          Home: 0,
+          End: last,
+          Escape: -1,
+        }[event.key];
+        if (next === undefined) return;
+        event.preventDefault();
+        controller.select(numbers[next] ?? null);
+      }}
+    >
+      <caption className="hidden">Fitted lines; arrow keys choose one</caption>
       <thead>
         {table.getHeaderGroups().map((group) => (
           <tr key={group.id}>
@@ -94,6 +115,8 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
           return (
             <tr
               key={row.id}
+              id={`line-row-${n}`}
+              aria-selected={selected === n}
               data-n={n}
               data-lit={pointed === n || undefined}
               data-chosen={selected === n || undefined}
@@ -103,19 +126,8 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
             >
               {row.getAllCells().map((cell) =>
                 cell.column.id === "n" ? (
-                  <th key={cell.id} scope="row">
-                    <button
-                      type="button"
-                      className="line-button"
-                      aria-pressed={selected === n}
-                      aria-label={`n = ${n}${doubtful ? ", in doubt" : ""}`}
-                      onClick={(event) => {
-                        event.stopPropagation();
-                        controller.select(selected === n ? null : n);
-                      }}
-                      onFocus={() => controller.point(n)}
-                      onBlur={() => controller.point(null)}
-                    >
+                  <th key={cell.id} scope="row" aria-label={`n = ${n}${doubtful ? ", in doubt" : ""}`}>
+                    <span className="line-name">
                       <svg width="10" height="10" aria-hidden="true">
                         <rect
                           x="1"
@@ -129,7 +141,7 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
                         />
                       </svg>
                       {n}
-                    </button>
+                    </span>
                   </th>
                 ) : (
                   <td key={cell.id}>
