@@ -1,4 +1,5 @@
 import { doubt, stopIfCancelled, type Watch } from "../base/index.ts";
+import { strength } from "../laws/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { assignPrincipalNumbers } from "./assign-n.ts";
@@ -115,13 +116,27 @@ function fitWithTailOrWithout(
   });
   const first = fit(points, climbed.state, choices, 0.4);
   const reduced = reducedChi2(first.full);
-  if (!choices.tail || reduced < GROSS_MISFIT) return first;
+  if (!choices.tail || reduced < GROSS_MISFIT || followsStrengthLaw(first.full)) return first;
   watch.report(0.6, "trying without a tail");
   const other = fitWithoutTail(spectrum, protocol, start, points.energy[0]!, choices, watch);
   if (other === null || other.reducedChi2 > reduced / GROSS_MISFIT) return first;
   const second = fit(other.points, other.state, { ...choices, tail: false }, 0.6);
   return reducedChi2(second.full) < reduced / GROSS_MISFIT ? second : first;
 }
+
+/** Areas over the strength law within a factor of three of each other, and a tail that is neither nothing nor too much. */
+function followsStrengthLaw({ fit }: FullFit): boolean {
+  const { tail } = fit.problem.spec;
+  if (tail === null || fit.factor === null) return false;
+  const ratios = fit.lines.ns.map(
+    (n, j) => fit.lines.area[j]! / strength(n, tail.levels.defect0, tail.strength.law, tail.strength.base),
+  );
+  const steady = Math.min(...ratios) > 0 && Math.max(...ratios) < MOST_SPREAD * Math.min(...ratios);
+  return steady && !fit.factor.atBound && fit.factor.value > LEAST_FACTOR;
+}
+
+const MOST_SPREAD = 3;
+const LEAST_FACTOR = 0.3;
 
 function reducedChi2(full: FullFit): number {
   const { chi2, degreesOfFreedom } = full.fit.solution;

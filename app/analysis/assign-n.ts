@@ -68,9 +68,15 @@ export function assignPrincipalNumbers(
   }
   if (hypothesis === null) return null;
   const start = judge.assignment(hypothesis.gap, hypothesis.rydberg, null);
-  return start === null ? null : refine(peaks, judge, start, choices);
+  if (start === null) return null;
+  const refined = refine(peaks, judge, start, choices);
+  return refined.score >= LEAST_SHARE * peaks.reduce((sum, peak) => sum + merit(peak), 0) ? refined : null;
 }
 
+/** A ladder whose lowest line has a high n is less likely: its stronger lines must all lie outside the spectrum. */
+const LOW_N_COST = 0.4;
+/** A series accounts for at least this part of what the peaks are worth; equal spacings and chance reach about a third. */
+const LEAST_SHARE = 0.45;
 const GAP_TRIALS = 60;
 const MOST_TOPS = 6;
 
@@ -140,7 +146,9 @@ class Judge {
     }
     if (count < 3) return -Infinity;
     score -=
-      2.5 * (last - first + 1 - count) + 0.8 * Math.abs(this.defect - choices.defectCentre) + 0.15 * first;
+      2.5 * (last - first + 1 - count) +
+      0.8 * Math.abs(this.defect - choices.defectCentre) +
+      LOW_N_COST * (first - choices.lowestN);
     if (score <= least) return -Infinity;
     return score - this.strengthLoss(count);
   }

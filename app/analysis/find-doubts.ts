@@ -74,12 +74,13 @@ function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
       ),
     );
   }
-  if (full.fit.solution.rank < fit.parameters) {
+  const held = full.fit.solution.activeBounds.filter((bound) => bound !== 0).length;
+  if (full.fit.solution.rank < fit.parameters - held) {
     notes.push(
       doubt(
         "parameters-degenerate",
         "fit.rank",
-        `The data determine ${fit.rank} combinations of ${fit.parameters} parameters.`,
+        `The data determine ${fit.rank} combinations of ${fit.parameters - held} free parameters.`,
         "lower the background order or leave out a background term",
       ),
     );

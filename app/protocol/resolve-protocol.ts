@@ -31,7 +31,16 @@ export function mergeChoices(earlier: unknown, later: unknown): unknown {
   if (later === undefined) return earlier;
   if (!isPlain(earlier) || !isPlain(later)) return later;
   const merged: Plain = { ...earlier };
-  for (const [key, value] of Object.entries(later)) merged[key] = mergeChoices(merged[key], value);
+  for (const [key, value] of Object.entries(later)) {
+    const before = Object.hasOwn(merged, key) ? merged[key] : undefined;
+    // defineProperty keeps a key named __proto__ an ordinary (unknown) key.
+    Object.defineProperty(merged, key, {
+      value: mergeChoices(before, value),
+      enumerable: true,
+      configurable: true,
+      writable: true,
+    });
+  }
   return merged;
 }
 
@@ -41,7 +50,7 @@ function unknownKeys(found: unknown, known: unknown, path: string): ProtocolIssu
   const issues: ProtocolIssue[] = [];
   for (const [key, value] of Object.entries(found)) {
     const dotted = path === "" ? key : `${path}.${key}`;
-    if (!(key in known)) {
+    if (!Object.hasOwn(known, key)) {
       const nearest = nearestWord(key, Object.keys(known));
       issues.push({
         code: "protocol/unknown-key",

@@ -13,7 +13,12 @@ export function choicesFromSetting(setting: string): ProtocolInput | null {
   } catch {
     value = text;
   }
-  for (const key of path.reverse()) value = { [key]: value };
+  // defineProperty, so that a key named __proto__ stays a key and is refused like any other unknown one.
+  for (const key of path.reverse()) {
+    const whole = {};
+    Object.defineProperty(whole, key, { value, enumerable: true, configurable: true, writable: true });
+    value = whole;
+  }
   return value as ProtocolInput;
 }
 
