@@ -59,7 +59,7 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     continuumOdd: true,
     asymmetry: protocol.lines.asymmetry,
   };
-  const climbed = climbLadder(thinned, start, protocol, spectrum.unit, choices, watch);
+  const climbed = climbLadder(thinned, start, withFreeLevels(protocol), spectrum.unit, choices, watch);
   const guessSeconds = watch.seconds() - began;
   const chosen = fitWithTailOrWithout(spectrum, protocol, start, points, climbed, choices, watch);
   const { full, points: fitted } = fitInDomain(
@@ -86,6 +86,11 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     },
     curves: drawCurves(spectrum, fitted, full),
   };
+}
+
+/** Which lines there are is decided with every energy free. */
+function withFreeLevels(protocol: Protocol): Protocol {
+  return { ...protocol, series: { ...protocol.series, mode: "free" } };
 }
 
 interface ChosenFit {
@@ -118,7 +123,7 @@ function fitWithTailOrWithout(
   const reduced = reducedChi2(first.full);
   if (!choices.tail || reduced < GROSS_MISFIT || followsStrengthLaw(first.full)) return first;
   watch.report(0.6, "trying without a tail");
-  const other = fitWithoutTail(spectrum, protocol, start, points.energy[0]!, choices, watch);
+  const other = fitWithoutTail(spectrum, withFreeLevels(protocol), start, points.energy[0]!, choices, watch);
   if (other === null || other.reducedChi2 > reduced / GROSS_MISFIT) return first;
   const second = fit(other.points, other.state, { ...choices, tail: false }, 0.6);
   return reducedChi2(second.full) < reduced / GROSS_MISFIT ? second : first;

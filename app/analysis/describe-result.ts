@@ -85,6 +85,7 @@ export function describeResult(
     signalUnit: spectrum.unit,
     factor,
   });
+  const tiedNs = fit.problem.spec.tiedLevels?.tiedNs ?? [];
   const asymmetryFree = protocol.lines.asymmetry !== "zero";
   const lines: RunglineResult["lines"] = fit.lines.ns.map((n, j) => {
     const bound = fit.atBound.includes(n);
@@ -107,7 +108,7 @@ export function describeResult(
       spacing_eV: derived.spacing_eV,
       width_over_spacing: derived.width_over_spacing,
       lifetime_ps: derived.lifetime_ps,
-      law_offset_eV: derived.law_offset_eV,
+      law_offset_eV: tiedNs.includes(n) ? { value: 0, sigma: 0, low: 0, high: 0 } : derived.law_offset_eV,
       in_level_fit: derived.in_level_fit,
       area_n3: derived.area_n3,
       strength_per_cm3: derived.strength_per_cm3,
@@ -263,8 +264,11 @@ function describeLaws(full: FullFit, protocol: Protocol, factor: number): Descri
       strengths: strengthInput,
     });
     const input = levelInput(fit, protocol);
+    // Tied levels come from the spectrum fit itself; their profile would need that fit again for every value.
     const profile =
-      protocol.uncertainty.profile && input !== null ? profileLevels(input, range.fit, factor) : undefined;
+      protocol.uncertainty.profile && protocol.series.mode === "free" && input !== null
+        ? profileLevels(input, range.fit, factor)
+        : undefined;
     series = seriesToResult(range, readings, factor, profile);
     notes.push(...range.notes, ...readings.notes);
   }

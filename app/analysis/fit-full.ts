@@ -6,6 +6,7 @@ import type { Spectrum } from "../spectrum/index.ts";
 import { leastSignificance, significances, type Climbed } from "./climb-ladder.ts";
 import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { judgeLevels, withLevelRange } from "./level-range.ts";
+import { tiedRange } from "./tied-range.ts";
 
 /** What was fitted: the absorption, or the transmitted light itself (measured-domain.ts). */
 export interface FitDomain {
@@ -47,6 +48,23 @@ export function fitEveryPoint(
   report: (pass: number) => void,
   fitPass: FitPass = (model) => fitSpectrum(points, model.spec, model.start, { watch }),
 ): FullFit {
+  const free = fitFreeLevels(points, initial, protocol, unit, choices, watch, report, fitPass);
+  if (protocol.series.mode === "free" || free.range === null) return free;
+  return tieLevels(points, free, free.range, protocol, unit, choices, watch, fitPass);
+}
+
+/** Energies of all lines free, whatever the protocol says: what decides over the range of n. */
+function fitFreeLevels(
+  points: FitPoints,
+  initial: LadderState,
+  asked: Protocol,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+  watch: Watch,
+  report: (pass: number) => void,
+  fitPass: FitPass,
+): FullFit {
+  const protocol: Protocol = { ...asked, series: { ...asked.series, mode: "free" } };
   const needed = leastSignificance(points.energy.length);
   let state = initial;
   let result: FullFit | null = null;
@@ -56,13 +74,9 @@ export function fitEveryPoint(
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
     const began = watch.seconds();
-    const plain = fitPass(model);
+    const fit = withAskedErrors(fitPass(model), protocol);
     const solveSeconds = watch.seconds() - began;
     stopIfCancelled(watch);
-    const { chi2, degreesOfFreedom } = plain.solution;
-    const fit = protocol.uncertainty.scale_by_residuals
-      ? withScaledErrors(plain, chi2 / Math.max(1, degreesOfFreedom))
-      : plain;
     const range = judgeLevels(fit, protocol);
     const next = withLevelRange(stateAfter(fit, model.state), range);
     const seen = significances(fit);
@@ -75,6 +89,41 @@ export function fitEveryPoint(
   }
   if (result === null) throw new Error("no pass was made");
   return result;
+}
+
+/** The lines of the range that was found are tied to the level law; the others stay free. */
+function tieLevels(
+  points: FitPoints,
+  free: FullFit,
+  range: RangeChoice,
+  protocol: Protocol,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+  watch: Watch,
+  fitPass: FitPass,
+): FullFit {
+  let { state } = free;
+  let result = free;
+  for (let pass = 0; pass < MOST_PASSES; pass++) {
+    stopIfCancelled(watch);
+    const model = buildModel(points, state, protocol, unit, choices);
+    const began = watch.seconds();
+    const fit = withAskedErrors(fitPass(model), protocol);
+    const solveSeconds = watch.seconds() - began;
+    const next = stateAfter(fit, model.state);
+    // The weights of the tail's laws stay those of the free fit: lines on a law have no errors of their own.
+    state = { ...next, energySigma: free.state.energySigma };
+    const selfConsistent = agrees(model.state, next, next.include, range);
+    result = { ...free, fit, state, range: tiedRange(fit, free.fit, range), solveSeconds, selfConsistent };
+    if (selfConsistent) break;
+  }
+  return result;
+}
+
+/** Standard errors scaled by the residuals where the protocol asks for it. */
+function withAskedErrors(fit: SpectrumFit, protocol: Protocol): SpectrumFit {
+  if (!protocol.uncertainty.scale_by_residuals) return fit;
+  return withScaledErrors(fit, fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom));
 }
 
 /** The laws at the start of a pass (fitted to the lines of the pass before) and those at its end are the same. */

@@ -142,7 +142,13 @@ function runTrial(
     signal: Float64Array.from(keep, (i) => points.signal[i]!),
     sigma: Float64Array.from(keep, (i) => points.sigma[i]!),
   };
-  const model = buildModel(part, state, protocol, unit, trial.choices);
+  const model = buildModel(
+    part,
+    state,
+    { ...protocol, series: { ...protocol.series, mode: "free" } },
+    unit,
+    trial.choices,
+  );
   const fit = fitSpectrum(part, model.spec, model.start, {
     watch,
     maxIterations: 20,
