@@ -1,4 +1,4 @@
-import { type Watch } from "../base/index.ts";
+import { stopIfCancelled, type Watch } from "../base/index.ts";
 import { fitSpectrum, type FitPoints } from "../fit/index.ts";
 import type { BackgroundTerm, Protocol, RunglineResult } from "../protocol/index.ts";
 import { fitLevels, type LevelFit } from "../series/index.ts";
@@ -155,6 +155,8 @@ function runTrial(
     gradientTolerance: 1e-4,
     costTolerance: 1e-6,
   });
+  // A fit that was stopped has values of no meaning.
+  stopIfCancelled(watch);
   const places = determinedPlaces(fit, 0).filter((j) => reference.n.includes(fit.lines.ns[j]!));
   const levels = fitLevels({
     n: places.map((j) => fit.lines.ns[j]!),

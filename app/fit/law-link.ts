@@ -56,8 +56,12 @@ export function widthLink(
   defect: number,
 ): { values: WidthValues; link: LawLink } {
   const included = data.include.filter(Boolean).length;
+  // A floor that adds in quadrature has no slope at zero, so a fit that starts there never leaves it.
+  const narrowest = Math.min(...data.value.filter((_, j) => data.include[j]!));
+  const startFloor =
+    start.floorKind === "gaussian" ? Math.max(start.floor, LEAST_FLOOR_PART * narrowest) : start.floor;
   const attempt = (floorFree: boolean, exponentFree: boolean): { values: WidthValues; link: LawLink } => {
-    const values = [floorFree ? start.floor : 0, start.coefficient, start.exponent];
+    const values = [floorFree ? startFloor : 0, start.coefficient, start.exponent];
     const places = [...(floorFree ? [0] : []), 1, ...(exponentFree ? [2] : [])];
     const out = new Float64Array(WIDTH.size);
     const row = (n: number): { value: number; slopes: Float64Array } => {
@@ -106,6 +110,8 @@ export function widthLink(
   }
   return attempt(false, false);
 }
+
+const LEAST_FLOOR_PART = 0.5;
 
 /** Shares with C = sum share_j A_j: weighted least squares of A_j = C s_j, linear in the areas. */
 export function strengthShare(
