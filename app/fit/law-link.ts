@@ -99,7 +99,7 @@ export function widthLink(
     one.values.exponent > 0.5 &&
     one.values.exponent < 8;
   if (free.exponent && included >= 4) {
-    for (const floorFree of free.floor && included >= 5 ? [true, false] : [false]) {
+    for (const floorFree of free.floor ? [true, false] : [false]) {
       const trial = attempt(floorFree, true);
       if (sensible(trial)) return trial;
     }
