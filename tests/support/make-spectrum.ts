@@ -5,7 +5,7 @@ import { makeRandom } from "../../app/base/index.ts";
  * continuum convolved slice by slice. Shares no line shape, law or tail with app/ (only the seeded random numbers).
  *
  *   energies    E_n = gap - Ry/(n - delta)^2 + offset_n
- *   widths      G_n = floor + G_1 n^-k
+ *   widths      G_n = floor + G_1 n^-k, or in quadrature
  *   areas       A_n = C n^-3 (cubic), C (n^2-1)/n^5 (p-envelope), C (n-1/2)^-3 (sheet), times `share(n)`
  *   line        (A_n/pi)(g + 2 q x)/(x^2 + g^2), g = G_n/2
  *   continuum   C/(2 Ry) times Elliott's factor from the last line on, each slice as broad as `floor`, with the same q
@@ -17,6 +17,8 @@ export interface SyntheticSeries {
   readonly firstN: number;
   readonly law: "cubic" | "p-envelope" | "sheet";
   readonly floor_eV: number;
+  /** `gaussian`: floor and n^-k part add in quadrature; lorentzian where not given. The shape stays a Lorentz line. */
+  readonly floorKind?: "lorentzian" | "gaussian";
   readonly coefficient_eV: number;
   readonly exponent: number;
   /** C in eV times the unit of the signal. */
@@ -66,10 +68,11 @@ export function energyOf(
 }
 
 export function widthOf(
-  series: Pick<SyntheticSeries, "floor_eV" | "coefficient_eV" | "exponent">,
+  series: Pick<SyntheticSeries, "floor_eV" | "floorKind" | "coefficient_eV" | "exponent">,
   n: number,
 ): number {
-  return series.floor_eV + series.coefficient_eV * n ** -series.exponent;
+  const own = series.coefficient_eV * n ** -series.exponent;
+  return series.floorKind === "gaussian" ? Math.hypot(series.floor_eV, own) : series.floor_eV + own;
 }
 
 export function areaOf(series: Pick<SyntheticSeries, "strength" | "law" | "share">, n: number): number {
