@@ -42,7 +42,7 @@ export function App() {
         void controller.open();
       } else if (key === "s") {
         event.preventDefault();
-        void controller.saveResult();
+        void controller.saveFit("result");
       }
     };
     addEventListener("keydown", press);
@@ -160,6 +160,13 @@ function UndoButtons() {
   );
 }
 
+const SAVED = [
+  { id: "result", text: "Result", kind: "JSON, Ctrl+S" },
+  { id: "protocol", text: "Protocol", kind: "JSON" },
+  { id: "svg", text: "Figure", kind: "SVG" },
+  { id: "png", text: "Figure", kind: "PNG" },
+] as const;
+
 function SaveMenu({ figure }: { readonly figure: React.RefObject<FigureHandle | null> }) {
   const controller = useController();
   const fitted = useWindow((state) => currentFit(state) !== null);
@@ -179,21 +186,17 @@ function SaveMenu({ figure }: { readonly figure: React.RefObject<FigureHandle | 
         <Menu
           className="menu"
           aria-label="Save"
-          disabledKeys={fitted ? [] : ["result"]}
+          disabledKeys={fitted ? [] : ["result", "protocol"]}
           onAction={(key) => {
-            if (key === "result") void controller.saveResult();
+            if (key === "result" || key === "protocol") void controller.saveFit(key);
             else void saveFigure(key as "svg" | "png");
           }}
         >
-          <MenuItem className="menu-item" id="result" textValue="Result and protocol">
-            Result and protocol <span className="small">JSON, Ctrl+S</span>
-          </MenuItem>
-          <MenuItem className="menu-item" id="svg" textValue="Figure as SVG">
-            Figure <span className="small">SVG</span>
-          </MenuItem>
-          <MenuItem className="menu-item" id="png" textValue="Figure as PNG">
-            Figure <span className="small">PNG</span>
-          </MenuItem>
+          {SAVED.map(({ id, text, kind }) => (
+            <MenuItem key={id} className="menu-item" id={id} textValue={text} aria-label={`${text}, ${kind}`}>
+              {text} <span className="small">{kind}</span>
+            </MenuItem>
+          ))}
         </Menu>
       </Popover>
     </MenuTrigger>

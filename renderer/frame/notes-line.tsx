@@ -64,7 +64,7 @@ export function NotesLine() {
         <div
           className="notes-all"
           ref={panel}
-          tabIndex={-1}
+          tabIndex={0}
           role="region"
           aria-label="All notes"
           id="notes-all"

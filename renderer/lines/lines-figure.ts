@@ -114,9 +114,7 @@ export function linesFigure(
     x1: x,
     y0: SIGNAL_FOOT,
     y1: 1,
-    editable: true,
-    line: { width: 3, color: palette.muted, dash: "dot" },
-    opacity: 0.75,
+    line: { width: 1, color: palette.muted, dash: "dot" },
   });
   return {
     summary: `Fitted spectrum: ${result.lines.length} lines between ${window[0].toFixed(4)} and ${window[1].toFixed(4)} eV, residuals in standard deviations below`,
@@ -137,7 +135,6 @@ export function linesFigure(
         range: [-5, 5],
         tickvals: [-4, -2, 0, 2, 4],
       }),
-      // The edges of the window come first: their index is what tells which one was moved.
       shapes: [
         edge(window[0]),
         edge(window[1]),

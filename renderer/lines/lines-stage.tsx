@@ -3,13 +3,17 @@ import { Segments } from "../controls/choices.tsx";
 import { usePalette } from "../frame/theme.ts";
 import { StageFrame } from "../frame/stage-frame.tsx";
 import { Ledger } from "../ledger/ledger.tsx";
+import type { Edge } from "../plot/edge-handle.tsx";
 import { Figure, type FigureHandle } from "../plot/figure.tsx";
-import { currentAnalysed, useController, useWindow } from "../store/context.ts";
+import { currentAnalysed, currentChoices, useController, useWindow } from "../store/context.ts";
 import { backgroundSection, fitSection, lineSection } from "./lines-ledger.ts";
 import { LinesChoices } from "./lines-choices.tsx";
 import { fittedWindow, linesFigure, type LinesView } from "./lines-figure.ts";
 import { LinesTable } from "./lines-table.tsx";
 import { Unfitted } from "../frame/unfitted.tsx";
+
+/** A window cannot be made narrower than this share of itself at once. */
+const NARROWEST = 0.05;
 
 /** Spectrum, model, components and residuals; the lines and how good the fit is. */
 export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle> }) {
@@ -19,6 +23,8 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
   const pointed = useWindow((state) => state.pointedN);
   const selected = useWindow((state) => state.selectedN);
   const [view, setView] = useState<LinesView>("window");
+  const choices = useWindow(currentChoices);
+  const chosenWindow = choices.window_eV ?? null;
   const shownN = view === "line" ? selected : null;
   const figure = useMemo(
     () => (analysed === null ? null : linesFigure(analysed.curves, analysed.result, palette, view, shownN)),
@@ -35,6 +41,8 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
   if (analysed === null || figure === null)
     return <Unfitted choices={<LinesChoices />} figureRef={figureRef} />;
   const { result, curves } = analysed;
+  // A chosen window stands before it is fitted; else the one that was.
+  const window = chosenWindow ?? fittedWindow(curves, result);
   const near = (x: number): number | null => {
     let best: number | null = null;
     let distance = Infinity;
@@ -49,6 +57,28 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
     }
     return best;
   };
+  const [low, high] = window;
+  const energy = curves.energy_eV;
+  const moveTo = (from: number, to: number): void => {
+    const moved: [number, number] = [Number(from.toFixed(6)), Number(to.toFixed(6))];
+    controller.change({ window_eV: moved }, `window ${moved[0]} to ${moved[1]} eV`);
+  };
+  const edges: readonly Edge[] = [
+    {
+      label: "Low end of the fitted window",
+      x: low,
+      lowest: energy[0]!,
+      highest: high - NARROWEST * (high - low),
+      onMoved: (x) => moveTo(x, high),
+    },
+    {
+      label: "High end of the fitted window",
+      x: high,
+      lowest: low + NARROWEST * (high - low),
+      highest: energy[energy.length - 1]!,
+      onMoved: (x) => moveTo(low, x),
+    },
+  ];
   return (
     <StageFrame
       wide
@@ -85,13 +115,7 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
           lit={pointed ?? selected}
           onPoint={(x) => controller.point(x === null ? null : near(x))}
           onChoose={(x) => controller.select(near(x))}
-          onShapeMoved={(index, x) => {
-            if (index > 1) return;
-            const window = fittedWindow(curves, result);
-            window[index as 0 | 1] = Number(x.toFixed(5));
-            if (window[0] < window[1])
-              controller.change({ window_eV: window }, `window ${window[0]} to ${window[1]} eV`);
-          }}
+          edges={edges}
         />
       }
       ledger={

@@ -1,6 +1,7 @@
 import { useEffect, useImperativeHandle, useRef, useState, type Ref } from "react";
 import Plotly from "plotly.js/lib/core";
 import scatter from "plotly.js/lib/scatter";
+import { EdgeHandle, type AxisPlace, type Edge } from "./edge-handle.tsx";
 import type { FigureDescription, Trace } from "./figure-description.ts";
 
 Plotly.register([scatter]);
@@ -25,13 +26,20 @@ interface Props {
   /** Pointing: the position on the x axis and, over a marker that has one, its n. */
   readonly onPoint?: (x: number | null, n: number | null) => void;
   readonly onChoose?: (x: number, n: number | null) => void;
-  /** A movable shape was put elsewhere: its index and new position. */
-  readonly onShapeMoved?: (index: number, x: number) => void;
+  /** Borders that can be moved. */
+  readonly edges?: readonly Edge[];
   readonly ref?: Ref<FigureHandle>;
 }
 
 interface PlotlyRoot extends HTMLDivElement {
   on?(event: string, handler: (event: PlotEvent) => void): void;
+  /** The library's own record of where it drew its axes. */
+  readonly _fullLayout?: { readonly xaxis?: PlacedAxis; readonly yaxis?: PlacedAxis };
+}
+interface PlacedAxis {
+  readonly _offset: number;
+  readonly _length: number;
+  readonly range: readonly [number, number];
 }
 interface PlotEvent {
   readonly points?: readonly { readonly x: number; readonly customdata?: unknown }[];
@@ -40,14 +48,15 @@ interface PlotEvent {
 }
 
 /** One drawing surface. It redraws when the description changes and only restyles when another line is lit. */
-export function Figure({ figure, lit, onPoint, onChoose, onShapeMoved, ref }: Props) {
+export function Figure({ figure, lit, onPoint, onChoose, edges, ref }: Props) {
   const root = useRef<PlotlyRoot>(null);
-  const handlers = useRef({ onPoint, onChoose, onShapeMoved });
+  const handlers = useRef({ onPoint, onChoose });
   const [drawn, setDrawn] = useState(0);
+  const [place, setPlace] = useState<AxisPlace | null>(null);
   const litNow = useRef<{ figure: FigureDescription; lit: number | null } | null>(null);
 
   useEffect(() => {
-    handlers.current = { onPoint, onChoose, onShapeMoved };
+    handlers.current = { onPoint, onChoose };
   });
 
   useEffect(() => {
@@ -62,7 +71,8 @@ export function Figure({ figure, lit, onPoint, onChoose, onShapeMoved, ref }: Pr
       if (stale) return;
       if (element.dataset["wired"] === undefined) {
         element.dataset["wired"] = "yes";
-        wire(element, handlers);
+        wire(element, handlers, () => setPlace(placeOf(element)));
+        setPlace(placeOf(element));
       }
       setDrawn((count) => count + 1);
     });
@@ -105,21 +115,39 @@ export function Figure({ figure, lit, onPoint, onChoose, onShapeMoved, ref }: Pr
   }));
 
   return (
-    <div
-      ref={root}
-      className="figure"
-      role="group"
-      aria-label={figure.summary}
-      data-state={drawn > 0 ? "drawn" : "drawing"}
-      data-drawn={drawn}
-      onPointerLeave={() => onPoint?.(null, null)}
-    />
+    <div className="figure-frame">
+      <div
+        ref={root}
+        className="figure"
+        role="group"
+        aria-label={figure.summary}
+        data-state={drawn > 0 ? "drawn" : "drawing"}
+        data-drawn={drawn}
+        onPointerLeave={() => onPoint?.(null, null)}
+      />
+      {place !== null && edges?.map((edge) => <EdgeHandle key={edge.label} edge={edge} place={place} />)}
+    </div>
   );
+}
+
+function placeOf({ _fullLayout: layout }: PlotlyRoot): AxisPlace | null {
+  const x = layout?.xaxis;
+  const y = layout?.yaxis;
+  if (x === undefined || y === undefined) return null;
+  return {
+    left: x._offset,
+    width: x._length,
+    top: y._offset,
+    height: y._length,
+    from: x.range[0],
+    to: x.range[1],
+  };
 }
 
 function wire(
   element: PlotlyRoot,
-  handlers: { current: Pick<Props, "onPoint" | "onChoose" | "onShapeMoved"> },
+  handlers: { current: Pick<Props, "onPoint" | "onChoose"> },
+  moved: () => void,
 ): void {
   const where = (event: PlotEvent): [number, number | null] | null => {
     const point = event.points?.[0];
@@ -136,13 +164,9 @@ function wire(
     const at = where(event);
     if (at !== null) handlers.current.onChoose?.(...at);
   });
-  element.on?.("plotly_relayout", (event) => {
-    for (const [key, value] of Object.entries(event)) {
-      const match = /^shapes\[(\d+)\]\.x0$/.exec(key);
-      if (match !== null && typeof value === "number")
-        handlers.current.onShapeMoved?.(Number(match[1]), value);
-    }
-  });
+  element.on?.("plotly_afterplot", moved);
+  element.on?.("plotly_relayout", moved);
+  element.on?.("plotly_relayouting", moved);
 }
 
 /** Style-only changes: a few milliseconds, while a redraw of a long spectrum takes fifty. */

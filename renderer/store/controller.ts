@@ -194,16 +194,16 @@ export class Controller {
     this.#running.cancel();
   }
 
-  /** The result and the protocol that repeats it, side by side. */
-  async saveResult(): Promise<void> {
+  /** The result, or the protocol that repeats it; a file each, since a page may offer one at a time. */
+  async saveFit(what: "result" | "protocol"): Promise<void> {
     const { session } = this.store.getState();
     const fit = session.currentId === null ? undefined : session.fits[session.currentId];
     const file = session.files.find((one) => one.id === session.currentId);
     if (fit === undefined || file === undefined) return;
     const base = file.name.replace(/\.[^.]+$/, "");
-    const kept = await this.save(`${base}.json`, encode(resultToJson(fit.analysed.result)));
-    if (kept !== null)
-      await this.save(`${base}.protocol.json`, encode(protocolToJson(fit.analysed.result.protocol)));
+    const { result } = fit.analysed;
+    if (what === "result") await this.save(`${base}.json`, encode(resultToJson(result)));
+    else await this.save(`${base}.protocol.json`, encode(protocolToJson(result.protocol)));
   }
 
   async save(name: string, bytes: Uint8Array): Promise<string | null> {

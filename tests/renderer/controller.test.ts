@@ -224,9 +224,10 @@ describe("a fit", () => {
 });
 
 describe("saving", () => {
-  it("writes the result and beside it the protocol that repeats it", async () => {
+  it("writes the result, and the protocol that repeats it", async () => {
     await startWithFit();
-    await controller.saveResult();
+    await controller.saveFit("result");
+    await controller.saveFit("protocol");
     expect(saved.map((file) => file.name)).toEqual(["one.json", "one.protocol.json"]);
     expect(JSON.parse(saved[0]!.text)).toMatchObject({ schema: "rungline-result/1" });
     expect(JSON.parse(saved[1]!.text)).toMatchObject({ schema: "rungline-protocol/1" });

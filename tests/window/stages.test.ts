@@ -120,18 +120,29 @@ describe("choices", () => {
     await page.getByRole("alert").waitFor({ state: "detached" });
   });
 
-  it("of the window are made by moving its edge in the figure", async () => {
-    const area = (await page.locator(".figure .xy .bg, .figure .nsewdrag").first().boundingBox())!;
-    const edge = (await page.locator('.figure path[fill-rule="evenodd"][d^="M"]').first().boundingBox())!;
-    expect(edge.height).toBeGreaterThan(0.5 * area.height);
-    const x = edge.x + edge.width / 2;
-    const y = area.y + area.height / 3;
+  it("of the window are made by moving its edge in the figure, one undo step a move", async () => {
+    const edge = page.getByRole("slider", { name: "Low end of the fitted window" });
+    const box = (await edge.boundingBox())!;
+    const x = box.x + box.width / 2;
+    const y = box.y + box.height / 3;
     await page.mouse.move(x, y);
     await page.mouse.down();
     await page.mouse.move(x + 60, y, { steps: 5 });
     await page.mouse.up();
     await page.waitForSelector('.path-stage[data-stage="lines"]:has-text("choices changed")');
-    expect(Number(await page.getByLabel("Low end of the window").inputValue())).toBeGreaterThan(2.14);
+    const field = page.getByLabel("Low end of the window in eV");
+    const moved = Number(await field.inputValue());
+    expect(moved).toBeGreaterThan(2.1405);
+    await edge.focus();
+    await page.keyboard.press("ArrowRight");
+    await page.waitForFunction(
+      ([input, before]) => Number((input as HTMLInputElement).value) > (before as number),
+      [await field.elementHandle(), moved] as const,
+    );
+    await page.click('[data-action="undo"]');
+    await page.click('[data-action="undo"]');
+    await page.waitForSelector('.path-stage[data-stage="lines"]:not(:has-text("choices changed"))');
+    expect(watched.troubles).toEqual([]);
   });
 });
 
@@ -173,7 +184,7 @@ describe("files", () => {
     await page.waitForSelector('.figure[data-state="drawn"]');
   });
 
-  it("are kept: result with protocol, figure as SVG and PNG", async () => {
+  it("are kept: result, protocol, figure as SVG and PNG", async () => {
     const save = async (item: string): Promise<string> => {
       await page.getByRole("button", { name: "Save" }).click();
       const [download] = await Promise.all([
@@ -184,12 +195,14 @@ describe("files", () => {
       await download.saveAs(path);
       return path;
     };
-    const result = JSON.parse(readFileSync(await save("Result and protocol"), "utf8")) as { schema: string };
+    const result = JSON.parse(readFileSync(await save("Result, JSON"), "utf8")) as { schema: string };
     expect(result.schema).toBe("rungline-result/1");
-    const svg = readFileSync(await save("Figure as SVG"), "utf8");
+    const protocol = JSON.parse(readFileSync(await save("Protocol, JSON"), "utf8")) as { schema: string };
+    expect(protocol.schema).toBe("rungline-protocol/1");
+    const svg = readFileSync(await save("Figure, SVG"), "utf8");
     expect(svg).toMatch(/^<svg[\s\S]*Photon energy/);
     // Source: ISO/IEC 15948:2004 (PNG), 5.2: the signature of a file
-    expect(Array.from(readFileSync(await save("Figure as PNG")).subarray(0, 4))).toEqual([137, 80, 78, 71]);
+    expect(Array.from(readFileSync(await save("Figure, PNG")).subarray(0, 4))).toEqual([137, 80, 78, 71]);
     expect(watched.troubles).toEqual([]);
   });
 });
