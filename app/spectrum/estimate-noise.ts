@@ -1,4 +1,4 @@
-import { noiseContrasts, robustScale } from "./white-noise.ts";
+import { longContrasts, noiseContrasts, robustScale } from "./white-noise.ts";
 import { smoothCurve } from "./smooth-curve.ts";
 
 /** The noise of a curve, estimated from the curve itself. */
@@ -27,7 +27,20 @@ const CONTRASTS_PER_POINT = 3.17;
  */
 export function estimateNoise(x: Float64Array, y: Float64Array, relative: Float64Array): NoiseEstimate {
   const m = x.length;
-  const { order, z } = noiseContrasts(x, y, relative);
+  const short = noiseContrasts(x, y, relative);
+  const first = robustScale(short.z);
+  const { z } = longContrasts(
+    x,
+    y,
+    relative,
+    short,
+    smoothCurve(
+      y,
+      relative.map((factor) => factor * first),
+    ),
+    first,
+  );
+  const { order } = short;
   const common = Math.max(robustScale(z), digitNoise(y));
   const flat = relative.map((factor) => factor * common);
   const smooth = smoothCurve(y, flat);
