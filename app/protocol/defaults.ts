@@ -1,3 +1,4 @@
+import { powerProtocolSchema } from "./power-protocol.ts";
 import { PROTOCOL_SCHEMA, type Protocol } from "./protocol-schema.ts";
 
 /** What holds where neither the user nor a preset says otherwise (DEVELOPERS.md gives the reasons). */
@@ -45,4 +46,5 @@ export const DEFAULT_PROTOCOL: Protocol = {
   strength: { law: "cubic", base: "n" },
   background: [{ term: "polynomial", order: 2 }],
   uncertainty: { level: 0.6827, scale_by_residuals: false, profile: true, systematic: true, seed: 1 },
+  power: powerProtocolSchema.parse({}),
 };

@@ -1,4 +1,6 @@
 export * from "./protocol-schema.ts";
+export * from "./power-protocol.ts";
+export * from "./power-schema.ts";
 export * from "./result-schema.ts";
 export { DEFAULT_PROTOCOL } from "./defaults.ts";
 export { PRESETS, findPreset, type Preset } from "./presets.ts";

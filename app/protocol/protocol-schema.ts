@@ -1,4 +1,5 @@
 import { z } from "zod";
+import { powerProtocolSchema } from "./power-protocol.ts";
 
 // The page's content policy forbids code made from strings, which zod would otherwise use for speed.
 z.config({ jitless: true });
@@ -117,6 +118,7 @@ export const protocolSchema = z.strictObject({
     systematic: z.boolean(),
     seed: z.int().min(0),
   }),
+  power: powerProtocolSchema.prefault({}),
 });
 
 export type Protocol = z.output<typeof protocolSchema>;

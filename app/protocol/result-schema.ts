@@ -1,4 +1,5 @@
 import { z } from "zod";
+import { powerSchema } from "./power-schema.ts";
 import { protocolSchema } from "./protocol-schema.ts";
 
 export const RESULT_SCHEMA = "rungline-result/1";
@@ -185,6 +186,8 @@ export const resultSchema = z.strictObject({
   background: z.array(
     z.strictObject({ term: z.string(), name: z.string(), unit: z.string(), quantity: quantitySchema }),
   ),
+  /** Of a power series only. */
+  power: powerSchema.nullable().optional(),
   run: z.strictObject({
     version: z.string(),
     node: z.string(),

@@ -1,0 +1,2 @@
+export * from "./types.ts";
+export { placeOf, withPeaks } from "./line-table.ts";

@@ -1,0 +1,113 @@
+import type { LineQuantity, LineTable } from "./types.ts";
+
+/** Where a quantity of line `line` (index in n) in spectrum `spectrum` stands in values and covariance. */
+export function placeOf(
+  table: { readonly n: readonly number[]; readonly power_uW: readonly number[] },
+  quantity: LineQuantity,
+  spectrum: number,
+  line: number,
+): number {
+  return (quantity * table.power_uW.length + spectrum) * table.n.length + line;
+}
+
+/**
+ * What      Adds the peaks to energies, widths and areas: h = A (1 + root)/(pi G), root = sqrt(1 + 4 q^2), the highest
+ *           point of a line without instrument, and their covariance to first order. q is taken as exact: shared by
+ *           all powers, it cancels in the fall of a peak.
+ * Shapes    values (3 m k) and covariance (3mk x 3mk, row-major) at `placeOf`, without the last quantity; asymmetry (k).
+ */
+export function withPeaks(
+  n: readonly number[],
+  power_uW: readonly number[],
+  values: Float64Array,
+  covariance: Float64Array,
+  asymmetry: ArrayLike<number>,
+): LineTable {
+  const m = power_uW.length;
+  const k = n.length;
+  const block = m * k;
+  const size = 4 * block;
+  const out = new Float64Array(size);
+  out.set(values.subarray(0, 3 * block));
+  // d h/d(width, area) of each peak, at the same spectrum and line.
+  const byWidth = new Float64Array(block);
+  const byArea = new Float64Array(block);
+  for (let at = 0; at < block; at++) {
+    const q = asymmetry[at % k]!;
+    const width = values[block + at]!;
+    const per = (1 + Math.sqrt(1 + 4 * q * q)) / (Math.PI * width);
+    const peak = per * values[2 * block + at]!;
+    out[3 * block + at] = peak;
+    byArea[at] = Number.isFinite(per) ? per : 0;
+    byWidth[at] = Number.isFinite(peak) ? -peak / width : 0;
+  }
+  const full = new Float64Array(size * size);
+  const old = 3 * block;
+  for (let i = 0; i < old; i++) full.set(covariance.subarray(i * old, (i + 1) * old), i * size);
+  for (let i = 0; i < old; i++) {
+    for (let at = 0; at < block; at++) {
+      const cross =
+        byWidth[at]! * covariance[i * old + block + at]! +
+        byArea[at]! * covariance[i * old + 2 * block + at]!;
+      full[i * size + old + at] = cross;
+      full[(old + at) * size + i] = cross;
+    }
+  }
+  for (let at = 0; at < block; at++) {
+    for (let other = 0; other < block; other++) {
+      full[(old + at) * size + old + other] =
+        byWidth[at]! * full[(block + at) * size + old + other]! +
+        byArea[at]! * full[(2 * block + at) * size + old + other]!;
+    }
+  }
+  return { n, power_uW, values: out, covariance: full };
+}
+
+/** One quantity of one line over the spectra that hold it. */
+export interface LineSeries {
+  /** Indices of the spectra. */
+  readonly spectra: readonly number[];
+  readonly power: Float64Array;
+  readonly values: Float64Array;
+  /** (r x r, row-major) */
+  readonly covariance: Float64Array;
+}
+
+export function seriesOf(table: LineTable, quantity: LineQuantity, line: number): LineSeries {
+  const spectra: number[] = [];
+  for (let j = 0; j < table.power_uW.length; j++) {
+    const at = placeOf(table, quantity, j, line);
+    const usable = Number.isFinite(table.values[at]!) && table.covariance[at * table.values.length + at]! > 0;
+    if (usable) spectra.push(j);
+  }
+  const places = spectra.map((j) => placeOf(table, quantity, j, line));
+  const covariance = new Float64Array(places.length * places.length);
+  places.forEach((a, i) =>
+    places.forEach((b, j) => {
+      covariance[i * places.length + j] = table.covariance[a * table.values.length + b]!;
+    }),
+  );
+  return {
+    spectra,
+    power: Float64Array.from(spectra, (j) => table.power_uW[j]!),
+    values: Float64Array.from(places, (at) => table.values[at]!),
+    covariance,
+  };
+}
+
+/** Cross covariance (rows x columns) of two series of the same table. */
+export function crossOf(
+  table: LineTable,
+  first: { quantity: LineQuantity; line: number; spectra: readonly number[] },
+  second: { quantity: LineQuantity; line: number; spectra: readonly number[] },
+): Float64Array {
+  const out = new Float64Array(first.spectra.length * second.spectra.length);
+  first.spectra.forEach((i, a) =>
+    second.spectra.forEach((j, b) => {
+      const row = placeOf(table, first.quantity, i, first.line);
+      out[a * second.spectra.length + b] =
+        table.covariance[row * table.values.length + placeOf(table, second.quantity, j, second.line)]!;
+    }),
+  );
+  return out;
+}
