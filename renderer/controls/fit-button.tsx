@@ -9,17 +9,22 @@ export function FitButton() {
   const none = useWindow((state) => state.session.currentId === null);
   if (job === null)
     return (
-      <Button
-        className="button button-main"
-        data-old={old || undefined}
-        isDisabled={none}
-        onPress={() => void controller.fit()}
-      >
-        {old ? "Fit again" : "Fit"}
-      </Button>
+      <div className="fit-place">
+        <Button
+          className="button button-main"
+          data-old={old || undefined}
+          isDisabled={none}
+          onPress={() => void controller.fit()}
+        >
+          {old ? "Fit again" : "Fit"}
+        </Button>
+      </div>
     );
   return (
-    <div className="fit-job" data-state={job.cancelling ? "cancelling" : "running"}>
+    <div className="fit-place fit-job" data-state={job.cancelling ? "cancelling" : "running"}>
+      <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
+        Cancel
+      </Button>
       <ProgressBar value={100 * job.fraction} className="progress" aria-label="Fit">
         {({ percentage }) => (
           <>
@@ -27,13 +32,12 @@ export function FitButton() {
               <rect className="progress-ground" width="100%" height="100%" rx="2" />
               <rect className="progress-fill" width={`${percentage ?? 0}%`} height="100%" rx="2" />
             </svg>
-            <span className="small progress-step">{job.cancelling ? "stopping" : job.step}</span>
+            <span className="small progress-step" title={job.step}>
+              {job.cancelling ? "stopping" : job.step}
+            </span>
           </>
         )}
       </ProgressBar>
-      <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
-        Cancel
-      </Button>
     </div>
   );
 }

@@ -21,7 +21,7 @@ export function ReadChoices({
   const controller = useController();
   const resolved = resolveProtocol(useWindow(currentChoices));
   if (!resolved.ok) return null;
-  const { axis, signal } = resolved.value;
+  const { axis, signal, table } = resolved.value;
   const spectrum = inspection?.spectrum ?? null;
   const headers = inspection?.headers ?? [];
   const taken = (role: string): string => {
@@ -41,6 +41,44 @@ export function ReadChoices({
   return (
     <div className="choices">
       <Sentence label="How the file is read">
+        {(inspection === null || table.delimiter !== null || table.decimal !== null) && (
+          <>
+            <Clause>
+              Cells are parted by{" "}
+              <Pick
+                label="Delimiter"
+                value={table.delimiter ?? AS_READ}
+                options={[
+                  { value: AS_READ, text: "what is found" },
+                  ...(Object.entries(DELIMITERS) as [keyof typeof DELIMITERS, string][]).map(
+                    ([value, text]) => ({ value, text }),
+                  ),
+                ]}
+                onPick={(text) => {
+                  const delimiter = text === AS_READ ? null : (text as keyof typeof DELIMITERS);
+                  controller.change({ table: { delimiter } }, `delimiter ${delimiter ?? "found"}`);
+                }}
+              />
+            </Clause>
+            <Clause>
+              with a decimal{" "}
+              <Pick
+                label="Decimal mark"
+                value={table.decimal ?? AS_READ}
+                options={[
+                  { value: AS_READ, text: "mark that is found" },
+                  { value: ".", text: "point" },
+                  { value: ",", text: "comma" },
+                ]}
+                onPick={(text) => {
+                  const decimal = text === AS_READ ? null : (text as "." | ",");
+                  controller.change({ table: { decimal } }, `decimal mark ${decimal ?? "found"}`);
+                }}
+              />
+              .
+            </Clause>
+          </>
+        )}
         <Clause>
           The axis is{" "}
           <Pick
@@ -179,12 +217,14 @@ export function ReadChoices({
   );
 }
 
-/** The thickness that the header gave, in um. */
+/** The thickness that the header gave, as written there. */
 function thicknessRead(inspection: Inspection | null): string {
-  const spectrum = inspection?.spectrum;
-  if (spectrum === undefined || spectrum.transmittance === null || spectrum.unit !== "1/cm") return "unknown";
-  return String(Number((spectrum.transmittance.thickness_cm * 1e4).toPrecision(6)));
+  const fact = inspection?.spectrum.facts.find(({ key }) => key === "thickness");
+  if (fact === undefined) return "unknown";
+  return fact.value !== null && (fact.unit === "um" || fact.unit === "µm") ? String(fact.value) : fact.text;
 }
+
+const DELIMITERS = { ",": "commas", ";": "semicolons", "\t": "tabs", " ": "spaces" } as const;
 
 export function columnName(column: number, header: string): string {
   return header === "" ? `column ${column}` : header;
