@@ -1,6 +1,8 @@
 export * from "./types.ts";
 export { solveSeparable } from "./solveSeparable.ts";
 export { solveGeneral } from "./solveGeneral.ts";
+export { solveShared } from "./solveShared.ts";
+export type { SharedMember, SharedOptions, SharedSolution } from "./solveShared.ts";
 export { linearLeastSquares } from "./linearLeastSquares.ts";
 export type { LinearSolution } from "./linearLeastSquares.ts";
 export { choleskyFactor, choleskyInverse, choleskySolve, invertPositiveDefinite } from "./cholesky.ts";
