@@ -6,7 +6,7 @@
  *   node main/build.mjs [PART...]     parts: command-line, electron, window; all without a word
  */
 import { createHash } from "node:crypto";
-import { mkdir, readdir, rename, rm, stat, writeFile } from "node:fs/promises";
+import { mkdir, readdir, readFile, rename, rm, stat, writeFile } from "node:fs/promises";
 import { existsSync, readdirSync, readFileSync, statSync } from "node:fs";
 import { dirname, join, relative } from "node:path";
 import { fileURLToPath } from "node:url";
@@ -100,16 +100,34 @@ const ENGLISH_ONLY = {
   },
 };
 
+/** The pool looks for its threads' program beside itself; in the bundle that program has another name. */
+const POOL_THREAD = {
+  name: "pool-thread",
+  setup({ onLoad }) {
+    onLoad({ filter: /[\\/]piscina[\\/]dist[\\/]index\.js$/ }, async ({ path }) => {
+      const text = await readFile(path, "utf8");
+      const contents = text.replace("__dirname, 'worker.js'", "__dirname, 'pool-thread.mjs'");
+      if (contents === text) throw new Error("piscina no longer starts worker.js: see main/build.mjs");
+      return { contents };
+    });
+  },
+};
+
 async function buildCommandLine() {
   const folder = join(DIST, "main");
   const files = await bundle({
     entryPoints: {
       "command-line": "main/command-line/main.ts",
       "fit-thread": "main/services/fit-thread.ts",
+      "fit-pool-thread": "main/services/pool-thread.ts",
+      // Loaded on demand only, so the pool itself stands in parts/ too.
+      "parts/pool-thread": "node_modules/piscina/dist/worker.js",
     },
     outdir: folder,
     format: "esm",
-    plugins: [ENGLISH_ONLY],
+    plugins: [ENGLISH_ONLY, POOL_THREAD],
+    // Machine code that the pool only asks for where threads are to run at a lower priority: not here.
+    external: ["@napi-rs/nice"],
     splitting: true,
     outExtension: { ".js": ".mjs" },
     chunkNames: "parts/[name]-[hash]",
@@ -118,7 +136,8 @@ async function buildCommandLine() {
       js: [
         'import { createRequire as makeRequire } from "node:module";',
         'import { fileURLToPath as toPath } from "node:url";',
-        "const require = makeRequire(import.meta.url), __filename = toPath(import.meta.url);",
+        "const require = makeRequire(import.meta.url), __filename = toPath(import.meta.url),",
+        ' __dirname = toPath(new URL(".", import.meta.url));',
       ].join(""),
     },
   });

@@ -13,3 +13,12 @@ export {
 } from "./resolve-protocol.ts";
 export { choicesFromSetting, composeChoices } from "./set-key.ts";
 export { nearestWord } from "./nearest-word.ts";
+export {
+  parseResult,
+  parseResults,
+  parseProtocolSource,
+  wordResultIssue,
+  type ProtocolSource,
+  type ResultIssue,
+} from "./parse-result.ts";
+export { differences, type Difference } from "./differences.ts";

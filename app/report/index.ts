@@ -5,6 +5,15 @@ export { gravestFirst, noteLine } from "./notes.ts";
 export { protocolInWords } from "./protocol-in-words.ts";
 export { areaUnit, signalUnitWords, signalName } from "./area-unit.ts";
 export { resultToText, RESULT_TEXT_MARK } from "./result-to-text.ts";
-export { resultToCsv, RESULT_CSV_MARK, summaryToCsv, SUMMARY_MARK } from "./result-to-csv.ts";
+export { resultToCsv, RESULT_CSV_MARK } from "./result-to-csv.ts";
+export {
+  summaryRow,
+  summaryToCsv,
+  summaryToJson,
+  SUMMARY_COLUMNS,
+  SUMMARY_MARK,
+  SUMMARY_SCHEMA,
+  type SummaryRow,
+} from "./summary.ts";
 export { resultToJson, resultsToJson, protocolToJson } from "./result-to-json.ts";
 export { inspectionToText, type ReadingShown } from "./inspection-to-text.ts";

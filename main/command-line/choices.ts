@@ -3,10 +3,14 @@ import { resolve } from "node:path";
 import {
   choicesFromSetting,
   composeChoices,
+  parseProtocolSource,
   resolveProtocol,
   wordProtocolIssue,
+  wordResultIssue,
   type Protocol,
   type ProtocolInput,
+  type ProtocolSource,
+  type RunglineResult,
 } from "../../app/protocol/index.ts";
 import { reasonInWords } from "../services/index.ts";
 import { UsageError } from "./exit-status.ts";
@@ -22,6 +26,8 @@ export interface Choices {
   readonly choices: unknown;
   /** Spelled out, for the file beside the result. */
   readonly protocol: Protocol;
+  /** The results whose run is to be repeated, and the file they came from; null where it is a protocol alone. */
+  readonly repeats: { readonly shown: string; readonly results: readonly RunglineResult[] } | null;
 }
 
 /** Later settings win, `--set` over `--material` over `--protocol`; whatever is wrong with them is wrong usage. */
@@ -36,9 +42,11 @@ export async function readChoices(options: ChoiceOptions, workingFolder: string)
       throw new UsageError(`--set ${setting}: expected key=value, for example --set axis.medium=vacuum`);
     return choices;
   });
-  const choices = composeChoices(file, options.material ?? null, settings);
+  const choices = composeChoices(file?.choices, options.material ?? null, settings);
   const protocol = resolveProtocol(choices);
-  if (protocol.ok) return { choices, protocol: protocol.value };
+  const repeats =
+    file === null || file.results.length === 0 ? null : { shown: options.protocol!, results: file.results };
+  if (protocol.ok) return { choices, protocol: protocol.value, repeats };
   throw new UsageError(
     protocol.issues
       .map(wordProtocolIssue)
@@ -47,16 +55,15 @@ export async function readChoices(options: ChoiceOptions, workingFolder: string)
   );
 }
 
-async function readProtocolFile(path: string, shown: string): Promise<unknown> {
+async function readProtocolFile(path: string, shown: string): Promise<ProtocolSource> {
   let text: string;
   try {
     text = await readFile(path, "utf8");
   } catch (cause) {
     throw new UsageError(`--protocol ${shown}: ${reasonInWords(cause)}`);
   }
-  try {
-    return JSON.parse(text.replace(/^\uFEFF/, ""));
-  } catch (cause) {
-    throw new UsageError(`--protocol ${shown}: not JSON (${cause instanceof Error ? cause.message : ""})`);
-  }
+  const source = parseProtocolSource(text);
+  if (source.ok) return source.value;
+  const { message, remedy } = wordResultIssue(source.issues[0]!);
+  throw new UsageError(`--protocol ${shown}: ${message}; ${remedy}`);
 }

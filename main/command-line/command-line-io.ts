@@ -13,7 +13,8 @@ export interface CommandLineIo {
   readonly environment: Readonly<Record<string, string | undefined>>;
   /** Relative paths are meant from here. */
   readonly workingFolder: string;
-  makeRunner(): FitRunner;
+  /** `threads`: how many fits run at a time; 1 where it is not said. */
+  makeRunner(threads?: number): FitRunner;
   /** The moment a run began, ISO 8601, for the provenance of a result. */
   now(): string;
 }

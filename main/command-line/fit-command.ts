@@ -1,4 +1,5 @@
 import { readFile } from "node:fs/promises";
+import { availableParallelism } from "node:os";
 import { resolve } from "node:path";
 import { sha256, type Wording } from "../../app/base/index.ts";
 import type { RunglineResult } from "../../app/protocol/index.ts";
@@ -10,7 +11,10 @@ import {
   resultToCsv,
   resultToJson,
   resultToText,
+  summaryRow,
   summaryToCsv,
+  summaryToJson,
+  type SummaryRow,
 } from "../../app/report/index.ts";
 import {
   FAILURES_SCHEMA,
@@ -18,6 +22,7 @@ import {
   programVersion,
   readResultFile,
   reasonInWords,
+  removeLeftovers,
   writeWhole,
   type InputFile,
 } from "../services/index.ts";
@@ -26,9 +31,12 @@ import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT } from "./exit-status.ts";
 import { placeOutput, type Format, type OutputPlace } from "./output-place.ts";
 import { makeProgress } from "./progress-bar.ts";
+import { changesInWords, repeatInWords } from "./repeat.ts";
 
 export interface FitOptions extends ChoiceOptions {
   readonly out?: string;
+  /** Fits at a time; as many as the machine has processors where it is not said. */
+  readonly threads?: number;
   readonly format?: Format;
 }
 
@@ -41,7 +49,13 @@ interface Failure {
 /** What became of one input. */
 type Outcome =
   | { readonly type: "result"; readonly result: RunglineResult; readonly kept: boolean }
-  | { readonly type: "failure"; readonly failure: Failure; readonly stack: string }
+  | {
+      readonly type: "failure";
+      readonly failure: Failure;
+      readonly stack: string;
+      /** Whether it took a fit to find out. */
+      readonly fitted: boolean;
+    }
   | { readonly type: "cancelled" };
 
 /** `rungline fit FILE...`: spectra to results. The good ones are finished and written, the bad ones named. */
@@ -51,65 +65,132 @@ export async function fitCommand(
   io: CommandLineIo,
   signal: AbortSignal,
 ): Promise<number> {
-  const runner = io.makeRunner();
+  const began = Date.now();
+  const inputs = await listInputs(words, io.workingFolder);
+  const threads = Math.max(1, Math.min(options.threads ?? availableParallelism(), inputs.files.length));
+  const runner = io.makeRunner(threads);
   try {
     const choices = await readChoices(options, io.workingFolder);
-    const inputs = await listInputs(words, io.workingFolder);
     const place = await placeOutput(options.out, options.format, inputs, io.workingFolder);
     let status: number = EXIT.done;
-    const failures: Failure[] = [];
-    const fail = (failure: Failure, stack: string): void => {
-      failures.push(failure);
-      status = Math.max(status, failure.status);
-      for (const { message, remedy } of failure.messages)
-        io.stderr(`rungline: ${message}${remedy === "" ? "" : `\n  ${remedy}`}\n`);
-      if (stack !== "" && io.environment["RUNGLINE_DEBUG"] === "1") io.stderr(`${stack}\n`);
+    const raise = (to: number): void => {
+      status = Math.max(status, to);
     };
-    for (const folder of inputs.emptyFolders) {
-      const message = `${folder}: no spectrum files in this folder`;
-      fail({ file: folder, status: EXIT.input, messages: [{ message, remedy: "" }] }, "");
+    const failures: { readonly at: number; readonly failure: Failure }[] = [];
+    const failureText = ({ messages }: Failure, stack: string): string =>
+      messages
+        .map(({ message, remedy }) => `rungline: ${message}${remedy === "" ? "" : `\n  ${remedy}`}\n`)
+        .join("") + (stack !== "" && io.environment["RUNGLINE_DEBUG"] === "1" ? `${stack}\n` : "");
+    for (const word of inputs.nothingFound) {
+      const failure: Failure = {
+        file: word.word,
+        status: EXIT.input,
+        messages: [{ message: `${word.word}: ${word.why}`, remedy: "" }],
+      };
+      failures.push({ at: -1, failure });
+      raise(EXIT.input);
+      io.stderr(failureText(failure, ""));
     }
+    io.stderr(changesInWords(choices));
     if (place.kind === "folder") await writeWhole(place.protocol, protocolToJson(choices.protocol));
 
-    const results: RunglineResult[] = [];
-    const progress = await makeProgress(io);
-    for (const [i, input] of inputs.files.entries()) {
-      progress.begin(i + 1, inputs.files.length, input.path);
-      const kept = place.kind === "folder" ? place.results[i]! : null;
-      const outcome = await fitOne(input, choices, kept, io, (bytes) =>
-        runner.fit(
-          { file: input.file, bytes, choices: choices.choices },
-          { version: programVersion(), node: process.version, started: io.now() },
-          progress.update,
-          signal,
-        ),
-      );
-      if (outcome.type === "cancelled" || signal.aborted) {
-        progress.end("cancelled");
-        return EXIT.cancelled;
-      }
+    // Whole results are kept only where they are printed at the end: a folder of any length takes the same memory.
+    const printed: (RunglineResult | undefined)[] = [];
+    const rows: (SummaryRow | undefined)[] = [];
+    const paths = inputs.files.map((input) => input.path);
+    const progress = await makeProgress(io, paths);
+    const finish = async (i: number, outcome: Exclude<Outcome, { type: "cancelled" }>): Promise<void> => {
       if (outcome.type === "failure") {
-        progress.end("no result");
-        fail(outcome.failure, outcome.stack);
-        continue;
+        failures.push({ at: i, failure: outcome.failure });
+        raise(outcome.failure.status);
+        progress.end(i, "no result", outcome.fitted, failureText(outcome.failure, outcome.stack));
+        return;
       }
-      const { result } = outcome;
+      const { result, kept } = outcome;
       // Written first, then said to be done.
       if (place.kind === "file") await writeFile(place, result, choices);
-      else if (place.kind === "folder") await writeInFolder(place, i, result, outcome.kept);
-      progress.end(outcomeInWords(outcome));
-      for (const note of gravestFirst(result.notes)) io.stderr(`  ${noteLine(note)}\n`);
-      if (result.status !== "converged") status = Math.max(status, EXIT.fit);
-      results.push(result);
-    }
+      else if (place.kind === "folder") await writeInFolder(place, i, result, kept);
+      else printed[i] = result;
+      const notes = gravestFirst(result.notes).map((note) => `  ${noteLine(note)}\n`);
+      progress.end(i, outcomeInWords(outcome), !kept, notes.join("") + repeatInWords(choices, result));
+      if (result.status !== "converged") raise(EXIT.fit);
+      rows[i] = summaryRow(result);
+    };
+
+    let next = 0;
+    let broken: { readonly thrown: unknown } | null = null;
+    let cancelledAt: number | null = null;
+    const work = async (): Promise<void> => {
+      while (broken === null && cancelledAt === null && next < inputs.files.length) {
+        const i = next++;
+        const input = inputs.files[i]!;
+        try {
+          const outcome = await fitOne(
+            input,
+            choices,
+            place.kind === "folder" ? place.results[i]! : null,
+            io,
+            (bytes) => {
+              progress.begin(i);
+              return runner.fit(
+                { file: input.file, bytes, choices: choices.choices },
+                { version: programVersion(), node: process.version, started: io.now() },
+                (fraction, step) => progress.update(i, fraction, step),
+                signal,
+              );
+            },
+          );
+          // What was finished in the moment of cancelling is kept too.
+          if (outcome.type === "cancelled" || (signal.aborted && outcome.type === "failure")) {
+            progress.end(i, "cancelled", false);
+            cancelledAt ??= i;
+          } else await finish(i, outcome);
+          if (signal.aborted) cancelledAt ??= i;
+        } catch (thrown) {
+          broken ??= { thrown };
+        }
+      }
+    };
+    await Promise.all(Array.from({ length: runner.threads ?? 1 }, work));
+    progress.close();
+    if (broken !== null) throw (broken as { thrown: unknown }).thrown;
+    if (cancelledAt !== null) return EXIT.cancelled;
     if (place.kind === "folder") {
-      await writeWhole(place.summary, summaryToCsv(results));
-      await writeWhole(place.failures, failuresToJson(failures));
-    } else if (place.kind === "print" && results.length > 0) await io.stdout(render(results, place.format));
+      const inOrder = rows.filter((row) => row !== undefined);
+      await writeWhole(place.summary, summaryToCsv(inOrder));
+      await writeWhole(place.summaryJson, summaryToJson(inOrder));
+      failures.sort((one, other) => one.at - other.at);
+      await writeWhole(place.failures, failuresToJson(failures.map(({ failure }) => failure)));
+      const { results, protocol, summary, summaryJson, failures: failed } = place;
+      await removeLeftovers(place.folder, [...results, protocol, summary, summaryJson, failed], began);
+      if (failures.length > 0 && inputs.files.length > 1)
+        io.stderr(
+          failuresInWords(
+            failures.map(({ failure }) => failure),
+            place.failures,
+          ),
+        );
+    } else if (place.kind === "print") {
+      const results = printed.filter((result) => result !== undefined);
+      if (results.length > 0) await io.stdout(render(results, place.format));
+    }
     return status;
   } finally {
     await runner.close();
   }
+}
+
+/** Once more at the end, where a long run has carried them out of sight. */
+function failuresInWords(failures: readonly Failure[], file: string): string {
+  const lines = failures.map(
+    ({ file: one, messages }) => `  ${one}: ${withoutName(messages[0]!.message, one)}\n`,
+  );
+  const noun = failures.length === 1 ? "input" : "inputs";
+  return `${failures.length} ${noun} without a result (${file}):\n${lines.join("")}`;
+}
+
+function withoutName(message: string, file: string): string {
+  return message.startsWith(`${file}: `) ? message.slice(file.length + 2) : message;
 }
 
 async function fitOne(
@@ -119,19 +200,25 @@ async function fitOne(
   io: CommandLineIo,
   fit: (bytes: Uint8Array) => ReturnType<ReturnType<CommandLineIo["makeRunner"]>["fit"]>,
 ): Promise<Outcome> {
-  const failure = (status: number, messages: readonly Wording[], stack = ""): Outcome => ({
+  const failure = (status: number, messages: readonly Wording[], stack = "", fitted = true): Outcome => ({
     type: "failure",
     failure: { file: input.path, status, messages },
     stack,
+    fitted,
   });
   let bytes: Uint8Array;
   try {
     bytes = await readFile(resolve(io.workingFolder, input.path));
   } catch (cause) {
-    return failure(EXIT.input, [{ message: `${input.path}: ${reasonInWords(cause)}`, remedy: "" }]);
+    return failure(
+      EXIT.input,
+      [{ message: `${input.path}: ${reasonInWords(cause)}`, remedy: "" }],
+      "",
+      false,
+    );
   }
   if (keptFile !== null) {
-    const there = await keptResult(keptFile, bytes, choices);
+    const there = await keptResult(keptFile, input.file, bytes, choices);
     if (there !== null) return { type: "result", result: there, kept: true };
   }
   const outcome = await fit(bytes);
@@ -152,12 +239,13 @@ async function fitOne(
 /** What is there already for the same bytes, choices and version, since it would come out the same again. */
 async function keptResult(
   file: string,
+  inputName: string,
   bytes: Uint8Array,
   { protocol }: Choices,
 ): Promise<RunglineResult | null> {
   const there = await readResultFile(file);
   if (there === null || there.run.version !== programVersion()) return null;
-  if (there.source.sha256 !== sha256(bytes)) return null;
+  if (there.source.file !== inputName || there.source.sha256 !== sha256(bytes)) return null;
   return protocolToJson(there.protocol) === protocolToJson(protocol) ? there : null;
 }
 

@@ -18,8 +18,8 @@ export async function inspectCommand(
   const { choices } = await readChoices(options, io.workingFolder);
   const inputs = await listInputs(words, io.workingFolder);
   let status: number = EXIT.done;
-  for (const folder of inputs.emptyFolders) {
-    io.stderr(`rungline: ${folder}: no spectrum files in this folder\n`);
+  for (const { word, why } of inputs.nothingFound) {
+    io.stderr(`rungline: ${word}: ${why}\n`);
     status = EXIT.input;
   }
   let shown = 0;

@@ -1,5 +1,6 @@
 // Single files, not the room's index: what is not needed to start is loaded when a command asks for it.
 import { OutputError } from "../services/output-error.ts";
+import { makeLaterRunner } from "../services/later-runner.ts";
 import { makeThreadRunner } from "../services/thread-runner.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT } from "./exit-status.ts";
@@ -31,7 +32,14 @@ const io: CommandLineIo = {
   interactive: process.stdin.isTTY,
   environment: process.env,
   workingFolder: process.cwd(),
-  makeRunner: () => makeThreadRunner(new URL("./fit-thread.mjs", import.meta.url)),
+  // One input takes one thread, which starts sooner than a pool.
+  makeRunner: (threads = 1) =>
+    threads === 1
+      ? makeThreadRunner(new URL("./fit-thread.mjs", import.meta.url))
+      : makeLaterRunner(threads, async () => {
+          const { makePoolRunner } = await import("../services/pool-runner.ts");
+          return makePoolRunner(new URL("./fit-pool-thread.mjs", import.meta.url), threads);
+        }),
   now: () => new Date().toISOString(),
 };
 

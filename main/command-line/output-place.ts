@@ -22,6 +22,7 @@ export type OutputPlace =
       readonly folder: string;
       readonly protocol: string;
       readonly summary: string;
+      readonly summaryJson: string;
       readonly failures: string;
       /** NAME.json for each input, in order. */
       readonly results: readonly string[];
@@ -79,6 +80,7 @@ async function placeInFolder(
     folder,
     protocol: join(folder, "protocol.json"),
     summary: join(folder, "summary.csv"),
+    summaryJson: join(folder, "summary.json"),
     failures: join(folder, "failures.json"),
     results: names.map((name) => join(folder, `${name}.json`)),
     others: names.map((name) => (ending === null ? null : join(folder, name + ending))),
@@ -86,6 +88,7 @@ async function placeInFolder(
   await refuseOthers([
     [place.protocol, "protocol"],
     [place.summary, "summary"],
+    [place.summaryJson, "summary"],
     [place.failures, "failures"],
     ...place.results.map((file): [string, OutputKind] => [file, "result"]),
     ...place.others.flatMap((file): [string, OutputKind][] => (file === null ? [] : [[file, "result"]])),

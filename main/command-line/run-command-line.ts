@@ -85,7 +85,7 @@ function describeProgram(
     program
       .command("inspect")
       .description("what was read: dialect, columns, units, range, noise, what was skipped")
-      .argument("<file...>", "spectra, or folders of spectra"),
+      .argument("<file...>", "spectra, folders of spectra, or patterns with * and ?"),
   ).action(async (files: string[], options: ChoiceOptions) => {
     const { inspectCommand } = await import("./inspect-command.ts");
     end(await inspectCommand(files, options, io, signal));
@@ -95,10 +95,11 @@ function describeProgram(
     program
       .command("fit")
       .description("spectrum to result")
-      .argument("<file...>", "spectra, or folders of spectra"),
+      .argument("<file...>", "spectra, folders of spectra, or patterns with * and ?"),
   )
     .option("--out <path>", "a file for one input; a folder for several or for a folder")
     .addOption(new Option("--format <format>", "how results are written").choices(["json", "csv", "text"]))
+    .option("--threads <number>", "fits at a time (default: the number of processors)", wholeNumber)
     .action(async (files: string[], options: FitOptions) => {
       const { fitCommand } = await import("./fit-command.ts");
       end(await fitCommand(files, options, io, signal));
@@ -132,7 +133,11 @@ function describeProgram(
 
 function addChoices(command: Command): Command {
   return command
-    .option("--protocol <file>", "the choices that turn a spectrum into a result, as a protocol file", once())
+    .option(
+      "--protocol <file>",
+      "the choices that turn a spectrum into a result: a protocol file, or a result or report whose run is to be repeated",
+      once(),
+    )
     .option("--material <id>", "material preset: starting values only", once())
     .option(
       "--set <key=value>",
@@ -140,6 +145,11 @@ function addChoices(command: Command): Command {
       (setting: string, before: readonly string[]) => [...before, setting],
       [],
     );
+}
+
+function wholeNumber(text: string): number {
+  if (!/^[1-9]\d{0,2}$/.test(text)) throw new InvalidArgumentError("It is a whole number from 1 to 999.");
+  return Number(text);
 }
 
 /** An option that is given twice is more likely a slip than a wish. */

@@ -10,8 +10,10 @@ export type FitOutcome =
 
 export type Progress = (fraction: number, step: string) => void;
 
-/** Something that runs the main job: in this thread (tests) or in one of its own, so that Ctrl+C is heard. */
+/** Something that runs the main job: in this thread (tests) or in others, so that Ctrl+C is heard. */
 export interface FitRunner {
+  /** How many fits may run at a time; 1 where it is not said. */
+  readonly threads?: number;
   fit(request: FileRequest, run: RunFacts, progress: Progress, signal: AbortSignal): Promise<FitOutcome>;
   close(): Promise<void>;
 }

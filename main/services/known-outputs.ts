@@ -2,10 +2,10 @@ import { open, readFile } from "node:fs/promises";
 import {
   RESULT_SCHEMA,
   PROTOCOL_SCHEMA,
-  resultSchema,
+  parseResult,
   type RunglineResult,
 } from "../../app/protocol/index.ts";
-import { RESULT_CSV_MARK, RESULT_TEXT_MARK, SUMMARY_MARK } from "../../app/report/index.ts";
+import { RESULT_CSV_MARK, RESULT_TEXT_MARK, SUMMARY_MARK, SUMMARY_SCHEMA } from "../../app/report/index.ts";
 import { pathKind } from "./files.ts";
 
 export const FAILURES_SCHEMA = "rungline-failures/1";
@@ -30,6 +30,7 @@ async function kindOf(file: string): Promise<OutputKind | null> {
   const family = schema.slice(0, schema.lastIndexOf("/"));
   if (family === familyOf(RESULT_SCHEMA)) return "result";
   if (family === familyOf(PROTOCOL_SCHEMA)) return "protocol";
+  if (family === familyOf(SUMMARY_SCHEMA)) return "summary";
   return family === familyOf(FAILURES_SCHEMA) ? "failures" : null;
 }
 
@@ -56,8 +57,8 @@ async function beginning(file: string): Promise<string | null> {
 /** A result file read back; null where it is absent or breaks the schema. */
 export async function readResultFile(file: string): Promise<RunglineResult | null> {
   try {
-    const parsed = resultSchema.safeParse(JSON.parse(await readFile(file, "utf8")));
-    return parsed.success ? parsed.data : null;
+    const parsed = parseResult(JSON.parse(await readFile(file, "utf8")));
+    return parsed.ok ? parsed.value : null;
   } catch {
     return null;
   }

@@ -1,6 +1,7 @@
 import { readdir, realpath } from "node:fs/promises";
 import { basename, dirname, extname, join, resolve } from "node:path";
 import { SPECTRUM_ENDINGS } from "../page/index.ts";
+import { isPattern, matchPattern } from "./match-pattern.ts";
 import { pathKind } from "./files.ts";
 
 export interface InputFile {
@@ -12,19 +13,21 @@ export interface InputFile {
 
 export interface InputList {
   readonly files: readonly InputFile[];
-  /** Whether a folder was among the words, so that output goes to a folder. */
+  /** Whether a folder or pattern was among the words, so that output goes to a folder. */
   readonly hasFolder: boolean;
-  /** Folders without any spectrum. */
-  readonly emptyFolders: readonly string[];
+  /** Folders without any spectrum, and patterns that nothing fits. */
+  readonly nothingFound: readonly { readonly word: string; readonly why: string }[];
 }
 
 /**
  * Words of the command line to files. A folder stands for its own non-hidden spectrum files in the order of their
- * names, not for subfolders; a file named twice is taken once. Files that do not exist are kept: reading says so.
+ * names, not for subfolders; a pattern (* any part of a name, ? one character) stands for the files that fit it, for
+ * shells that leave patterns to the program; a file named twice is taken once. Files that do not exist are kept:
+ * reading says so.
  */
 export async function listInputs(words: readonly string[], workingFolder: string): Promise<InputList> {
   const files: InputFile[] = [];
-  const emptyFolders: string[] = [];
+  const nothingFound: { word: string; why: string }[] = [];
   const seen = new Set<string>();
   let hasFolder = false;
   const add = async (path: string): Promise<void> => {
@@ -36,7 +39,16 @@ export async function listInputs(words: readonly string[], workingFolder: string
   };
   for (const word of words) {
     const absolute = resolve(workingFolder, word);
-    if ((await pathKind(absolute)) !== "folder") {
+    const kind = await pathKind(absolute);
+    if (kind === "none" && isPattern(word)) {
+      const fitting = await matchPattern(word, workingFolder);
+      for (const path of fitting) await add(path);
+      // As with a folder, the number of files may be any, so output goes to a folder.
+      hasFolder = true;
+      if (fitting.length === 0) nothingFound.push({ word, why: "no file fits this pattern" });
+      continue;
+    }
+    if (kind !== "folder") {
       await add(word);
       continue;
     }
@@ -52,9 +64,9 @@ export async function listInputs(words: readonly string[], workingFolder: string
       found++;
       await add(join(word, name));
     }
-    if (found === 0) emptyFolders.push(word);
+    if (found === 0) nothingFound.push({ word, why: "no spectrum files in this folder" });
   }
-  return { files, hasFolder, emptyFolders };
+  return { files, hasFolder, nothingFound };
 }
 
 function isSpectrumName(name: string): boolean {

@@ -215,6 +215,7 @@ describe("several inputs and folders", () => {
       "failures.json",
       "protocol.json",
       "summary.csv",
+      "summary.json",
     ]);
     expect(JSON.parse(await get("out/failures.json"))).toStrictEqual({
       schema: "rungline-failures/1",
@@ -260,6 +261,7 @@ describe("several inputs and folders", () => {
       "protocol.json",
       "slow.json",
       "summary.csv",
+      "summary.json",
     ]);
     const { failures } = JSON.parse(await get("out/failures.json")) as {
       failures: { file: string; status: number }[];
@@ -342,6 +344,7 @@ describe("several inputs and folders", () => {
       "protocol.json",
       "run-a.csv.json",
       "summary.csv",
+      "summary.json",
     ]);
   });
 

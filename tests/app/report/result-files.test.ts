@@ -10,6 +10,7 @@ import {
   resultToCsv,
   resultToJson,
   resultToText,
+  summaryRow,
   summaryToCsv,
 } from "../../../app/report/index.ts";
 import { makeResult } from "../../main/make-result.ts";
@@ -115,7 +116,7 @@ describe("a result as CSV", () => {
 
   it("has a summary of one row a spectrum, doubts named", () => {
     const [names, first, second] = readCsv(
-      summaryToCsv([makeResult(), makeResult({ series: null, fit: null })]),
+      summaryToCsv([makeResult(), makeResult({ series: null, fit: null })].map(summaryRow)),
     );
     expect(first).toHaveLength(names!.length);
     expect(first![names!.indexOf("doubts")]).toBe("law-rejected");
