@@ -46,7 +46,8 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     defectCentre: defectCentre(protocol),
     defectHeld: protocol.series.defect === "none",
     lowestN: protocol.material.first_n ?? (protocol.material.envelope === "P" ? 2 : 1),
-    highestN: protocol.lines.max_n,
+    // The peaks speak for n whether or not the user wants all of them as lines of their own.
+    highestN: Math.max(protocol.lines.max_n, HIGHEST_N_JUDGED),
   });
   if (assignment === null) return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began);
   const start = startLadder(peaks, assignment, protocol);
@@ -147,6 +148,9 @@ function reducedChi2(full: FullFit): number {
   const { chi2, degreesOfFreedom } = full.fit.solution;
   return chi2 / Math.max(1, degreesOfFreedom);
 }
+
+/** Higher lines are hardly ever peaks of their own. */
+const HIGHEST_N_JUDGED = 40;
 
 /** Readings of n are told apart by the convention |defect - centre| <= 0.5, unless a preset or the user pins it. */
 function defectCentre(protocol: Protocol): number {

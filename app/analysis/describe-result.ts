@@ -147,7 +147,7 @@ export function describeResult(
     iterations: solution.iterations,
     reached: finiteOnly(solution.reached),
     tolerances: finiteOnly(solution.tolerances),
-    condition: solution.condition,
+    condition: Number.isFinite(solution.condition) ? solution.condition : null,
     rank: solution.rank,
     parameters,
     window_eV: [points.energy[0]!, points.energy[m - 1]!],

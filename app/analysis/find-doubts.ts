@@ -74,6 +74,16 @@ function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
       ),
     );
   }
+  if (full.range === null) {
+    notes.push(
+      doubt(
+        "series-not-determined",
+        "series",
+        `Of the lines in the fit (n = ${full.state.ns.join(", ")}) fewer than two have a determined energy and lie in the range of the level law: no gap and no Rydberg energy follow.`,
+        "name a range with two lines or more (series.fit_n), name more lines (lines.n), or leave both to auto",
+      ),
+    );
+  }
   const held = full.fit.solution.activeBounds.filter((bound) => bound !== 0).length;
   if (full.fit.solution.rank < fit.parameters - held) {
     notes.push(
