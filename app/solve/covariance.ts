@@ -22,7 +22,8 @@ const NULL_PART = 1e-6;
  * What      Covariance of least squares at a solution, (J'J)^-1 = R^-1 R^-T, from the QR of the weighted columns with
  *           every row; rank by column pivoting; parameters in the null space are told apart from those that the data
  *           still determine.
- * Shapes    columns as groups (rows x counts[g], column-major, leading dimension ld); residual (rows).
+ * Shapes    columns as groups (rows x counts[g], column-major, leading dimension ld); for `remaining` the residual (rows),
+ *           or, where that belongs to other rows, its product with the columns, J'r (n).
  * Units     covariance in products of the parameters' units; it assumes that the weights are 1/sigma and that the
  *           model is linear over one standard error. It is not scaled by the residuals.
  * Domain    finite numbers; zero columns are undetermined.
@@ -34,7 +35,7 @@ export function analyseJacobian(
   counts: readonly number[],
   ld: number,
   rows: number,
-  residual: Float64Array,
+  right: { readonly residual: Float64Array } | { readonly gradient: Float64Array },
 ): JacobianAnalysis {
   let n = 0;
   for (const count of counts) n += count;
@@ -43,6 +44,7 @@ export function analyseJacobian(
   if (n === 0) return { covariance, rank: 0, condition: 1, undetermined, remaining: 0 };
   const size = n + 1;
   const triangle = new RowBlockTriangle(size);
+  const residual = "residual" in right ? right.residual : new Float64Array(rows);
   triangle.factor([...groups, residual], [...counts, 1], [...counts.map(() => ld), ld], rows);
   const scale = new Float64Array(n);
   const small = new Float64Array(size * size);
@@ -66,7 +68,16 @@ export function analyseJacobian(
     condition = values[0]! / values[n - 1]!;
   }
   let remaining = 0;
-  for (let j = 0; j < rank; j++) remaining += small[n * size + j]! ** 2;
+  const image = new Float64Array(rank);
+  for (let j = 0; j < rank; j++) {
+    image[j] = small[n * size + j]!;
+    if ("gradient" in right) {
+      let sum = right.gradient[permutation[j]!]! * scale[permutation[j]!]!;
+      for (let i = 0; i < j; i++) sum -= small[j * size + i]! * image[i]!;
+      image[j] = sum / small[j * size + j]!;
+    }
+    remaining += image[j]! ** 2;
+  }
 
   // Columns of R^-1 (rank x rank), packed by column.
   const inverse = new Float64Array(rank * rank);

@@ -14,3 +14,5 @@ export * from "./statistics.ts";
 export { profileInterval } from "./profile.ts";
 export type { ProfileInterval, ProfileProblem } from "./profile.ts";
 export { fSurvival } from "./fDistribution.ts";
+export { condenseRows, LEAST_POINTS, NODES } from "./condense.ts";
+export type { CondensedRows, Panel } from "./condense.ts";

@@ -46,7 +46,7 @@ export function linearLeastSquares(
   const stage = new LinearStage(used, k, used, true);
   stage.solve(phi, target, coefficients, residual);
   const chi2 = stage.refine(phi, target, coefficients, residual);
-  const analysis = analyseJacobian([phi], [k], used, used, residual);
+  const analysis = analyseJacobian([phi], [k], used, used, { residual });
   const residuals = new Float64Array(rows);
   at = 0;
   for (let i = 0; i < rows; i++) if (weights[i] !== 0) residuals[i] = residual[at++]!;

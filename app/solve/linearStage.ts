@@ -83,6 +83,34 @@ export class LinearStage {
   }
 
   /**
+   * Factor of the normal equations of another matrix, which stands for the one of the next `solveWith`; false where its
+   * columns are too close to dependent.
+   */
+  factorOf(stand: LinearStage, phi: Float64Array): boolean {
+    this.normal = stand.k === 0 || stand.factorNormal(phi);
+    if (!this.normal) return false;
+    this.rank = this.k;
+    this.factor.set(stand.factor);
+    this.scale.set(stand.scale);
+    return true;
+  }
+
+  /** As `solve`, with the factor at hand in place of Phi's own: corrections by the true residual until they are spent. */
+  solveWith(phi: Float64Array, target: Float64Array, c: Float64Array, residual: Float64Array): number {
+    const { k, ld, rows } = this;
+    c.fill(0, 0, k);
+    let last = target;
+    const enough = 1e-24 * sumOfSquares(target, rows);
+    for (let turn = 0; turn < 5; turn++) {
+      const moved = this.correct(phi, last, c);
+      residualOf(phi, k, ld, rows, c, target, residual);
+      last = residual;
+      if (moved <= enough) break;
+    }
+    return sumOfSquares(residual, rows);
+  }
+
+  /**
    * Refines the last solution with residuals in twice the working precision, for as long as the corrections shrink.
    * Returns the sum of squares.
    */
@@ -111,20 +139,25 @@ export class LinearStage {
     return sumOfSquares(residual, rows);
   }
 
-  /** c += (Phi'Phi)^-1 Phi' residual, by the factor at hand. */
-  private correct(phi: Float64Array, residual: Float64Array, c: Float64Array): void {
+  /** c += (Phi'Phi)^-1 Phi' residual, by the factor at hand; what applyCorrection returns. */
+  private correct(phi: Float64Array, residual: Float64Array, c: Float64Array): number {
     transposedTimes(phi, this.k, this.ld, this.rows, residual, this.correction);
-    this.applyCorrection(c);
+    return this.applyCorrection(c);
   }
 
-  private applyCorrection(c: Float64Array): void {
+  /** Returns the square of the change in units of each column's length (0 where the factor is orthogonal). */
+  private applyCorrection(c: Float64Array): number {
     const { k, scale, correction, work, permutation, rank, small } = this;
     if (this.normal) {
       for (let j = 0; j < k; j++) work[j] = correction[j]! * scale[j]!;
       forwardSubstitute(this.factor, k, work);
       backSubstitute(this.factor, k, work);
-      for (let j = 0; j < k; j++) c[j] = c[j]! + work[j]! * scale[j]!;
-      return;
+      let square = 0;
+      for (let j = 0; j < k; j++) {
+        c[j] = c[j]! + work[j]! * scale[j]!;
+        square += work[j]! * work[j]!;
+      }
+      return square;
     }
     const rows = k + 1;
     for (let j = 0; j < rank; j++) {
@@ -137,6 +170,7 @@ export class LinearStage {
       const at = permutation[j]!;
       c[at] = c[at]! + work[j]! * scale[at]!;
     }
+    return 0;
   }
 
   /** work := R^-1 work for the leading `rank` columns. */

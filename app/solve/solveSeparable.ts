@@ -1,11 +1,19 @@
 import { NO_WATCH } from "../base/index.ts";
-import { analyseJacobian } from "./covariance.ts";
+import { Companion } from "./companion.ts";
+import { analyseJacobian, type JacobianAnalysis } from "./covariance.ts";
 import { scaledNorm, StepFinder } from "./dampedStep.ts";
 import type { Steering } from "./dampedStep.ts";
-import { sumOfSquares } from "./gram.ts";
+import { gather } from "./gather.ts";
+import { residualOf, sumOfSquares, transposedTimes } from "./gram.ts";
 import { LinearStage } from "./linearStage.ts";
 import { SteeringBuilder } from "./steering.ts";
-import type { SeparableProblem, SeparableSolution, SolveOptions, Termination } from "./types.ts";
+import type {
+  CondensedProblem,
+  SeparableProblem,
+  SeparableSolution,
+  SolveOptions,
+  Termination,
+} from "./types.ts";
 
 const EPSILON = 2 ** -52;
 
@@ -18,7 +26,8 @@ const HONEST_PROMISE = 1e-10;
 /**
  * What      Separable least squares, min over theta and c of |W (y - offset(theta) - Phi(theta) c)|^2, by variable
  *           projection: c is solved exactly for every theta, and the Levenberg-Marquardt step in theta uses the
- *           projected derivative J = P D, P the projection off the columns of Phi (Kaufman's form).
+ *           projected derivative J = P D, P the projection off the columns of Phi (Kaufman's form). Where the problem can
+ *           be condensed the search runs on the few rows first, and ends on every row.
  * Shapes    SeparableProblem in types.ts; start (p).
  * Units     those of the problem; weights are 1/sigma, so that chi2 and covariance need no further scale.
  * Domain    a start outside the bounds is moved onto them; a model that is not finite at a trial counts as a refused
@@ -32,8 +41,74 @@ export function solveSeparable(
   start: Float64Array,
   options: SolveOptions = {},
 ): SeparableSolution {
-  const search = new Search(problem, start, options);
-  return search.run();
+  const steering = options.steering ?? "auto";
+  if (problem.condense === undefined || steering !== "auto") return new Search(problem, start, options).run();
+  return solveCondensed(problem, problem.condense.bind(problem), start, options);
+}
+
+/** New condensed rows are made this often at most while the parameters move away from those they were made for. */
+const MOST_ROUNDS = 4;
+/** Steps on every row after a search that converged on few: one as a rule, a few where the rows served badly. */
+const LEAST_FULL_STEPS = 4;
+
+function solveCondensed(
+  problem: SeparableProblem,
+  condense: (theta: Float64Array) => CondensedProblem | null,
+  start: Float64Array,
+  options: SolveOptions,
+): SeparableSolution {
+  const most = options.maxIterations ?? 200;
+  let condensed = condense(start);
+  let theta = start;
+  let iterations = 0;
+  let evaluations = 0;
+  let converged = false;
+  for (let round = 0; round < MOST_ROUNDS && condensed !== null; round++) {
+    const rough = options.answer === "condensed";
+    const inner = { ...options, maxIterations: most - iterations, stride: 1 };
+    const search = new Search(condensed.problem, theta, inner, { covariance: rough });
+    const solution = search.run();
+    // A model that is not finite on the nodes may be so on the points too, but it is those that count.
+    if (solution.termination === "notFinite") break;
+    theta = solution.theta;
+    iterations += solution.iterations;
+    evaluations += solution.evaluations;
+    converged = solution.converged;
+    const serves = condensed.serves(theta);
+    if (solution.termination === "cancelled" || serves || iterations >= most) {
+      if (rough) return withEveryRow(solution, problem, condensed, iterations, evaluations);
+      break;
+    }
+    condensed = condense(theta);
+  }
+  const left = Math.max(most - iterations, converged ? LEAST_FULL_STEPS : 0);
+  const full = new Search(problem, theta, { ...options, maxIterations: left }, { condensed });
+  const solution = full.run();
+  return {
+    ...solution,
+    iterations: solution.iterations + iterations,
+    evaluations: solution.evaluations + evaluations,
+  };
+}
+
+/** Chi square and degrees of freedom of every row; fitted values and residuals stay those of the condensed rows. */
+function withEveryRow(
+  solution: SeparableSolution,
+  { weights }: SeparableProblem,
+  { lost }: CondensedProblem,
+  iterations: number,
+  evaluations: number,
+): SeparableSolution {
+  const used = weights.reduce((sum, weight) => sum + (weight === 0 ? 0 : 1), 0);
+  const chi2 = solution.chi2 + lost;
+  return { ...solution, chi2, degreesOfFreedom: used - solution.rank, iterations, evaluations };
+}
+
+interface Surroundings {
+  /** Rows that give the matrices. */
+  readonly condensed?: CondensedProblem | null;
+  /** Whether the covariance is wanted. Default true. */
+  readonly covariance?: boolean;
 }
 
 class Search {
@@ -61,6 +136,9 @@ class Search {
   private trialTarget: Float64Array;
   private readonly stage: LinearStage;
   private readonly builder: SteeringBuilder;
+  private readonly wanted: boolean;
+  private companion: Companion | null;
+  private readonly fullGradient: Float64Array;
   private readonly finder: StepFinder;
 
   private theta: Float64Array;
@@ -82,7 +160,12 @@ class Search {
   private reachedStep = Infinity;
   private reachedCost = Infinity;
 
-  constructor(problem: SeparableProblem, start: Float64Array, options: SolveOptions) {
+  constructor(
+    problem: SeparableProblem,
+    start: Float64Array,
+    options: SolveOptions,
+    surroundings: Surroundings = {},
+  ) {
     const { rows, nonlinear: p, linear: k } = problem;
     if (problem.data.length !== rows || problem.weights.length !== rows)
       throw new Error("data and weights need one entry a row");
@@ -128,6 +211,10 @@ class Search {
     this.stage = new LinearStage(m, k, m, orthogonal);
     this.builder = new SteeringBuilder(m, p, k, options.steering ?? "auto", options.stride ?? 1);
     this.finder = new StepFinder(p);
+    this.wanted = surroundings.covariance ?? true;
+    const { condensed = null } = surroundings;
+    this.companion = condensed === null || p === 0 ? null : new Companion(condensed.problem);
+    this.fullGradient = new Float64Array(p);
     this.theta = new Float64Array(p);
     for (let j = 0; j < p; j++) this.theta[j] = clamp(start[j]!, this.lower[j]!, this.upper[j]!);
     this.longest = new Float64Array(p);
@@ -163,7 +250,7 @@ class Search {
     for (;;) {
       if (watch.cancelled()) return this.finish("cancelled");
       if (!this.takeDerivatives()) return this.finish("notFinite");
-      const steering = this.builder.build(this.stage, this.phi, this.derivative, this.residual);
+      let steering = this.steer();
       this.updateScale(scale);
       this.roomWithin(low, high);
       this.reachedGradient = this.largestCosine(steering, low, high);
@@ -237,6 +324,12 @@ class Search {
         }
         if (costDone || stepDone) return this.finish(costDone ? "cost" : "step");
         if (accepted) break;
+        if (this.companion !== null) {
+          // Close to the end every step should hold: where one does not, the condensed rows are not trusted.
+          this.leaveCompanion();
+          steering = this.steer();
+          this.updateScale(scale);
+        }
         if (this.builder.thinned) {
           // A refused step may be the thinning's fault: from here on every row steers.
           this.builder.useEveryRow();
@@ -261,7 +354,28 @@ class Search {
       problem.offset(this.trial, rawOffset);
       for (let r = 0; r < m; r++) trialTarget[r] = this.weightedData[r]! - rawOffset[used[r]!]! * weight[r]!;
     }
-    return this.stage.solve(trialPhi, trialTarget, this.trialCoefficients, this.trialResidual);
+    if (this.companion !== null && !this.companion.takeColumns(this.trial, this.stage)) this.companion = null;
+    const { trialCoefficients, trialResidual } = this;
+    if (this.companion !== null)
+      return this.stage.solveWith(trialPhi, trialTarget, trialCoefficients, trialResidual);
+    return this.stage.solve(trialPhi, trialTarget, trialCoefficients, trialResidual);
+  }
+
+  /** The matrix and gradient at theta, whose columns and derivatives are at hand. */
+  private steer(): Steering {
+    if (this.companion !== null) {
+      transposedTimes(this.derivative, this.p, this.m, this.m, this.residual, this.fullGradient);
+      const steering = this.companion.steer(this.fullGradient);
+      if (steering !== null) return steering;
+      this.leaveCompanion();
+    }
+    return this.builder.build(this.stage, this.phi, this.derivative, this.residual);
+  }
+
+  /** From here on every row gives the matrices. */
+  private leaveCompanion(): void {
+    this.companion = null;
+    this.stage.solve(this.phi, this.target, this.trialCoefficients, this.trialResidual);
   }
 
   private acceptTrial(): void {
@@ -278,12 +392,15 @@ class Search {
     const { problem, p, used, weight, rawDerivatives, derivative } = this;
     if (p > 0) problem.derivatives(this.theta, this.coefficients, rawDerivatives);
     this.haveDerivatives = gather(rawDerivatives, problem.rows, p, used, weight, derivative);
+    if (this.companion !== null && !this.companion.takeDerivatives(this.theta, this.coefficients))
+      this.leaveCompanion();
     return this.haveDerivatives;
   }
 
   private updateScale(scale: Float64Array): void {
+    const { projected } = this.companion?.builder ?? this.builder;
     for (let j = 0; j < this.p; j++) {
-      this.longest[j] = Math.max(this.longest[j]!, this.builder.projected[j]!);
+      this.longest[j] = Math.max(this.longest[j]!, projected[j]!);
       if (this.options.scale !== undefined) scale[j] = 1 / this.options.scale[j]!;
       else scale[j] = this.longest[j]! > 0 ? this.longest[j]! : 1 / (Math.abs(this.theta[j]!) || 1);
     }
@@ -303,7 +420,7 @@ class Search {
 
   /** Largest cosine between the residual and a projected derivative along which the parameter may still move. */
   private largestCosine(steering: Steering, low: Float64Array, high: Float64Array): number {
-    const { projected, plain } = this.builder;
+    const { projected, plain } = this.companion?.builder ?? this.builder;
     const length = Math.sqrt(this.cost);
     if (length === 0) return 0;
     let largest = 0;
@@ -335,7 +452,7 @@ class Search {
     if (finite && termination !== "cancelled" && !this.haveDerivatives && termination !== "notFinite") {
       // The last step was accepted: what is reported about the gradient is that of the final point.
       if (this.takeDerivatives()) {
-        const steering = this.builder.build(this.stage, this.phi, this.derivative, this.residual);
+        const steering = this.steer();
         const low = new Float64Array(p);
         const high = new Float64Array(p);
         this.roomWithin(low, high);
@@ -344,15 +461,13 @@ class Search {
         reached = "notFinite";
       }
     }
-    if (this.haveDerivatives) {
+    if (this.haveDerivatives && this.wanted) {
       const free: number[] = [];
       for (let j = 0; j < p; j++) {
         activeBounds[j] = this.boundHeld(j);
         if (activeBounds[j] === 0) free.push(j);
       }
-      const columns = new Float64Array(m * free.length);
-      free.forEach((j, at) => columns.set(this.derivative.subarray(j * m, (j + 1) * m), at * m));
-      const analysis = analyseJacobian([columns, this.phi], [free.length, k], m, m, this.residual);
+      const analysis = this.analyse(free);
       ({ rank, condition, remaining } = analysis);
       const place = [...free, ...Array.from({ length: k }, (_, j) => p + j)];
       covariance.fill(0);
@@ -391,6 +506,29 @@ class Search {
     };
   }
 
+  /** Covariance of the free parameters, from the condensed rows where those agree with every row. */
+  private analyse(free: readonly number[]): JacobianAnalysis {
+    const { k, m, companion, residual } = this;
+    const pick = (derivative: Float64Array, rows: number): Float64Array => {
+      if (free.length === this.p) return derivative;
+      const columns = new Float64Array(rows * free.length);
+      free.forEach((j, at) => columns.set(derivative.subarray(j * rows, (j + 1) * rows), at * rows));
+      return columns;
+    };
+    const all = [pick(this.derivative, m), this.phi];
+    const counts = [free.length, k];
+    if (companion !== null && (this.rawIsCurrent || companion.takeColumns(this.theta, this.stage))) {
+      const { rows } = companion;
+      const few = [pick(companion.derivative, rows), companion.phi];
+      const gradient = new Float64Array(free.length + k);
+      transposedTimes(all[0]!, free.length, m, m, residual, gradient);
+      transposedTimes(this.phi, k, m, m, residual, gradient.subarray(free.length));
+      const analysis = analyseJacobian(few, counts, rows, rows, { gradient });
+      if (sameWeakDirections(analysis, few, rows, all, m, counts)) return analysis;
+    }
+    return analyseJacobian(all, counts, m, m, { residual });
+  }
+
   /** -1 or 1 where the parameter stands at a bound and the cost would fall beyond it (or the bounds coincide). */
   private boundHeld(j: number): -1 | 0 | 1 {
     const { m, derivative, residual } = this;
@@ -404,35 +542,70 @@ class Search {
   }
 }
 
-/** Weighted rows of the columns that are in use; false where one of them is not finite. */
-function gather(
-  raw: Float64Array,
-  rawRows: number,
-  count: number,
-  used: Int32Array,
-  weight: Float64Array,
-  out: Float64Array,
+/** Directions that are compared: those that the data determine worst, where condensed rows would err most. */
+const DIRECTIONS = 3;
+const TURNS = 4;
+/** A variance of the condensed rows may differ from that of every row by this part. */
+const AGREEMENT = 1e-8;
+
+/**
+ * Whether condensed rows J and all rows give the same |J v|^2 along the eigenvectors v of the covariance with the largest
+ * values (of the correlation matrix, so that units do not matter), found by subspace iteration.
+ */
+function sameWeakDirections(
+  analysis: JacobianAnalysis,
+  few: readonly Float64Array[],
+  fewRows: number,
+  all: readonly Float64Array[],
+  allRows: number,
+  counts: readonly number[],
 ): boolean {
-  const m = used.length;
-  let check = 0;
-  for (let j = 0; j < count; j++) {
-    const from = j * rawRows;
-    const to = j * m;
-    if (m === rawRows) {
-      for (let r = 0; r < m; r++) {
-        const value = raw[from + r]! * weight[r]!;
-        out[to + r] = value;
-        check += value * 0;
+  const { covariance, rank } = analysis;
+  const n = counts.reduce((sum, count) => sum + count, 0);
+  if (rank < n) return false;
+  const sigma = Float64Array.from({ length: n }, (_, i) => Math.sqrt(covariance[i * n + i]!));
+  const vectors: Float64Array[] = [];
+  for (let d = 0; d < Math.min(DIRECTIONS, n); d++) {
+    let v = Float64Array.from({ length: n }, (_, i) => Math.cos((d + 1) * (i + 0.5)));
+    for (let turn = 0; turn < TURNS; turn++) {
+      const next = new Float64Array(n);
+      for (let i = 0; i < n; i++)
+        for (let j = 0; j < n; j++) next[i]! += (covariance[i * n + j]! / (sigma[i]! * sigma[j]!)) * v[j]!;
+      for (const other of vectors) {
+        let part = 0;
+        for (let i = 0; i < n; i++) part += other[i]! * next[i]!;
+        for (let i = 0; i < n; i++) next[i]! -= part * other[i]!;
       }
-    } else {
-      for (let r = 0; r < m; r++) {
-        const value = raw[from + used[r]!]! * weight[r]!;
-        out[to + r] = value;
-        check += value * 0;
-      }
+      const length = Math.sqrt(next.reduce((sum, value) => sum + value * value, 0));
+      v = next.map((value) => value / length);
     }
+    vectors.push(v);
   }
-  return check === 0;
+  return vectors.every((v) => {
+    // In units of the covariance: C v = lambda v means the direction C v of the parameters, of length |J C v|.
+    const direction = new Float64Array(n);
+    for (let i = 0; i < n; i++)
+      for (let j = 0; j < n; j++) direction[i]! += (covariance[i * n + j]! / sigma[j]!) * v[j]!;
+    const a = imageSquare(few, fewRows, counts, direction);
+    const b = imageSquare(all, allRows, counts, direction);
+    return Math.abs(a - b) <= AGREEMENT * b;
+  });
+}
+
+/** |J v|^2 of columns in groups. */
+function imageSquare(
+  groups: readonly Float64Array[],
+  rows: number,
+  counts: readonly number[],
+  v: Float64Array,
+): number {
+  const image = new Float64Array(rows);
+  let at = 0;
+  groups.forEach((group, g) => {
+    residualOf(group, counts[g]!, rows, rows, v.subarray(at, at + counts[g]!), image, image);
+    at += counts[g]!;
+  });
+  return sumOfSquares(image, rows);
 }
 
 function clamp(value: number, low: number, high: number): number {

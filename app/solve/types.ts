@@ -28,6 +28,20 @@ export interface SeparableProblem {
   derivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void;
   /** The part of the model without a linear coefficient (m). */
   offset?(theta: Float64Array, out: Float64Array): void;
+  /** The same problem on few rows, good for parameters near theta; null where none is to be had. */
+  condense?(theta: Float64Array): CondensedProblem | null;
+}
+
+/**
+ * Few rows that stand for all of them (condense.ts): the solver goes most of its way on these, and they give the matrix
+ * of its last steps; gradient, residuals and chi square of the answer are those of every row.
+ */
+export interface CondensedProblem {
+  readonly problem: SeparableProblem;
+  /** Weighted squares of the data that the rows cannot hold: chi square of the rows + lost = that of every row. */
+  readonly lost: number;
+  /** Whether the rows still stand for all of them at these parameters. */
+  serves(theta: Float64Array): boolean;
 }
 
 export interface GeneralProblem {
@@ -71,6 +85,11 @@ export interface SolveOptions {
   readonly watch?: Watch | undefined;
   /** The matrix that steers the step takes every stride-th row only; gradient and covariance take all. Default 1. */
   readonly stride?: number | undefined;
+  /**
+   * `exact`: from every row, by orthogonal factors, or from condensed rows that were tested against every row. `condensed`:
+   * where the problem has condensed rows the whole answer is theirs, for fits that only prepare the next one. Default `exact`.
+   */
+  readonly answer?: "exact" | "condensed" | undefined;
   /** `auto` uses normal equations where they are safe; the others are for tests. Default `auto`. */
   readonly steering?: "auto" | "normal" | "orthogonal" | undefined;
 }
