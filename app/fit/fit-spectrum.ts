@@ -124,26 +124,7 @@ export function describeFit(problem: SpectrumProblem, solution: SeparableSolutio
   const area = coefficients.slice(0, k);
   const shared = problem.asymmetryOf(theta);
   const asymmetry = Float64Array.from(spec.ns, (_, j) => (free ? coefficients[k + j]! / area[j]! : shared));
-  // Rows of d(line parameters)/d(theta, c), sparse: place and factor.
-  const rows: [number, number][][] = [];
-  const law = new Float64Array(LEVEL.size);
-  for (let j = 0; j < k; j++) {
-    if (layout.energyAt[j]! >= 0) rows.push([[layout.energyAt[j]!, 1]]);
-    else {
-      levelLaw(spec.ns[j]!, { ...problem.lawsAt(theta).levels, defect4: 0 }, law);
-      rows.push(Array.from({ length: layout.lawCount }, (_, i): [number, number] => [i, law[1 + i]!]));
-    }
-  }
-  for (let j = 0; j < k; j++) rows.push([[layout.widthAt[j]!, 1]]);
-  for (let j = 0; j < k; j++) rows.push([[p + j, 1]]);
-  for (let j = 0; j < k; j++) {
-    if (free)
-      rows.push([
-        [p + k + j, 1 / area[j]!],
-        [p + j, -asymmetry[j]! / area[j]!],
-      ]);
-    else rows.push(layout.asymmetryAt >= 0 ? [[layout.asymmetryAt, 1]] : []);
-  }
+  const rows = lineRows(problem, theta, coefficients);
   const count = 4 * k;
   const lineCovariance = new Float64Array(count * count);
   for (let a = 0; a < count; a++) {
@@ -184,6 +165,42 @@ export function describeFit(problem: SpectrumProblem, solution: SeparableSolutio
     })),
     atBound,
   };
+}
+
+/**
+ * Rows of d(energies, widths, areas, asymmetries)/d(theta, c), each block in the order of the lines; sparse: place and
+ * factor.
+ */
+export function lineRows(
+  problem: SpectrumProblem,
+  theta: Float64Array,
+  coefficients: Float64Array,
+): [number, number][][] {
+  const { spec, layout } = problem;
+  const k = spec.ns.length;
+  const p = layout.count;
+  const free = spec.asymmetry === "free";
+  const rows: [number, number][][] = [];
+  const law = new Float64Array(LEVEL.size);
+  for (let j = 0; j < k; j++) {
+    if (layout.energyAt[j]! >= 0) rows.push([[layout.energyAt[j]!, 1]]);
+    else {
+      levelLaw(spec.ns[j]!, problem.tiedLaw(theta), law);
+      rows.push(Array.from({ length: layout.lawCount }, (_, i): [number, number] => [i, law[1 + i]!]));
+    }
+  }
+  for (let j = 0; j < k; j++) rows.push([[layout.widthAt[j]!, 1]]);
+  for (let j = 0; j < k; j++) rows.push([[p + j, 1]]);
+  for (let j = 0; j < k; j++) {
+    const area = coefficients[j]!;
+    if (free)
+      rows.push([
+        [p + k + j, 1 / area],
+        [p + j, -coefficients[k + j]! / area ** 2],
+      ]);
+    else rows.push(layout.asymmetryAt >= 0 ? [[layout.asymmetryAt, 1]] : []);
+  }
+  return rows;
 }
 
 /** The same fit with every variance multiplied: standard errors scaled by the residuals. */

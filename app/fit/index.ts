@@ -1,5 +1,6 @@
 export * from "./model-spec.ts";
 export * from "./fit-spectrum.ts";
+export * from "./joint-fit.ts";
 export { SpectrumProblem } from "./spectrum-problem.ts";
 export { backgroundColumns } from "./background-columns.ts";
 export { levelLink, strengthShare, widthLink, type LinkData } from "./law-link.ts";

@@ -254,7 +254,8 @@ export class SpectrumProblem implements SeparableProblem {
     return column.map((value) => strength * value);
   }
 
-  private tiedLaw(theta: Float64Array): LevelValues & { defect4: number } {
+  /** The level law at theta, where levels are tied to it. */
+  tiedLaw(theta: Float64Array): LevelValues & { defect4: number } {
     const tied = this.spec.tiedLevels;
     if (tied === null) throw new Error("levels are free in this model");
     const { gap, rydberg, defect0, defect2 } = tied.values;
