@@ -2,7 +2,7 @@ import { describe, expect, test } from "vitest";
 import { doubtsOf, fixtureBytes, pullOf, resultOf } from "../../support/analyse-bytes.ts";
 import { makeSpectrum, spectrumFile } from "../../support/make-spectrum.ts";
 import { PRESET_CASES } from "../../support/presets.ts";
-import type { RunglineResult } from "../../../app/protocol/index.ts";
+import { resultSchema, type RunglineResult } from "../../../app/protocol/index.ts";
 
 const KEYS = ["gap_eV", "rydberg_eV", "defect0"] as const;
 const [yellow, arsenide] = [PRESET_CASES[0]!, PRESET_CASES[1]!];
@@ -119,6 +119,30 @@ test("a range of n named by the user is the range of the level fit", () => {
     3, 4, 5, 6, 7, 8, 9, 10,
   ]);
   for (const key of KEYS) expect(Math.abs(pullOf(named.series![key], clean[key])), key).toBeLessThan(4);
+});
+
+test("the ladder ends where the user says, and the lines above it are tail", () => {
+  const short = resultOf(bytes, { material, lines: { max_n: 7 } });
+  expect(short.lines.map((line) => line.n)).toEqual([2, 3, 4, 5, 6, 7]);
+  expect(short.tail!.from_n).toBe(8);
+  // Derived: 4 standard errors.
+  for (const key of KEYS) expect(Math.abs(pullOf(short.series![key], clean[key])), key).toBeLessThan(4);
+});
+
+test.each([
+  ["a range of n without lines", { series: { fit_n: [20, 30] } }],
+  ["a range of n upside down", { series: { fit_n: [9, 3] } }],
+  ["a single line", { lines: { n: [5] } }],
+])("%s gives no series, and a doubt says why", (_, chosen) => {
+  const result = resultOf(bytes, { material, ...chosen });
+  expect(result.series).toBeNull();
+  expect(doubtsOf(result)).toContain("series-not-determined");
+});
+
+test("a result keeps its schema where the data do not determine the model", () => {
+  const result = resultOf(bytes, { material, lines: { n: [1, 2, 3, 4, 5] } });
+  expect(doubtsOf(result)).toContain("parameters-degenerate");
+  expect(resultSchema.parse(JSON.parse(JSON.stringify(result)))).toEqual(result);
 });
 
 test("without a defect the held value is stated as exact, and a defect in the data is seen by its cost", () => {
