@@ -1,5 +1,12 @@
 import { stopIfCancelled, type Watch } from "../base/index.ts";
-import { fitSpectrum, levelLink, type FitControl, type FitPoints, type SpectrumFit } from "../fit/index.ts";
+import {
+  fitSpectrum,
+  levelLink,
+  withAxisJitter,
+  type FitControl,
+  type FitPoints,
+  type SpectrumFit,
+} from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import type { Assignment } from "./assign-n.ts";
@@ -46,7 +53,12 @@ export function startLadder(peaks: readonly Peak[], assignment: Assignment, prot
   const scaled = [...found].map(([n, peak]) => peak.width_eV * n ** 3).sort((a, b) => a - b);
   const coefficient = scaled[Math.floor(scaled.length / 2)]!;
   const energy = Float64Array.from(ns, (n) => found.get(n)?.energy_eV ?? energyOf(n, levels));
-  const width = Float64Array.from(ns, (n) => found.get(n)?.width_eV ?? coefficient / n ** 3);
+  // Peaks are as wide as line and laser line together.
+  const lorentz = protocol.lines.instrument_lorentz_fwhm_eV;
+  const width = Float64Array.from(ns, (n) => {
+    const seen = found.get(n)?.width_eV ?? coefficient / n ** 3;
+    return Math.max(LEAST_OWN_WIDTH * seen, seen - lorentz);
+  });
   const weights = [...found.values()].filter((peak) => peak.height > 0);
   const odd = weights.map((peak) => peak.odd / (2 * peak.height)).sort((a, b) => a - b);
   const law = firstLaw(ns, energy, width, found, levels, protocol.series.defect !== "none");
@@ -99,6 +111,8 @@ function firstLaw(
   return fallback;
 }
 
+/** A line keeps this part of the width it is seen with, whatever the instrument. */
+const LEAST_OWN_WIDTH = 0.2;
 /** Energies of peaks are good to about this part of the width. */
 const PEAK_ACCURACY = 0.15;
 
@@ -124,7 +138,8 @@ export function climbLadder(
   const run = (state: LadderState, control: FitControl): Climbed => {
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
-    const fit = fitSpectrum(points, model.spec, model.start, { ...control, watch });
+    const raw = fitSpectrum(points, model.spec, model.start, { ...control, watch });
+    const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
     stopIfCancelled(watch);
     return { fit, state: withLevelRange(stateAfter(fit, model.state), judgeLevels(fit, protocol)) };
   };

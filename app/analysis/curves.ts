@@ -94,7 +94,9 @@ function drawLine(n: number, j: number, full: FullFit, points: SelectedPoints): 
   const energy = Float64Array.from(energies);
   const even = new Float64Array(energy.length);
   const odd = new Float64Array(energy.length);
-  linePair(energy, 0, energy.length, lines.energy[j]!, lines.width[j]!, problem.spec.gaussStd, even, odd);
+  const { gaussStd, lineStds, instrumentLorentz } = problem.spec;
+  const width = lines.width[j]! + (instrumentLorentz ?? 0);
+  linePair(energy, 0, energy.length, lines.energy[j]!, width, lineStds?.[j] ?? gaussStd, even, odd);
   const value = even.map((one, i) => lines.area[j]! * (one + 2 * lines.asymmetry[j]! * odd[i]!));
   return { n, energy_eV: energy, value };
 }

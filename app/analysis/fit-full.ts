@@ -1,5 +1,11 @@
 import { stopIfCancelled, type Note, type Watch } from "../base/index.ts";
-import { fitSpectrum, withScaledErrors, type FitPoints, type SpectrumFit } from "../fit/index.ts";
+import {
+  fitSpectrum,
+  withAxisJitter,
+  withScaledErrors,
+  type FitPoints,
+  type SpectrumFit,
+} from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { RangeChoice } from "../series/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
@@ -114,16 +120,26 @@ function tieLevels(
     // The weights of the tail's laws stay those of the free fit: lines on a law have no errors of their own.
     state = { ...next, energySigma: free.state.energySigma };
     const selfConsistent = agrees(model.state, next, next.include, range);
-    result = { ...free, fit, state, range: tiedRange(fit, free.fit, range), solveSeconds, selfConsistent };
+    result = {
+      ...free,
+      fit,
+      state,
+      range: tiedRange(fit, free.fit, range, protocol.axis.jitter_eV),
+      solveSeconds,
+      selfConsistent,
+    };
     if (selfConsistent) break;
   }
   return result;
 }
 
-/** Standard errors scaled by the residuals where the protocol asks for it. */
+/** Standard errors scaled by the residuals where the protocol asks for it, and the jitter of the axis. */
 function withAskedErrors(fit: SpectrumFit, protocol: Protocol): SpectrumFit {
-  if (!protocol.uncertainty.scale_by_residuals) return fit;
-  return withScaledErrors(fit, fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom));
+  const { chi2, degreesOfFreedom } = fit.solution;
+  const scaled = protocol.uncertainty.scale_by_residuals
+    ? withScaledErrors(fit, chi2 / Math.max(1, degreesOfFreedom))
+    : fit;
+  return withAxisJitter(scaled, protocol.axis.jitter_eV);
 }
 
 /** The laws at the start of a pass (fitted to the lines of the pass before) and those at its end are the same. */

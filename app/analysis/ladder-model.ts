@@ -15,6 +15,7 @@ import {
 import { levelEnergy, levelSpacing, WIDTH, widthLaw } from "../laws/index.ts";
 import type { BackgroundTerm, Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
+import { slitOf } from "./instrument.ts";
 
 /**
  * What is known of the series so far: start values for the next fit, and the errors that weigh the laws the tail is
@@ -73,11 +74,13 @@ export function buildModel(
     levels.values.defect0,
   );
   const updated: LadderState = { ...state, levels: levels.values, widths: widths.values };
-  const gaussStd = (protocol.lines.slit_fwhm_eV ?? 0) / (2 * Math.sqrt(2 * Math.LN2));
+  const slit = slitOf(protocol);
   const tied = protocol.series.mode === "tied";
   const spec: ModelSpec = {
     ns: state.ns,
-    gaussStd,
+    gaussStd: slit.stdAt(levels.values.gap),
+    ...(slit.grows ? { lineStds: Float64Array.from(state.energy, (e) => slit.stdAt(e)) } : {}),
+    instrumentLorentz: protocol.lines.instrument_lorentz_fwhm_eV,
     asymmetry: choices.asymmetry,
     tiedLevels: tied
       ? { values: levels.values, count: 2 + defectCount, tiedNs: state.ns.filter((_, j) => state.include[j]) }
@@ -143,7 +146,8 @@ function describeTail(
   const strength = { law: protocol.strength.law, base: protocol.strength.base };
   return {
     fromN,
-    toN: protocol.tail.cutoff_n ?? lastTiedLine(points, state, fromN),
+    toN:
+      protocol.tail.cutoff_n ?? lastTiedLine(points, state, fromN, protocol.lines.instrument_lorentz_fwhm_eV),
     below: linesBelow(points, state, protocol),
     levels: state.levels,
     levelLink: levels,
@@ -168,7 +172,7 @@ function describeTail(
 }
 
 /** Lines are summed one by one until they run together, or stand closer than the points can tell. */
-function lastTiedLine(points: FitPoints, state: LadderState, fromN: number): number {
+function lastTiedLine(points: FitPoints, state: LadderState, fromN: number, lorentz: number): number {
   const out = new Float64Array(WIDTH.size);
   const { energy } = points;
   let i = energy.length - 1;
@@ -178,7 +182,7 @@ function lastTiedLine(points: FitPoints, state: LadderState, fromN: number): num
     const at = energyOf(n, state.levels);
     while (i > 1 && energy[i - 1]! > at) i--;
     const step = i > 0 ? energy[i]! - energy[i - 1]! : 0;
-    if (out[WIDTH.width]! >= BLENDED * gap || gap < 2 * step) return n - 1;
+    if (out[WIDTH.width]! + lorentz >= BLENDED * gap || gap < 2 * step) return n - 1;
   }
   return fromN + MOST_TIED_LINES - 1;
 }

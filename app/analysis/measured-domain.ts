@@ -9,6 +9,7 @@ import {
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { fitEveryPoint, type FullFit } from "./fit-full.ts";
+import { slitOf, withoutSlit } from "./instrument.ts";
 import type { ModelChoices } from "./ladder-model.ts";
 import type { SelectedPoints } from "./select-points.ts";
 
@@ -24,7 +25,6 @@ export interface DomainFit {
 
 /** Above this relative noise of T the logarithm is biased by more than half a percent of an optical depth. */
 const NOISY = 0.1;
-const STD_OF_FWHM = 1 / (2 * Math.sqrt(2 * Math.LN2));
 /** A loss of area below this part is not worth a doubt. */
 const LEAST_BIAS = 5e-4;
 const ABOUT = "fit.domain";
@@ -45,7 +45,9 @@ export function fitInDomain(
   watch: Watch,
   report: (pass: number) => void,
 ): DomainFit {
-  const slit = protocol.lines.slit_fwhm_eV ?? 0;
+  const instrument = slitOf(protocol);
+  const { gap } = full.state.levels;
+  const slit = instrument.fwhmAt(gap);
   const depth = depthPerSignal(spectrum);
   const noise = noiseOfLight(spectrum, points);
   const { domain } = protocol.lines;
@@ -66,14 +68,17 @@ export function fitInDomain(
 
   const selected =
     spectrum.transmittance === null ? points : everyReading(spectrum, points, protocol.mask_eV);
-  const light = lightOf(spectrum, selected, full, depth, slit * STD_OF_FWHM);
+  const light = {
+    ...lightOf(spectrum, selected, full, depth, instrument.stdAt(gap)),
+    slitReference: instrument.grows ? gap : null,
+  };
   const frame = [light.energy[0]!, light.energy[light.energy.length - 1]!] as const;
   let last = full.fit;
   let linearised: FitPoints = selected;
   const measured = fitEveryPoint(
     selected,
     full.state,
-    { ...protocol, lines: { ...protocol.lines, slit_fwhm_eV: null } },
+    withoutSlit(protocol),
     spectrum.unit,
     choices,
     watch,
@@ -94,7 +99,7 @@ export function fitInDomain(
       ...measured,
       domain: {
         name: "transmittance",
-        notes: [domainNote(spectrum, protocol, noise, depth)],
+        notes: [domainNote(spectrum, protocol, slit, noise, depth)],
         answered: ["saturated-points", "low-transmission"],
       },
     },
@@ -189,11 +194,10 @@ const percent = (part: number): string => `${(100 * part).toPrecision(2)} %`;
 const ueV = (value: number): string => `${Number((1e6 * value).toPrecision(4))} ueV`;
 const countOf = (number: number): string => `${number} point${number === 1 ? "" : "s"}`;
 
-function domainNote(spectrum: Spectrum, protocol: Protocol, noise: Noise, depth: number): Note {
-  const slit = protocol.lines.slit_fwhm_eV;
+function domainNote(spectrum: Spectrum, protocol: Protocol, slit: number, noise: Noise, depth: number): Note {
   const reasons = [
     ...(protocol.lines.domain === "transmittance" ? ["the protocol asks for it"] : []),
-    ...(slit === null ? [] : [`the slit of ${ueV(slit)} averages light, not absorption`]),
+    ...(slit === 0 ? [] : [`the slit of ${ueV(slit)} averages light, not absorption`]),
     ...(noise.noisy > 0
       ? [
           `the noise exceeds a tenth of the transmitted light at ${countOf(noise.noisy)}, where the logarithm is biased`,

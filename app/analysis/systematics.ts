@@ -1,5 +1,5 @@
 import { stopIfCancelled, type Watch } from "../base/index.ts";
-import { fitSpectrum, type FitPoints } from "../fit/index.ts";
+import { fitSpectrum, withAxisJitter, type FitPoints } from "../fit/index.ts";
 import type { BackgroundTerm, Protocol, RunglineResult } from "../protocol/index.ts";
 import { fitLevels, type LevelFit } from "../series/index.ts";
 import { informationCriteria, runsTest } from "../solve/index.ts";
@@ -149,12 +149,13 @@ function runTrial(
     unit,
     trial.choices,
   );
-  const fit = fitSpectrum(part, model.spec, model.start, {
+  const raw = fitSpectrum(part, model.spec, model.start, {
     watch,
     maxIterations: 20,
     gradientTolerance: 1e-4,
     costTolerance: 1e-6,
   });
+  const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
   // A fit that was stopped has values of no meaning.
   stopIfCancelled(watch);
   const places = determinedPlaces(fit, 0).filter((j) => reference.n.includes(fit.lines.ns[j]!));

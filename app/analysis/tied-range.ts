@@ -11,7 +11,7 @@ const SIZE = LEVEL_NAMES.length;
  *           freedom for every line beyond the parameters (likelihood ratio).
  * Shapes    gain (5 x lines): d parameters/d energies along the law, so that covariances of lines and law agree.
  */
-export function tiedRange(tied: SpectrumFit, free: SpectrumFit, range: RangeChoice): RangeChoice {
+export function tiedRange(tied: SpectrumFit, free: SpectrumFit, range: RangeChoice, jitter = 0): RangeChoice {
   const { spec, layout } = tied.problem;
   const { theta, covariance } = tied.solution;
   if (spec.tiedLevels === null) return range;
@@ -33,6 +33,11 @@ export function tiedRange(tied: SpectrumFit, free: SpectrumFit, range: RangeChoi
   );
   const gain = new Float64Array(SIZE * ns.length);
   gain.set(link.gain);
+  // Each line stands off the law by its own error of the axis.
+  for (let i = 0; i < SIZE; i++)
+    for (let j = 0; j < SIZE; j++)
+      for (let l = 0; l < ns.length; l++)
+        c[i * SIZE + j]! += jitter * jitter * gain[i * ns.length + l]! * gain[j * ns.length + l]!;
   const estimates: Estimates = { ...range.fit.estimates, values, covariance: c };
   const degreesOfFreedom = ns.length - count;
   const chi2 = Math.max(0, tied.solution.chi2 - free.solution.chi2);

@@ -1,5 +1,5 @@
 import type { Watch } from "../base/index.ts";
-import { fitSpectrum } from "../fit/index.ts";
+import { fitSpectrum, withAxisJitter } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { leastSignificance, significances } from "./climb-ladder.ts";
@@ -50,12 +50,13 @@ export function fitWithoutTail(
     const half = 0.5 * spacing(last, from.levels);
     const points = selectPoints(spectrum, protocol.mask_eV, low, energyOf(last, from.levels) + half);
     const model = buildModel(points, from, protocol, spectrum.unit, { ...choices, tail: false });
-    const fit = fitSpectrum(points, model.spec, model.start, {
+    const raw = fitSpectrum(points, model.spec, model.start, {
       watch,
       gradientTolerance: 1e-5,
       costTolerance: 1e-7,
       maxIterations: 60,
     });
+    const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
     const reducedChi2 = fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom);
     const after = stateAfter(fit, model.state);
     const seen = significances(fit);

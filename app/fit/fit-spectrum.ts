@@ -214,3 +214,17 @@ export function withScaledErrors(fit: SpectrumFit, variance: number): SpectrumFi
     background: fit.background.map((column) => ({ ...column, sigma: column.sigma * scale })),
   };
 }
+
+/** The same fit with an error of the axis that differs from line to line, in quadrature to the energies. */
+export function withAxisJitter(fit: SpectrumFit, jitter: number): SpectrumFit {
+  if (!(jitter > 0)) return fit;
+  const covariance = fit.lines.covariance.slice();
+  const k = fit.lines.ns.length;
+  const tied = fit.problem.spec.tiedLevels?.tiedNs ?? [];
+  fit.lines.ns.forEach((n, j) => {
+    // A line on the level law has the law's error; its own shift is carried to the law instead.
+    const at = j * 4 * k + j;
+    if (!tied.includes(n) && covariance[at]! > 0) covariance[at]! += jitter * jitter;
+  });
+  return { ...fit, lines: { ...fit.lines, covariance } };
+}

@@ -72,6 +72,10 @@ export interface ModelSpec {
   readonly ns: readonly number[];
   /** Standard deviation of the Gaussian instrument in eV; 0 for none. */
   readonly gaussStd: number;
+  /** The same for each line where it changes over the window (`gaussStd` then holds at the gap). Shape (lines). */
+  readonly lineStds?: Float64Array;
+  /** FWHM of a Lorentzian instrument in eV: adds to every width, which are those without it. */
+  readonly instrumentLorentz?: number;
   readonly asymmetry: "shared" | "free" | "zero";
   /**
    * `null`: every line energy is free. Else the energies of the lines in `tiedNs` are the level law itself, with

@@ -1,6 +1,7 @@
 import { LEVEL, levelLaw } from "../laws/index.ts";
 import { linePair, linePairWithDerivatives } from "../lines/index.ts";
-import type { SeparableProblem } from "../solve/index.ts";
+import type { CondensedProblem, SeparableProblem } from "../solve/index.ts";
+import { condenseSpectrum } from "./condense-spectrum.ts";
 import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
 import { TailEvaluator } from "./tail.ts";
 
@@ -34,7 +35,7 @@ export class SpectrumProblem implements SeparableProblem {
   readonly weights: Float64Array;
   readonly layout: ThetaLayout;
   readonly spec: ModelSpec;
-  private readonly points: FitPoints;
+  readonly points: FitPoints;
   private readonly tail: TailEvaluator | null;
   private readonly profile: {
     l: Float64Array;
@@ -57,7 +58,8 @@ export class SpectrumProblem implements SeparableProblem {
     this.layout = makeLayout(spec);
     this.nonlinear = this.layout.count;
     this.linear = k * (spec.asymmetry === "free" ? 2 : 1) + spec.background.length;
-    this.tail = spec.tail === null ? null : new TailEvaluator(points, spec.tail, spec.gaussStd);
+    this.tail =
+      spec.tail === null ? null : new TailEvaluator(points, spec.tail, spec.gaussStd, spec.instrumentLorentz);
     const make = (): Float64Array => new Float64Array(m);
     this.profile = { l: make(), d: make(), lE: make(), lG: make(), dE: make(), dG: make() };
   }
@@ -87,6 +89,11 @@ export class SpectrumProblem implements SeparableProblem {
     if (at >= 0) return theta[at]!;
     levelLaw(this.spec.ns[j]!, this.tiedLaw(theta), this.law);
     return this.law[LEVEL.energy]!;
+  }
+
+  /** Standard deviation of the Gaussian instrument at line j. */
+  private stdOf(j: number): number {
+    return this.spec.lineStds?.[j] ?? this.spec.gaussStd;
   }
 
   asymmetryOf(theta: Float64Array): number {
@@ -122,6 +129,20 @@ export class SpectrumProblem implements SeparableProblem {
     };
   }
 
+  /** Full width of line j, without the instrument. */
+  widthOf(j: number, theta: Float64Array): number {
+    return theta[this.layout.widthAt[j]!]!;
+  }
+
+  /** The same model of other points, `spec` with its background columns on those. */
+  onPoints(points: FitPoints, spec: ModelSpec): SpectrumProblem {
+    return new SpectrumProblem(points, spec);
+  }
+
+  condense(theta: Float64Array): CondensedProblem | null {
+    return condenseSpectrum(this, theta);
+  }
+
   /** Columns of the background begin here among the linear coefficients. */
   get backgroundAt(): number {
     return this.linear - this.spec.background.length;
@@ -135,7 +156,8 @@ export class SpectrumProblem implements SeparableProblem {
     const free = spec.asymmetry === "free";
     const tail = this.tailColumn(theta, false);
     for (let j = 0; j < k; j++) {
-      linePair(points.energy, 0, m, this.energyOf(j, theta), theta[layout.widthAt[j]!]!, spec.gaussStd, l, d);
+      const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
+      linePair(points.energy, 0, m, this.energyOf(j, theta), width, this.stdOf(j), l, d);
       const at = j * m;
       const share = spec.tail?.strengthShare[j] ?? 0;
       const odd = free ? 0 : 2 * q;
@@ -164,8 +186,8 @@ export class SpectrumProblem implements SeparableProblem {
         0,
         m,
         energy,
-        theta[layout.widthAt[j]!]!,
-        spec.gaussStd,
+        theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0),
+        this.stdOf(j),
         l,
         d,
         lE,

@@ -42,21 +42,29 @@ export class TailEvaluator {
   private readonly points: FitPoints;
   private readonly spec: TailSpec;
   private readonly gaussStd: number;
+  private readonly lorentz: number;
   private readonly grid: SparseGrid;
   private readonly scratch: Float64Array[];
   private readonly sums: Float64Array[];
   private readonly bands: readonly BandEdge[];
   private readonly bandScratch: Record<BandColumn, Float64Array>;
 
-  constructor(points: FitPoints, spec: TailSpec, gaussStd: number) {
+  /** `lorentz`: FWHM of a Lorentzian instrument, which adds to every width. */
+  constructor(points: FitPoints, spec: TailSpec, gaussStd: number, lorentz = 0) {
     this.points = points;
     this.spec = spec;
     this.gaussStd = gaussStd;
+    this.lorentz = lorentz;
     this.bands = groupBands(spec);
     const m = points.energy.length;
     const { gap, rydberg, defect0 } = spec.levels;
     const low = spec.toN >= spec.fromN ? gap - rydberg / (spec.fromN - defect0) ** 2 : gap;
-    this.grid = makeSparseGrid(points.energy, low, gap, 1.5 * (gap - low) + 30 * spec.widths.floor);
+    this.grid = makeSparseGrid(
+      points.energy,
+      low,
+      gap,
+      1.5 * (gap - low) + 30 * (spec.widths.floor + lorentz),
+    );
     const nodes = this.grid.nodes.length;
     this.scratch = Array.from({ length: 6 }, () => new Float64Array(nodes));
     this.sums = Array.from({ length: 2 + LEVEL_COUNT + WIDTH_COUNT }, () => new Float64Array(nodes));
@@ -162,7 +170,7 @@ export class TailEvaluator {
       0,
       energies.length,
       level[LEVEL.energy]!,
-      width[WIDTH.width]!,
+      width[WIDTH.width]! + this.lorentz,
       this.gaussStd,
       l,
       d,
@@ -193,7 +201,7 @@ export class TailEvaluator {
     for (const { edgeN, step } of this.bands) {
       levelLaw(edgeN, law, level);
       widthLaw(edgeN, spec.levels.defect0, widths, width);
-      const lawWidth = width[WIDTH.width]!;
+      const lawWidth = width[WIDTH.width]! + this.lorentz;
       averagedTail(
         nodes,
         0,
@@ -232,7 +240,7 @@ export class TailEvaluator {
     const nodes = grid.nodes;
     const width = new Float64Array(WIDTH.size);
     widthLaw(FAR_N, spec.levels.defect0, widths, width);
-    const limit = Math.max(0, width[WIDTH.width]!);
+    const limit = Math.max(0, width[WIDTH.width]!) + this.lorentz;
     continuumPair(nodes, 0, nodes.length, law.gap, law.rydberg, spec.envelope, this.edgeWidth(limit), out);
     addFromGrid(grid, out.absorptive, 1, columns.heldEven);
     if (spec.continuumOdd) addFromGrid(grid, out.dispersive, 1, columns.heldOdd);
@@ -284,7 +292,7 @@ export class TailEvaluator {
         0,
         m,
         level[LEVEL.energy]!,
-        width[WIDTH.width]!,
+        width[WIDTH.width]! + this.lorentz,
         this.gaussStd,
         l,
         d,
@@ -314,7 +322,7 @@ export class TailEvaluator {
 }
 
 /** Lower edge of a group of lines, as a half-integer n, and by how much its height exceeds that of the group below. */
-interface BandEdge {
+export interface BandEdge {
   readonly edgeN: number;
   readonly step: number;
 }
@@ -327,7 +335,7 @@ const LAST_GROUP_N = 200;
  * spans. They differ from 1 because s_n is a law of n and the spacing one of n - delta. Taken at the law the tail was
  * built with, so they are constants of the fit.
  */
-function groupBands(spec: TailSpec): BandEdge[] {
+export function groupBands(spec: TailSpec): BandEdge[] {
   const { defect0, defect2 } = spec.levels;
   const nu = (n: number): number => n - defectAt(n, defect0, defect2);
   const edges: BandEdge[] = [];

@@ -46,10 +46,17 @@ export function fitTransmittance(
   from: SpectrumFit,
   control: FitControl = {},
 ): TransmittanceFit {
-  const sharp: ModelSpec = { ...spec, gaussStd: 0 };
+  const { lineStds: _, ...own } = spec;
+  const sharp: ModelSpec = { ...own, gaussStd: 0 };
   const points: FitPoints = { energy: light.energy, signal: light.value, sigma: light.sigma };
   const outer = new SpectrumProblem(points, sharp);
-  const grid = makeSlitGrid(light.energy, light.slitStd, featuresOf(sharp, start), coarsest(light, sharp));
+  const grid = makeSlitGrid(
+    light.energy,
+    light.slitStd,
+    featuresOf(sharp, start),
+    coarsest(light, sharp),
+    light.slitReference ?? null,
+  );
   const { nodes } = grid;
   const inner = grid.identity
     ? outer
@@ -105,14 +112,14 @@ function startCoefficients(problem: SpectrumProblem, from: SpectrumFit): Float64
 function featuresOf(spec: ModelSpec, start: FitStart): Feature[] {
   const features: Feature[] = start.lines
     .filter((line) => spec.ns.includes(line.n))
-    .map(({ energy, width }) => ({ energy, width }));
+    .map(({ energy, width }) => ({ energy, width: width + (spec.instrumentLorentz ?? 0) }));
   const { tail } = spec;
   if (tail === null) return features;
   const { gap, rydberg, defect0, defect2 } = tail.levels;
   const out = new Float64Array(WIDTH.size);
   const widthOf = (n: number): number => {
     widthLaw(n, defect0, tail.widths, out);
-    return Math.max(0, out[WIDTH.width]!);
+    return Math.max(0, out[WIDTH.width]!) + (spec.instrumentLorentz ?? 0);
   };
   const energyOf = (n: number): number => gap - rydberg / (n - defect0 - defect2 / (n - defect0) ** 2) ** 2;
   for (const n of tail.below) features.push({ energy: energyOf(n), width: widthOf(n) });
@@ -169,8 +176,12 @@ function signalModel(
 ): Float64Array {
   const m = light.energy.length;
   const points: FitPoints = { energy: light.energy, signal: light.value, sigma: light.sigma };
-  const problem =
-    light.slitStd > 0 ? new SpectrumProblem(points, { ...spec, gaussStd: light.slitStd }) : outer;
+  const { slitStd } = light;
+  const reference = light.slitReference ?? null;
+  const lineStds = Float64Array.from(spec.ns, (_, j) =>
+    reference === null ? slitStd : slitStd * (outer.energyOf(j, theta) / reference) ** 2,
+  );
+  const problem = slitStd > 0 ? new SpectrumProblem(points, { ...spec, gaussStd: slitStd, lineStds }) : outer;
   const phi = new Float64Array(m * problem.linear);
   problem.columns(theta, phi);
   const out = new Float64Array(m);

@@ -39,12 +39,16 @@ const FINEST = 1 / 40;
 /** The background asks for this many nodes over the window at least. */
 const LEAST_NODES = 400;
 
-/** `coarsest` (eV): largest distance of nodes, for backgrounds with a structure of their own. */
+/**
+ * `coarsest` (eV): largest distance of nodes, for backgrounds with a structure of their own. `reference` (eV): a slit that
+ * is constant in wavelength has `slitStd` at this energy, and grows as E^2.
+ */
 export function makeSlitGrid(
   energy: Float64Array,
   slitStd: number,
   features: readonly Feature[],
   coarsest = Infinity,
+  reference: number | null = null,
 ): SlitGrid {
   const m = energy.length;
   if (!(slitStd > 0)) {
@@ -58,7 +62,9 @@ export function makeSlitGrid(
   }
   const span = Math.max(energy[m - 1]! - energy[0]!, slitStd);
   const largest = Math.min(coarsest, span / LEAST_NODES);
-  const { nodes, reach } = placeNodes(energy, slitStd, features, largest);
+  const stdAt = (e: number): number => (reference === null ? slitStd : slitStd * (e / reference) ** 2);
+  const widest = Math.max(stdAt(energy[0]!), stdAt(energy[m - 1]!));
+  const { nodes, reach } = placeNodes(energy, widest, features, largest);
   const inverse = stencilWeights(nodes);
   const first = new Int32Array(m);
   const start = new Int32Array(m + 1);
@@ -67,13 +73,14 @@ export function makeSlitGrid(
   let low = 0;
   for (let i = 0; i < m; i++) {
     const e = energy[i]!;
-    while (nodes[low + 1]! <= e - SLIT_END * slitStd) low++;
+    const std = stdAt(e);
+    while (nodes[low + 1]! <= e - SLIT_END * widest) low++;
     let nearest = Infinity;
-    for (let j = low; j < nodes.length && nodes[j]! < e + SLIT_END * slitStd; j++)
+    for (let j = low; j < nodes.length && nodes[j]! < e + SLIT_END * std; j++)
       nearest = Math.min(nearest, reach[j]!);
-    const step = Math.min(slitStd / STEPS_PER_STD, Math.max(nearest / STEPS_PER_REACH, slitStd * FINEST));
-    const half = Math.ceil((SLIT_END * slitStd) / step);
-    const total = Math.sqrt(2 * Math.PI) * (slitStd / step);
+    const step = Math.min(std / STEPS_PER_STD, Math.max(nearest / STEPS_PER_REACH, std * FINEST));
+    const half = Math.ceil((SLIT_END * std) / step);
+    const total = Math.sqrt(2 * Math.PI) * (std / step);
     let at = low;
     let begin = nodes.length;
     let end = 0;
@@ -81,7 +88,7 @@ export function makeSlitGrid(
       const x = e + k * step;
       while (at + 2 < nodes.length && nodes[at + 1]! <= x) at++;
       const stencil = Math.max(0, Math.min(nodes.length - STENCIL, at - STENCIL / 2 + 1));
-      const u = (k * step) / slitStd;
+      const u = (k * step) / std;
       addInterpolated(nodes, inverse, stencil, x, Math.exp(-0.5 * u * u) / total, row);
       begin = Math.min(begin, stencil);
       end = Math.max(end, stencil + STENCIL);

@@ -17,6 +17,8 @@ export interface MeasuredLight {
   readonly depthPerSignal: number;
   /** Standard deviation of the Gaussian slit in eV; 0 for none. */
   readonly slitStd: number;
+  /** Energy (eV) at which `slitStd` holds, where the slit is constant in wavelength; null: the same everywhere. */
+  readonly slitReference?: number | null;
 }
 
 /**

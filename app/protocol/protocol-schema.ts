@@ -48,6 +48,8 @@ export const protocolSchema = z.strictObject({
     }),
     offset_sigma_eV: z.number().min(0),
     scale_sigma: z.number().min(0),
+    /** Error of the axis that differs from line to line, in quadrature to each line's energy. */
+    jitter_eV: z.number().min(0).default(0),
   }),
   signal: z.strictObject({
     column,
@@ -69,7 +71,13 @@ export const protocolSchema = z.strictObject({
   }),
   window_eV: interval.nullable(),
   mask_eV: z.array(interval),
-  noise: z.strictObject({ sigma: positive.nullable() }),
+  noise: z.strictObject({
+    sigma: positive.nullable(),
+    /** Readings of counts: electrons of one count, read noise in counts, and how many readings each value averages. */
+    gain_e_per_count: positive.nullable().default(null),
+    read_counts: z.number().min(0).default(0),
+    accumulations: z.number().min(1).default(1),
+  }),
   material: z.strictObject({
     preset: z.string().nullable(),
     dimension: z.number().min(1.5).max(3),
@@ -83,13 +91,24 @@ export const protocolSchema = z.strictObject({
     bohr_radius_nm: positive.nullable(),
     index: positive.nullable(),
   }),
-  lines: z.strictObject({
-    n: z.union([z.literal("auto"), z.array(z.int().min(1).max(99)).min(1)]),
-    max_n: z.int().min(2).max(60),
-    slit_fwhm_eV: positive.nullable(),
-    asymmetry: z.enum(["shared", "free", "zero"]),
-    domain: z.enum(["auto", "alpha", "transmittance"]),
-  }),
+  lines: z
+    .strictObject({
+      n: z.union([z.literal("auto"), z.array(z.int().min(1).max(99)).min(1)]),
+      max_n: z.int().min(2).max(60),
+      slit_fwhm_eV: positive.nullable(),
+      /** The same in nm (a grating: constant in wavelength, so the energy width grows as E^2) or in cm^-1; one of the three. */
+      slit_fwhm_nm: positive.nullable().default(null),
+      slit_fwhm_cm1: positive.nullable().default(null),
+      /** Full width of a Lorentzian instrument (a laser line): line widths are given without it. */
+      instrument_lorentz_fwhm_eV: z.number().min(0).default(0),
+      asymmetry: z.enum(["shared", "free", "zero"]),
+      domain: z.enum(["auto", "alpha", "transmittance"]),
+    })
+    .refine(
+      ({ slit_fwhm_eV, slit_fwhm_nm, slit_fwhm_cm1 }) =>
+        [slit_fwhm_eV, slit_fwhm_nm, slit_fwhm_cm1].filter((one) => one !== null).length < 2,
+      "the slit once: in eV, in nm or in cm^-1",
+    ),
   tail: z.strictObject({
     /** `law`: lines above the last resolved one and the continuum follow the laws; `none`: left out. */
     model: z.enum(["law", "none"]),

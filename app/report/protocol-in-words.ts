@@ -13,6 +13,7 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
   if (protocol.mask_eV.length > 0)
     said.push(`left out ${protocol.mask_eV.map((mask) => mask.join(" to ")).join(", ")} eV`);
   if (axis.offset_sigma_eV > 0) said.push(`axis offset uncertain by ${axis.offset_sigma_eV} eV`);
+  if (axis.jitter_eV > 0) said.push(`axis uncertain by ${axis.jitter_eV} eV from line to line`);
   if (axis.scale_sigma > 0) said.push(`axis scale uncertain by ${axis.scale_sigma}`);
   if (signal.thickness_um !== null) said.push(`thickness ${signal.thickness_um} µm`);
   said.push(surfaceInWords(signal.surface));
@@ -23,6 +24,10 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
     ],
   );
   if (lines.slit_fwhm_eV !== null) said.push(`instrument ${lines.slit_fwhm_eV} eV full width`);
+  if (lines.slit_fwhm_nm !== null) said.push(`instrument ${lines.slit_fwhm_nm} nm full width`);
+  if (lines.slit_fwhm_cm1 !== null) said.push(`instrument ${lines.slit_fwhm_cm1} cm^-1 full width`);
+  if (lines.instrument_lorentz_fwhm_eV > 0)
+    said.push(`Lorentzian instrument of ${lines.instrument_lorentz_fwhm_eV} eV taken off the widths`);
   said.push(`background ${protocol.background.map(termInWords).join(" + ") || "none"}`);
   said.push(tail.model === "law" ? "tail of the series tied to the laws" : "tail of the series left out");
   said.push(

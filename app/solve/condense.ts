@@ -9,11 +9,15 @@ export interface Panel {
 /** Few rows that stand for many: their weighted columns have the same products as those of all points. */
 export interface CondensedRows {
   readonly x: Float64Array;
-  readonly y: Float64Array;
+  /** One column for each column of data. */
+  readonly columns: readonly Float64Array[];
   /** root of the weight, to be used as 1/sigma */
   readonly weight: Float64Array;
-  /** Part of sum (w y)^2 that no function of these rows can take up: chi square of the rows + lost = that of the points. */
-  readonly lost: number;
+  /**
+   * Part of sum (w y)^2, by column of data, that no function of these rows can take up: chi square of the rows + lost =
+   * that of the points.
+   */
+  readonly lost: Float64Array;
 }
 
 /** Nodes of a condensed panel. */
@@ -24,11 +28,11 @@ export const LEAST_POINTS = 2 * NODES;
 
 /**
  * What      Gauss rule of each panel's own points: nodes x_k and weights W_k with
- *           sum_i w_i^2 f(x_i) = sum_k W_k f(x_k) for every polynomial f of degree up to 2 NODES - 1, and data y_k, the
- *           least-squares polynomial of degree NODES - 1 through the panel's data. A least-squares problem whose columns are
+ *           sum_i w_i^2 f(x_i) = sum_k W_k f(x_k) for every polynomial f of degree up to 2 NODES - 1, and columns y_k of
+ *           data, the least-squares polynomial of degree NODES - 1 through the panel's data. A least-squares problem whose columns are
  *           such polynomials on each panel (to the accuracy that the panels were chosen for) has the same normal matrix,
  *           right-hand side and solution on these rows as on all points.
- * Shapes    x ascending, y, weight (m); panels in order.
+ * Shapes    x ascending, columns, weight (m); panels in order.
  * Units     x any; weights are 1/sigma of y.
  * Domain    weights >= 0, at least `LEAST_POINTS` with weight in a condensed panel.
  * Accuracy  a column that is analytic within the ellipse rho of a panel leaves rho^(-2 NODES) in the matrix and
@@ -38,7 +42,7 @@ export const LEAST_POINTS = 2 * NODES;
  */
 export function condenseRows(
   x: Float64Array,
-  y: Float64Array,
+  columns: readonly Float64Array[],
   weight: Float64Array,
   panels: readonly Panel[],
 ): CondensedRows {
@@ -48,26 +52,25 @@ export function condenseRows(
     count += condensed ? NODES : end - first;
     longest = Math.max(longest, end - first);
   }
-  const out = {
+  const out: CondensedRows = {
     x: new Float64Array(count),
-    y: new Float64Array(count),
+    columns: columns.map(() => new Float64Array(count)),
     weight: new Float64Array(count),
-    lost: 0,
+    lost: new Float64Array(columns.length),
   };
-  const work = new PanelWork(longest);
+  const work = new PanelWork(longest, columns.length);
   let at = 0;
   for (const panel of panels) {
     const { first, end, condensed } = panel;
     if (condensed) {
-      out.lost += work.condense(x, y, weight, first, end, out, at);
+      work.condense(x, columns, weight, first, end, out, at);
       at += NODES;
       continue;
     }
-    for (let i = first; i < end; i++, at++) {
-      out.x[at] = x[i]!;
-      out.y[at] = y[i]!;
-      out.weight[at] = weight[i]!;
-    }
+    out.x.set(x.subarray(first, end), at);
+    out.weight.set(weight.subarray(first, end), at);
+    columns.forEach((column, c) => out.columns[c]!.set(column.subarray(first, end), at));
+    at += end - first;
   }
   return out;
 }
@@ -76,29 +79,30 @@ class PanelWork {
   private readonly t: Float64Array;
   private before: Float64Array;
   private now: Float64Array;
-  private readonly rest: Float64Array;
+  private readonly rest: readonly Float64Array[];
+  private readonly moment: readonly Float64Array[];
   private readonly alpha = new Float64Array(NODES);
   private readonly beta = new Float64Array(NODES);
-  private readonly moment = new Float64Array(NODES);
   private readonly vectors = new Float64Array(NODES * NODES);
 
-  constructor(longest: number) {
+  constructor(longest: number, columns: number) {
     this.t = new Float64Array(longest);
     this.before = new Float64Array(longest);
     this.now = new Float64Array(longest);
-    this.rest = new Float64Array(longest);
+    this.rest = Array.from({ length: columns }, () => new Float64Array(longest));
+    this.moment = Array.from({ length: columns }, () => new Float64Array(NODES));
   }
 
-  /** Writes the panel's nodes from place `at`; returns the squares that the nodes cannot hold. */
+  /** Writes the panel's nodes from place `at`, and adds what they cannot hold to `lost`. */
   condense(
     x: Float64Array,
-    y: Float64Array,
+    columns: readonly Float64Array[],
     weight: Float64Array,
     first: number,
     end: number,
-    out: { x: Float64Array; y: Float64Array; weight: Float64Array },
+    out: CondensedRows,
     at: number,
-  ): number {
+  ): void {
     const { t, rest, alpha, beta, moment, vectors } = this;
     const size = end - first;
     const middle = (x[first]! + x[end - 1]!) / 2;
@@ -108,8 +112,10 @@ class PanelWork {
       t[i] = (x[first + i]! - middle) / half;
       const w = weight[first + i]!;
       total += w * w;
-      rest[i] = w * y[first + i]!;
     }
+    columns.forEach((column, c) => {
+      for (let i = 0; i < size; i++) rest[c]![i] = weight[first + i]! * column[first + i]!;
+    });
     // Orthonormal polynomials times the root of the weight, one after another.
     const norm = Math.sqrt(total);
     for (let i = 0; i < size; i++) {
@@ -118,16 +124,10 @@ class PanelWork {
     }
     for (let j = 0; ; j++) {
       const { now, before } = this;
+      for (let c = 0; c < rest.length; c++) moment[c]![j] = takeOut(now, rest[c]!, size);
       let a = 0;
-      let b = 0;
-      for (let i = 0; i < size; i++) {
-        const p = now[i]!;
-        a += t[i]! * p * p;
-        b += p * rest[i]!;
-      }
+      for (let i = 0; i < size; i++) a += t[i]! * now[i]! * now[i]!;
       alpha[j] = a;
-      moment[j] = b;
-      for (let i = 0; i < size; i++) rest[i] = rest[i]! - b * now[i]!;
       if (j === NODES - 1) break;
       const back = j === 0 ? 0 : beta[j]!;
       let square = 0;
@@ -147,18 +147,27 @@ class PanelWork {
     // In ascending order of the nodes.
     const order = Array.from(alpha.keys()).sort((i, j) => alpha[i]! - alpha[j]!);
     order.forEach((k, place) => {
-      const head = vectors[k]!;
-      let sum = 0;
-      for (let j = 0; j < NODES; j++) sum += vectors[j * NODES + k]! * moment[j]!;
-      const root = norm * Math.abs(head);
+      const root = norm * vectors[k]!;
       out.x[at + place] = middle + half * alpha[k]!;
-      out.weight[at + place] = root;
-      out.y[at + place] = (Math.sign(head) * sum) / root;
+      out.weight[at + place] = Math.abs(root);
+      moment.forEach((one, c) => {
+        let sum = 0;
+        for (let j = 0; j < NODES; j++) sum += vectors[j * NODES + k]! * one[j]!;
+        out.columns[c]![at + place] = sum / root;
+      });
     });
-    let lost = 0;
-    for (let i = 0; i < size; i++) lost += rest[i]! * rest[i]!;
-    return lost;
+    rest.forEach((one, c) => {
+      for (let i = 0; i < size; i++) out.lost[c]! += one[i]! * one[i]!;
+    });
   }
+}
+
+/** v := v - (u'v) u for u of unit length; returns u'v. */
+function takeOut(u: Float64Array, v: Float64Array, size: number): number {
+  let part = 0;
+  for (let i = 0; i < size; i++) part += u[i]! * v[i]!;
+  for (let i = 0; i < size; i++) v[i] = v[i]! - part * u[i]!;
+  return part;
 }
 
 /**

@@ -15,6 +15,8 @@ export interface Points {
   readonly relative: Float64Array;
   /** |F - D| of each point where a ratio of counts was formed, else 1: the noise of a count becomes that of T with it. */
   readonly divisor: Float64Array;
+  /** D of each point; null where there is no dark reading. */
+  readonly dark: Float64Array | null;
   readonly dropped: number;
   readonly order: string;
   readonly notes: readonly Note[];
@@ -26,6 +28,7 @@ interface Row {
   readonly value: number;
   readonly sigma: number;
   readonly divisor: number;
+  readonly dark: number;
 }
 
 /** Two energies closer than this part of the median step are one. */
@@ -50,6 +53,7 @@ export function gatherPoints(
     sigma: chosen.sigma === null ? null : new Float64Array(m),
     relative: new Float64Array(m),
     divisor: new Float64Array(m),
+    dark: chosen.dark === null ? null : new Float64Array(m),
   };
   for (let i = 0; i < m; i++) averageGroup(groups[i]!, points, i);
   return { ...points, dropped: table.rows - rows.length, order, notes };
@@ -97,6 +101,7 @@ function readRows(
       value: (reading * scale) / divisor,
       sigma: given > 0 && Number.isFinite(given) ? given : NaN,
       divisor,
+      dark: zero,
     });
   }
   if (blank.length > 0)
@@ -192,6 +197,7 @@ interface Arrays {
   readonly sigma: Float64Array | null;
   readonly relative: Float64Array;
   readonly divisor: Float64Array;
+  readonly dark: Float64Array | null;
 }
 
 function averageGroup(group: readonly Row[], points: Arrays, i: number): void {
@@ -212,6 +218,7 @@ function averageGroup(group: readonly Row[], points: Arrays, i: number): void {
   points.value[i] = n === 1 ? group[0]!.value : value / weights;
   points.relative[i] = 1 / Math.sqrt(n);
   points.divisor[i] = divisor / n;
+  if (points.dark !== null) points.dark[i] = group.reduce((sum, row) => sum + row.dark, 0) / n;
   if (points.sigma !== null) {
     const given = group.filter((row) => row.sigma > 0);
     points.sigma[i] = weighted

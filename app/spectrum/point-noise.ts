@@ -3,7 +3,7 @@ import { estimateNoise } from "./estimate-noise.ts";
 import type { Points } from "./gather-points.ts";
 import { count } from "./gather-points.ts";
 import { smoothCurve } from "./smooth-curve.ts";
-import type { Spectrum } from "./spectrum.ts";
+import type { ReadingChoices, Spectrum } from "./spectrum.ts";
 
 export interface PointNoise {
   readonly source: Spectrum["noise"]["source"];
@@ -19,8 +19,17 @@ const ABOUT = "fit";
 const NEIGHBOURS = 11;
 
 /** `fixed`: the protocol's sigma in the unit of the value, null where it says nothing; `counts`: it is one of counts. */
-export function pointNoise(points: Points, fixed: number | null, counts: boolean): PointNoise {
+export function pointNoise(
+  points: Points,
+  fixed: number | null,
+  counts: boolean,
+  detector: ReadingChoices["noise"] | null = null,
+): PointNoise {
   const { energy_eV, value, relative, sigma } = points;
+  if (fixed === null && sigma === null && detector !== null && detector.gain_e_per_count !== null) {
+    const known = countsNoise(points, detector.gain_e_per_count, detector);
+    if (known !== null) return known;
+  }
   if (fixed !== null) {
     const all = value.map((T, i) => {
       // A reading of counts has the noise of S and of F in it: sigma_T = sigma sqrt(1 + T^2)/(F - D).
@@ -72,6 +81,50 @@ export function pointNoise(points: Points, fixed: number | null, counts: boolean
     ),
   );
   return { source: "estimated", sigma: estimate.sigma, smooth: estimate.smooth, notes };
+}
+
+/** The smoothed light and its noise settle at once. */
+const ROUNDS = 3;
+
+/**
+ * What      Shot and read noise of T = (S - D)/(F - D): with v(x) = (x/gain + r^2)/N the variance of a reading x of counts,
+ *           var T = [v(S) + T^2 v(F) + (1 - T)^2 v(D)]/(F - D)^2, the last only with a dark reading. S is that of the
+ *           smoothed T: from the single reading it would follow its noise and bias the weights.
+ * Units     gain in electrons a count, read noise r in counts; N readings are averaged in each value (not summed).
+ * Source    PHYSICS of the counts, with the dark part written out: dT/dD = (T - 1)/(F - D).
+ */
+function countsNoise(points: Points, gain: number, detector: ReadingChoices["noise"]): PointNoise | null {
+  const { value, divisor, dark, relative } = points;
+  const variance = (counts: number): number =>
+    (Math.max(0, counts) / gain + detector.read_counts ** 2) / detector.accumulations;
+  const sigmaOf = (T: number, i: number): number => {
+    const zero = dark?.[i] ?? 0;
+    const signal = variance(T * divisor[i]! + zero);
+    const reference = variance(divisor[i]! + zero);
+    const background = dark === null ? 0 : (1 - T) ** 2 * variance(zero);
+    const sum = signal + T * T * reference + background;
+    return (Math.sqrt(sum) / divisor[i]!) * relative[i]!;
+  };
+  let smooth = value;
+  let sigma = value.map(sigmaOf);
+  if (!sigma.some((one) => one > 0)) return null;
+  for (let round = 0; round < ROUNDS; round++) {
+    // A reading of nothing has no shot noise: it gets that of its neighbours.
+    smooth = smoothCurve(value, fillMissing(sigma));
+    sigma = smooth.map(sigmaOf);
+  }
+  const notes =
+    detector.accumulations > 1
+      ? [
+          assumption(
+            "counts-averaged",
+            ABOUT,
+            `each reading of counts is taken for the mean of ${detector.accumulations} exposures, so its variance is divided by that`,
+            "where the file holds sums, set noise.accumulations=1 and noise.read_counts to the read noise times the root of the number of exposures",
+          ),
+        ]
+      : [];
+  return { source: "protocol", sigma: fillMissing(sigma), smooth, notes };
 }
 
 /** Gaps filled with the median of the nearest given values, in order of place. */

@@ -58,7 +58,12 @@ export function readSpectrum(
     });
 
   const fixed = choices.noise.sigma === null ? null : choices.noise.sigma * read.scale;
-  const noise = pointNoise(points, fixed, chosen.value.reference !== null);
+  const noise = pointNoise(
+    points,
+    fixed,
+    chosen.value.reference !== null,
+    read.quantity === "counts" ? choices.noise : null,
+  );
   const thickness_cm = read.thickness_um === null ? 1 : read.thickness_um * CM_PER_UM;
   const notes: Note[] = [
     ...chosen.value.notes,

@@ -28,7 +28,12 @@ export interface ReadingChoices {
       readonly surround_index: number;
     };
   };
-  readonly noise: { readonly sigma: number | null };
+  readonly noise: {
+    readonly sigma: number | null;
+    readonly gain_e_per_count: number | null;
+    readonly read_counts: number;
+    readonly accumulations: number;
+  };
   /** Refractive index of the material, offered by a preset for the surface correction. */
   readonly material: { readonly index: number | null };
 }
