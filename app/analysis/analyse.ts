@@ -1,18 +1,27 @@
-import { doubt, stopIfCancelled, type Watch } from "../base/index.ts";
+import { doubt, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
+import type { SpectrumFit } from "../fit/index.ts";
 import { strength } from "../laws/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
-import { assignPrincipalNumbers } from "./assign-n.ts";
-import { climbLadder, startLadder, type Climbed } from "./climb-ladder.ts";
+import { assignTwoPeaks, listAssignments, type Assignment, type AssignmentChoices } from "./assign-n.ts";
+import { climbLadder, LEAST_SIGNIFICANCE, significances, startLadder, type Climbed } from "./climb-ladder.ts";
 import { drawCurves, emptyCurves, type Curves } from "./curves.ts";
 import { describeReading, describeResult, sortNotes } from "./describe-result.ts";
 import { presetNotes } from "./find-doubts.ts";
 import { findPeaks, type Peak } from "./find-peaks.ts";
 import { fitEveryPoint, type FullFit } from "./fit-full.ts";
 import type { LadderState, ModelChoices } from "./ladder-model.ts";
+import { judgeLevels } from "./level-range.ts";
 import { fitInDomain } from "./measured-domain.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
+import {
+  CLEARLY_BETTER,
+  isDoubtful,
+  readingNotes,
+  weighReading,
+  type FittedReading,
+} from "./weigh-readings.ts";
 import { fitWithoutTail } from "./without-tail.ts";
 
 /** The result without what only a shell knows (version, clock). */
@@ -42,27 +51,32 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
   const peaks = findPeaks(everything.energy, everything.signal, everything.sigma);
   stopIfCancelled(watch);
   watch.report(0.15, "assigning n");
-  const assignment = assignPrincipalNumbers(peaks, {
+  const assignmentChoices: AssignmentChoices = {
     defectCentre: defectCentre(protocol),
     defectHeld: protocol.series.defect === "none",
     lowestN: protocol.material.first_n ?? (protocol.material.envelope === "P" ? 2 : 1),
     // The peaks speak for n whether or not the user wants all of them as lines of their own.
     highestN: Math.max(protocol.lines.max_n, HIGHEST_N_JUDGED),
-  });
-  if (assignment === null) return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began);
-  const start = startLadder(peaks, assignment, protocol);
-  const points = fitWindow(spectrum, protocol, start);
-  const thinned = thinPoints(points, linesForThinning(start, protocol));
-  watch.report(0.2, "climbing the ladder");
+  };
+  const listed = listAssignments(peaks, assignmentChoices, MOST_READINGS);
+  const pair =
+    listed.length === 0 && protocol.material.first_n !== null
+      ? assignTwoPeaks(peaks, assignmentChoices)
+      : null;
+  const assignments = pair === null ? listed : [pair];
+  if (assignments.length === 0)
+    return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began);
   const choices: ModelChoices = {
     background: protocol.background,
     tail: protocol.tail.model === "law",
     continuumOdd: true,
     asymmetry: protocol.lines.asymmetry,
   };
-  const climbed = climbLadder(thinned, start, withFreeLevels(protocol), spectrum.unit, choices, watch);
+  const judged = judgeReadings(spectrum, protocol, peaks, assignments, choices, watch);
+  const { chosen, assignment } = judged;
   const guessSeconds = watch.seconds() - began;
-  const chosen = fitWithTailOrWithout(spectrum, protocol, start, points, climbed, choices, watch);
+  if (pair !== null && !thirdLineStands(chosen.full))
+    return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began);
   const { full, points: fitted } = fitInDomain(
     chosen.full,
     spectrum,
@@ -74,7 +88,17 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
   );
   watch.report(0.8, "uncertainties");
   const uncertaintyBegan = watch.seconds();
-  const parts = describeResult(spectrum, protocol, fitted, peaks, assignment, full, chosen.choices, watch);
+  const described = describeResult(
+    spectrum,
+    protocol,
+    fitted,
+    peaks,
+    assignment,
+    full,
+    chosen.choices,
+    watch,
+  );
+  const parts = { ...described, notes: sortNotes([...described.notes, ...judged.notes]) };
   watch.report(1, "done");
   return {
     result: {
@@ -93,6 +117,132 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
 function withFreeLevels(protocol: Protocol): Protocol {
   return { ...protocol, series: { ...protocol.series, mode: "free" } };
 }
+
+interface JudgedReading {
+  readonly chosen: ChosenFit;
+  readonly assignment: Assignment;
+  readonly notes: readonly Note[];
+}
+
+/** Readings of the peaks that the fit may have to choose from. */
+const MOST_READINGS = 4;
+
+/**
+ * The best reading of the peaks, fitted; where that is doubtful the others too, roughly, and the best of them in full.
+ * The one that describes spectrum and level law best is taken, and what decided is said.
+ */
+function judgeReadings(
+  spectrum: Spectrum,
+  protocol: Protocol,
+  peaks: readonly Peak[],
+  assignments: readonly Assignment[],
+  choices: ModelChoices,
+  watch: Watch,
+): JudgedReading {
+  const free = withFreeLevels(protocol);
+  const climb = (assignment: Assignment): RoughReading => {
+    stopIfCancelled(watch);
+    const start = startLadder(peaks, assignment, protocol);
+    const points = fitWindow(spectrum, protocol, start);
+    const thinned = thinPoints(points, linesForThinning(start, protocol));
+    return {
+      assignment,
+      start,
+      points,
+      climbed: climbLadder(thinned, start, free, spectrum.unit, choices, watch),
+    };
+  };
+  const finish = (rough: RoughReading): JudgedFit => {
+    const fit = fitWithTailOrWithout(
+      spectrum,
+      protocol,
+      rough.start,
+      rough.points,
+      rough.climbed,
+      choices,
+      watch,
+    );
+    const { full } = fit;
+    return { fit, reading: { ...full, unassigned: rough.assignment.unmatched.length } };
+  };
+  watch.report(0.2, "climbing the ladder");
+  const first = climb(assignments[0]!);
+  const best = finish(first);
+  const settled = best.fit.full.selfConsistent;
+  const alone: JudgedReading = { chosen: best.fit, assignment: first.assignment, notes: [] };
+  if (assignments.length === 1 || protocol.lines.n !== "auto") return alone;
+  if (!isDoubtful(best.reading, defectCentre(protocol), settled)) return alone;
+  watch.report(0.6, "trying other readings of n");
+  const rough = [first, ...assignments.slice(1).map(climb)].map((one) => {
+    const reading: FittedReading = {
+      ...one.climbed,
+      range: judgeLevels(one.climbed.fit, free),
+      unassigned: one.assignment.unmatched.length,
+    };
+    return { one, reading };
+  });
+  const points = rough[0]!.reading.fit.solution.residuals.length;
+  const least = Math.min(1e3, ...rough.map(({ reading }) => reducedOf(reading.fit)));
+  const weights = rough.map(({ reading }) => weighReading(reading, points, Math.max(1, least)));
+  const promising = weights
+    .map((weight, i) => ({ weight, i }))
+    .slice(1)
+    .sort((a, b) => a.weight - b.weight)[0]!;
+  if (promising.weight > weights[0]! + CLEARLY_BETTER) return alone;
+  const other = finish(rough[promising.i]!.one);
+  const all = best.fit.points.energy.length;
+  const scale = Math.max(1, Math.min(reducedOf(best.fit.full.fit), reducedOf(other.fit.full.fit)));
+  const excess = weighReading(other.reading, all, scale) - weighReading(best.reading, all, scale);
+  if (excess < -CLEARLY_BETTER) {
+    const others = [{ state: best.fit.full.state, excess: -excess }];
+    return {
+      chosen: other.fit,
+      assignment: rough[promising.i]!.one.assignment,
+      notes: readingNotes(other.fit.full.state, others, true),
+    };
+  }
+  const others = [{ state: other.fit.full.state, excess }];
+  const same = sameNumbers(best.fit.full.state, other.fit.full.state);
+  return { ...alone, notes: same ? [] : readingNotes(best.fit.full.state, others, false) };
+}
+
+interface RoughReading {
+  readonly assignment: Assignment;
+  readonly start: LadderState;
+  readonly points: SelectedPoints;
+  readonly climbed: Climbed;
+}
+
+interface JudgedFit {
+  readonly fit: ChosenFit;
+  readonly reading: FittedReading;
+}
+
+function reducedOf(fit: SpectrumFit): number {
+  return fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom);
+}
+
+/** Two states with the same n at the same places. */
+function sameNumbers(a: LadderState, b: LadderState): boolean {
+  return b.ns.every((n, j) => {
+    const i = a.ns.indexOf(n);
+    return i < 0 || Math.abs(a.energy[i]! - b.energy[j]!) < 0.5 * Math.max(a.width[i]!, b.width[j]!);
+  });
+}
+
+/** A series guessed from two peaks stands when a third line was found and all of it describes the spectrum. */
+function thirdLineStands({ fit, selfConsistent }: FullFit): boolean {
+  const seen = significances(fit);
+  return (
+    seen.length >= 3 &&
+    seen.every((value) => value > LEAST_SIGNIFICANCE) &&
+    selfConsistent &&
+    fit.solution.converged &&
+    reducedOf(fit) < MOST_MISFIT_OF_GUESS
+  );
+}
+
+const MOST_MISFIT_OF_GUESS = 1.15;
 
 interface ChosenFit {
   readonly points: SelectedPoints;

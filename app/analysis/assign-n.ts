@@ -25,20 +25,22 @@ export interface Assignment {
 /**
  * What      The series law picks the principal quantum numbers: at the right gap the numbers t = (gap - E)^(-1/2) of
  *           the lines are equally spaced by Ry^(-1/2), so a gap and one pair of neighbouring lines make a hypothesis
- *           that all other lines judge. Missing lines and lines of another origin cost, but do not forbid.
+ *           that all other lines judge. Missing lines and lines of another origin cost, but do not forbid. The best
+ *           distinct readings are returned, best first, since the fit may think otherwise of them than the peaks do.
  * Units     eV.
  * Domain    at least three lines; with three or four the defect is held at its centre.
  * Source    hypothesis and verification in the manner of Fischler and Bolles, Commun. ACM 24, 381 (1981), exhaustive
  *           instead of random, hence without a seed.
  */
-export function assignPrincipalNumbers(
+export function listAssignments(
   peaks: readonly Peak[],
   choices: AssignmentChoices,
-): Assignment | null {
-  if (peaks.length < 3) return null;
+  most: number,
+): Assignment[] {
+  if (peaks.length < 3) return [];
   const judge = new Judge(peaks, choices);
   let best = -Infinity;
-  let hypothesis: { gap: number; rydberg: number } | null = null;
+  const hypotheses = new Map<number, { score: number; gap: number; rydberg: number }>();
   const strongest = peaks
     .map((_, i) => i)
     .sort((a, b) => peaks[b]!.significance - peaks[a]!.significance)
@@ -56,23 +58,73 @@ export function assignPrincipalNumbers(
           for (let step = 1; step <= 2; step++) {
             const root = step / (t[b]! - t[a]!);
             if (root * t[0]! > choices.highestN) continue;
-            const score = judge.score(gap, root * root, null, best);
-            if (score > best) {
-              best = score;
-              hypothesis = { gap, rydberg: root * root };
-            }
+            const score = judge.score(gap, root * root, null, best - MARGIN);
+            if (score === -Infinity) continue;
+            if (score > best) best = score;
+            const key = judge.ownership();
+            const known = hypotheses.get(key);
+            if (known === undefined || score > known.score)
+              hypotheses.set(key, { score, gap, rydberg: root * root });
           }
         }
       }
     }
   }
-  if (hypothesis === null) return null;
-  const start = judge.assignment(hypothesis.gap, hypothesis.rydberg, null);
-  if (start === null) return null;
-  const refined = refine(peaks, judge, start, choices);
-  return refined.score >= LEAST_SHARE * peaks.reduce((sum, peak) => sum + merit(peak), 0) ? refined : null;
+  const least = LEAST_SHARE * peaks.reduce((sum, peak) => sum + merit(peak), 0);
+  const readings = new Map<number, Assignment>();
+  const promising = [...hypotheses.values()]
+    .filter((one) => one.score > best - MARGIN)
+    .sort((a, b) => b.score - a.score)
+    .slice(0, 4 * most);
+  for (const { gap, rydberg } of promising) {
+    const start = judge.assignment(gap, rydberg, null);
+    if (start === null) continue;
+    const refined = refine(peaks, judge, start, choices);
+    if (refined.score < least) continue;
+    judge.assignment(refined.gap_eV, refined.rydberg_eV, refined.defect);
+    const key = judge.ownership();
+    const known = readings.get(key);
+    if (known === undefined || refined.score > known.score) readings.set(key, refined);
+    // The best hypothesis alone is enough where one reading is wanted.
+    if (most === 1) break;
+  }
+  return [...readings.values()].sort((a, b) => b.score - a.score).slice(0, most);
 }
 
+/** The best reading alone; null where there is none. */
+export function assignPrincipalNumbers(
+  peaks: readonly Peak[],
+  choices: AssignmentChoices,
+): Assignment | null {
+  return listAssignments(peaks, choices, 1)[0] ?? null;
+}
+
+/**
+ * Two peaks as the two lowest lines, the defect held: no more than a start, which stands only if the fit finds a third
+ * line where this says it must be.
+ */
+export function assignTwoPeaks(peaks: readonly Peak[], choices: AssignmentChoices): Assignment | null {
+  if (peaks.length !== 2) return null;
+  const n = choices.lowestN;
+  const [low, high] = [peaks[0]!, peaks[1]!];
+  const defect = choices.defectCentre;
+  const [a, b] = [(n - defect) ** -2, (n + 1 - defect) ** -2];
+  const rydberg = (high.energy_eV - low.energy_eV) / (a - b);
+  return {
+    gap_eV: low.energy_eV + rydberg * a,
+    rydberg_eV: rydberg,
+    defect,
+    matched: [
+      { n, peak: 0 },
+      { n: n + 1, peak: 1 },
+    ],
+    unmatched: [],
+    score: 0,
+  };
+}
+
+/** Readings this much worse than the best in the judgement of the peaks alone are left to the fit to judge. */
+const MARGIN = 7;
 /** A ladder whose lowest line has a high n is less likely: its stronger lines must all lie outside the spectrum. */
 const LOW_N_COST = 0.4;
 /** A series accounts for at least this part of what the peaks are worth; equal spacings and chance reach about a third. */
@@ -151,6 +203,13 @@ class Judge {
       LOW_N_COST * (first - choices.lowestN);
     if (score <= least) return -Infinity;
     return score - this.strengthLoss(count);
+  }
+
+  /** Which peak has which n after the last score, as a number (two readings may share one by a chance of 2^-32). */
+  ownership(): number {
+    let hash = 0x811c9dc5;
+    for (const owner of this.owner) hash = Math.imul(hash ^ (owner + 1), 0x01000193);
+    return hash >>> 0;
   }
 
   /** The assignment behind a score. */
