@@ -6,6 +6,8 @@ export interface Host {
   startFiles(): Promise<StartFiles>;
   /** The demo run that ships with the application. */
   demoFiles(): Promise<readonly NamedBytes[]>;
+  /** The demo power series; empty where a shell does not bring one. */
+  demoSeries(): Promise<readonly NamedBytes[]>;
   /** Ask the user for spectra; empty when they change their mind. */
   openFiles(): Promise<readonly NamedBytes[]>;
   /** Offer a file to keep; returns the name it was kept under, or null when the user changed their mind. */

@@ -3,7 +3,7 @@ import type { BrowserWindow, IpcMainInvokeEvent } from "electron";
 import writeFileAtomic from "write-file-atomic";
 import { z } from "zod";
 import type { Host } from "../../app/tasks/index.ts";
-import { readNamedFiles, SPECTRUM_ENDINGS, type Place } from "../page/index.ts";
+import { readDemoSeries, readNamedFiles, SPECTRUM_ENDINGS, type Place } from "../page/index.ts";
 import { channelOf, type Answer } from "./answer.ts";
 import type { ElectronApi } from "./electron-api.ts";
 import { isPageAddress } from "./page-address.ts";
@@ -50,6 +50,10 @@ function hostCalls(dialog: ElectronApi["dialog"], { place, startPaths }: HostCon
     demoFiles: {
       payload: nothing,
       run: () => readNamedFiles([place.demo]),
+    },
+    demoSeries: {
+      payload: nothing,
+      run: () => readDemoSeries(place),
     },
     openFiles: {
       payload: nothing,

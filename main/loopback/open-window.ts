@@ -1,5 +1,5 @@
 import { stat } from "node:fs/promises";
-import { findPlace, listPageFiles, readNamedFiles, type Place } from "../page/index.ts";
+import { findPlace, listPageFiles, readDemoSeries, readNamedFiles, type Place } from "../page/index.ts";
 import { findBrowser, hasDisplay, openBrowser, type BrowserWindow } from "./browser.ts";
 import { serveLoopback, type LoopbackServer } from "./serve.ts";
 import type { ShellIo } from "./shell-io.ts";
@@ -60,6 +60,7 @@ export async function startServer(
     facts: { version: place.version, node: process.version },
     startFiles: async () => ({ files: await readNamedFiles(paths), choices }),
     demoFiles: () => readNamedFiles([place.demo]),
+    demoSeries: () => readDemoSeries(place),
   });
 }
 

@@ -10,6 +10,7 @@ export interface LoopbackHost {
   readonly facts: HostFacts;
   startFiles(): Promise<StartFiles>;
   demoFiles(): Promise<readonly NamedBytes[]>;
+  demoSeries(): Promise<readonly NamedBytes[]>;
 }
 
 export interface LoopbackServer {
@@ -113,6 +114,8 @@ async function answerHost(what: string, host: LoopbackHost): Promise<PageAnswer>
     }
     case "demo":
       return jsonAnswer({ files: (await host.demoFiles()).map(encode) });
+    case "demo-series":
+      return jsonAnswer({ files: (await host.demoSeries()).map(encode) });
     default:
       return plainAnswer(404, "There is nothing at this address.");
   }

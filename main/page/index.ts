@@ -2,4 +2,4 @@ export { answerPage, listPageFiles, plainAnswer, type PageAnswer, type PageFiles
 export { contentPolicy, pageHeaders } from "./policy.ts";
 export { mediaType } from "./media-type.ts";
 export { findPlace, type Place } from "./place.ts";
-export { readNamedFiles, SPECTRUM_ENDINGS } from "./named-files.ts";
+export { readDemoSeries, readNamedFiles, SPECTRUM_ENDINGS } from "./named-files.ts";

@@ -15,6 +15,7 @@ export function electronHost(bridge: Bridge): Host {
     about: () => bridge.about(),
     startFiles: () => bridge.startFiles(),
     demoFiles: () => bridge.demoFiles(),
+    demoSeries: () => bridge.demoSeries(),
     openFiles: () => bridge.openFiles(),
     saveFile: (name, bytes) => bridge.saveFile(name, bytes),
   };

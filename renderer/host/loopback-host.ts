@@ -28,6 +28,7 @@ export function loopbackHost(page: Document, fetchAddress: Fetch = (address) => 
       return { files: files.map(decode), choices: choices ?? {} };
     },
     demoFiles: async () => (await get("host/demo", filesSchema)).files.map(decode),
+    demoSeries: async () => (await get("host/demo-series", filesSchema)).files.map(decode),
     openFiles: () => askForFiles(page),
     saveFile(suggestedName, bytes) {
       offerDownload(page, suggestedName, bytes);

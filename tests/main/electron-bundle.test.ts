@@ -69,7 +69,9 @@ it("the program as bundled starts by itself and finds its page and preload scrip
     "on window-all-closed function",
     "whenReady ",
     "scheme app function",
-    ...["about", "startFiles", "demoFiles", "openFiles", "saveFile"].map((name) => `handle rungline:${name}`),
+    ...["about", "startFiles", "demoFiles", "demoSeries", "openFiles", "saveFile"].map(
+      (name) => `handle rungline:${name}`,
+    ),
     `preload ${join(root, "dist", "main", "preload.cjs")}`,
     "menu object",
     "load app://rungline/index.html",

@@ -54,12 +54,13 @@ describe("the packed application", () => {
       "dist/main/preload.cjs",
       "dist/renderer/index.html",
       "fixtures/demo/TH-A1_transmission.csv",
+      "fixtures/demo/power/TH-A4_power-series.csv",
     ]) {
       expect(files).toContain(needed);
     }
     const others = files.filter(
       (file) =>
-        !/^(package\.json|LICENSE|dist\/main\/(electron\.js|preload\.cjs)|dist\/renderer\/.+|fixtures\/demo\/[^/]+\.(csv|tsv|txt))$/.test(
+        !/^(package\.json|LICENSE|dist\/main\/(electron\.js|preload\.cjs)|dist\/renderer\/.+|fixtures\/demo\/(power\/)?[^/]+\.(csv|tsv|txt))$/.test(
           file,
         ),
     );

@@ -50,7 +50,7 @@ function invoke(method: string, sender: Sender, ...sent: unknown[]): Promise<unk
   return handler(sender, ...sent);
 }
 
-const METHODS = ["about", "startFiles", "demoFiles", "openFiles", "saveFile"];
+const METHODS = ["about", "startFiles", "demoFiles", "demoSeries", "openFiles", "saveFile"];
 
 describe("start", () => {
   it("sets the sandbox and the scheme before the application is ready, the locks before the window", () => {
@@ -222,6 +222,7 @@ describe("the host's calls", () => {
       value: { files: [file], choices: {} },
     });
     expect(await invoke("demoFiles", fromPage())).toEqual({ ok: true, value: [file] });
+    expect(await invoke("demoSeries", fromPage())).toEqual({ ok: true, value: [] });
   });
 
   it("refuse every sender but the top frame of our own window on our own page", async () => {
@@ -391,6 +392,7 @@ describe("the preload script", () => {
     const { bridge } = await loadBridge();
     expect(await bridge["about"]!()).toEqual({ version: "1.2.3", node: process.version });
     expect(await bridge["demoFiles"]!()).toHaveLength(1);
+    expect(await bridge["demoSeries"]!()).toEqual([]);
     expect(await bridge["startFiles"]!()).toMatchObject({ choices: {} });
     expect(await bridge["openFiles"]!()).toEqual([]);
     expect(await bridge["saveFile"]!("a.json", new Uint8Array(1))).toBeNull();

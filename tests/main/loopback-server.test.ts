@@ -31,6 +31,7 @@ beforeEach(async () => {
       choices: { axis: { unit: "nm" } },
     }),
     demoFiles: async () => [{ name: "demo.csv", bytes: new TextEncoder().encode("E,alpha") }],
+    demoSeries: async () => [],
   });
 });
 
@@ -131,6 +132,7 @@ describe("what every request must show", () => {
       "/host/about",
       "/host/start",
       "/host/demo",
+      "/host/demo-series",
       "/x",
     ]) {
       expect((await ask(path)).status, path).toBe(403);
@@ -294,6 +296,7 @@ describe("what is served", () => {
       choices: { axis: { unit: "nm" } },
     });
     expect(await get("/host/demo")).toEqual({ files: [{ name: "demo.csv", base64: "RSxhbHBoYQ==" }] });
+    expect(await get("/host/demo-series")).toEqual({ files: [] });
     expect((await ask("/host/other", { Cookie: cookie })).status).toBe(404);
     expect((await ask("/host/about/", { Cookie: cookie })).status).toBe(404);
   });

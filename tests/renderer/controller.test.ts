@@ -34,6 +34,7 @@ beforeEach(() => {
     about: async () => ({ version: "1.2.3", node: "v20" }),
     startFiles: async () => start,
     demoFiles: async () => DEMO,
+    demoSeries: async () => [{ name: "series.csv", bytes: bytes("5") }],
     openFiles: async () => [{ name: "picked.csv", bytes: bytes("3") }],
     saveFile: async (name, content) => {
       saved.push({ name, text: new TextDecoder().decode(content) });

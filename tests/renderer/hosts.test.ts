@@ -13,6 +13,7 @@ describe("the loopback host", () => {
       facts: { version: "1.2.3", node: "v20" },
       startFiles: async () => ({ files, choices: { window_eV: [2, 3] } }),
       demoFiles: async () => files,
+      demoSeries: async () => [...files, ...files],
     });
     try {
       const entry = await fetch(server.issueAddress(), { redirect: "manual" });
@@ -23,6 +24,7 @@ describe("the loopback host", () => {
       expect(await host.about()).toEqual({ version: "1.2.3", node: "v20" });
       expect(await host.startFiles()).toEqual({ files, choices: { window_eV: [2, 3] } });
       expect(await host.demoFiles()).toEqual(files);
+      expect(await host.demoSeries()).toEqual([...files, ...files]);
     } finally {
       await server.close();
     }
@@ -50,6 +52,7 @@ describe("the Electron host", () => {
       about: () => answer("about", { version: "1", node: "v20" }),
       startFiles: () => answer("startFiles", { files: [], choices: {} }),
       demoFiles: () => answer("demoFiles", []),
+      demoSeries: () => answer("demoSeries", []),
       openFiles: () => answer("openFiles", []),
       saveFile: (name, bytes) => answer(`saveFile ${name} ${bytes.length}`, name),
     });
@@ -57,8 +60,16 @@ describe("the Electron host", () => {
     await host.about();
     await host.startFiles();
     await host.demoFiles();
+    await host.demoSeries();
     await host.openFiles();
     expect(await host.saveFile("x.json", new Uint8Array(3))).toBe("x.json");
-    expect(asked).toEqual(["about", "startFiles", "demoFiles", "openFiles", "saveFile x.json 3"]);
+    expect(asked).toEqual([
+      "about",
+      "startFiles",
+      "demoFiles",
+      "demoSeries",
+      "openFiles",
+      "saveFile x.json 3",
+    ]);
   });
 });

@@ -20,6 +20,7 @@ const bridge: Omit<Host, "shell"> = {
   about: () => call("about"),
   startFiles: () => call("startFiles"),
   demoFiles: () => call("demoFiles"),
+  demoSeries: () => call("demoSeries"),
   openFiles: () => call("openFiles"),
   saveFile: (suggestedName, bytes) => call("saveFile", suggestedName, bytes),
 };
