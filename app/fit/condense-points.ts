@@ -67,7 +67,9 @@ function smallestEllipse(low: number, high: number, features: readonly Feature[]
     const x = energy - middle;
     const y = width / 2;
     // rho + 1/rho is the sum of the distances from the foci over half the panel.
-    const sum = (Math.hypot(x - half, y) + Math.hypot(x + half, y)) / half / 2;
+    const left = x + half;
+    const right = x - half;
+    const sum = (Math.sqrt(left * left + y * y) + Math.sqrt(right * right + y * y)) / half / 2;
     if (sum < least) least = sum;
   }
   return least + Math.sqrt(least * least - 1);

@@ -10,8 +10,8 @@ import type { Feature } from "./transmittance-grid.ts";
 const LEAST_ROWS = 600;
 /** Condensed rows must be fewer than this part of the points. */
 const WORTH_WHILE = 0.6;
-/** A background column may lose this part of itself: one with a structure of its own cannot be condensed. */
-const LEAST_LOSS = 1e-18;
+/** Part of a background column that may stand in the panels' highest polynomials: one with a structure of its own stays. */
+const SMOOTH = 1e-20;
 /** A line under a Gaussian of standard deviation s has no pole; up to this many s from the axis it grows little. */
 const GAUSS_REACH = 2;
 const FAR_N = 1e6;
@@ -32,7 +32,7 @@ export function condenseSpectrum(problem: SpectrumProblem, theta: Float64Array):
   for (let b = 0; b < columns.length; b++) {
     let square = 0;
     for (let i = 0; i < m; i++) square += (columns[b]![i]! * weights[i]!) ** 2;
-    if (rows.lost[b + 1]! > LEAST_LOSS * square) return null;
+    if (rows.highest[b + 1]! > SMOOTH * square) return null;
   }
   const reduced: ModelSpec = {
     ...spec,

@@ -15,9 +15,11 @@ export interface CondensedRows {
   readonly weight: Float64Array;
   /**
    * Part of sum (w y)^2, by column of data, that no function of these rows can take up: chi square of the rows + lost =
-   * that of the points.
+   * that of the points (up to the rounding of that sum).
    */
   readonly lost: Float64Array;
+  /** Part of sum (w y)^2, by column of data, in the two highest polynomials of each panel: small for a smooth column. */
+  readonly highest: Float64Array;
 }
 
 /** Nodes of a condensed panel. */
@@ -57,6 +59,7 @@ export function condenseRows(
     columns: columns.map(() => new Float64Array(count)),
     weight: new Float64Array(count),
     lost: new Float64Array(columns.length),
+    highest: new Float64Array(columns.length),
   };
   const work = new PanelWork(longest, columns.length);
   let at = 0;
@@ -107,41 +110,35 @@ class PanelWork {
     const size = end - first;
     const middle = (x[first]! + x[end - 1]!) / 2;
     const half = (x[end - 1]! - x[first]!) / 2;
-    let total = 0;
-    for (let i = 0; i < size; i++) {
-      t[i] = (x[first + i]! - middle) / half;
-      const w = weight[first + i]!;
-      total += w * w;
-    }
+    for (let i = 0; i < size; i++) t[i] = (x[first + i]! - middle) / half;
     columns.forEach((column, c) => {
-      for (let i = 0; i < size; i++) rest[c]![i] = weight[first + i]! * column[first + i]!;
-    });
-    // Orthonormal polynomials times the root of the weight, one after another.
-    const norm = Math.sqrt(total);
-    for (let i = 0; i < size; i++) {
-      this.now[i] = weight[first + i]! / norm;
-      this.before[i] = 0;
-    }
-    for (let j = 0; ; j++) {
-      const { now, before } = this;
-      for (let c = 0; c < rest.length; c++) moment[c]![j] = takeOut(now, rest[c]!, size);
-      let a = 0;
-      for (let i = 0; i < size; i++) a += t[i]! * now[i]! * now[i]!;
-      alpha[j] = a;
-      if (j === NODES - 1) break;
-      const back = j === 0 ? 0 : beta[j]!;
       let square = 0;
       for (let i = 0; i < size; i++) {
-        const next = (t[i]! - a) * now[i]! - back * before[i]!;
-        before[i] = next;
-        square += next * next;
+        const value = weight[first + i]! * column[first + i]!;
+        rest[c]![i] = value;
+        square += value * value;
       }
-      const length = Math.sqrt(square);
-      beta[j + 1] = length;
-      const unit = 1 / length;
-      for (let i = 0; i < size; i++) before[i] = before[i]! * unit;
-      this.now = before;
-      this.before = now;
+      out.lost[c]! += square;
+    });
+    // Monic orthogonal polynomials times the root of the weight, one after another.
+    let norm = 0;
+    let square = 0;
+    for (let j = 0; j < NODES; j++) {
+      const before = square;
+      square = j === 0 ? this.begin(weight, first, size) : this.next(alpha[j - 1]!, beta[j - 1]! ** 2, size);
+      if (j === 0) norm = Math.sqrt(square);
+      else beta[j] = Math.sqrt(square / before);
+      const { now } = this;
+      let a = 0;
+      for (let i = 0; i < size; i++) a += t[i]! * now[i]! * now[i]!;
+      alpha[j] = a / square;
+      const unit = 1 / Math.sqrt(square);
+      for (let c = 0; c < rest.length; c++) {
+        const part = unit * dot(now, rest[c]!, size);
+        moment[c]![j] = part;
+        out.lost[c]! -= part * part;
+        if (j >= NODES - 2) out.highest[c]! += part * part;
+      }
     }
     tridiagonalEigen(alpha, beta, vectors);
     // In ascending order of the nodes.
@@ -156,18 +153,45 @@ class PanelWork {
         out.columns[c]![at + place] = sum / root;
       });
     });
-    rest.forEach((one, c) => {
-      for (let i = 0; i < size; i++) out.lost[c]! += one[i]! * one[i]!;
-    });
+  }
+
+  /** The first polynomial, 1; returns its square. */
+  private begin(weight: Float64Array, first: number, size: number): number {
+    const { now, before } = this;
+    let square = 0;
+    for (let i = 0; i < size; i++) {
+      const value = weight[first + i]!;
+      now[i] = value;
+      before[i] = 0;
+      square += value * value;
+    }
+    return square;
+  }
+
+  /** p := (t - a) p - b p_before; returns its square. */
+  private next(a: number, b: number, size: number): number {
+    const { t, now, before } = this;
+    let square = 0;
+    for (let i = 0; i < size; i++) {
+      const value = (t[i]! - a) * now[i]! - b * before[i]!;
+      before[i] = value;
+      square += value * value;
+    }
+    this.now = before;
+    this.before = now;
+    return square;
   }
 }
 
-/** v := v - (u'v) u for u of unit length; returns u'v. */
-function takeOut(u: Float64Array, v: Float64Array, size: number): number {
-  let part = 0;
-  for (let i = 0; i < size; i++) part += u[i]! * v[i]!;
-  for (let i = 0; i < size; i++) v[i] = v[i]! - part * u[i]!;
-  return part;
+function dot(a: Float64Array, b: Float64Array, size: number): number {
+  let even = 0;
+  let odd = 0;
+  let i = 0;
+  for (; i + 1 < size; i += 2) {
+    even += a[i]! * b[i]!;
+    odd += a[i + 1]! * b[i + 1]!;
+  }
+  return i < size ? even + odd + a[i]! * b[i]! : even + odd;
 }
 
 /**
@@ -189,7 +213,7 @@ function tridiagonalEigen(diagonal: Float64Array, beta: Float64Array, vectors: F
       }
       if (m === l) break;
       let g = (diagonal[l + 1]! - diagonal[l]!) / (2 * e[l]!);
-      let r = Math.hypot(g, 1);
+      let r = Math.sqrt(g * g + 1);
       g = diagonal[m]! - diagonal[l]! + e[l]! / (g + (g >= 0 ? r : -r));
       let s = 1;
       let c = 1;
@@ -197,7 +221,7 @@ function tridiagonalEigen(diagonal: Float64Array, beta: Float64Array, vectors: F
       for (let i = m - 1; i >= l; i--) {
         let f = s * e[i]!;
         const b = c * e[i]!;
-        r = Math.hypot(f, g);
+        r = Math.sqrt(f * f + g * g);
         e[i + 1] = r;
         if (r === 0) {
           diagonal[i + 1] = diagonal[i + 1]! - p;

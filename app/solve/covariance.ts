@@ -17,6 +17,8 @@ export interface JacobianAnalysis {
 
 /** A parameter takes part in the null space when this much of it, in units of a column's length, does. */
 const NULL_PART = 1e-6;
+/** Cosine left between the rotated rows; the condition number is good to about this part. */
+const CONDITION_TOLERANCE = 1e-8;
 
 /**
  * What      Covariance of least squares at a solution, (J'J)^-1 = R^-1 R^-T, from the QR of the weighted columns with
@@ -58,13 +60,14 @@ export function analyseJacobian(
     if (j < n) scale[j] = factor;
     for (let i = 0; i < size; i++) {
       small[j * size + i] = triangle.r[i * size + j]! * factor;
-      if (j < n && i < n) forValues[j * n + i] = small[j * size + i]!;
     }
   }
   const rank = pivotedQr(small, size, size, 0, 0, n, permutation, RANK_TOLERANCE);
   let condition = Infinity;
   if (rank === n) {
-    const values = singularValues(forValues, n);
+    // The rows of the pivoted triangle are nearly orthogonal already: few rotations are left.
+    for (let i = 0; i < n; i++) for (let j = i; j < n; j++) forValues[i * n + j] = small[j * size + i]!;
+    const values = singularValues(forValues, n, CONDITION_TOLERANCE);
     condition = values[0]! / values[n - 1]!;
   }
   let remaining = 0;

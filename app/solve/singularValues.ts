@@ -3,11 +3,12 @@
  * Shapes    a (n x n, column-major), destroyed; returns (n).
  * Units     that of the matrix.
  * Domain    finite numbers.
- * Accuracy  relative accuracy near eps for each value of a column-scaled triangular matrix.
+ * Accuracy  relative accuracy near eps for each value of a column-scaled triangular matrix; rotations end at cosines below
+ *           `tolerance`, of which the values keep about that part at most.
  * Source    Hestenes, J. SIAM 6, 51 (1958); threshold and accuracy after Demmel and Veselic, SIAM J. Matrix Anal.
  *           Appl. 13, 1204 (1992).
  */
-export function singularValues(a: Float64Array, n: number): Float64Array {
+export function singularValues(a: Float64Array, n: number, tolerance = 1e-15): Float64Array {
   for (let sweep = 0; sweep < 30; sweep++) {
     let rotated = false;
     for (let p = 0; p < n - 1; p++) {
@@ -24,7 +25,7 @@ export function singularValues(a: Float64Array, n: number): Float64Array {
           beta += y * y;
           gamma += x * y;
         }
-        if (gamma === 0 || Math.abs(gamma) <= 1e-15 * Math.sqrt(alpha * beta)) continue;
+        if (gamma === 0 || Math.abs(gamma) <= tolerance * Math.sqrt(alpha * beta)) continue;
         rotated = true;
         const zeta = (beta - alpha) / (2 * gamma);
         const t = Math.sign(zeta || 1) / (Math.abs(zeta) + Math.sqrt(1 + zeta * zeta));

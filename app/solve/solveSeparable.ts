@@ -126,8 +126,8 @@ class Search {
   private readonly maxIterations: number;
   private readonly tolerance: { gradient: number; step: number; cost: number };
 
-  private readonly rawColumns: Float64Array;
-  private readonly rawDerivatives: Float64Array;
+  /** Columns or derivatives as the problem writes them, before they are weighted. */
+  private readonly raw: Float64Array;
   private readonly rawOffset: Float64Array;
   private readonly derivative: Float64Array;
   private phi: Float64Array;
@@ -199,10 +199,9 @@ class Search {
     for (let j = 0; j < p; j++) {
       if (!(this.lower[j]! <= this.upper[j]!)) throw new Error("a lower bound lies above its upper bound");
     }
-    this.rawColumns = new Float64Array(rows * k);
-    this.rawDerivatives = new Float64Array(rows * p);
+    this.raw = new Float64Array(rows * Math.max(k, p));
     this.rawOffset = new Float64Array(problem.offset === undefined ? 0 : rows);
-    this.phi = new Float64Array(m * k);
+    this.phi = new Float64Array(0);
     this.derivative = new Float64Array(m * p);
     this.trialPhi = new Float64Array(m * k);
     this.target = new Float64Array(m);
@@ -343,11 +342,13 @@ class Search {
 
   /** Columns, coefficients and residual at `trial`; the cost there, NaN or Infinity where the model is not finite. */
   private evaluateTrial(): number {
-    const { problem, m, k, used, weight, trialPhi, trialTarget, rawColumns, rawOffset } = this;
+    const { problem, m, k, used, weight, trialTarget, raw, rawOffset } = this;
+    if (this.trialPhi.length < m * k) this.trialPhi = new Float64Array(m * k);
+    const { trialPhi } = this;
     this.evaluations++;
     this.rawIsCurrent = false;
-    if (k > 0) problem.columns(this.trial, rawColumns);
-    if (!gather(rawColumns, problem.rows, k, used, weight, trialPhi)) return NaN;
+    if (k > 0) problem.columns(this.trial, raw);
+    if (!gather(raw, problem.rows, k, used, weight, trialPhi)) return NaN;
     if (problem.offset === undefined) {
       trialTarget.set(this.weightedData);
     } else {
@@ -389,9 +390,9 @@ class Search {
   }
 
   private takeDerivatives(): boolean {
-    const { problem, p, used, weight, rawDerivatives, derivative } = this;
-    if (p > 0) problem.derivatives(this.theta, this.coefficients, rawDerivatives);
-    this.haveDerivatives = gather(rawDerivatives, problem.rows, p, used, weight, derivative);
+    const { problem, p, used, weight, raw, derivative } = this;
+    if (p > 0) problem.derivatives(this.theta, this.coefficients, raw);
+    this.haveDerivatives = gather(raw, problem.rows, p, used, weight, derivative);
     if (this.companion !== null && !this.companion.takeDerivatives(this.theta, this.coefficients))
       this.leaveCompanion();
     return this.haveDerivatives;
@@ -439,7 +440,7 @@ class Search {
     const n = p + k;
     const finite = Number.isFinite(this.cost);
     if (!this.rawIsCurrent && finite) {
-      if (k > 0) problem.columns(this.theta, this.rawColumns);
+      if (k > 0) problem.columns(this.theta, this.raw);
       problem.offset?.(this.theta, this.rawOffset);
     }
     const activeBounds = new Int8Array(p);
@@ -449,7 +450,8 @@ class Search {
     let condition = NaN;
     let remaining = NaN;
     let reached = termination;
-    if (finite && termination !== "cancelled" && !this.haveDerivatives && termination !== "notFinite") {
+    const open = termination !== "cancelled" && termination !== "notFinite";
+    if (finite && open && this.wanted && !this.haveDerivatives) {
       // The last step was accepted: what is reported about the gradient is that of the final point.
       if (this.takeDerivatives()) {
         const steering = this.steer();
@@ -476,13 +478,8 @@ class Search {
         place.forEach((j, b) => (covariance[i * n + j] = analysis.covariance[a * place.length + b]!));
       });
     }
-    const fitted = new Float64Array(problem.rows);
     const residuals = new Float64Array(problem.rows);
-    for (let i = 0; i < problem.rows; i++) {
-      let sum = problem.offset === undefined ? 0 : this.rawOffset[i]!;
-      for (let j = 0; j < k; j++) sum += this.coefficients[j]! * this.rawColumns[j * problem.rows + i]!;
-      fitted[i] = sum;
-    }
+    const fitted = this.fittedValues(finite);
     for (let r = 0; r < m; r++) residuals[this.used[r]!] = this.residual[r]!;
     return {
       theta: this.theta,
@@ -504,6 +501,23 @@ class Search {
       undetermined,
       covariance,
     };
+  }
+
+  /** The model at every row; by the columns only where a row was left out, or where there is nothing else. */
+  private fittedValues(finite: boolean): Float64Array {
+    const { problem, k, m, raw, used, weight, residual } = this;
+    const { rows, data } = problem;
+    const fitted = new Float64Array(rows);
+    if (m < rows || !finite) {
+      if (k > 0) problem.columns(this.theta, raw);
+      for (let i = 0; i < rows; i++) {
+        let sum = problem.offset === undefined ? 0 : this.rawOffset[i]!;
+        for (let j = 0; j < k; j++) sum += this.coefficients[j]! * raw[j * rows + i]!;
+        fitted[i] = sum;
+      }
+    }
+    if (finite) for (let r = 0; r < m; r++) fitted[used[r]!] = data[used[r]!]! - residual[r]! / weight[r]!;
+    return fitted;
   }
 
   /** Covariance of the free parameters, from the condensed rows where those agree with every row. */
