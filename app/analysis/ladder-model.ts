@@ -147,7 +147,10 @@ function describeTail(
   return {
     fromN,
     toN:
-      protocol.tail.cutoff_n ?? lastTiedLine(points, state, fromN, protocol.lines.instrument_lorentz_fwhm_eV),
+      protocol.tail.cutoff_n === null
+        ? lastTiedLine(points, state, fromN, protocol.lines.instrument_lorentz_fwhm_eV)
+        : Math.max(fromN - 1, protocol.tail.cutoff_n),
+    band: protocol.tail.cutoff_n === null,
     below: linesBelow(points, state, protocol),
     levels: state.levels,
     levelLink: levels,

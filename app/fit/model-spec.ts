@@ -1,5 +1,6 @@
 import type { StrengthBase, StrengthEnvelope, WidthBase, WidthFloorKind } from "../laws/index.ts";
 import type { ContinuumEnvelope } from "../lines/index.ts";
+import type { ConstraintSpec } from "./constraint-spec.ts";
 
 /** The points that are fitted. Shapes (m); energy ascending in eV, sigma positive, signal and sigma in one unit. */
 export interface FitPoints {
@@ -50,6 +51,8 @@ export interface TailSpec {
   /** Discrete tied lines fromN..toN; above toN they run together and are treated as a band up to the gap. */
   readonly fromN: number;
   readonly toN: number;
+  /** Whether the lines above toN are there, as a band up to the gap; false where the series is cut off at toN. */
+  readonly band: boolean;
   /** Lines below the window that reach in with their wings. */
   readonly below: readonly number[];
   readonly levels: LevelValues;
@@ -76,7 +79,8 @@ export interface ModelSpec {
   readonly lineStds?: Float64Array;
   /** FWHM of a Lorentzian instrument in eV: adds to every width, which are those without it. */
   readonly instrumentLorentz?: number;
-  readonly asymmetry: "shared" | "free" | "zero";
+  /** `each`: a common q, and odd areas of the lines beside it (for rules line by line). */
+  readonly asymmetry: "shared" | "free" | "zero" | "each";
   /**
    * `null`: every line energy is free. Else the energies of the lines in `tiedNs` are the level law itself, with
    * `count` parameters (gap, Rydberg energy, then delta0, delta2 where free).
@@ -88,6 +92,8 @@ export interface ModelSpec {
   } | null;
   readonly tail: TailSpec | null;
   readonly background: readonly BackgroundColumn[];
+  /** Rules line by line and lines of other series; none by default. */
+  readonly constraints?: ConstraintSpec;
 }
 
 export interface LineStart {

@@ -21,7 +21,8 @@ export interface ThetaLayout {
 
 /**
  * What      One spectrum as a separable least-squares problem:
- *           signal = sum_j A_j [L_j + 2 q D_j + share_j T] (+ sum_j B_j 2 D_j with q free line by line) + background,
+ *           signal = sum_j A_j [L_j + 2 q D_j + share_j (T + 2 q U)] + background, with q free line by line
+ *           sum_j A_j [L_j + share_j T] + sum_j B_j 2 [D_j + share_j U] + background, U the odd partner of T,
  *           T the tail of unit strength, whose laws follow from the free lines (LawLink).
  * Shapes    theta (layout.count); linear: areas (k), odd areas B = q A (k, only with asymmetry "free"), background.
  * Units     energies and widths in eV relative to nothing; areas in eV times the unit of the signal.
@@ -57,7 +58,7 @@ export class SpectrumProblem implements SeparableProblem {
     this.weights = Float64Array.from(points.sigma, (sigma) => 1 / sigma);
     this.layout = makeLayout(spec);
     this.nonlinear = this.layout.count;
-    this.linear = k * (spec.asymmetry === "free" ? 2 : 1) + spec.background.length;
+    this.linear = k * (hasOddAreas(spec) ? 2 : 1) + spec.background.length;
     this.tail =
       spec.tail === null ? null : new TailEvaluator(points, spec.tail, spec.gaussStd, spec.instrumentLorentz);
     const make = (): Float64Array => new Float64Array(m);
@@ -153,19 +154,24 @@ export class SpectrumProblem implements SeparableProblem {
     const { l, d } = this.profile;
     const k = spec.ns.length;
     const q = this.asymmetryOf(theta);
-    const free = spec.asymmetry === "free";
-    const tail = this.tailColumn(theta, false);
+    const free = hasOddAreas(spec);
+    const tail = this.tailColumns(theta, q, false);
     for (let j = 0; j < k; j++) {
       const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
       linePair(points.energy, 0, m, this.energyOf(j, theta), width, this.stdOf(j), l, d);
       const at = j * m;
       const share = spec.tail?.strengthShare[j] ?? 0;
-      const odd = free ? 0 : 2 * q;
+      const odd = 2 * q;
       for (let i = 0; i < m; i++) phi[at + i] = l[i]! + odd * d[i]!;
-      if (tail !== null && share !== 0) for (let i = 0; i < m; i++) phi[at + i]! += share * tail[i]!;
+      if (tail !== null && share !== 0) {
+        for (let i = 0; i < m; i++) phi[at + i]! += share * (tail.even[i]! + odd * tail.odd[i]!);
+      }
       if (free) {
         const second = (k + j) * m;
         for (let i = 0; i < m; i++) phi[second + i] = 2 * d[i]!;
+        // The tail is as asymmetric as the lines that speak for its strength: its odd part follows their odd areas.
+        if (tail !== null && share !== 0)
+          for (let i = 0; i < m; i++) phi[second + i]! += 2 * share * tail.odd[i]!;
       }
     }
     spec.background.forEach((column, b) => phi.set(column.values, (this.backgroundAt + b) * m));
@@ -176,7 +182,7 @@ export class SpectrumProblem implements SeparableProblem {
     const { l, d, lE, lG, dE, dG } = this.profile;
     const k = spec.ns.length;
     const q = this.asymmetryOf(theta);
-    const free = spec.asymmetry === "free";
+    const free = hasOddAreas(spec);
     out.fill(0);
     const tied = spec.tiedLevels === null ? null : this.tiedLaw(theta);
     for (let j = 0; j < k; j++) {
@@ -196,7 +202,7 @@ export class SpectrumProblem implements SeparableProblem {
         dG,
       );
       const a = coefficients[j]!;
-      const b = 2 * (free ? coefficients[k + j]! : q * a);
+      const b = 2 * (q * a + (free ? coefficients[k + j]! : 0));
       const widthColumn = layout.widthAt[j]! * m;
       for (let i = 0; i < m; i++) out[widthColumn + i]! += a * lG[i]! + b * dG[i]!;
       if (layout.energyAt[j]! >= 0) {
@@ -217,31 +223,45 @@ export class SpectrumProblem implements SeparableProblem {
     this.tailDerivatives(theta, coefficients, out);
   }
 
-  /** T at theta (m), or null; with `derivatives` the evaluator's derivative columns are filled too. */
-  private tailColumn(theta: Float64Array, derivatives: boolean): Float64Array | null {
+  /** T = even + 2 q odd at theta (m each), or null; with `derivatives` the evaluator's derivative columns are filled too. */
+  private tailColumns(
+    theta: Float64Array,
+    q: number,
+    derivatives: boolean,
+  ): { even: Float64Array; odd: Float64Array } | null {
     const { tail } = this;
     if (tail === null) return null;
     const { levels, widths } = this.lawsAt(theta);
     const f = this.factorOf(theta);
-    const q = this.asymmetryOf(theta);
     tail.evaluate(levels, widths, f, q, derivatives);
     const { tiedEven, tiedOdd, heldEven, heldOdd } = tail.columns;
-    const sum = new Float64Array(this.rows);
-    for (let i = 0; i < sum.length; i++)
-      sum[i] = f * (tiedEven[i]! + 2 * q * tiedOdd[i]!) + heldEven[i]! + 2 * q * heldOdd[i]!;
-    return sum;
+    return {
+      even: tiedEven.map((value, i) => f * value + heldEven[i]!),
+      odd: tiedOdd.map((value, i) => f * value + heldOdd[i]!),
+    };
+  }
+
+  /** C = sum share_j A_j, and the q of the tail: the shared one, or that of the lines by their shares. */
+  private tailStrength(theta: Float64Array, coefficients: Float64Array): { strength: number; q: number } {
+    const k = this.spec.ns.length;
+    let strength = 0;
+    let odd = 0;
+    this.spec.tail?.strengthShare.forEach((share, j) => {
+      strength += share * coefficients[j]!;
+      if (this.spec.asymmetry === "free") odd += share * coefficients[k + j]!;
+    });
+    if (this.spec.asymmetry !== "free") return { strength, q: this.asymmetryOf(theta) };
+    return { strength, q: strength === 0 ? 0 : odd / strength };
   }
 
   private tailDerivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
     const { tail, spec, layout, rows: m } = this;
     if (tail === null || spec.tail === null) return;
     const k = spec.ns.length;
-    let strength = 0;
-    for (let j = 0; j < k; j++) strength += spec.tail.strengthShare[j]! * coefficients[j]!;
-    this.tailColumn(theta, true);
+    const { strength, q } = this.tailStrength(theta, coefficients);
+    this.tailColumns(theta, q, true);
     const { tiedEven, tiedOdd, heldOdd, byLevel, byWidth } = tail.columns;
     const f = this.factorOf(theta);
-    const q = this.asymmetryOf(theta);
     if (layout.asymmetryAt >= 0) {
       const column = layout.asymmetryAt * m;
       for (let i = 0; i < m; i++) out[column + i]! += 2 * strength * (f * tiedOdd[i]! + heldOdd[i]!);
@@ -269,11 +289,9 @@ export class SpectrumProblem implements SeparableProblem {
 
   /** The tail alone for these parameters: C T. */
   tailCurve(theta: Float64Array, coefficients: Float64Array): Float64Array | null {
-    const column = this.tailColumn(theta, false);
-    if (column === null || this.spec.tail === null) return null;
-    let strength = 0;
-    this.spec.tail.strengthShare.forEach((share, j) => (strength += share * coefficients[j]!));
-    return column.map((value) => strength * value);
+    const { strength, q } = this.tailStrength(theta, coefficients);
+    const column = this.tailColumns(theta, q, false);
+    return column === null ? null : column.even.map((even, i) => strength * (even + 2 * q * column.odd[i]!));
   }
 
   /** The level law at theta, where levels are tied to it. */
@@ -287,6 +305,11 @@ export class SpectrumProblem implements SeparableProblem {
   }
 }
 
+/** Whether every line has an odd area B = (q_n - q) A beside its own; q is 0 where asymmetries are free. */
+export function hasOddAreas(spec: ModelSpec): boolean {
+  return spec.asymmetry === "free" || spec.asymmetry === "each";
+}
+
 function makeLayout(spec: ModelSpec): ThetaLayout {
   const k = spec.ns.length;
   const lawCount = spec.tiedLevels?.count ?? 0;
@@ -296,7 +319,7 @@ function makeLayout(spec: ModelSpec): ThetaLayout {
   for (let j = 0; j < k; j++)
     if (!(spec.tiedLevels?.tiedNs.includes(spec.ns[j]!) ?? false)) energyAt[j] = count++;
   for (let j = 0; j < k; j++) widthAt[j] = count++;
-  const asymmetryAt = spec.asymmetry === "shared" ? count++ : -1;
+  const asymmetryAt = spec.asymmetry === "shared" || spec.asymmetry === "each" ? count++ : -1;
   const factorAt = spec.tail !== null && spec.tail.factorFree ? count++ : -1;
   return { lawCount, energyAt, widthAt, asymmetryAt, factorAt, count };
 }

@@ -34,7 +34,7 @@ type BandColumn = keyof Required<AveragedTailOutputs>;
 const LEVEL_COUNT = 4;
 const WIDTH_COUNT = 3;
 const FAR_N = 1e6;
-const LEAST_WIDTH = 1e-8;
+const LEAST_WIDTH = 1e-9;
 const FWHM_OF_STD = 2 * Math.sqrt(2 * Math.LN2);
 
 export class TailEvaluator {
@@ -46,6 +46,7 @@ export class TailEvaluator {
   private readonly grid: SparseGrid;
   private readonly scratch: Float64Array[];
   private readonly sums: Float64Array[];
+  private readonly leastWidth: number;
   private readonly bands: readonly BandEdge[];
   private readonly bandScratch: Record<BandColumn, Float64Array>;
 
@@ -55,7 +56,8 @@ export class TailEvaluator {
     this.spec = spec;
     this.gaussStd = gaussStd;
     this.lorentz = lorentz;
-    this.bands = groupBands(spec);
+    this.leastWidth = Math.max(LEAST_WIDTH, 0.5 * stepAt(points.energy, spec.levels.gap));
+    this.bands = spec.band ? groupBands(spec) : [];
     const m = points.energy.length;
     const { gap, rydberg, defect0 } = spec.levels;
     const low = spec.toN >= spec.fromN ? gap - rydberg / (spec.fromN - defect0) ** 2 : gap;
@@ -260,13 +262,15 @@ export class TailEvaluator {
   }
 
   /**
-   * FWHM of an edge under a Lorentzian and a Gaussian: joined as for a Voigt line (Olivero and Longbothum 1977). At
-   * least a hundredth of a ueV, because an edge of no width has no derivative.
+   * FWHM of an edge under a Lorentzian and a Gaussian: joined as for a Voigt line (Olivero and Longbothum 1977). Half
+   * a sampling step is joined in quadrature: an edge sharper than the points would be placed between two of them with
+   * an error of nothing.
    */
   private edgeWidth(width: number): number {
-    if (this.gaussStd === 0) return width + LEAST_WIDTH;
+    const w = Math.hypot(width, this.leastWidth);
+    if (this.gaussStd === 0) return w;
     const gauss = FWHM_OF_STD * this.gaussStd;
-    return 0.5346 * width + Math.sqrt(0.2166 * width * width + gauss * gauss) + LEAST_WIDTH;
+    return 0.5346 * w + Math.sqrt(0.2166 * w * w + gauss * gauss);
   }
 
   private addBelow(law: LevelParameters, widths: WidthValues, q: number, derivatives: boolean): void {
@@ -315,9 +319,11 @@ export class TailEvaluator {
 
   /** d(edgeWidth)/d width. */
   private edgeSlope(width: number): number {
-    if (this.gaussStd === 0) return 1;
+    const w = Math.hypot(width, this.leastWidth);
+    const inner = width / w;
+    if (this.gaussStd === 0) return inner;
     const gauss = FWHM_OF_STD * this.gaussStd;
-    return 0.5346 + (0.2166 * width) / Math.sqrt(0.2166 * width * width + gauss * gauss);
+    return (0.5346 + (0.2166 * w) / Math.sqrt(0.2166 * w * w + gauss * gauss)) * inner;
   }
 }
 
@@ -354,4 +360,13 @@ export function groupBands(spec: TailSpec): BandEdge[] {
     before = height;
     low = high;
   }
+}
+
+/** Sampling step where an energy lies, or at the nearer end of the points. */
+function stepAt(energy: Float64Array, at: number): number {
+  const last = energy.length - 1;
+  if (last < 1) return 0;
+  let i = 1;
+  while (i < last && energy[i]! < at) i++;
+  return energy[i]! - energy[i - 1]!;
 }

@@ -62,9 +62,13 @@ export const protocolSchema = z.strictObject({
     reference_column: column,
     dark_column: column,
     thickness_um: positive.nullable(),
+    /** One standard uncertainty of the thickness; it moves every area by the same part (systematic). */
+    thickness_sigma_um: z.number().min(0).default(0),
     surface: z.strictObject({
       model: z.enum(["none", "single", "all"]),
       reflectance: z.number().min(0).lt(1).nullable(),
+      /** One standard uncertainty of the reflectance, carried to the areas where all reflections are counted. */
+      reflectance_sigma: z.number().min(0).lt(1).default(0),
       index: positive.nullable(),
       surround_index: positive,
     }),
@@ -112,7 +116,7 @@ export const protocolSchema = z.strictObject({
   tail: z.strictObject({
     /** `law`: lines above the last resolved one and the continuum follow the laws; `none`: left out. */
     model: z.enum(["law", "none"]),
-    /** Highest n of the tail; null: as many as the width law lets stand apart from the gap. */
+    /** Highest n that the crystal still shows: lines above it are absent up to the gap. Null: the series goes on. */
     cutoff_n: z.int().min(2).max(200).nullable(),
   }),
   series: z.strictObject({
@@ -136,6 +140,11 @@ export const protocolSchema = z.strictObject({
     profile: z.boolean(),
     systematic: z.boolean(),
     seed: z.int().min(0),
+    /** `note` says by how much correlated residuals would widen the standard errors; `allow` widens them. */
+    correlated: z.enum(["note", "allow"]).default("note"),
+    /** Spectra drawn anew and fitted again: from the fit with the given noise, or with its own residuals. */
+    resample: z.enum(["none", "parametric", "residual"]).default("none"),
+    resamples: z.int().min(10).max(100_000).default(500),
   }),
   power: powerProtocolSchema.prefault({}),
 });

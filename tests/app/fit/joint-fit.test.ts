@@ -61,6 +61,7 @@ function member(bleaching: number, seed: number): JointMember {
     tail: {
       fromN: 9,
       toN: 12,
+      band: true,
       below: [],
       levels: LEVELS,
       levelLink: level.link,

@@ -24,6 +24,7 @@ function link(parameters: number): TailSpec["levelLink"] {
 const TAIL: TailSpec = {
   fromN: 7,
   toN: 12,
+  band: true,
   below: [],
   levels: { gap: 1, rydberg: 0.05, defect0: 0.1, defect2: 0 },
   levelLink: link(3),
