@@ -22,3 +22,4 @@ export {
   type ResultIssue,
 } from "./parse-result.ts";
 export { differences, type Difference } from "./differences.ts";
+export * from "./comparison-schema.ts";

@@ -4,3 +4,4 @@ export { wordTableIssue } from "./wording.ts";
 export { splitColumnName } from "./column-name.ts";
 export type { ColumnName } from "./column-name.ts";
 export { isKnownUnit } from "./unit-text.ts";
+export { makeFact } from "./header-fact.ts";
