@@ -1,6 +1,24 @@
 import type { Wording } from "../base/index.ts";
+import type { Curves } from "../analysis/index.ts";
+import type { RunglineResult } from "../protocol/index.ts";
 import type { AnalysedFile, FileRequest, RunFacts } from "./analyse-file.ts";
 import type { Inspection } from "./inspect-file.ts";
+
+/** The files of one power series, in the order given, and what the user chose. */
+export interface SeriesRequest {
+  readonly files: readonly { readonly file: string; readonly bytes: Uint8Array }[];
+  readonly choices: unknown;
+}
+
+/** A power series as fitted: the result with its part `power`, and the curves of each spectrum, ascending in power. */
+export interface AnalysedSeries {
+  readonly result: RunglineResult;
+  readonly spectra: readonly {
+    readonly label: string;
+    readonly power_uW: number;
+    readonly curves: Curves;
+  }[];
+}
 
 /** What a shell asks of a worker (a page worker in the window, a pool thread in main), and what comes back. */
 export type WorkerRequest =
@@ -11,11 +29,19 @@ export type WorkerRequest =
       readonly run: RunFacts;
       readonly cancel: Int32Array | null;
     }
+  | {
+      readonly type: "analyse-power";
+      readonly id: number;
+      readonly request: SeriesRequest;
+      readonly run: RunFacts;
+      readonly cancel: Int32Array | null;
+    }
   | { readonly type: "inspect"; readonly id: number; readonly request: FileRequest };
 
 export type WorkerReply =
   | { readonly type: "progress"; readonly id: number; readonly fraction: number; readonly step: string }
   | { readonly type: "analysed"; readonly id: number; readonly analysed: AnalysedFile }
+  | { readonly type: "analysed-power"; readonly id: number; readonly analysed: AnalysedSeries }
   | { readonly type: "inspected"; readonly id: number; readonly inspection: Inspection }
   | { readonly type: "refused"; readonly id: number; readonly wordings: readonly Wording[] }
   | { readonly type: "cancelled"; readonly id: number }

@@ -1,9 +1,11 @@
 import type { Wording } from "../../app/base/index.ts";
 import type {
   AnalysedFile,
+  AnalysedSeries,
   FileRequest,
   Inspection,
   RunFacts,
+  SeriesRequest,
   WorkerReply,
   WorkerRequest,
 } from "../../app/tasks/index.ts";
@@ -28,7 +30,9 @@ export interface WorkerLike {
   onerror: ((event: ErrorEvent) => void) | null;
 }
 
-type Settle = (outcome: Outcome<never> | Outcome<AnalysedFile> | Outcome<Inspection>) => void;
+type Settle = (
+  outcome: Outcome<never> | Outcome<AnalysedFile> | Outcome<AnalysedSeries> | Outcome<Inspection>,
+) => void;
 interface Pending {
   readonly settle: Settle;
   readonly progress: ((fraction: number, step: string) => void) | null;
@@ -66,11 +70,26 @@ export class JobClient {
     run: RunFacts,
     progress: (fraction: number, step: string) => void,
   ): RunningJob<AnalysedFile> {
+    return this.#run(progress, (id, cancel) => ({ type: "analyse", id, request, run, cancel }));
+  }
+
+  analysePower(
+    request: SeriesRequest,
+    run: RunFacts,
+    progress: (fraction: number, step: string) => void,
+  ): RunningJob<AnalysedSeries> {
+    return this.#run(progress, (id, cancel) => ({ type: "analyse-power", id, request, run, cancel }));
+  }
+
+  #run<T>(
+    progress: (fraction: number, step: string) => void,
+    message: (id: number, cancel: Int32Array | null) => WorkerRequest,
+  ): RunningJob<T> {
     const id = this.#nextId++;
     const cancel = this.#shared ? new Int32Array(new SharedArrayBuffer(4)) : null;
-    const outcome = new Promise<Outcome<AnalysedFile>>((resolve) => {
+    const outcome = new Promise<Outcome<T>>((resolve) => {
       this.#pending.set(id, { settle: resolve as Settle, progress });
-      this.#ready().postMessage({ type: "analyse", id, request, run, cancel });
+      this.#ready().postMessage(message(id, cancel));
     });
     return {
       outcome,
@@ -111,6 +130,8 @@ export class JobClient {
     this.#pending.delete(reply.id);
     switch (reply.type) {
       case "analysed":
+        return pending.settle({ kind: "done", value: reply.analysed });
+      case "analysed-power":
         return pending.settle({ kind: "done", value: reply.analysed });
       case "inspected":
         return pending.settle({ kind: "done", value: reply.inspection });

@@ -3,7 +3,7 @@ import { useStore } from "zustand";
 import type { AnalysedFile } from "../../app/tasks/index.ts";
 import type { ProtocolInput } from "../../app/protocol/index.ts";
 import type { Controller } from "./controller.ts";
-import { NO_CHOICES, type Fitted, type LoadedFile } from "./session.ts";
+import { NO_CHOICES, seriesOf, type Fitted, type LoadedFile, type PowerFitted } from "./session.ts";
 import type { Reading, WindowState } from "./store.ts";
 
 export const ControllerContext = createContext<Controller | null>(null);
@@ -45,4 +45,29 @@ export const currentAnalysed = (state: WindowState): AnalysedFile | null =>
 export const fitIsOld = (state: WindowState): boolean => {
   const fit = currentFit(state);
   return fit !== null && fit.choices !== currentChoices(state);
+};
+
+const ALONE: readonly string[] = [];
+
+/** The files of the power series that the current file stands in, itself where it is marked with none. */
+export const currentSeries = ({ session }: WindowState): readonly string[] => {
+  const id = session.currentId;
+  // A list of its own would differ at every look and redraw without end.
+  return id === null ? ALONE : (session.series.find((members) => members.includes(id)) ?? ALONE);
+};
+
+/** Under what the fit of the current power series is kept: its first file. */
+export const currentSeriesId = ({ session }: WindowState): string | null =>
+  session.currentId === null ? null : seriesOf(session, session.currentId)[0]!;
+
+export const currentPower = (state: WindowState): PowerFitted | null => {
+  const id = currentSeriesId(state);
+  return (id === null ? undefined : state.session.powerFits[id]) ?? null;
+};
+
+export const powerIsOld = (state: WindowState): boolean => {
+  const fit = currentPower(state);
+  if (fit === null) return false;
+  const members = state.session.currentId === null ? [] : seriesOf(state.session, state.session.currentId);
+  return fit.choices !== currentChoices(state) || fit.fileIds.join("\n") !== members.join("\n");
 };

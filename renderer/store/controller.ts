@@ -13,6 +13,10 @@ import {
   chooseFile,
   editChoices,
   keepFit,
+  keepPower,
+  markSeries,
+  partSeries,
+  seriesOf,
   NO_CHOICES,
   removeFile,
   replaceChoices,
@@ -23,6 +27,12 @@ import type { Message, Reading, Stage, ThemeChoice, WindowState, WindowStore } f
 
 /** The demo crystal is cuprous oxide; a newcomer should not have to know. */
 const DEMO_CHOICES: ProtocolInput = { material: { preset: "cuprous-oxide-yellow-p" } };
+
+/** The same crystal, and what the header of the demo series says in words only. */
+const SERIES_CHOICES: ProtocolInput = {
+  ...DEMO_CHOICES,
+  power: { excitation: "separate-pump", spot_diameter_um: 12, spot_profile: "flat" },
+};
 
 /** What the window can do, in one place: the parts of the interface only call these. */
 export class Controller {
@@ -97,6 +107,38 @@ export class Controller {
     }
   }
 
+  /** The demo power series, fitted at once. */
+  async openDemoSeries(): Promise<void> {
+    let files: readonly NamedBytes[];
+    try {
+      files = await this.#host.demoSeries();
+    } catch (error) {
+      this.say(true, `the demo series could not be read: ${textOf(error)}`, "start Rungline again");
+      return;
+    }
+    if (files.length === 0) {
+      this.say(true, "there is no demo series beside this program", "open a power series of your own");
+      return;
+    }
+    this.#edit((before) => {
+      const added = addFiles(before, files, SERIES_CHOICES);
+      if (files.length === 1) return { ...added, step: "open the demo series" };
+      const ids = added.files.slice(before.files.length).map(({ id }) => id);
+      return { ...markSeries(added, ids), step: "open the demo series" };
+    });
+    this.#set({ stage: "power", selectedN: null });
+    await this.fitPower();
+  }
+
+  markSeries(ids: readonly string[]): void {
+    this.#edit((session) => markSeries(session, ids));
+    this.#set({ stage: "power", selectedN: null });
+  }
+
+  partSeries(id: string): void {
+    this.#edit((session) => partSeries(session, id));
+  }
+
   close(id: string): void {
     if (this.store.getState().job?.fileId === id) this.cancel();
     this.#edit((session) => removeFile(session, id));
@@ -153,16 +195,13 @@ export class Controller {
     if (file === undefined || job !== null || facts === null) return;
     const choices = session.choices[file.id] ?? NO_CHOICES;
     this.#set({
-      job: { fileId: file.id, fraction: 0, step: "starting", cancelling: false },
+      job: { fileId: file.id, what: "fit", fraction: 0, step: "starting", cancelling: false },
       refusals: without(this.store.getState().refusals, file.id),
     });
     const running = this.#fitter.analyse(
       { file: file.name, bytes: file.bytes, choices },
       { version: facts.version, node: facts.node, started: this.#now().toISOString() },
-      (fraction, step) => {
-        const present = this.store.getState().job;
-        if (present !== null) this.#set({ job: { ...present, fraction, step } });
-      },
+      this.#progress,
     );
     this.#running = running;
     const outcome = await running.outcome;
@@ -187,6 +226,52 @@ export class Controller {
     }
   }
 
+  /** Fit the current file, or all files marked with it, as a power series. */
+  async fitPower(): Promise<void> {
+    const { session, job, facts } = this.store.getState();
+    if (session.currentId === null || job !== null || facts === null) return;
+    const fileIds = seriesOf(session, session.currentId);
+    const files = fileIds.flatMap((id) => session.files.filter((file) => file.id === id));
+    const id = fileIds[0]!;
+    const choices = session.choices[session.currentId] ?? NO_CHOICES;
+    const name = files.length === 1 ? files[0]!.name : `${files.length} files`;
+    this.#set({
+      job: { fileId: id, what: "power", fraction: 0, step: "starting", cancelling: false },
+      powerRefusals: without(this.store.getState().powerRefusals, id),
+    });
+    const running = this.#fitter.analysePower(
+      { files: files.map((file) => ({ file: file.name, bytes: file.bytes })), choices },
+      { version: facts.version, node: facts.node, started: this.#now().toISOString() },
+      this.#progress,
+    );
+    this.#running = running;
+    const outcome = await running.outcome;
+    this.#running = null;
+    this.#set({ job: null });
+    switch (outcome.kind) {
+      case "done":
+        this.#edit((before) => keepPower(before, id, { analysed: outcome.value, choices, fileIds }));
+        break;
+      case "refused":
+        this.#set({ powerRefusals: { ...this.store.getState().powerRefusals, [id]: outcome.wordings } });
+        break;
+      case "cancelled":
+        this.say(false, `the fit of the power series ${name} was cancelled`, "press Fit to start it again");
+        break;
+      case "fault":
+        this.say(
+          true,
+          `a fault of Rungline while fitting the power series ${name}: ${outcome.message}`,
+          "keep the files and the protocol and report them",
+        );
+    }
+  }
+
+  readonly #progress = (fraction: number, step: string): void => {
+    const present = this.store.getState().job;
+    if (present !== null) this.#set({ job: { ...present, fraction, step } });
+  };
+
   cancel(): void {
     const { job } = this.store.getState();
     if (job === null || this.#running === null) return;
@@ -197,10 +282,13 @@ export class Controller {
   /** The result, or the protocol that repeats it; a file each, since a page may offer one at a time. */
   async saveFit(what: "result" | "protocol"): Promise<void> {
     const { session } = this.store.getState();
-    const fit = session.currentId === null ? undefined : session.fits[session.currentId];
-    const file = session.files.find((one) => one.id === session.currentId);
+    const { currentId } = session;
+    if (currentId === null) return;
+    const power = this.store.getState().stage === "power";
+    const fit = power ? session.powerFits[seriesOf(session, currentId)[0]!] : session.fits[currentId];
+    const file = session.files.find((one) => one.id === currentId);
     if (fit === undefined || file === undefined) return;
-    const base = file.name.replace(/\.[^.]+$/, "");
+    const base = `${file.name.replace(/\.[^.]+$/, "")}${power ? ".power" : ""}`;
     const { result } = fit.analysed;
     if (what === "result") await this.save(`${base}.json`, encode(resultToJson(result)));
     else await this.save(`${base}.protocol.json`, encode(protocolToJson(result.protocol)));

@@ -1,5 +1,5 @@
 import { produce } from "immer";
-import type { AnalysedFile, NamedBytes } from "../../app/tasks/index.ts";
+import type { AnalysedFile, AnalysedSeries, NamedBytes } from "../../app/tasks/index.ts";
 import { mergeChoices, type ProtocolInput } from "../../app/protocol/index.ts";
 
 /** A file in the drawer. */
@@ -15,6 +15,13 @@ export interface Fitted {
   readonly choices: ProtocolInput;
 }
 
+/** The same of a power series. */
+export interface PowerFitted {
+  readonly analysed: AnalysedSeries;
+  readonly choices: ProtocolInput;
+  readonly fileIds: readonly string[];
+}
+
 /**
  * What undo goes back over: the files, the choices of each, the fits that stand, and which of them is shown. Plain, never
  * changed in place; `step` names the edit that led here, for the undo button.
@@ -24,6 +31,10 @@ export interface Session {
   readonly currentId: string | null;
   readonly choices: Readonly<Record<string, ProtocolInput>>;
   readonly fits: Readonly<Record<string, Fitted>>;
+  /** Files marked as one power series; a file stands in one at most. All of a series have the same choices. */
+  readonly series: readonly (readonly string[])[];
+  /** By the id of the series' first file. */
+  readonly powerFits: Readonly<Record<string, PowerFitted>>;
   readonly step: string;
 }
 
@@ -32,6 +43,8 @@ export const EMPTY_SESSION: Session = {
   currentId: null,
   choices: {},
   fits: {},
+  series: [],
+  powerFits: {},
   step: "start",
 };
 
@@ -68,6 +81,11 @@ export function removeFile(session: Session, id: string): Session {
     currentId: session.currentId === id ? next : session.currentId,
     choices: without(session.choices),
     fits: without(session.fits),
+    series: session.series.flatMap((members) => {
+      const left = members.filter((one) => one !== id);
+      return left.length > 1 ? [left] : [];
+    }),
+    powerFits: without(session.powerFits),
     step: `close ${session.files[at]!.name}`,
   };
 }
@@ -85,12 +103,56 @@ export function editChoices(session: Session, change: ProtocolInput, step: strin
   const cleared = change.material?.preset === undefined ? before : { ...before, material: {} };
   const after = mergeChoices(cleared, change) as ProtocolInput;
   if (JSON.stringify(after) === JSON.stringify(before)) return session;
-  return { ...session, choices: { ...session.choices, [id]: after }, step };
+  return { ...session, choices: withChoices(session, id, after), step };
+}
+
+/** The files that are fitted with this one as a power series: those marked with it, else itself. */
+export function seriesOf(session: Session, id: string): readonly string[] {
+  return session.series.find((members) => members.includes(id)) ?? [id];
+}
+
+function withChoices(session: Session, id: string, choices: ProtocolInput): Session["choices"] {
+  const same = seriesOf(session, id).map((one) => [one, choices] as const);
+  return { ...session.choices, ...Object.fromEntries(same) };
+}
+
+/** These files are one power series from now on, in the order of the drawer, with the choices of the first. */
+export function markSeries(session: Session, ids: readonly string[]): Session {
+  const members = session.files.flatMap((file) => (ids.includes(file.id) ? [file.id] : []));
+  if (members.length < 2) return session;
+  const others = session.series.flatMap((one) => {
+    const left = one.filter((id) => !members.includes(id));
+    return left.length > 1 ? [left] : [];
+  });
+  const marked = { ...session, series: [...others, members] };
+  return {
+    ...marked,
+    choices: withChoices(marked, members[0]!, session.choices[members[0]!] ?? NO_CHOICES),
+    currentId: members[0]!,
+    step: `one power series of ${members.length} files`,
+  };
+}
+
+export function partSeries(session: Session, id: string): Session {
+  const series = session.series.filter((members) => !members.includes(id));
+  return series.length === session.series.length
+    ? session
+    : { ...session, series, step: "files no longer one power series" };
+}
+
+export function keepPower(session: Session, id: string, fitted: PowerFitted): Session {
+  const file = session.files.find((one) => one.id === id);
+  if (file === undefined) return session;
+  return {
+    ...session,
+    powerFits: { ...session.powerFits, [id]: fitted },
+    step: `fit the power series ${file.name}`,
+  };
 }
 
 export function replaceChoices(session: Session, choices: ProtocolInput, step: string): Session {
   const id = session.currentId;
-  return id === null ? session : { ...session, choices: { ...session.choices, [id]: choices }, step };
+  return id === null ? session : { ...session, choices: withChoices(session, id, choices), step };
 }
 
 /** The current file's choices for every file. */

@@ -5,7 +5,7 @@ import type { ProtocolInput } from "../../app/protocol/index.ts";
 import type { HostFacts, Inspection } from "../../app/tasks/index.ts";
 import { EMPTY_SESSION, type Session } from "./session.ts";
 
-export type Stage = "read" | "lines" | "ladder";
+export type Stage = "read" | "lines" | "ladder" | "power";
 export type ThemeChoice = "system" | "light" | "dark";
 
 /** How the current choices read a file. */
@@ -16,6 +16,7 @@ export type Reading =
 
 export interface FitJob {
   readonly fileId: string;
+  readonly what: "fit" | "power";
   readonly fraction: number;
   readonly step: string;
   readonly cancelling: boolean;
@@ -42,6 +43,8 @@ export interface WindowState {
   readonly readings: Readonly<Record<string, Reading>>;
   /** Why a fit of a file was refused, kept until the next try. */
   readonly refusals: Readonly<Record<string, readonly Wording[]>>;
+  /** Why a power series was refused, by the id of its first file. */
+  readonly powerRefusals: Readonly<Record<string, readonly Wording[]>>;
   readonly job: FitJob | null;
   readonly messages: readonly Message[];
   readonly theme: ThemeChoice;
@@ -61,6 +64,7 @@ export function makeStore() {
         selectedN: null,
         readings: {},
         refusals: {},
+        powerRefusals: {},
         job: null,
         messages: [],
         theme: "system",
