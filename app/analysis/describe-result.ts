@@ -24,6 +24,7 @@ import type { Spectrum } from "../spectrum/index.ts";
 import type { AnalysisResult } from "./analyse.ts";
 import type { Assignment } from "./assign-n.ts";
 import { bicGain, significances } from "./climb-ladder.ts";
+import { describeDiagnostics } from "./diagnostics.ts";
 import { findDoubts } from "./find-doubts.ts";
 import type { Peak } from "./find-peaks.ts";
 import type { FullFit } from "./fit-full.ts";
@@ -31,7 +32,8 @@ import { intervalFactor } from "./interval.ts";
 import type { ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces, levelInput } from "./level-range.ts";
 import type { SelectedPoints } from "./select-points.ts";
-import { judgeSystematics } from "./systematics.ts";
+import { judgeSystematics, systematicNotes } from "./systematics.ts";
+import { resampleSpectrum } from "./resample.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 
 export type Described = Omit<AnalysisResult, "seconds">;
@@ -119,22 +121,28 @@ export function describeResult(
   const systematic =
     protocol.uncertainty.systematic && range !== null
       ? judgeSystematics(
+          spectrum,
           thinPoints(points, linesForThinning(state, protocol)),
           state,
           range.fit,
           protocol,
-          spectrum.unit,
           choices,
           watch,
         )
       : null;
+  const drawn = resampleSpectrum(points, full, protocol, spectrum.unit, choices, watch, (done, of) =>
+    watch.report(0.85 + (0.14 * done) / of, `drawing spectra anew, ${done} of ${of}`),
+  );
   const parameters = fit.problem.nonlinear + fit.problem.linear;
   const criteria = informationCriteria(solution.chi2, m, parameters);
   const lag1 = neighbourCorrelation(solution.residuals);
   const fitPart: NonNullable<RunglineResult["fit"]> = {
     domain: full.domain.name,
     termination: solution.termination,
-    sigma_from: protocol.uncertainty.scale_by_residuals ? "residuals" : "given",
+    sigma_from:
+      protocol.uncertainty.scale_by_residuals || protocol.uncertainty.correlated === "allow"
+        ? "residuals"
+        : "given",
     chi2: solution.chi2,
     dof: solution.degreesOfFreedom,
     reduced_chi2: reduced,
@@ -167,6 +175,8 @@ export function describeResult(
     ...findDoubts({ spectrum, protocol, points, peaks, assignment, full, fit: fitPart, lines, tail, series }),
     ...laws.notes,
     ...derivedParts.notes,
+    ...systematicNotes(systematic),
+    ...(drawn?.notes ?? []),
   ]);
   return {
     schema: RESULT_SCHEMA,
@@ -192,6 +202,8 @@ export function describeResult(
       unit: column.unit,
       quantity: quantity(column.value, column.sigma),
     })),
+    diagnostics: describeDiagnostics(full, protocol),
+    ...(drawn === null ? {} : { resampled: drawn.resampled }),
   };
 }
 

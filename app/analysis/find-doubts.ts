@@ -118,7 +118,7 @@ function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
         "residuals-correlated",
         "fit.lag1",
         `Neighbouring residuals correlate by ${lag1.toFixed(2)}: about ${Math.round(independent)} of ${points.energy.length} points are independent, and standard errors are too small by about ${Math.sqrt(points.energy.length / independent).toFixed(2)}.`,
-        "measure with a step no finer than the instrument resolves, or scale the errors (uncertainty.scale_by_residuals)",
+        "set uncertainty.correlated=allow, which carries the correlation into every standard error; or measure with a step no finer than the instrument resolves",
       ),
     );
   }

@@ -2,6 +2,7 @@ import { stopIfCancelled, type Note, type Watch } from "../base/index.ts";
 import {
   fitSpectrum,
   withAxisJitter,
+  withCorrelatedErrors,
   withScaledErrors,
   type FitPoints,
   type SpectrumFit,
@@ -135,6 +136,8 @@ function tieLevels(
 
 /** Standard errors scaled by the residuals where the protocol asks for it, and the jitter of the axis. */
 function withAskedErrors(fit: SpectrumFit, protocol: Protocol): SpectrumFit {
+  if (protocol.uncertainty.correlated === "allow")
+    return withAxisJitter(withCorrelatedErrors(fit), protocol.axis.jitter_eV);
   const { chi2, degreesOfFreedom } = fit.solution;
   const scaled = protocol.uncertainty.scale_by_residuals
     ? withScaledErrors(fit, chi2 / Math.max(1, degreesOfFreedom))

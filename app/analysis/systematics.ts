@@ -1,9 +1,10 @@
-import { stopIfCancelled, type Watch } from "../base/index.ts";
+import { doubt, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
 import { fitSpectrum, withAxisJitter, type FitPoints } from "../fit/index.ts";
 import type { BackgroundTerm, Protocol, RunglineResult } from "../protocol/index.ts";
 import { fitLevels, type LevelFit } from "../series/index.ts";
 import { informationCriteria, runsTest } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
+import { areaSystematic } from "./area-systematic.ts";
 import { buildModel, energyOf, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces } from "./level-range.ts";
 
@@ -29,18 +30,18 @@ const DEFENSIBLE_BIC = 10;
  * Shapes    points: the averaged points (differences between trials are what matters).
  */
 export function judgeSystematics(
+  spectrum: Spectrum,
   points: FitPoints,
   state: LadderState,
   reference: LevelFit,
   protocol: Protocol,
-  unit: Spectrum["unit"],
   choices: ModelChoices,
   watch: Watch,
 ): Systematic {
   const trials = planTrials(points, state, protocol, choices);
   const rows: (Systematic["trials"][number] & { samePoints: boolean })[] = [];
   for (const trial of trials) {
-    const row = runTrial(points, state, reference, protocol, unit, trial, watch);
+    const row = runTrial(points, state, reference, protocol, spectrum.unit, trial, watch);
     if (row !== null) rows.push({ ...row, samePoints: trial.samePoints });
   }
   const bics = rows.filter((row) => row.samePoints && row.bic !== null).map((row) => row.bic!);
@@ -54,16 +55,47 @@ export function judgeSystematics(
     const values = counted.map(pick).filter((value): value is number => value !== null);
     return values.length < 2 ? null : (Math.max(...values) - Math.min(...values)) / 2;
   };
-  const axis = Math.hypot(protocol.axis.offset_sigma_eV, protocol.axis.scale_sigma * state.levels.gap);
   const gap = half((row) => row.gap_eV);
   const rydberg = half((row) => row.rydberg_eV);
+  const { offset_sigma_eV: offset, scale_sigma: scale } = protocol.axis;
+  const relative = areaSystematic(spectrum, protocol, points);
   return {
-    gap_eV: gap === null ? null : Math.hypot(gap, axis),
-    rydberg_eV:
-      rydberg === null ? null : Math.hypot(rydberg, protocol.axis.scale_sigma * state.levels.rydberg),
+    // An error of the axis stands even where no other background could be tried.
+    gap_eV: withAxis(gap, Math.hypot(offset, scale * state.levels.gap)),
+    rydberg_eV: withAxis(rydberg, scale * state.levels.rydberg),
     defect0: half((row) => row.defect0),
-    trials: rows.map(({ samePoints: _, ...row }) => row),
+    ...(relative === null ? {} : { area_relative: relative }),
+    trials: rows.map(({ samePoints, ...row }, i) => ({
+      ...row,
+      same_points: samePoints,
+      counted: counted.includes(rows[i]!),
+    })),
   };
+}
+
+function withAxis(spread: number | null, axis: number): number | null {
+  if (spread === null) return axis > 0 ? axis : null;
+  return Math.hypot(spread, axis);
+}
+
+/** A background on the list that describes the spectrum clearly better than the one that was asked for is said, not taken. */
+export function systematicNotes(systematic: Systematic | null): Note[] {
+  const chosen = systematic?.trials[0];
+  if (systematic === null || chosen === undefined || chosen.bic === null) return [];
+  const rivals = systematic.trials.filter((row) => row.same_points === true && row.bic !== null);
+  const best = rivals.reduce((a, b) => (b.bic! < a.bic! ? b : a), chosen);
+  if (best === chosen || best.bic! > chosen.bic - DEFENSIBLE_BIC) return [];
+  const moved = best.gap_eV === null || chosen.gap_eV === null ? null : best.gap_eV - chosen.gap_eV;
+  return [
+    doubt(
+      "background-better",
+      "background",
+      `Another background describes the spectrum clearly better: ${best.name} (BIC lower by ${(chosen.bic - best.bic!).toFixed(0)}, p of runs ${best.runs_p?.toPrecision(2) ?? "unknown"} against ${chosen.runs_p?.toPrecision(2) ?? "unknown"})${
+        moved === null ? "" : `; it moves the gap by ${(1e6 * moved).toPrecision(3)} ueV`
+      }.`,
+      "set background (or tail.model) in the protocol to it, or say why not",
+    ),
+  ];
 }
 
 function planTrials(

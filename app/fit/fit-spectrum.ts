@@ -32,6 +32,8 @@ export interface SpectrumFit {
   }[];
   /** n of lines that ended at a bound of their energy or width. */
   readonly atBound: readonly number[];
+  /** True where the transmitted light was fitted: `problem` is then the signal, and not what the residuals belong to. */
+  readonly measured?: boolean;
 }
 
 export interface FitStart {

@@ -163,7 +163,7 @@ function asSignal(
     // T falls where the signal rises.
     signal[i]! -= solution.residuals[i]! * sigma[i]!;
   }
-  return { fit: describeFit(outer, parts), linearised: { energy: light.energy, signal, sigma } };
+  return { fit: { ...describeFit(outer, parts), measured: true }, linearised: { energy: light.energy, signal, sigma } };
 }
 
 /** The signal at these parameters with the slit acting on the signal, as a fit of the signal would have it. */

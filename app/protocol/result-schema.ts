@@ -56,6 +56,74 @@ export const ladderStepSchema = z.strictObject({
   p: number,
 });
 
+/** Median and interval (at the protocol's level) of a number over resampled spectra; null where it was held. */
+export const resampledSchema = z.strictObject({ median: number, low: number, high: number });
+
+/** A line's pull on the series: leverage, residual in standard errors, and changes when it is left out, in standard errors. */
+export const influenceSchema = z.strictObject({
+  n: z.int(),
+  leverage: number,
+  residual: number,
+  gap_eV: number,
+  rydberg_eV: number,
+  defect0: number,
+});
+
+const correlationSchema = z.strictObject({ names: z.array(z.string()), matrix: z.array(z.array(number)) });
+
+/** What a referee asks of the fit; compact, so that a result stays readable. */
+export const diagnosticsSchema = z.strictObject({
+  /** Autocorrelation of the residuals at lags 1, 2, ... */
+  autocorrelation: z.array(number),
+  /** How many neighbouring points count as one, and the factor by which standard errors follow if that is allowed for. */
+  correlation_time: number,
+  error_factor: number,
+  /** Ordered residuals against a normal distribution, at evenly spread probabilities. */
+  quantiles: z.array(z.strictObject({ probability: z.number(), normal: z.number(), residual: z.number() })),
+  skewness: number,
+  excess_kurtosis: number,
+  /** Of the parameters of the lines: energies, widths, areas by n, asymmetry, factor of the tail. */
+  correlation: correlationSchema,
+  /** Parameters correlated by more than 0.9 in size, strongest first. */
+  strongest: z.array(z.strictObject({ a: z.string(), b: z.string(), correlation: z.number() })),
+  influence: z.array(influenceSchema),
+  condition: number,
+  /** Parameters within five standard errors of a bound, and those at one. */
+  bounds: z.array(
+    z.strictObject({ name: z.string(), value: z.number(), bound: z.number(), distance_sigma: number }),
+  ),
+  /** Curves of equal likelihood in two series parameters. */
+  regions: z.array(
+    z.strictObject({
+      x: z.string(),
+      y: z.string(),
+      level: z.number(),
+      points: z.array(z.tuple([z.number(), z.number()])),
+    }),
+  ),
+});
+
+export const resamplingSchema = z.strictObject({
+  kind: z.enum(["parametric", "residual"]),
+  count: z.int(),
+  failed: z.int(),
+  seed: z.int(),
+  /** Residuals are drawn in blocks of this many neighbours. */
+  block_points: z.int(),
+  gap_eV: resampledSchema,
+  rydberg_eV: resampledSchema,
+  defect0: resampledSchema,
+  width_exponent: resampledSchema,
+  lines: z.array(
+    z.strictObject({
+      n: z.int(),
+      energy_eV: resampledSchema,
+      width_eV: resampledSchema,
+      area: resampledSchema,
+    }),
+  ),
+});
+
 export const resultSchema = z.strictObject({
   schema: z.literal(RESULT_SCHEMA),
   source: z.strictObject({ file: z.string(), sha256: z.string(), points: z.int() }),
@@ -133,6 +201,8 @@ export const resultSchema = z.strictObject({
       gap_eV: number,
       rydberg_eV: number,
       defect0: number,
+      /** Relative error that thickness and reflectance put on all areas alike. */
+      area_relative: number.optional(),
       trials: z.array(
         z.strictObject({
           name: z.string(),
@@ -142,6 +212,10 @@ export const resultSchema = z.strictObject({
           chi2: number,
           bic: number,
           runs_p: number,
+          /** Whether the spread counts it: its BIC is within 10 of the best on the same points, or its window is another. */
+          counted: z.boolean().optional(),
+          /** Fitted to the same points, so that BIC can be compared. */
+          same_points: z.boolean().optional(),
         }),
       ),
     })
@@ -186,6 +260,9 @@ export const resultSchema = z.strictObject({
   background: z.array(
     z.strictObject({ term: z.string(), name: z.string(), unit: z.string(), quantity: quantitySchema }),
   ),
+  diagnostics: diagnosticsSchema.nullable().optional(),
+  /** Of `uncertainty.resample`. */
+  resampled: resamplingSchema.nullable().optional(),
   /** Of a power series only. */
   power: powerSchema.nullable().optional(),
   run: z.strictObject({
@@ -202,5 +279,7 @@ export const resultSchema = z.strictObject({
 });
 
 export type RunglineResult = z.output<typeof resultSchema>;
+export type Diagnostics = z.output<typeof diagnosticsSchema>;
+export type Resampling = z.output<typeof resamplingSchema>;
 export type LineResult = z.output<typeof lineSchema>;
 export type LadderStep = z.output<typeof ladderStepSchema>;

@@ -25,5 +25,7 @@ export {
   type DerivedQuantities,
 } from "./derive.ts";
 export { wordSeriesIssue, type SeriesIssue } from "./wording.ts";
+export { jointRegion, type JointRegion, type LevelName } from "./joint-region.ts";
+export { levelInfluence, type LineInfluence } from "./influence.ts";
 export { profileLevels, type LevelProfile } from "./level-profile.ts";
 export { seriesToResult, strengthsToResult, widthsToResult } from "./to-result.ts";

@@ -16,3 +16,4 @@ export type { ProfileInterval, ProfileProblem } from "./profile.ts";
 export { fSurvival } from "./fDistribution.ts";
 export { condenseRows, LEAST_POINTS, NODES } from "./condense.ts";
 export type { CondensedRows, Panel } from "./condense.ts";
+export { autocorrelation, correlationTime, defaultLags } from "./autocorrelation.ts";

@@ -1,0 +1,48 @@
+/**
+ * What      Autocorrelation of residuals about their mean at lags 0..most: rho_k = sum d_i d_{i+k}/sum d_i^2.
+ * Shapes    residuals (m); returns most + 1 numbers, the first 1 (all NaN without spread).
+ * Domain    the sum has m - k terms over the full one, the estimate that gives a positive semidefinite sequence.
+ * Source    Box, Jenkins, Reinsel, Time Series Analysis, 3rd ed. (1994), 2.1.
+ */
+export function autocorrelation(residuals: ArrayLike<number>, most: number): Float64Array {
+  const m = residuals.length;
+  const out = new Float64Array(most + 1).fill(NaN);
+  if (m < 2) return out;
+  let mean = 0;
+  for (let i = 0; i < m; i++) mean += residuals[i]! / m;
+  let square = 0;
+  for (let i = 0; i < m; i++) square += (residuals[i]! - mean) ** 2;
+  if (!(square > 0)) return out;
+  for (let lag = 0; lag <= most; lag++) {
+    let sum = 0;
+    for (let i = lag; i < m; i++) sum += (residuals[i]! - mean) * (residuals[i - lag]! - mean);
+    out[lag] = sum / square;
+  }
+  return out;
+}
+
+/** Lags after which white noise would show no more: the rule 4 (m/100)^(2/9) of the Newey-West estimate, at least 1. */
+export function defaultLags(points: number): number {
+  return Math.max(1, Math.floor(4 * (points / 100) ** (2 / 9)));
+}
+
+/**
+ * How many neighbours count as one: 1 + 2 sum w_k rho_k with Bartlett's weights w_k = 1 - k/(L + 1). The lags L grow from the
+ * default until the correlation has died out (|rho| below two standard errors of white noise), at most to m/20.
+ */
+export function correlationTime(residuals: ArrayLike<number>): {
+  readonly time: number;
+  readonly lags: number;
+} {
+  const m = residuals.length;
+  const most = Math.max(1, Math.floor(m / 20));
+  const rho = autocorrelation(residuals, most);
+  let lags = Math.min(most, defaultLags(m));
+  let died = 0;
+  while (died < most && Math.abs(rho[died + 1]!) > 2 / Math.sqrt(m)) died++;
+  // Bartlett's weights reach zero at L + 1: twice the length of the correlation keeps most of it.
+  lags = Math.min(most, Math.max(lags, 3 * died));
+  let time = 1;
+  for (let k = 1; k <= lags; k++) time += 2 * (1 - k / (lags + 1)) * rho[k]!;
+  return { time: Number.isFinite(time) ? Math.max(time, 1e-3) : 1, lags };
+}
