@@ -2,7 +2,10 @@ import { NO_WATCH, type Watch } from "../base/index.ts";
 import { LEVEL, levelLaw } from "../laws/index.ts";
 import { solveSeparable, type SeparableSolution } from "../solve/index.ts";
 import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
-import { SpectrumProblem } from "./spectrum-problem.ts";
+import { ASYMMETRY_BOUND, FACTOR_BOUND, WIDTH_BOUND_FACTOR } from "./bounds.ts";
+import type { ConstrainedParts, ExtraFit, FittedValue } from "./describe-constrained.ts";
+import { setUpFit } from "./set-up-fit.ts";
+import { hasOddAreas, type SpectrumProblem } from "./spectrum-problem.ts";
 
 /** Where the parameters of the lines stand in `LineParameters`. */
 export interface LineParameters {
@@ -34,6 +37,8 @@ export interface SpectrumFit {
   readonly atBound: readonly number[];
   /** True where the transmitted light was fitted: `problem` is then the signal, and not what the residuals belong to. */
   readonly measured?: boolean;
+  /** Present where parameters were held, bounded, shared or tied line by line, or other series were fitted too. */
+  readonly constrained?: ConstrainedParts;
 }
 
 export interface FitStart {
@@ -51,12 +56,7 @@ export interface FitControl {
   readonly watch?: Watch;
 }
 
-/** Largest |q|; far beyond what any published exciton line shows. */
-const ASYMMETRY_BOUND = 5;
-/** The tied lines may fall short of the strength law, and exceed it a little (PHYSICS of the tail). */
-export const FACTOR_BOUND = 1.2;
-/** A fit may change a width by this factor from its start. */
-const WIDTH_BOUND_FACTOR = 8;
+export { FACTOR_BOUND } from "./bounds.ts";
 
 /** Fits one spectrum and returns the parameters of its lines with their full covariance. */
 export function fitSpectrum(
@@ -65,11 +65,9 @@ export function fitSpectrum(
   start: FitStart,
   control: FitControl = {},
 ): SpectrumFit {
-  const problem = new SpectrumProblem(points, spec);
-  const theta = problem.startFrom(start.lines, start.asymmetry, start.factor);
-  const { lower, upper } = parameterBounds(problem, start, theta);
-  for (let i = 0; i < theta.length; i++) theta[i] = Math.min(upper[i]!, Math.max(lower[i]!, theta[i]!));
-  const solution = solveSeparable(problem, theta, {
+  const setUp = setUpFit(points, spec, start);
+  const { lower, upper } = setUp;
+  const solution = solveSeparable(setUp.problem, setUp.start, {
     lower,
     upper,
     maxIterations: control.maxIterations ?? 100,
@@ -78,7 +76,7 @@ export function fitSpectrum(
     // Whoever asks for the fit reports where the whole job is; the solver only hears whether to stop.
     watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
   });
-  return describeFit(problem, solution);
+  return setUp.describe(solution);
 }
 
 /** Bounds of theta about its start; the coefficients have none. */
@@ -120,12 +118,15 @@ export function describeFit(problem: SpectrumProblem, solution: SeparableSolutio
   const k = spec.ns.length;
   const p = layout.count;
   const size = p + problem.linear;
-  const free = spec.asymmetry === "free";
+  const odd = hasOddAreas(spec);
   const energy = Float64Array.from(spec.ns, (_, j) => problem.energyOf(j, theta));
   const width = Float64Array.from(spec.ns, (_, j) => theta[layout.widthAt[j]!]!);
   const area = coefficients.slice(0, k);
   const shared = problem.asymmetryOf(theta);
-  const asymmetry = Float64Array.from(spec.ns, (_, j) => (free ? coefficients[k + j]! / area[j]! : shared));
+  const asymmetry = Float64Array.from(
+    spec.ns,
+    (_, j) => shared + (odd ? coefficients[k + j]! / area[j]! : 0),
+  );
   const rows = lineRows(problem, theta, coefficients);
   const count = 4 * k;
   const lineCovariance = new Float64Array(count * count);
@@ -181,7 +182,7 @@ export function lineRows(
   const { spec, layout } = problem;
   const k = spec.ns.length;
   const p = layout.count;
-  const free = spec.asymmetry === "free";
+  const odd = hasOddAreas(spec);
   const rows: [number, number][][] = [];
   const law = new Float64Array(LEVEL.size);
   for (let j = 0; j < k; j++) {
@@ -195,12 +196,15 @@ export function lineRows(
   for (let j = 0; j < k; j++) rows.push([[p + j, 1]]);
   for (let j = 0; j < k; j++) {
     const area = coefficients[j]!;
-    if (free)
-      rows.push([
-        [p + k + j, 1 / area],
-        [p + j, -coefficients[k + j]! / area ** 2],
-      ]);
-    else rows.push(layout.asymmetryAt >= 0 ? [[layout.asymmetryAt, 1]] : []);
+    rows.push([
+      ...(layout.asymmetryAt >= 0 ? [[layout.asymmetryAt, 1] as [number, number]] : []),
+      ...(odd
+        ? ([
+            [p + k + j, 1 / area],
+            [p + j, -coefficients[k + j]! / area ** 2],
+          ] as [number, number][])
+        : []),
+    ]);
   }
   return rows;
 }
@@ -214,6 +218,33 @@ export function withScaledErrors(fit: SpectrumFit, variance: number): SpectrumFi
     asymmetry: { ...fit.asymmetry, sigma: fit.asymmetry.sigma * scale },
     factor: fit.factor === null ? null : { ...fit.factor, sigma: fit.factor.sigma * scale },
     background: fit.background.map((column) => ({ ...column, sigma: column.sigma * scale })),
+    ...(fit.constrained === undefined ? {} : { constrained: withScaledParts(fit.constrained, scale) }),
+  };
+}
+
+function withScaledParts(parts: ConstrainedParts, scale: number): ConstrainedParts {
+  const wider = <T extends FittedValue>(one: T): T => ({ ...one, sigma: one.sigma * scale });
+  const { widthLaw, strengthLaw, asymmetryLaw } = parts;
+  return {
+    ...parts,
+    widthLaw:
+      widthLaw === null
+        ? null
+        : { ...widthLaw, covariance: widthLaw.covariance.map((value) => value * scale * scale) },
+    strengthLaw:
+      strengthLaw === null ? null : { ...strengthLaw, coefficient: wider(strengthLaw.coefficient) },
+    asymmetryLaw:
+      asymmetryLaw === null ? null : { limit: wider(asymmetryLaw.limit), slope: wider(asymmetryLaw.slope) },
+    extra: parts.extra.map((one): ExtraFit => ({
+      ...one,
+      defect: wider(one.defect),
+      lines: one.lines.map((line) => ({
+        n: line.n,
+        energy: wider(line.energy),
+        width: wider(line.width),
+        area: wider(line.area),
+      })),
+    })),
   };
 }
 

@@ -1,6 +1,10 @@
 export * from "./model-spec.ts";
 export * from "./fit-spectrum.ts";
+export * from "./constraint-spec.ts";
+export type { ConstrainedParts, ExtraFit, FittedValue, LimitedParameter } from "./describe-constrained.ts";
+export { ConstrainedProblem } from "./constrained-problem.ts";
 export * from "./joint-fit.ts";
+export { withCorrelatedErrors } from "./correlated-errors.ts";
 export { SpectrumProblem } from "./spectrum-problem.ts";
 export { backgroundColumns } from "./background-columns.ts";
 export { levelLink, strengthShare, widthLink, type LinkData } from "./law-link.ts";
@@ -8,4 +12,3 @@ export { fitTransmittance, type TransmittanceFit } from "./transmittance-fit.ts"
 export { TransmittanceProblem, type MeasuredLight } from "./transmittance-problem.ts";
 export { applySlit, makeSlitGrid, type Feature, type SlitGrid } from "./transmittance-grid.ts";
 export { slitBias } from "./transmittance-bias.ts";
-export { withCorrelatedErrors } from "./correlated-errors.ts";

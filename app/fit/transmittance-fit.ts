@@ -2,15 +2,11 @@ import { NO_WATCH } from "../base/index.ts";
 import { WIDTH, widthLaw } from "../laws/index.ts";
 import { solveGeneral, type SeparableSolution } from "../solve/index.ts";
 import { depthFromTransmittance, transmittanceSlope } from "../units/index.ts";
-import {
-  describeFit,
-  parameterBounds,
-  type FitControl,
-  type FitStart,
-  type SpectrumFit,
-} from "./fit-spectrum.ts";
+import type { FittedValue } from "./describe-constrained.ts";
+import type { FitControl, FitStart, SpectrumFit } from "./fit-spectrum.ts";
 import type { BackgroundColumn, FitPoints, ModelSpec } from "./model-spec.ts";
-import { SpectrumProblem } from "./spectrum-problem.ts";
+import { setUpFit, type FitSetUp } from "./set-up-fit.ts";
+import { hasOddAreas, type SpectrumProblem } from "./spectrum-problem.ts";
 import { makeSlitGrid, type Feature } from "./transmittance-grid.ts";
 import { TransmittanceProblem, type MeasuredLight } from "./transmittance-problem.ts";
 
@@ -25,6 +21,13 @@ export interface TransmittanceFit {
    * sigma = sigma_T/|dT/d signal|. A fit of these is one Gauss-Newton step of the fit of T, and T <= 0 is no exception.
    */
   readonly linearised: FitPoints;
+  readonly fringes: {
+    readonly visibility: FittedValue;
+    readonly period: FittedValue;
+    readonly phase: FittedValue;
+  } | null;
+  /** Free stray light; null where it was held or none was asked for. */
+  readonly stray: (FittedValue & { readonly atZero: boolean }) | null;
 }
 
 const FAR_N = 1e6;
@@ -49,7 +52,7 @@ export function fitTransmittance(
   const { lineStds: _, ...own } = spec;
   const sharp: ModelSpec = { ...own, gaussStd: 0 };
   const points: FitPoints = { energy: light.energy, signal: light.value, sigma: light.sigma };
-  const outer = new SpectrumProblem(points, sharp);
+  const outer = setUpFit(points, sharp, start);
   const grid = makeSlitGrid(
     light.energy,
     light.slitStd,
@@ -60,7 +63,7 @@ export function fitTransmittance(
   const { nodes } = grid;
   const inner = grid.identity
     ? outer
-    : new SpectrumProblem(
+    : setUpFit(
         // Only the energies matter there: nothing is measured on the nodes.
         {
           energy: nodes,
@@ -68,18 +71,29 @@ export function fitTransmittance(
           sigma: new Float64Array(nodes.length).fill(1),
         },
         { ...sharp, background: background(nodes) },
+        start,
       );
-  const problem = new TransmittanceProblem(light, inner, grid);
-  const p = outer.nonlinear;
-  const theta = outer.startFrom(start.lines, start.asymmetry, start.factor);
-  const bounds = parameterBounds(outer, start, theta);
+  const problem = new TransmittanceProblem(light, inner.problem, grid);
+  const p = outer.problem.nonlinear;
   const lower = new Float64Array(problem.parameters).fill(-Infinity);
   const upper = new Float64Array(problem.parameters).fill(Infinity);
-  lower.set(bounds.lower);
-  upper.set(bounds.upper);
+  lower.set(outer.lower);
+  upper.set(outer.upper);
   const first = new Float64Array(problem.parameters);
-  first.set(theta);
-  first.set(startCoefficients(outer, from), p);
+  first.set(outer.start);
+  first.set(outer.reduce(startCoefficients(outer.inner, from)), p);
+  const { fringes, stray } = light;
+  if (problem.fringesAt >= 0) {
+    const { visibility, period, phase } = fringes!.start;
+    first.set([visibility, period, phase], problem.fringesAt);
+    lower.set([0, period * (1 - PERIOD_REACH)], problem.fringesAt);
+    upper.set([1, period * (1 + PERIOD_REACH)], problem.fringesAt);
+  }
+  if (problem.strayAt >= 0) {
+    first[problem.strayAt] = stray!.value;
+    lower[problem.strayAt] = 0;
+    upper[problem.strayAt] = MOST_STRAY;
+  }
   const solution = solveGeneral(problem, first, {
     lower,
     upper,
@@ -88,8 +102,13 @@ export function fitTransmittance(
     costTolerance: control.costTolerance ?? 1e-11,
     watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
   });
-  return asSignal(light, outer, spec, solution);
+  return asSignal(light, outer, problem, spec, start, solution);
 }
+
+/** A fit may change the period of fringes by this part; beyond lies another fringe order over the window. */
+const PERIOD_REACH = 0.2;
+/** More stray light than light is no measurement. */
+const MOST_STRAY = 1;
 
 function startCoefficients(problem: SpectrumProblem, from: SpectrumFit): Float64Array {
   const { spec } = problem;
@@ -99,7 +118,8 @@ function startCoefficients(problem: SpectrumProblem, from: SpectrumFit): Float64
     const place = from.lines.ns.indexOf(n);
     const area = place < 0 ? 0 : from.lines.area[place]!;
     out[j] = area;
-    if (spec.asymmetry === "free") out[k + j] = place < 0 ? 0 : area * from.lines.asymmetry[place]!;
+    if (hasOddAreas(spec))
+      out[k + j] = place < 0 ? 0 : area * (from.lines.asymmetry[place]! - from.asymmetry.value);
   });
   spec.background.forEach((column, b) => {
     const known = from.background.find((one) => one.term === column.term && one.name === column.name);
@@ -138,53 +158,81 @@ function coarsest(light: MeasuredLight, spec: ModelSpec): number {
 
 function asSignal(
   light: MeasuredLight,
-  outer: SpectrumProblem,
+  outer: FitSetUp,
+  problem: TransmittanceProblem,
   spec: ModelSpec,
+  start: FitStart,
   solution: SeparableSolution,
 ): TransmittanceFit {
   const { depthPerSignal, reflectance, surface } = light;
-  const p = outer.nonlinear;
+  const p = outer.problem.nonlinear;
+  const count = p + outer.problem.linear;
   const theta = solution.theta.slice(0, p);
-  const coefficients = solution.theta.slice(p);
+  const coefficients = solution.theta.slice(p, count);
   const fitted = solution.fitted.map((T) => depthFromTransmittance(T, reflectance, surface) / depthPerSignal);
+  const size = problem.parameters;
   const parts: SeparableSolution = {
     ...solution,
     theta,
     coefficients,
     fitted,
     activeBounds: solution.activeBounds.slice(0, p),
+    undetermined: solution.undetermined.slice(0, count),
+    covariance: Float64Array.from(
+      { length: count * count },
+      (_, i) => solution.covariance[Math.floor(i / count) * size + (i % count)]!,
+    ),
   };
   const m = light.energy.length;
-  const signal = signalModel(light, outer, spec, theta, coefficients);
+  const signal = signalModel(light, outer, spec, start, theta, coefficients);
   const sigma = new Float64Array(m);
+  const plain = problem.fringesAt < 0 && (light.stray ?? null) === null;
   for (let i = 0; i < m; i++) {
-    const slope = depthPerSignal * transmittanceSlope(fitted[i]! * depthPerSignal, reflectance, surface);
+    const slope = plain
+      ? depthPerSignal * transmittanceSlope(fitted[i]! * depthPerSignal, reflectance, surface)
+      : problem.slopeAt(solution.theta, light.energy[i]!, signal[i]!);
     sigma[i] = light.sigma[i]! / Math.max(LEAST_SLOPE, Math.abs(slope));
     // T falls where the signal rises.
     signal[i]! -= solution.residuals[i]! * sigma[i]!;
   }
-  return { fit: { ...describeFit(outer, parts), measured: true }, linearised: { energy: light.energy, signal, sigma } };
+  const valueAt = (at: number): FittedValue => ({
+    value: solution.theta[at]!,
+    sigma: Math.sqrt(solution.covariance[at * size + at]!),
+  });
+  const at = problem.fringesAt;
+  return {
+    fit: { ...outer.describe(parts), measured: true },
+    linearised: { energy: light.energy, signal, sigma },
+    fringes: at < 0 ? null : { visibility: valueAt(at), period: valueAt(at + 1), phase: valueAt(at + 2) },
+    stray:
+      problem.strayAt < 0
+        ? null
+        : { ...valueAt(problem.strayAt), atZero: solution.activeBounds[problem.strayAt] !== 0 },
+  };
 }
 
 /** The signal at these parameters with the slit acting on the signal, as a fit of the signal would have it. */
 function signalModel(
   light: MeasuredLight,
-  outer: SpectrumProblem,
+  outer: FitSetUp,
   spec: ModelSpec,
-  theta: Float64Array,
+  start: FitStart,
+  own: Float64Array,
   coefficients: Float64Array,
 ): Float64Array {
   const m = light.energy.length;
   const points: FitPoints = { energy: light.energy, signal: light.value, sigma: light.sigma };
   const { slitStd } = light;
   const reference = light.slitReference ?? null;
+  const theta = outer.thetaOf(own);
   const lineStds = Float64Array.from(spec.ns, (_, j) =>
-    reference === null ? slitStd : slitStd * (outer.energyOf(j, theta) / reference) ** 2,
+    reference === null ? slitStd : slitStd * (outer.inner.energyOf(j, theta) / reference) ** 2,
   );
-  const problem = slitStd > 0 ? new SpectrumProblem(points, { ...spec, gaussStd: slitStd, lineStds }) : outer;
+  const { problem } = slitStd > 0 ? setUpFit(points, { ...spec, gaussStd: slitStd, lineStds }, start) : outer;
   const phi = new Float64Array(m * problem.linear);
-  problem.columns(theta, phi);
+  problem.columns(own, phi);
   const out = new Float64Array(m);
+  problem.offset?.(own, out);
   for (let j = 0; j < problem.linear; j++)
     for (let i = 0; i < m; i++) out[i]! += coefficients[j]! * phi[j * m + i]!;
   return out;

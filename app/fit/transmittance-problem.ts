@@ -1,7 +1,6 @@
-import type { GeneralProblem } from "../solve/index.ts";
+import type { GeneralProblem, SeparableProblem } from "../solve/index.ts";
 import { transmittanceFromDepth, transmittanceSlope, type SurfaceModel } from "../units/index.ts";
 import { applySlit, type SlitGrid } from "./transmittance-grid.ts";
-import type { SpectrumProblem } from "./spectrum-problem.ts";
 
 /**
  * Transmitted light as it was measured, and how it comes about.
@@ -19,43 +18,70 @@ export interface MeasuredLight {
   readonly slitStd: number;
   /** Energy (eV) at which `slitStd` holds, where the slit is constant in wavelength; null: the same everywhere. */
   readonly slitReference?: number | null;
+  /** Fringes of a coherent plate; none by default. `reflectance` is that of one surface, also where none is corrected for. */
+  readonly fringes?: {
+    readonly reflectance: number;
+    /** Energy at which the phase is counted. */
+    readonly reference: number;
+    readonly start: { readonly visibility: number; readonly period: number; readonly phase: number };
+  } | null;
+  /** Stray light as a part of the incident light: held at a value, or free from a start. */
+  readonly stray?: { readonly value: number; readonly free: boolean } | null;
 }
 
+/** The absorption as the plate needs it: what SpectrumProblem and ConstrainedProblem offer. */
+export type AbsorptionModel = Pick<
+  SeparableProblem,
+  "nonlinear" | "linear" | "columns" | "derivatives" | "offset"
+>;
+
 /**
- * What      One spectrum in the measured domain, T_i = [K t(d alpha(E; theta, c))]_i: alpha is the model of SpectrumProblem
- *           on the nodes of the slit, without instrument; t the plate with its surfaces (transmission.ts); K the mean over
- *           the slit (transmittance-grid.ts). dT/d(theta, c) = K diag(d t') [D | Phi].
- * Shapes    parameters theta (p), then c (k); model (m); Jacobian (m x (p + k), column-major).
- * Units     T as a fraction; parameters as in SpectrumProblem.
+ * What      One spectrum in the measured domain, T_i = ([K t(d alpha(E; theta, c), E)]_i + s)/(1 + s): alpha is the model of
+ *           SpectrumProblem on the nodes of the slit, without instrument; t the plate with its surfaces (transmission.ts), or
+ *           with fringes t = (1-R)^2 x/(1 + R^2 x^2 - 2 v R x cos phi), phi = 2 pi (E - E_ref)/period + phi0 ((1-R)^2 taken
+ *           as 1 where surfaces are not corrected for); K the mean over the slit (transmittance-grid.ts); s stray light.
+ *           dT/d(theta, c) = K diag(d t') [D | Phi]/(1 + s).
+ * Shapes    parameters theta (p), then c (k), then visibility, period, phase with fringes, then s where it is free; model
+ *           (m); Jacobian column-major.
+ * Units     T as a fraction; period in eV; other parameters as in SpectrumProblem.
  * Domain    alpha of either sign; where exp(-alpha d) overflows the model is not finite and the solver turns back.
  * Accuracy  derivatives are those of the discretised model to rounding: tests/app/fit/transmittance-problem.test.ts.
- * Source    PHYSICS of the slit: it averages light, not absorption.
+ * Source    PHYSICS of the slit: it averages light, not absorption; fringes: Airy's sum with partial coherence v.
  */
 export class TransmittanceProblem implements GeneralProblem {
   readonly rows: number;
   readonly parameters: number;
   readonly data: Float64Array;
   readonly weights: Float64Array;
+  /** Place of visibility (period and phase follow), and of s; -1 where they are not parameters. */
+  readonly fringesAt: number;
+  readonly strayAt: number;
   private readonly light: MeasuredLight;
-  private readonly inner: SpectrumProblem;
+  private readonly inner: AbsorptionModel;
   private readonly grid: SlitGrid;
   private readonly phi: Float64Array;
+  private readonly held: Float64Array;
   private readonly derivative: Float64Array;
   private readonly depth: Float64Array;
   private readonly value: Float64Array;
   private readonly at: Float64Array;
 
   /** `inner`: the absorption on the grid's nodes. */
-  constructor(light: MeasuredLight, inner: SpectrumProblem, grid: SlitGrid) {
+  constructor(light: MeasuredLight, inner: AbsorptionModel, grid: SlitGrid) {
     const nodes = grid.nodes.length;
     this.rows = light.energy.length;
-    this.parameters = inner.nonlinear + inner.linear;
+    let count = inner.nonlinear + inner.linear;
+    this.fringesAt = (light.fringes ?? null) === null ? -1 : count;
+    if (this.fringesAt >= 0) count += 3;
+    this.strayAt = light.stray?.free === true ? count++ : -1;
+    this.parameters = count;
     this.data = light.value;
     this.weights = Float64Array.from(light.sigma, (sigma) => 1 / sigma);
     this.light = light;
     this.inner = inner;
     this.grid = grid;
     this.phi = new Float64Array(nodes * inner.linear);
+    this.held = new Float64Array(inner.offset === undefined ? 0 : nodes);
     this.derivative = new Float64Array(nodes * inner.nonlinear);
     this.depth = new Float64Array(nodes);
     this.value = new Float64Array(nodes);
@@ -64,36 +90,84 @@ export class TransmittanceProblem implements GeneralProblem {
 
   model(parameters: Float64Array, out: Float64Array): void {
     this.absorb(parameters);
-    const { depth, value } = this;
-    const { reflectance, surface } = this.light;
-    for (let i = 0; i < depth.length; i++) value[i] = transmittanceFromDepth(depth[i]!, reflectance, surface);
-    applySlit(this.grid, value, 0, out, 0);
+    const { depth, value, grid, light } = this;
+    const plate = this.plateAt(parameters);
+    for (let i = 0; i < depth.length; i++) value[i] = transmitted(depth[i]!, grid.nodes[i]!, light, plate);
+    applySlit(grid, value, 0, out, 0);
+    const stray = this.strayOf(parameters);
+    if (stray !== 0) for (let i = 0; i < this.rows; i++) out[i] = (out[i]! + stray) / (1 + stray);
   }
 
   jacobian(parameters: Float64Array, out: Float64Array): void {
     if (this.at.some((one, i) => one !== parameters[i])) this.absorb(parameters);
-    const { inner, depth, value, derivative, phi, light, rows } = this;
+    const { inner, depth, value, derivative, phi, light, rows, grid } = this;
     const nodes = depth.length;
     const p = inner.nonlinear;
-    inner.derivatives(parameters.subarray(0, p), parameters.subarray(p), derivative);
+    const count = p + inner.linear;
+    inner.derivatives(parameters.subarray(0, p), parameters.subarray(p, count), derivative);
+    const plate = this.plateAt(parameters);
+    const share = 1 / (1 + this.strayOf(parameters));
     for (let i = 0; i < nodes; i++)
-      value[i] = light.depthPerSignal * transmittanceSlope(depth[i]!, light.reflectance, light.surface);
+      value[i] = share * light.depthPerSignal * transmittedSlope(depth[i]!, grid.nodes[i]!, light, plate);
     const column = new Float64Array(nodes);
-    for (let j = 0; j < this.parameters; j++) {
+    for (let j = 0; j < count; j++) {
       const source = j < p ? derivative : phi;
       const from = (j < p ? j : j - p) * nodes;
       for (let i = 0; i < nodes; i++) column[i] = value[i]! * source[from + i]!;
-      applySlit(this.grid, column, 0, out, j * rows);
+      applySlit(grid, column, 0, out, j * rows);
     }
+    if (plate !== null) {
+      const slopes = Array.from({ length: 3 }, () => new Float64Array(nodes));
+      for (let i = 0; i < nodes; i++) fringeSlopes(depth[i]!, grid.nodes[i]!, light, plate, slopes, i, share);
+      slopes.forEach((one, j) => {
+        applySlit(grid, one, 0, out, (this.fringesAt + j) * rows);
+      });
+    }
+    if (this.strayAt >= 0) {
+      for (let i = 0; i < nodes; i++) value[i] = transmitted(depth[i]!, grid.nodes[i]!, light, plate);
+      applySlit(grid, value, 0, out, this.strayAt * rows);
+      for (let i = this.strayAt * rows; i < (this.strayAt + 1) * rows; i++)
+        out[i] = (1 - out[i]!) * share * share;
+    }
+  }
+
+  /** d T/d signal at an energy where the signal without instrument is `signal`. */
+  slopeAt(parameters: Float64Array, energy: number, signal: number): number {
+    const { light } = this;
+    const depth = signal * light.depthPerSignal;
+    const slope = transmittedSlope(depth, energy, light, this.plateAt(parameters));
+    return (light.depthPerSignal * slope) / (1 + this.strayOf(parameters));
+  }
+
+  private plateAt(parameters: Float64Array): Plate | null {
+    const { fringes } = this.light;
+    if (fringes === null || fringes === undefined) return null;
+    const at = this.fringesAt;
+    return {
+      reflectance: fringes.reflectance,
+      reference: fringes.reference,
+      visibility: parameters[at]!,
+      period: parameters[at + 1]!,
+      phase: parameters[at + 2]!,
+    };
+  }
+
+  private strayOf(parameters: Float64Array): number {
+    return this.strayAt >= 0 ? parameters[this.strayAt]! : (this.light.stray?.value ?? 0);
   }
 
   /** Columns and optical depth on the nodes. */
   private absorb(parameters: Float64Array): void {
-    const { inner, phi, depth, light } = this;
+    const { inner, phi, depth, light, held } = this;
     const p = inner.nonlinear;
     const nodes = depth.length;
-    inner.columns(parameters.subarray(0, p), phi);
+    const theta = parameters.subarray(0, p);
+    inner.columns(theta, phi);
     depth.fill(0);
+    if (inner.offset !== undefined) {
+      inner.offset(theta, held);
+      for (let i = 0; i < nodes; i++) depth[i] = light.depthPerSignal * held[i]!;
+    }
     for (let j = 0; j < inner.linear; j++) {
       const c = light.depthPerSignal * parameters[p + j]!;
       const from = j * nodes;
@@ -101,4 +175,58 @@ export class TransmittanceProblem implements GeneralProblem {
     }
     this.at.set(parameters);
   }
+}
+
+interface Plate {
+  readonly reflectance: number;
+  readonly reference: number;
+  readonly visibility: number;
+  readonly period: number;
+  readonly phase: number;
+}
+
+function phaseOf(energy: number, plate: Plate): number {
+  return (2 * Math.PI * (energy - plate.reference)) / plate.period + plate.phase;
+}
+
+function through(light: MeasuredLight, R: number): number {
+  return light.surface === "none" ? 1 : (1 - R) * (1 - R);
+}
+
+function transmitted(depth: number, energy: number, light: MeasuredLight, plate: Plate | null): number {
+  if (plate === null) return transmittanceFromDepth(depth, light.reflectance, light.surface);
+  const R = plate.reflectance;
+  const x = Math.exp(-depth);
+  const below = 1 + R * R * x * x - 2 * plate.visibility * R * x * Math.cos(phaseOf(energy, plate));
+  return (through(light, R) * x) / below;
+}
+
+/** dt/d(alpha d). */
+function transmittedSlope(depth: number, energy: number, light: MeasuredLight, plate: Plate | null): number {
+  if (plate === null) return transmittanceSlope(depth, light.reflectance, light.surface);
+  const R = plate.reflectance;
+  const x = Math.exp(-depth);
+  const below = 1 + R * R * x * x - 2 * plate.visibility * R * x * Math.cos(phaseOf(energy, plate));
+  return (-through(light, R) * x * (1 - R * R * x * x)) / (below * below);
+}
+
+/** out[0..2][i]: dt by visibility, period, phase. */
+function fringeSlopes(
+  depth: number,
+  energy: number,
+  light: MeasuredLight,
+  plate: Plate,
+  out: readonly Float64Array[],
+  i: number,
+  share: number,
+): void {
+  const R = plate.reflectance;
+  const x = Math.exp(-depth);
+  const phase = phaseOf(energy, plate);
+  const below = 1 + R * R * x * x - 2 * plate.visibility * R * x * Math.cos(phase);
+  const common = (share * through(light, R) * x * 2 * R * x) / (below * below);
+  out[0]![i] = common * Math.cos(phase);
+  const byPhase = -common * plate.visibility * Math.sin(phase);
+  out[1]![i] = (byPhase * -2 * Math.PI * (energy - plate.reference)) / (plate.period * plate.period);
+  out[2]![i] = byPhase;
 }

@@ -44,6 +44,12 @@ interface Case {
   readonly spec: Partial<ModelSpec>;
 }
 
+const FRINGES: NonNullable<MeasuredLight["fringes"]> = {
+  reflectance: 0.24,
+  reference: 0.99,
+  start: { visibility: 0.6, period: 0.0021, phase: 0.7 },
+};
+
 const CASES: Case[] = [
   { name: "plain light without a slit", light: { slitStd: 0 }, spec: {} },
   { name: "a slit", light: {}, spec: {} },
@@ -52,6 +58,19 @@ const CASES: Case[] = [
   { name: "a slit and asymmetries line by line", light: {}, spec: { asymmetry: "free" } },
   { name: "a slit and the tail", light: {}, spec: { tail: TAIL } },
   { name: "alpha with a thickness", light: { depthPerSignal: 0.0034 }, spec: {} },
+  {
+    name: "fringes under a slit",
+    light: { fringes: FRINGES, reflectance: 0.24, surface: "single" },
+    spec: {},
+  },
+  { name: "fringes without surfaces and slit", light: { fringes: FRINGES, slitStd: 0 }, spec: {} },
+  { name: "stray light that is known", light: { stray: { value: 0.05, free: false } }, spec: {} },
+  { name: "stray light as a parameter", light: { stray: { value: 0.05, free: true } }, spec: {} },
+  {
+    name: "stray light and fringes, alpha with a thickness",
+    light: { stray: { value: 0.05, free: true }, fringes: FRINGES, depthPerSignal: 0.0034 },
+    spec: {},
+  },
 ];
 
 function build({ light, spec }: Case): { problem: TransmittanceProblem; parameters: Float64Array } {
@@ -93,6 +112,8 @@ function build({ light, spec }: Case): { problem: TransmittanceProblem; paramete
     0.3 * perSignal,
     0.05 * perSignal,
     -0.02 * perSignal,
+    ...(measured.fringes == null ? [] : Object.values(measured.fringes.start)),
+    ...(measured.stray?.free === true ? [measured.stray.value] : []),
   ]);
   return { problem: new TransmittanceProblem(measured, inner, grid), parameters };
 }

@@ -1,0 +1,54 @@
+import type { SeparableProblem, SeparableSolution } from "../solve/index.ts";
+import { ConstrainedProblem } from "./constrained-problem.ts";
+import { isConstrained } from "./constraint-spec.ts";
+import { expandSolution } from "./describe-constrained.ts";
+import { describeFit, parameterBounds, type FitStart, type SpectrumFit } from "./fit-spectrum.ts";
+import type { FitPoints, ModelSpec } from "./model-spec.ts";
+import { SpectrumProblem } from "./spectrum-problem.ts";
+
+/** A model ready to be solved: plain, or with its constraints. */
+export interface FitSetUp {
+  readonly problem: SeparableProblem;
+  /** The plain model behind it. */
+  readonly inner: SpectrumProblem;
+  readonly start: Float64Array;
+  readonly lower: Float64Array;
+  readonly upper: Float64Array;
+  /** Plain parameters (theta) at the problem's own. */
+  thetaOf(own: Float64Array): Float64Array;
+  /** The problem's linear coefficients for plain ones. */
+  reduce(coefficients: Float64Array): Float64Array;
+  describe(solution: SeparableSolution): SpectrumFit;
+}
+
+export function setUpFit(points: FitPoints, spec: ModelSpec, start: FitStart): FitSetUp {
+  const inner = new SpectrumProblem(points, spec);
+  const theta = inner.startFrom(start.lines, start.asymmetry, start.factor);
+  const bounds = parameterBounds(inner, start, theta);
+  for (let i = 0; i < theta.length; i++)
+    theta[i] = Math.min(bounds.upper[i]!, Math.max(bounds.lower[i]!, theta[i]!));
+  if (spec.constraints === undefined || !isConstrained(spec.constraints)) {
+    return {
+      problem: inner,
+      inner,
+      start: theta,
+      ...bounds,
+      thetaOf: (own) => own,
+      reduce: (coefficients) => coefficients,
+      describe: (solution) => describeFit(inner, solution),
+    };
+  }
+  const problem = new ConstrainedProblem(points, inner, spec.constraints, theta);
+  return {
+    problem,
+    inner,
+    start: problem.start(),
+    ...problem.narrowed(bounds.lower, bounds.upper),
+    thetaOf: (own) => problem.thetaOf(own).slice(0, inner.nonlinear),
+    reduce: (coefficients) => problem.reduce(coefficients),
+    describe: (solution) => {
+      const { solution: wide, parts } = expandSolution(problem, solution);
+      return { ...describeFit(inner, wide), constrained: parts };
+    },
+  };
+}
