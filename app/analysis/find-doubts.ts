@@ -4,6 +4,7 @@ import { findPreset, type Protocol, type RunglineResult } from "../protocol/inde
 import type { Spectrum } from "../spectrum/index.ts";
 import { normalCdf } from "../solve/index.ts";
 import type { Assignment } from "./assign-n.ts";
+import { LEAST_SIGNIFICANCE } from "./climb-ladder.ts";
 import type { Peak } from "./find-peaks.ts";
 import type { FullFit } from "./fit-full.ts";
 import { energyOf } from "./ladder-model.ts";
@@ -150,16 +151,18 @@ function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: Dou
       ),
     );
   }
-  const highest = lines[lines.length - 1];
-  if (highest !== undefined && highest.width_over_spacing !== null && highest.width_over_spacing > 1) {
-    notes.push(
-      doubt(
-        "highest-line-blended",
-        `lines[n=${highest.n}]`,
-        `The highest line, n = ${highest.n}, is ${highest.width_over_spacing.toFixed(2)} times as wide as its distance to the next: its energy depends on the tail.`,
-        "read highest_resolved_n for lines that stand apart, or end the ladder lower (lines.max_n)",
-      ),
-    );
+  if (protocol.lines.n !== "auto") {
+    const unseen = lines.filter((line) => !(line.significance > LEAST_SIGNIFICANCE)).map((line) => line.n);
+    if (unseen.length > 0) {
+      notes.push(
+        doubt(
+          "named-line-not-seen",
+          `lines[n=${unseen.join(",")}]`,
+          `The lines that were named include n = ${unseen.join(", ")}, which the spectrum does not show (area below ${LEAST_SIGNIFICANCE} standard errors).`,
+          "leave them out of lines.n, or set lines.n=auto",
+        ),
+      );
+    }
   }
   const q = full.fit.asymmetry;
   if (protocol.lines.asymmetry === "shared" && !(Math.abs(q.value) > 3 * q.sigma)) {

@@ -273,8 +273,10 @@ function describeFit(
   const forced = held.filter((one) => one.reason.endsWith("too few to free it"));
   if (forced.length > 0) {
     const names = forced.map((one) => `${one.name} at ${one.value}`).join(", ");
+    // Three lines can follow the law by chance with any defect that is held.
+    const say = lines <= 3 ? doubt : assumption;
     notes.push(
-      assumption(
+      say(
         "defect-held",
         "series.defect0",
         `With ${lines} lines the series cannot tell the defect from gap and Rydberg energy: held ${names}.`,
