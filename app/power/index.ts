@@ -1,2 +1,17 @@
 export * from "./types.ts";
 export { placeOf, withPeaks } from "./line-table.ts";
+export { judgePower } from "./judge-power.ts";
+export { wordPowerIssue, type PowerIssue } from "./wording.ts";
+export { bleaching, unbleach, type BleachingLaw } from "./bleaching-law.ts";
+export { describeBeam, spotArea, type Beam } from "./beam.ts";
+export {
+  blockadeRadius,
+  DEFAULT_C3,
+  INTERACTIONS,
+  shrinkage,
+  slabFactor,
+  sphereRadius,
+  sphereVolume,
+  type Interaction,
+} from "./blockade.ts";
+export { absorbedFraction, excitonDensity, type DensityInput } from "./density.ts";

@@ -111,3 +111,51 @@ export function crossOf(
   );
   return out;
 }
+
+/** A number that depends linearly on the table's values, near the values that were found. */
+export interface LinearForm {
+  readonly places: readonly number[];
+  readonly weights: ArrayLike<number>;
+}
+
+export function formCovariance(table: LineTable, a: LinearForm, b: LinearForm): number {
+  const size = table.values.length;
+  let sum = 0;
+  for (let i = 0; i < a.places.length; i++) {
+    const w = a.weights[i]!;
+    if (w === 0) continue;
+    const row = a.places[i]! * size;
+    for (let j = 0; j < b.places.length; j++)
+      sum += w * b.weights[j]! * table.covariance[row + b.places[j]!]!;
+  }
+  return sum;
+}
+
+/** Sum of forms, each times its factor. */
+export function addForms(
+  parts: readonly { readonly form: LinearForm; readonly factor: number }[],
+): LinearForm {
+  const places: number[] = [];
+  const weights: number[] = [];
+  for (const { form, factor } of parts) {
+    form.places.forEach((place, i) => {
+      places.push(place);
+      weights.push(factor * form.weights[i]!);
+    });
+  }
+  return { places, weights };
+}
+
+/** Covariance matrix (f x f, row-major) of forms. */
+export function formsCovariance(table: LineTable, forms: readonly LinearForm[]): Float64Array {
+  const f = forms.length;
+  const out = new Float64Array(f * f);
+  for (let i = 0; i < f; i++) {
+    for (let j = 0; j <= i; j++) {
+      const one = formCovariance(table, forms[i]!, forms[j]!);
+      out[i * f + j] = one;
+      out[j * f + i] = one;
+    }
+  }
+  return out;
+}

@@ -129,7 +129,8 @@ const scaling = z.strictObject({
   exponent: quantity,
   /** The same by the laws of this sample's own widths and areas. */
   predicted: quantity,
-  ideal: z.number(),
+  /** For widths and areas exactly n^-3; null where another line is pumped. */
+  ideal: number,
   fit_n: range,
   chi2: number,
   dof: z.int(),
@@ -139,7 +140,14 @@ const scaling = z.strictObject({
 /** The part `power` of a result. */
 export const powerSchema = z.strictObject({
   excitation: z.enum(["separate-pump", "scanned-probe", "broadband"]),
-  law: z.enum(["separate-pump", "scanned-probe", "gaussian-self", "gaussian-two-beam"]),
+  /** Law of the areas. */
+  law: z.enum(["separate-pump", "scanned-probe", "gaussian-self", "gaussian-scanned", "gaussian-two-beam"]),
+  /** Chi square of the areas under the laws of other ways to take the series, summed over the lines; least first. */
+  law_comparison: z.array(
+    z.strictObject({ law: z.string(), chi2: z.number(), dof: z.int(), chosen: z.boolean() }),
+  ),
+  /** Errors of areas and peaks were multiplied by this, because repeats at one power scatter more than they say. */
+  repeat_factor: z.number(),
   spectra: z.array(
     z.strictObject({
       label: z.string(),
@@ -185,9 +193,8 @@ export const powerSchema = z.strictObject({
   other: z.strictObject({
     gap_shift_eV: trend,
     broadening: z.array(z.strictObject({ n: z.int(), ...trend.shape })),
-    /** Width of the lowest lines as a thermometer. */
+    /** Relative growth of the lowest lines' width, a thermometer. */
     heating: z.strictObject({ n: z.array(z.int()), ...trend.shape }),
-    /** Slope of highest n, and the n that the law leaves above noise. */
     highest_n: z.strictObject({
       at_lowest: z.int().nullable(),
       at_highest: z.int().nullable(),
@@ -221,6 +228,9 @@ export const powerSchema = z.strictObject({
             width_sigma_eV: number,
             energy_eV: number,
             energy_sigma_eV: number,
+            /** The volume that this one power gives by itself: [law's inverse of area over area0]/density. */
+            volume_um3: number,
+            volume_sigma_um3: number,
           }),
         ),
       }),

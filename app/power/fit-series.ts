@@ -1,0 +1,351 @@
+import { doubt, assumption, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
+import {
+  buildModel,
+  energyOf,
+  linesForThinning,
+  selectPoints,
+  stateAfter,
+  thinPoints,
+  withLines,
+  type LadderState,
+  type ModelChoices,
+  type SelectedPoints,
+} from "../analysis/index.ts";
+import {
+  fitJointly,
+  fitSpectrum,
+  type FitPoints,
+  type JointChoices,
+  type JointFit,
+  type JointMember,
+  type SpectrumFit,
+} from "../fit/index.ts";
+import type { Protocol } from "../protocol/index.ts";
+import { chiSquareSurvival } from "../solve/index.ts";
+import type { SeriesMember } from "./read-series.ts";
+import { referenceState, type ReferenceResult } from "./reference-state.ts";
+import type { PowerIssue } from "./series-issue.ts";
+
+/** One spectrum of the series in the joint fit. */
+export interface FittedMember {
+  readonly member: SeriesMember;
+  readonly points: SelectedPoints;
+  readonly fit: SpectrumFit;
+  /** Lines whose width could not be told from this spectrum. */
+  readonly heldWidths: readonly number[];
+}
+
+export interface FittedSeries {
+  readonly members: readonly FittedMember[];
+  readonly joint: JointFit;
+  /** Series limit of each spectrum where each may have its own; null where that fit did not converge. */
+  readonly gaps: { readonly value: Float64Array; readonly sigma: Float64Array } | null;
+  readonly failed: readonly { readonly label: string; readonly issues: readonly PowerIssue[] }[];
+  readonly notes: readonly Note[];
+}
+
+/** Below this many standard errors of its area a line has no width of its own. */
+const WEAK = 3;
+/** Passes of the joint fit over thinned points, and over all of them: the tail's laws follow the lines of the pass before. */
+const THIN_PASSES = 4;
+const FULL_PASSES = 3;
+/** Width laws that agree to this part have settled. */
+const SETTLED = 1e-3;
+const FEWEST_LINES = 3;
+
+/** State and points of one spectrum on its way. */
+interface Work {
+  readonly member: SeriesMember;
+  readonly points: SelectedPoints;
+  readonly thin: FitPoints;
+  state: LadderState;
+  held: readonly number[];
+}
+
+/**
+ * What      All spectra of a series in one fit, from the ladder of the reference: warm starts from the lowest power up on
+ *           thinned points with the law held, then the joint fit on thinned points, then on all.
+ * Domain    every spectrum has the lines of the reference that lie within it; one with fewer than three on the level law is
+ *           left out and named. A line below three standard errors keeps the width it had at the power before, so
+ *           that its area is still measured.
+ * Null      where the reference shows no series.
+ */
+export function fitPowerSeries(
+  series: readonly SeriesMember[],
+  reference: ReferenceResult,
+  protocol: Protocol,
+  watch: Watch,
+): FittedSeries | null {
+  const start = referenceState(reference);
+  if (start === null || reference.fit === null) return null;
+  const tied: Protocol = { ...protocol, series: { ...protocol.series, mode: "tied" } };
+  const choices: ModelChoices = {
+    background: protocol.background,
+    tail: reference.tail !== null,
+    continuumOdd: true,
+    asymmetry: protocol.lines.asymmetry,
+  };
+  const unit = series[0]!.spectrum.unit;
+  const free: JointChoices = protocol.power.free;
+  const failed: { label: string; issues: readonly PowerIssue[] }[] = [];
+  const notes: Note[] = [];
+  const works: Work[] = [];
+  let before = start;
+  for (const [i, member] of series.entries()) {
+    stopIfCancelled(watch);
+    watch.report(0.3 * (i / series.length), `starting at ${member.power_uW} uW`);
+    const work = prepare(member, before, start, reference.fit.window_eV, tied);
+    if (typeof work === "number") {
+      failed.push({
+        label: member.label,
+        issues: [{ code: "power/no-lines", facts: { file: member.label, found: work } }],
+      });
+      continue;
+    }
+    warmUp(work, tied, unit, choices, watch);
+    // What the next power starts from; lines outside this spectrum keep what they had.
+    before = mergeStates(before, work.state);
+    works.push(work);
+  }
+  if (works.length === 0) return null;
+
+  let joint = runJoint(
+    works,
+    (work) => work.thin,
+    tied,
+    unit,
+    choices,
+    free,
+    watch,
+    THIN_PASSES,
+    (pass) => watch.report(0.3 + 0.05 * pass, `fitting ${works.length} spectra together, thinned`),
+  );
+  const gaps = gapTest(works, tied, unit, choices, free, joint.fit, notes, watch);
+  joint = runJoint(
+    works,
+    (work) => work.points,
+    tied,
+    unit,
+    choices,
+    free,
+    watch,
+    FULL_PASSES,
+    (pass) => watch.report(0.6 + 0.12 * pass, `fitting ${works.length} spectra together, every point`),
+  );
+  const { fit } = joint;
+  if (!fit.solution.converged)
+    notes.push(
+      doubt(
+        "power-fit-not-converged",
+        "power.fit",
+        `The joint fit of ${works.length} spectra did not converge (${fit.solution.termination}).`,
+        "leave out the spectra that look different, name the lines (lines.n), or shorten the window",
+      ),
+    );
+  const weak = works.filter((work) => work.held.length > 0);
+  if (weak.length > 0)
+    notes.push(
+      assumption(
+        "width-held-at-power",
+        "power.lines",
+        `Too weak for a width of their own, held at that of the power before: ${weak.map((work) => `n = ${work.held.join(", ")} at ${work.member.power_uW} uW`).join("; ")}.`,
+        "accumulate longer at these powers",
+      ),
+    );
+  return {
+    members: works.map((work, a): FittedMember => ({
+      member: work.member,
+      points: work.points,
+      fit: fit.fits[a]!,
+      heldWidths: work.held,
+    })),
+    joint: fit,
+    gaps,
+    failed,
+    notes,
+  };
+}
+
+/** Points and lines of one spectrum, or how many lines of the level law lie within it where they are too few. */
+function prepare(
+  member: SeriesMember,
+  before: LadderState,
+  start: LadderState,
+  window: readonly [number, number],
+  protocol: Protocol,
+): Work | number {
+  const points = selectPoints(member.spectrum, protocol.mask_eV, window[0], window[1]);
+  const m = points.energy.length;
+  const low = points.energy[0] ?? Infinity;
+  const high = points.energy[m - 1] ?? -Infinity;
+  const inside = before.ns.filter((n, j) => {
+    const energy = before.include[j]! ? energyOf(n, start.levels) : before.energy[j]!;
+    return energy - before.width[j]! / 2 > low && energy + before.width[j]! / 2 < high;
+  });
+  const state = withLines(before, inside);
+  const onLaw = state.include.filter(Boolean).length;
+  if (onLaw < FEWEST_LINES) return onLaw;
+  return { member, points, thin: thinPoints(points, linesForThinning(state, protocol)), state, held: [] };
+}
+
+/** Widths, areas and tail of this power with the level law held where the reference has it. */
+function warmUp(
+  work: Work,
+  protocol: Protocol,
+  unit: "1/cm" | "1",
+  choices: ModelChoices,
+  watch: Watch,
+): void {
+  const model = buildModel(work.thin, work.state, protocol, unit, choices);
+  const tied = { ...model.spec.tiedLevels!, count: 0 };
+  const fit = fitSpectrum(work.thin, { ...model.spec, tiedLevels: tied }, model.start, {
+    watch,
+    maxIterations: 30,
+    gradientTolerance: 1e-4,
+    costTolerance: 1e-6,
+  });
+  stopIfCancelled(watch);
+  adopt(work, fit, model.state);
+}
+
+/** The state of a spectrum after a fit; weak lines keep the width they had, errors of energies those of the reference. */
+function adopt(work: Work, fit: SpectrumFit, before: LadderState): void {
+  const after = stateAfter(fit, before);
+  const { ns, area } = fit.lines;
+  work.held = ns.filter((_, j) => !(Math.abs(area[j]!) > WEAK * after.areaSigma[j]!));
+  const width = after.width.map((value, j) => {
+    const n = ns[j]!;
+    return work.held.includes(n) || fit.atBound.includes(n) ? before.width[j]! : value;
+  });
+  const energy = after.energy.map((value, j) => (work.held.includes(ns[j]!) ? before.energy[j]! : value));
+  work.state = {
+    ...after,
+    width,
+    energy,
+    energySigma: before.energySigma,
+    // A held width has no error of its own and does not speak for the width law.
+    widthSigma: after.widthSigma.map((sigma, j) =>
+      work.held.includes(ns[j]!) || !(sigma > 0) ? 1e3 : sigma,
+    ),
+  };
+}
+
+/** Lines of the later state with those that it lacks as they were. */
+function mergeStates(before: LadderState, after: LadderState): LadderState {
+  const pick = (of: (state: LadderState) => Float64Array): Float64Array =>
+    Float64Array.from(before.ns, (n, j) => {
+      const at = after.ns.indexOf(n);
+      return at >= 0 ? of(after)[at]! : of(before)[j]!;
+    });
+  return {
+    ...before,
+    energy: pick((state) => state.energy),
+    width: pick((state) => state.width),
+    widthSigma: before.widthSigma,
+    areaSigma: before.areaSigma,
+    widths: after.widths,
+    factor: after.factor,
+  };
+}
+
+interface JointRun {
+  readonly fit: JointFit;
+  readonly settled: boolean;
+}
+
+/** Joint fits until the width laws that the tails follow stand still. */
+function runJoint(
+  works: readonly Work[],
+  pointsOf: (work: Work) => FitPoints,
+  protocol: Protocol,
+  unit: "1/cm" | "1",
+  choices: ModelChoices,
+  free: JointChoices,
+  watch: Watch,
+  passes: number,
+  report: (pass: number) => void,
+): JointRun {
+  let run: JointRun | null = null;
+  for (let pass = 0; pass < passes && run?.settled !== true; pass++) {
+    report(pass);
+    const models = works.map((work) => buildModel(pointsOf(work), work.state, protocol, unit, choices));
+    const fit = fitJointly(membersOf(works, models, pointsOf), free, { watch, maxIterations: 60 });
+    stopIfCancelled(watch);
+    let settled = true;
+    works.forEach((work, a) => {
+      const held = work.held;
+      const { state } = models[a]!;
+      adopt(work, fit.fits[a]!, state);
+      // Lines do not come and go between passes on their account alone.
+      if (pass > 0) work.held = held;
+      else settled &&= held.join() === work.held.join();
+      const width = fit.fits[a]!.laws?.widths.coefficient ?? state.widths.coefficient;
+      settled &&= Math.abs(width - state.widths.coefficient) <= SETTLED * Math.abs(width);
+    });
+    run = { fit, settled };
+  }
+  if (run === null) throw new Error("no pass was made");
+  return run;
+}
+
+function membersOf(
+  works: readonly Work[],
+  models: readonly ReturnType<typeof buildModel>[],
+  pointsOf: (work: Work) => FitPoints,
+): JointMember[] {
+  const count = models[0]!.spec.tiedLevels!.count;
+  const values = models[0]!.spec.tiedLevels!.values;
+  return works.map((work, a): JointMember => {
+    const { spec, start } = models[a]!;
+    const reach = new Map(start.reach);
+    // The energy of a line off the law that is hardly seen stays where it was.
+    for (const n of work.held) reach.set(n, 0);
+    return {
+      points: pointsOf(work),
+      spec: { ...spec, tiedLevels: { ...spec.tiedLevels!, values, count } },
+      start: { ...start, reach },
+      heldWidths: work.held,
+    };
+  });
+}
+
+/** Does each spectrum want a gap of its own? On thinned points, from where the shared one ended. */
+function gapTest(
+  works: readonly Work[],
+  protocol: Protocol,
+  unit: "1/cm" | "1",
+  choices: ModelChoices,
+  free: JointChoices,
+  shared: JointFit,
+  notes: Note[],
+  watch: Watch,
+): FittedSeries["gaps"] {
+  watch.report(0.5, "a gap for every power, thinned");
+  const models = works.map((work) => buildModel(work.thin, work.state, protocol, unit, choices));
+  const members = membersOf(works, models, (work) => work.thin);
+  // Both on the same models, so that their chi squares can be compared.
+  const one = free.gap ? null : fitJointly(members, free, { watch, maxIterations: 40 });
+  const own = fitJointly(members, { ...free, gap: true }, { watch, maxIterations: 40 });
+  stopIfCancelled(watch);
+  if (!own.solution.converged) return null;
+  const value = new Float64Array(works.length);
+  const sigma = new Float64Array(works.length);
+  own.fits.forEach(({ solution }, a) => {
+    value[a] = solution.theta[0]!;
+    sigma[a] = Math.sqrt(solution.covariance[0]!);
+  });
+  if (one !== null && works.length > 1 && shared.solution.converged) {
+    const chi2 = Math.max(0, one.solution.chi2 - own.solution.chi2);
+    const p = chiSquareSurvival(chi2, works.length - 1);
+    if (p < 0.01)
+      notes.push(
+        doubt(
+          "gap-moves-with-power",
+          "power.other.gap_shift_eV",
+          `A gap of its own for every power lowers chi square by ${chi2.toPrecision(3)} for ${works.length - 1} degrees of freedom (p = ${p.toExponential(1)}): the shared gap does not hold.`,
+          "set power.free.gap=true",
+        ),
+      );
+  }
+  return { value, sigma };
+}
