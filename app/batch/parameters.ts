@@ -103,9 +103,9 @@ export function parameterUnit(name: ComparedParameter, signalUnit: string): stri
     case "urbach_energy_eV":
       return "eV";
     case "strength_coefficient":
-      return signal === "" ? "eV" : `eV ${signal}`;
+      return signal === "" ? "eV" : signal === "1/cm" ? "eV/cm" : `eV ${signal}`;
     case "background_slope":
-      return signal === "" ? "1/eV" : `${signal} 1/eV`;
+      return signal === "" ? "1/eV" : `${signal}/eV`;
     default:
       return "";
   }

@@ -17,3 +17,5 @@ export {
 } from "./summary.ts";
 export { resultToJson, resultsToJson, protocolToJson } from "./result-to-json.ts";
 export { inspectionToText, type ReadingShown } from "./inspection-to-text.ts";
+export { comparisonToText, COMPARISON_TEXT_MARK, PARAMETER_TITLES } from "./comparison-to-text.ts";
+export { comparisonToCsv, comparisonToJson, COMPARISON_CSV_MARK } from "./comparison-to-csv.ts";

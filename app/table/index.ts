@@ -5,3 +5,4 @@ export { splitColumnName } from "./column-name.ts";
 export type { ColumnName } from "./column-name.ts";
 export { isKnownUnit } from "./unit-text.ts";
 export { makeFact } from "./header-fact.ts";
+export { readTextTable, type TextTable } from "./read-text-table.ts";

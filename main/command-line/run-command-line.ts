@@ -5,6 +5,7 @@ import { OutputError } from "../services/output-error.ts";
 import { programVersion } from "../services/version.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT, UsageError } from "./exit-status.ts";
+import type { CompareOptions } from "./compare-command.ts";
 import type { FitOptions } from "./fit-command.ts";
 import type { ChoiceOptions } from "./choices.ts";
 import { sayFault } from "./say.ts";
@@ -103,6 +104,35 @@ function describeProgram(
     .action(async (files: string[], options: FitOptions) => {
       const { fitCommand } = await import("./fit-command.ts");
       end(await fitCommand(files, options, io, signal));
+    });
+
+  program
+    .command("compare")
+    .description("samples and batches side by side; results of separate runs merge here")
+    .argument("<result...>", "results as JSON, reports, or folders of results")
+    .option("--reference <batch>", "the batch that the others are compared with", once())
+    .option(
+      "--against <fact>",
+      "trend over a header fact or typed column, such as date or temperature",
+      once(),
+    )
+    .option(
+      "--values <file>",
+      "typed columns: file or sample first, then facts with their unit; sample and batch too",
+      once(),
+    )
+    .addOption(
+      new Option("--errors <kind>", "which errors count (default: total)").choices(["total", "statistical"]),
+    )
+    .option("--parameters <names>", "what is compared, separated by commas", once())
+    .option("--quality <weights>", "weights of a figure of quality: highest_n=1,width_floor=-1", once())
+    .option("--out <file>", "a file; the ending says the format")
+    .addOption(
+      new Option("--format <format>", "how the comparison is written").choices(["json", "csv", "text"]),
+    )
+    .action(async (results: string[], options: CompareOptions) => {
+      const { compareCommand } = await import("./compare-command.ts");
+      end(await compareCommand(results, options, io));
     });
 
   addChoices(

@@ -1,16 +1,24 @@
 import { open, readFile } from "node:fs/promises";
 import {
+  COMPARISON_SCHEMA,
   RESULT_SCHEMA,
   PROTOCOL_SCHEMA,
   parseResult,
   type RunglineResult,
 } from "../../app/protocol/index.ts";
-import { RESULT_CSV_MARK, RESULT_TEXT_MARK, SUMMARY_MARK, SUMMARY_SCHEMA } from "../../app/report/index.ts";
+import {
+  COMPARISON_CSV_MARK,
+  COMPARISON_TEXT_MARK,
+  RESULT_CSV_MARK,
+  RESULT_TEXT_MARK,
+  SUMMARY_MARK,
+  SUMMARY_SCHEMA,
+} from "../../app/report/index.ts";
 import { pathKind } from "./files.ts";
 
 export const FAILURES_SCHEMA = "rungline-failures/1";
 
-export type OutputKind = "result" | "protocol" | "summary" | "failures";
+export type OutputKind = "result" | "protocol" | "summary" | "failures" | "comparison";
 
 /** Whether something may be written here: nothing stands there yet, or what stands there is of the same kind. */
 export async function mayReplace(file: string, kind: OutputKind): Promise<boolean> {
@@ -26,10 +34,12 @@ async function kindOf(file: string): Promise<OutputKind | null> {
   if (start === null) return null;
   if (start.startsWith(RESULT_TEXT_MARK) || start.startsWith(RESULT_CSV_MARK)) return "result";
   if (start.startsWith(SUMMARY_MARK)) return "summary";
+  if (start.startsWith(COMPARISON_TEXT_MARK) || start.startsWith(COMPARISON_CSV_MARK)) return "comparison";
   const schema = /^\s*\[?\s*\{\s*"schema"\s*:\s*"([^"]*)"/.exec(start)?.[1] ?? "";
   const family = schema.slice(0, schema.lastIndexOf("/"));
   if (family === familyOf(RESULT_SCHEMA)) return "result";
   if (family === familyOf(PROTOCOL_SCHEMA)) return "protocol";
+  if (family === familyOf(COMPARISON_SCHEMA)) return "comparison";
   if (family === familyOf(SUMMARY_SCHEMA)) return "summary";
   return family === familyOf(FAILURES_SCHEMA) ? "failures" : null;
 }

@@ -1,0 +1,21 @@
+import type { ComparisonChoices } from "../protocol/index.ts";
+import { readTextTable, splitColumnName } from "../table/index.ts";
+
+/**
+ * Facts typed in a small table: the first column names a file or a sample, every other column is a fact, with its unit
+ * in the header (`Growth rate / um/h`, `Temperature (K)`). Blank cells say nothing.
+ */
+export function typedValues(bytes: Uint8Array): ComparisonChoices["values"] {
+  const { header, rows } = readTextTable(bytes);
+  const columns = header.slice(1).map((cell) => splitColumnName(cell));
+  return rows.flatMap((row) => {
+    const of = row[0] ?? "";
+    if (of === "") return [];
+    const facts: Record<string, string> = {};
+    columns.forEach(({ name, unit }, j) => {
+      const text = row[j + 1] ?? "";
+      if (text !== "" && name !== "") facts[name] = unit === "" ? text : `${text} ${unit}`;
+    });
+    return [{ of, facts }];
+  });
+}

@@ -1,0 +1,141 @@
+import { readFile } from "node:fs/promises";
+import { extname, resolve } from "node:path";
+import {
+  COMPARED_PARAMETERS,
+  wordProtocolIssue,
+  type Comparison,
+  type ComparisonChoicesInput,
+  type ProtocolIssue,
+} from "../../app/protocol/index.ts";
+import {
+  comparisonToCsv,
+  comparisonToJson,
+  comparisonToText,
+  gravestFirst,
+  noteLine,
+} from "../../app/report/index.ts";
+import { compareSamples, typedValues, wordBatchIssue, type BatchIssue } from "../../app/tasks/index.ts";
+import {
+  mayReplace,
+  pathKind,
+  programVersion,
+  readResults,
+  reasonInWords,
+  requireFolderOf,
+  writeWhole,
+} from "../services/index.ts";
+import type { CommandLineIo } from "./command-line-io.ts";
+import { EXIT, UsageError } from "./exit-status.ts";
+import type { Format } from "./output-place.ts";
+
+export interface CompareOptions {
+  readonly reference?: string;
+  readonly against?: string;
+  readonly values?: string;
+  readonly errors?: "total" | "statistical";
+  readonly parameters?: string;
+  readonly quality?: string;
+  readonly alpha?: number;
+  readonly out?: string;
+  readonly format?: Format;
+}
+
+/** `rungline compare RESULT...`: samples and batches side by side. */
+export async function compareCommand(
+  words: readonly string[],
+  options: CompareOptions,
+  io: CommandLineIo,
+): Promise<number> {
+  const choices = await choicesFrom(options, io.workingFolder);
+  const out = options.out === undefined ? null : resolve(io.workingFolder, options.out);
+  if (out !== null) {
+    if ((await pathKind(out)) === "folder") throw new UsageError(`--out ${options.out}: is a folder`);
+    if (!(await mayReplace(out, "comparison")))
+      throw new UsageError(
+        `${out}: exists and is not a comparison of Rungline; it is not replaced, choose another --out`,
+      );
+    await requireFolderOf(out);
+  }
+  const { results, refused } = await readResults(words, io.workingFolder);
+  for (const text of refused) io.stderr(`rungline: ${text}\n`);
+  const compared = compareSamples(results, choices, {
+    version: programVersion(),
+    node: process.version,
+    started: io.now(),
+  });
+  if (!compared.ok) {
+    for (const issue of compared.issues) {
+      const { message, remedy } = wordIssue(issue);
+      io.stderr(`rungline: ${message}\n  ${remedy}\n`);
+    }
+    return compared.issues.some((issue) => issue.code === "batch/too-few") ? EXIT.input : EXIT.usage;
+  }
+  const comparison = compared.value;
+  for (const note of gravestFirst([...comparison.notes, ...(comparison.temperature?.notes ?? [])]))
+    io.stderr(`  ${noteLine(note)}\n`);
+  const format = options.format ?? (out === null ? "text" : formatOf(out));
+  const text = RENDER[format](comparison);
+  if (out === null) await io.stdout(text);
+  else await writeWhole(out, text);
+  return refused.length > 0 ? EXIT.input : EXIT.done;
+}
+
+const RENDER: Readonly<Record<Format, (comparison: Comparison) => string>> = {
+  json: comparisonToJson,
+  csv: comparisonToCsv,
+  text: comparisonToText,
+};
+
+function formatOf(path: string): Format {
+  const ending = extname(path).toLowerCase();
+  return ending === ".json" ? "json" : ending === ".csv" ? "csv" : "text";
+}
+
+function wordIssue(issue: BatchIssue | ProtocolIssue): { message: string; remedy: string } {
+  if (issue.code.startsWith("batch/")) return wordBatchIssue(issue as BatchIssue);
+  const { message, remedy } = wordProtocolIssue(issue as ProtocolIssue);
+  return { message: message.replace(/^protocol: /, "comparison: "), remedy };
+}
+
+async function choicesFrom(options: CompareOptions, workingFolder: string): Promise<ComparisonChoicesInput> {
+  const { reference, against, errors, alpha, parameters, quality, values } = options;
+  return {
+    ...(reference !== undefined && { reference }),
+    ...(against !== undefined && { against }),
+    ...(errors !== undefined && { errors }),
+    ...(alpha !== undefined && { alpha }),
+    ...(parameters !== undefined && { parameters: parameters.split(",").map((one) => knownName(one)) }),
+    ...(quality !== undefined && { quality: weightsFrom(quality) }),
+    ...(values !== undefined && { values: await readValues(values, workingFolder) }),
+  };
+}
+
+type Name = (typeof COMPARED_PARAMETERS)[number];
+
+function knownName(text: string): Name {
+  const name = text.trim();
+  const known = COMPARED_PARAMETERS.find((one) => one === name || one === `${name}_eV`);
+  if (known === undefined)
+    throw new UsageError(`no parameter "${name}" to compare; known: ${COMPARED_PARAMETERS.join(", ")}`);
+  return known;
+}
+
+/** `highest_n=1,width_floor_eV=-2`: weights by parameter. */
+function weightsFrom(text: string): Partial<Record<Name, number>> {
+  return Object.fromEntries(
+    text.split(",").map((part) => {
+      const [name = "", weight = ""] = part.split("=");
+      if (weight.trim() === "" || !Number.isFinite(Number(weight)))
+        throw new UsageError(`--quality ${part}: expected parameter=weight, for example highest_n=1`);
+      return [knownName(name), Number(weight)];
+    }),
+  );
+}
+
+async function readValues(file: string, workingFolder: string): Promise<ReturnType<typeof typedValues>> {
+  try {
+    return typedValues(await readFile(resolve(workingFolder, file)));
+  } catch (cause) {
+    throw new UsageError(`--values ${file}: ${reasonInWords(cause)}`);
+  }
+}
