@@ -83,6 +83,21 @@ interface Factors {
   readonly lawWidth: number;
   readonly surrounding: number;
 }
+type MutableFactors = { -readonly [K in keyof Factors]: Factors[K] };
+type CommonFactors = Pick<
+  Factors,
+  "power" | "transmission" | "spot" | "thickness" | "reflectance" | "lifetime"
+>;
+
+function setCommon(out: MutableFactors, from: CommonFactors): void {
+  out.power = from.power;
+  out.transmission = from.transmission;
+  out.spot = from.spot;
+  out.thickness = from.thickness;
+  out.reflectance = from.reflectance;
+  out.lifetime = from.lifetime;
+}
+
 const UNCHANGED: Factors = {
   power: 1,
   transmission: 1,
@@ -215,6 +230,16 @@ export function spreadVolumes(input: VolumeInput): LineVolume[] {
   const correlated = new Float64Array(4 * k);
   const surroundings = new Float64Array(k);
   const common = new Float64Array(7);
+  // One record for all draws: they are many.
+  const factors: MutableFactors = { ...UNCHANGED };
+  const pumped: MutableFactors = { ...UNCHANGED };
+  const setLine = (out: MutableFactors, line: number, sign: number): void => {
+    out.saturation = Math.exp(sign * correlated[line]!);
+    out.area = Math.exp(sign * correlated[k + line]!);
+    out.width = Math.exp(sign * correlated[2 * k + line]!);
+    out.lawWidth = Math.exp(sign * correlated[3 * k + line]!);
+    out.surrounding = sign * surroundings[line]!;
+  };
   for (let pair = 0; pair < pairs; pair++) {
     for (let i = 0; i < common.length; i++) common[i] = random.normal();
     for (let i = 0; i < 4 * k; i++) fitNormals[i] = random.normal();
@@ -230,33 +255,26 @@ export function spreadVolumes(input: VolumeInput): LineVolume[] {
         reflectance: Math.exp(sign * common[4]! * sigma.reflectance),
         lifetime: Math.exp(sign * common[5]! * sigma.lifetime),
       };
-      const factorsOf = (line: number, coefficient: number): Factors => ({
-        ...base,
-        coefficient,
-        saturation: Math.exp(sign * correlated[line]!),
-        area: Math.exp(sign * correlated[k + line]!),
-        width: Math.exp(sign * correlated[2 * k + line]!),
-        lawWidth: Math.exp(sign * correlated[3 * k + line]!),
-        surrounding: sign * surroundings[line]!,
-      });
+      setCommon(factors, base);
+      setCommon(pumped, base);
+      if (input.pump !== undefined) setLine(pumped, input.pump.line, sign);
       for (let line = 0; line < k; line++) {
         const own = lines[line]!;
         const out = gather[line]!;
         let chosen = Number.NaN;
+        setLine(factors, line, sign);
         for (const kind of ["dipole-dipole", "van-der-waals"] as const) {
           const spread = inputs.coefficient[kind]?.relativeSigma ?? 0;
-          const factors = factorsOf(line, Math.exp(sign * common[6]! * spread));
+          factors.coefficient = Math.exp(sign * common[6]! * spread);
           const expected = expectedOf(kind, own, inputs, factors);
           out.expected[kind].radius[at] = expected.radius;
           out.expected[kind].hard[at] = expected.hard;
           if (kind === interaction) chosen = expected.hard;
         }
-        const factors = factorsOf(line, 1);
-        const source = input.pump === undefined ? line : input.pump.line;
         const density =
           input.pump === undefined
             ? densityOf(own, inputs, signalUnit, factors)
-            : densityOf(lines[source]!, inputs, signalUnit, factorsOf(source, 1), input.pump.part);
+            : densityOf(lines[input.pump.line]!, inputs, signalUnit, pumped, input.pump.part);
         const volume = (own.saturation * factors.saturation) / density;
         out.density[at] = density;
         out.volume[at] = volume;
