@@ -62,6 +62,8 @@ export interface TailSpec {
   /** C = sum_j strengthShare_j A_j: weighted least squares of the strength law, which is linear in the areas. */
   readonly strengthShare: Float64Array;
   readonly strength: { readonly law: StrengthEnvelope; readonly base: StrengthBase };
+  /** Tied lines above the free ones fall short of the strength law by 1/(1 + (n/halfN)^exponent): bleached by light. */
+  readonly rollOff?: { readonly halfN: number; readonly exponent: number };
   readonly envelope: ContinuumEnvelope;
   /** The continuum carries the asymmetry of the lines too (odd partner of its edge). */
   readonly continuumOdd: boolean;

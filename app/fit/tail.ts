@@ -124,7 +124,7 @@ export class TailEvaluator {
     energies: Float64Array,
   ): void {
     const { sums, spec } = this;
-    const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
+    const s = tiedStrength(n, spec);
     const place = this.pair(n, law, widths, energies);
     const [l, d, lE, lG, dE, dG] = this.scratch as [
       Float64Array,
@@ -333,6 +333,13 @@ export interface BandEdge {
   readonly step: number;
 }
 
+/** Strength of a tied line above the free ones, with C = 1. */
+function tiedStrength(n: number, spec: TailSpec): number {
+  const { rollOff } = spec;
+  const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
+  return rollOff === undefined ? s : s / (1 + (n / rollOff.halfN) ** rollOff.exponent);
+}
+
 const GROUP_RATIO = 1.35;
 const LAST_GROUP_N = 200;
 
@@ -350,11 +357,13 @@ export function groupBands(spec: TailSpec): BandEdge[] {
     const high = Math.max(low + 1, Math.round(low * GROUP_RATIO));
     const edgeN = low - 0.5;
     if (high > LAST_GROUP_N) {
-      edges.push({ edgeN, step: 1 - before });
+      const { rollOff } = spec;
+      const height = rollOff === undefined ? 1 : 1 / (1 + (low / rollOff.halfN) ** rollOff.exponent);
+      edges.push({ edgeN, step: height - before });
       return edges;
     }
     let sum = 0;
-    for (let n = low; n < high; n++) sum += strength(n, defect0, spec.strength.law, spec.strength.base);
+    for (let n = low; n < high; n++) sum += tiedStrength(n, spec);
     const height = (2 * sum) / (nu(edgeN) ** -2 - nu(high - 0.5) ** -2);
     edges.push({ edgeN, step: height - before });
     before = height;
