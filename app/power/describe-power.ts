@@ -457,20 +457,33 @@ function meanBudget(results: readonly PowerLineResult[]): PowerResult["budget"] 
   return [...sums].map(([input, sum]) => ({ input, share: sum / count })).sort((a, b) => b.share - a.share);
 }
 
-/** The same areas under the laws of the other ways to take a series. */
+/** The same areas under the laws of the other ways to take a series, and how S would differ. */
 function compareLaws(flow: Flow): PowerResult["law_comparison"] {
+  const { beam } = flow;
   const seen = flow.lines.filter((line) => line.reading === "bleaches" && line.area !== null);
   if (seen.length === 0) return [];
   const candidates: BleachingLaw[] = ["separate-pump", "scanned-probe", "gaussian-self", "gaussian-scanned"];
-  if (!candidates.includes(flow.beam.areaLaw)) candidates.push(flow.beam.areaLaw);
+  if (!candidates.includes(beam.areaLaw)) candidates.push(beam.areaLaw);
   return candidates
     .map((law) => {
-      const fits = seen.map((line) => saturationOf(line.area!.series, { law, ratio: flow.beam.ratio }));
+      const fits = seen.map((line) => saturationOf(line.area!.series, { law, ratio: beam.ratio }));
+      const scanned = law === "scanned-probe" || law === "gaussian-scanned";
+      const toVolume = (scanned ? 2 : 1) / beam.areaToVolume;
+      let top = 0;
+      let bottom = 0;
+      fits.forEach((fit, i) => {
+        const chosen = seen[i]!.area!;
+        if (fit === null || !(fit.saturation > 0) || !(chosen.saturation > 0)) return;
+        const weight = (chosen.saturation / chosen.sigma) ** 2;
+        top += weight * Math.log((toVolume * fit.saturation) / chosen.saturation);
+        bottom += weight;
+      });
       return {
         law,
         chi2: fits.reduce((sum, fit) => sum + (fit?.fit.chi2 ?? Infinity), 0),
         dof: fits.reduce((sum, fit) => sum + (fit?.fit.degreesOfFreedom ?? 0), 0),
-        chosen: law === flow.beam.areaLaw,
+        chosen: law === beam.areaLaw,
+        saturation_ratio: bottom > 0 ? Math.exp(top / bottom) : null,
       };
     })
     .filter((one) => Number.isFinite(one.chi2))

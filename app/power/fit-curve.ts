@@ -48,7 +48,7 @@ export function fitCurve(problem: CurveProblem): CurveFit | null {
       jacobian,
     },
     problem.start,
-    { lower: problem.lower, upper: problem.upper, fixed: problem.fixed, searchIterations: 30 },
+    { lower: problem.lower, upper: problem.upper, fixed: problem.fixed, searchIterations: 10 },
   );
   if (!Number.isFinite(fit.chi2) || !fit.stationary) return null;
   const factor = choleskyFactor(covariance, r)!;

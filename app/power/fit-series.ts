@@ -14,12 +14,14 @@ import {
 import {
   fitJointly,
   fitSpectrum,
+  strengthShare,
   type FitPoints,
   type JointChoices,
   type JointFit,
   type JointMember,
   type SpectrumFit,
 } from "../fit/index.ts";
+import { strength } from "../laws/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import { chiSquareSurvival } from "../solve/index.ts";
 import type { SeriesMember } from "./read-series.ts";
@@ -46,9 +48,10 @@ export interface FittedSeries {
 
 /** Below this many standard errors of its area a line has no width of its own. */
 const WEAK = 3;
-/** Passes of the joint fit over thinned points, and over all of them: the tail's laws follow the lines of the pass before. */
-const THIN_PASSES = 4;
-const FULL_PASSES = 3;
+/** Passes of the joint fit before the last: the tail's laws follow the lines of the pass before. */
+const MOST_PASSES = 5;
+/** A line with less than this part of its strength counts as bleached. */
+const UNBLEACHED = 0.85;
 /** Width laws that agree to this part have settled. */
 const SETTLED = 1e-3;
 const FEWEST_LINES = 3;
@@ -59,6 +62,10 @@ interface Work {
   readonly points: SelectedPoints;
   readonly thin: FitPoints;
   state: LadderState;
+  /** Areas of the last fit, in the order of the state's lines. */
+  area: Float64Array;
+  /** Areas of the reference, by n. */
+  readonly reference: ReadonlyMap<number, number>;
   held: readonly number[];
 }
 
@@ -91,10 +98,12 @@ export function fitPowerSeries(
   const notes: Note[] = [];
   const works: Work[] = [];
   let before = start;
+  const whole = new Map(reference.lines.map((line) => [line.n, line.area.value ?? 0]));
+  const areas = new Map(reference.lines.map((line) => [line.n, line.area.value ?? 0]));
   for (const [i, member] of series.entries()) {
     stopIfCancelled(watch);
     watch.report(0.3 * (i / series.length), `starting at ${member.power_uW} uW`);
-    const work = prepare(member, before, start, reference.fit.window_eV, tied);
+    const work = prepare(member, before, start, areas, whole, reference.fit.window_eV, tied);
     if (typeof work === "number") {
       failed.push({
         label: member.label,
@@ -105,34 +114,16 @@ export function fitPowerSeries(
     warmUp(work, tied, unit, choices, watch);
     // What the next power starts from; lines outside this spectrum keep what they had.
     before = mergeStates(before, work.state);
+    work.state.ns.forEach((n, j) => areas.set(n, work.area[j]!));
     works.push(work);
   }
   if (works.length === 0) return null;
 
-  let joint = runJoint(
-    works,
-    (work) => work.thin,
-    tied,
-    unit,
-    choices,
-    free,
-    watch,
-    THIN_PASSES,
-    (pass) => watch.report(0.3 + 0.05 * pass, `fitting ${works.length} spectra together, thinned`),
+  const settings = { protocol: tied, unit, choices, free, watch };
+  const fit = runJoint(works, settings, (pass) =>
+    watch.report(0.3 + 0.08 * pass, `fitting ${works.length} spectra together, pass ${pass + 1}`),
   );
-  const gaps = gapTest(works, tied, unit, choices, free, joint.fit, notes, watch);
-  joint = runJoint(
-    works,
-    (work) => work.points,
-    tied,
-    unit,
-    choices,
-    free,
-    watch,
-    FULL_PASSES,
-    (pass) => watch.report(0.6 + 0.12 * pass, `fitting ${works.length} spectra together, every point`),
-  );
-  const { fit } = joint;
+  const gaps = gapTest(works, settings, fit, notes);
   if (!fit.solution.converged)
     notes.push(
       doubt(
@@ -171,6 +162,8 @@ function prepare(
   member: SeriesMember,
   before: LadderState,
   start: LadderState,
+  beforeArea: ReadonlyMap<number, number>,
+  reference: ReadonlyMap<number, number>,
   window: readonly [number, number],
   protocol: Protocol,
 ): Work | number {
@@ -184,8 +177,17 @@ function prepare(
   });
   const state = withLines(before, inside);
   const onLaw = state.include.filter(Boolean).length;
+  const area = Float64Array.from(inside, (n) => beforeArea.get(n) ?? 0);
   if (onLaw < FEWEST_LINES) return onLaw;
-  return { member, points, thin: thinPoints(points, linesForThinning(state, protocol)), state, held: [] };
+  return {
+    member,
+    points,
+    thin: thinPoints(points, linesForThinning(state, protocol)),
+    state,
+    area,
+    reference,
+    held: [],
+  };
 }
 
 /** Widths, areas and tail of this power with the level law held where the reference has it. */
@@ -196,7 +198,7 @@ function warmUp(
   choices: ModelChoices,
   watch: Watch,
 ): void {
-  const model = buildModel(work.thin, work.state, protocol, unit, choices);
+  const model = withBleachedTail(buildModel(work.thin, work.state, protocol, unit, choices), work);
   const tied = { ...model.spec.tiedLevels!, count: 0 };
   const fit = fitSpectrum(work.thin, { ...model.spec, tiedLevels: tied }, model.start, {
     watch,
@@ -212,6 +214,7 @@ function warmUp(
 function adopt(work: Work, fit: SpectrumFit, before: LadderState): void {
   const after = stateAfter(fit, before);
   const { ns, area } = fit.lines;
+  work.area = area;
   work.held = ns.filter((_, j) => !(Math.abs(area[j]!) > WEAK * after.areaSigma[j]!));
   const width = after.width.map((value, j) => {
     const n = ns[j]!;
@@ -248,51 +251,123 @@ function mergeStates(before: LadderState, after: LadderState): LadderState {
   };
 }
 
-interface JointRun {
-  readonly fit: JointFit;
-  readonly settled: boolean;
+interface Settings {
+  readonly protocol: Protocol;
+  readonly unit: "1/cm" | "1";
+  readonly choices: ModelChoices;
+  readonly free: JointChoices;
+  readonly watch: Watch;
 }
 
-/** Joint fits until the width laws that the tails follow stand still. */
-function runJoint(
-  works: readonly Work[],
-  pointsOf: (work: Work) => FitPoints,
-  protocol: Protocol,
-  unit: "1/cm" | "1",
-  choices: ModelChoices,
-  free: JointChoices,
-  watch: Watch,
-  passes: number,
-  report: (pass: number) => void,
-): JointRun {
-  let run: JointRun | null = null;
-  for (let pass = 0; pass < passes && run?.settled !== true; pass++) {
+/** Joint fits until the width laws that the tails follow stand still, then one that ends on every point. */
+function runJoint(works: readonly Work[], settings: Settings, report: (pass: number) => void): JointFit {
+  const { free, watch } = settings;
+  for (let pass = 0, settled = false; pass < MOST_PASSES && !settled; pass++) {
     report(pass);
-    const models = works.map((work) => buildModel(pointsOf(work), work.state, protocol, unit, choices));
-    const fit = fitJointly(membersOf(works, models, pointsOf), free, { watch, maxIterations: 60 });
+    const models = modelsOf(works, settings);
+    const fit = fitJointly(membersOf(works, models), free, {
+      watch,
+      maxIterations: 60,
+      gradientTolerance: 1e-5,
+      costTolerance: 1e-9,
+      answer: "condensed",
+    });
     stopIfCancelled(watch);
-    let settled = true;
+    settled = true;
     works.forEach((work, a) => {
-      const held = work.held;
+      const { held } = work;
       const { state } = models[a]!;
       adopt(work, fit.fits[a]!, state);
-      // Lines do not come and go between passes on their account alone.
+      // Lines that are weak once stay so, or they would come and go.
       if (pass > 0) work.held = held;
       else settled &&= held.join() === work.held.join();
       const width = fit.fits[a]!.laws?.widths.coefficient ?? state.widths.coefficient;
       settled &&= Math.abs(width - state.widths.coefficient) <= SETTLED * Math.abs(width);
     });
-    run = { fit, settled };
   }
-  if (run === null) throw new Error("no pass was made");
-  return run;
+  report(MOST_PASSES);
+  const models = modelsOf(works, settings);
+  const fit = fitJointly(membersOf(works, models), free, { watch, maxIterations: 60 });
+  stopIfCancelled(watch);
+  works.forEach((work, a) => {
+    const { held } = work;
+    adopt(work, fit.fits[a]!, models[a]!.state);
+    work.held = held;
+  });
+  return fit;
 }
 
-function membersOf(
-  works: readonly Work[],
-  models: readonly ReturnType<typeof buildModel>[],
-  pointsOf: (work: Work) => FitPoints,
-): JointMember[] {
+type Model = ReturnType<typeof buildModel>;
+
+function modelsOf(works: readonly Work[], { protocol, unit, choices }: Settings): Model[] {
+  return works.map((work) =>
+    withBleachedTail(buildModel(work.points, work.state, protocol, unit, choices), work),
+  );
+}
+
+/** Above the last line that can be told apart bleaching goes on as it began: S_n ~ n^10 (ideal blockade). */
+const BLEACHING_EXPONENT = 10;
+
+/** n at which 1/(1 + (n/h)^10) of the reference's areas is left, by least squares over the lines; null where none bleaches. */
+function halfBleachedN(work: Work): number | null {
+  const { state, area, reference } = work;
+  const cost = (half: number): number => {
+    let sum = 0;
+    state.ns.forEach((n, j) => {
+      const whole = reference.get(n);
+      if (whole === undefined || !(whole > 0) || !state.include[j]!) return;
+      const left = 1 / (1 + (n / half) ** BLEACHING_EXPONENT);
+      sum += ((area[j]! - whole * left) / state.areaSigma[j]!) ** 2;
+    });
+    return sum;
+  };
+  const last = state.ns[state.ns.length - 1]!;
+  let best = 4 * last;
+  const unbleached = cost(best);
+  for (let half = best; half > state.ns[0]!; half *= 0.99) if (cost(half) < cost(best)) best = half;
+  // Two standard errors: below that the tail of the reference stands.
+  return unbleached - cost(best) > 4 ? best : null;
+}
+
+/** Tail and continuum where light has bleached the highest lines. */
+function withBleachedTail(model: Model, work: Work): Model {
+  const { tail } = model.spec;
+  const halfN = halfBleachedN(work);
+  if (tail === null || halfN === null) return withUnbleachedStrength(model, work);
+  const rollOff = { halfN, exponent: BLEACHING_EXPONENT };
+  return withUnbleachedStrength({ ...model, spec: { ...model.spec, tail: { ...tail, rollOff } } }, work);
+}
+
+/**
+ * The strength law that continuum and tail follow is that of the lines which have not bleached: the lowest ones, up to
+ * the first that has lost more than a part of what the law gives it. Light that blocks an exciton does not block the
+ * continuum.
+ */
+function withUnbleachedStrength(model: Model, work: Work): Model {
+  const { tail, ns } = model.spec;
+  if (tail === null) return model;
+  const { area } = work;
+  const onLaw = ns.map((_, j) => j).filter((j) => model.state.include[j]!);
+  const { law, base } = tail.strength;
+  const ratio = (j: number): number => area[j]! / strength(ns[j]!, tail.levels.defect0, law, base);
+  const lowest = onLaw.slice(0, FEWEST_LINES);
+  const level = [...lowest.map(ratio)].sort((a, b) => a - b)[1]!;
+  const end = onLaw.findIndex((j, i) => i >= FEWEST_LINES && !(ratio(j) > UNBLEACHED * level));
+  const whole = new Set(end < 0 ? onLaw : onLaw.slice(0, end));
+  const share = strengthShare(
+    {
+      ns,
+      value: model.state.areaSigma,
+      sigma: model.state.areaSigma,
+      include: ns.map((_, j) => whole.has(j)),
+    },
+    tail.strength,
+    tail.levels.defect0,
+  );
+  return { ...model, spec: { ...model.spec, tail: { ...tail, strengthShare: share } } };
+}
+
+function membersOf(works: readonly Work[], models: readonly Model[]): JointMember[] {
   const count = models[0]!.spec.tiedLevels!.count;
   const values = models[0]!.spec.tiedLevels!.values;
   return works.map((work, a): JointMember => {
@@ -301,7 +376,7 @@ function membersOf(
     // The energy of a line off the law that is hardly seen stays where it was.
     for (const n of work.held) reach.set(n, 0);
     return {
-      points: pointsOf(work),
+      points: work.points,
       spec: { ...spec, tiedLevels: { ...spec.tiedLevels!, values, count } },
       start: { ...start, reach },
       heldWidths: work.held,
@@ -309,23 +384,28 @@ function membersOf(
   });
 }
 
-/** Does each spectrum want a gap of its own? On thinned points, from where the shared one ended. */
+/** Does each spectrum want a gap of its own? From where the shared one ended. */
 function gapTest(
   works: readonly Work[],
-  protocol: Protocol,
-  unit: "1/cm" | "1",
-  choices: ModelChoices,
-  free: JointChoices,
+  settings: Settings,
   shared: JointFit,
   notes: Note[],
-  watch: Watch,
 ): FittedSeries["gaps"] {
-  watch.report(0.5, "a gap for every power, thinned");
-  const models = works.map((work) => buildModel(work.thin, work.state, protocol, unit, choices));
-  const members = membersOf(works, models, (work) => work.thin);
-  // Both on the same models, so that their chi squares can be compared.
-  const one = free.gap ? null : fitJointly(members, free, { watch, maxIterations: 40 });
-  const own = fitJointly(members, { ...free, gap: true }, { watch, maxIterations: 40 });
+  const { free, watch } = settings;
+  watch.report(0.85, "a gap for every power");
+  const own = free.gap
+    ? shared
+    : fitJointly(
+        membersOf(works, modelsOf(works, settings)),
+        { ...free, gap: true },
+        {
+          watch,
+          maxIterations: 30,
+          gradientTolerance: 1e-5,
+          costTolerance: 1e-9,
+          answer: "condensed",
+        },
+      );
   stopIfCancelled(watch);
   if (!own.solution.converged) return null;
   const value = new Float64Array(works.length);
@@ -334,8 +414,8 @@ function gapTest(
     value[a] = solution.theta[0]!;
     sigma[a] = Math.sqrt(solution.covariance[0]!);
   });
-  if (one !== null && works.length > 1 && shared.solution.converged) {
-    const chi2 = Math.max(0, one.solution.chi2 - own.solution.chi2);
+  if (!free.gap && works.length > 1 && shared.solution.converged) {
+    const chi2 = Math.max(0, shared.solution.chi2 - own.solution.chi2);
     const p = chiSquareSurvival(chi2, works.length - 1);
     if (p < 0.01)
       notes.push(

@@ -34,8 +34,10 @@ import { FIT_PARTS, spreadVolumes, type LineAtZero } from "./volumes.ts";
 import { fitBroadening, widthsByLaw, type WidthsAtZero } from "./widths.ts";
 import type { PowerIssue } from "./wording.ts";
 
-/** Bleaching counts as seen above this many standard errors, by S itself or by the fall of chi square. */
+/** Bleaching counts as seen above this many standard errors of S. */
 const SEEN = 2;
+/** Fall of chi square above which it is seen even where S is loose, since the lowest power already saturates. */
+const SURELY = 9;
 /** Energies of a pump within this part of a line's full width count as on the line. */
 const ON_LINE = 1;
 
@@ -200,7 +202,7 @@ function readingOf(
   ) {
     return "rises";
   }
-  const seen = saturation.value > SEEN * sigma || tests.bleaching.gain > SEEN * SEEN;
+  const seen = saturation.value > SEEN * sigma || tests.bleaching.gain > SURELY;
   return saturation.value > 0 && seen ? "bleaches" : "not-seen";
 }
 

@@ -272,6 +272,33 @@ function saturationNotes(findings: Findings): Note[] {
         "check power.excitation and power.spot_profile against how the series was taken",
       ),
     );
+  // Laws that these areas cannot tell apart, though S would differ by more than its error.
+  const precision = Math.sqrt(
+    1 /
+      lines.reduce(
+        (sum, line) =>
+          line.reading === "bleaches" && line.area !== null
+            ? sum + (line.area.saturation / line.area.sigma) ** 2
+            : sum,
+        1e-12,
+      ),
+  );
+  const open = power.law_comparison.filter(
+    (one) =>
+      !one.chosen &&
+      chosen !== undefined &&
+      Math.abs(one.chi2 - chosen.chi2) <= SPEAKS * SPEAKS &&
+      Math.abs(Math.log(one.saturation_ratio ?? 1)) > 2 * precision,
+  );
+  if (open.length > 0)
+    notes.push(
+      doubt(
+        "law-not-distinguished",
+        "power.law",
+        `These areas do not tell the chosen law from ${open.map((one) => `${LAW_WORDS[one.law] ?? one.law} (S times ${short(one.saturation_ratio ?? 1)})`).join(" or ")}. S and the volumes rest on power.excitation and power.spot_profile being right.`,
+        "check both against how the series was taken; powers both far below and far above 1/S tell the laws apart",
+      ),
+    );
   const disagreement = areaPeakDisagreement(lines);
   const far = lines
     .filter((line) => line.reading === "bleaches" && Math.abs(line.difference ?? 0) > SPEAKS)

@@ -144,7 +144,14 @@ export const powerSchema = z.strictObject({
   law: z.enum(["separate-pump", "scanned-probe", "gaussian-self", "gaussian-scanned", "gaussian-two-beam"]),
   /** Chi square of the areas under the laws of other ways to take the series, summed over the lines; least first. */
   law_comparison: z.array(
-    z.strictObject({ law: z.string(), chi2: z.number(), dof: z.int(), chosen: z.boolean() }),
+    z.strictObject({
+      law: z.string(),
+      chi2: z.number(),
+      dof: z.int(),
+      chosen: z.boolean(),
+      /** S that enters the volume under this law over that under the chosen one, mean of the lines. */
+      saturation_ratio: number,
+    }),
   ),
   /** Errors of areas and peaks were multiplied by this, because repeats at one power scatter more than they say. */
   repeat_factor: z.number(),
