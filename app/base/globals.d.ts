@@ -16,3 +16,19 @@ declare interface AbortSignal {
 declare interface File {
   readonly name: string;
 }
+/** The part of WebAssembly that the compiled loops need; absent or forbidden in some pages, which is met by plain loops. */
+declare namespace WebAssembly {
+  /** Compiled code, of which nothing is read here. */
+  class Module {
+    constructor(bytes: Uint8Array<ArrayBuffer>);
+    private readonly compiled;
+  }
+  class Instance {
+    constructor(module: Module);
+    readonly exports: Readonly<Record<string, unknown>>;
+  }
+  interface Memory {
+    readonly buffer: ArrayBuffer;
+    grow(pages: number): number;
+  }
+}

@@ -2,9 +2,9 @@ import { LEAST_POINTS, NODES, type Panel } from "../solve/index.ts";
 import type { Feature } from "./transmittance-grid.ts";
 
 /** What is left of a column's product in a panel, exp(-2 REACH): 1e-13. */
-const REACH = 15;
+const REACH = 19;
 /** After the lines have moved: 1e-11 is still good enough to go on with. */
-const LEAST_REACH = 12.5;
+const LEAST_REACH = 15;
 
 /**
  * What      Panels of the points on each of which every line is, to double accuracy, a polynomial: the nearest pole

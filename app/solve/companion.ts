@@ -1,6 +1,6 @@
 import { forwardSubstitute } from "./cholesky.ts";
 import type { Steering } from "./dampedStep.ts";
-import { gather } from "./gather.ts";
+import { weigh } from "./gather.ts";
 import { LinearStage } from "./linearStage.ts";
 import { SteeringBuilder } from "./steering.ts";
 import type { SeparableProblem } from "./types.ts";
@@ -21,10 +21,7 @@ export class Companion {
   readonly builder: SteeringBuilder;
   private readonly problem: SeparableProblem;
   private readonly stage: LinearStage;
-  private readonly used: Int32Array;
   private readonly weight: Float64Array;
-  private readonly rawColumns: Float64Array;
-  private readonly rawDerivatives: Float64Array;
   private readonly none: Float64Array;
 
   constructor(problem: SeparableProblem) {
@@ -32,9 +29,6 @@ export class Companion {
     this.problem = problem;
     this.rows = rows;
     this.weight = problem.weights;
-    this.used = Int32Array.from({ length: rows }, (_, i) => i);
-    this.rawColumns = new Float64Array(rows * k);
-    this.rawDerivatives = new Float64Array(rows * p);
     this.phi = new Float64Array(rows * k);
     this.derivative = new Float64Array(rows * p);
     this.none = new Float64Array(rows);
@@ -44,16 +38,16 @@ export class Companion {
 
   /** Columns at theta, and their factor into `stage`; false where either cannot be had. */
   takeColumns(theta: Float64Array, stage: LinearStage): boolean {
-    const { problem, rows, rawColumns, used, weight, phi } = this;
-    if (problem.linear > 0) problem.columns(theta, rawColumns);
-    return gather(rawColumns, rows, problem.linear, used, weight, phi) && stage.factorOf(this.stage, phi);
+    const { problem, weight, phi } = this;
+    if (problem.linear > 0) problem.columns(theta, phi);
+    return weigh(phi, problem.linear, weight) && stage.factorOf(this.stage, phi);
   }
 
   /** At the theta of the last `takeColumns` that was accepted. */
   takeDerivatives(theta: Float64Array, coefficients: Float64Array): boolean {
-    const { problem, rows, rawDerivatives, used, weight, derivative } = this;
-    problem.derivatives(theta, coefficients, rawDerivatives);
-    return gather(rawDerivatives, rows, problem.nonlinear, used, weight, derivative);
+    const { problem, weight, derivative } = this;
+    problem.derivatives(theta, coefficients, derivative);
+    return weigh(derivative, problem.nonlinear, weight);
   }
 
   /** The matrix of the condensed rows under the gradient of every row; null where the two do not go together. */

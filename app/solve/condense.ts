@@ -23,7 +23,7 @@ export interface CondensedRows {
 }
 
 /** Nodes of a condensed panel. */
-export const NODES = 14;
+export const NODES = 16;
 
 /** A panel with fewer points keeps them: there the recursion would lose its orthogonality, and nothing would be saved. */
 export const LEAST_POINTS = 2 * NODES;

@@ -18,7 +18,7 @@ export interface JacobianAnalysis {
 /** A parameter takes part in the null space when this much of it, in units of a column's length, does. */
 const NULL_PART = 1e-6;
 /** Cosine left between the rotated rows; the condition number is good to about this part. */
-const CONDITION_TOLERANCE = 1e-8;
+const CONDITION_TOLERANCE = 1e-5;
 
 /**
  * What      Covariance of least squares at a solution, (J'J)^-1 = R^-1 R^-T, from the QR of the weighted columns with

@@ -28,3 +28,18 @@ export function gather(
   }
   return check === 0;
 }
+
+/** The same in place, where every row is in use. */
+export function weigh(columns: Float64Array, count: number, weight: Float64Array): boolean {
+  const m = weight.length;
+  let check = 0;
+  for (let j = 0; j < count; j++) {
+    const at = j * m;
+    for (let r = 0; r < m; r++) {
+      const value = columns[at + r]! * weight[r]!;
+      columns[at + r] = value;
+      check += value * 0;
+    }
+  }
+  return check === 0;
+}

@@ -1,3 +1,8 @@
+import { PRODUCT_ROWS, vectorKernels, type VectorKernels } from "./vectorKernels.ts";
+
+/** Rows times products from which on the compiled loop is worth the way into its memory. */
+const VECTOR_WORK = 20_000;
+
 /** Rows handled at once: a pair of column tiles of this height stays in the first-level cache. */
 const ROW_BLOCK = 256;
 
@@ -20,6 +25,11 @@ export function crossProduct(
   rows: number,
   out: Float64Array,
 ): void {
+  const kernels = rows * na * nb < VECTOR_WORK ? null : vectorKernels();
+  if (kernels !== null) {
+    productsCompiled(kernels, a, na, b, nb, ld, rows, out);
+    return;
+  }
   out.fill(0, 0, na * nb);
   for (let start = 0; start < rows; start += ROW_BLOCK) {
     const end = Math.min(rows, start + ROW_BLOCK);
@@ -31,6 +41,16 @@ export function crossProduct(
 }
 
 export function gramMatrix(a: Float64Array, n: number, ld: number, rows: number, out: Float64Array): void {
+  const kernels = rows * n * n < VECTOR_WORK ? null : vectorKernels();
+  if (kernels === null) gramPlain(a, n, ld, rows, out);
+  else productsCompiled(kernels, a, n, null, n, ld, rows, out);
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j < i; j++) out[j * n + i] = out[i * n + j]!;
+  }
+}
+
+/** The lower triangle of A'A. */
+function gramPlain(a: Float64Array, n: number, ld: number, rows: number, out: Float64Array): void {
   out.fill(0, 0, n * n);
   for (let start = 0; start < rows; start += ROW_BLOCK) {
     const end = Math.min(rows, start + ROW_BLOCK);
@@ -41,8 +61,54 @@ export function gramMatrix(a: Float64Array, n: number, ld: number, rows: number,
         addTile(a, i, tall, a, j, Math.min(2, n - j), ld, start, end, out, n);
     }
   }
-  for (let i = 0; i < n; i++) {
-    for (let j = 0; j < i; j++) out[j * n + i] = out[i * n + j]!;
+}
+
+/** A'B, or (b null) the lower triangle of A'A, by the compiled loop: columns made up with zeros to whole tiles. */
+function productsCompiled(
+  kernels: VectorKernels,
+  a: Float64Array,
+  na: number,
+  b: Float64Array | null,
+  nb: number,
+  ld: number,
+  rows: number,
+  out: Float64Array,
+): void {
+  const tall = Math.ceil(na / 4) * 4;
+  const wide = b === null ? tall : Math.ceil(nb / 2) * 2;
+  const second = tall * PRODUCT_ROWS;
+  const result = second + (b === null ? 0 : wide * PRODUCT_ROWS);
+  const memory = kernels.room(result + tall * wide);
+  memory.fill(0, 0, result + tall * wide);
+  for (let start = 0; start < rows; start += PRODUCT_ROWS) {
+    const height = Math.min(PRODUCT_ROWS, rows - start);
+    const whole = Math.ceil(height / 2) * 2;
+    copyRows(a, na, ld, start, height, memory, 0);
+    if (b !== null) copyRows(b, nb, ld, start, height, memory, second);
+    const other = b === null ? 0 : 8 * second;
+    kernels.products(0, tall, other, wide, 8 * whole, 8 * result, 8 * wide, b === null ? 1 : 0);
+  }
+  for (let i = 0; i < na; i++) {
+    for (let j = 0; j < nb; j++) out[i * nb + j] = memory[result + i * wide + j]!;
+  }
+}
+
+/** A block of rows, columns PRODUCT_ROWS apart; where the block is short by an odd number one zero follows. */
+function copyRows(
+  source: Float64Array,
+  count: number,
+  ld: number,
+  start: number,
+  height: number,
+  out: Float64Array,
+  offset: number,
+): void {
+  const odd = height % 2 === 1;
+  for (let j = 0; j < count; j++) {
+    const from = j * ld + start;
+    const to = offset + j * PRODUCT_ROWS;
+    for (let r = 0; r < height; r++) out[to + r] = source[from + r]!;
+    if (odd) out[to + height] = 0;
   }
 }
 
@@ -116,7 +182,7 @@ function addTile(
   }
 }
 
-/** out_j := A_j' v for every column of A (rows x n, column-major, leading dimension `ld`). */
+/** out_j := A_j' v for every column of A (rows x n, column-major, leading dimension `ld`), columns four at a time. */
 export function transposedTimes(
   a: Float64Array,
   n: number,
@@ -125,7 +191,29 @@ export function transposedTimes(
   v: Float64Array,
   out: Float64Array,
 ): void {
-  for (let j = 0; j < n; j++) {
+  let j = 0;
+  for (; j + 3 < n; j += 4) {
+    const c0 = j * ld;
+    const c1 = c0 + ld;
+    const c2 = c1 + ld;
+    const c3 = c2 + ld;
+    let s0 = 0;
+    let s1 = 0;
+    let s2 = 0;
+    let s3 = 0;
+    for (let r = 0; r < rows; r++) {
+      const vr = v[r]!;
+      s0 += a[c0 + r]! * vr;
+      s1 += a[c1 + r]! * vr;
+      s2 += a[c2 + r]! * vr;
+      s3 += a[c3 + r]! * vr;
+    }
+    out[j] = s0;
+    out[j + 1] = s1;
+    out[j + 2] = s2;
+    out[j + 3] = s3;
+  }
+  for (; j < n; j++) {
     const column = j * ld;
     let even = 0;
     let odd = 0;

@@ -95,16 +95,17 @@ export class LinearStage {
     return true;
   }
 
-  /** As `solve`, with the factor at hand in place of Phi's own: corrections by the true residual until they are spent. */
+  /**
+   * As `solve`, with the factor at hand in place of Phi's own and from the coefficients that c holds: corrections by the
+   * true residual until they are spent.
+   */
   solveWith(phi: Float64Array, target: Float64Array, c: Float64Array, residual: Float64Array): number {
     const { k, ld, rows } = this;
-    c.fill(0, 0, k);
-    let last = target;
+    residualOf(phi, k, ld, rows, c, target, residual);
     const enough = 1e-24 * sumOfSquares(target, rows);
     for (let turn = 0; turn < 5; turn++) {
-      const moved = this.correct(phi, last, c);
+      const moved = this.correct(phi, residual, c);
       residualOf(phi, k, ld, rows, c, target, residual);
-      last = residual;
       if (moved <= enough) break;
     }
     return sumOfSquares(residual, rows);

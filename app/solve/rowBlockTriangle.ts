@@ -1,5 +1,7 @@
-/** Rows eliminated at once; 64 rows of 80 columns are 40 kB. */
-const BLOCK = 64;
+import { ELIMINATE_ROWS as BLOCK, vectorKernels, type VectorKernels } from "./vectorKernels.ts";
+
+/** Rows times columns^2 from which on the compiled loop is worth the way into its memory. */
+const VECTOR_WORK = 20_000;
 
 /**
  * What      Triangular factor of a tall matrix by rows: R with R'R = A'A, built by Householder reflections that fold
@@ -11,7 +13,7 @@ const BLOCK = 64;
  * Accuracy  backward stable as Householder QR; independent of column scale. tests/app/solve/factor.test.ts.
  * Source    Lawson and Hanson, Solving Least Squares Problems (1974), chapter 27 (sequential accumulation);
  *           reflections as Golub and Van Loan, algorithm 5.1.1. The triangle's zeros are used, so the work is that of
- *           one QR, and every block stays in the cache.
+ *           one QR, and every block (64 rows of 80 columns are 40 kB) stays in the cache.
  */
 export class RowBlockTriangle {
   readonly n: number;
@@ -31,22 +33,37 @@ export class RowBlockTriangle {
     lds: readonly number[],
     rows: number,
   ): void {
-    this.r.fill(0);
-    const block = this.block;
+    const { n, r, block } = this;
+    const kernels = rows * n * n < VECTOR_WORK ? null : vectorKernels();
+    if (kernels !== null) {
+      this.factorCompiled(kernels, groups, counts, lds, rows);
+      return;
+    }
+    r.fill(0);
     for (let start = 0; start < rows; start += BLOCK) {
       const height = Math.min(BLOCK, rows - start);
-      let at = 0;
-      for (let g = 0; g < groups.length; g++) {
-        const source = groups[g]!;
-        const ld = lds[g]!;
-        for (let j = 0; j < counts[g]!; j++) {
-          const from = j * ld + start;
-          for (let r = 0; r < height; r++) block[at + r] = source[from + r]!;
-          at += BLOCK;
-        }
-      }
+      copyBlock(groups, counts, lds, start, height, height, block, 0);
       this.eliminate(height);
     }
+  }
+
+  private factorCompiled(
+    kernels: VectorKernels,
+    groups: readonly Float64Array[],
+    counts: readonly number[],
+    lds: readonly number[],
+    rows: number,
+  ): void {
+    const { n, r } = this;
+    const memory = kernels.room(n * n + n * BLOCK);
+    memory.fill(0, 0, n * n);
+    for (let start = 0; start < rows; start += BLOCK) {
+      const height = Math.min(BLOCK, rows - start);
+      const whole = Math.ceil(height / 2) * 2;
+      copyBlock(groups, counts, lds, start, height, whole, memory, n * n);
+      kernels.eliminate(0, 8 * n * n, n, 8 * whole);
+    }
+    r.set(memory.subarray(0, n * n));
   }
 
   private eliminate(height: number): void {
@@ -105,6 +122,30 @@ export class RowBlockTriangle {
         r[row + c] = r[row + c]! - s0;
         for (let i = 0; i < height; i++) block[b0 + i] = block[b0 + i]! - s0 * block[v + i]!;
       }
+    }
+  }
+}
+
+/** Rows from `start` on of all columns, one column after another, BLOCK apart; made up with zeros to `whole` rows. */
+function copyBlock(
+  groups: readonly Float64Array[],
+  counts: readonly number[],
+  lds: readonly number[],
+  start: number,
+  height: number,
+  whole: number,
+  out: Float64Array,
+  offset: number,
+): void {
+  let at = offset;
+  for (let g = 0; g < groups.length; g++) {
+    const source = groups[g]!;
+    const ld = lds[g]!;
+    for (let j = 0; j < counts[g]!; j++) {
+      const from = j * ld + start;
+      for (let r = 0; r < height; r++) out[at + r] = source[from + r]!;
+      for (let r = height; r < whole; r++) out[at + r] = 0;
+      at += BLOCK;
     }
   }
 }

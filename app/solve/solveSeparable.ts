@@ -3,7 +3,7 @@ import { Companion } from "./companion.ts";
 import { analyseJacobian, type JacobianAnalysis } from "./covariance.ts";
 import { scaledNorm, StepFinder } from "./dampedStep.ts";
 import type { Steering } from "./dampedStep.ts";
-import { gather } from "./gather.ts";
+import { gather, weigh } from "./gather.ts";
 import { residualOf, sumOfSquares, transposedTimes } from "./gram.ts";
 import { LinearStage } from "./linearStage.ts";
 import { SteeringBuilder } from "./steering.ts";
@@ -63,6 +63,7 @@ function solveCondensed(
   let iterations = 0;
   let evaluations = 0;
   let converged = false;
+  let coefficients: Float64Array = new Float64Array(problem.linear);
   for (let round = 0; round < MOST_ROUNDS && condensed !== null; round++) {
     const rough = options.answer === "condensed";
     const inner = { ...options, maxIterations: most - iterations, stride: 1 };
@@ -71,6 +72,7 @@ function solveCondensed(
     // A model that is not finite on the nodes may be so on the points too, but it is those that count.
     if (solution.termination === "notFinite") break;
     theta = solution.theta;
+    coefficients = solution.coefficients;
     iterations += solution.iterations;
     evaluations += solution.evaluations;
     converged = solution.converged;
@@ -82,7 +84,7 @@ function solveCondensed(
     condensed = condense(theta);
   }
   const left = Math.max(most - iterations, converged ? LEAST_FULL_STEPS : 0);
-  const full = new Search(problem, theta, { ...options, maxIterations: left }, { condensed });
+  const full = new Search(problem, theta, { ...options, maxIterations: left }, { condensed, coefficients });
   const solution = full.run();
   return {
     ...solution,
@@ -107,6 +109,8 @@ function withEveryRow(
 interface Surroundings {
   /** Rows that give the matrices. */
   readonly condensed?: CondensedProblem | null;
+  /** Coefficients at the start, as the condensed rows have them. */
+  readonly coefficients?: Float64Array;
   /** Whether the covariance is wanted. Default true. */
   readonly covariance?: boolean;
 }
@@ -199,7 +203,7 @@ class Search {
     for (let j = 0; j < p; j++) {
       if (!(this.lower[j]! <= this.upper[j]!)) throw new Error("a lower bound lies above its upper bound");
     }
-    this.raw = new Float64Array(rows * Math.max(k, p));
+    this.raw = new Float64Array(m === rows ? 0 : rows * Math.max(k, p));
     this.rawOffset = new Float64Array(problem.offset === undefined ? 0 : rows);
     this.phi = new Float64Array(0);
     this.derivative = new Float64Array(m * p);
@@ -218,7 +222,7 @@ class Search {
     for (let j = 0; j < p; j++) this.theta[j] = clamp(start[j]!, this.lower[j]!, this.upper[j]!);
     this.longest = new Float64Array(p);
     this.trial = new Float64Array(p);
-    this.coefficients = new Float64Array(k);
+    this.coefficients = surroundings.coefficients?.slice() ?? new Float64Array(k);
     this.trialCoefficients = new Float64Array(k);
     this.residual = new Float64Array(m);
     this.trialResidual = new Float64Array(m);
@@ -347,8 +351,11 @@ class Search {
     const { trialPhi } = this;
     this.evaluations++;
     this.rawIsCurrent = false;
-    if (k > 0) problem.columns(this.trial, raw);
-    if (!gather(raw, problem.rows, k, used, weight, trialPhi)) return NaN;
+    // Where every row counts the problem writes straight into the matrix.
+    const every = m === problem.rows;
+    if (k > 0) problem.columns(this.trial, every ? trialPhi : raw);
+    const finite = every ? weigh(trialPhi, k, weight) : gather(raw, problem.rows, k, used, weight, trialPhi);
+    if (!finite) return NaN;
     if (problem.offset === undefined) {
       trialTarget.set(this.weightedData);
     } else {
@@ -357,8 +364,10 @@ class Search {
     }
     if (this.companion !== null && !this.companion.takeColumns(this.trial, this.stage)) this.companion = null;
     const { trialCoefficients, trialResidual } = this;
-    if (this.companion !== null)
+    if (this.companion !== null) {
+      trialCoefficients.set(this.coefficients);
       return this.stage.solveWith(trialPhi, trialTarget, trialCoefficients, trialResidual);
+    }
     return this.stage.solve(trialPhi, trialTarget, trialCoefficients, trialResidual);
   }
 
@@ -390,9 +399,12 @@ class Search {
   }
 
   private takeDerivatives(): boolean {
-    const { problem, p, used, weight, raw, derivative } = this;
-    if (p > 0) problem.derivatives(this.theta, this.coefficients, raw);
-    this.haveDerivatives = gather(raw, problem.rows, p, used, weight, derivative);
+    const { problem, p, m, used, weight, raw, derivative } = this;
+    const every = m === problem.rows;
+    if (p > 0) problem.derivatives(this.theta, this.coefficients, every ? derivative : raw);
+    this.haveDerivatives = every
+      ? weigh(derivative, p, weight)
+      : gather(raw, problem.rows, p, used, weight, derivative);
     if (this.companion !== null && !this.companion.takeDerivatives(this.theta, this.coefficients))
       this.leaveCompanion();
     return this.haveDerivatives;
@@ -440,7 +452,7 @@ class Search {
     const n = p + k;
     const finite = Number.isFinite(this.cost);
     if (!this.rawIsCurrent && finite) {
-      if (k > 0) problem.columns(this.theta, this.raw);
+      if (k > 0) problem.columns(this.theta, this.spare());
       problem.offset?.(this.theta, this.rawOffset);
     }
     const activeBounds = new Int8Array(p);
@@ -503,12 +515,21 @@ class Search {
     };
   }
 
+  /** Room for raw columns that are looked at once. */
+  private spare(): Float64Array {
+    const { problem, m, k, raw } = this;
+    if (m < problem.rows) return raw;
+    if (this.trialPhi.length < m * k) this.trialPhi = new Float64Array(m * k);
+    return this.trialPhi;
+  }
+
   /** The model at every row; by the columns only where a row was left out, or where there is nothing else. */
   private fittedValues(finite: boolean): Float64Array {
-    const { problem, k, m, raw, used, weight, residual } = this;
+    const { problem, k, m, used, weight, residual } = this;
     const { rows, data } = problem;
     const fitted = new Float64Array(rows);
     if (m < rows || !finite) {
+      const raw = this.spare();
       if (k > 0) problem.columns(this.theta, raw);
       for (let i = 0; i < rows; i++) {
         let sum = problem.offset === undefined ? 0 : this.rawOffset[i]!;
@@ -535,8 +556,8 @@ class Search {
       const { rows } = companion;
       const few = [pick(companion.derivative, rows), companion.phi];
       const gradient = new Float64Array(free.length + k);
-      transposedTimes(all[0]!, free.length, m, m, residual, gradient);
-      transposedTimes(this.phi, k, m, m, residual, gradient.subarray(free.length));
+      // The gradient along the coefficients is nothing: they are solved for.
+      free.forEach((j, at) => (gradient[at] = this.fullGradient[j]!));
       const analysis = analyseJacobian(few, counts, rows, rows, { gradient });
       if (sameWeakDirections(analysis, few, rows, all, m, counts)) return analysis;
     }
@@ -595,31 +616,43 @@ function sameWeakDirections(
     }
     vectors.push(v);
   }
-  return vectors.every((v) => {
-    // In units of the covariance: C v = lambda v means the direction C v of the parameters, of length |J C v|.
+  // In units of the covariance: C v = lambda v means the direction C v of the parameters, of length |J C v|.
+  const directions = vectors.map((v) => {
     const direction = new Float64Array(n);
     for (let i = 0; i < n; i++)
       for (let j = 0; j < n; j++) direction[i]! += (covariance[i * n + j]! / sigma[j]!) * v[j]!;
-    const a = imageSquare(few, fewRows, counts, direction);
-    const b = imageSquare(all, allRows, counts, direction);
-    return Math.abs(a - b) <= AGREEMENT * b;
+    return direction;
   });
+  const a = imageSquares(few, fewRows, counts, directions);
+  const b = imageSquares(all, allRows, counts, directions);
+  return a.every((square, d) => Math.abs(square - b[d]!) <= AGREEMENT * b[d]!);
 }
 
-/** |J v|^2 of columns in groups. */
-function imageSquare(
+const IMAGE_ROWS = 512;
+
+/** |J v|^2 of columns in groups, for each v; by blocks of rows, so that the matrix is read once. */
+function imageSquares(
   groups: readonly Float64Array[],
   rows: number,
   counts: readonly number[],
-  v: Float64Array,
-): number {
-  const image = new Float64Array(rows);
-  let at = 0;
-  groups.forEach((group, g) => {
-    residualOf(group, counts[g]!, rows, rows, v.subarray(at, at + counts[g]!), image, image);
-    at += counts[g]!;
-  });
-  return sumOfSquares(image, rows);
+  directions: readonly Float64Array[],
+): number[] {
+  const sums = directions.map(() => 0);
+  const image = new Float64Array(IMAGE_ROWS);
+  for (let start = 0; start < rows; start += IMAGE_ROWS) {
+    const height = Math.min(IMAGE_ROWS, rows - start);
+    directions.forEach((v, d) => {
+      image.fill(0);
+      let at = 0;
+      groups.forEach((group, g) => {
+        const part = v.subarray(at, at + counts[g]!);
+        residualOf(group.subarray(start), counts[g]!, rows, height, part, image, image);
+        at += counts[g]!;
+      });
+      sums[d]! += sumOfSquares(image, height);
+    });
+  }
+  return sums;
 }
 
 function clamp(value: number, low: number, high: number): number {

@@ -6,7 +6,8 @@
 export function contentPolicy(nonce: string | null): string {
   return [
     "default-src 'none'",
-    "script-src 'self'",
+    // Compiled loops (app/solve/vectorKernels.ts) are made in the page's worker; script from text stays forbidden.
+    "script-src 'self' 'wasm-unsafe-eval'",
     nonce === null ? "style-src 'self'" : `style-src 'self' 'nonce-${nonce}'`,
     "img-src 'self' data: blob:",
     "font-src 'self'",

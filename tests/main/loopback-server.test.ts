@@ -243,7 +243,7 @@ describe("what is served", () => {
       const nonce = /<meta property="csp-nonce" nonce="([^"]+)"/.exec(text)![1]!;
       nonces.add(nonce);
       expect(headers["content-security-policy"]).toBe(
-        `default-src 'none'; script-src 'self'; style-src 'self' 'nonce-${nonce}'; img-src 'self' data: blob:; ` +
+        `default-src 'none'; script-src 'self' 'wasm-unsafe-eval'; style-src 'self' 'nonce-${nonce}'; img-src 'self' data: blob:; ` +
           "font-src 'self'; connect-src 'self'; worker-src 'self'; base-uri 'none'; form-action 'none'; " +
           "frame-ancestors 'none'; object-src 'none'",
       );
