@@ -22,7 +22,12 @@ import {
 } from "./ladder-model.ts";
 
 /** Fits that only prepare the next one need not be finished to the last digit. */
-const ROUGH: FitControl = { maxIterations: 12, gradientTolerance: 1e-4, costTolerance: 1e-5 };
+const ROUGH: FitControl = {
+  maxIterations: 12,
+  gradientTolerance: 1e-4,
+  costTolerance: 1e-5,
+  answer: "condensed",
+};
 /** A line above counts when its area is above this many standard errors and the information criterion gains enough. */
 export const LEAST_SIGNIFICANCE = 5;
 export const LEAST_BIC_GAIN = 10;
@@ -177,7 +182,7 @@ function highestPromised(
   const needed = leastSignificance(points.energy.length);
   for (let count = ahead.length; count > 0;) {
     const ns = [...current.state.ns, ...ahead.slice(0, count)];
-    const trial = run(withLines(current.state, ns), { maxIterations: 1 });
+    const trial = run(withLines(current.state, ns), { maxIterations: 1, answer: "condensed" });
     const significant = significances(trial.fit).slice(current.state.ns.length);
     if (significant.every((value) => value > needed)) return ns[ns.length - 1]!;
     const hopeful = significant.findIndex((value) => !(value > HOPEFUL * needed));
@@ -188,11 +193,17 @@ function highestPromised(
 
 const HOPEFUL = 0.35;
 
+/** An area that the user holds, or that stands at the user's bound, is there by the user's word. */
+const HELD = 1e6;
+
 /** Area over its standard error, by line; 0 where a line ended at a bound or has no error. */
 export function significances(fit: SpectrumFit): number[] {
   const { lines } = fit;
   const k = lines.ns.length;
   return lines.ns.map((n, j) => {
+    const parts = fit.constrained;
+    const limited = parts?.limited.some((one) => one.n === n && one.parameter === "area");
+    if (parts?.held.area.includes(n) === true || limited === true) return HELD;
     const i = 2 * k + j;
     const sigma = Math.sqrt(lines.covariance[i * 4 * k + i]!);
     return sigma > 0 && !fit.atBound.includes(n) ? lines.area[j]! / sigma : 0;

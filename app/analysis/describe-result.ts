@@ -24,6 +24,15 @@ import type { Spectrum } from "../spectrum/index.ts";
 import type { AnalysisResult } from "./analyse.ts";
 import type { Assignment } from "./assign-n.ts";
 import { bicGain, significances } from "./climb-ladder.ts";
+import {
+  constraintNotes,
+  describeExtra,
+  heldQuantity,
+  isHeld,
+  parameterCount,
+  tiedStrengthLaw,
+  tiedWidthLaw,
+} from "./describe-constraints.ts";
 import { describeDiagnostics } from "./diagnostics.ts";
 import { findDoubts } from "./find-doubts.ts";
 import type { Peak } from "./find-peaks.ts";
@@ -93,19 +102,23 @@ export function describeResult(
     const bound = fit.atBound.includes(n);
     const { binding_eV: _, ...derived } = derivedParts.lines[j]!;
     // q of a line whose area is hardly seen says nothing (PHYSICS of the asymmetry).
+    const held = (parameter: "energy" | "width" | "area"): Quantity | null =>
+      isHeld(fit, n, parameter) ? heldQuantity(fit.lines[parameter][j]!) : null;
     const qKnown = asymmetryFree && (protocol.lines.asymmetry === "shared" || seen[j]! > 3);
     return {
       n,
-      energy_eV: quantity(fit.lines.energy[j]!, error(0, j), bound),
-      width_eV: quantity(fit.lines.width[j]!, error(1, j), bound),
-      area: quantity(fit.lines.area[j]!, error(2, j)),
-      asymmetry: !asymmetryFree
-        ? { value: 0, sigma: 0, low: 0, high: 0 }
-        : qKnown
-          ? quantity(fit.lines.asymmetry[j]!, error(3, j))
-          : NOT_DETERMINED,
-      significance: seen[j]!,
-      bic_gain: bicGain(seen[j]!, m),
+      energy_eV: held("energy") ?? quantity(fit.lines.energy[j]!, error(0, j), bound),
+      width_eV: held("width") ?? quantity(fit.lines.width[j]!, error(1, j), bound),
+      area: held("area") ?? quantity(fit.lines.area[j]!, error(2, j)),
+      asymmetry: isHeld(fit, n, "asymmetry")
+        ? heldQuantity(fit.lines.asymmetry[j]!)
+        : !asymmetryFree
+          ? { value: 0, sigma: 0, low: 0, high: 0 }
+          : qKnown
+            ? quantity(fit.lines.asymmetry[j]!, error(3, j))
+            : NOT_DETERMINED,
+      significance: isHeld(fit, n, "area") ? 0 : seen[j]!,
+      bic_gain: isHeld(fit, n, "area") ? null : bicGain(seen[j]!, m),
       peak: derived.peak,
       spacing_eV: derived.spacing_eV,
       width_over_spacing: derived.width_over_spacing,
@@ -133,7 +146,7 @@ export function describeResult(
   const drawn = resampleSpectrum(points, full, protocol, spectrum.unit, choices, watch, (done, of) =>
     watch.report(0.85 + (0.14 * done) / of, `drawing spectra anew, ${done} of ${of}`),
   );
-  const parameters = fit.problem.nonlinear + fit.problem.linear;
+  const parameters = parameterCount(fit);
   const criteria = informationCriteria(solution.chi2, m, parameters);
   const lag1 = neighbourCorrelation(solution.residuals);
   const fitPart: NonNullable<RunglineResult["fit"]> = {
@@ -174,6 +187,7 @@ export function describeResult(
     ...full.domain.notes,
     ...findDoubts({ spectrum, protocol, points, peaks, assignment, full, fit: fitPart, lines, tail, series }),
     ...laws.notes,
+    ...constraintNotes(full, protocol),
     ...derivedParts.notes,
     ...systematicNotes(systematic),
     ...(drawn?.notes ?? []),
@@ -187,6 +201,9 @@ export function describeResult(
     notes,
     fit: fitPart,
     lines,
+    ...(fit.constrained === undefined || fit.constrained.extra.length === 0
+      ? {}
+      : { extra: describeExtra(fit, factor) }),
     series,
     systematic,
     width_law: laws.width,
@@ -227,7 +244,9 @@ interface DescribedLaws {
 
 /** Level, width and strength laws on the parameters of the lines. */
 function describeLaws(full: FullFit, protocol: Protocol, factor: number): DescribedLaws {
-  const { fit, range } = full;
+  const { range } = full;
+  // Lines that are tied to a law cannot judge it: those of the fit before do.
+  const fit = full.untied ?? full.fit;
   const levels = range?.fit.estimates.values;
   const select = (
     block: number,
@@ -275,7 +294,7 @@ function describeLaws(full: FullFit, protocol: Protocol, factor: number): Descri
       widths: widthInput,
       strengths: strengthInput,
     });
-    const input = levelInput(fit, protocol);
+    const input = levelInput(full.fit, protocol);
     // Tied levels come from the spectrum fit itself; their profile would need that fit again for every value.
     const profile =
       protocol.uncertainty.profile && protocol.series.mode === "free" && input !== null
@@ -288,10 +307,14 @@ function describeLaws(full: FullFit, protocol: Protocol, factor: number): Descri
   if (strengths.ok) notes.push(...strengths.value.notes);
   return {
     series,
-    width: widths.ok ? widthsToResult(widths.value, protocol.width.base, factor) : null,
-    strength: strengths.ok
-      ? strengthsToResult(strengths.value, protocol.strength.law, protocol.strength.base, factor)
-      : null,
+    width:
+      tiedWidthLaw(full.fit.constrained, protocol.width.base, factor) ??
+      (widths.ok ? widthsToResult(widths.value, protocol.width.base, factor) : null),
+    strength:
+      tiedStrengthLaw(full.fit.constrained, protocol.strength, factor) ??
+      (strengths.ok
+        ? strengthsToResult(strengths.value, protocol.strength.law, protocol.strength.base, factor)
+        : null),
     notes,
   };
 }

@@ -6,6 +6,7 @@ import { normalCdf } from "../solve/index.ts";
 import type { Assignment } from "./assign-n.ts";
 import { LEAST_SIGNIFICANCE } from "./climb-ladder.ts";
 import type { Peak } from "./find-peaks.ts";
+import { pointJitter } from "./axis-jitter.ts";
 import type { FullFit } from "./fit-full.ts";
 import { energyOf } from "./ladder-model.ts";
 import { findSatellites } from "./satellites.ts";
@@ -32,6 +33,7 @@ const ueV = (value: number): string => `${(1e6 * value).toPrecision(3)} ueV`;
 export function findDoubts(input: DoubtInput): Note[] {
   return [
     ...doubtsOfFit(input),
+    ...doubtsOfJitter(input),
     ...doubtsOfLines(input),
     ...doubtsOfTail(input),
     ...doubtsOfSampling(input),
@@ -85,7 +87,9 @@ function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
       ),
     );
   }
-  const held = full.fit.solution.activeBounds.filter((bound) => bound !== 0).length;
+  const held =
+    full.fit.solution.activeBounds.filter((bound) => bound !== 0).length +
+    (full.fit.constrained?.limited.length ?? 0);
   if (full.fit.solution.rank < fit.parameters - held) {
     notes.push(
       doubt(
@@ -124,6 +128,22 @@ function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
     );
   }
   return notes;
+}
+
+/** Significance of a jitter of the axis that is said: by chance once in 30,000 spectra, and small ones do no harm. */
+const LEAST_JITTER = 4;
+
+function doubtsOfJitter({ points, full }: DoubtInput): Note[] {
+  const found = pointJitter(points, full.fit.solution.fitted, full.fit.solution.residuals);
+  if (found === null || found.significance < LEAST_JITTER) return [];
+  return [
+    doubt(
+      "axis-jitter-seen",
+      "lines",
+      `Residuals are larger where the curve is steep, as if the axis jittered by about ${ueV(found.jitter_eV)} from point to point (${found.significance.toFixed(1)} standard errors): energies there are less certain than their errors say.`,
+      "read the energy with each point (wavemeter), or set axis.jitter_eV to what a line may be off",
+    ),
+  ];
 }
 
 function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: DoubtInput): Note[] {
@@ -194,7 +214,13 @@ function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: Dou
     const owner = ns.some(
       (_, j) => Math.abs(full.state.energy[j]! - peak.energy_eV) < 1.5 * full.state.width[j]!,
     );
-    if (owner) continue;
+    const explained = full.fit.constrained?.extra.some((series) =>
+      series.lines.some(
+        ({ energy, width }) =>
+          Math.abs(energy.value - peak.energy_eV) < 1.5 * Math.max(width.value, peak.width_eV),
+      ),
+    );
+    if (owner || explained === true) continue;
     notes.push(
       doubt(
         "line-unassigned",

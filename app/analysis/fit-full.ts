@@ -8,11 +8,11 @@ import {
   type SpectrumFit,
 } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
-import type { RangeChoice } from "../series/index.ts";
+import { fitStrengths, fitWidths, type RangeChoice } from "../series/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { leastSignificance, significances, type Climbed } from "./climb-ladder.ts";
 import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
-import { judgeLevels, withLevelRange } from "./level-range.ts";
+import { covarianceBlock, determinedPlaces, judgeLevels, withLevelRange } from "./level-range.ts";
 import { tiedRange } from "./tied-range.ts";
 
 /** What was fitted: the absorption, or the transmitted light itself (measured-domain.ts). */
@@ -32,6 +32,10 @@ export interface FullFit extends Climbed {
   readonly solveSeconds: number;
   /** Whether the laws of the tail and those of the lines came to agree. */
   readonly selfConsistent: boolean;
+  /** What tying widths or areas to their laws cost against the fit before, with every one free. */
+  readonly ties?: { readonly what: string; readonly chi2: number; readonly dof: number };
+  /** The fit before such ties, whose lines judge the laws. */
+  readonly untied?: SpectrumFit;
 }
 
 const MOST_PASSES = 6;
@@ -56,8 +60,73 @@ export function fitEveryPoint(
   fitPass: FitPass = (model) => fitSpectrum(points, model.spec, model.start, { watch }),
 ): FullFit {
   const free = fitFreeLevels(points, initial, protocol, unit, choices, watch, report, fitPass);
-  if (protocol.series.mode === "free" || free.range === null) return free;
-  return tieLevels(points, free, free.range, protocol, unit, choices, watch, fitPass);
+  const ties = tiedLines(free, protocol);
+  const how: ModelChoices = { ...choices, ...ties };
+  const tied =
+    Object.keys(ties).length === 0
+      ? free
+      : tieLines(free, fitFreeLevels(points, free.state, protocol, unit, how, watch, report, fitPass));
+  if (protocol.series.mode === "free" || tied.range === null) return tied;
+  return tieLevels(points, tied, tied.range, protocol, unit, how, watch, fitPass);
+}
+
+/** n that the laws of widths and strengths are found to describe, where the protocol ties these to them. */
+function tiedLines(
+  { fit, range }: FullFit,
+  protocol: Protocol,
+): Pick<ModelChoices, "tiedWidths" | "tiedAreas"> {
+  const levels = range?.fit.estimates.values;
+  const defects = { defect0: levels?.[2] ?? 0, defect2: levels?.[3] ?? 0 };
+  const chosen = (
+    block: 1 | 2,
+    values: Float64Array,
+  ): { n: number[]; values: Float64Array; covariance: Float64Array } => {
+    const places = determinedPlaces(fit, block);
+    return {
+      n: places.map((j) => fit.lines.ns[j]!),
+      values: Float64Array.from(places, (j) => values[j]!),
+      covariance: covarianceBlock(fit, block, places),
+    };
+  };
+  const ties: { tiedWidths?: readonly number[]; tiedAreas?: readonly number[] } = {};
+  if (protocol.width.mode === "tied") {
+    const { n, values, covariance } = chosen(1, fit.lines.width);
+    const { exponent, base, floor_kind } = protocol.width;
+    const law = fitWidths({
+      n,
+      width_eV: values,
+      covariance,
+      exponent,
+      base,
+      floorKind: floor_kind,
+      ...defects,
+    });
+    if (law.ok && law.value.n.length >= 2) ties.tiedWidths = law.value.n;
+  }
+  if (protocol.strength.mode === "tied") {
+    const { n, values, covariance } = chosen(2, fit.lines.area);
+    const { law: envelope, base } = protocol.strength;
+    const law = fitStrengths({ n, area: values, covariance, law: envelope, base, ...defects });
+    if (law.ok && law.value.n.length >= 2) ties.tiedAreas = law.value.n;
+  }
+  return ties;
+}
+
+function tieLines(free: FullFit, tied: FullFit): FullFit {
+  const parts = tied.fit.constrained;
+  const what = [
+    ...((parts?.widthLaw ?? null) === null ? [] : ["the widths to the width law"]),
+    ...((parts?.strengthLaw ?? null) === null ? [] : ["the areas to the strength law"]),
+  ];
+  return {
+    ...tied,
+    ties: {
+      what: what.join(" and "),
+      chi2: tied.fit.solution.chi2 - free.fit.solution.chi2,
+      dof: tied.fit.solution.degreesOfFreedom - free.fit.solution.degreesOfFreedom,
+    },
+    untied: free.fit,
+  };
 }
 
 /** Energies of all lines free, whatever the protocol says: what decides over the range of n. */

@@ -1,10 +1,12 @@
 import {
   backgroundColumns,
+  isConstrained,
   levelLink,
   strengthShare,
   widthLink,
   type FitPoints,
   type FitStart,
+  type LawLinks,
   type LevelValues,
   type LinkData,
   type ModelSpec,
@@ -15,6 +17,7 @@ import {
 import { levelEnergy, levelSpacing, WIDTH, widthLaw } from "../laws/index.ts";
 import type { BackgroundTerm, Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
+import { constraintSpec, lineRules, speaking, tiedEnergies } from "./constraints.ts";
 import { slitOf } from "./instrument.ts";
 
 /**
@@ -41,6 +44,9 @@ export interface ModelChoices {
   readonly tail: boolean;
   readonly continuumOdd: boolean;
   readonly asymmetry: Protocol["lines"]["asymmetry"];
+  /** n whose widths (areas) are the law itself; absent: none. */
+  readonly tiedWidths?: readonly number[];
+  readonly tiedAreas?: readonly number[];
 }
 
 /** Widths of this many spacings make neighbouring lines one smooth band (ripple 2 exp(-3 pi), 2e-4 of its height). */
@@ -55,16 +61,23 @@ export function buildModel(
   unit: Spectrum["unit"],
   choices: ModelChoices,
 ): { spec: ModelSpec; state: LadderState; start: FitStart } {
-  const defectCount = freeDefects(protocol, state.include.filter(Boolean).length);
+  const rules = lineRules(state, protocol, choices);
+  const speakers = speaking(state.include, rules.energy, false, 2);
+  const defectCount = freeDefects(protocol, speakers.filter(Boolean).length);
   const energies: LinkData = {
     ns: state.ns,
     value: state.energy,
     sigma: state.energySigma,
-    include: state.include,
+    include: speakers,
   };
   const levels = sensibleLevels(levelLink(energies, state.levels, 2 + defectCount), state);
   const widths = widthLink(
-    { ns: state.ns, value: state.width, sigma: state.widthSigma, include: state.include },
+    {
+      ns: state.ns,
+      value: state.width,
+      sigma: state.widthSigma,
+      include: speaking(state.include, rules.width, choices.tiedWidths !== undefined, 2),
+    },
     {
       ...state.widths,
       base: protocol.width.base,
@@ -74,6 +87,28 @@ export function buildModel(
     levels.values.defect0,
   );
   const updated: LadderState = { ...state, levels: levels.values, widths: widths.values };
+  const links: LawLinks = {
+    levels: levels.values,
+    levelLink: levels.link,
+    widths: widths.values,
+    widthLink: widths.link,
+    strengthShare: strengthShare(
+      {
+        ns: state.ns,
+        value: state.areaSigma,
+        sigma: state.areaSigma,
+        include: speaking(state.include, rules.area, choices.tiedAreas !== undefined, 1),
+      },
+      { law: protocol.strength.law, base: protocol.strength.base },
+      levels.values.defect0,
+    ),
+    strength: { law: protocol.strength.law, base: protocol.strength.base },
+  };
+  const last = points.energy.length - 1;
+  const { constraints, asymmetry } = constraintSpec(updated, protocol, choices, rules, links, [
+    points.energy[0]!,
+    points.energy[last]!,
+  ]);
   const slit = slitOf(protocol);
   const tied = protocol.series.mode === "tied";
   const spec: ModelSpec = {
@@ -81,12 +116,13 @@ export function buildModel(
     gaussStd: slit.stdAt(levels.values.gap),
     ...(slit.grows ? { lineStds: Float64Array.from(state.energy, (e) => slit.stdAt(e)) } : {}),
     instrumentLorentz: protocol.lines.instrument_lorentz_fwhm_eV,
-    asymmetry: choices.asymmetry,
+    asymmetry,
     tiedLevels: tied
-      ? { values: levels.values, count: 2 + defectCount, tiedNs: state.ns.filter((_, j) => state.include[j]) }
+      ? { values: levels.values, count: 2 + defectCount, tiedNs: tiedEnergies(state, protocol) }
       : null,
-    tail: choices.tail ? describeTail(points, updated, protocol, levels.link, widths.link, choices) : null,
+    tail: choices.tail ? describeTail(points, updated, protocol, links, choices) : null,
     background: backgroundColumns(choices.background, points.energy, unit, levels.values.gap),
+    ...(isConstrained(constraints) ? { constraints } : {}),
   };
   // A line that leaves its own place has become another line or part of the background.
   const reach = new Map(
@@ -138,12 +174,10 @@ function describeTail(
   points: FitPoints,
   state: LadderState,
   protocol: Protocol,
-  levels: TailSpec["levelLink"],
-  widths: TailSpec["widthLink"],
+  links: LawLinks,
   choices: ModelChoices,
 ): TailSpec {
   const fromN = state.ns[state.ns.length - 1]! + 1;
-  const strength = { law: protocol.strength.law, base: protocol.strength.base };
   return {
     fromN,
     toN:
@@ -153,15 +187,11 @@ function describeTail(
     band: protocol.tail.cutoff_n === null,
     below: linesBelow(points, state, protocol),
     levels: state.levels,
-    levelLink: levels,
+    levelLink: links.levelLink,
     widths: state.widths,
-    widthLink: widths,
-    strengthShare: strengthShare(
-      { ns: state.ns, value: state.areaSigma, sigma: state.areaSigma, include: state.include },
-      strength,
-      state.levels.defect0,
-    ),
-    strength,
+    widthLink: links.widthLink,
+    strengthShare: links.strengthShare,
+    strength: links.strength,
     envelope:
       protocol.material.dimension < 2.5
         ? "allowed-2d"

@@ -17,12 +17,16 @@ export function covarianceBlock(fit: SpectrumFit, block: number, places: readonl
   return out;
 }
 
-/** Lines whose parameter in this block was free and determined. */
+const BLOCKS = ["energy", "width", "area", "asymmetry"] as const;
+
+/** Lines whose parameter in this block was free and determined, not held or following from others. */
 export function determinedPlaces(fit: SpectrumFit, block: number): number[] {
   const k = fit.lines.ns.length;
+  const tied = fit.constrained?.tied[BLOCKS[block]!] ?? [];
   return fit.lines.ns
     .map((_, j) => j)
     .filter((j) => {
+      if (tied.includes(fit.lines.ns[j]!)) return false;
       const i = block * k + j;
       const variance = fit.lines.covariance[i * 4 * k + i]!;
       return variance > 0 && Number.isFinite(variance) && !fit.atBound.includes(fit.lines.ns[j]!);

@@ -6,6 +6,7 @@ import { informationCriteria, runsTest } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { areaSystematic } from "./area-systematic.ts";
 import { buildModel, energyOf, type LadderState, type ModelChoices } from "./ladder-model.ts";
+import { parameterCount } from "./describe-constraints.ts";
 import { covarianceBlock, determinedPlaces } from "./level-range.ts";
 
 type Systematic = NonNullable<RunglineResult["systematic"]>;
@@ -198,7 +199,7 @@ function runTrial(
     defect: reference.defect,
     heldDefect: reference.estimates.values[2],
   });
-  const parameters = fit.problem.nonlinear + fit.problem.linear;
+  const parameters = parameterCount(fit);
   const values = levels.ok ? levels.value.estimates.values : null;
   return {
     name: trial.name,

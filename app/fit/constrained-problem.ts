@@ -181,7 +181,7 @@ export class ConstrainedProblem implements SeparableProblem {
     this.areaAt = new Int32Array(k).fill(-1);
     rules.area.forEach((rule, j) => {
       if (rule.kind === "bounded")
-        this.areaAt[j] = add((rule.low + rule.high) / 2, rule.low, rule.high, {
+        this.areaAt[j] = add(0, rule.low, rule.high, {
           n: ns[j]!,
           parameter: "area",
         });
@@ -223,6 +223,15 @@ export class ConstrainedProblem implements SeparableProblem {
 
   start(): Float64Array {
     return Float64Array.from(this.own, (one) => one.start);
+  }
+
+  /** The start with bounded areas at these (wide coefficients), as near as their bounds allow. */
+  startWith(wide: Float64Array): Float64Array {
+    const u = this.start();
+    this.areaAt.forEach((at, j) => {
+      if (at >= 0) u[at] = Math.min(this.own[at]!.high, Math.max(this.own[at]!.low, wide[j]!));
+    });
+    return u;
   }
 
   /** Wide theta at u. */

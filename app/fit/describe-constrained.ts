@@ -1,6 +1,6 @@
 import type { SeparableSolution } from "../solve/index.ts";
 import type { ConstrainedProblem } from "./constrained-problem.ts";
-import type { LineParameterName, Rule } from "./constraint-spec.ts";
+import type { LineParameterName, LineRules, Rule } from "./constraint-spec.ts";
 
 export interface FittedValue {
   readonly value: number;
@@ -45,6 +45,23 @@ export interface ConstrainedParts {
   /** q = q0 + q1/n^2. */
   readonly asymmetryLaw: { readonly limit: FittedValue; readonly slope: FittedValue } | null;
   readonly extra: readonly ExtraFit[];
+}
+
+function derivedFrom(
+  law: ConstrainedParts["tied"],
+  ns: readonly number[],
+  rules: LineRules,
+): ConstrainedParts["tied"] {
+  // Of a group that shares a value the first stands for all.
+  const later = (list: readonly Rule[]): number[] =>
+    ns.filter((_, j) => {
+      const rule = list[j]!;
+      if (rule.kind !== "shared") return false;
+      return list.findIndex((other) => other.kind === "shared" && other.group === rule.group) < j;
+    });
+  const join = (name: LineParameterName): number[] =>
+    [...law[name], ...later(rules[name])].sort((a, b) => a - b);
+  return { energy: join("energy"), width: join("width"), area: join("area"), asymmetry: join("asymmetry") };
 }
 
 /**
@@ -109,7 +126,7 @@ export function expandSolution(
   const parts: ConstrainedParts = {
     parameters: size,
     held: which("held"),
-    tied: which("law"),
+    tied: derivedFrom(which("law"), ns, spec.rules),
     limited: problem.own.flatMap((one, at): LimitedParameter[] => {
       const side = solution.activeBounds[at]!;
       if (one.user === null || side === 0) return [];

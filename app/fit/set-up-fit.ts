@@ -1,4 +1,4 @@
-import type { SeparableProblem, SeparableSolution } from "../solve/index.ts";
+import { linearLeastSquares, type SeparableProblem, type SeparableSolution } from "../solve/index.ts";
 import { ConstrainedProblem } from "./constrained-problem.ts";
 import { isConstrained } from "./constraint-spec.ts";
 import { expandSolution } from "./describe-constrained.ts";
@@ -12,6 +12,8 @@ export interface FitSetUp {
   /** The plain model behind it. */
   readonly inner: SpectrumProblem;
   readonly start: Float64Array;
+  /** The start where the plain coefficients are known. */
+  startWith(coefficients: Float64Array): Float64Array;
   readonly lower: Float64Array;
   readonly upper: Float64Array;
   /** Plain parameters (theta) at the problem's own. */
@@ -32,6 +34,7 @@ export function setUpFit(points: FitPoints, spec: ModelSpec, start: FitStart): F
       problem: inner,
       inner,
       start: theta,
+      startWith: () => theta,
       ...bounds,
       thetaOf: (own) => own,
       reduce: (coefficients) => coefficients,
@@ -42,7 +45,10 @@ export function setUpFit(points: FitPoints, spec: ModelSpec, start: FitStart): F
   return {
     problem,
     inner,
-    start: problem.start(),
+    start: spec.constraints.rules.area.some((rule) => rule.kind === "bounded")
+      ? problem.startWith(plainCoefficients(inner, theta))
+      : problem.start(),
+    startWith: (coefficients) => problem.startWith(coefficients),
     ...problem.narrowed(bounds.lower, bounds.upper),
     thetaOf: (own) => problem.thetaOf(own).slice(0, inner.nonlinear),
     reduce: (coefficients) => problem.reduce(coefficients),
@@ -51,4 +57,12 @@ export function setUpFit(points: FitPoints, spec: ModelSpec, start: FitStart): F
       return { ...describeFit(inner, wide), constrained: parts };
     },
   };
+}
+
+/** The linear coefficients of the plain model at its start. */
+function plainCoefficients(problem: SpectrumProblem, theta: Float64Array): Float64Array {
+  const columns = new Float64Array(problem.rows * problem.linear);
+  problem.columns(theta, columns);
+  return linearLeastSquares(columns, problem.rows, problem.linear, problem.data, problem.weights)
+    .coefficients;
 }

@@ -80,8 +80,9 @@ export function fitTransmittance(
   lower.set(outer.lower);
   upper.set(outer.upper);
   const first = new Float64Array(problem.parameters);
-  first.set(outer.start);
-  first.set(outer.reduce(startCoefficients(outer.inner, from)), p);
+  const coefficients = startCoefficients(outer.inner, from);
+  first.set(outer.startWith(coefficients));
+  first.set(outer.reduce(coefficients), p);
   const { fringes, stray } = light;
   if (problem.fringesAt >= 0) {
     const { visibility, period, phase } = fringes!.start;

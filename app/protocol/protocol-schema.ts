@@ -25,6 +25,50 @@ export const backgroundTermSchema = z.discriminatedUnion("term", [
 ]);
 
 /**
+ * What one parameter of some lines may do: held at a value, kept within bounds, tied to its law, shared by these lines, or
+ * freed from a tie of all lines. Energies and widths in eV, areas in eV times the unit of the signal.
+ */
+export const lineConstraintSchema = z
+  .strictObject({
+    n: z.union([z.int().min(1).max(99), z.array(z.int().min(1).max(99)).min(1)]),
+    parameter: z.enum(["energy", "width", "area", "asymmetry"]),
+    hold: z.number().optional(),
+    low: z.number().optional(),
+    high: z.number().optional(),
+    tie: z.enum(["law", "shared", "free"]).optional(),
+  })
+  .refine(
+    ({ hold, low, high, tie }) =>
+      [hold !== undefined, low !== undefined || high !== undefined, tie !== undefined].filter(Boolean)
+        .length === 1,
+    "one of hold, low/high, tie",
+  )
+  .refine(({ low, high }) => !((low ?? -Infinity) >= (high ?? Infinity)), "low end above high end")
+  .refine(
+    ({ parameter, tie }) => parameter !== "energy" || tie !== "shared",
+    "energies of different n cannot be shared; tie them to the law",
+  )
+  .refine(
+    ({ parameter, hold, low }) => parameter !== "width" || ((hold ?? 1) > 0 && (low ?? 0) >= 0),
+    "widths are above zero",
+  )
+  .refine(
+    ({ parameter, tie }) => parameter !== "asymmetry" || tie !== "law",
+    "the law of the asymmetries is one of all lines: lines.asymmetry=law",
+  );
+
+/** Lines of another series that shares gap and Rydberg energy: energy gap - Ry/(n - defect)^2. */
+export const extraSeriesSchema = z.strictObject({
+  name: z.string().min(1),
+  /** Where its quantum defect starts, or is held. */
+  defect: z.number().min(-3).max(3),
+  n: z.array(z.int().min(1).max(99)).min(1),
+  hold_defect: z.boolean().default(false),
+  /** `law`: widths by the width law of the main series; `free`: one of its own for every line. */
+  width: z.enum(["law", "free"]).default("law"),
+});
+
+/**
  * Every choice that turns a file into a result. Energies in eV, thickness in um. `null` means "not said": the
  * reading or the analysis decides, and the result says what it decided in a note.
  */
@@ -105,7 +149,10 @@ export const protocolSchema = z.strictObject({
       slit_fwhm_cm1: positive.nullable().default(null),
       /** Full width of a Lorentzian instrument (a laser line): line widths are given without it. */
       instrument_lorentz_fwhm_eV: z.number().min(0).default(0),
-      asymmetry: z.enum(["shared", "free", "zero"]),
+      /** `law`: q = q0 + q1/n^2. */
+      asymmetry: z.enum(["shared", "free", "zero", "law"]),
+      /** Line by line; later ones win. */
+      constraints: z.array(lineConstraintSchema).default([]),
       domain: z.enum(["auto", "alpha", "transmittance"]),
     })
     .refine(
@@ -123,13 +170,19 @@ export const protocolSchema = z.strictObject({
     defect: z.enum(["none", "constant", "ritz"]),
     mode: z.enum(["free", "tied"]),
     fit_n: z.union([z.literal("auto"), z.tuple([z.int().min(1), z.int().min(1)])]),
+    /** Other series with the same gap and Rydberg energy (F beside P, S and D with field or strain). */
+    extra: z.array(extraSeriesSchema).default([]),
   }),
   width: z.strictObject({
+    /** `tied`: the widths are the law itself wherever it describes them; see lines.constraints for single lines. */
+    mode: z.enum(["free", "tied"]).default("free"),
     exponent: z.union([z.number().min(0).max(8), z.literal("free")]),
     base: z.enum(["n", "n-delta", "p-envelope"]),
     floor_kind: z.enum(["lorentzian", "gaussian", "none"]),
   }),
   strength: z.strictObject({
+    /** `tied`: the areas are the law itself wherever it describes them. */
+    mode: z.enum(["free", "tied"]).default("free"),
     law: z.enum(["cubic", "p-envelope", "sheet"]),
     base: z.enum(["n", "n-delta"]),
   }),

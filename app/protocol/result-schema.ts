@@ -167,6 +167,24 @@ export const resultSchema = z.strictObject({
     })
     .nullable(),
   lines: z.array(lineSchema),
+  /** Lines of other series (series.extra of the protocol). */
+  extra: z
+    .array(
+      z.strictObject({
+        name: z.string(),
+        defect: quantitySchema,
+        lines: z.array(
+          z.strictObject({
+            n: z.int(),
+            energy_eV: quantitySchema,
+            width_eV: quantitySchema,
+            area: quantitySchema,
+            significance: z.number(),
+          }),
+        ),
+      }),
+    )
+    .optional(),
   series: z
     .strictObject({
       gap_eV: quantitySchema,

@@ -19,9 +19,12 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
   said.push(surfaceInWords(signal.surface));
   said.push(lines.n === "auto" ? `lines found, n up to ${lines.max_n}` : `lines n = ${lines.n.join(", ")}`);
   said.push(
-    { shared: "one asymmetry for all lines", free: "asymmetry free per line", zero: "symmetric lines" }[
-      lines.asymmetry
-    ],
+    {
+      shared: "one asymmetry for all lines",
+      free: "asymmetry free per line",
+      zero: "symmetric lines",
+      law: "asymmetry q0 + q1/n^2",
+    }[lines.asymmetry],
   );
   if (lines.slit_fwhm_eV !== null) said.push(`instrument ${lines.slit_fwhm_eV} eV full width`);
   if (lines.slit_fwhm_nm !== null) said.push(`instrument ${lines.slit_fwhm_nm} nm full width`);
@@ -44,7 +47,15 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
       width.floor_kind === "none" ? "no floor" : `${width.floor_kind} floor`
     }`,
   );
-  said.push(`strengths ${strength.law} on ${strength.base}`);
+  if (width.mode === "tied") said.push("widths tied to their law");
+  said.push(
+    `strengths ${strength.law} on ${strength.base}${strength.mode === "tied" ? ", areas tied to them" : ""}`,
+  );
+  for (const one of lines.constraints) said.push(constraintInWords(one));
+  for (const one of series.extra)
+    said.push(
+      `extra series ${one.name}, n = ${one.n.join(", ")}, defect ${one.hold_defect ? "held at" : "from"} ${one.defect}`,
+    );
   said.push(
     uncertainty.scale_by_residuals
       ? "standard errors scaled by the residuals"
@@ -52,6 +63,15 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
   );
   said.push(`intervals at ${percent(uncertainty.level)}`);
   return said;
+}
+
+function constraintInWords(one: Protocol["lines"]["constraints"][number]): string {
+  const what = `${one.parameter} of n = ${typeof one.n === "number" ? one.n : one.n.join(", ")}`;
+  if (one.hold !== undefined) return `${what} held at ${one.hold}`;
+  if (one.tie === "law") return `${what} tied to the law`;
+  if (one.tie === "shared") return `${what} shared`;
+  if (one.tie === "free") return `${what} free`;
+  return `${what} within ${one.low ?? "no bound"} and ${one.high ?? "no bound"}`;
 }
 
 export function percent(level: number): string {

@@ -221,7 +221,7 @@ describe("derivatives of the constrained model agree with differences for", () =
     const inner = new SpectrumProblem(points, spec);
     const theta = inner.startFrom(start.lines, start.asymmetry, 1);
     const problem = new ConstrainedProblem(points, inner, spec.constraints!, theta);
-    const u = problem.start();
+    const u = problem.startWith(Float64Array.from({ length: inner.linear }, () => 9e-5));
     const random = makeRandom(8);
     const c = Float64Array.from({ length: problem.linear }, () => 1e-4 * (1 + random.uniform()));
     const m = problem.rows;
@@ -253,4 +253,34 @@ describe("derivatives of the constrained model agree with differences for", () =
       expect(worst, `parameter ${p}`).toBeLessThan(1e-6);
     }
   });
+});
+
+test("a held parameter has neither variance nor covariance, exactly, in every block", () => {
+  const points = makePoints({ q: (n) => (n === 5 ? 0.1 : -0.15) }, 0.02, 3);
+  const { spec, start } = makeModel(points, {
+    asymmetry: "each",
+    rules: {
+      energy: { 3: { kind: "held", value: energyOf(3) } },
+      width: { 4: { kind: "held", value: widthOf(4) } },
+      area: { 6: { kind: "held", value: areaOf(6) } },
+      asymmetry: { 5: { kind: "held", value: 0.1 } },
+    },
+  });
+  const { lines, solution } = fitSpectrum(points, spec, start);
+  expect(solution.converged).toBe(true);
+  const k = NS.length;
+  const size = 4 * k;
+  for (const i of [0 * k + 1, 1 * k + 2, 2 * k + 4, 3 * k + 3])
+    for (let j = 0; j < size; j++) {
+      // Derived: what is held is a constant; the asymmetry is (q A)/A, exact to rounding.
+      expect(Math.abs(lines.covariance[i * size + j]!)).toBeLessThan(i < 3 * k ? Number.MIN_VALUE : 1e-12);
+    }
+  for (let j = 0; j < size; j++) {
+    const value = [lines.energy, lines.width, lines.area, lines.asymmetry][Math.floor(j / k)]![j % k]!;
+    const n = NS[j % k]!;
+    const truth = [energyOf(n), widthOf(n), areaOf(n), n === 5 ? 0.1 : -0.15][Math.floor(j / k)]!;
+    const sigma = Math.sqrt(lines.covariance[j * size + j]!);
+    // Derived: 4.5 standard errors for each of 20 free numbers.
+    expect(Math.abs(value - truth)).toBeLessThan(4.5 * sigma + 1e-12);
+  }
 });

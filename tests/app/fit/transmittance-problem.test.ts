@@ -112,7 +112,7 @@ function build({ light, spec }: Case): { problem: TransmittanceProblem; paramete
     0.3 * perSignal,
     0.05 * perSignal,
     -0.02 * perSignal,
-    ...(measured.fringes == null ? [] : Object.values(measured.fringes.start)),
+    ...((measured.fringes ?? null) === null ? [] : Object.values(measured.fringes!.start)),
     ...(measured.stray?.free === true ? [measured.stray.value] : []),
   ]);
   return { problem: new TransmittanceProblem(measured, inner, grid), parameters };
