@@ -1,6 +1,6 @@
 import { NO_WATCH, type Watch } from "../base/index.ts";
 import { LEVEL, levelLaw } from "../laws/index.ts";
-import { solveSeparable, type SeparableSolution } from "../solve/index.ts";
+import { solveSeparable, type SeparableSolution, type SolveOptions } from "../solve/index.ts";
 import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
 import { ASYMMETRY_BOUND, FACTOR_BOUND, WIDTH_BOUND_FACTOR } from "./bounds.ts";
 import type { ConstrainedParts, ExtraFit, FittedValue } from "./describe-constrained.ts";
@@ -53,6 +53,8 @@ export interface FitControl {
   readonly maxIterations?: number;
   readonly gradientTolerance?: number;
   readonly costTolerance?: number;
+  /** `condensed` for fits that only prepare others: fitted values and residuals then run with few rows. Default `exact`. */
+  readonly answer?: SolveOptions["answer"];
   readonly watch?: Watch;
 }
 
@@ -73,6 +75,7 @@ export function fitSpectrum(
     maxIterations: control.maxIterations ?? 100,
     gradientTolerance: control.gradientTolerance ?? 1e-7,
     costTolerance: control.costTolerance ?? 1e-11,
+    answer: control.answer,
     // Whoever asks for the fit reports where the whole job is; the solver only hears whether to stop.
     watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
   });
