@@ -13,7 +13,6 @@ import {
 } from "../analysis/index.ts";
 import {
   fitJointly,
-  fitSpectrum,
   strengthShare,
   type FitPoints,
   type JointChoices,
@@ -55,6 +54,8 @@ const UNBLEACHED = 0.85;
 /** Width laws that agree to this part have settled. */
 const SETTLED = 1e-3;
 const FEWEST_LINES = 3;
+/** From one power to the next a width changes by this factor at most: a line that swallows its neighbours is none. */
+const WIDTH_CHANGE = 1.8;
 
 /** State and points of one spectrum on its way. */
 interface Work {
@@ -66,6 +67,8 @@ interface Work {
   area: Float64Array;
   /** Areas of the reference, by n. */
   readonly reference: ReadonlyMap<number, number>;
+  /** By n, from the width at the power before. */
+  readonly widthRange: ReadonlyMap<number, readonly [number, number]>;
   held: readonly number[];
 }
 
@@ -186,6 +189,9 @@ function prepare(
     state,
     area,
     reference,
+    widthRange: new Map(
+      state.ns.map((n, j) => [n, [state.width[j]! / WIDTH_CHANGE, state.width[j]! * WIDTH_CHANGE]]),
+    ),
     held: [],
   };
 }
@@ -199,13 +205,20 @@ function warmUp(
   watch: Watch,
 ): void {
   const model = withBleachedTail(buildModel(work.thin, work.state, protocol, unit, choices), work);
-  const tied = { ...model.spec.tiedLevels!, count: 0 };
-  const fit = fitSpectrum(work.thin, { ...model.spec, tiedLevels: tied }, model.start, {
-    watch,
-    maxIterations: 30,
-    gradientTolerance: 1e-4,
-    costTolerance: 1e-6,
-  });
+  const { fits } = fitJointly(
+    [
+      {
+        points: work.thin,
+        // No law parameters: the lines stand where the reference has them.
+        spec: { ...model.spec, tiedLevels: { ...model.spec.tiedLevels!, count: 0 } },
+        start: model.start,
+        widthRange: work.widthRange,
+      },
+    ],
+    { gap: true, rydberg: true, defect: true, asymmetry: true },
+    { watch, maxIterations: 30, gradientTolerance: 1e-4, costTolerance: 1e-6, answer: "condensed" },
+  );
+  const fit = fits[0]!;
   stopIfCancelled(watch);
   adopt(work, fit, model.state);
 }
@@ -272,6 +285,13 @@ function runJoint(works: readonly Work[], settings: Settings, report: (pass: num
       costTolerance: 1e-9,
       answer: "condensed",
     });
+    console.log(
+      "joint",
+      fit.solution.iterations,
+      fit.solution.evaluations,
+      fit.solution.termination,
+      fit.fits.map((f) => f.solution.residuals.length).join(),
+    );
     stopIfCancelled(watch);
     settled = true;
     works.forEach((work, a) => {
@@ -380,6 +400,7 @@ function membersOf(works: readonly Work[], models: readonly Model[]): JointMembe
       spec: { ...spec, tiedLevels: { ...spec.tiedLevels!, values, count } },
       start: { ...start, reach },
       heldWidths: work.held,
+      widthRange: new Map([...work.widthRange].filter(([n]) => !work.held.includes(n))),
     };
   });
 }

@@ -86,7 +86,9 @@ export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<P
       ? symmetric(joint.saturation[at]!, sigmaOf(k + at), factor)
       : fromAlone(area, 1, factor);
     const sweep =
-      beam.excitation === "scanned-probe" && area !== null ? Math.max(0, saturation.value ?? 0) : 0;
+      beam.excitation === "scanned-probe" && area !== null
+        ? { value: area.saturation, sigma: area.sigma, form: saturationForm(table, line, area) }
+        : null;
     return {
       n,
       area,
@@ -204,6 +206,14 @@ function readingOf(
   }
   const seen = saturation.value > SEEN * sigma || tests.bleaching.gain > SURELY;
   return saturation.value > 0 && seen ? "bleaches" : "not-seen";
+}
+
+/** S of one line's areas as a form of the table. */
+function saturationForm(table: LineTable, line: number, one: Saturation): LinearForm {
+  return {
+    places: one.series.spectra.map((j) => placeOf(table, LINE_QUANTITIES.area, j, line)),
+    weights: one.fit.gain.slice(one.series.spectra.length),
+  };
 }
 
 /** Area against peak, both turned into the S that enters the volume, in standard errors of the difference. */

@@ -35,7 +35,47 @@ export function broadeningAt(one: Broadening, power: number): number {
  * What      G(P) = G_0 b(P) sqrt(1 + 2 S_A P): b by the better of two laws of broadening with one parameter, the root
  *           only where the swept laser bleaches the line it reads (S_A then is the bleaching of the area, else 0).
  */
-export function fitBroadening(table: LineTable, line: number, sweep: number): Broadening | null {
+export function fitBroadening(table: LineTable, line: number, swept: Sweep | null): Broadening | null {
+  const sweep = swept === null ? 0 : Math.max(0, swept.value);
+  const one = broadeningWith(table, line, sweep);
+  if (one === null || swept === null || one.growth === null) return one;
+  // S itself is uncertain, and what is left as broadening moves against it.
+  const step = swept.sigma;
+  const moved = broadeningWith(table, line, sweep + step, one.model);
+  if (moved === null || moved.growth === null || !(step > 0)) return one;
+  const growthBySweep = (moved.growth.value - one.growth.value) / step;
+  const zeroBySweep = (moved.zero - one.zero) / step;
+  const growthForm = addForms([
+    { form: one.growth.form, factor: 1 },
+    { form: swept.form, factor: growthBySweep },
+  ]);
+  return {
+    ...one,
+    zeroForm: addForms([
+      { form: one.zeroForm, factor: 1 },
+      { form: swept.form, factor: zeroBySweep },
+    ]),
+    growth: {
+      value: one.growth.value,
+      sigma: Math.sqrt(Math.max(0, formCovariance(table, growthForm, growthForm))),
+      form: growthForm,
+    },
+  };
+}
+
+/** Bleaching of the area by the sweep itself, with its standard error and form. */
+export interface Sweep {
+  readonly value: number;
+  readonly sigma: number;
+  readonly form: LinearForm;
+}
+
+function broadeningWith(
+  table: LineTable,
+  line: number,
+  sweep: number,
+  only?: "root" | "linear",
+): Broadening | null {
   const series = seriesOf(table, LINE_QUANTITIES.width, line);
   if (series.values.length === 0) return null;
   const places = series.spectra.map((j) => placeOf(table, LINE_QUANTITIES.width, j, line));
@@ -54,8 +94,8 @@ export function fitBroadening(table: LineTable, line: number, sweep: number): Br
   const spread = Math.max(...series.values) - Math.min(...series.values);
   const shared = spread <= 1e-9 * Math.abs(series.values[0]!);
   if (shared || distinct(series.power) < 2) return alone();
-  const root = fitOne(series, sweep, "root");
-  const linear = fitOne(series, sweep, "linear");
+  const root = only === "linear" ? null : fitOne(series, sweep, "root");
+  const linear = only === "root" ? null : fitOne(series, sweep, "linear");
   const model = root === null || (linear !== null && linear.chi2 < root.chi2 - 4) ? "linear" : "root";
   const fit = model === "root" ? root : linear;
   if (fit === null || !(fit.values[0]! > 0)) return alone();
