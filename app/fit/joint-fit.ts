@@ -18,6 +18,8 @@ export interface JointMember {
   readonly start: FitStart;
   /** Lines whose width is held at its start: too weak here to have one of their own. */
   readonly heldWidths?: readonly number[] | undefined;
+  /** Intervals that widths may move in, by n; closer than those of a fit on its own. */
+  readonly widthRange?: ReadonlyMap<number, readonly [number, number]> | undefined;
 }
 
 /** Which parameters of the level law, and whether the asymmetry, every spectrum has for itself. */
@@ -52,7 +54,7 @@ export interface JointFit {
 export function fitJointly(
   members: readonly JointMember[],
   free: JointChoices,
-  control: FitControl = {},
+  control: FitControl & { readonly answer?: "exact" | "condensed" } = {},
 ): JointFit {
   const first = members[0];
   if (first === undefined) throw new Error("a joint fit needs a spectrum");
@@ -74,7 +76,14 @@ export function fitJointly(
     problems[a]!.startFrom(start.lines, start.asymmetry, start.factor),
   );
   const bounds = members.map(({ start }, a) => parameterBounds(problems[a]!, start, starts[a]!));
-  members.forEach(({ heldWidths, spec }, a) => {
+  members.forEach(({ heldWidths, widthRange, spec }, a) => {
+    spec.ns.forEach((n, j) => {
+      const range = widthRange?.get(n);
+      if (range === undefined) return;
+      const at = problems[a]!.layout.widthAt[j]!;
+      [bounds[a]!.lower[at], bounds[a]!.upper[at]] = range;
+      starts[a]![at] = Math.min(range[1], Math.max(range[0], starts[a]![at]!));
+    });
     for (const n of heldWidths ?? []) {
       const at = problems[a]!.layout.widthAt[spec.ns.indexOf(n)];
       if (at === undefined) throw new Error(`no line n = ${n} in this spectrum`);
@@ -107,6 +116,7 @@ export function fitJointly(
       maxIterations: control.maxIterations ?? 100,
       gradientTolerance: control.gradientTolerance ?? 1e-7,
       costTolerance: control.costTolerance ?? 1e-11,
+      answer: control.answer,
       // Whoever asks for the fit reports where the whole job is; the solver only hears whether to stop.
       watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
     },

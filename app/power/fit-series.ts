@@ -48,12 +48,14 @@ export interface FittedSeries {
 /** Below this many standard errors of its area a line has no width of its own. */
 const WEAK = 3;
 /** Passes of the joint fit before the last: the tail's laws follow the lines of the pass before. */
-const MOST_PASSES = 5;
+const MOST_PASSES = 3;
 /** A line with less than this part of its strength counts as bleached. */
 const UNBLEACHED = 0.85;
 /** Width laws that agree to this part have settled. */
-const SETTLED = 1e-3;
+const SETTLED = 3e-3;
 const FEWEST_LINES = 3;
+/** Fall of chi square that one more assumption has to bring. */
+const CLEARLY = 10;
 /** From one power to the next a width changes by this factor at most: a line that swallows its neighbours is none. */
 const WIDTH_CHANGE = 1.8;
 
@@ -69,6 +71,8 @@ interface Work {
   readonly reference: ReadonlyMap<number, number>;
   /** By n, from the width at the power before. */
   readonly widthRange: ReadonlyMap<number, readonly [number, number]>;
+  /** Whether the tail of tied lines bleaches on as n^10 or is all of one factor. */
+  rolls: boolean;
   held: readonly number[];
 }
 
@@ -97,6 +101,7 @@ export function fitPowerSeries(
   };
   const unit = series[0]!.spectrum.unit;
   const free: JointChoices = protocol.power.free;
+  const settings: Settings = { protocol: tied, unit, choices, free, watch };
   const failed: { label: string; issues: readonly PowerIssue[] }[] = [];
   const notes: Note[] = [];
   const works: Work[] = [];
@@ -114,7 +119,7 @@ export function fitPowerSeries(
       });
       continue;
     }
-    warmUp(work, tied, unit, choices, watch);
+    warmUp(work, settings);
     // What the next power starts from; lines outside this spectrum keep what they had.
     before = mergeStates(before, work.state);
     work.state.ns.forEach((n, j) => areas.set(n, work.area[j]!));
@@ -122,9 +127,8 @@ export function fitPowerSeries(
   }
   if (works.length === 0) return null;
 
-  const settings = { protocol: tied, unit, choices, free, watch };
   const fit = runJoint(works, settings, (pass) =>
-    watch.report(0.3 + 0.08 * pass, `fitting ${works.length} spectra together, pass ${pass + 1}`),
+    watch.report(0.3 + 0.12 * pass, `fitting ${works.length} spectra together, pass ${pass + 1}`),
   );
   const gaps = gapTest(works, settings, fit, notes);
   if (!fit.solution.converged)
@@ -192,35 +196,45 @@ function prepare(
     widthRange: new Map(
       state.ns.map((n, j) => [n, [state.width[j]! / WIDTH_CHANGE, state.width[j]! * WIDTH_CHANGE]]),
     ),
+    rolls: false,
     held: [],
   };
 }
 
-/** Widths, areas and tail of this power with the level law held where the reference has it. */
-function warmUp(
-  work: Work,
-  protocol: Protocol,
-  unit: "1/cm" | "1",
-  choices: ModelChoices,
-  watch: Watch,
-): void {
-  const model = withBleachedTail(buildModel(work.thin, work.state, protocol, unit, choices), work);
-  const { fits } = fitJointly(
-    [
-      {
-        points: work.thin,
-        // No law parameters: the lines stand where the reference has them.
-        spec: { ...model.spec, tiedLevels: { ...model.spec.tiedLevels!, count: 0 } },
-        start: model.start,
-        widthRange: work.widthRange,
-      },
-    ],
-    { gap: true, rydberg: true, defect: true, asymmetry: true },
-    { watch, maxIterations: 30, gradientTolerance: 1e-4, costTolerance: 1e-6, answer: "condensed" },
-  );
-  const fit = fits[0]!;
-  stopIfCancelled(watch);
-  adopt(work, fit, model.state);
+/**
+ * Widths, areas and tail of this power with the level law held where the reference has it; with the tail all of one
+ * factor, and with one that bleaches on as n^10: the better one is kept.
+ */
+function warmUp(work: Work, settings: Settings): void {
+  const { protocol, unit, choices, watch } = settings;
+  let best: { fit: SpectrumFit; state: LadderState; rolls: boolean } | null = null;
+  for (const rolls of choices.tail ? [false, true] : [false]) {
+    work.rolls = rolls;
+    const model = withBleachedTail(buildModel(work.thin, work.state, protocol, unit, choices), work);
+    if (rolls && model.spec.tail?.rollOff === undefined) continue;
+    const { fits } = fitJointly(
+      [
+        {
+          points: work.thin,
+          // No law parameters: the lines stand where the reference has them.
+          spec: { ...model.spec, tiedLevels: { ...model.spec.tiedLevels!, count: 0 } },
+          start: model.start,
+          widthRange: work.widthRange,
+        },
+      ],
+      { gap: true, rydberg: true, defect: true, asymmetry: true },
+      { watch, maxIterations: 30, gradientTolerance: 1e-4, costTolerance: 1e-6, answer: "condensed" },
+    );
+    stopIfCancelled(watch);
+    const fit = fits[0]!;
+    // Areas tell how far bleaching has gone before the second trial asks for it.
+    if (!rolls) adopt(work, fit, model.state);
+    if (best === null || fit.solution.chi2 < best.fit.solution.chi2 - CLEARLY)
+      best = { fit, state: model.state, rolls };
+  }
+  if (best === null) return;
+  work.rolls = best.rolls;
+  adopt(work, best.fit, best.state);
 }
 
 /** The state of a spectrum after a fit; weak lines keep the width they had, errors of energies those of the reference. */
@@ -285,13 +299,6 @@ function runJoint(works: readonly Work[], settings: Settings, report: (pass: num
       costTolerance: 1e-9,
       answer: "condensed",
     });
-    console.log(
-      "joint",
-      fit.solution.iterations,
-      fit.solution.evaluations,
-      fit.solution.termination,
-      fit.fits.map((f) => f.solution.residuals.length).join(),
-    );
     stopIfCancelled(watch);
     settled = true;
     works.forEach((work, a) => {
@@ -352,7 +359,7 @@ function halfBleachedN(work: Work): number | null {
 /** Tail and continuum where light has bleached the highest lines. */
 function withBleachedTail(model: Model, work: Work): Model {
   const { tail } = model.spec;
-  const halfN = halfBleachedN(work);
+  const halfN = work.rolls ? halfBleachedN(work) : null;
   if (tail === null || halfN === null) return withUnbleachedStrength(model, work);
   const rollOff = { halfN, exponent: BLEACHING_EXPONENT };
   return withUnbleachedStrength({ ...model, spec: { ...model.spec, tail: { ...tail, rollOff } } }, work);

@@ -3,7 +3,14 @@ import { analyseShared, reduceMember, type MemberColumns } from "./sharedCovaria
 import { ArrowStep, type ArrowBlock, type ArrowResult } from "./arrowStep.ts";
 import { LinearStage } from "./linearStage.ts";
 import { SteeringBuilder } from "./steering.ts";
-import type { SeparableProblem, SeparableSolution, SolveOptions, Termination, Tolerances } from "./types.ts";
+import type {
+  CondensedProblem,
+  SeparableProblem,
+  SeparableSolution,
+  SolveOptions,
+  Termination,
+  Tolerances,
+} from "./types.ts";
 
 const EPSILON = 2 ** -52;
 /** As in solveSeparable.ts: a stop by step or cost is believed only where the undamped step promises less. */
@@ -34,6 +41,7 @@ export interface SharedOptions {
   readonly gradientTolerance?: number | undefined;
   readonly stepTolerance?: number | undefined;
   readonly watch?: SolveOptions["watch"];
+  readonly answer?: SolveOptions["answer"];
 }
 
 export interface SharedSolution {
@@ -93,7 +101,95 @@ export function solveShared(
   start: Float64Array,
   options: SharedOptions = {},
 ): SharedSolution {
-  return new SharedSearch(members, start, options).run();
+  if (members.every(({ problem }) => problem.condense === undefined))
+    return new SharedSearch(members, start, options).run();
+  return solveCondensed(members, start, options);
+}
+
+/** As in solveSeparable.ts. */
+const MOST_ROUNDS = 4;
+const LEAST_FULL_STEPS = 4;
+
+/** Most of the way on the condensed rows of those members that have them, the end on every row. */
+function solveCondensed(
+  members: readonly SharedMember[],
+  start: Float64Array,
+  options: SharedOptions,
+): SharedSolution {
+  const most = options.maxIterations ?? 200;
+  const placed = members.map((member) => new Member(member, start.length));
+  for (const member of placed) member.place(start);
+  let thetas: readonly Float64Array[] = placed.map(({ theta }) => theta);
+  let shared = start;
+  let condensed = members.map(({ problem }, a) => problem.condense?.(thetas[a]!) ?? null);
+  let iterations = 0;
+  let evaluations = 0;
+  let converged = false;
+  for (let round = 0; round < MOST_ROUNDS && condensed.some((one) => one !== null); round++) {
+    const few = members.map((member, a): SharedMember => ({
+      ...member,
+      problem: condensed[a]?.problem ?? member.problem,
+      start: thetas[a]!,
+    }));
+    const search = new SharedSearch(few, shared, { ...options, maxIterations: most - iterations });
+    const solution = search.run(options.answer === "condensed");
+    // A model that is not finite on the nodes may be so on the points too, but it is those that count.
+    if (solution.termination === "notFinite") break;
+    thetas = solution.members.map(({ theta }) => theta);
+    shared = solution.shared;
+    iterations += solution.iterations;
+    evaluations += solution.evaluations;
+    converged = solution.converged;
+    const serve = condensed.every((one, a) => one === null || one.serves(thetas[a]!));
+    if (solution.termination === "cancelled" || serve || iterations >= most) {
+      if (options.answer === "condensed")
+        return withEveryRow(solution, members, condensed, iterations, evaluations);
+      break;
+    }
+    condensed = members.map(({ problem }, a) => problem.condense?.(thetas[a]!) ?? null);
+  }
+  const all = members.map((member, a): SharedMember => ({ ...member, start: thetas[a]! }));
+  const left = Math.max(most - iterations, converged ? LEAST_FULL_STEPS : 0);
+  const solution = new SharedSearch(all, shared, { ...options, maxIterations: left }).run();
+  return {
+    ...solution,
+    iterations: solution.iterations + iterations,
+    evaluations: solution.evaluations + evaluations,
+  };
+}
+
+/** Chi square and degrees of freedom of every row; fitted values and residuals stay those of the condensed rows. */
+function withEveryRow(
+  solution: SharedSolution,
+  members: readonly SharedMember[],
+  condensed: readonly (CondensedProblem | null)[],
+  iterations: number,
+  evaluations: number,
+): SharedSolution {
+  const used = ({ weights }: SeparableProblem): number =>
+    weights.reduce((sum, weight) => sum + (weight === 0 ? 0 : 1), 0);
+  let lost = 0;
+  let left = 0;
+  const parts = solution.members.map((member, a): SeparableSolution => {
+    const few = condensed[a];
+    if (few === null || few === undefined) return member;
+    lost += few.lost;
+    const more = used(members[a]!.problem) - used(few.problem);
+    left += more;
+    return {
+      ...member,
+      chi2: member.chi2 + few.lost,
+      degreesOfFreedom: member.degreesOfFreedom + more,
+    };
+  });
+  return {
+    ...solution,
+    members: parts,
+    chi2: solution.chi2 + lost,
+    degreesOfFreedom: solution.degreesOfFreedom + left,
+    iterations,
+    evaluations,
+  };
 }
 
 class SharedSearch {
@@ -114,6 +210,7 @@ class SharedSearch {
   private cost = Infinity;
   private iterations = 0;
   private evaluations = 0;
+  private covariance = true;
   private readonly reached = { gradient: Infinity, step: Infinity, cost: Infinity };
 
   constructor(members: readonly SharedMember[], start: Float64Array, options: SharedOptions) {
@@ -143,7 +240,9 @@ class SharedSearch {
     this.rows = rows;
   }
 
-  run(): SharedSolution {
+  /** `covariance` false where only the place matters. */
+  run(covariance = true): SharedSolution {
+    this.covariance = covariance;
     const { tolerance, options } = this;
     const watch = options.watch ?? NO_WATCH;
     const floor = 16 * EPSILON * EPSILON * this.dataSquare;
@@ -323,7 +422,11 @@ class SharedSearch {
 
   private finish(termination: Termination): SharedSolution {
     const { q } = this;
-    const known = Number.isFinite(this.cost) && termination !== "cancelled" && termination !== "notFinite";
+    const known =
+      this.covariance &&
+      Number.isFinite(this.cost) &&
+      termination !== "cancelled" &&
+      termination !== "notFinite";
     if (known) this.reached.gradient = this.largestCosine(this.blocks().blocks);
     const activeBounds = new Int8Array(q);
     for (let g = 0; g < q; g++) {
