@@ -11,7 +11,7 @@ import { detectableDifference, effectiveDegrees } from "./detectable.ts";
 import { holm } from "./holm.ts";
 import { twoSided, twoSidedQuantile } from "./quantiles.ts";
 import { derSimonianLaird, pauleMandel, pooledMean, tauInterval } from "./random-effects.ts";
-import { commonMean, groupMeans, straightLine, weightedFit, type Observations } from "./weighted-fit.ts";
+import { commonMean, groupMeans, straightLine, type Observations } from "./weighted-fit.ts";
 
 interface Batch {
   readonly name: string;
@@ -162,7 +162,7 @@ export function homogeneityOf(observations: Observations): ComparedPart["homogen
   const dof = observations.y.length - observations.parameters;
   if (!(dof > 0) || observations.variances.some((v) => !(v > 0)))
     return { q: null, dof: Math.max(0, dof), p: null, birge: null, i2: null };
-  const { q } = weightedFit(observations, 0);
+  const { q } = observations.fit(0);
   return {
     q,
     dof,
@@ -194,10 +194,10 @@ function trendOf(
   const centre = x.reduce((sum, value) => sum + value, 0) / x.length;
   const line = straightLine(own, errors, x, centre);
   const tau2 = pauleMandel(line);
-  const fit = weightedFit(line, tau2);
+  const fit = line.fit(tau2);
   const sigma = Math.sqrt(fit.covariance[3]!);
   // What the slope's variance would be without the scatter; the rest of it is estimated.
-  const bare = errors.every((v) => v > 0) ? weightedFit(line, 0).covariance[3]! : 0;
+  const bare = errors.every((v) => v > 0) ? line.fit(0).covariance[3]! : 0;
   const dof = effectiveDegrees(fit.covariance[3]!, [
     { variance: Math.max(0, fit.covariance[3]! - bare), degreesOfFreedom: x.length - 2 },
   ]);

@@ -1,5 +1,5 @@
 import { chiSquareQuantile } from "./quantiles.ts";
-import { commonMean, weightedFit, type Observations } from "./weighted-fit.ts";
+import { commonMean, type Observations } from "./weighted-fit.ts";
 
 /**
  * What      Variance tau^2 of true differences beyond the stated errors, by moments:
@@ -26,7 +26,7 @@ function profileRoot(observations: Observations, target: (degreesOfFreedom: numb
   const dof = y.length - parameters;
   if (!(dof > 0)) return NaN;
   const goal = target(dof);
-  const q = (tau2: number): number => weightedFit(observations, tau2).q;
+  const q = (tau2: number): number => observations.fit(tau2).q;
   if (spread === 0) return 0;
   if (smallest > 0 && q(0) <= goal) return 0;
   // Q is at most sum (y - mean)^2/tau^2.
@@ -48,7 +48,7 @@ function profileRoot(observations: Observations, target: (degreesOfFreedom: numb
 export function derSimonianLaird(y: Float64Array, variances: Float64Array): number {
   const k = y.length;
   if (k < 2 || variances.some((v) => !(v > 0))) return NaN;
-  const { q } = weightedFit(commonMean(y, variances), 0);
+  const { q } = commonMean(y, variances).fit(0);
   let first = 0;
   let second = 0;
   for (const v of variances) {
@@ -81,7 +81,7 @@ export interface PooledMean {
 }
 
 export function pooledMean(y: Float64Array, variances: Float64Array, tau2: number): PooledMean {
-  const fit = weightedFit(commonMean(y, variances), tau2);
+  const fit = commonMean(y, variances).fit(tau2);
   const sigma = Math.sqrt(fit.covariance[0]!);
   const k = y.length;
   return {

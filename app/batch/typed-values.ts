@@ -1,5 +1,5 @@
 import type { ComparisonChoices } from "../protocol/index.ts";
-import { readTextTable, splitColumnName } from "../table/index.ts";
+import { readTextTable } from "../table/index.ts";
 
 /**
  * Facts typed in a small table: the first column names a file or a sample, every other column is a fact, with its unit
@@ -7,7 +7,7 @@ import { readTextTable, splitColumnName } from "../table/index.ts";
  */
 export function typedValues(bytes: Uint8Array): ComparisonChoices["values"] {
   const { header, rows } = readTextTable(bytes);
-  const columns = header.slice(1).map((cell) => splitColumnName(cell));
+  const columns = header.slice(1).map(nameAndUnit);
   return rows.flatMap((row) => {
     const of = row[0] ?? "";
     if (of === "") return [];
@@ -18,4 +18,10 @@ export function typedValues(bytes: Uint8Array): ComparisonChoices["values"] {
     });
     return [{ of, facts }];
   });
+}
+
+/** The unit behind a slash that stands apart, or in brackets at the end: any unit, not only those that spectra have. */
+function nameAndUnit(header: string): { name: string; unit: string } {
+  const match = /^(.+?)\s+\/\s*(\S.*)$/.exec(header) ?? /^(.+?)\s*[([]([^)\]]+)[)\]]$/.exec(header);
+  return match === null ? { name: header, unit: "" } : { name: match[1]!.trim(), unit: match[2]!.trim() };
 }

@@ -12,7 +12,6 @@ import {
   straightLine,
   tauInterval,
   twoSidedQuantile,
-  weightedFit,
 } from "../../app/batch/index.ts";
 import { comparedSamples, comparisonChoices } from "../support/compared-samples.ts";
 import { referenceTable } from "../support/reference-table.ts";
@@ -99,7 +98,7 @@ describe("thirteen trials (Colditz et al. 1994)", () => {
   const v = a.map((_, i) => 1 / a[i]! - 1 / (a[i]! + b[i]!) + 1 / c[i]! - 1 / (c[i]! + d[i]!));
 
   it("give the log risk ratio of two statistics packages, with and without random effects", () => {
-    const fixed = weightedFit(commonMean(y, v), 0);
+    const fixed = commonMean(y, v).fit(0);
     // Source: Stata metan and R metafor (tests of metafor, "rma.uni() against metan with 'dat.bcg'"), four digits
     expect(fixed.beta[0]).toBeCloseTo(-0.4303, 4);
     // Source: as above
@@ -138,7 +137,7 @@ describe("thirteen trials (Colditz et al. 1994)", () => {
     const line = straightLine(y, v, column(table, "latitude"), centre);
     // Source: fixtures/generated/make-batch-statistics.py (scipy)
     expect(pauleMandel(line)).toBeCloseTo(tau2, 10);
-    const fit = weightedFit(line, tau2);
+    const fit = line.fit(tau2);
     // Source: as above
     expect([fit.beta[0]! - level, fit.beta[1]! - slope].every((x) => Math.abs(x) < 1e-10)).toBe(true);
     // Source: as above
