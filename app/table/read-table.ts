@@ -9,6 +9,7 @@ import { findHeader, headingCells } from "./find-header.ts";
 import type { FoundHeader } from "./find-header.ts";
 import { factsOfLine } from "./header-fact.ts";
 import { parseNumber } from "./number-text.ts";
+import { readJcamp } from "./read-jcamp.ts";
 import { readRows } from "./read-rows.ts";
 import { isRow, rowLikeness, joinPairs } from "./row-shape.ts";
 import { signatureOf, textSignatureOf } from "./signature.ts";
@@ -60,6 +61,7 @@ function readWith(
   const strange = strangeCharacters(lines);
   if (strange !== null) return refuse("table/not-text", strange.line, strange.found, { kind: "data" });
   const marked = textSignatureOf(lines.text);
+  if (marked?.kind === "jcamp") return readJcamp(file, bytes.length, lines, decoded);
   if (marked !== null) return refuse(marked.code, 1, marked.found, { kind: marked.kind });
 
   const sample = sampleLines(lines);

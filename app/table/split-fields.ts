@@ -23,14 +23,21 @@ export function splitPlainBlock(block: string, delimiter: Delimiter): string[][]
   return rows;
 }
 
+/** Without the blanks that stand between a separator and the quotes of a field; what stands in quotes is left alone. */
+function withoutPadding(text: string): string {
+  return text.replace(
+    /(^|[,;\t]) *("(?:[^"]|"")*") *(?=[,;\t]|$)/g,
+    (_, before: string, field: string) => before + field,
+  );
+}
+
 /** Quotes that never close are plain characters: they stay in their cell, which then is no number, and swallow nothing. */
 export function splitOne(record: string, delimiter: Delimiter): string[] {
   const spaces = delimiter === " ";
   let text = spaces ? collapseSpaces(record.trim()) : record;
   const quotes = text.split('"').length - 1;
   // A quote may follow padding: `1.5, "2.5"`.
-  if (quotes > 0 && quotes % 2 === 0 && !spaces)
-    text = text.replace(/(^|[,;\t]) +"/g, '$1"').replace(/" +(?=[,;\t]|$)/g, '"');
+  if (quotes > 0 && quotes % 2 === 0 && !spaces) text = withoutPadding(text);
   const rows = Papa.parse(text, {
     delimiter,
     newline: "\n",

@@ -44,8 +44,10 @@ function joinQuoted(lines: TextLines, i: number, first: string): { text: string;
   for (let k = 1; k < MOST_JOINED && i + k < lines.count; k++) {
     const next = lineText(lines, i + k);
     text += "\n" + next;
-    if (!next.includes('"')) continue;
-    return /^[^"]*" *([,;\t]|$)/.test(next) && next.split('"').length % 2 === 0
+    // A doubled quote is a character of the field and closes nothing.
+    const bare = next.replace(/""/g, "");
+    if (!bare.includes('"')) continue;
+    return /^[^"]*" *([,;\t]|$)/.test(bare) && bare.split('"').length % 2 === 0
       ? { text, count: k + 1 }
       : null;
   }

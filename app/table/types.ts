@@ -117,6 +117,7 @@ export type TableIssueCode =
   | "table/not-text"
   | "table/markup"
   | "table/other-format"
+  | "table/jcamp"
   | "table/too-large"
   | "table/only-text"
   | "table/only-header"

@@ -22,6 +22,8 @@ const REMEDIES: Readonly<Record<TableIssue["code"], (issue: TableIssue) => strin
         : EXPORT,
   "table/other-format": () =>
     `This format packs its numbers in a way of its own and is not read yet. ${EXPORT}`,
+  "table/jcamp": () =>
+    "A JCAMP-DX file has to hold one curve, in ##XYDATA=(X++(Y..Y)) or ##XYPOINTS=(XY..XY), whole as it was written: export it again, a spectrum a file, or as text with one row a point.",
   "table/too-large": () => "Split the file, or export fewer points.",
   "table/only-text": (issue) =>
     issue.facts["spoilt"] === true
@@ -42,6 +44,7 @@ const STATEMENTS: Readonly<Record<TableIssue["code"], string>> = {
   "table/not-text": "not a text file",
   "table/markup": "not a table",
   "table/other-format": "a format that is not read",
+  "table/jcamp": "a JCAMP-DX file that cannot be read",
   "table/too-large": "the file is too large",
   "table/only-text": "no rows of numbers",
   "table/only-header": "a heading without rows",

@@ -126,7 +126,7 @@ const REFUSED: Readonly<
   "document.csv": ["table/not-text", null, /PDF/, /Export/],
   "empty.csv": ["table/empty", null, /0 bytes/, /right file/],
   "image.csv": ["table/not-text", null, /PNG image/, /picture/],
-  "jcamp.jdx": ["table/other-format", 1, /JCAMP-DX/, /Export/],
+  "jcamp.jdx": ["table/jcamp", 3, /without a number in ##FIRSTX=/, /export it again/],
   "json.csv": ["table/markup", 1, /JSON/, /result or protocol/],
   "one-column.txt": ["table/one-column", 1, /12 lines with one number/, /axis and a signal/],
   "one-row.csv": ["table/too-few-rows", 1, /1 line of numbers/, /Two rows/],
