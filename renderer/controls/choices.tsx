@@ -11,7 +11,12 @@ export function Sentence({ children, label }: { readonly children: ReactNode; re
 
 /** A clause stays together when the sentence is broken into lines. */
 export function Clause({ children }: { readonly children: ReactNode }) {
-  return <span className="clause">{children}</span>;
+  // The space lets the line break here also where text meets text.
+  return (
+    <>
+      <span className="clause">{children}</span>{" "}
+    </>
+  );
 }
 
 interface PickProps<T extends string> {

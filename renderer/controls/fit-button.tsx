@@ -1,11 +1,11 @@
 import { Button, ProgressBar } from "react-aria-components";
-import { fitIsOld, useController, useWindow } from "../store/context.ts";
+import { fitIsOld, powerIsOld, useController, useWindow } from "../store/context.ts";
 
-/** Fit, or how far the running fit is with a way out. */
-export function FitButton() {
+/** Fit the spectrum, or the power series, or how far the running fit is with a way out. */
+export function FitButton({ what = "fit" }: { readonly what?: "fit" | "power" }) {
   const controller = useController();
   const job = useWindow((state) => state.job);
-  const old = useWindow(fitIsOld);
+  const old = useWindow(what === "fit" ? fitIsOld : powerIsOld);
   const none = useWindow((state) => state.session.currentId === null);
   if (job === null)
     return (
@@ -14,7 +14,7 @@ export function FitButton() {
           className="button button-main"
           data-old={old || undefined}
           isDisabled={none}
-          onPress={() => void controller.fit()}
+          onPress={() => void (what === "fit" ? controller.fit() : controller.fitPower())}
         >
           {old ? "Fit again" : "Fit"}
         </Button>

@@ -4,9 +4,17 @@ import { readFiles } from "../host/page-files.ts";
 import { LadderStage } from "../ladder/ladder-stage.tsx";
 import { LinesStage } from "../lines/lines-stage.tsx";
 import type { FigureHandle } from "../plot/figure.tsx";
+import { PowerStage } from "../power/power-stage.tsx";
 import { ReadStage } from "../read/read-stage.tsx";
 import { RungStrip } from "../rungs/rung-strip.tsx";
-import { currentFile, currentFit, useController, useUndo, useWindow } from "../store/context.ts";
+import {
+  currentFile,
+  currentFit,
+  currentPower,
+  useController,
+  useUndo,
+  useWindow,
+} from "../store/context.ts";
 import type { ThemeChoice } from "../store/store.ts";
 import { FilesDrawer } from "./files-drawer.tsx";
 import { NotesLine } from "./notes-line.tsx";
@@ -19,7 +27,7 @@ export function App() {
   const stage = useWindow((state) => state.stage);
   const start = useWindow((state) => state.start);
   const fitting = useWindow((state) => state.job !== null);
-  const [drawer, setDrawer] = useState(false);
+  const drawer = useWindow((state) => state.drawer);
   const [dropping, setDropping] = useState(false);
   const figure = useRef<FigureHandle>(null);
   const filesButton = useRef<HTMLButtonElement>(null);
@@ -71,7 +79,11 @@ export function App() {
     >
       <header className="top">
         <h1 className="name">Rungline</h1>
-        <FilesButton ref={filesButton} open={drawer} onToggle={() => setDrawer(!drawer)} />
+        <FilesButton
+          ref={filesButton}
+          open={drawer}
+          onToggle={() => (drawer ? controller.closeDrawer() : controller.openDrawer())}
+        />
         <StagePath />
         <UndoButtons />
         <SaveMenu figure={figure} />
@@ -82,10 +94,11 @@ export function App() {
         {stage === "read" && <ReadStage figureRef={figure} />}
         {stage === "lines" && <LinesStage figureRef={figure} />}
         {stage === "ladder" && <LadderStage figureRef={figure} />}
+        {stage === "power" && <PowerStage figureRef={figure} />}
         {drawer && (
           <FilesDrawer
             onClose={() => {
-              setDrawer(false);
+              controller.closeDrawer();
               filesButton.current?.focus();
             }}
           />
@@ -169,7 +182,9 @@ const SAVED = [
 
 function SaveMenu({ figure }: { readonly figure: React.RefObject<FigureHandle | null> }) {
   const controller = useController();
-  const fitted = useWindow((state) => currentFit(state) !== null);
+  const fitted = useWindow(
+    (state) => (state.stage === "power" ? currentPower(state) : currentFit(state)) !== null,
+  );
   const file = useWindow(currentFile);
   const stage = useWindow((state) => state.stage);
   const saveFigure = async (format: "svg" | "png"): Promise<void> => {

@@ -1,4 +1,5 @@
 import { Button } from "react-aria-components";
+import { DemoSeriesButton } from "../power/demo-series-button.tsx";
 import { useController, useWindow } from "../store/context.ts";
 
 /** No file: say what to do next. */
@@ -17,9 +18,12 @@ export function EmptyPlace() {
       <p>
         Text files with a light axis and a transmission, absorbance or absorption column, one spectrum each.
       </p>
-      <Button className="button button-main" onPress={() => void controller.open()}>
-        Open spectra
-      </Button>
+      <div className="message-buttons">
+        <Button className="button button-main" onPress={() => void controller.open()}>
+          Open spectra
+        </Button>
+        <DemoSeriesButton />
+      </div>
     </div>
   );
 }

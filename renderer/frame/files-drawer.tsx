@@ -1,4 +1,4 @@
-import { useEffect, useRef } from "react";
+import { useEffect, useRef, useState } from "react";
 import { Button } from "react-aria-components";
 import { useController, useWindow } from "../store/context.ts";
 import type { WindowState } from "../store/store.ts";
@@ -8,7 +8,10 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
   const controller = useController();
   const state = useWindow((one) => one);
   const panel = useRef<HTMLElement>(null);
-  const { files, currentId } = state.session;
+  const [picked, setPicked] = useState<readonly string[]>([]);
+  const { files, currentId, series } = state.session;
+  const marked = picked.filter((id) => files.some((file) => file.id === id));
+  const memberOf = (id: string): readonly string[] | null => series.find((one) => one.includes(id)) ?? null;
   useEffect(() => panel.current?.querySelector<HTMLElement>("[aria-current]")?.focus(), []);
   return (
     <aside
@@ -32,7 +35,19 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
       {files.length === 0 && <p className="hint">No file is open. Drop spectra on the window.</p>}
       <ul>
         {files.map(({ id, name }) => (
-          <li key={id}>
+          <li key={id} data-series={memberOf(id) === null ? undefined : "part"}>
+            {files.length > 1 && (
+              <input
+                type="checkbox"
+                className="drawer-pick"
+                aria-label={`${name} for a power series`}
+                title="for a power series"
+                checked={marked.includes(id)}
+                onChange={(event) =>
+                  setPicked(event.target.checked ? [...marked, id] : marked.filter((one) => one !== id))
+                }
+              />
+            )}
             <button
               type="button"
               className="drawer-file"
@@ -43,8 +58,23 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
               }}
             >
               <span className="drawer-name">{name}</span>
-              <span className="small">{fileState(state, id)}</span>
+              <span className="small">
+                {fileState(state, id)}
+                {memberOf(id) !== null &&
+                  `, ${memberOf(id)!.indexOf(id) + 1} of ${memberOf(id)!.length} in a power series`}
+              </span>
             </button>
+            {memberOf(id)?.[0] === id && (
+              <button
+                type="button"
+                className="quiet"
+                aria-label={`Part the power series of ${name}`}
+                title="Part the power series"
+                onClick={() => controller.partSeries(id)}
+              >
+                part
+              </button>
+            )}
             <button
               type="button"
               className="quiet"
@@ -58,6 +88,16 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
       </ul>
       {files.length > 1 && (
         <footer>
+          <Button
+            className="button"
+            isDisabled={marked.length < 2}
+            onPress={() => {
+              controller.markSeries(marked);
+              onClose();
+            }}
+          >
+            One power series{marked.length > 1 ? ` of ${marked.length}` : ""}
+          </Button>
           <Button className="button" onPress={() => controller.share()}>
             Use these choices for all files
           </Button>

@@ -1,7 +1,7 @@
 import { useEffect, useMemo, useRef, useState } from "react";
 import type { Note } from "../../app/base/index.ts";
 import { gravestFirst } from "../../app/report/index.ts";
-import { currentFit, currentReading, useController, useWindow } from "../store/context.ts";
+import { currentFit, currentPower, currentReading, useController, useWindow } from "../store/context.ts";
 
 interface Line {
   readonly key: string;
@@ -18,7 +18,7 @@ const MARK_WORDS = { refused: "fault", doubt: "doubt", assumption: "assumed", sa
 /** One line, the gravest note first; it opens to all. */
 export function NotesLine() {
   const controller = useController();
-  const fit = useWindow(currentFit);
+  const fit = useWindow((state) => (state.stage === "power" ? currentPower(state) : currentFit(state)));
   const reading = useWindow(currentReading);
   const messages = useWindow((state) => state.messages);
   const [open, setOpen] = useState(false);
@@ -158,6 +158,8 @@ const ABOUT: readonly (readonly [RegExp, string])[] = [
   [/^tail/, "Tail"],
   [/^derived/, "Derived"],
   [/^background/, "Background"],
+  [/^power\.lines/, "Bleaching"],
+  [/^power/, "Power"],
   [/^fit/, "Fit"],
   [/^systematic/, "Systematic"],
   [/^(source|axis|reading)/, "Reading"],

@@ -2,8 +2,11 @@ import { formatQuantity } from "../../app/report/index.ts";
 import {
   currentFile,
   currentFit,
+  currentPower,
+  currentSeriesId,
   currentReading,
   fitIsOld,
+  powerIsOld,
   useController,
   useWindow,
 } from "../store/context.ts";
@@ -33,7 +36,7 @@ const MARK_WORDS: Readonly<Record<Mark, string>> = {
   refused: "refused",
 };
 
-/** The way from file to ladder, each stage with its state in words and mark. */
+/** The way from file to ladder and on to power, each stage with its state in words and mark. */
 export function StagePath() {
   const controller = useController();
   const shown = useWindow((state) => state.stage);
@@ -43,10 +46,13 @@ export function StagePath() {
   const readingMark = useWindow(readMark);
   const linesMark = useWindow(linesMarkOf);
   const ladderMark = useWindow(ladderMarkOf);
+  const power = useWindow(powerState);
+  const powerMark = useWindow(powerMarkOf);
   const stages: readonly StageState[] = [
     { stage: "read", title: "Read", mark: readingMark, words: reading },
     { stage: "lines", title: "Lines", mark: linesMark, words: lines },
     { stage: "ladder", title: "Ladder", mark: ladderMark, words: ladder },
+    { stage: "power", title: "Power", mark: powerMark, words: power },
   ];
   return (
     <nav className="path" aria-label="Stages">
@@ -130,7 +136,34 @@ function ladderState(state: WindowState): string {
   return formatQuantity(series.gap_eV.value, series.gap_eV.sigma, "eV", { groupSpace: "\u2009" });
 }
 
+function powerMarkOf(state: WindowState): Mark {
+  const id = currentSeriesId(state);
+  if (isFittingPower(state)) return "busy";
+  if (id !== null && state.powerRefusals[id] !== undefined) return "refused";
+  const fit = currentPower(state);
+  if (fit === null) return "not-yet";
+  const doubt = fit.analysed.result.notes.some(
+    ({ level, about }) => level === "doubt" && /^power/.test(about),
+  );
+  return powerIsOld(state) || fit.analysed.result.status !== "converged" || doubt ? "doubt" : "done";
+}
+
+function powerState(state: WindowState): string {
+  const id = currentSeriesId(state);
+  if (isFittingPower(state)) return `fitting ${Math.round(100 * (state.job?.fraction ?? 0))} %`;
+  if (id !== null && state.powerRefusals[id] !== undefined) return "refused";
+  const fit = currentPower(state);
+  if (fit === null) return "no series yet";
+  if (powerIsOld(state)) return "choices changed";
+  const { power, status } = fit.analysed.result;
+  if (power === null || power === undefined || status !== "converged") return status.replace("-", " ");
+  const seen = power.lines.filter(({ reading }) => reading === "bleaches").length;
+  return `${power.spectra.length} powers, ${seen} bleach`;
+}
+
+const isFittingPower = (state: WindowState): boolean =>
+  state.job !== null && state.job.what === "power" && state.job.fileId === currentSeriesId(state);
 const isFitting = (state: WindowState): boolean =>
-  state.job !== null && state.job.fileId === state.session.currentId;
+  state.job !== null && state.job.what === "fit" && state.job.fileId === state.session.currentId;
 const refused = (state: WindowState): boolean =>
   state.session.currentId !== null && state.refusals[state.session.currentId] !== undefined;

@@ -182,7 +182,8 @@ async function light(
     data.forEach((trace, i) => {
       const numbers = trace["customdata"];
       if (trace.meta.part !== "levels" || !Array.isArray(numbers)) return;
-      const sizes = numbers.map((one) => (one === n ? 13 : 8));
+      const rest = (trace["marker"] as { readonly size?: readonly number[] } | undefined)?.size;
+      const sizes = numbers.map((one, k) => (one === n ? 13 : (rest?.[k] ?? 8)));
       void Plotly.restyle(element, { "marker.size": [sizes] }, [i]);
     });
   };

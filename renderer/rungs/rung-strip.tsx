@@ -1,7 +1,7 @@
 import { useEffect, useMemo, useRef, useState, type KeyboardEvent } from "react";
 import { resolveProtocol } from "../../app/protocol/index.ts";
 import { colourOfN } from "../plot/colours.ts";
-import { currentAnalysed, currentChoices, useController, useWindow } from "../store/context.ts";
+import { currentChoices, currentLadder, useController, useWindow } from "../store/context.ts";
 import { useMode } from "../frame/theme.ts";
 import { expectedLayout, rungLayout, type Rung } from "./rung-layout.ts";
 
@@ -18,7 +18,7 @@ const KIND_WORDS = {
 /** The ladder of the sample: picture, legend and control in one. */
 export function RungStrip() {
   const controller = useController();
-  const analysed = useWindow(currentAnalysed);
+  const result = useWindow(currentLadder);
   const choices = useWindow(currentChoices);
   const pointed = useWindow((state) => state.pointedN);
   const selected = useWindow((state) => state.selectedN);
@@ -31,10 +31,10 @@ export function RungStrip() {
     return () => observer.disconnect();
   }, []);
   const layout = useMemo(() => {
-    if (analysed !== null) return rungLayout(analysed.result, height);
+    if (result !== null) return rungLayout(result, height);
     const protocol = resolveProtocol(choices);
     return protocol.ok ? expectedLayout(protocol.value, height) : null;
-  }, [analysed, choices, height]);
+  }, [result, choices, height]);
 
   const climb = (event: KeyboardEvent): void => {
     if (layout === null) return;
@@ -57,12 +57,12 @@ export function RungStrip() {
     <nav className="rungs" aria-label="Ladder">
       <div className="rungs-head">
         <span className="rungs-title">Ladder</span>
-        <span className="small">{analysed === null ? "expected" : "eV"}</span>
+        <span className="small">{result === null ? "expected" : "eV"}</span>
       </div>
       <div className="rungs-frame" ref={frame}>
         {layout === null ? (
           <p className="hint">
-            {analysed === null
+            {result === null
               ? "The ladder of the sample grows here once its lines are fitted."
               : "No series was seen. Choose a material or name the lines."}
           </p>

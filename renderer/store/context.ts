@@ -1,7 +1,7 @@
 import { createContext, use } from "react";
 import { useStore } from "zustand";
 import type { AnalysedFile } from "../../app/tasks/index.ts";
-import type { ProtocolInput } from "../../app/protocol/index.ts";
+import type { ProtocolInput, RunglineResult } from "../../app/protocol/index.ts";
 import type { Controller } from "./controller.ts";
 import { NO_CHOICES, seriesOf, type Fitted, type LoadedFile, type PowerFitted } from "./session.ts";
 import type { Reading, WindowState } from "./store.ts";
@@ -37,6 +37,13 @@ export const currentReading = ({ session, readings }: WindowState): Reading | nu
 
 export const currentFit = ({ session }: WindowState): Fitted | null =>
   (session.currentId === null ? undefined : session.fits[session.currentId]) ?? null;
+
+/** The ladder that the stage is about: of the power series in Power, else of the file's own fit. */
+export const currentLadder = (state: WindowState): RunglineResult | null => {
+  const own = currentFit(state)?.analysed.result ?? null;
+  const power = currentPower(state)?.analysed.result ?? null;
+  return state.stage === "power" ? (power ?? own) : (own ?? power);
+};
 
 export const currentAnalysed = (state: WindowState): AnalysedFile | null =>
   currentFit(state)?.analysed ?? null;

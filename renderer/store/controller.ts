@@ -140,7 +140,12 @@ export class Controller {
   }
 
   close(id: string): void {
-    if (this.store.getState().job?.fileId === id) this.cancel();
+    const { job, session: before } = this.store.getState();
+    if (
+      job !== null &&
+      (job.fileId === id || (job.what === "power" && seriesOf(before, job.fileId).includes(id)))
+    )
+      this.cancel();
     this.#edit((session) => removeFile(session, id));
   }
 
@@ -163,6 +168,14 @@ export class Controller {
 
   point(n: number | null): void {
     if (this.store.getState().pointedN !== n) this.#set({ pointedN: n });
+  }
+
+  openDrawer(): void {
+    this.#set({ drawer: true });
+  }
+
+  closeDrawer(): void {
+    this.#set({ drawer: false });
   }
 
   show(stage: Stage): void {

@@ -36,6 +36,8 @@ export interface WindowState {
   readonly start: "starting" | "ready" | "failed";
   readonly facts: HostFacts | null;
   readonly stage: Stage;
+  /** Whether the drawer of files stands open. */
+  readonly drawer: boolean;
   /** Lit everywhere while the pointer is on it. */
   readonly pointedN: number | null;
   /** Chosen line; not undone, since climbing the ladder changes nothing. */
@@ -60,6 +62,7 @@ export function makeStore() {
         start: "starting",
         facts: null,
         stage: "read",
+        drawer: false,
         pointedN: null,
         selectedN: null,
         readings: {},
