@@ -1,7 +1,7 @@
 export * from "./types.ts";
 export { placeOf, withPeaks } from "./line-table.ts";
 export { judgePower } from "./judge-power.ts";
-export { wordPowerIssue, type PowerIssue } from "./wording.ts";
+export { wordJudgeIssue, type JudgeIssue } from "./judge-issue.ts";
 export { bleaching, unbleach, type BleachingLaw } from "./bleaching-law.ts";
 export { describeBeam, spotArea, type Beam } from "./beam.ts";
 export {

@@ -11,7 +11,8 @@ import {
 import type { PowerLineResult } from "../protocol/index.ts";
 import { normalQuantile } from "../solve/index.ts";
 import { describeBeam, type Beam } from "./beam.ts";
-import { describePower, fromAlone } from "./describe-power.ts";
+import { describePower } from "./describe-power.ts";
+import { fromAlone } from "./nominal.ts";
 import type { Flow, LineFinding, Pump } from "./flow.ts";
 import { gatherInputs } from "./inputs.ts";
 import { formCovariance, formsCovariance, placeOf, seriesOf, type LinearForm } from "./line-table.ts";
@@ -19,7 +20,6 @@ import { describeNotes } from "./notes.ts";
 import {
   distinct,
   fitSaturation,
-  fitScaling,
   fitTogether,
   repeatScatter,
   testLine,
@@ -27,12 +27,12 @@ import {
   type LawChoice,
   type LineTests,
   type Saturation,
-  type Scaling,
 } from "./saturation.ts";
+import { fitScaling, type Scaling } from "./scaling.ts";
 import { LINE_QUANTITIES, type LineTable, type PowerInput, type PowerJudgement } from "./types.ts";
 import { FIT_PARTS, spreadVolumes, type LineAtZero } from "./volumes.ts";
 import { fitBroadening, widthsByLaw, type WidthsAtZero } from "./widths.ts";
-import type { PowerIssue } from "./wording.ts";
+import type { JudgeIssue } from "./judge-issue.ts";
 
 /** Bleaching counts as seen above this many standard errors of S. */
 const SEEN = 2;
@@ -48,7 +48,7 @@ const ON_LINE = 1;
  * Domain    two or more different powers; everything that a missing input leaves open is not determined, not guessed.
  * Accuracy  tests/app/power, tests/bench/power-coverage.bench.ts.
  */
-export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<PowerJudgement, PowerIssue> {
+export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<PowerJudgement, JudgeIssue> {
   const issues = refuse(given);
   if (issues.length > 0) return failure(...issues);
   const { protocol } = given;
@@ -166,8 +166,8 @@ export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<P
   return success({ power, notes: describeNotes({ input, beam, inputs, lines, scaling, power }) });
 }
 
-function refuse(input: PowerInput): PowerIssue[] {
-  const issues: PowerIssue[] = [];
+function refuse(input: PowerInput): JudgeIssue[] {
+  const issues: JudgeIssue[] = [];
   for (const spectrum of input.spectra) {
     if (!(spectrum.power_uW >= 0 && spectrum.power_uW < Infinity))
       issues.push({
@@ -176,9 +176,9 @@ function refuse(input: PowerInput): PowerIssue[] {
       });
   }
   const powers = distinct(input.table.power_uW);
-  if (powers < 2) issues.push({ code: "power/too-few-powers", facts: { found: powers, needed: 2 } });
+  if (powers < 2) issues.push({ code: "power/one-power", facts: { found: powers, needed: 2 } });
   if (input.table.n.length === 0)
-    issues.push({ code: "power/no-lines", facts: { spectra: input.spectra.length } });
+    issues.push({ code: "power/no-common-line", facts: { spectra: input.spectra.length } });
   return issues;
 }
 

@@ -4,7 +4,7 @@ import {
   judgePower,
   slabFactor,
   sphereVolume,
-  wordPowerIssue,
+  wordJudgeIssue,
   type PowerInput,
   type PowerJudgement,
 } from "../../../app/power/index.ts";
@@ -410,11 +410,11 @@ describe("choices", () => {
 
   test("too few powers, a negative power and no lines are refused in words", () => {
     const one = judgePower(input({ power_uW: [5, 5] }));
-    expect(!one.ok && wordPowerIssue(one.issues[0]!).message).toContain("1 different power");
+    expect(!one.ok && wordJudgeIssue(one.issues[0]!).message).toContain("1 different power");
     const negative = judgePower(input({ power_uW: [-1, 5, 7] }));
-    expect(!negative.ok && wordPowerIssue(negative.issues[0]!).message).toContain("-1 uW");
+    expect(!negative.ok && wordJudgeIssue(negative.issues[0]!).message).toContain("-1 uW");
     const none = judgePower(input({ n: [] }));
-    expect(!none.ok && none.issues[0]!.code).toBe("power/no-lines");
+    expect(!none.ok && none.issues[0]!.code).toBe("power/no-common-line");
   });
 
   test("a protocol written before power was known resolves, and a spot of zero is refused by name", () => {

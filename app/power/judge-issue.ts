@@ -1,13 +1,13 @@
 import type { Issue, Wording } from "../base/index.ts";
 
-export type PowerIssue =
-  | (Issue & { readonly code: "power/too-few-powers"; readonly facts: { found: number; needed: number } })
+export type JudgeIssue =
+  | (Issue & { readonly code: "power/one-power"; readonly facts: { found: number; needed: number } })
   | (Issue & { readonly code: "power/bad-power"; readonly facts: { spectrum: string; found: number } })
-  | (Issue & { readonly code: "power/no-lines"; readonly facts: { spectra: number } });
+  | (Issue & { readonly code: "power/no-common-line"; readonly facts: { spectra: number } });
 
-export function wordPowerIssue(issue: PowerIssue): Wording {
+export function wordJudgeIssue(issue: JudgeIssue): Wording {
   switch (issue.code) {
-    case "power/too-few-powers":
+    case "power/one-power":
       return {
         message: `power series: ${issue.facts.found} different power${issue.facts.found === 1 ? "" : "s"} found, at least ${issue.facts.needed} are needed`,
         remedy: "add spectra at other powers, or give the powers with power.values_uW",
@@ -17,7 +17,7 @@ export function wordPowerIssue(issue: PowerIssue): Wording {
         message: `power series: ${issue.facts.spectrum} has the power ${issue.facts.found} uW`,
         remedy: "powers are zero or positive; give them with power.values_uW",
       };
-    case "power/no-lines":
+    case "power/no-common-line":
       return {
         message: `power series: no line is common to the ${issue.facts.spectra} spectra`,
         remedy: "look at the lowest power alone first, or name the lines with lines.n",
