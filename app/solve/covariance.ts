@@ -7,7 +7,7 @@ export interface JacobianAnalysis {
   /** (n x n, row-major) (J'J)^-1; rows and columns of undetermined parameters are NaN. */
   readonly covariance: Float64Array;
   readonly rank: number;
-  /** Ratio of the largest to the smallest singular value of the unit-length columns; Infinity where rank < n. */
+  /** Largest over smallest singular value of the unit-length columns; Infinity where rank < n, NaN where not wanted. */
   readonly condition: number;
   /** 1 where the data do not determine the parameter, whatever the others are. */
   readonly undetermined: Uint8Array;
@@ -38,6 +38,7 @@ export function analyseJacobian(
   ld: number,
   rows: number,
   right: { readonly residual: Float64Array } | { readonly gradient: Float64Array },
+  wantCondition = true,
 ): JacobianAnalysis {
   let n = 0;
   for (const count of counts) n += count;
@@ -63,8 +64,8 @@ export function analyseJacobian(
     }
   }
   const rank = pivotedQr(small, size, size, 0, 0, n, permutation, RANK_TOLERANCE);
-  let condition = Infinity;
-  if (rank === n) {
+  let condition = wantCondition ? Infinity : NaN;
+  if (rank === n && wantCondition) {
     // The rows of the pivoted triangle are nearly orthogonal already: few rotations are left.
     for (let i = 0; i < n; i++) for (let j = i; j < n; j++) forValues[i * n + j] = small[j * size + i]!;
     const values = singularValues(forValues, n, CONDITION_TOLERANCE);

@@ -8,10 +8,13 @@ import { RowBlockTriangle } from "./rowBlockTriangle.ts";
 export const RANK_TOLERANCE = 1e-13;
 
 /**
- * Smallest squared sine between columns for which the normal equations are still used. With one correction by the
- * true residual the coefficients then keep an error of about eps / sqrt(1e-8), that of an orthogonal solution.
+ * Smallest squared sine between columns for which the normal equations are still used. Each correction by the true
+ * residual then shrinks the error of the coefficients by eps k/1e-11, until it is that of an orthogonal solution.
  */
-const NORMAL_LIMIT = 1e-8;
+const NORMAL_LIMIT = 1e-11;
+/** Corrections end where one moves less than this part of the data, and at the latest after MOST_TURNS. */
+const SPENT = 1e-12;
+const MOST_TURNS = 5;
 
 /** Below this much work the orthogonal path costs nothing worth saving. */
 const SMALL_WORK = 20_000;
@@ -34,6 +37,8 @@ export class LinearStage {
   /** True after a solve that used the normal equations: `factor` and `scale` then hold their Cholesky factor. */
   normal = false;
   rank = 0;
+  /** Smallest squared sine that the factor of the normal equations met. */
+  pivot = 1;
   /** Cholesky factor of the Gram matrix of unit-length columns; column j of Phi times scale[j] has unit length. */
   readonly factor: Float64Array;
   readonly scale: Float64Array;
@@ -72,10 +77,9 @@ export class LinearStage {
     c.fill(0, 0, k);
     if (this.normal) {
       this.rank = k;
-      this.correct(phi, target, c);
-    } else {
-      this.factorOrthogonal(phi, target, c);
+      return this.correctAll(phi, target, c, residual);
     }
+    this.factorOrthogonal(phi, target, c);
     residualOf(phi, k, ld, rows, c, target, residual);
     this.correct(phi, residual, c);
     residualOf(phi, k, ld, rows, c, target, residual);
@@ -87,9 +91,11 @@ export class LinearStage {
    * columns are too close to dependent.
    */
   factorOf(stand: LinearStage, phi: Float64Array): boolean {
-    this.normal = stand.k === 0 || stand.factorNormal(phi);
+    stand.normal = stand.k === 0 || stand.factorNormal(phi);
+    this.normal = stand.normal;
     if (!this.normal) return false;
     this.rank = this.k;
+    this.pivot = stand.pivot;
     this.factor.set(stand.factor);
     this.scale.set(stand.scale);
     return true;
@@ -100,10 +106,19 @@ export class LinearStage {
    * true residual until they are spent.
    */
   solveWith(phi: Float64Array, target: Float64Array, c: Float64Array, residual: Float64Array): number {
+    return this.correctAll(phi, target, c, residual);
+  }
+
+  private correctAll(
+    phi: Float64Array,
+    target: Float64Array,
+    c: Float64Array,
+    residual: Float64Array,
+  ): number {
     const { k, ld, rows } = this;
     residualOf(phi, k, ld, rows, c, target, residual);
-    const enough = 1e-24 * sumOfSquares(target, rows);
-    for (let turn = 0; turn < 5; turn++) {
+    const enough = SPENT * SPENT * sumOfSquares(target, rows);
+    for (let turn = 0; turn < MOST_TURNS; turn++) {
       const moved = this.correct(phi, residual, c);
       residualOf(phi, k, ld, rows, c, target, residual);
       if (moved <= enough) break;
@@ -196,7 +211,8 @@ export class LinearStage {
     for (let i = 0; i < k; i++) {
       for (let j = 0; j < k; j++) gram[i * k + j] = gram[i * k + j]! * scale[i]! * scale[j]!;
     }
-    return choleskyInto(gram, k, this.factor) > NORMAL_LIMIT;
+    this.pivot = choleskyInto(gram, k, this.factor);
+    return this.pivot > NORMAL_LIMIT;
   }
 
   private factorOrthogonal(phi: Float64Array, target: Float64Array, c: Float64Array): void {

@@ -561,7 +561,7 @@ class Search {
       const analysis = analyseJacobian(few, counts, rows, rows, { gradient });
       if (sameWeakDirections(analysis, few, rows, all, m, counts)) return analysis;
     }
-    return analyseJacobian(all, counts, m, m, { residual });
+    return analyseJacobian(all, counts, m, m, { residual }, this.options.answer !== "condensed");
   }
 
   /** -1 or 1 where the parameter stands at a bound and the cost would fall beyond it (or the bounds coincide). */

@@ -9,6 +9,9 @@ import { RowBlockTriangle } from "./rowBlockTriangle.ts";
 /** Squared sine below which a projected derivative, or a pivot of J'J, is too small to trust to normal equations. */
 const NORMAL_LIMIT = 1e-10;
 
+/** Error of the factor of Phi'Phi in units of its smallest pivot, with a margin. */
+const FACTOR_ERROR = 64 * 2 ** -52;
+
 /** rows x columns^2 below which the orthogonal path costs nothing worth saving. */
 const SMALL_WORK = 1_000_000;
 
@@ -97,7 +100,8 @@ export class SteeringBuilder {
       this.useEveryRow();
     }
     if (this.mode !== "orthogonal") {
-      const sound = stage.normal && this.buildNormal(derivative, phi, m, stage.factor, stage.scale, 1);
+      const sound =
+        stage.normal && this.buildNormal(derivative, phi, m, stage.factor, stage.scale, 1, stage.pivot);
       if (sound) return steering;
       // Once too close to dependent, mostly so again: do not pay for both.
       this.mode = "orthogonal";
@@ -126,8 +130,9 @@ export class SteeringBuilder {
     for (let i = 0; i < k; i++) {
       for (let j = 0; j < k; j++) thinGram[i * k + j] = thinGram[i * k + j]! * thinScale[i]! * thinScale[j]!;
     }
-    if (k > 0 && !(choleskyInto(thinGram, k, this.thinFactor) > NORMAL_LIMIT)) return false;
-    return this.buildNormal(thinDerivative, thinPhi, rows, this.thinFactor, thinScale, m / rows);
+    const pivot = k > 0 ? choleskyInto(thinGram, k, this.thinFactor) : 1;
+    if (!(pivot > NORMAL_LIMIT)) return false;
+    return this.buildNormal(thinDerivative, thinPhi, rows, this.thinFactor, thinScale, m / rows, pivot);
   }
 
   private buildNormal(
@@ -137,9 +142,12 @@ export class SteeringBuilder {
     factor: Float64Array,
     scale: Float64Array,
     multiply: number,
+    pivot: number,
   ): boolean {
     const { p, k, cross, steering, projected, plain, scaled } = this;
     const a = steering.matrix;
+    // What the factor of Phi may leave wrong in the difference.
+    const least = Math.max(NORMAL_LIMIT, (FACTOR_ERROR * k) / pivot);
     gramMatrix(derivative, p, rows, rows, a);
     if (k > 0) crossProduct(derivative, p, phi, k, rows, rows, cross);
     for (let i = 0; i < p; i++) {
@@ -151,7 +159,7 @@ export class SteeringBuilder {
       for (let j = 0; j <= i; j++) {
         let sum = a[i * p + j]!;
         for (let l = 0; l < k; l++) sum -= cross[i * k + l]! * cross[j * k + l]!;
-        if (i === j && !(sum > NORMAL_LIMIT * a[i * p + i]!)) return false;
+        if (i === j && !(sum > least * a[i * p + i]!)) return false;
         a[i * p + j] = sum * multiply;
         a[j * p + i] = sum * multiply;
       }

@@ -87,7 +87,8 @@ export interface SolveOptions {
   readonly stride?: number | undefined;
   /**
    * `exact`: from every row, by orthogonal factors, or from condensed rows that were tested against every row. `condensed`:
-   * where the problem has condensed rows the whole answer is theirs, for fits that only prepare the next one. Default `exact`.
+   * where the problem has condensed rows the whole answer is theirs, without a condition number, for fits that only prepare
+   * the next one. Default `exact`.
    */
   readonly answer?: "exact" | "condensed" | undefined;
   /** `auto` uses normal equations where they are safe; the others are for tests. Default `auto`. */
