@@ -1,10 +1,5 @@
 import { defectAt, LEVEL, levelLaw, strength, WIDTH, widthLaw, type LevelParameters } from "../laws/index.ts";
-import {
-  averagedTail,
-  continuumPair,
-  linePairWithDerivatives,
-  type AveragedTailOutputs,
-} from "../lines/index.ts";
+import { continuumPair, linePairWithDerivatives, type ContinuumOutputs } from "../lines/index.ts";
 import { addFromGrid, makeSparseGrid, type SparseGrid } from "./sparse-grid.ts";
 import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec.ts";
 
@@ -12,7 +7,8 @@ import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec
  * What      Absorption of everything that is tied to the laws, for a strength law of coefficient C = 1:
  *           T(E) = f [sum_tied s_n (L_n + 2 q D_n) + band] + sum_below s_n (L_n + 2 q D_n) + continuum.
  *           The band stands for the lines above `toN`, which run together, from E(toN + 1/2) to the gap, as high as
- *           the strength law says (towards 1/(2 Ry)) and broadened by the width there. The continuum has the height 1/(2 Ry) at the gap.
+ *           the strength law says (towards 1/(2 Ry)), in groups as broad as their lines. The continuum has the height 1/(2 Ry)
+ *           at the gap.
  * Shapes    all columns (m).
  * Units     eV, 1/eV.
  * Accuracy  the band replaces lines whose width is at least `BLENDED` spacings: ripple exp(-pi BLENDED) of its height.
@@ -29,7 +25,7 @@ export interface TailColumns {
   readonly byWidth: readonly Float64Array[];
 }
 
-type BandColumn = keyof Required<AveragedTailOutputs>;
+type BandColumn = keyof Required<ContinuumOutputs>;
 
 const LEVEL_COUNT = 4;
 const WIDTH_COUNT = 3;
@@ -47,7 +43,7 @@ export class TailEvaluator {
   private readonly scratch: Float64Array[];
   private readonly sums: Float64Array[];
   private readonly leastWidth: number;
-  private readonly bands: readonly BandEdge[];
+  private readonly bands: readonly BandGroup[];
   private readonly bandScratch: Record<BandColumn, Float64Array>;
 
   /** `lorentz`: FWHM of a Lorentzian instrument, which adds to every width. */
@@ -185,9 +181,10 @@ export class TailEvaluator {
   }
 
   /**
-   * The lines above toN run together. They are taken in groups, each group a band as high as its lines are strong,
-   * which is the sum over the groups' lower edges of (height - height of the group before) times the band from there to
-   * the gap.
+   * The lines above toN run together. They are taken in groups, each a band from its lower to its upper edge, as high as its
+   * lines are strong and as broad at both ends as they are in the middle: with one width at both ends the wings fall as
+   * those of lines do.
+   *   L = h [atan((E-E_c)/g) - atan((E-E_d)/g)]/(2 pi Ry),  D = h ln{[(E-E_c)^2 + g^2]/[(E-E_d)^2 + g^2]}/(4 pi Ry)
    */
   private addBand(
     law: LevelParameters,
@@ -196,41 +193,39 @@ export class TailEvaluator {
     q: number,
     derivatives: boolean,
   ): void {
-    const { sums, spec, bandScratch: band } = this;
+    const { sums, spec } = this;
     const nodes = this.grid.nodes;
-    const level = new Float64Array(LEVEL.size);
+    const bottom = new Float64Array(LEVEL.size);
+    const top = new Float64Array(LEVEL.size);
     const width = new Float64Array(WIDTH.size);
-    for (const { edgeN, step } of this.bands) {
-      levelLaw(edgeN, law, level);
-      widthLaw(edgeN, spec.levels.defect0, widths, width);
-      const lawWidth = width[WIDTH.width]! + this.lorentz;
-      averagedTail(
-        nodes,
-        0,
-        nodes.length,
-        law.gap,
-        law.rydberg,
-        level[LEVEL.effectiveN]!,
-        this.edgeWidth(lawWidth),
-        derivatives ? band : { absorptive: band.absorptive, dispersive: band.dispersive },
-      );
-      const slope = this.edgeSlope(lawWidth);
-      // The lower edge also moves with the defect, at fixed gap and Rydberg energy; the height there is 1/(2 Ry).
-      const height = 1 / (2 * law.rydberg);
-      const edge = level[LEVEL.energy]!;
+    for (const { edgeN, upperN, middleN, height } of this.bands) {
+      levelLaw(edgeN, law, bottom);
+      levelLaw(upperN, law, top);
+      widthLaw(middleN, spec.levels.defect0, widths, width);
+      const lawWidth = Math.max(0, width[WIDTH.width]!) + this.lorentz;
       const g = this.edgeWidth(lawWidth) / 2;
+      const slope = this.edgeSlope(lawWidth) / 2;
+      const low = bottom[LEVEL.energy]!;
+      const high = top[LEVEL.energy]!;
+      const perAngle = height / (2 * Math.PI * law.rydberg);
       for (let i = 0; i < nodes.length; i++) {
-        sums[0]![i]! += step * band.absorptive[i]!;
-        sums[1]![i]! += step * band.dispersive[i]!;
+        const a = nodes[i]! - low;
+        const b = nodes[i]! - high;
+        const below = 1 / (a * a + g * g);
+        const above = 1 / (b * b + g * g);
+        // The difference of angles as one angle, and of logarithms as one, so that far wings do not cancel.
+        const even = perAngle * Math.atan2(g * (a - b), g * g + a * b);
+        const odd = 0.5 * perAngle * Math.log1p((a - b) * (a + b) * above);
+        sums[0]![i]! += even;
+        sums[1]![i]! += odd;
         if (!derivatives) continue;
-        const a = nodes[i]! - edge;
-        const byEdge = (-factor * step * height * (g + 2 * q * a)) / (Math.PI * (a * a + g * g));
-        sums[2]![i]! += factor * step * (band.absorptiveByGap[i]! + 2 * q * band.dispersiveByGap[i]!);
-        sums[3]![i]! += factor * step * (band.absorptiveByRydberg[i]! + 2 * q * band.dispersiveByRydberg[i]!);
-        sums[4]![i]! += byEdge * level[LEVEL.byDefect0]!;
-        sums[5]![i]! += byEdge * level[LEVEL.byDefect2]!;
-        const byWidth =
-          slope * factor * step * (band.absorptiveByBroadening[i]! + 2 * q * band.dispersiveByBroadening[i]!);
+        const scale = factor * perAngle;
+        const byLow = -scale * (g + 2 * q * a) * below;
+        const byHigh = scale * (g + 2 * q * b) * above;
+        for (let p = 0; p < LEVEL_COUNT; p++)
+          sums[2 + p]![i]! += byLow * bottom[1 + p]! + byHigh * top[1 + p]!;
+        sums[3]![i]! -= (factor * (even + 2 * q * odd)) / law.rydberg;
+        const byWidth = slope * scale * (b * above - a * below + 2 * q * g * (below - above));
         for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
       }
     }
@@ -327,10 +322,15 @@ export class TailEvaluator {
   }
 }
 
-/** Lower edge of a group of lines, as a half-integer n, and by how much its height exceeds that of the group below. */
-export interface BandEdge {
+/** A group of lines that run together. */
+export interface BandGroup {
+  /** Half-integers n of its ends; the uppermost group ends at the gap. */
   readonly edgeN: number;
-  readonly step: number;
+  readonly upperN: number;
+  /** n in the middle of its energies, where its width is taken. */
+  readonly middleN: number;
+  /** In units of 1/(2 Ry). */
+  readonly height: number;
 }
 
 /** Strength of a tied line above the free ones, with C = 1. */
@@ -348,25 +348,25 @@ const LAST_GROUP_N = 200;
  * spans. They differ from 1 because s_n is a law of n and the spacing one of n - delta. Taken at the law the tail was
  * built with, so they are constants of the fit.
  */
-export function groupBands(spec: TailSpec): BandEdge[] {
+export function groupBands(spec: TailSpec): BandGroup[] {
   const { defect0, defect2 } = spec.levels;
-  const nu = (n: number): number => n - defectAt(n, defect0, defect2);
-  const edges: BandEdge[] = [];
-  let before = 0;
+  const depth = (n: number): number => (n - defectAt(n, defect0, defect2)) ** -2;
+  const groups: BandGroup[] = [];
   for (let low = spec.toN + 1; ;) {
     const high = Math.max(low + 1, Math.round(low * GROUP_RATIO));
     const edgeN = low - 0.5;
     if (high > LAST_GROUP_N) {
       const { rollOff } = spec;
       const height = rollOff === undefined ? 1 : 1 / (1 + (low / rollOff.halfN) ** rollOff.exponent);
-      edges.push({ edgeN, step: height - before });
-      return edges;
+      groups.push({ edgeN, upperN: FAR_N, middleN: defect0 + Math.SQRT2 * (edgeN - defect0), height });
+      return groups;
     }
     let sum = 0;
     for (let n = low; n < high; n++) sum += tiedStrength(n, spec);
-    const height = (2 * sum) / (nu(edgeN) ** -2 - nu(high - 0.5) ** -2);
-    edges.push({ edgeN, step: height - before });
-    before = height;
+    const upperN = high - 0.5;
+    const height = (2 * sum) / (depth(edgeN) - depth(upperN));
+    const middleN = defect0 + ((depth(edgeN) + depth(upperN)) / 2) ** -0.5;
+    groups.push({ edgeN, upperN, middleN, height });
     low = high;
   }
 }
