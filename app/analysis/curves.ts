@@ -49,7 +49,7 @@ export function emptyCurves(spectrum: Spectrum): Curves {
   };
 }
 
-export function drawCurves(spectrum: Spectrum, points: SelectedPoints, full: FullFit): Curves {
+export function drawCurves(spectrum: Spectrum, points: SelectedPoints, full: Pick<FullFit, "fit">): Curves {
   const { fit } = full;
   const m = spectrum.energy_eV.length;
   const spread = (values: ArrayLike<number>): Float64Array => {
@@ -80,7 +80,12 @@ export function drawCurves(spectrum: Spectrum, points: SelectedPoints, full: Ful
 }
 
 /** Energies crowd at the centre: E = E_n + (G/2) tan(t), t evenly spaced, within the window. */
-function drawLine(n: number, j: number, full: FullFit, points: SelectedPoints): Curves["lines"][number] {
+function drawLine(
+  n: number,
+  j: number,
+  full: Pick<FullFit, "fit">,
+  points: SelectedPoints,
+): Curves["lines"][number] {
   const { lines, problem } = full.fit;
   const low = points.energy[0]!;
   const high = points.energy[points.energy.length - 1]!;

@@ -1,7 +1,8 @@
 export { analyse, type Analysis, type AnalysisResult } from "./analyse.ts";
-export type { Curves } from "./curves.ts";
+export { drawCurves, type Curves } from "./curves.ts";
 export { intervalFactor } from "./interval.ts";
 export { buildModel, energyOf, stateAfter, withLines } from "./ladder-model.ts";
 export type { LadderState, ModelChoices } from "./ladder-model.ts";
 export { selectPoints, type SelectedPoints } from "./select-points.ts";
 export { linesForThinning, thinPoints } from "./thin-points.ts";
+export { sortNotes } from "./describe-result.ts";

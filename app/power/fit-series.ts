@@ -25,7 +25,7 @@ import type { Protocol } from "../protocol/index.ts";
 import { chiSquareSurvival } from "../solve/index.ts";
 import type { SeriesMember } from "./read-series.ts";
 import { referenceState, type ReferenceResult } from "./reference-state.ts";
-import type { PowerIssue } from "./series-issue.ts";
+import type { PowerSeriesIssue } from "./series-issue.ts";
 
 /** One spectrum of the series in the joint fit. */
 export interface FittedMember {
@@ -41,7 +41,7 @@ export interface FittedSeries {
   readonly joint: JointFit;
   /** Series limit of each spectrum where each may have its own; null where that fit did not converge. */
   readonly gaps: { readonly value: Float64Array; readonly sigma: Float64Array } | null;
-  readonly failed: readonly { readonly label: string; readonly issues: readonly PowerIssue[] }[];
+  readonly failed: readonly { readonly label: string; readonly issues: readonly PowerSeriesIssue[] }[];
   readonly notes: readonly Note[];
 }
 
@@ -102,7 +102,7 @@ export function fitPowerSeries(
   const unit = series[0]!.spectrum.unit;
   const free: JointChoices = protocol.power.free;
   const settings: Settings = { protocol: tied, unit, choices, free, watch };
-  const failed: { label: string; issues: readonly PowerIssue[] }[] = [];
+  const failed: { label: string; issues: readonly PowerSeriesIssue[] }[] = [];
   const notes: Note[] = [];
   const works: Work[] = [];
   let before = start;
@@ -115,7 +115,7 @@ export function fitPowerSeries(
     if (typeof work === "number") {
       failed.push({
         label: member.label,
-        issues: [{ code: "power/no-lines", facts: { file: member.label, found: work } }],
+        issues: [{ code: "power-series/no-lines", facts: { file: member.label, found: work } }],
       });
       continue;
     }

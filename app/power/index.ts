@@ -15,3 +15,14 @@ export {
   type Interaction,
 } from "./blockade.ts";
 export { absorbedFraction, excitonDensity, type DensityInput } from "./density.ts";
+export {
+  readPowerSeries,
+  type PowerSeries,
+  type SeriesFile,
+  type SeriesIssue,
+  type SeriesMember,
+} from "./read-series.ts";
+export { powerByPattern, powerInFileName, powerInText } from "./power-text.ts";
+export { wordPowerSeriesIssue, type PowerSeriesIssue } from "./series-issue.ts";
+export { fitPowerSeries, type FittedMember, type FittedSeries } from "./fit-series.ts";
+export { analyseSeries, type SeriesAnalysis, type SeriesCurve } from "./analyse-series.ts";

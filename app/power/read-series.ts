@@ -13,9 +13,9 @@ import type { Protocol } from "../protocol/index.ts";
 import { readSpectrum, signalColumns, type Spectrum, type SpectrumIssue } from "../spectrum/index.ts";
 import { readTable, type HeaderFact, type Table, type TableIssue } from "../table/index.ts";
 import { microwattsPer, powerByPattern, powerInFileName, powerInText, saysDark } from "./power-text.ts";
-import type { PowerIssue } from "./series-issue.ts";
+import type { PowerSeriesIssue } from "./series-issue.ts";
 
-export type SeriesIssue = PowerIssue | TableIssue | SpectrumIssue;
+export type SeriesIssue = PowerSeriesIssue | TableIssue | SpectrumIssue;
 
 /** One input file. */
 export interface SeriesFile {
@@ -77,7 +77,7 @@ export function readPowerSeries(
   const typed = protocol.power.values_uW;
   if (typed !== null && typed.length !== entries.length)
     return failure({
-      code: "power/values-count",
+      code: "power-series/values-count",
       facts: { file: namesOf(files), found: typed.length, expected: entries.length },
     });
   const notes: Note[] = [];
@@ -98,7 +98,7 @@ export function readPowerSeries(
   const alike = members.filter((member) => {
     if (member.spectrum.unit === unit) return true;
     const facts = { file: member.label, found: inWords(member.spectrum.unit), expected: inWords(unit!) };
-    failed.push({ label: member.label, issues: [{ code: "power/other-unit", facts }] });
+    failed.push({ label: member.label, issues: [{ code: "power-series/other-unit", facts }] });
     return false;
   });
   if (new Set(alike.map((member) => member.power_uW)).size < 2) {
@@ -106,7 +106,7 @@ export function readPowerSeries(
     return failure(
       ...failed.flatMap(({ issues }) => issues),
       ...(entries.length > failed.length || failed.length === 0
-        ? [{ code: "power/too-few-powers", facts } as const]
+        ? [{ code: "power-series/too-few-powers", facts } as const]
         : []),
     );
   }
@@ -168,11 +168,11 @@ function entriesOf({ file, bytes }: SeriesFile, protocol: Protocol): Entry[] {
 
 type Found = Pick<SeriesMember, "power_uW" | "power_from">;
 
-function findPower(entry: Entry, protocol: Protocol, notes: Note[]): Result<Found, PowerIssue> {
+function findPower(entry: Entry, protocol: Protocol, notes: Note[]): Result<Found, PowerSeriesIssue> {
   const { unit, file_pattern: pattern } = protocol.power;
   const inFacts = entry.table === null ? null : factPower(entry.table.facts, unit);
   if (inFacts !== null && "issue" in inFacts && pattern === null && powerInText(entry.header, unit) === null)
-    return failure({ code: "power/unknown-unit", facts: { file: entry.label, found: inFacts.issue } });
+    return failure({ code: "power-series/unknown-unit", facts: { file: entry.label, found: inFacts.issue } });
   const inFact = inFacts !== null && "issue" in inFacts ? null : inFacts;
   const sources: [PowerSource, { power_uW: number; unit: string | null } | null][] = [
     ["file name", pattern === null ? null : powerByPattern(entry.file, pattern, unit)],
@@ -184,10 +184,10 @@ function findPower(entry: Entry, protocol: Protocol, notes: Note[]): Result<Foun
   const given = sources.filter(([, power]) => power !== null);
   const [source, power] = given[0] ?? [null, null];
   if (source === null || power === null)
-    return failure({ code: "power/no-power", facts: { file: entry.label } });
+    return failure({ code: "power-series/no-power", facts: { file: entry.label } });
   if (power.power_uW < 0)
     return failure({
-      code: "power/negative-power",
+      code: "power-series/negative-power",
       facts: { file: entry.label, found: `${power.power_uW} uW` },
     });
   const others = given.filter(

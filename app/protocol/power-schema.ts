@@ -167,6 +167,39 @@ export const powerSchema = z.strictObject({
       points: z.int().nullable(),
     }),
   ),
+  /** What was fitted together, and how. */
+  fit: z
+    .strictObject({
+      /** Parameters common to all spectra. */
+      shared: z.array(z.string()),
+      gap_eV: quantity,
+      rydberg_eV: quantity,
+      defect0: quantity,
+      defect2: quantity,
+      termination: z.enum(["gradient", "step", "cost", "iterationLimit", "cancelled", "notFinite"]),
+      chi2: z.number(),
+      dof: z.int(),
+      reduced_chi2: number,
+      iterations: z.int(),
+      sources: z.array(
+        z.strictObject({
+          label: z.string(),
+          file: z.string(),
+          sha256: z.string(),
+          power_uW: z.number(),
+          power_from: z.enum(["typed in", "column header", "header line", "file name"]),
+          points: z.int(),
+          reduced_chi2: number,
+          /** Factor of the tail. */
+          tail: number,
+          /** Lines too weak for a width of their own. */
+          held_widths: z.array(z.int()),
+        }),
+      ),
+      /** Spectra that could not take part, and why. */
+      failed: z.array(z.strictObject({ label: z.string(), message: z.string() })),
+    })
+    .optional(),
   lines: z.array(powerLineSchema),
   /** S_n ~ n^k; null with fewer than three bleaching lines. */
   exponent: scaling.nullable(),

@@ -1,5 +1,6 @@
 import { sha256, success, type Issue, type Result, type Watch } from "../base/index.ts";
 import { analyse, type Curves } from "../analysis/index.ts";
+import type { JudgeIssue, PowerSeriesIssue } from "../power/index.ts";
 import {
   resolveProtocol,
   type Protocol,
@@ -10,7 +11,12 @@ import { readSpectrum, type Spectrum, type SpectrumIssue } from "../spectrum/ind
 import { readTable, type Table, type TableIssue } from "../table/index.ts";
 
 export type TaskIssue =
-  TableIssue | SpectrumIssue | ProtocolIssue | (Issue & { readonly code: "task/cancelled" });
+  | TableIssue
+  | SpectrumIssue
+  | ProtocolIssue
+  | JudgeIssue
+  | PowerSeriesIssue
+  | (Issue & { readonly code: "task/cancelled" });
 
 /** One input file and what the user chose; `choices` is any part of a protocol, as written. */
 export interface FileRequest {

@@ -1,5 +1,6 @@
 export * from "./analyse-file.ts";
 export * from "./inspect-file.ts";
+export * from "./analyse-power.ts";
 export * from "./compare-samples.ts";
 export * from "./messages.ts";
 export * from "./host.ts";

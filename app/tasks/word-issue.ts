@@ -1,4 +1,5 @@
 import type { Wording } from "../base/index.ts";
+import { wordJudgeIssue, wordPowerSeriesIssue } from "../power/index.ts";
 import { wordProtocolIssue } from "../protocol/index.ts";
 import { wordSpectrumIssue } from "../spectrum/index.ts";
 import { wordTableIssue } from "../table/index.ts";
@@ -12,5 +13,8 @@ export function wordIssue(issue: TaskIssue): Wording {
     return wordSpectrumIssue(issue as Parameters<typeof wordSpectrumIssue>[0]);
   if (code.startsWith("protocol/"))
     return wordProtocolIssue(issue as Parameters<typeof wordProtocolIssue>[0]);
+  if (code.startsWith("power-series/"))
+    return wordPowerSeriesIssue(issue as Parameters<typeof wordPowerSeriesIssue>[0]);
+  if (code.startsWith("power/")) return wordJudgeIssue(issue as Parameters<typeof wordJudgeIssue>[0]);
   return { message: "cancelled", remedy: "start again" };
 }
