@@ -1,3 +1,4 @@
+import { diagnosticsPart } from "./diagnostics-to-text.ts";
 import type { LineResult, RunglineResult } from "../protocol/index.ts";
 import { areaUnit, signalName, signalUnitWords } from "./area-unit.ts";
 import { cautionsFor } from "./cautions.ts";
@@ -35,6 +36,7 @@ export function resultToText(result: RunglineResult): string {
     ...derivedPart(result),
     ...backgroundPart(result),
     ...fitPart(result),
+    ...diagnosticsSection(result),
     ...notesPart(result),
     ...cautionsPart(result),
   ];
@@ -163,6 +165,10 @@ function seriesPart(result: RunglineResult): string[] {
     `  chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, p = ${formatNumber(series.p, 3)}`,
     "  The standard error is statistical only; the systematic part is the spread over defensible choices.",
   ];
+  if (systematic?.area_relative !== undefined && systematic.area_relative !== null)
+    out.push(
+      `  Thickness and reflectance put ±${formatNumber(100 * systematic.area_relative, 2)} % on all areas alike (systematic).`,
+    );
   if (series.scaled !== null) {
     out.push(
       "  Scaled by the root of reduced chi square, since the law is rejected: " +
@@ -494,6 +500,11 @@ function fitPart(result: RunglineResult): string[] {
     ],
   ];
   return [...heading("Fit"), ...textTable(rows, ["left", "left"])];
+}
+
+function diagnosticsSection(result: RunglineResult): string[] {
+  const rows = diagnosticsPart(result);
+  return rows.length === 0 ? [] : [...heading("Diagnostics"), ...rows];
 }
 
 /** Only differences count, of which one is little and ten is much. */
