@@ -1,5 +1,6 @@
 export { analyse, type Analysis, type AnalysisResult } from "./analyse.ts";
 export { drawCurves, type Curves } from "./curves.ts";
+export { lineCurve } from "./line-curves.ts";
 export { intervalFactor } from "./interval.ts";
 export { buildModel, energyOf, stateAfter, withLines } from "./ladder-model.ts";
 export type { LadderState, ModelChoices } from "./ladder-model.ts";

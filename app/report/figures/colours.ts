@@ -1,0 +1,60 @@
+/**
+ * What      Colours on white paper: principal quantum number by one perceptually even scale from low to high log n,
+ *           batches by a set that colour-blind readers tell apart, each with a mark of its own.
+ * Source    viridis: van der Walt and Smith, "A better default colormap for Matplotlib", SciPy 2015 (CC0), anchors of the
+ *           published map; batches: Okabe and Ito, "Color Universal Design" (2008).
+ */
+const SCALE: readonly (readonly [number, number, number])[] = [
+  [68, 1, 84],
+  [72, 40, 120],
+  [62, 74, 137],
+  [49, 104, 142],
+  [38, 130, 142],
+  [31, 158, 137],
+  [53, 183, 121],
+  [109, 205, 89],
+  [180, 222, 44],
+  [253, 231, 37],
+];
+/** What stands out from white; the same stretch and ends as in the window's light look. */
+const STRETCH = [0.02, 0.56] as const;
+const LOWEST_N = 1.5;
+const HIGHEST_N = 22;
+
+export function paperColourOfN(n: number): string {
+  const share = Math.min(1, Math.max(0, Math.log(n / LOWEST_N) / Math.log(HIGHEST_N / LOWEST_N)));
+  const at = (STRETCH[0] + (STRETCH[1] - STRETCH[0]) * share) * (SCALE.length - 1);
+  const i = Math.min(SCALE.length - 2, Math.floor(at));
+  const mix = SCALE[i]!.map((low, k) => Math.round(low + (at - i) * (SCALE[i + 1]![k]! - low)));
+  return `#${mix.map((channel) => channel.toString(16).padStart(2, "0")).join("")}`;
+}
+
+export type Shape = "circle" | "square" | "triangle" | "diamond" | "down" | "cross" | "plus" | "bar";
+
+export interface BatchLook {
+  readonly colour: string;
+  readonly shape: Shape;
+}
+const BATCHES: readonly BatchLook[] = [
+  { colour: "#0072b2", shape: "circle" },
+  { colour: "#d55e00", shape: "square" },
+  { colour: "#009e73", shape: "triangle" },
+  { colour: "#cc79a7", shape: "diamond" },
+  { colour: "#e69f00", shape: "down" },
+  { colour: "#56b4e9", shape: "cross" },
+  { colour: "#000000", shape: "plus" },
+  { colour: "#9a8f00", shape: "bar" },
+];
+
+/** From the ninth batch on colours and marks pair up anew. */
+export function batchLook(i: number): BatchLook {
+  const round = Math.floor(i / BATCHES.length);
+  const { colour } = BATCHES[i % BATCHES.length]!;
+  return { colour, shape: BATCHES[(i + round) % BATCHES.length]!.shape };
+}
+
+export const INK = "#1c2126";
+export const MUTED = "#5a636c";
+export const GRID = "#e2e4e3";
+export const DATA = "#8a939b";
+export const ACCENT = "#b23a1e";
