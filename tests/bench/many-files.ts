@@ -17,13 +17,19 @@ import {
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { fileURLToPath } from "node:url";
-import {
-  BACKGROUND,
-  CUPROUS,
-  makeAbsorption,
-  makeGrid,
-  makeNoise,
-} from "../../fixtures/generated/make-demo.mjs";
+
+/** What the generator of the demo lends: plain JavaScript without declarations. */
+interface Generator {
+  readonly BACKGROUND: object;
+  readonly CUPROUS: object;
+  makeAbsorption(crystal: object): (energy: number) => number;
+  makeGrid(pieces: readonly (readonly number[])[], random: object): number[];
+  makeNoise(seed: number): { normal(): number };
+}
+const generator = new URL("../../fixtures/generated/make-demo.mjs", import.meta.url);
+const { BACKGROUND, CUPROUS, makeAbsorption, makeGrid, makeNoise } = (await import(
+  generator.href
+)) as Generator;
 
 const PROGRAM = fileURLToPath(new URL("../../main/rungline.mjs", import.meta.url));
 const MATERIAL = ["--material", "cuprous-oxide-yellow-p"];
