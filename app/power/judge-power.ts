@@ -79,7 +79,9 @@ export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<P
     const { area, peak, tests } = alone[line]!;
     const at = fitted.findIndex((one) => one.line === line);
     const k = fitted.length;
-    const sigmaOf = (i: number): number => Math.sqrt(joint!.covariance[i * 2 * k + i]!);
+    // Held by its bound a number has no error of its own.
+    const sigmaOf = (i: number): number | null =>
+      joint!.fit.activeBounds[i] !== 0 ? null : Math.sqrt(joint!.covariance[i * 2 * k + i]!);
     const together = joint !== null && at >= 0;
     const zero = together ? symmetric(joint.zero[at]!, sigmaOf(at), factor) : fromAlone(area, 0, factor);
     const saturation = together
@@ -103,7 +105,7 @@ export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<P
   });
 
   watch.report(0.6, "scaling with n");
-  const scaling = chooseScaling(table, lines, areaChoice);
+  const scaling = chooseScaling(table, lines, areaChoice, joint);
   const series = input.series;
   const widths = widthsByLaw(
     table,
@@ -241,7 +243,12 @@ function differenceOf(
 }
 
 /** The power law over all lines that do not rise; where it fails, over the upper ones that it describes. */
-function chooseScaling(table: LineTable, lines: readonly LineFinding[], choice: LawChoice): Scaling | null {
+function chooseScaling(
+  table: LineTable,
+  lines: readonly LineFinding[],
+  choice: LawChoice,
+  together: JointSaturation | null,
+): Scaling | null {
   const usable = lines.flatMap((one, line) =>
     one.area !== null && (one.reading === "bleaches" || one.reading === "not-seen")
       ? [{ line, found: one.area }]
@@ -251,7 +258,10 @@ function chooseScaling(table: LineTable, lines: readonly LineFinding[], choice: 
   let whole: Scaling | null = null;
   for (let from = 0; usable.length - from >= (from === 0 ? 3 : 4); from++) {
     const part = usable.slice(from);
-    const joint = fitTogether(table, LINE_QUANTITIES.area, part, choice);
+    const joint =
+      part.length === lines.length && together !== null
+        ? together
+        : fitTogether(table, LINE_QUANTITIES.area, part, choice);
     const one =
       joint === null
         ? null
@@ -314,6 +324,12 @@ function relativeCovariance(
       if (line.reading === "bleaches")
         forms[FIT_PARTS.saturation * k + i] = scaled(row(fitted.length + at), line.saturation.value!);
       forms[FIT_PARTS.area * k + i] = scaled(row(at), line.zero.value!);
+    } else if (line.area !== null) {
+      const { places, weights } = saturationForm(table, i, line.area);
+      const zero = line.area.fit.gain.slice(0, places.length);
+      if (line.reading === "bleaches")
+        forms[FIT_PARTS.saturation * k + i] = scaled({ places, weights }, line.saturation.value!);
+      forms[FIT_PARTS.area * k + i] = scaled({ places, weights: zero }, line.zero.value!);
     }
     if (line.broadening !== null)
       forms[FIT_PARTS.width * k + i] = scaled(line.broadening.zeroForm, line.broadening.zero);

@@ -149,12 +149,25 @@ export function addForms(
 /** Covariance matrix (f x f, row-major) of forms. */
 export function formsCovariance(table: LineTable, forms: readonly LinearForm[]): Float64Array {
   const f = forms.length;
+  const size = table.values.length;
   const out = new Float64Array(f * f);
-  for (let i = 0; i < f; i++) {
-    for (let j = 0; j <= i; j++) {
-      const one = formCovariance(table, forms[i]!, forms[j]!);
-      out[i * f + j] = one;
-      out[j * f + i] = one;
+  const image = new Float64Array(size);
+  for (let j = 0; j < f; j++) {
+    // C times the form once, then every other form against it.
+    image.fill(0);
+    const { places, weights } = forms[j]!;
+    for (let a = 0; a < places.length; a++) {
+      const w = weights[a]!;
+      if (w === 0) continue;
+      const row = places[a]! * size;
+      for (let x = 0; x < size; x++) image[x] = image[x]! + w * table.covariance[row + x]!;
+    }
+    for (let i = 0; i <= j; i++) {
+      const other = forms[i]!;
+      let sum = 0;
+      for (let a = 0; a < other.places.length; a++) sum += other.weights[a]! * image[other.places[a]!]!;
+      out[i * f + j] = sum;
+      out[j * f + i] = sum;
     }
   }
   return out;

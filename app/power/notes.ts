@@ -160,7 +160,7 @@ function saturationNotes(findings: Findings): Note[] {
     notes.push(
       doubt(
         "absorption-rises",
-        `power.lines[${n}].saturation_per_uW`,
+        `power.lines[n=${n}].saturation_per_uW`,
         `The absorption of n = ${n} grows with power, at least at low power: the saturation law does not hold and no volume is given.`,
         "compare up and down sweeps of the power; pump light can clean a crystal of charges",
       ),
@@ -290,9 +290,12 @@ function saturationNotes(findings: Findings): Note[] {
       Math.abs(one.chi2 - chosen.chi2) <= SPEAKS * SPEAKS &&
       Math.abs(Math.log(one.saturation_ratio ?? 1)) > 2 * precision,
   );
+  // What the user said is an assumption; what was assumed for the user is a doubt.
+  const { excitation, spot_profile: profile } = findings.input.protocol.power;
+  const raise = excitation !== null && profile !== null ? assumption : doubt;
   if (open.length > 0)
     notes.push(
-      doubt(
+      raise(
         "law-not-distinguished",
         "power.law",
         `These areas do not tell the chosen law from ${open.map((one) => `${LAW_WORDS[one.law] ?? one.law} (S times ${short(one.saturation_ratio ?? 1)})`).join(" or ")}. S and the volumes rest on power.excitation and power.spot_profile being right.`,
