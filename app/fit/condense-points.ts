@@ -1,9 +1,9 @@
 import { LEAST_POINTS, NODES, type Panel } from "../solve/index.ts";
 import type { Feature } from "./transmittance-grid.ts";
 
-/** What is left of a column's product in a panel, exp(-2 REACH): 1e-13. */
+/** A column leaves exp(-REACH) = 6e-9 of itself outside the nodes' reach, and its products exp(-2 REACH), below rounding. */
 const REACH = 19;
-/** After the lines have moved: 1e-11 is still good enough to go on with. */
+/** After the lines have moved: 1e-13 of the products is still good enough to go on with. */
 const LEAST_REACH = 15;
 
 /**
@@ -13,7 +13,7 @@ const LEAST_REACH = 15;
  * Shapes    energy (m, ascending); features: lines and edges, width is twice the distance of the pole from the real axis.
  * Units     eV.
  * Domain    m >= 1; features with width 0 ask for every point around them.
- * Accuracy  tests/app/fit/condense-points.test.ts.
+ * Accuracy  tests/app/fit/condense-spectrum.test.ts.
  * Source    Bernstein's ellipse: Trefethen, Approximation Theory and Approximation Practice (2013), chapter 8.
  */
 export function panelsFor(energy: Float64Array, features: readonly Feature[]): Panel[] {

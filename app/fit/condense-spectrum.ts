@@ -62,14 +62,18 @@ function featuresAt(problem: SpectrumProblem, theta: Float64Array): Feature[] {
   const { levels, widths } = problem.lawsAt(theta);
   const level = new Float64Array(LEVEL.size);
   const width = new Float64Array(WIDTH.size);
-  const add = (n: number): void => {
+  const add = (n: number, widthN = n): void => {
     levelLaw(n, { ...levels, defect4: 0 }, level);
-    widthLaw(n, tail.levels.defect0, widths, width);
+    widthLaw(widthN, tail.levels.defect0, widths, width);
     features.push({ energy: level[LEVEL.energy]!, width: Math.max(0, width[WIDTH.width]!) + extra });
   };
   for (const n of tail.below) add(n);
   for (let n = tail.fromN; n <= tail.toN; n++) add(n);
-  for (const { edgeN } of groupBands(tail)) add(edgeN);
+  if (tail.band)
+    for (const { edgeN, upperN, middleN } of groupBands(tail)) {
+      add(edgeN, middleN);
+      add(upperN, middleN);
+    }
   add(FAR_N);
   return features;
 }

@@ -15,7 +15,7 @@ export interface CondensedRows {
   readonly weight: Float64Array;
   /**
    * Part of sum (w y)^2, by column of data, that no function of these rows can take up: chi square of the rows + lost =
-   * that of the points (up to the rounding of that sum).
+   * that of the points.
    */
   readonly lost: Float64Array;
   /** Part of sum (w y)^2, by column of data, in the two highest polynomials of each panel: small for a smooth column. */
@@ -112,13 +112,7 @@ class PanelWork {
     const half = (x[end - 1]! - x[first]!) / 2;
     for (let i = 0; i < size; i++) t[i] = (x[first + i]! - middle) / half;
     columns.forEach((column, c) => {
-      let square = 0;
-      for (let i = 0; i < size; i++) {
-        const value = weight[first + i]! * column[first + i]!;
-        rest[c]![i] = value;
-        square += value * value;
-      }
-      out.lost[c]! += square;
+      for (let i = 0; i < size; i++) rest[c]![i] = weight[first + i]! * column[first + i]!;
     });
     // Monic orthogonal polynomials times the root of the weight, one after another.
     let norm = 0;
@@ -132,13 +126,14 @@ class PanelWork {
       let a = 0;
       for (let i = 0; i < size; i++) a += t[i]! * now[i]! * now[i]!;
       alpha[j] = a / square;
-      const unit = 1 / Math.sqrt(square);
       for (let c = 0; c < rest.length; c++) {
-        const part = unit * dot(now, rest[c]!, size);
+        const part = takeOut(now, square, rest[c]!, size);
         moment[c]![j] = part;
-        out.lost[c]! -= part * part;
         if (j >= NODES - 2) out.highest[c]! += part * part;
       }
+    }
+    for (let c = 0; c < rest.length; c++) {
+      for (let i = 0; i < size; i++) out.lost[c]! += rest[c]![i]! * rest[c]![i]!;
     }
     tridiagonalEigen(alpha, beta, vectors);
     // In ascending order of the nodes.
@@ -183,15 +178,19 @@ class PanelWork {
   }
 }
 
-function dot(a: Float64Array, b: Float64Array, size: number): number {
+/** v := v less its part along u, whose square is given; returns that part for u brought to unit length. */
+function takeOut(u: Float64Array, square: number, v: Float64Array, size: number): number {
   let even = 0;
   let odd = 0;
   let i = 0;
   for (; i + 1 < size; i += 2) {
-    even += a[i]! * b[i]!;
-    odd += a[i + 1]! * b[i + 1]!;
+    even += u[i]! * v[i]!;
+    odd += u[i + 1]! * v[i + 1]!;
   }
-  return i < size ? even + odd + a[i]! * b[i]! : even + odd;
+  if (i < size) even += u[i]! * v[i]!;
+  const factor = (even + odd) / square;
+  for (i = 0; i < size; i++) v[i] = v[i]! - factor * u[i]!;
+  return factor * Math.sqrt(square);
 }
 
 /**
