@@ -1,4 +1,4 @@
-import type { FitRunner } from "../services/index.ts";
+import type { FitRunner, RunPower } from "../services/index.ts";
 
 /** What the command line needs of the process around it; tests hand in their own. */
 export interface CommandLineIo {
@@ -15,6 +15,8 @@ export interface CommandLineIo {
   readonly workingFolder: string;
   /** `threads`: how many fits run at a time; 1 where it is not said. */
   makeRunner(threads?: number): FitRunner;
+  /** A power series; in this thread where it is not said. */
+  readonly runPower?: RunPower;
   /** The moment a run began, ISO 8601, for the provenance of a result. */
   now(): string;
 }

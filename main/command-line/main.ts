@@ -1,6 +1,7 @@
 // Single files, not the room's index: what is not needed to start is loaded when a command asks for it.
 import { OutputError } from "../services/output-error.ts";
 import { makeLaterRunner } from "../services/later-runner.ts";
+import { runPowerInThread } from "../services/power-runner.ts";
 import { makeThreadRunner } from "../services/thread-runner.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT } from "./exit-status.ts";
@@ -40,6 +41,7 @@ const io: CommandLineIo = {
           const { makePoolRunner } = await import("../services/pool-runner.ts");
           return makePoolRunner(new URL("./fit-pool-thread.mjs", import.meta.url), threads);
         }),
+  runPower: runPowerInThread(new URL("./fit-thread.mjs", import.meta.url)),
   now: () => new Date().toISOString(),
 };
 

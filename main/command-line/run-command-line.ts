@@ -7,6 +7,7 @@ import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT, UsageError } from "./exit-status.ts";
 import type { CompareOptions } from "./compare-command.ts";
 import type { FitOptions } from "./fit-command.ts";
+import type { PowerOptions } from "./power-command.ts";
 import type { ChoiceOptions } from "./choices.ts";
 import { sayFault } from "./say.ts";
 
@@ -104,6 +105,19 @@ function describeProgram(
     .action(async (files: string[], options: FitOptions) => {
       const { fitCommand } = await import("./fit-command.ts");
       end(await fitCommand(files, options, io, signal));
+    });
+
+  addChoices(
+    program
+      .command("power")
+      .description("power series to saturation and blockade: columns of one file, several files, or a folder")
+      .argument("<file...>", "spectra, folders of spectra, or patterns with * and ?"),
+  )
+    .option("--out <path>", "a file for the result; the ending says the format")
+    .addOption(new Option("--format <format>", "how the result is written").choices(["json", "csv", "text"]))
+    .action(async (files: string[], options: PowerOptions) => {
+      const { powerCommand } = await import("./power-command.ts");
+      end(await powerCommand(files, options, io, signal));
     });
 
   program

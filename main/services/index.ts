@@ -7,4 +7,5 @@ export { FAILURES_SCHEMA, mayReplace, readResultFile, type OutputKind } from "./
 export { makeInlineRunner, runFit } from "./fit-runner.ts";
 export type { FitOutcome, FitRunner, Progress } from "./fit-outcome.ts";
 export { makeThreadRunner } from "./thread-runner.ts";
+export { runPowerInline, runPowerInThread, type PowerOutcome, type RunPower } from "./power-runner.ts";
 export { programVersion } from "./version.ts";

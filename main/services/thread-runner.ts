@@ -48,7 +48,7 @@ export function makeThreadRunner(program: URL): FitRunner {
         const onMessage = (reply: WorkerReply): void => {
           if (reply.id !== id) return;
           if (reply.type === "progress") progress(reply.fraction, reply.step);
-          else if (reply.type !== "inspected") end(reply);
+          else if (reply.type !== "inspected" && reply.type !== "analysed-power") end(reply);
         };
         const onError = (thrown: unknown): void => {
           broken = null;
