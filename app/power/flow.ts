@@ -29,6 +29,7 @@ export interface Findings {
   readonly inputs: GivenInputs;
   readonly lines: readonly LineFinding[];
   readonly scaling: Scaling | null;
+  readonly widths: WidthsAtZero;
   readonly power: PowerResult;
 }
 

@@ -165,7 +165,7 @@ export function judgePower(given: PowerInput, watch: Watch = NO_WATCH): Result<P
     repeatFactor: scatter.factor,
   };
   const power = describePower(flow);
-  return success({ power, notes: describeNotes({ input, beam, inputs, lines, scaling, power }) });
+  return success({ power, notes: describeNotes({ input, beam, inputs, lines, scaling, widths, power }) });
 }
 
 function refuse(input: PowerInput): JudgeIssue[] {

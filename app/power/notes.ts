@@ -366,16 +366,22 @@ export function areaPeakDisagreement(lines: readonly LineFinding[]): { chi2: num
   return { chi2, p: known.length === 0 ? 1 : chiSquareSurvival(chi2, known.length) };
 }
 
-function volumeNotes({ power, inputs, input }: Findings): Note[] {
+function volumeNotes({ power, inputs, input, widths }: Findings): Note[] {
   const notes: Note[] = [];
   const withVolume = power.lines.filter((line) => line.blockade_volume_um3.value !== null);
   const between = power.inter_state?.volumes.some((one) => one.volume_um3.value !== null) ?? false;
+  const last = power.lines.length - 1;
+  const falling = widths.fallingPart[last] ?? 1;
+  const floor =
+    falling < 0.95
+      ? ` If the floor of the width law shortens no life, the volume of n = ${power.lines[last]!.n} is ${short(falling)} of what is given.`
+      : "";
   if ((withVolume.length > 0 || between) && inputs.lifetime === null)
     notes.push(
       doubt(
         "volume-upper-limit",
         "power.lines",
-        "The lifetime is hbar over the width. What else widens a line (a floor, the instrument, dephasing) makes it too short and the volume too large: the volumes are upper limits.",
+        `The lifetime is hbar over the width. What else widens a line (a floor, the instrument, dephasing) makes it too short and the volume too large: the volumes are upper limits.${floor}`,
         "set power.lifetime_ps if it was measured",
       ),
     );

@@ -137,6 +137,8 @@ export interface WidthsAtZero {
   readonly width: Float64Array;
   readonly forms: readonly (LinearForm | null)[];
   readonly from: readonly ("width-law" | "width" | "not determined")[];
+  /** Part of the width that falls with n, of the whole, where the law has a floor that adds; 1 without one. */
+  readonly fallingPart: Float64Array;
 }
 
 /**
@@ -155,13 +157,14 @@ export function widthsByLaw(
   const width = new Float64Array(k).fill(Number.NaN);
   const forms = new Array<LinearForm | null>(k).fill(null);
   const from = new Array<"width-law" | "width" | "not determined">(k).fill("not determined");
+  const fallingPart = new Float64Array(k).fill(1);
   for (const { one, line } of known) {
     width[line] = one.zero;
     forms[line] = one.zeroForm;
     from[line] = "width";
   }
   const usable = known.filter(({ one }) => formCovariance(table, one.zeroForm, one.zeroForm) > 0);
-  if (usable.length < 2) return { width, forms, from };
+  if (usable.length < 2) return { width, forms, from, fallingPart };
   const zeroForms = usable.map(({ one }) => one.zeroForm);
   const covariance = formsCovariance(table, zeroForms);
   const law = fitWidths({
@@ -175,7 +178,7 @@ export function widthsByLaw(
     defect2,
     testExponent: false,
   });
-  if (!law.ok || !law.value.converged) return { width, forms, from };
+  if (!law.ok || !law.value.converged) return { width, forms, from, fallingPart };
   const fit = law.value;
   const [floor, coefficient, exponent] = fit.estimates.values;
   const kind: WidthFloorKind = protocol.width.floor_kind === "gaussian" ? "gaussian" : "lorentzian";
@@ -205,6 +208,7 @@ export function widthsByLaw(
     ];
     width[line] = value;
     from[line] = "width-law";
+    if (kind === "lorentzian") fallingPart[line] = out[WIDTH.term]! / value;
     const r = fit.n.length;
     forms[line] = addForms(
       fit.n.map((m, at) => ({
@@ -213,5 +217,5 @@ export function widthsByLaw(
       })),
     );
   }
-  return { width, forms, from };
+  return { width, forms, from, fallingPart };
 }

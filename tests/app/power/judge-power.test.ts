@@ -423,3 +423,19 @@ describe("choices", () => {
     expect(!zero.ok && zero.issues[0]!.facts).toMatchObject({ key: "power.spot_diameter_um" });
   });
 });
+
+test("a floor of the widths bends the predicted exponents, and what it may do to the volumes is said", () => {
+  const judged = judge(input({ floor_eV: 3e-6, areaError: () => 0.003 }));
+  const { exponent, volume_exponent: volume, lines } = judged.power;
+  // Derived: slopes between n = 6 and 13 with widths 16 meV/n^3 + 3 ueV lie between those at the ends,
+  // 1 + 9 f and 4 + 3 f with f the part of the width that falls with n (0.961 and 0.708)
+  expect(exponent!.predicted.value!).toBeGreaterThan(1 + 9 * 0.708);
+  expect(exponent!.predicted.value!).toBeLessThan(1 + 9 * 0.961);
+  expect(volume!.predicted.value!).toBeGreaterThan(4 + 3 * 0.708);
+  expect(volume!.predicted.value!).toBeLessThan(4 + 3 * 0.961);
+  const last = lines.at(-1)!;
+  // Derived: the whole width, floor included, makes the lifetime
+  expect(Math.abs(pull(last.lifetime_ps, 6.582119569509e-4 / widthOf(13, 3e-6)))).toBeLessThan(4);
+  const note = judged.notes.find((one) => one.code === "volume-upper-limit")!;
+  expect(note.text).toContain("If the floor of the width law shortens no life");
+});
