@@ -2,6 +2,7 @@ import type { LineResult, RunglineResult } from "../protocol/index.ts";
 import { areaUnit, signalUnitWords } from "./area-unit.ts";
 import { csvLine } from "./csv.ts";
 import { gravestFirst } from "./notes.ts";
+import { powerRows } from "./power-to-csv.ts";
 
 type Quantity = LineResult["energy_eV"];
 type Cell = string | number | boolean | null;
@@ -207,6 +208,7 @@ function resultRows(result: RunglineResult): string {
   for (const note of gravestFirst(result.notes))
     words("note", note.code, `${note.level} about ${note.about}: ${note.text} Remedy: ${note.remedy}`);
   for (const [key, value] of flatten(result.protocol, "")) words("protocol", key, String(value));
+  powerRows(result, { row, number, words });
   words("run", "version", result.run.version);
   words("run", "node", result.run.node);
   words("run", "started", result.run.started);

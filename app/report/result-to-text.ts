@@ -16,6 +16,7 @@ import {
   type EnergyUnit,
 } from "./format-quantity.ts";
 import { gravestFirst } from "./notes.ts";
+import { powerPart } from "./power-to-text.ts";
 import { percent, protocolInWords } from "./protocol-in-words.ts";
 import { labelled, textTable, wrap, type Align } from "./text-table.ts";
 
@@ -34,6 +35,7 @@ export function resultToText(result: RunglineResult): string {
     ...tailPart(result),
     ...linesPart(result),
     ...derivedPart(result),
+    ...powerPart(result),
     ...backgroundPart(result),
     ...fitPart(result),
     ...diagnosticsSection(result),
@@ -67,7 +69,7 @@ function header(result: RunglineResult): string[] {
   ];
 }
 
-function columnsInWords(result: RunglineResult): string {
+export function columnsInWords(result: RunglineResult): string {
   const { columns } = result.reading;
   if (columns.length === 0) return "no columns named";
   return columns
@@ -78,7 +80,7 @@ function columnsInWords(result: RunglineResult): string {
     .join("; ");
 }
 
-function noiseInWords(result: RunglineResult): string {
+export function noiseInWords(result: RunglineResult): string {
   const { source, median_sigma } = result.reading.noise;
   const unit = signalUnitWords(result.reading.signal_unit);
   const from =
@@ -89,7 +91,7 @@ function noiseInWords(result: RunglineResult): string {
   return `${formatNumber(median_sigma, 3)}${unit === "" ? "" : ` ${unit}`} a point in the median (${from})`;
 }
 
-function statusInWords(result: RunglineResult): string {
+export function statusInWords(result: RunglineResult): string {
   const why = result.fit === null ? "" : ` (stopped by ${TERMINATION_WORDS[result.fit.termination]})`;
   switch (result.status) {
     case "converged":
@@ -101,20 +103,21 @@ function statusInWords(result: RunglineResult): string {
   }
 }
 
-const TERMINATION_WORDS: Readonly<Record<NonNullable<RunglineResult["fit"]>["termination"], string>> = {
-  gradient: "a small gradient",
-  step: "a small step",
-  cost: "a small change of chi square",
-  iterationLimit: "the limit of iterations",
-  cancelled: "the user",
-  notFinite: "a number that is not finite",
-};
+export const TERMINATION_WORDS: Readonly<Record<NonNullable<RunglineResult["fit"]>["termination"], string>> =
+  {
+    gradient: "a small gradient",
+    step: "a small step",
+    cost: "a small change of chi square",
+    iterationLimit: "the limit of iterations",
+    cancelled: "the user",
+    notFinite: "a number that is not finite",
+  };
 
 function heading(text: string): string[] {
   return ["", text, "-".repeat(Array.from(text).length)];
 }
 
-function isOneSigma(level: number): boolean {
+export function isOneSigma(level: number): boolean {
   return Math.abs(level - 0.6827) < 0.002;
 }
 
@@ -263,14 +266,14 @@ function pure(quantity: Quantity): string {
 }
 
 /** In the unit of its neighbour where that is small enough, else in one of its own. */
-function systematicWords(value_eV: number | null, given: EnergyUnit | null): string {
+export function systematicWords(value_eV: number | null, given: EnergyUnit | null): string {
   if (value_eV === null) return NOT_DETERMINED_WORDS;
   const unit = given ?? energyUnit(value_eV);
   return `±${formatNumber(value_eV * unit.perElectronvolt, 2)} ${unit.name}`;
 }
 
 /** Both ends to the place of the standard error, so that they can be laid beside the value. */
-function interval(quantity: Quantity, unit: EnergyUnit): string {
+export function interval(quantity: Quantity, unit: EnergyUnit): string {
   const { low, high, sigma } = scaleQuantity(quantity, unit.perElectronvolt);
   if (low === null || high === null) return NOT_DETERMINED_WORDS;
   const spread = sigma !== null && sigma > 0 ? sigma : (high - low) / 2;
@@ -402,7 +405,7 @@ function linesPart(result: RunglineResult): string[] {
   ];
 }
 
-function smallestUnit(values: readonly (number | null)[]): EnergyUnit {
+export function smallestUnit(values: readonly (number | null)[]): EnergyUnit {
   const known = values.filter((value): value is number => value !== null && value > 0);
   const median = [...known].sort((a, b) => a - b)[Math.floor(known.length / 2)];
   return median === undefined || median < 2e-3 ? MICROELECTRONVOLT : MILLIELECTRONVOLT;
@@ -508,7 +511,7 @@ function diagnosticsSection(result: RunglineResult): string[] {
 }
 
 /** Only differences count, of which one is little and ten is much. */
-function criterion(value: number | null): string {
+export function criterion(value: number | null): string {
   return value === null ? NOT_DETERMINED_WORDS : value.toFixed(1);
 }
 
