@@ -163,7 +163,14 @@ function judgeReadings(
       watch,
     );
     const { full } = fit;
-    return { fit, reading: { ...full, unassigned: rough.assignment.unmatched.length } };
+    return {
+      fit,
+      reading: {
+        ...full,
+        unassigned: rough.assignment.unmatched.length,
+        shutOut: shutOut(peaks, fit.points),
+      },
+    };
   };
   watch.report(0.2, "climbing the ladder");
   const first = climb(assignments[0]!);
@@ -178,6 +185,7 @@ function judgeReadings(
       ...one.climbed,
       range: judgeLevels(one.climbed.fit, free),
       unassigned: one.assignment.unmatched.length,
+      shutOut: shutOut(peaks, one.points),
     };
     return { one, reading };
   });
@@ -204,6 +212,14 @@ function judgeReadings(
   const others = [{ state: other.fit.full.state, excess }];
   const same = sameNumbers(best.fit.full.state, other.fit.full.state);
   return { ...alone, notes: same ? [] : readingNotes(best.fit.full.state, others, false) };
+}
+
+/** Peaks that a window leaves out at its lower end, as chi square: what is not fitted must not count as explained. */
+function shutOut(peaks: readonly Peak[], points: SelectedPoints): number {
+  const low = points.energy[0]!;
+  return peaks
+    .filter((peak) => peak.energy_eV < low)
+    .reduce((sum, peak) => sum + peak.significance * peak.significance, 0);
 }
 
 interface RoughReading {

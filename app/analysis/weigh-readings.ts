@@ -10,6 +10,8 @@ export interface FittedReading {
   readonly range: RangeChoice | null;
   /** Found lines inside the series that have no n in this reading. */
   readonly unassigned: number;
+  /** What found lines below the window would have cost inside it: the squares of their significances. */
+  readonly shutOut: number;
 }
 
 /** What a line that is left out of the law, missing inside the ladder or foreign to it is worth in chi square. */
@@ -33,7 +35,12 @@ export function weighReading(reading: FittedReading, points: number, scale: numb
   const outside =
     range === null ? ns.length : ns.filter((n) => n < range.fit_n[0] || n > range.fit_n[1]).length;
   const law = range === null ? 0 : range.fit.chi2;
-  return (reduced * points) / scale + law + COST_OF_EXCEPTION * (absent + outside + reading.unassigned);
+  return (
+    (reduced * points) / scale +
+    law +
+    reading.shutOut +
+    COST_OF_EXCEPTION * (absent + outside + reading.unassigned)
+  );
 }
 
 /** Whether a reading gives reason to try others: a law that fails, a fit that fails, lines without n, a defect near the edge. */

@@ -28,7 +28,7 @@ for (let seed = first; seed < first + count; seed++) {
   if (off && !grave) silent++;
   if (!off && verdict.outcome !== "none" && (verdict.converged || verdict.outcome === "few")) continue;
   console.log(
-    `${seed} ${one.preset}, ${one.count} lines to n = ${one.visible}` +
+    `${seed} ${one.preset}, ${one.seen} of ${one.count} lines to n = ${one.visible}` +
       `${one.missing === null ? "" : `, ${one.missing} missing`}${one.spurious ? ", one foreign" : ""}, ${one.background}: ` +
       `${verdict.outcome}, ${verdict.result.status}, n ${verdict.result.lines.map((line) => line.n).join(",")}, ` +
       `pulls ${verdict.pulls.map((pull) => pull.toFixed(1)).join(" ") || "-"}, ${verdict.doubts.join(" + ") || "SILENT"}`,

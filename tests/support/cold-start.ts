@@ -16,8 +16,10 @@ export interface ColdStart {
   readonly seed: number;
   readonly preset: string;
   readonly series: SyntheticSeries;
-  /** Lines of the series that stand out, the missing one not counted. */
+  /** Lines of the series that were to stand out, the missing one not counted. */
   readonly count: number;
+  /** Of these, lines that a matched filter against a smooth surrounding sees with six standard errors or more. */
+  readonly seen: number;
   readonly visible: number;
   readonly missing: number | null;
   readonly spurious: boolean;
@@ -26,7 +28,7 @@ export interface ColdStart {
 }
 
 export interface ColdVerdict {
-  /** `few`: no series claimed where fewer than three lines stand out; `none`: not claimed although there are more. */
+  /** `few`: no series claimed where fewer than three lines can be seen; `none`: not claimed although there are more. */
   readonly outcome: "right" | "few" | "none" | "wrong";
   readonly converged: boolean;
   readonly doubts: readonly string[];
@@ -131,8 +133,12 @@ export function coldStart(seed: number): ColdStart {
     };
   }
   series = { ...series, background };
+  const spectrum = makeSpectrum(series, { grid, sigma, seed: seed + 1_000_003 });
+  let seen = 0;
+  for (let n = firstN; n <= visible; n++) if (standsOut(series, n, spectrum.energy, sigma)) seen++;
   return {
     seed,
+    seen,
     preset,
     series,
     count: standing - (missing === null ? 0 : 1),
@@ -141,11 +147,39 @@ export function coldStart(seed: number): ColdStart {
     spurious,
     background: ["quadratic", "exponential", "root", "sine"][shape]!,
     bytes: spectrumFile(
-      makeSpectrum(series, { grid, sigma, seed: seed + 1_000_003 }),
+      spectrum,
       sigma,
       kind === 2 ? "Photon energy (eV),Optical depth" : "Photon energy (eV),alpha (1/cm)",
     ),
   };
+}
+
+/**
+ * Height of a line over the standard error that it would have beside a parabola within two and a half widths: what could be
+ * seen there at all.
+ */
+function standsOut(series: SyntheticSeries, n: number, energies: Float64Array, sigma: number): boolean {
+  const center = energyOf(series, n);
+  const width = widthOf(series, n);
+  const inside = energies.filter((energy) => Math.abs(energy - center) < 2.5 * width);
+  const u = inside.map((energy) => (energy - center) / width);
+  const line = u.map((one) => 1 / (1 + 4 * one * one));
+  const basis: Float64Array[] = [];
+  for (const power of [0, 1, 2]) {
+    const column = u.map((one) => one ** power);
+    for (const known of [...basis]) subtract(column, known);
+    const norm = Math.sqrt(column.reduce((sum, one) => sum + one * one, 0));
+    if (norm > 0) basis.push(column.map((one) => one / norm));
+  }
+  for (const known of basis) subtract(line, known);
+  const left = Math.sqrt(line.reduce((sum, one) => sum + one * one, 0));
+  const height = (2 * areaOf(series, n)) / (Math.PI * width);
+  return (height * left) / sigma > 6;
+}
+
+function subtract(column: Float64Array, unit: Float64Array): void {
+  const dot = column.reduce((sum, one, i) => sum + one * unit[i]!, 0);
+  for (let i = 0; i < column.length; i++) column[i]! -= dot * unit[i]!;
 }
 
 /** Runs the main job with the preset alone. A line must be nearer to its own place than to its neighbours', and exist. */
@@ -171,7 +205,7 @@ export function judgeColdStart(one: ColdStart): ColdVerdict {
         pulls.push((quantity.value - truth) / quantity.sigma);
   }
   return {
-    outcome: result.series === null ? (one.count < 3 ? "few" : "none") : wrong ? "wrong" : "right",
+    outcome: result.series === null ? (one.seen < 3 ? "few" : "none") : wrong ? "wrong" : "right",
     converged: result.status === "converged",
     doubts: doubtsOf(result).filter((code) => !MILD.includes(code)),
     pulls,
