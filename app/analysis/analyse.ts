@@ -1,5 +1,5 @@
 import { doubt, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
-import type { SpectrumFit } from "../fit/index.ts";
+import { fitSpectrum, type SpectrumFit } from "../fit/index.ts";
 import { strength } from "../laws/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
@@ -10,8 +10,9 @@ import { describeReading, describeResult, sortNotes } from "./describe-result.ts
 import { presetNotes } from "./find-doubts.ts";
 import { findPeaks, type Peak } from "./find-peaks.ts";
 import { fitEveryPoint, type FullFit } from "./fit-full.ts";
-import type { LadderState, ModelChoices } from "./ladder-model.ts";
+import { buildModel, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { judgeLevels } from "./level-range.ts";
+import { asksForFringes, findFringes, givenPeriod, startWave, withoutWave } from "./fringes.ts";
 import { fitInDomain } from "./measured-domain.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
@@ -48,7 +49,7 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     protocol.window_eV?.[0] ?? -Infinity,
     protocol.window_eV?.[1] ?? Infinity,
   );
-  const peaks = findPeaks(everything.energy, everything.signal, everything.sigma);
+  let peaks = findPeaks(everything.energy, everything.signal, everything.sigma);
   stopIfCancelled(watch);
   watch.report(0.15, "assigning n");
   const assignmentChoices: AssignmentChoices = {
@@ -58,7 +59,14 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
     // The peaks speak for n whether or not the user wants all of them as lines of their own.
     highestN: Math.max(protocol.lines.max_n, HIGHEST_N_JUDGED),
   };
-  const listed = listAssignments(peaks, assignmentChoices, MOST_READINGS);
+  let listed = listAssignments(peaks, assignmentChoices, MOST_READINGS);
+  if (listed.length === 0 && asksForFringes(protocol)) {
+    const flat = withoutWave(everything, givenPeriod(protocol));
+    if (flat !== null) {
+      peaks = findPeaks(everything.energy, flat, everything.sigma);
+      listed = listAssignments(peaks, assignmentChoices, MOST_READINGS);
+    }
+  }
   const pair =
     listed.length === 0 && protocol.material.first_n !== null
       ? assignTwoPeaks(peaks, assignmentChoices)
@@ -144,13 +152,21 @@ function judgeReadings(
     stopIfCancelled(watch);
     const start = startLadder(peaks, assignment, protocol);
     const points = fitWindow(spectrum, protocol, start);
-    const thinned = thinPoints(points, linesForThinning(start, protocol));
-    return {
-      assignment,
-      start,
-      points,
-      climbed: climbLadder(thinned, start, free, spectrum.unit, choices, watch),
+    const from = (state: LadderState): RoughReading => {
+      const finest = state.fringes === undefined ? Infinity : state.fringes.period / BINS_A_FRINGE;
+      const thinned = thinPoints(points, linesForThinning(state, protocol), undefined, finest);
+      const climbed = climbLadder(thinned, state, free, spectrum.unit, choices, watch);
+      return { assignment, start: state, points, climbed };
     };
+    if (!asksForFringes(protocol)) return from(start);
+    const given = givenPeriod(protocol);
+    if (given !== null) return from({ ...start, fringes: startWave(points, given) });
+    const without = from(start);
+    const model = buildModel(points, without.climbed.state, free, spectrum.unit, choices);
+    const { residuals } = fitSpectrum(points, model.spec, model.start, { ...SEARCH, watch }).solution;
+    stopIfCancelled(watch);
+    const seen = findFringes(points.energy, residuals);
+    return seen === null ? without : from({ ...start, fringes: startWave(points, seen.period_eV) });
   };
   const finish = (rough: RoughReading): JudgedFit => {
     const fit = fitWithTailOrWithout(
@@ -213,6 +229,11 @@ function judgeReadings(
   const same = sameNumbers(best.fit.full.state, other.fit.full.state);
   return { ...alone, notes: same ? [] : readingNotes(best.fit.full.state, others, false) };
 }
+
+/** Bins of the preparing fits on a period of fringes. */
+const BINS_A_FRINGE = 16;
+/** The fit whose residuals are searched for fringes. */
+const SEARCH = { maxIterations: 15, gradientTolerance: 1e-4, costTolerance: 1e-6 };
 
 /** Peaks that a window leaves out at its lower end, as chi square: what is not fitted must not count as explained. */
 function shutOut(peaks: readonly Peak[], points: SelectedPoints): number {

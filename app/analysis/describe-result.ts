@@ -36,6 +36,7 @@ import {
 import { describeDiagnostics } from "./diagnostics.ts";
 import { findDoubts } from "./find-doubts.ts";
 import type { Peak } from "./find-peaks.ts";
+import { FRINGE_PERIOD } from "./fringes.ts";
 import type { FullFit } from "./fit-full.ts";
 import { intervalFactor } from "./interval.ts";
 import type { ModelChoices } from "./ladder-model.ts";
@@ -147,7 +148,7 @@ export function describeResult(
     watch.report(0.85 + (0.14 * done) / of, `drawing spectra anew, ${done} of ${of}`),
   );
   const parameters = parameterCount(fit);
-  const criteria = informationCriteria(solution.chi2, m, parameters);
+  const criteria = informationCriteria(solution.chi2, m, parameters + (full.domain.parts?.length ?? 0));
   const lag1 = neighbourCorrelation(solution.residuals);
   const fitPart: NonNullable<RunglineResult["fit"]> = {
     domain: full.domain.name,
@@ -170,7 +171,7 @@ export function describeResult(
     tolerances: finiteOnly(solution.tolerances),
     condition: Number.isFinite(solution.condition) ? solution.condition : null,
     rank: solution.rank,
-    parameters,
+    parameters: parameters + (full.domain.parts?.length ?? 0),
     window_eV: [points.energy[0]!, points.energy[m - 1]!],
   };
   const tail: RunglineResult["tail"] =
@@ -213,12 +214,24 @@ export function describeResult(
       derivedParts.derived === null
         ? null
         : { ...derivedParts.derived, radius_um: [...derivedParts.derived.radius_um] },
-    background: fit.background.map((column) => ({
-      term: column.term,
-      name: column.name,
-      unit: column.unit,
-      quantity: quantity(column.value, column.sigma),
-    })),
+    background: [
+      ...fit.background.map((column) => ({
+        term: column.term,
+        name: column.name,
+        unit: column.unit,
+        // The column of the period holds what is still to be added to it.
+        quantity: quantity(
+          column.value + (column.name === FRINGE_PERIOD ? (full.fringesAt ?? 0) : 0),
+          column.sigma,
+        ),
+      })),
+      ...(full.domain.parts ?? []).map(({ term, name, unit, value, sigma }) => ({
+        term,
+        name,
+        unit,
+        quantity: quantity(value, sigma),
+      })),
+    ],
     diagnostics: describeDiagnostics(full, protocol),
     ...(drawn === null ? {} : { resampled: drawn.resampled }),
   };

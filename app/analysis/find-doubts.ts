@@ -8,7 +8,9 @@ import { LEAST_SIGNIFICANCE } from "./climb-ladder.ts";
 import type { Peak } from "./find-peaks.ts";
 import { pointJitter } from "./axis-jitter.ts";
 import type { FullFit } from "./fit-full.ts";
+import { findFringes, fringeNotes } from "./fringes.ts";
 import { energyOf } from "./ladder-model.ts";
+import { depthPerSignal } from "./light.ts";
 import { findSatellites } from "./satellites.ts";
 
 type Fit = NonNullable<RunglineResult["fit"]>;
@@ -38,6 +40,7 @@ export function findDoubts(input: DoubtInput): Note[] {
     ...doubtsOfTail(input),
     ...doubtsOfSampling(input),
     ...doubtsOfUnexplained(input),
+    ...doubtsOfFringes(input),
     ...presetNotes(input.protocol),
   ];
 }
@@ -220,7 +223,9 @@ function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: Dou
           Math.abs(energy.value - peak.energy_eV) < 1.5 * Math.max(width.value, peak.width_eV),
       ),
     );
-    if (owner || explained === true) continue;
+    // Crests of fringes that are in the model were peaks too.
+    const period = full.domain.fringes ?? full.state.fringes?.period ?? Infinity;
+    if (owner || explained === true || peak.width_eV > CREST * period) continue;
     notes.push(
       doubt(
         "line-unassigned",
@@ -232,6 +237,9 @@ function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: Dou
   }
   return notes;
 }
+
+/** A crest is at least this part of the period wide. */
+const CREST = 0.15;
 
 function doubtsOfTail({ tail, full, protocol }: DoubtInput): Note[] {
   if (tail === null && protocol.tail.model === "law") {
@@ -285,6 +293,28 @@ function doubtsOfSampling({ points, full }: DoubtInput): Note[] {
       "measure with a finer step there",
     ),
   ];
+}
+
+function doubtsOfFringes({ points, full, protocol, spectrum }: DoubtInput): Note[] {
+  const { residuals, fitted } = full.fit.solution;
+  const wave = full.state.fringes;
+  const period = full.domain.fringes ?? wave?.period ?? null;
+  const known =
+    period === null
+      ? null
+      : {
+          period,
+          how: full.domain.fringes === undefined ? ("additive" as const) : ("multiplicative" as const),
+        };
+  const seen = known === null ? findFringes(points.energy, residuals) : null;
+  let low = Infinity;
+  let high = -Infinity;
+  for (const value of fitted) {
+    low = Math.min(low, value);
+    high = Math.max(high, value);
+  }
+  const depth = depthPerSignal(spectrum);
+  return fringeNotes(known, seen, depth === null ? null : depth * (high - low), full.state, protocol);
 }
 
 /** Refractive index where the protocol names neither index nor permittivity; common practice, no source. */

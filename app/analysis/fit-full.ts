@@ -10,6 +10,7 @@ import {
 import type { Protocol } from "../protocol/index.ts";
 import { fitStrengths, fitWidths, type RangeChoice } from "../series/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
+import { sameWave } from "./fringes.ts";
 import { leastSignificance, significances, type Climbed } from "./climb-ladder.ts";
 import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces, judgeLevels, withLevelRange } from "./level-range.ts";
@@ -21,6 +22,16 @@ export interface FitDomain {
   readonly notes: readonly Note[];
   /** Codes of notes of the reading that hold for a fit of the absorption only. */
   readonly answered: readonly string[];
+  /** What the light has beside its absorption: fringes, stray light; as rows of the background. */
+  readonly parts?: readonly {
+    readonly term: string;
+    readonly name: string;
+    readonly unit: string;
+    readonly value: number;
+    readonly sigma: number;
+  }[];
+  /** Period of fringes that were fitted to the light. */
+  readonly fringes?: number;
 }
 
 const ABSORPTION: FitDomain = { name: "alpha", notes: [], answered: [] };
@@ -32,6 +43,8 @@ export interface FullFit extends Climbed {
   readonly solveSeconds: number;
   /** Whether the laws of the tail and those of the lines came to agree. */
   readonly selfConsistent: boolean;
+  /** Period that the columns of additive fringes were made with. */
+  readonly fringesAt?: number;
   /** What tying widths or areas to their laws cost against the fit before, with every one free. */
   readonly ties?: { readonly what: string; readonly chi2: number; readonly dof: number };
   /** The fit before such ties, whose lines judge the laws. */
@@ -159,8 +172,19 @@ function fitFreeLevels(
     let keep = state.ns.length;
     if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
     const dropped = keep < state.ns.length;
-    settled = !dropped && agrees(model.state, stateAfter(fit, model.state), next.include, range);
-    result = { fit, state: next, range, solveSeconds, selfConsistent: settled, domain: ABSORPTION };
+    settled =
+      !dropped &&
+      sameWave(model.state.fringes, next.fringes) &&
+      agrees(model.state, stateAfter(fit, model.state), next.include, range);
+    result = {
+      fit,
+      state: next,
+      range,
+      solveSeconds,
+      selfConsistent: settled,
+      domain: ABSORPTION,
+      ...(model.state.fringes === undefined ? {} : { fringesAt: model.state.fringes.period }),
+    };
     state = dropped ? withLines(next, state.ns.slice(0, keep)) : next;
   }
   if (result === null) throw new Error("no pass was made");
@@ -197,6 +221,7 @@ function tieLevels(
       range: tiedRange(fit, free.fit, range, protocol.axis.jitter_eV),
       solveSeconds,
       selfConsistent,
+      ...(model.state.fringes === undefined ? {} : { fringesAt: model.state.fringes.period }),
     };
     if (selfConsistent) break;
   }

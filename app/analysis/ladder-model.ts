@@ -6,6 +6,7 @@ import {
   widthLink,
   type FitPoints,
   type FitStart,
+  type FringeWave,
   type LawLinks,
   type LevelValues,
   type LinkData,
@@ -18,6 +19,7 @@ import { levelEnergy, levelSpacing, WIDTH, widthLaw } from "../laws/index.ts";
 import type { BackgroundTerm, Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { constraintSpec, lineRules, speaking, tiedEnergies } from "./constraints.ts";
+import { waveAfter } from "./fringes.ts";
 import { slitOf } from "./instrument.ts";
 
 /**
@@ -37,6 +39,8 @@ export interface LadderState {
   readonly widths: WidthValues;
   readonly asymmetry: number;
   readonly factor: number;
+  /** Additive fringes, once their period is known. */
+  readonly fringes?: FringeWave;
 }
 
 export interface ModelChoices {
@@ -121,7 +125,14 @@ export function buildModel(
       ? { values: levels.values, count: 2 + defectCount, tiedNs: tiedEnergies(state, protocol) }
       : null,
     tail: choices.tail ? describeTail(points, updated, protocol, links, choices) : null,
-    background: backgroundColumns(choices.background, points.energy, unit, levels.values.gap),
+    background: backgroundColumns(
+      choices.background,
+      points.energy,
+      unit,
+      levels.values.gap,
+      undefined,
+      state.fringes ?? null,
+    ),
     ...(isConstrained(constraints) ? { constraints } : {}),
   };
   // A line that leaves its own place has become another line or part of the background.
@@ -253,6 +264,7 @@ export function stateAfter(fit: SpectrumFit, before: LadderState): LadderState {
     widths: laws?.widths ?? before.widths,
     asymmetry: fit.asymmetry.value,
     factor: fit.factor?.value ?? before.factor,
+    ...(before.fringes === undefined ? {} : { fringes: waveAfter(fit, before.fringes) }),
   };
 }
 

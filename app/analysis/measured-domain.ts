@@ -3,13 +3,17 @@ import {
   backgroundColumns,
   fitTransmittance,
   slitBias,
+  type FittedValue,
   type FitPoints,
   type MeasuredLight,
+  type TransmittanceFit,
 } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
-import { fitEveryPoint, type FullFit } from "./fit-full.ts";
+import { fitEveryPoint, type FitDomain, type FullFit } from "./fit-full.ts";
+import { ADDITIVE_RANGE, plateReflectance } from "./fringes.ts";
 import { slitOf, withoutSlit } from "./instrument.ts";
+import { depthPerSignal } from "./light.ts";
 import type { ModelChoices } from "./ladder-model.ts";
 import type { SelectedPoints } from "./select-points.ts";
 
@@ -51,13 +55,19 @@ export function fitInDomain(
   const depth = depthPerSignal(spectrum);
   const noise = noiseOfLight(spectrum, points);
   const { domain } = protocol.lines;
-  const needed = slit > 0 || (spectrum.transmittance !== null && noise.noisy + noise.dark > 0);
+  const stray = protocol.signal.stray_light;
+  const plate = plateFringes(full, spectrum, protocol, depth);
+  const needed =
+    slit > 0 ||
+    (stray !== null && stray !== 0) ||
+    plate !== null ||
+    (spectrum.transmittance !== null && noise.noisy + noise.dark > 0);
   const asSignal = (notes: readonly Note[]): DomainFit => ({
     full: {
       ...full,
       domain: {
         name: "alpha",
-        notes: [...notes, ...(needed ? biasNotes(full, slit, depth, noise) : [])],
+        notes: [...notes, ...(needed ? biasNotes(full, slit, depth, noise, stray) : [])],
         answered: [],
       },
     },
@@ -71,23 +81,41 @@ export function fitInDomain(
   const light = {
     ...lightOf(spectrum, selected, full, depth, instrument.stdAt(gap)),
     slitReference: instrument.grows ? gap : null,
+    stray: stray === null ? null : { value: stray === "free" ? STRAY_START : stray, free: stray === "free" },
+    fringes: plate,
   };
   const frame = [light.energy[0]!, light.energy[light.energy.length - 1]!] as const;
   let last = full.fit;
   let linearised: FitPoints = selected;
+  let parts: DomainParts = { rows: [], fringes: null, atZero: false };
+  // Fringes of the light itself take the place of those added to the signal.
+  const { fringes: _, ...state } = full.state;
+  const how: ModelChoices =
+    plate === null
+      ? choices
+      : { ...choices, background: choices.background.filter((term) => term.term !== "fringes") };
   const measured = fitEveryPoint(
     selected,
-    full.state,
+    plate === null ? full.state : state,
     withoutSlit(protocol),
     spectrum.unit,
-    choices,
+    how,
     watch,
     report,
     (model) => {
       const columns = (energy: Float64Array): ReturnType<typeof backgroundColumns> =>
-        backgroundColumns(choices.background, energy, spectrum.unit, model.state.levels.gap, frame);
-      const done = fitTransmittance(light, model.spec, columns, model.start, last, { watch });
+        backgroundColumns(
+          how.background,
+          energy,
+          spectrum.unit,
+          model.state.levels.gap,
+          frame,
+          model.state.fringes ?? null,
+        );
+      const started = startFrom(light, parts);
+      const done = fitTransmittance(started, model.spec, columns, model.start, last, { watch });
       last = done.fit;
+      parts = partsOf(done);
       linearised = done.linearised;
       return done.fit;
     },
@@ -99,18 +127,115 @@ export function fitInDomain(
       ...measured,
       domain: {
         name: "transmittance",
-        notes: [domainNote(spectrum, protocol, slit, noise, depth)],
+        notes: [
+          domainNote(spectrum, protocol, slit, noise, depth, plate !== null),
+          ...(parts.atZero ? [strayNote()] : []),
+        ],
         answered: ["saturated-points", "low-transmission"],
+        parts: parts.rows,
+        ...(parts.fringes === null ? {} : { fringes: parts.fringes.period }),
       },
     },
     points: { ...linearised, place: selected.place },
   };
 }
 
-/** Optical depth of one unit of the signal; null where alpha was read and the thickness is not known. */
-function depthPerSignal(spectrum: Spectrum): number | null {
-  if (spectrum.transmittance !== null) return spectrum.transmittance.thickness_cm;
-  return spectrum.unit === "1" ? 1 : spectrum.thickness_cm;
+/** Stray light that is not known starts here. */
+const STRAY_START = 1e-3;
+
+type Fringes = NonNullable<MeasuredLight["fringes"]>;
+
+interface DomainParts {
+  readonly rows: NonNullable<FitDomain["parts"]>;
+  readonly fringes: Fringes["start"] | null;
+  readonly stray?: number;
+  readonly atZero: boolean;
+}
+
+/**
+ * Fringes of the light, where they were found, the surfaces are known and the optical depth varies too much for adding
+ * them to the signal (or the light is fitted anyway): -ln T is about alpha d - 2 v R x cos phi.
+ */
+function plateFringes(
+  full: FullFit,
+  spectrum: Spectrum,
+  protocol: Protocol,
+  depth: number | null,
+): Fringes | null {
+  const wave = full.state.fringes;
+  const R = plateReflectance(spectrum, protocol);
+  if (wave === undefined || R === null || !(R > 0) || depth === null) return null;
+  const { fitted } = full.fit.solution;
+  const low = Math.min(...fitted) * depth;
+  const high = Math.max(...fitted) * depth;
+  if (high - low < ADDITIVE_RANGE && protocol.lines.domain !== "transmittance") return null;
+  const mean = fitted.reduce((sum, value) => sum + Math.exp(-Math.max(0, depth * value)), 0) / fitted.length;
+  const visibility = (depth * Math.hypot(wave.cos, wave.sin)) / (2 * R * mean);
+  return {
+    reflectance: R,
+    reference: wave.reference,
+    start: {
+      visibility: Math.min(0.95, Math.max(0.02, visibility)),
+      period: wave.period,
+      phase: Math.atan2(wave.sin, -wave.cos),
+    },
+  };
+}
+
+/** The light with its own parameters where the pass before left them. */
+function startFrom(light: MeasuredLight, parts: DomainParts): MeasuredLight {
+  const { fringes, stray } = light;
+  return {
+    ...light,
+    fringes:
+      fringes === null || fringes === undefined || parts.fringes === null
+        ? (fringes ?? null)
+        : { ...fringes, start: parts.fringes },
+    stray:
+      stray?.free === true && parts.stray !== undefined
+        ? { value: parts.stray, free: true }
+        : (stray ?? null),
+  };
+}
+
+function partsOf({ fringes, stray }: TransmittanceFit): DomainParts {
+  const row = (
+    term: string,
+    name: string,
+    unit: string,
+    { value, sigma }: FittedValue,
+  ): DomainParts["rows"][number] => ({ term, name, unit, value, sigma });
+  return {
+    rows: [
+      ...(fringes === null
+        ? []
+        : [
+            row("fringes", "visibility", "1", fringes.visibility),
+            row("fringes", "fringe_period", "eV", fringes.period),
+            row("fringes", "phase", "rad", fringes.phase),
+          ]),
+      ...(stray === null ? [] : [row("stray-light", "stray", "1", stray)]),
+    ],
+    fringes:
+      fringes === null
+        ? null
+        : {
+            visibility: fringes.visibility.value,
+            period: fringes.period.value,
+            phase: fringes.phase.value,
+          },
+    ...(stray === null ? {} : { stray: Math.max(stray.value, 1e-6) }),
+    atZero: stray?.atZero ?? false,
+  };
+}
+
+function strayNote(): Note {
+  return assumption(
+    "stray-light-none",
+    ABOUT,
+    "Stray light was free and ended at zero: the data show none.",
+    "set signal.stray_light=null to leave it out",
+  );
 }
 
 interface Noise {
@@ -194,10 +319,19 @@ const percent = (part: number): string => `${(100 * part).toPrecision(2)} %`;
 const ueV = (value: number): string => `${Number((1e6 * value).toPrecision(4))} ueV`;
 const countOf = (number: number): string => `${number} point${number === 1 ? "" : "s"}`;
 
-function domainNote(spectrum: Spectrum, protocol: Protocol, slit: number, noise: Noise, depth: number): Note {
+function domainNote(
+  spectrum: Spectrum,
+  protocol: Protocol,
+  slit: number,
+  noise: Noise,
+  depth: number,
+  fringes: boolean,
+): Note {
   const reasons = [
     ...(protocol.lines.domain === "transmittance" ? ["the protocol asks for it"] : []),
     ...(slit === 0 ? [] : [`the slit of ${ueV(slit)} averages light, not absorption`]),
+    ...(fringes ? ["fringes are weaker where the crystal absorbs, which the logarithm cannot have"] : []),
+    ...(protocol.signal.stray_light === null ? [] : ["stray light adds to the light, not to its logarithm"]),
     ...(noise.noisy > 0
       ? [
           `the noise exceeds a tenth of the transmitted light at ${countOf(noise.noisy)}, where the logarithm is biased`,
@@ -221,8 +355,16 @@ function domainNote(spectrum: Spectrum, protocol: Protocol, slit: number, noise:
   );
 }
 
-function biasNotes(full: FullFit, slit: number, depth: number | null, noise: Noise): Note[] {
+function biasNotes(
+  full: FullFit,
+  slit: number,
+  depth: number | null,
+  noise: Noise,
+  stray: Protocol["signal"]["stray_light"],
+): Note[] {
   const parts: string[] = [];
+  if (stray !== null && stray !== 0)
+    parts.push("stray light flattens the strongest lines and was not taken off");
   if (slit > 0 && depth === null)
     parts.push(
       "the slit averages light, not absorption, and without the optical depth the lost area cannot be estimated",

@@ -7,20 +7,21 @@ import { energyOf, type LadderState } from "./ladder-model.ts";
  * What      Neighbouring points averaged where the spectrum cannot change between them: a bin is at most 1/`parts` of
  *           the distance (width and offset in quadrature) to the nearest line. For preparing fits only; the final fit
  *           takes every point.
- * Shapes    lines (k) with centre and FWHM in eV.
+ * Shapes    lines (k) with centre and FWHM in eV; `widest`: largest bin (eV), for a background with a structure of its own.
  * Accuracy  a bin of a tenth of the width flattens the top of a line by 0.3 %.
  */
 export function thinPoints(
   points: FitPoints,
   lines: readonly { readonly energy: number; readonly width: number }[],
   parts = 10,
+  widest = Infinity,
 ): FitPoints {
   const { energy, signal, sigma } = points;
   const m = energy.length;
   const reach = (at: number): number => {
     let least = Infinity;
     for (const line of lines) least = Math.min(least, Math.hypot(line.width, at - line.energy));
-    return least / parts;
+    return Math.min(widest, least / parts);
   };
   const out: { energy: number[]; signal: number[]; sigma: number[] } = { energy: [], signal: [], sigma: [] };
   for (let i = 0; i < m;) {

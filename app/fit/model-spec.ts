@@ -18,6 +18,16 @@ export interface BackgroundColumn {
   readonly values: Float64Array;
 }
 
+/** Additive fringes: cos and sin amplitudes of the fit before, and the period the columns are made with. */
+export interface FringeWave {
+  readonly period: number;
+  /** Energy at which the phase is counted, and the stretch it is counted over (eV). */
+  readonly reference: number;
+  readonly span: number;
+  readonly cos: number;
+  readonly sin: number;
+}
+
 /** gap, Rydberg energy (eV), delta0, delta2: only the first `count` are parameters of the law, the rest are held. */
 export interface LevelValues {
   readonly gap: number;

@@ -22,6 +22,7 @@ export const DEFAULT_PROTOCOL: Protocol = {
     reference_column: null,
     dark_column: null,
     thickness_um: null,
+    stray_light: null,
     thickness_sigma_um: 0,
     surface: { model: "none", reflectance: null, reflectance_sigma: 0, index: null, surround_index: 1 },
   },

@@ -17,6 +17,8 @@ export const backgroundTermSchema = z.discriminatedUnion("term", [
   z.strictObject({ term: z.literal("polynomial"), order: z.int().min(0).max(8) }),
   z.strictObject({ term: z.literal("square-root"), onset_eV: positive }),
   z.strictObject({ term: z.literal("urbach"), energy_eV: positive }),
+  /** Interference in a plane-parallel plate; the period starts from here, or is found in the residuals. */
+  z.strictObject({ term: z.literal("fringes"), period_eV: positive.nullable().default(null) }),
   z.strictObject({
     term: z.literal("measured"),
     energy_eV: z.array(z.number()).min(2),
@@ -106,6 +108,11 @@ export const protocolSchema = z.strictObject({
     reference_column: column,
     dark_column: column,
     thickness_um: positive.nullable(),
+    /** Stray light as a part s of the incident light, T_read = (T + s)/(1 + s): a value, or a parameter of the fit. */
+    stray_light: z
+      .union([z.number().min(0).lt(1), z.literal("free")])
+      .nullable()
+      .default(null),
     /** One standard uncertainty of the thickness; it moves every area by the same part (systematic). */
     thickness_sigma_um: z.number().min(0).default(0),
     surface: z.strictObject({

@@ -17,6 +17,8 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
   if (axis.scale_sigma > 0) said.push(`axis scale uncertain by ${axis.scale_sigma}`);
   if (signal.thickness_um !== null) said.push(`thickness ${signal.thickness_um} µm`);
   said.push(surfaceInWords(signal.surface));
+  if (signal.stray_light !== null)
+    said.push(signal.stray_light === "free" ? "stray light free" : `stray light ${signal.stray_light}`);
   said.push(lines.n === "auto" ? `lines found, n up to ${lines.max_n}` : `lines n = ${lines.n.join(", ")}`);
   said.push(
     {
@@ -97,6 +99,8 @@ function termInWords(term: BackgroundTerm): string {
       return `square-root onset at ${term.onset_eV} eV`;
     case "urbach":
       return `Urbach tail of ${term.energy_eV} eV`;
+    case "fringes":
+      return term.period_eV === null ? "fringes" : `fringes of period ${term.period_eV} eV`;
     case "measured":
       return `measured curve of ${term.energy_eV.length} points`;
   }
