@@ -3,9 +3,11 @@
  * line; beside it scipy's MINPACK from the same start where python3 with scipy is present, and how the time grows:
  *
  *   npx tsx tests/bench/engine-bench.ts [--quick]
+ *
+ * Beside the wall time stands the processor time of the thread that fits (Linux only), which a busy machine changes less.
  */
 import { execFileSync } from "node:child_process";
-import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
+import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
 import { cpus, loadavg, tmpdir } from "node:os";
 import { join } from "node:path";
 import { fileURLToPath } from "node:url";
@@ -18,6 +20,8 @@ const GAUSS_STD_eV = 20e-6;
 
 interface Timing {
   readonly median: number;
+  /** Median of the thread's processor time, NaN where the system does not tell. */
+  readonly cpu: number;
   readonly least: number;
   readonly first: number;
   readonly solution: SeparableSolution;
@@ -25,6 +29,7 @@ interface Timing {
 
 interface PeerRun {
   readonly ms: number;
+  readonly cpu_ms: number;
   readonly evaluations: number;
   readonly chi2: number;
 }
@@ -37,8 +42,16 @@ interface Peer {
   readonly analytic: PeerRun | null;
 }
 
+const SCHEDULE = "/proc/thread-self/schedstat";
+
+/** Milliseconds that this thread has run. */
+function threadTime(): number {
+  return existsSync(SCHEDULE) ? Number(readFileSync(SCHEDULE, "utf8").split(" ")[0]) / 1e6 : NaN;
+}
+
 function timeEngine({ problem, theta }: EngineProblem, withRows = true): Timing {
   const times: number[] = [];
+  const ran: number[] = [];
   let solution: SeparableSolution | null = null;
   // Without `condense` every row is used all the way.
   const plain = {
@@ -51,16 +64,19 @@ function timeEngine({ problem, theta }: EngineProblem, withRows = true): Timing 
     derivatives: problem.derivatives.bind(problem),
   };
   for (let run = 0; run < RUNS; run++) {
+    const ranBefore = threadTime();
     const began = performance.now();
     solution = solveSeparable(withRows ? problem : plain, theta, {
       gradientTolerance: 1e-7,
       costTolerance: 1e-11,
     });
     times.push(performance.now() - began);
+    ran.push(threadTime() - ranBefore);
   }
   const first = times[0]!;
   times.sort((a, b) => a - b);
-  return { median: times[RUNS >> 1]!, least: times[0]!, first, solution: solution! };
+  ran.sort((a, b) => a - b);
+  return { median: times[RUNS >> 1]!, cpu: ran[RUNS >> 1]!, least: times[0]!, first, solution: solution! };
 }
 
 function timePeer(problem: EngineProblem): Peer | null {
@@ -117,10 +133,10 @@ for (const [lines, points, gauss, layout] of [
     `\n${problem.name} (${problem.theta.length + problem.coefficients.length} parameters, ${rows} condensed rows)`,
   );
   console.log(
-    `  engine           ${ms(engine.median)} (least ${ms(engine.least)}, first ${ms(engine.first)}); ` +
+    `  engine           ${ms(engine.median)} (thread ${ms(engine.cpu)}, least ${ms(engine.least)}, first ${ms(engine.first)}); ` +
       `${solution.termination}, ${solution.iterations} iterations, chi2 ${solution.chi2.toPrecision(13)}, condition ${solution.condition.toPrecision(2)}`,
   );
-  console.log(`  same, every row  ${ms(everyRow.median)}`);
+  console.log(`  same, every row  ${ms(everyRow.median)} (thread ${ms(everyRow.cpu)})`);
   if (quick && points > 10_000) continue;
   const peer = timePeer(problem);
   if (peer === null) continue;
@@ -131,7 +147,8 @@ for (const [lines, points, gauss, layout] of [
     if (run === null) continue;
     const apart = Math.abs(run.chi2 / solution.chi2 - 1);
     console.log(
-      `  scipy ${name.padEnd(10)} ${ms(run.ms)}, ratio ${(run.ms / engine.median).toFixed(1)}; ${run.evaluations} evaluations, ` +
+      `  scipy ${name.padEnd(10)} ${ms(run.ms)} (thread ${ms(run.cpu_ms)}), ratio ${(run.ms / engine.median).toFixed(1)} ` +
+        `(thread ${(run.cpu_ms / engine.cpu).toFixed(1)}); ${run.evaluations} evaluations, ` +
         `chi2 apart ${apart.toExponential(1)}${apart > 1e-9 ? " (MORE THAN 1e-9)" : ""}`,
     );
   }
@@ -148,9 +165,9 @@ for (const [lines, points] of [
   [12, 32000],
   [12, 128000],
 ] as const) {
-  const { median, solution } = timeEngine(makeEngineProblem(lines, points, 0, "crowded"));
+  const { median, cpu, solution } = timeEngine(makeEngineProblem(lines, points, 0, "crowded"));
   console.log(
-    `  ${String(lines).padStart(3)} lines x ${String(points).padStart(6)} points  ${ms(median)} (${solution.termination})`,
+    `  ${String(lines).padStart(3)} lines x ${String(points).padStart(6)} points  ${ms(median)}, thread ${ms(cpu)} (${solution.termination})`,
   );
 }
 console.log(load());
