@@ -49,11 +49,22 @@ export interface FittedSeries {
 const WEAK = 3;
 /** Passes of the joint fit before the last: the tail's laws follow the lines of the pass before. */
 const MOST_PASSES = 3;
-/** A line with less than this part of its strength counts as bleached. */
-const UNBLEACHED = 0.85;
+/** A line with less than this part of what it has in the reference counts as bleached: it must not pull the continuum. */
+const UNBLEACHED = 0.995;
+/** The same for the reference, against the strength law of its lowest line. */
+const ON_STRENGTH_LAW = 0.97;
 /** Width laws that agree to this part have settled. */
 const SETTLED = 3e-3;
 const FEWEST_LINES = 3;
+/** Below this probability a common gap is given up. */
+const REJECTED = 0.01;
+/** Fits that only prepare the next one. */
+const ROUGH = {
+  maxIterations: 60,
+  gradientTolerance: 1e-5,
+  costTolerance: 1e-9,
+  answer: "condensed",
+} as const;
 /** Fall of chi square that one more assumption has to bring. */
 const CLEARLY = 10;
 /** From one power to the next a width changes by this factor at most: a line that swallows its neighbours is none. */
@@ -127,10 +138,23 @@ export function fitPowerSeries(
   }
   if (works.length === 0) return null;
 
-  const fit = runJoint(works, settings, (pass) =>
-    watch.report(0.3 + 0.12 * pass, `fitting ${works.length} spectra together, pass ${pass + 1}`),
-  );
-  const gaps = gapTest(works, settings, fit, notes);
+  const report = (pass: number): void =>
+    watch.report(0.3 + 0.12 * pass, `fitting ${works.length} spectra together, pass ${pass + 1}`);
+  const prepared = prepareJoint(works, settings, report);
+  let gaps: FittedSeries["gaps"] = null;
+  let asked = settings;
+  if (!free.gap) {
+    const test = gapTest(works, settings, prepared);
+    gaps = test.gaps;
+    if (test.p < REJECTED) {
+      notes.push(gapMoves(test));
+      asked = { ...settings, free: { ...free, gap: true } };
+      prepareJoint(works, asked, () => watch.report(0.8, "a gap for every power"));
+    }
+  }
+  watch.report(0.85, `fitting ${works.length} spectra together, every point`);
+  const fit = finishJoint(works, asked);
+  if (asked.free.gap) gaps = gapsOf(fit);
   if (!fit.solution.converged)
     notes.push(
       doubt(
@@ -286,19 +310,14 @@ interface Settings {
   readonly watch: Watch;
 }
 
-/** Joint fits until the width laws that the tails follow stand still, then one that ends on every point. */
-function runJoint(works: readonly Work[], settings: Settings, report: (pass: number) => void): JointFit {
+/** Joint fits until the width laws that the tails follow stand still. */
+function prepareJoint(works: readonly Work[], settings: Settings, report: (pass: number) => void): JointFit {
   const { free, watch } = settings;
+  let last: JointFit | null = null;
   for (let pass = 0, settled = false; pass < MOST_PASSES && !settled; pass++) {
     report(pass);
     const models = modelsOf(works, settings);
-    const fit = fitJointly(membersOf(works, models), free, {
-      watch,
-      maxIterations: 60,
-      gradientTolerance: 1e-5,
-      costTolerance: 1e-9,
-      answer: "condensed",
-    });
+    const fit = fitJointly(membersOf(works, models), free, { watch, ...ROUGH });
     stopIfCancelled(watch);
     settled = true;
     works.forEach((work, a) => {
@@ -306,21 +325,22 @@ function runJoint(works: readonly Work[], settings: Settings, report: (pass: num
       const { state } = models[a]!;
       adopt(work, fit.fits[a]!, state);
       // Lines that are weak once stay so, or they would come and go.
-      if (pass > 0) work.held = held;
+      if (last !== null) work.held = held;
       else settled &&= held.join() === work.held.join();
       const width = fit.fits[a]!.laws?.widths.coefficient ?? state.widths.coefficient;
       settled &&= Math.abs(width - state.widths.coefficient) <= SETTLED * Math.abs(width);
     });
+    last = fit;
   }
-  report(MOST_PASSES);
-  const models = modelsOf(works, settings);
-  const fit = fitJointly(membersOf(works, models), free, { watch, maxIterations: 60 });
+  if (last === null) throw new Error("no pass was made");
+  return last;
+}
+
+/** The last fit, which ends on every point. */
+function finishJoint(works: readonly Work[], settings: Settings): JointFit {
+  const { free, watch } = settings;
+  const fit = fitJointly(membersOf(works, modelsOf(works, settings)), free, { watch, maxIterations: 60 });
   stopIfCancelled(watch);
-  works.forEach((work, a) => {
-    const { held } = work;
-    adopt(work, fit.fits[a]!, models[a]!.state);
-    work.held = held;
-  });
   return fit;
 }
 
@@ -373,14 +393,19 @@ function withBleachedTail(model: Model, work: Work): Model {
 function withUnbleachedStrength(model: Model, work: Work): Model {
   const { tail, ns } = model.spec;
   if (tail === null) return model;
-  const { area } = work;
+  const { area, reference } = work;
   const onLaw = ns.map((_, j) => j).filter((j) => model.state.include[j]!);
   const { law, base } = tail.strength;
   const ratio = (j: number): number => area[j]! / strength(ns[j]!, tail.levels.defect0, law, base);
-  const lowest = onLaw.slice(0, FEWEST_LINES);
-  const level = [...lowest.map(ratio)].sort((a, b) => a - b)[1]!;
-  const end = onLaw.findIndex((j, i) => i >= FEWEST_LINES && !(ratio(j) > UNBLEACHED * level));
-  const whole = new Set(end < 0 ? onLaw : onLaw.slice(0, end));
+  const first = onLaw[0]!;
+  const keeps = (j: number): boolean => {
+    const before = reference.get(ns[j]!);
+    const kept = before === undefined || area[j]! > UNBLEACHED * before;
+    return kept && ratio(j) > ON_STRENGTH_LAW * ratio(first);
+  };
+  const end = onLaw.findIndex((j) => !keeps(j));
+  // The lowest line alone where even that has bleached: no other is nearer to the truth.
+  const whole = new Set(end < 0 ? onLaw : onLaw.slice(0, Math.max(1, end)));
   const share = strengthShare(
     {
       ns,
@@ -412,48 +437,46 @@ function membersOf(works: readonly Work[], models: readonly Model[]): JointMembe
   });
 }
 
-/** Does each spectrum want a gap of its own? From where the shared one ended. */
-function gapTest(
-  works: readonly Work[],
-  settings: Settings,
-  shared: JointFit,
-  notes: Note[],
-): FittedSeries["gaps"] {
+interface GapTest {
+  readonly gaps: FittedSeries["gaps"];
+  readonly chi2: number;
+  readonly degreesOfFreedom: number;
+  readonly p: number;
+}
+
+/** Does each spectrum want a gap of its own? On the same models as the shared one, from where it ended. */
+function gapTest(works: readonly Work[], settings: Settings, shared: JointFit): GapTest {
   const { free, watch } = settings;
-  watch.report(0.85, "a gap for every power");
-  const own = free.gap
-    ? shared
-    : fitJointly(
-        membersOf(works, modelsOf(works, settings)),
-        { ...free, gap: true },
-        {
-          watch,
-          maxIterations: 30,
-          gradientTolerance: 1e-5,
-          costTolerance: 1e-9,
-          answer: "condensed",
-        },
-      );
+  watch.report(0.7, "a gap for every power");
+  const own = fitJointly(
+    membersOf(works, modelsOf(works, settings)),
+    { ...free, gap: true },
+    { watch, ...ROUGH },
+  );
   stopIfCancelled(watch);
-  if (!own.solution.converged) return null;
-  const value = new Float64Array(works.length);
-  const sigma = new Float64Array(works.length);
-  own.fits.forEach(({ solution }, a) => {
-    value[a] = solution.theta[0]!;
-    sigma[a] = Math.sqrt(solution.covariance[0]!);
-  });
-  if (!free.gap && works.length > 1 && shared.solution.converged) {
-    const chi2 = Math.max(0, shared.solution.chi2 - own.solution.chi2);
-    const p = chiSquareSurvival(chi2, works.length - 1);
-    if (p < 0.01)
-      notes.push(
-        doubt(
-          "gap-moves-with-power",
-          "power.other.gap_shift_eV",
-          `A gap of its own for every power lowers chi square by ${chi2.toPrecision(3)} for ${works.length - 1} degrees of freedom (p = ${p.toExponential(1)}): the shared gap does not hold.`,
-          "set power.free.gap=true",
-        ),
-      );
-  }
-  return { value, sigma };
+  const degreesOfFreedom = works.length - 1;
+  const chi2 = Math.max(0, shared.solution.chi2 - own.solution.chi2);
+  const decided = own.solution.converged && shared.solution.converged && degreesOfFreedom > 0;
+  return {
+    gaps: own.solution.converged ? gapsOf(own) : null,
+    chi2,
+    degreesOfFreedom,
+    p: decided ? chiSquareSurvival(chi2, degreesOfFreedom) : 1,
+  };
+}
+
+function gapsOf(fit: JointFit): NonNullable<FittedSeries["gaps"]> {
+  return {
+    value: Float64Array.from(fit.fits, ({ solution }) => solution.theta[0]!),
+    sigma: Float64Array.from(fit.fits, ({ solution }) => Math.sqrt(solution.covariance[0]!)),
+  };
+}
+
+function gapMoves({ chi2, degreesOfFreedom, p }: GapTest): Note {
+  return doubt(
+    "gap-moves-with-power",
+    "power.other.gap_shift_eV",
+    `A gap of its own for every power lowers chi square by ${chi2.toPrecision(3)} for ${degreesOfFreedom} degrees of freedom (p = ${p.toExponential(1)}): no common gap holds, and each spectrum was given its own.`,
+    "look at the gap against power: heating and a drift of the light axis move it, blockade does not",
+  );
 }
