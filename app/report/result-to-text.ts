@@ -15,6 +15,7 @@ import {
   scaleQuantity,
   type EnergyUnit,
 } from "./format-quantity.ts";
+import { extraPart, lawChi2InWords } from "./extra-to-text.ts";
 import { gravestFirst } from "./notes.ts";
 import { powerPart } from "./power-to-text.ts";
 import { percent, protocolInWords } from "./protocol-in-words.ts";
@@ -34,6 +35,7 @@ export function resultToText(result: RunglineResult): string {
     ...strengthPart(result),
     ...tailPart(result),
     ...linesPart(result),
+    ...extraPart(result),
     ...derivedPart(result),
     ...powerPart(result),
     ...backgroundPart(result),
@@ -303,7 +305,7 @@ function widthPart(result: RunglineResult): string[] {
       ],
       ["left", "left"],
     ),
-    `  chi square ${formatNumber(law.chi2)} for ${law.dof} degrees of freedom, p = ${formatNumber(law.p, 3)}`,
+    lawChi2InWords(law),
   ];
 }
 
@@ -336,7 +338,7 @@ function strengthPart(result: RunglineResult): string[] {
       ],
       ["left", "left"],
     ),
-    `  chi square ${formatNumber(law.chi2)} for ${law.dof} degrees of freedom, p = ${formatNumber(law.p, 3)}`,
+    lawChi2InWords(law),
   ];
 }
 
