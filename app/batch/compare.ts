@@ -1,4 +1,13 @@
-import { doubt, failure, success, type Issue, type Note, type Result, type Wording } from "../base/index.ts";
+import {
+  assumption,
+  doubt,
+  failure,
+  success,
+  type Issue,
+  type Note,
+  type Result,
+  type Wording,
+} from "../base/index.ts";
 import {
   COMPARISON_SCHEMA,
   type Comparison,
@@ -56,8 +65,21 @@ export function compareResults(
     parameters,
     quality: qualityOf(samples, parameters, choices),
     temperature: temperatureOf(read.results, choices),
-    notes: [...read.notes, ...aboutNumbers(parameters, batches.length, samples.length)],
+    notes: [
+      ...read.notes,
+      ...aboutNumbers(parameters, batches.length, samples.length),
+      ...(choices.against !== null && batches.length > 1 ? [trendInBatches(choices.against)] : []),
+    ],
   });
+}
+
+function trendInBatches(against: string): Note {
+  return assumption(
+    "trend-stays-in-batches",
+    "parameters",
+    `Batches are compared as they stand: what changes along "${against}" is not taken off before.`,
+    "compare batches at one value of it, without --against",
+  );
 }
 
 function aboutNumbers(

@@ -137,7 +137,10 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
         "give the thickness of every crystal (signal.thickness_um)",
       ),
     );
-  const samples = [...groups.values()].map((group): ComparedSample => {
+  const order = (one: readonly NamedResult[]): number => one[0]!.against?.value ?? Infinity;
+  const sorted = [...groups.values()];
+  if (choices.against !== null) sorted.sort((one, other) => order(one) - order(other) || 0);
+  const samples = sorted.map((group): ComparedSample => {
     const first = group[0]!;
     if (group.length > 1)
       notes.push(

@@ -173,7 +173,7 @@ const temperatureSeries = z.strictObject({
   n: z.int().nullable(),
   points: z.array(z.strictObject({ temperature_K: z.number(), value: z.number(), sigma: z.number() })),
   laws: z.array(temperatureLaw),
-  /** The law with the lowest information criterion; `decided` where it leads by 6 or more. */
+  /** The law with the lowest information criterion; `decided` where it leads every law that does not hold it by 6 or more. */
   preferred: z.string().nullable(),
   decided: z.boolean(),
 });

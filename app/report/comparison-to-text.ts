@@ -34,7 +34,8 @@ export const PARAMETER_TITLES: Readonly<Record<ComparedParameter, string>> = {
 export function comparisonToText(comparison: Comparison): string {
   const { samples, parameters, choices } = comparison;
   const batches = new Set(samples.map((sample) => sample.batch));
-  const title = `${COMPARISON_TEXT_MARK}${count(samples.length, "sample", "samples")} in ${count(batches.size, "batch", "batches")}`;
+  const names = new Set(samples.map((sample) => `${sample.batch}\n${sample.sample}`));
+  const title = `${COMPARISON_TEXT_MARK}${count(names.size, "sample", "samples")} in ${count(batches.size, "batch", "batches")}`;
   const lines = [
     title,
     "=".repeat(title.length),
@@ -69,17 +70,17 @@ export function comparisonToText(comparison: Comparison): string {
           }),
         ]),
     ...heading("Methods"),
-    ...wrap(METHODS, "  "),
+    ...wrap(COMPARISON_METHODS, "  "),
   ];
   return `${lines.join("\n").trimEnd()}\n`;
 }
 
 /** A probability that a double cannot hold is told as a bound. */
-function probability(p: number | null): string {
+export function probability(p: number | null): string {
   return p === 0 ? "p < 10⁻³⁰⁰" : `p = ${formatNumber(p, 2)}`;
 }
 
-const METHODS =
+export const COMPARISON_METHODS =
   "Scatter beyond the stated errors within and between batches: Paule and Mandel, J. Res. Natl. Bur. Stand. 87, 377 (1982); " +
   "DerSimonian and Laird, Control. Clin. Trials 7, 177 (1986). Homogeneity: Cochran, Biometrics 10, 101 (1954); Birge, Phys. Rev. 40, 207 (1932). " +
   "Intervals of the scatter: Viechtbauer, Stat. Med. 26, 37 (2007). Several differences: Holm, Scand. J. Stat. 6, 65 (1979). " +
@@ -94,7 +95,7 @@ function heading(text: string): string[] {
 }
 
 /** Energies are printed with the prefix that suits them. */
-function shownUnit(name: ComparedParameter, size: number | null): EnergyUnit | null {
+export function shownUnit(name: ComparedParameter, size: number | null): EnergyUnit | null {
   if (!name.endsWith("_eV")) return null;
   return name === "gap_eV" ? ELECTRONVOLT : energyUnit(size);
 }
@@ -234,7 +235,11 @@ function largest(values: readonly (number | null)[]): number | null {
   return known.length === 0 ? null : Math.max(...known);
 }
 
-function scatterInWords(scatter: ComparedPart["within"], unit: string, energy: EnergyUnit | null): string {
+export function scatterInWords(
+  scatter: ComparedPart["within"],
+  unit: string,
+  energy: EnergyUnit | null,
+): string {
   if (scatter.tau === null) return "not determined";
   const small = energy === null ? null : energyUnit(scatter.high ?? scatter.tau);
   const ends = `${bare(scatter.low, unit, small)} to ${bare(scatter.high, unit, small)}`;
@@ -270,7 +275,7 @@ function qualityInText({ quality }: Comparison): string[] {
   ];
 }
 
-const LAW_TITLES = {
+export const LAW_TITLES = {
   varshni: "Varshni, E0 - alpha T^2/(T + beta)",
   "bose-einstein": "Bose-Einstein, EB - a [1 + 2/(exp(Theta/T) - 1)]",
   phonons: "phonons, G0 + a T + b/(exp(hw/kT) - 1)",
@@ -306,7 +311,7 @@ function temperatureInText({ temperature }: Comparison): string[] {
   ];
 }
 
-function seriesTitle({ quantity, n }: TemperatureSeries): string {
+export function seriesTitle({ quantity, n }: TemperatureSeries): string {
   if (quantity === "gap_eV") return "gap";
   return n === null ? "floor of the widths" : `width of n = ${n}`;
 }

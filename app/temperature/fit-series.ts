@@ -125,12 +125,17 @@ export function fitTemperatureSeries(
     const above = law.aic! - best.aic!;
     return { ...law, aic_difference: above, weight: Math.exp(-above / 2) / sum };
   });
-  const second = Math.min(
-    ...laws
-      .filter((law) => law.law !== best?.law && law.aic_difference !== null)
-      .map((l) => l.aic_difference!),
+  // A law that holds the best one and a part more can never fall behind by more than that part's 2: it is no rival.
+  const names = (law: TemperatureLaw): readonly string[] => law.parameters.map(({ name }) => name);
+  const rivals = laws.filter(
+    (law) =>
+      law.aic_difference !== null &&
+      best !== null &&
+      law.law !== best.law &&
+      !names(best).every((name) => names(law).includes(name)),
   );
-  return { laws, preferred: best?.law ?? null, decided: sound.length > 1 && second >= DECIDED };
+  const decided = rivals.length > 0 && rivals.every((law) => law.aic_difference! >= DECIDED);
+  return { laws, preferred: best?.law ?? null, decided };
 }
 
 function fitOne(law: LawChoice, points: readonly TemperaturePoint[], factor: number): TemperatureLaw {
@@ -163,7 +168,9 @@ function fitOne(law: LawChoice, points: readonly TemperaturePoint[], factor: num
   const quantity = (at: number): Quantity => {
     const value = fit.values[at]!;
     const sigma = scaled * Math.sqrt(fit.covariance[at * law.count + at]!);
-    if (fit.undetermined[at] === 1) return { value: null, sigma: null, low: null, high: null };
+    // A scale that is not known within a factor of ten says nothing, though the matrix could be inverted.
+    const unknown = fit.undetermined[at] === 1 || (at === law.count - 1 && sigma > 10 * Math.abs(value));
+    if (unknown) return { value: null, sigma: null, low: null, high: null };
     if (fit.activeBounds[at] !== 0) return { value, sigma: null, low: null, high: null };
     return symmetric(value, sigma, factor);
   };
