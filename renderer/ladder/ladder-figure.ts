@@ -4,7 +4,7 @@ import { colourOfN, type Palette } from "../plot/colours.ts";
 import type { Axis, FigureDescription, Trace } from "../plot/figure-description.ts";
 import { axis, baseLayout, logarithmic } from "../plot/layout.ts";
 
-export type LadderPanel = "all" | "levels" | "widths" | "strengths" | "ranges";
+export type LadderPanel = "all" | "levels" | "widths" | "strengths" | "asymmetries" | "ranges";
 export type RangeQuantity = "gap" | "rydberg" | "defect";
 
 interface Place {
@@ -12,7 +12,7 @@ interface Place {
   readonly y: readonly [number, number];
 }
 
-type PanelName = "levels" | "offsets" | "widths" | "strengths" | "ranges";
+type PanelName = "levels" | "offsets" | "widths" | "strengths" | "asymmetries" | "ranges";
 type Places = Partial<Record<PanelName, Place>>;
 
 const WIDE: readonly [number, number] = [0, 1];
@@ -27,6 +27,7 @@ const PLACES: Readonly<Record<LadderPanel, Places>> = {
   levels: { levels: { x: WIDE, y: [0.44, 1] }, offsets: { x: WIDE, y: [0, 0.31] } },
   widths: { widths: { x: WIDE, y: [0, 1] } },
   strengths: { strengths: { x: WIDE, y: [0, 1] } },
+  asymmetries: { asymmetries: { x: WIDE, y: [0, 1] } },
   ranges: { ranges: { x: WIDE, y: [0, 1] } },
 };
 
@@ -72,6 +73,8 @@ export function ladderFigure(
         return widths(result, palette);
       case "strengths":
         return strengths(result, palette);
+      case "asymmetries":
+        return asymmetries(result, palette);
       case "ranges":
         return ranges(result, palette, ranged);
     }
@@ -212,6 +215,24 @@ function strengths(result: RunglineResult, palette: Palette): { data: Trace[]; x
     data,
     x: logN(palette, result),
     y: axis(palette, `Area / ${unit}`, logarithmic(shownValues(result, "area", 1e3))),
+  };
+}
+
+/** q of every line: worth a look where each has its own. */
+function asymmetries(result: RunglineResult, palette: Palette): { data: Trace[]; x: Axis; y: Axis } {
+  const data = points(
+    "levels",
+    result.lines,
+    (line) => line.n,
+    (line) => line.asymmetry,
+    1,
+    palette,
+    "",
+  );
+  return {
+    data: [data],
+    x: axis(palette, "n", { dtick: result.lines.length > 14 ? 2 : 1, ...ends(result) }),
+    y: axis(palette, "Asymmetry q", { zeroline: true, zerolinecolor: palette.muted }),
   };
 }
 

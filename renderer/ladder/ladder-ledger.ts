@@ -86,6 +86,19 @@ const CARDS = {
     source: "Schwarz, Ann. Stat. 6, 461 (1978)",
     improve: "longer exposure, lower power, lower temperature",
   },
+  scaled: {
+    definition:
+      "The same value where the law is rejected, with its standard error widened by the scatter of the levels around it.",
+    formula: "σ times the root of reduced χ² of the level law",
+    source: "common practice for errors that do not explain the scatter",
+    improve: "a range of n that the law describes, or a Ritz quantum defect",
+  },
+  reading: {
+    definition: "Which n the lowest line was given. A constant defect can take up any shift of n.",
+    formula: "n + 1 with δ + 1 gives the same energies",
+    source: "ranked by strength and width laws, since energies cannot decide",
+    improve: "pin the lowest line with the material's first n where it is known",
+  },
   systematic: {
     definition: "Spread over defensible backgrounds and windows with the axis offset; never mixed into σ.",
     formula: "spread of the trials listed in the result",
@@ -161,18 +174,40 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
         1,
         CARDS.defect,
         ["series.defect0"],
-        { main: true },
+        { main: true, exactWord: "held" },
       ),
       ...(series !== null && series.defect2.value !== null
         ? [entry("defect2", "δ", "2", "Ritz term", series.defect2, "", 1, CARDS.defect2, ["series.defect2"])]
         : []),
+      ...(series !== null && series.readings.length > 1 ? [readings(series.readings)] : []),
     ],
     ...(series !== null && {
       remark: `n = ${series.fit_n[0]} to ${series.fit_n[1]}, ${chiText(series.chi2, series.dof, series.p)}${
-        series.scaled === null ? "" : "; the law is rejected, see the scaled errors in the notes"
+        series.scaled === null ? "" : "; the law is rejected"
       }`,
     }),
   });
+  if (series !== null && series.scaled !== null)
+    sections.push({
+      title: "With the scatter around the law",
+      entries: [
+        entry("scaled-gap", "E", "g", "Gap", series.scaled.gap_eV, "eV", 1, CARDS.scaled, []),
+        entry(
+          "scaled-rydberg",
+          "Ry",
+          undefined,
+          "Rydberg energy",
+          series.scaled.rydberg_eV,
+          "meV",
+          1e3,
+          CARDS.scaled,
+          [],
+        ),
+        entry("scaled-defect", "δ", "0", "Quantum defect", series.scaled.defect0, "", 1, CARDS.scaled, [], {
+          exactWord: "held",
+        }),
+      ],
+    });
   if (systematic !== null)
     sections.push({
       title: "Systematic part, apart",
@@ -190,10 +225,21 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
           "width_law",
           "width_law.coefficient_eV",
         ]),
-        entry("exponent", "k", undefined, "Exponent", width.exponent, "", 1, CARDS.exponent, [
-          "width_law.exponent",
-        ]),
-        entry("floor", "Γ", "∞", "Floor", width.floor_eV, "µeV", 1e6, CARDS.floor, ["width_law.floor_eV"]),
+        entry(
+          "exponent",
+          "k",
+          undefined,
+          "Exponent",
+          width.exponent,
+          "",
+          1,
+          CARDS.exponent,
+          ["width_law.exponent"],
+          { exactWord: "held" },
+        ),
+        entry("floor", "Γ", "∞", "Floor", width.floor_eV, "µeV", 1e6, CARDS.floor, ["width_law.floor_eV"], {
+          exactWord: "held",
+        }),
       ],
       remark: `n = ${width.fit_n[0]} to ${width.fit_n[1]}, ${chiText(width.chi2, width.dof, width.p)}`,
     });
@@ -237,6 +283,7 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
           1,
           { ...CARDS.bohr, formula: derived.bohr_radius_from },
           ["derived.bohr_radius_nm"],
+          { exactWord: "given" },
         ),
         entry(
           "binding",
@@ -276,6 +323,26 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
     });
   }
   return sections;
+
+  function readings(known: NonNullable<RunglineResult["series"]>["readings"]): LedgerEntry {
+    const chosen = known.find((one) => one.chosen);
+    const sign = (shift: number): string =>
+      shift === 0 ? "as read" : `${shift > 0 ? "+" : "−"}${Math.abs(shift)}`;
+    return entry("reading", "n", undefined, "Reading of n", q, "", 1, CARDS.reading, ["series.readings"], {
+      plain: chosen === undefined ? "not determined" : `${sign(chosen.shift)}, of ${known.length}`,
+      table: {
+        caption: "Readings",
+        head: ["shift of n", "δ₀", "χ² strengths", "χ² widths", ""],
+        rows: known.map((one) => [
+          sign(one.shift),
+          formatNumber(one.defect0, 4),
+          formatNumber(one.strength_chi2, 3),
+          formatNumber(one.width_chi2, 3),
+          one.chosen ? "chosen" : "",
+        ]),
+      },
+    });
+  }
 
   function spread(
     id: string,

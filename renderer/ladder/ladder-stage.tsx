@@ -39,6 +39,9 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
               { value: "levels", text: "Levels" },
               { value: "widths", text: "Widths" },
               { value: "strengths", text: "Strengths" },
+              ...(analysed.result.protocol.lines.asymmetry === "free"
+                ? [{ value: "asymmetries" as const, text: "Asymmetries" }]
+                : []),
               { value: "ranges", text: "Ranges of n" },
             ]}
             onPick={setPanel}

@@ -14,6 +14,12 @@ export interface CardText {
   readonly improve: string;
 }
 
+export interface CardTable {
+  readonly caption: string;
+  readonly head: readonly string[];
+  readonly rows: readonly (readonly string[])[];
+}
+
 /** One number of the ledger; `scale` takes the quantity's unit to the printed one. */
 export interface LedgerEntry {
   readonly id: string;
@@ -28,6 +34,10 @@ export interface LedgerEntry {
   /** A number without uncertainty of its own (a count, a chi square), printed as it is. */
   readonly plain?: string;
   readonly main?: boolean;
+  /** What a number without an error is called: held by the protocol, given by the user. Default: exact. */
+  readonly exactWord?: string;
+  /** Shown on the card. */
+  readonly table?: CardTable;
 }
 
 export interface LedgerSection {

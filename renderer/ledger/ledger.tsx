@@ -85,6 +85,33 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
             </dd>
           </>
         )}
+        {entry.table !== undefined && (
+          <>
+            <dt>{entry.table.caption}</dt>
+            <dd>
+              <table className="card-table">
+                <thead>
+                  <tr>
+                    {entry.table.head.map((word) => (
+                      <th key={word} scope="col">
+                        {word}
+                      </th>
+                    ))}
+                  </tr>
+                </thead>
+                <tbody>
+                  {entry.table.rows.map((row, i) => (
+                    <tr key={i}>
+                      {row.map((cell, k) => (
+                        <td key={k}>{cell}</td>
+                      ))}
+                    </tr>
+                  ))}
+                </tbody>
+              </table>
+            </dd>
+          </>
+        )}
         {entry.notes.map((note) => (
           <div key={note.code + note.about}>
             <dt>{note.level === "doubt" ? "▲ Doubt" : "Assumed"}</dt>

@@ -4,7 +4,7 @@ import type { LedgerEntry } from "./ledger-entry.ts";
 export const THIN = "\u2009";
 
 /** Value with its uncertainty, and the unit apart, so that each can have its own type. */
-export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit" | "plain">): {
+export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit" | "plain" | "exactWord">): {
   readonly value: string;
   readonly unit: string;
 } {
@@ -14,7 +14,8 @@ export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit"
   if (value !== null && (sigma === null || sigma === 0)) {
     // A column of numbers has no room for a clause: a question mark stands for an unknown uncertainty.
     const plain = formatNumber(value, sigma === null ? 4 : 8);
-    const exact = entry.unit === "" ? "exact" : `${entry.unit} exact`;
+    const word = `(${entry.exactWord ?? "exact"})`;
+    const exact = entry.unit === "" ? word : `${entry.unit} ${word}`;
     return sigma === null ? { value: `${plain}(?)`, unit: entry.unit } : { value: plain, unit: exact };
   }
   return { value: formatQuantity(value, sigma, "", { low, high, groupSpace: THIN }), unit: entry.unit };

@@ -75,6 +75,27 @@ export function LinesChoices() {
           eV
         </Clause>
         <Clause>
+          through a slit of{" "}
+          <Amount
+            label="Full width of the slit in µeV, or empty where it is not known"
+            value={
+              lines.slit_fwhm_eV === null ? "" : String(Number((lines.slit_fwhm_eV * 1e6).toPrecision(8)))
+            }
+            placeholder="unknown"
+            width={4}
+            onCommit={(text) => {
+              const value = parseNumber(text);
+              if (text !== "" && (value === null || value <= 0)) return "a width in µeV above zero, or empty";
+              controller.change(
+                { lines: { slit_fwhm_eV: value === null ? null : value * 1e-6 } },
+                `slit ${value ?? "unknown"} µeV`,
+              );
+              return null;
+            }}
+          />{" "}
+          µeV
+        </Clause>
+        <Clause>
           with{" "}
           <Pick
             label="Asymmetry of the lines"

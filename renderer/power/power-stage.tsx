@@ -177,6 +177,7 @@ function Unseen() {
     (state) => state.job !== null && state.job.what === "power" && state.job.fileId === id,
   );
   const powers = useWindow((state) => state.session.files.length);
+  const seriesless = useWindow((state) => currentPower(state)?.analysed.result.status === "no-series");
   let said: ReactNode;
   if (fitting)
     said = <p>Fitting the power series {series.length > 1 ? `of ${series.length} files` : file.name}</p>;
@@ -196,6 +197,13 @@ function Unseen() {
         </ul>
         <DemoSeriesButton />
       </div>
+    );
+  else if (seriesless)
+    said = (
+      <>
+        <h2>No series was seen in the spectrum of the lowest power</h2>
+        <p>The notes below say what to try: name the material in Lines, or add a spectrum at lower power.</p>
+      </>
     );
   else
     said = (

@@ -28,6 +28,8 @@ export function ReadChoices({
     const found = spectrum?.columns.find((column) => column.role === role);
     return found === undefined ? "found by itself" : columnName(found.column, found.header);
   };
+  const companion = (role: string): string =>
+    spectrum?.columns.some((column) => column.role === role) === true ? taken(role) : "no column";
   const columns = headers.map((header, i) => ({ value: String(i + 1), text: columnName(i + 1, header) }));
   const columnValue = (column: number | string | null): string => {
     if (column === null) return AS_READ;
@@ -162,6 +164,40 @@ export function ReadChoices({
             }
           />
         </Clause>
+        {headers.length > 2 && (
+          <Clause>
+            with deviations from{" "}
+            <Pick
+              label="Column of the standard deviation"
+              value={columnValue(signal.sigma_column)}
+              options={[{ value: AS_READ, text: companion("sigma") }, ...columns]}
+              onPick={(text) => onSignal({ sigma_column: pickColumn(text) }, `deviations ${text || "found"}`)}
+            />
+          </Clause>
+        )}
+        {(signal.quantity === "counts" ||
+          signal.reference_column !== null ||
+          signal.dark_column !== null ||
+          spectrum?.columns.some(({ role }) => role === "reference" || role === "dark") === true) && (
+          <Clause>
+            over the reference{" "}
+            <Pick
+              label="Column of the reference"
+              value={columnValue(signal.reference_column)}
+              options={[{ value: AS_READ, text: companion("reference") }, ...columns]}
+              onPick={(text) =>
+                onSignal({ reference_column: pickColumn(text) }, `reference ${text || "found"}`)
+              }
+            />{" "}
+            less the dark{" "}
+            <Pick
+              label="Column of the dark counts"
+              value={columnValue(signal.dark_column)}
+              options={[{ value: AS_READ, text: companion("dark") }, ...columns]}
+              onPick={(text) => onSignal({ dark_column: pickColumn(text) }, `dark ${text || "found"}`)}
+            />
+          </Clause>
+        )}
         <Clause>
           of a crystal{" "}
           <Amount

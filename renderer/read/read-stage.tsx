@@ -1,7 +1,7 @@
 import { useMemo, type Ref } from "react";
 import { Button } from "react-aria-components";
 import { Group, Panel, Separator } from "react-resizable-panels";
-import { formatNumber } from "../../app/report/index.ts";
+import { cautionsFor, formatNumber } from "../../app/report/index.ts";
 import type { Inspection } from "../../app/tasks/index.ts";
 import { FitButton } from "../controls/fit-button.tsx";
 import { EmptyPlace } from "../frame/empty-place.tsx";
@@ -149,6 +149,7 @@ function Facts({ inspection }: { readonly inspection: Inspection }) {
   let used = 0;
   for (let i = 0; i < count; i++) used += spectrum.used[i]!;
   const unit = spectrum.unit === "1/cm" ? " cm⁻¹" : "";
+  const cautions = cautionsFor({ notes: [...spectrum.notes], reading: { facts: [...spectrum.facts] } });
   return (
     <div className="facts">
       <section aria-label="Spectrum">
@@ -188,6 +189,11 @@ function Facts({ inspection }: { readonly inspection: Inspection }) {
             ))}
           </dl>
         )}
+        {cautions.map((caution) => (
+          <p key={caution} className="small cautions" role="note">
+            {caution}
+          </p>
+        ))}
       </section>
       <section aria-label="Left out">
         <h3>Left out</h3>

@@ -1,6 +1,7 @@
 import { Cancelled, type Watch } from "../../app/base/index.ts";
 import {
   analyseFile,
+  analysePower,
   inspectFile,
   wordIssue,
   type WorkerReply,
@@ -31,6 +32,12 @@ function answer(message: WorkerRequest): void {
     const inspected = inspectFile(message.request);
     if (inspected.ok) reply({ type: "inspected", id, inspection: inspected.value });
     else reply({ type: "refused", id, wordings: inspected.issues.map(wordIssue) });
+    return;
+  }
+  if (message.type === "analyse-power") {
+    const series = analysePower(message.request, message.run, watchFor(id, message.cancel));
+    if (series.ok) reply({ type: "analysed-power", id, analysed: series.value });
+    else reply({ type: "refused", id, wordings: series.issues.map(wordIssue) });
     return;
   }
   const analysed = analyseFile(message.request, message.run, watchFor(id, message.cancel));

@@ -1,10 +1,19 @@
 import { beforeEach, describe, expect, it } from "vitest";
 import type { Host, NamedBytes } from "../../app/tasks/index.ts";
 import { JobClient } from "../../renderer/jobs/job-client.ts";
-import { currentChoices, currentFit, currentReading, fitIsOld } from "../../renderer/store/context.ts";
+import {
+  currentChoices,
+  currentFit,
+  currentPower,
+  currentReading,
+  currentSeries,
+  fitIsOld,
+  powerIsOld,
+} from "../../renderer/store/context.ts";
 import { Controller } from "../../renderer/store/controller.ts";
 import { makeStore, type WindowStore } from "../../renderer/store/store.ts";
 import { FakeWorker } from "./fake-worker.ts";
+import { samplePower } from "./power-sample.ts";
 import { sampleAnalysed, sampleInspection } from "./sample.ts";
 
 const bytes = (text: string): Uint8Array => new TextEncoder().encode(text);
@@ -232,5 +241,45 @@ describe("saving", () => {
     expect(saved.map((file) => file.name)).toEqual(["one.json", "one.protocol.json"]);
     expect(JSON.parse(saved[0]!.text)).toMatchObject({ schema: "rungline-result/1" });
     expect(JSON.parse(saved[1]!.text)).toMatchObject({ schema: "rungline-protocol/1" });
+  });
+});
+
+describe("a power series", () => {
+  it("of the demo is opened with its choices and fitted at once, as one step of undo each", async () => {
+    await startWithFit();
+    const opening = controller.openDemoSeries();
+    await settle();
+    expect(store.getState().stage).toBe("power");
+    const asked = fitter.asked.at(-1)!;
+    expect(asked.type).toBe("analyse-power");
+    if (asked.type !== "analyse-power") return;
+    expect(asked.request.files.map(({ file }) => file)).toEqual(["series.csv"]);
+    expect(asked.request.choices).toMatchObject({ power: { excitation: "separate-pump" } });
+    fitter.answer({ type: "progress", id: asked.id, fraction: 0.5, step: "fitting together" });
+    expect(store.getState().job).toMatchObject({ what: "power", fraction: 0.5 });
+    fitter.answer({ type: "analysed-power", id: asked.id, analysed: samplePower() });
+    await opening;
+    expect(currentPower(store.getState())!.fileIds).toEqual(["series.csv"]);
+    expect(powerIsOld(store.getState())).toBe(false);
+    controller.change({ power: { spot_diameter_um: 20 } }, "spot 20 µm");
+    expect(powerIsOld(store.getState())).toBe(true);
+    await controller.saveFit("result");
+    expect(saved.at(-1)!.name).toBe("series.power.json");
+    for (let step = 0; step < 3; step++) controller.undo();
+    expect(store.getState().session.files.map(({ name }) => name)).toEqual(["one.csv", "two.csv"]);
+  });
+
+  it("of marked files is sent whole, and a refusal is kept beside it", async () => {
+    await startWithFit();
+    controller.markSeries(["one.csv", "two.csv"]);
+    const fitting = controller.fitPower();
+    const asked = fitter.asked.at(-1)!;
+    if (asked.type !== "analyse-power") throw new Error("a series must be asked for");
+    expect(asked.request.files.map(({ file }) => file)).toEqual(["one.csv", "two.csv"]);
+    fitter.answer({ type: "refused", id: asked.id, wordings: [{ message: "no power", remedy: "type it" }] });
+    await fitting;
+    expect(store.getState().powerRefusals["one.csv"]).toEqual([{ message: "no power", remedy: "type it" }]);
+    controller.close("two.csv");
+    expect(currentSeries(store.getState())).toEqual([]);
   });
 });

@@ -1,5 +1,6 @@
 import { describe, expect, it } from "vitest";
 import { NOT_DETERMINED, symmetric } from "../../app/base/index.ts";
+import type { RunglineResult } from "../../app/protocol/index.ts";
 import { parseNumber } from "../../renderer/controls/parse-number.ts";
 import { ladderLedger } from "../../renderer/ladder/ladder-ledger.ts";
 import { valueText } from "../../renderer/ledger/value-text.ts";
@@ -37,8 +38,32 @@ describe("the ledger", () => {
 
   it("gives gap, Rydberg energy and defect first, in this order, and the systematic part apart", () => {
     const sections = ladderLedger(sampleResult());
-    expect(sections[0]!.entries.map((entry) => entry.id)).toEqual(["gap", "rydberg", "defect0"]);
+    expect(sections[0]!.entries.slice(0, 3).map((entry) => entry.id)).toEqual(["gap", "rydberg", "defect0"]);
     expect(sections[1]!.title).toContain("Systematic");
+  });
+
+  it("has the readings of n on a card of their own, and says which was chosen", () => {
+    const reading = ladderLedger(sampleResult())[0]!.entries.find((entry) => entry.id === "reading")!;
+    expect(reading.plain).toBe("as read, of 2");
+    // Derived: the sample's two readings
+    expect(reading.table!.rows.map((row) => row[0])).toEqual(["as read", "+1"]);
+  });
+
+  it("gives the errors widened by the scatter where the law is rejected, and only there", () => {
+    const titles = (result: RunglineResult): string[] => ladderLedger(result).map(({ title }) => title);
+    expect(titles(sampleResult())).not.toContain("With the scatter around the law");
+    const { series } = sampleResult();
+    const scaled = { gap_eV: series!.gap_eV, rydberg_eV: series!.rydberg_eV, defect0: series!.defect0 };
+    expect(titles(sampleResult({ series: { ...series!, scaled } }))).toContain(
+      "With the scatter around the law",
+    );
+  });
+
+  it("says that an exponent was held, not that it is exact", () => {
+    const width = ladderLedger(sampleResult()).find(({ title }) => title === "Width law")!;
+    const exponent = width.entries.find((entry) => entry.id === "exponent")!;
+    // Derived: the sample's exponent is 3 with a standard error of zero
+    expect(valueText(exponent)).toEqual({ value: "3", unit: "(held)" });
   });
 
   it("puts the doubt of a number beside it, with its correlations", () => {
