@@ -130,6 +130,7 @@ export function fitInDomain(
         notes: [
           domainNote(spectrum, protocol, slit, noise, depth, plate !== null),
           ...(parts.atZero ? [strayNote()] : []),
+          ...(protocol.lines.instrument_lorentz_fwhm_eV > 0 ? [lorentzNote()] : []),
         ],
         answered: ["saturated-points", "low-transmission"],
         parts: parts.rows,
@@ -227,6 +228,15 @@ function partsOf({ fringes, stray }: TransmittanceFit): DomainParts {
     ...(stray === null ? {} : { stray: Math.max(stray.value, 1e-6) }),
     atZero: stray?.atZero ?? false,
   };
+}
+
+function lorentzNote(): Note {
+  return assumption(
+    "lorentz-instrument-on-absorption",
+    "lines",
+    "The Lorentzian width of the instrument is taken off the widths of the absorption, which is exact for weak lines only; where a line takes much of the light it leaves a little of its area out.",
+    "keep the peak optical depth below about 0.3, or use a laser line far narrower than the lines",
+  );
 }
 
 function strayNote(): Note {
