@@ -142,6 +142,7 @@ function makeProblem(
         : {
             fromN: ns[ns.length - 1]! + 1,
             toN,
+            band: true,
             below: one.below ?? [],
             levels: level.values,
             levelLink: level.link,
