@@ -18,4 +18,20 @@ export {
 export { resultToJson, resultsToJson, protocolToJson } from "./result-to-json.ts";
 export { inspectionToText, type ReadingShown } from "./inspection-to-text.ts";
 export { comparisonToText, COMPARISON_TEXT_MARK, PARAMETER_TITLES } from "./comparison-to-text.ts";
+export {
+  resultToLatex,
+  comparisonToLatex,
+  RESULT_LATEX_MARK,
+  COMPARISON_LATEX_MARK,
+} from "./result-to-latex.ts";
+export { latexNumber } from "./table-to-latex.ts";
+export { curvesToCsv, curvesFromCsv, CURVES_CSV_MARK, type FittedCurves } from "./curves-csv.ts";
+export {
+  reportContents,
+  reportToHtml,
+  REPORT_HTML_MARK,
+  type ReportContents,
+  type ReportInput,
+} from "./report-to-html.ts";
+export { figureFile, figureToSvg, FIGURE_SVG_MARK, type Figure } from "./figures/figure.ts";
 export { comparisonToCsv, comparisonToJson, COMPARISON_CSV_MARK } from "./comparison-to-csv.ts";

@@ -1,5 +1,5 @@
 import { readFile } from "node:fs/promises";
-import { extname, resolve } from "node:path";
+import { resolve } from "node:path";
 import {
   COMPARED_PARAMETERS,
   wordProtocolIssue,
@@ -10,6 +10,7 @@ import {
 import {
   comparisonToCsv,
   comparisonToJson,
+  comparisonToLatex,
   comparisonToText,
   gravestFirst,
   noteLine,
@@ -26,7 +27,7 @@ import {
 } from "../services/index.ts";
 import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT, UsageError } from "./exit-status.ts";
-import type { Format } from "./output-place.ts";
+import { formatOf, type Format } from "./output-place.ts";
 
 export interface CompareOptions {
   readonly reference?: string;
@@ -46,7 +47,7 @@ export async function compareCommand(
   options: CompareOptions,
   io: CommandLineIo,
 ): Promise<number> {
-  const choices = await choicesFrom(options, io.workingFolder);
+  const choices = await comparisonChoicesFrom(options, io.workingFolder);
   const out = options.out === undefined ? null : resolve(io.workingFolder, options.out);
   if (out !== null) {
     if ((await pathKind(out)) === "folder") throw new UsageError(`--out ${options.out}: is a folder`);
@@ -84,20 +85,19 @@ const RENDER: Readonly<Record<Format, (comparison: Comparison) => string>> = {
   json: comparisonToJson,
   csv: comparisonToCsv,
   text: comparisonToText,
+  latex: comparisonToLatex,
 };
 
-function formatOf(path: string): Format {
-  const ending = extname(path).toLowerCase();
-  return ending === ".json" ? "json" : ending === ".csv" ? "csv" : "text";
-}
-
-function wordIssue(issue: BatchIssue | ProtocolIssue): { message: string; remedy: string } {
+export function wordIssue(issue: BatchIssue | ProtocolIssue): { message: string; remedy: string } {
   if (issue.code.startsWith("batch/")) return wordBatchIssue(issue as BatchIssue);
   const { message, remedy } = wordProtocolIssue(issue as ProtocolIssue);
   return { message: message.replace(/^protocol: /, "comparison: "), remedy };
 }
 
-async function choicesFrom(options: CompareOptions, workingFolder: string): Promise<ComparisonChoicesInput> {
+export async function comparisonChoicesFrom(
+  options: CompareOptions,
+  workingFolder: string,
+): Promise<ComparisonChoicesInput> {
   const { reference, against, errors, alpha, parameters, quality, values } = options;
   return {
     ...(reference !== undefined && { reference }),

@@ -4,21 +4,25 @@ import { resolve } from "node:path";
 import { sha256, type Wording } from "../../app/base/index.ts";
 import type { RunglineResult } from "../../app/protocol/index.ts";
 import {
+  curvesToCsv,
   gravestFirst,
   noteLine,
   protocolToJson,
   resultsToJson,
   resultToCsv,
   resultToJson,
+  resultToLatex,
   resultToText,
   summaryRow,
   summaryToCsv,
   summaryToJson,
   type SummaryRow,
 } from "../../app/report/index.ts";
+import type { AnalysedFile } from "../../app/tasks/index.ts";
 import {
   FAILURES_SCHEMA,
   listInputs,
+  pathKind,
   programVersion,
   readResultFile,
   reasonInWords,
@@ -38,6 +42,8 @@ export interface FitOptions extends ChoiceOptions {
   /** Fits at a time; as many as the machine has processors where it is not said. */
   readonly threads?: number;
   readonly format?: Format;
+  /** Write the fitted curves beside each result. */
+  readonly curves?: boolean;
 }
 
 interface Failure {
@@ -46,9 +52,17 @@ interface Failure {
   readonly messages: readonly Wording[];
 }
 
+type Curves = AnalysedFile["curves"];
+
 /** What became of one input. */
 type Outcome =
-  | { readonly type: "result"; readonly result: RunglineResult; readonly kept: boolean }
+  | {
+      readonly type: "result";
+      readonly result: RunglineResult;
+      /** Null where the result was there already. */
+      readonly curves: Curves | null;
+      readonly kept: boolean;
+    }
   | {
       readonly type: "failure";
       readonly failure: Failure;
@@ -71,7 +85,7 @@ export async function fitCommand(
   const runner = io.makeRunner(threads);
   try {
     const choices = await readChoices(options, io.workingFolder);
-    const place = await placeOutput(options.out, options.format, inputs, io.workingFolder);
+    const place = await placeOutput(options.out, options.format, inputs, io.workingFolder, options.curves);
     let status: number = EXIT.done;
     const raise = (to: number): void => {
       status = Math.max(status, to);
@@ -108,6 +122,11 @@ export async function fitCommand(
       }
       const { result, kept } = outcome;
       // Written first, then said to be done.
+      const curvesFile =
+        place.kind === "print" ? null : place.kind === "file" ? place.curves : place.curves[i]!;
+      // Before the result: by that a later run sees that both are there.
+      if (curvesFile !== null && outcome.curves !== null)
+        await writeWhole(curvesFile, curvesToCsv(outcome.curves, result));
       if (place.kind === "file") await writeFile(place, result, choices);
       else if (place.kind === "folder") await writeInFolder(place, i, result, kept);
       else printed[i] = result;
@@ -128,7 +147,10 @@ export async function fitCommand(
           const outcome = await fitOne(
             input,
             choices,
-            place.kind === "folder" ? place.results[i]! : null,
+            place.kind === "folder" &&
+              (place.curves[i] === null || (await pathKind(place.curves[i]!)) === "file")
+              ? place.results[i]!
+              : null,
             io,
             (bytes) => {
               progress.begin(i);
@@ -162,7 +184,12 @@ export async function fitCommand(
       failures.sort((one, other) => one.at - other.at);
       await writeWhole(place.failures, failuresToJson(failures.map(({ failure }) => failure)));
       const { results, protocol, summary, summaryJson, failures: failed } = place;
-      await removeLeftovers(place.folder, [...results, protocol, summary, summaryJson, failed], began);
+      const curves = place.curves.filter((file) => file !== null);
+      await removeLeftovers(
+        place.folder,
+        [...results, ...curves, protocol, summary, summaryJson, failed],
+        began,
+      );
       if (failures.length > 0 && inputs.files.length > 1)
         io.stderr(
           failuresInWords(
@@ -219,12 +246,12 @@ async function fitOne(
   }
   if (keptFile !== null) {
     const there = await keptResult(keptFile, input.file, bytes, choices);
-    if (there !== null) return { type: "result", result: there, kept: true };
+    if (there !== null) return { type: "result", result: there, curves: null, kept: true };
   }
   const outcome = await fit(bytes);
   switch (outcome.type) {
     case "analysed":
-      return { type: "result", result: outcome.analysed.result, kept: false };
+      return { type: "result", ...outcome.analysed, kept: false };
     case "cancelled":
       return outcome;
     case "refused":
@@ -277,6 +304,8 @@ function render(results: readonly RunglineResult[], format: Format): string {
       return resultToCsv(...results);
     case "text":
       return results.map(resultToText).join("\n");
+    case "latex":
+      return resultToLatex(...results);
   }
 }
 

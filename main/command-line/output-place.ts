@@ -9,13 +9,21 @@ import {
   type OutputKind,
 } from "../services/index.ts";
 import { UsageError } from "./exit-status.ts";
+import type { Format } from "./format.ts";
 
-export type Format = "json" | "csv" | "text";
+export type { Format };
 
 /** Where results go. `print`: standard output; `file`: one result; `folder`: one a file and a summary. */
 export type OutputPlace =
   | { readonly kind: "print"; readonly format: Format }
-  | { readonly kind: "file"; readonly format: Format; readonly result: string; readonly protocol: string }
+  | {
+      readonly kind: "file";
+      readonly format: Format;
+      readonly result: string;
+      readonly protocol: string;
+      /** Where the fitted curves go; null where they are not asked for. */
+      readonly curves: string | null;
+    }
   | {
       readonly kind: "folder";
       readonly format: Format;
@@ -28,6 +36,8 @@ export type OutputPlace =
       readonly results: readonly string[];
       /** NAME.csv or NAME.txt beside it, where that format was asked for. */
       readonly others: readonly (string | null)[];
+      /** NAME.curves.csv, where curves were asked for. */
+      readonly curves: readonly (string | null)[];
     };
 
 /** Found out and, where something is in the way, refused before any work is done. */
@@ -36,30 +46,42 @@ export async function placeOutput(
   format: Format | undefined,
   inputs: InputList,
   workingFolder: string,
+  withCurves = false,
 ): Promise<OutputPlace> {
+  if (out === undefined && withCurves)
+    throw new UsageError("--curves writes files beside the results: name their place with --out");
   if (out === undefined) return { kind: "print", format: format ?? "text" };
   const path = resolve(workingFolder, out);
   const toFolder = inputs.hasFolder || inputs.files.length > 1;
   return toFolder
-    ? placeInFolder(path, out, format ?? "json", inputs, workingFolder)
-    : placeInFile(path, out, format ?? formatOf(path));
+    ? placeInFolder(path, out, format ?? "json", inputs, workingFolder, withCurves)
+    : placeInFile(path, out, format ?? formatOf(path), withCurves);
 }
 
-function formatOf(path: string): Format {
-  const ending = extname(path).toLowerCase();
-  return ending === ".json" ? "json" : ending === ".csv" ? "csv" : "text";
+const ENDINGS: Readonly<Record<string, Format>> = { ".json": "json", ".csv": "csv", ".tex": "latex" };
+
+export function formatOf(path: string): Format {
+  return ENDINGS[extname(path).toLowerCase()] ?? "text";
 }
 
-async function placeInFile(path: string, shown: string, format: Format): Promise<OutputPlace> {
+async function placeInFile(
+  path: string,
+  shown: string,
+  format: Format,
+  withCurves: boolean,
+): Promise<OutputPlace> {
   if (shown.endsWith("/") || (await pathKind(path)) === "folder")
     throw new UsageError(`--out ${shown}: is a folder, but for one input it names a file`);
-  const protocol = join(dirname(path), `${basename(path, extname(path))}.protocol.json`);
+  const beside = join(dirname(path), basename(path, extname(path)));
+  const protocol = `${beside}.protocol.json`;
+  const curves = withCurves ? `${beside}.curves.csv` : null;
   await refuseOthers([
     [path, "result"],
     [protocol, "protocol"],
+    ...(curves === null ? [] : [[curves, "curves"] as const]),
   ]);
   await requireFolderOf(path);
-  return { kind: "file", format, result: path, protocol };
+  return { kind: "file", format, result: path, protocol, curves };
 }
 
 async function placeInFolder(
@@ -68,12 +90,13 @@ async function placeInFolder(
   format: Format,
   inputs: InputList,
   workingFolder: string,
+  withCurves: boolean,
 ): Promise<OutputPlace> {
   const kind = await pathKind(folder);
   if (kind !== "none" && kind !== "folder")
     throw new UsageError(`--out ${shown}: is a file, but for several inputs or a folder it names a folder`);
   const names = resultNames(inputs.files, workingFolder);
-  const ending = format === "csv" ? ".csv" : format === "text" ? ".txt" : null;
+  const ending = { json: null, csv: ".csv", text: ".txt", latex: ".tex" }[format];
   const place: OutputPlace = {
     kind: "folder",
     format,
@@ -84,6 +107,7 @@ async function placeInFolder(
     failures: join(folder, "failures.json"),
     results: names.map((name) => join(folder, `${name}.json`)),
     others: names.map((name) => (ending === null ? null : join(folder, name + ending))),
+    curves: names.map((name) => (withCurves ? join(folder, `${name}.curves.csv`) : null)),
   };
   await refuseOthers([
     [place.protocol, "protocol"],
@@ -91,6 +115,7 @@ async function placeInFolder(
     [place.summaryJson, "summary"],
     [place.failures, "failures"],
     ...place.results.map((file): [string, OutputKind] => [file, "result"]),
+    ...place.curves.flatMap((file): [string, OutputKind][] => (file === null ? [] : [[file, "curves"]])),
     ...place.others.flatMap((file): [string, OutputKind][] => (file === null ? [] : [[file, "result"]])),
   ]);
   await makeFolder(folder);

@@ -7,6 +7,7 @@ import {
   protocolToJson,
   resultToCsv,
   resultToJson,
+  resultToLatex,
   resultToText,
 } from "../../app/report/index.ts";
 import {
@@ -121,6 +122,7 @@ async function readAll(
 
 function render(result: RunglineResult, format: Format): string {
   if (format === "json") return resultToJson(result);
+  if (format === "latex") return resultToLatex(result);
   return format === "csv" ? resultToCsv(result) : resultToText(result);
 }
 

@@ -8,6 +8,8 @@ import { EXIT, UsageError } from "./exit-status.ts";
 import type { CompareOptions } from "./compare-command.ts";
 import type { FitOptions } from "./fit-command.ts";
 import type { PowerOptions } from "./power-command.ts";
+import { FORMATS } from "./format.ts";
+import type { ReportOptions } from "./report-command.ts";
 import type { ChoiceOptions } from "./choices.ts";
 import { sayFault } from "./say.ts";
 
@@ -100,7 +102,8 @@ function describeProgram(
       .argument("<file...>", "spectra, folders of spectra, or patterns with * and ?"),
   )
     .option("--out <path>", "a file for one input; a folder for several or for a folder")
-    .addOption(new Option("--format <format>", "how results are written").choices(["json", "csv", "text"]))
+    .addOption(new Option("--format <format>", "how results are written").choices([...FORMATS]))
+    .option("--curves", "write the fitted curves beside each result, for figures and the report")
     .option("--threads <number>", "fits at a time (default: the number of processors)", wholeNumber)
     .action(async (files: string[], options: FitOptions) => {
       const { fitCommand } = await import("./fit-command.ts");
@@ -114,7 +117,7 @@ function describeProgram(
       .argument("<file...>", "spectra, folders of spectra, or patterns with * and ?"),
   )
     .option("--out <path>", "a file for the result; the ending says the format")
-    .addOption(new Option("--format <format>", "how the result is written").choices(["json", "csv", "text"]))
+    .addOption(new Option("--format <format>", "how the result is written").choices([...FORMATS]))
     .action(async (files: string[], options: PowerOptions) => {
       const { powerCommand } = await import("./power-command.ts");
       end(await powerCommand(files, options, io, signal));
@@ -141,12 +144,25 @@ function describeProgram(
     .option("--parameters <names>", "what is compared, separated by commas", once())
     .option("--quality <weights>", "weights of a figure of quality: highest_n=1,width_floor=-1", once())
     .option("--out <file>", "a file; the ending says the format")
-    .addOption(
-      new Option("--format <format>", "how the comparison is written").choices(["json", "csv", "text"]),
-    )
+    .addOption(new Option("--format <format>", "how the comparison is written").choices([...FORMATS]))
     .action(async (results: string[], options: CompareOptions) => {
       const { compareCommand } = await import("./compare-command.ts");
       end(await compareCommand(results, options, io));
+    });
+
+  program
+    .command("report")
+    .description("results to one HTML file that stands alone: figures, tables, notes, methods, protocol")
+    .argument("<result...>", "results as JSON, reports, or folders of results")
+    .option("--out <file>", "the report; without it, and without the options below, standard output", once())
+    .option("--figures <folder>", "each figure alone as SVG at the size of print", once())
+    .option("--tables <folder>", "the tables as CSV and LaTeX", once())
+    .option("--reference <batch>", "the batch that the others are compared with", once())
+    .option("--against <fact>", "trend over a header fact or typed column", once())
+    .option("--values <file>", "typed columns, as for compare", once())
+    .action(async (results: string[], options: ReportOptions) => {
+      const { reportCommand } = await import("./report-command.ts");
+      end(await reportCommand(results, options, io));
     });
 
   addChoices(

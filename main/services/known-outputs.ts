@@ -8,8 +8,13 @@ import {
 } from "../../app/protocol/index.ts";
 import {
   COMPARISON_CSV_MARK,
+  COMPARISON_LATEX_MARK,
   COMPARISON_TEXT_MARK,
+  CURVES_CSV_MARK,
+  FIGURE_SVG_MARK,
+  REPORT_HTML_MARK,
   RESULT_CSV_MARK,
+  RESULT_LATEX_MARK,
   RESULT_TEXT_MARK,
   SUMMARY_MARK,
   SUMMARY_SCHEMA,
@@ -18,7 +23,8 @@ import { pathKind } from "./files.ts";
 
 export const FAILURES_SCHEMA = "rungline-failures/1";
 
-export type OutputKind = "result" | "protocol" | "summary" | "failures" | "comparison";
+export type OutputKind =
+  "result" | "protocol" | "summary" | "failures" | "comparison" | "report" | "figure" | "curves";
 
 /** Whether something may be written here: nothing stands there yet, or what stands there is of the same kind. */
 export async function mayReplace(file: string, kind: OutputKind): Promise<boolean> {
@@ -33,6 +39,11 @@ async function kindOf(file: string): Promise<OutputKind | null> {
   const start = await beginning(file);
   if (start === null) return null;
   if (start.startsWith(RESULT_TEXT_MARK) || start.startsWith(RESULT_CSV_MARK)) return "result";
+  if (start.startsWith(RESULT_LATEX_MARK)) return "result";
+  if (start.startsWith(COMPARISON_LATEX_MARK)) return "comparison";
+  if (start.startsWith(REPORT_HTML_MARK)) return "report";
+  if (start.startsWith(FIGURE_SVG_MARK)) return "figure";
+  if (start.startsWith(CURVES_CSV_MARK)) return "curves";
   if (start.startsWith(SUMMARY_MARK)) return "summary";
   if (start.startsWith(COMPARISON_TEXT_MARK) || start.startsWith(COMPARISON_CSV_MARK)) return "comparison";
   const schema = /^\s*\[?\s*\{\s*"schema"\s*:\s*"([^"]*)"/.exec(start)?.[1] ?? "";

@@ -7,6 +7,8 @@ import { reasonInWords } from "./output-error.ts";
 
 export interface FoundResults {
   readonly results: readonly RunglineResult[];
+  /** The file that each result came from. */
+  readonly paths: readonly string[];
   /** What was named, but holds no result: in words. */
   readonly refused: readonly string[];
 }
@@ -18,6 +20,7 @@ export interface FoundResults {
  */
 export async function readResults(words: readonly string[], workingFolder: string): Promise<FoundResults> {
   const results: RunglineResult[] = [];
+  const paths: string[] = [];
   const refused: string[] = [];
   const take = async (path: string, named: boolean): Promise<number> => {
     let text: string;
@@ -33,6 +36,7 @@ export async function readResults(words: readonly string[], workingFolder: strin
     const parsed = parseResults(text);
     if (parsed.ok) {
       results.push(...parsed.value);
+      paths.push(...parsed.value.map(() => path));
       return parsed.value.length;
     }
     const { message, remedy } = wordResultIssue(parsed.issues[0]!);
@@ -55,5 +59,5 @@ export async function readResults(words: readonly string[], workingFolder: strin
       if (paths.length === 0) refused.push(`${word}: no file fits this pattern`);
     } else await take(word, true);
   }
-  return { results, refused };
+  return { results, paths, refused };
 }

@@ -55,7 +55,7 @@ describe("words that are wrong usage", () => {
     expect(help).toMatchObject({ status: 0, error: "" });
     expect(help.out).toContain("inspect");
     expect(help.out).toContain("fit");
-    expect(help.out).not.toMatch(/\breport\b/);
+    expect(help.out).toContain("report");
     const version = await bench.run("--version");
     expect(version.status).toBe(0);
     expect(version.out).toMatch(/^\d+\.\d+\.\d+\n$/);

@@ -1,7 +1,7 @@
 import type { ComparedPart, ComparedSample, Comparison } from "../../protocol/index.ts";
 import { PARAMETER_TITLES } from "../comparison-to-text.ts";
 import { energyUnit } from "../format-quantity.ts";
-import { linearAxis, logarithmicAxis, namedAxis, quantumNumberAxis } from "./axis.ts";
+import { linearAxis, logarithmicAxis, namedAxis, quantumNumberAxis, type AxisDescription } from "./axis.ts";
 import { batchLook, type BatchLook } from "./colours.ts";
 import { FULL_WIDTH_MM, ONE_COLUMN_MM, type Figure, type LegendEntry, type Mark } from "./figure.ts";
 
@@ -169,7 +169,7 @@ function allLines(comparison: Comparison, looks: ReadonlyMap<string, BatchLook>)
       panels: [
         {
           x: quantumNumberAxis(ns, "logarithmic"),
-          y: logarithmicAxis(
+          y: levelOrSteep(
             title,
             samples
               .flatMap((sample) => sample.lines.map((line) => line[quantity].value))
@@ -191,10 +191,23 @@ function allLines(comparison: Comparison, looks: ReadonlyMap<string, BatchLook>)
     ),
     figure(
       "compare-strengths",
-      "*A*_{n} *n*^{3} / (meV × unit of the signal)",
+      `*A*_{n} *n*^{3} / ${areaUnitOf(comparison)}`,
       "Areas times *n*^{3} of all samples, by batch: level where strengths follow *n*^{−3}.",
       "area_n3",
-      1e3,
+      1,
     ),
   ];
+}
+
+function areaUnitOf({ parameters }: Comparison): string {
+  const unit = parameters.find((part) => part.name === "strength_coefficient")?.unit ?? "";
+  return unit === "" ? "(eV × unit of the signal)" : unit.includes("/") ? `(${unit})` : unit;
+}
+
+/** What varies little is told apart better on a linear axis. */
+function levelOrSteep(title: string, values: readonly (number | null)[]): AxisDescription {
+  const known = values.filter((value): value is number => value !== null && value > 0);
+  return Math.max(...known) < 6 * Math.min(...known)
+    ? linearAxis(title, known)
+    : logarithmicAxis(title, values);
 }

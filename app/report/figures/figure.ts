@@ -131,6 +131,14 @@ export function figureToSvg(figure: Figure, idPrefix = ""): string {
   );
 }
 
+/** By its beginning a file is known as a figure that may be replaced. */
+export const FIGURE_SVG_MARK = '<?xml version="1.0" encoding="UTF-8"?>\n<!-- Rungline -->\n<svg ';
+
+/** A figure alone as the text of a file. */
+export function figureFile(figure: Figure): string {
+  return `<?xml version="1.0" encoding="UTF-8"?>\n<!-- Rungline -->\n${figureToSvg(figure)}\n`;
+}
+
 interface Box {
   readonly left: number;
   readonly top: number;
@@ -226,16 +234,7 @@ function drawMark(mark: Exclude<Mark, { kind: "label" }>, x: Place, y: Place, bo
       return stroke(path, mark.colour, 0.6, mark.dash);
     }
     case "line": {
-      let path = "";
-      let pen = false;
-      for (let i = 0; i < mark.x.length; i++) {
-        const [px, py] = [x(mark.x[i]!), y(mark.y[i] ?? null)];
-        if (px === null || py === null) pen = false;
-        else {
-          path += `${pen ? "L" : "M"}${num(px)} ${num(py)}`;
-          pen = true;
-        }
-      }
+      const path = linePath(mark.x, mark.y, x, y);
       return path === "" ? "" : stroke(path, mark.colour, mark.width ?? 0.9, mark.dash);
     }
     case "band": {
@@ -251,6 +250,65 @@ function drawMark(mark: Exclude<Mark, { kind: "label" }>, x: Place, y: Place, bo
     case "points":
       return drawPoints(mark, x, y);
   }
+}
+
+/** How far, in tenths of a point, a curve may be from the path that stands for it: less than a print can show. */
+const FLAT = 0.6;
+
+/**
+ * A curve as steps in tenths of a point (a thirtieth of a millimetre), without points that lie on the straight way between
+ * their neighbours: a smooth curve of a thousand points becomes a path of a few dozen.
+ */
+function linePath(xs: ArrayLike<number>, ys: ArrayLike<number | null>, x: Place, y: Place): string {
+  const out: string[] = [];
+  let run: [number, number][] = [];
+  const end = (): void => {
+    if (run.length > 1) out.push(runPath(run));
+    run = [];
+  };
+  for (let i = 0; i < xs.length; i++) {
+    const [px, py] = [x(xs[i]!), y(ys[i] ?? null)];
+    if (px === null || py === null) end();
+    else run.push([10 * px, 10 * py]);
+  }
+  end();
+  return out.join("");
+}
+
+function runPath(points: readonly (readonly [number, number])[]): string {
+  let [atX, atY] = points[0]!.map(Math.round) as [number, number];
+  let path = `M${atX / 10} ${atY / 10}l`;
+  let from = 0;
+  while (from < points.length - 1) {
+    let to = from + 1;
+    // As far as a straight way serves, but not so far that looking back becomes slow.
+    while (to + 1 < points.length && to - from < 60 && isStraight(points, from, to + 1)) to++;
+    const [toX, toY] = points[to]!.map(Math.round) as [number, number];
+    path += step(toX - atX) + step(toY - atY);
+    [atX, atY] = [toX, toY];
+    from = to;
+  }
+  return path;
+}
+
+function step(tenths: number): string {
+  const text = String(tenths / 10).replace(/^(-?)0\./, "$1.");
+  return text.startsWith("-") ? text : ` ${text}`;
+}
+
+function isStraight(points: readonly (readonly [number, number])[], from: number, to: number): boolean {
+  const [x0, y0] = points[from]!;
+  const [x1, y1] = points[to]!;
+  const length = Math.hypot(x1 - x0, y1 - y0);
+  for (let i = from + 1; i < to; i++) {
+    const [px, py] = points[i]!;
+    const away =
+      length === 0
+        ? Math.hypot(px - x0, py - y0)
+        : Math.abs((x1 - x0) * (py - y0) - (y1 - y0) * (px - x0)) / length;
+    if (away > FLAT) return false;
+  }
+  return true;
 }
 
 function drawPoints(mark: Mark & { kind: "points" }, x: Place, y: Place): string {

@@ -128,7 +128,7 @@ function labelsOfN(
     .flatMap((line): Mark[] => {
       const at = x(line);
       const value = y(line);
-      if (value === null || (last - at) / high < 0.05) return [];
+      if (value === null || (last - at) / high < 0.07) return [];
       last = at;
       return [{ kind: "label", x: at, y: value, text: String(line.n), colour: MUTED, lift: 4.5 }];
     });

@@ -1,0 +1,418 @@
+import type { LineResult, RunglineResult } from "../protocol/index.ts";
+import { areaUnit, signalUnitWords } from "./area-unit.ts";
+import { count, measured, numberColumn, textColumn, words, type Cell, type DataTable } from "./data-table.ts";
+import {
+  ELECTRONVOLT,
+  energyUnit,
+  formatNumber,
+  MICROELECTRONVOLT,
+  NOT_DETERMINED_WORDS,
+  type EnergyUnit,
+} from "./format-quantity.ts";
+import { percent } from "./protocol-in-words.ts";
+import { interval, isOneSigma, smallestUnit, systematicWords } from "./result-to-text.ts";
+
+type Quantity = LineResult["energy_eV"];
+const PURE: EnergyUnit = { name: "", perElectronvolt: 1 };
+
+/** The tables of one result, in the order in which a paper gives them. */
+export function resultTables(result: RunglineResult): readonly DataTable[] {
+  return [
+    seriesTable(result),
+    lawsTable(result),
+    linesTable(result),
+    lineSizesTable(result),
+    extraTable(result),
+    derivedTable(result),
+    rangesTable(result),
+    readingsTable(result),
+    trialsTable(result),
+    backgroundTable(result),
+    resampledTable(result),
+  ].filter((table) => table !== null);
+}
+
+/** Unequal sides belong behind the value only where the interval is that of one standard error. */
+function energyCell(quantity: Quantity, unit: EnergyUnit, level: number): Cell {
+  const plain = isOneSigma(level) ? quantity : { ...quantity, low: null, high: null };
+  return measured(plain, unit.perElectronvolt, unit.name);
+}
+
+function seriesTable(result: RunglineResult): DataTable | null {
+  const { series, systematic } = result;
+  if (series === null) return null;
+  const level = result.protocol.uncertainty.level;
+  const rydberg = energyUnit(series.rydberg_eV.value);
+  const ritz = series.defect2.value !== null;
+  const row = (name: string, quantity: Quantity, unit: EnergyUnit, part: string): Cell[] => [
+    words(name),
+    energyCell(quantity, unit, level),
+    words(part),
+    words(interval(quantity, unit)),
+  ];
+  const defectPart =
+    systematic === null || systematic.defect0 === null
+      ? NOT_DETERMINED_WORDS
+      : `±${formatNumber(systematic.defect0, 2)}`;
+  return {
+    name: "series",
+    title: `Series *E*_{n} = *E*_{g} − *Ry*/(*n* − *δ*)^{2}, *n* = ${series.fit_n[0]} to ${series.fit_n[1]}`,
+    columns: [
+      textColumn("quantity"),
+      textColumn("value(standard error)"),
+      textColumn("systematic"),
+      textColumn(`interval at ${percent(level)}`),
+    ],
+    rows: [
+      row("gap", series.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null, null)),
+      row(
+        "Rydberg energy",
+        series.rydberg_eV,
+        rydberg,
+        systematicWords(systematic?.rydberg_eV ?? null, rydberg),
+      ),
+      row(ritz ? "quantum defect, constant part" : "quantum defect", series.defect0, PURE, defectPart),
+      ...(ritz ? [row("quantum defect, Ritz term", series.defect2, PURE, "")] : []),
+      ...(series.scaled === null
+        ? []
+        : [
+            row("gap, error scaled since the law is rejected", series.scaled.gap_eV, ELECTRONVOLT, ""),
+            row("Rydberg energy, error scaled", series.scaled.rydberg_eV, rydberg, ""),
+            row("quantum defect, error scaled", series.scaled.defect0, PURE, ""),
+          ]),
+    ],
+    remarks: [
+      `Chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, *p* = ${formatNumber(series.p, 3)}. The standard error is statistical; the systematic part is the spread over defensible choices.`,
+      ...correlations(series.correlation),
+    ],
+  };
+}
+
+function correlations({
+  names,
+  matrix,
+}: {
+  names: readonly string[];
+  matrix: readonly (readonly number[])[];
+}): string[] {
+  const pairs = names.flatMap((name, i) =>
+    names
+      .slice(i + 1)
+      .map(
+        (other, k) =>
+          `${plainName(name)} and ${plainName(other)} ${(matrix[i]?.[i + 1 + k] ?? 0).toFixed(3)}`,
+      ),
+  );
+  return pairs.length === 0 ? [] : [`Correlations: ${pairs.join("; ").replaceAll("-", "−")}.`];
+}
+
+function plainName(key: string): string {
+  return (
+    { gap_eV: "gap", rydberg_eV: "Rydberg energy", defect0: "defect", defect2: "Ritz term" }[key] ??
+    key.replaceAll("_", " ")
+  );
+}
+
+function lawsTable(result: RunglineResult): DataTable | null {
+  const { width_law: width, strength_law: strength, tail } = result;
+  const rows: Cell[][] = [];
+  const held = (quantity: Quantity, unit: EnergyUnit): Cell =>
+    measured(quantity, unit.perElectronvolt, unit.name);
+  const about = (law: {
+    fit_n: readonly number[];
+    chi2: number | null;
+    dof: number;
+    p: number | null;
+  }): string =>
+    `n = ${law.fit_n[0]} to ${law.fit_n[1]}, chi square ${formatNumber(law.chi2, 3)} for ${law.dof}, p = ${formatNumber(law.p, 2)}`;
+  if (width !== null)
+    rows.push(
+      [words("width floor"), held(width.floor_eV, MICROELECTRONVOLT), words(about(width))],
+      [
+        words("width coefficient"),
+        held(width.coefficient_eV, energyUnit(width.coefficient_eV.value)),
+        words(`base ${width.base}`),
+      ],
+      [words("width exponent"), measured(width.exponent, 1, ""), words("")],
+    );
+  if (strength !== null)
+    rows.push(
+      [
+        words("strength coefficient"),
+        measured(strength.coefficient, 1, areaUnit(result.reading.signal_unit)),
+        words(`${strength.law} on ${strength.base}; ${about(strength)}`),
+      ],
+      [
+        words("area n³ half of the law"),
+        words(
+          strength.half_at_n === null
+            ? "not within the lines seen"
+            : `at n = ${formatNumber(strength.half_at_n, 3)}`,
+        ),
+        words(""),
+      ],
+    );
+  if (tail !== null)
+    rows.push([
+      words("tail over strength law"),
+      measured(tail.factor, 1, ""),
+      words(`n = ${tail.from_n} to ${tail.to_n}`),
+    ]);
+  return rows.length === 0
+    ? null
+    : {
+        name: "laws",
+        title: "Laws of widths and strengths",
+        columns: [textColumn("quantity"), textColumn("value(standard error)"), textColumn("law")],
+        rows,
+        remarks: [],
+      };
+}
+
+function linesTable(result: RunglineResult): DataTable | null {
+  const { lines } = result;
+  if (lines.length === 0) return null;
+  const unit = smallestUnit(lines.map((line) => line.width_eV.value));
+  const area = areaUnit(result.reading.signal_unit);
+  const signal = signalUnitWords(result.reading.signal_unit);
+  const left = lines.some((line) => !line.in_level_fit);
+  return {
+    name: "lines",
+    title: "Lines",
+    columns: [
+      numberColumn("*n*"),
+      numberColumn("*E*_{n}", "eV"),
+      numberColumn("*Γ*_{n}", unit.name),
+      numberColumn("*A*_{n}", area.includes("/") ? `(${area})` : area),
+      numberColumn("*q*_{n}"),
+      numberColumn("*A*_{n}/*σ*"),
+      numberColumn("*E*_{n} − law", "µeV"),
+      numberColumn("peak", signal === "" ? "" : `(${signal})`),
+      numberColumn("*Γ*_{n}/spacing"),
+      numberColumn("lifetime", "ps"),
+    ],
+    rows: lines.map((line) => [
+      count(line.n),
+      measured(line.energy_eV),
+      measured(line.width_eV, unit.perElectronvolt),
+      measured(line.area),
+      measured(line.asymmetry),
+      count(line.significance, 3),
+      measured(line.law_offset_eV, 1e6, null, line.in_level_fit ? "" : " *"),
+      measured(line.peak),
+      count(line.width_over_spacing, 2),
+      measured(line.lifetime_ps),
+    ]),
+    remarks: [
+      `*Γ*_{n}: full width at half maximum of the Lorentzian part. *A*_{n}: area. *q*_{n}: asymmetry.${left ? " A star: not in the fit of the level law." : ""}`,
+    ],
+  };
+}
+
+/** Beside the lines: what follows from each with the choices of material. */
+function lineSizesTable(result: RunglineResult): DataTable | null {
+  const { lines, derived } = result;
+  const strengths = lines.some((line) => line.strength_per_cm3.value !== null);
+  if (lines.length === 0) return null;
+  const area = areaUnit(result.reading.signal_unit);
+  const notDetermined = { value: null, sigma: null, low: null, high: null };
+  return {
+    name: "line-sizes",
+    title: "Strengths and sizes",
+    columns: [
+      numberColumn("*n*"),
+      numberColumn("*A*_{n} *n*^{3}", area.includes("/") ? `(${area})` : area),
+      ...(strengths ? [numberColumn("*N f*", "(1/cm^3)")] : []),
+      numberColumn("mean radius", "µm"),
+    ],
+    rows: lines.map((line) => [
+      count(line.n),
+      measured(line.area_n3),
+      ...(strengths ? [measured(line.strength_per_cm3)] : []),
+      measured(derived?.radius_um.find((radius) => radius.n === line.n) ?? notDetermined),
+    ]),
+    remarks: [
+      `${strengths ? "*N f*: density of oscillators times their strength. " : ""}A mark of question: error unknown, since the Bohr radius was given without one.`,
+    ],
+  };
+}
+
+function extraTable(result: RunglineResult): DataTable | null {
+  const extra = result.extra ?? [];
+  if (extra.length === 0) return null;
+  return {
+    name: "extra-series",
+    title: "Lines of other series with the same gap and Rydberg energy",
+    columns: [
+      textColumn("series"),
+      numberColumn("*n*"),
+      numberColumn("*E*_{n}", "eV"),
+      numberColumn("*Γ*_{n}", "µeV"),
+      numberColumn("*A*_{n}", `(${areaUnit(result.reading.signal_unit)})`),
+      numberColumn("*A*_{n}/*σ*"),
+      numberColumn("*δ*"),
+    ],
+    rows: extra.flatMap((one) =>
+      one.lines.map((line): Cell[] => [
+        words(one.name),
+        count(line.n),
+        measured(line.energy_eV),
+        measured(line.width_eV, 1e6),
+        measured(line.area),
+        count(line.significance, 3),
+        measured(one.defect),
+      ]),
+    ),
+    remarks: [],
+  };
+}
+
+function derivedTable(result: RunglineResult): DataTable | null {
+  const { derived } = result;
+  if (derived === null) return null;
+  const whole = (n: number | null): Cell => (n === null ? words(NOT_DETERMINED_WORDS) : words(String(n)));
+  const binding = energyUnit(derived.binding_eV.value);
+  return {
+    name: "derived",
+    title: "Derived quantities",
+    columns: [textColumn("quantity"), textColumn("value(standard error)"), textColumn("from")],
+    rows: [
+      [words("Bohr radius"), measured(derived.bohr_radius_nm, 1, "nm"), words(derived.bohr_radius_from)],
+      [
+        words(`binding energy of n = ${derived.binding_eV.n}`),
+        measured(derived.binding_eV, binding.perElectronvolt, binding.name),
+        words(""),
+      ],
+      [words("apparent gap"), measured(derived.apparent_gap_eV, 1, "eV"), words("")],
+      [words("highest n seen"), whole(derived.highest_n), words("")],
+      [words("highest n told apart"), whole(derived.highest_resolved_n), words("width below spacing")],
+    ],
+    remarks: [],
+  };
+}
+
+function rangesTable(result: RunglineResult): DataTable | null {
+  const ranges = result.series?.ranges ?? [];
+  if (ranges.length < 2) return null;
+  const rydberg = energyUnit(result.series!.rydberg_eV.value);
+  return {
+    name: "ranges",
+    title: "The same level law for other ranges of *n*",
+    columns: [
+      textColumn("*n*"),
+      numberColumn("*E*_{g}", "eV"),
+      numberColumn("*Ry*", rydberg.name),
+      numberColumn("*δ*"),
+      numberColumn("chi square"),
+      numberColumn("degrees of freedom"),
+      numberColumn("*p*"),
+    ],
+    rows: ranges.map((one) => [
+      words(`${one.n_min} to ${one.n_max}`),
+      measured(one.gap_eV),
+      measured(one.rydberg_eV, rydberg.perElectronvolt),
+      measured(one.defect0),
+      count(one.chi2, 4),
+      count(one.dof),
+      count(one.p, 2),
+    ]),
+    remarks: [],
+  };
+}
+
+function readingsTable(result: RunglineResult): DataTable | null {
+  const readings = result.series?.readings ?? [];
+  if (readings.length < 2) return null;
+  return {
+    name: "readings",
+    title: "Readings of *n*: not decided by energies, ranked by strengths and widths",
+    columns: [
+      numberColumn("shift of *n*"),
+      numberColumn("*δ*"),
+      numberColumn("chi square of strengths"),
+      numberColumn("chi square of widths"),
+      textColumn(""),
+    ],
+    rows: readings.map((one) => [
+      count(one.shift),
+      count(one.defect0, 4),
+      count(one.strength_chi2, 4),
+      count(one.width_chi2, 4),
+      words(one.chosen ? "chosen" : ""),
+    ]),
+    remarks: [],
+  };
+}
+
+function trialsTable(result: RunglineResult): DataTable | null {
+  const trials = result.systematic?.trials ?? [];
+  if (trials.length === 0) return null;
+  const bare = (value: number | null, digits: number): Cell =>
+    words(value === null ? NOT_DETERMINED_WORDS : value.toFixed(digits).replace(/^-/, "−"));
+  return {
+    name: "systematic-trials",
+    title: "Trials behind the systematic part",
+    columns: [
+      textColumn("trial"),
+      textColumn("*E*_{g} / eV"),
+      textColumn("*Ry* / meV"),
+      textColumn("*δ*"),
+      numberColumn("chi square"),
+      textColumn("BIC"),
+      numberColumn("*p* of runs"),
+      textColumn("counted"),
+    ],
+    rows: trials.map((one) => [
+      words(one.name),
+      bare(one.gap_eV, 8),
+      bare(one.rydberg_eV === null ? null : 1e3 * one.rydberg_eV, 4),
+      bare(one.defect0, 5),
+      count(one.chi2, 5),
+      bare(one.bic, 1),
+      count(one.runs_p, 2),
+      words(one.counted === undefined ? "" : one.counted ? "yes" : "no"),
+    ]),
+    remarks: [],
+  };
+}
+
+function backgroundTable(result: RunglineResult): DataTable | null {
+  if (result.background.length === 0) return null;
+  return {
+    name: "background",
+    title: "Background",
+    columns: [textColumn("term"), textColumn("parameter"), textColumn("value(standard error)")],
+    rows: result.background.map((one) => [
+      words(one.term),
+      words(one.name),
+      measured(one.quantity, 1, signalUnitWords(one.unit)),
+    ]),
+    remarks: [],
+  };
+}
+
+function resampledTable(result: RunglineResult): DataTable | null {
+  const { resampled } = result;
+  if (resampled === null || resampled === undefined) return null;
+  const row = (
+    name: string,
+    one: { median: number | null; low: number | null; high: number | null },
+    factor: number,
+    unit: string,
+  ): Cell[] => [
+    words(`${name}${unit === "" ? "" : ` / ${unit}`}`),
+    ...[one.median, one.low, one.high].map((value) => count(value === null ? null : value * factor, 9)),
+  ];
+  return {
+    name: "resampled",
+    title: `Intervals from ${resampled.count} resampled spectra (${resampled.kind}, seed ${resampled.seed}, ${resampled.failed} failed)`,
+    columns: [textColumn("quantity"), numberColumn("median"), numberColumn("low"), numberColumn("high")],
+    rows: [
+      row("gap", resampled.gap_eV, 1, "eV"),
+      row("Rydberg energy", resampled.rydberg_eV, 1e3, "meV"),
+      row("quantum defect", resampled.defect0, 1, ""),
+      row("width exponent", resampled.width_exponent, 1, ""),
+    ],
+    remarks: [`Interval at ${percent(result.protocol.uncertainty.level)}.`],
+  };
+}
