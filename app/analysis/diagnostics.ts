@@ -107,7 +107,8 @@ function lineCorrelation(fit: SpectrumFit): Diagnostics["correlation"] {
         i === j
           ? 1
           : finite(
-              Math.round((1e3 * covariance[a.at * size + b.at]!) / (deviation[i]! * deviation[j]!)) / 1e3,
+              // No -0, which JSON does not keep.
+              Math.round((1e3 * covariance[a.at * size + b.at]!) / (deviation[i]! * deviation[j]!)) / 1e3 + 0,
             ),
       ),
     ),
