@@ -4,7 +4,7 @@ import type { Axis, Trace } from "../plot/figure-description.ts";
 import { axis, signalTitle } from "../plot/layout.ts";
 
 /** The share of the lines by n that the panel begins with: high n, where power shows first. */
-const FIRST_SHARE = 0.3;
+const FIRST_SHARE = 0.45;
 /** Each spectrum stands above the one before by this share of the reach of the first. */
 const OFFSET = 0.45;
 

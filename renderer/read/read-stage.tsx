@@ -134,6 +134,9 @@ const ROLE_WORDS = {
   other: "not used",
 } as const;
 
+/** More columns without use than this are named in one line. */
+const MANY = 2;
+
 const NOISE_WORDS = {
   column: "from its column",
   protocol: "as chosen",
@@ -149,6 +152,11 @@ function Facts({ inspection }: { readonly inspection: Inspection }) {
   let used = 0;
   for (let i = 0; i < count; i++) used += spectrum.used[i]!;
   const unit = spectrum.unit === "1/cm" ? " cm⁻¹" : "";
+  // A table of many columns would fill the ledger with what was not needed.
+  const others = spectrum.columns.filter(({ role }) => role === "other");
+  const idle = others.length > MANY ? others : [];
+  const needed =
+    others.length > MANY ? spectrum.columns.filter(({ role }) => role !== "other") : spectrum.columns;
   const cautions = cautionsFor({ notes: [...spectrum.notes], reading: { facts: [...spectrum.facts] } });
   return (
     <div className="facts">
@@ -170,12 +178,18 @@ function Facts({ inspection }: { readonly inspection: Inspection }) {
       <section aria-label="Columns">
         <h3>What the columns were taken for</h3>
         <ul className="roles">
-          {spectrum.columns.map((column) => (
+          {needed.map((column) => (
             <li key={`${column.role}${column.column}`}>
               <strong>{ROLE_WORDS[column.role]}</strong>: {columnName(column.column, column.header)}
               <p className="small">{column.reason}</p>
             </li>
           ))}
+          {idle.length > 0 && (
+            <li>
+              <strong>{ROLE_WORDS.other}</strong>:{" "}
+              {idle.map((column) => columnName(column.column, column.header)).join(", ")}
+            </li>
+          )}
         </ul>
       </section>
       <section aria-label="Header">
