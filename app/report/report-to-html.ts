@@ -298,14 +298,23 @@ function readingToHtml(result: RunglineResult): string {
   ])}`;
 }
 
+/** Marks that would be lost between other marks. */
+const MARK_NAMES: Readonly<Record<string, string>> = {
+  " ": "spaces",
+  "\t": "tab",
+  ",": "comma",
+  ";": "semicolon",
+  ".": "point",
+  true: "yes",
+};
+
 function dialectInWords({ reading: { dialect } }: RunglineResult): string {
   const told = Object.entries(dialect).filter(
     ([key, value]) => !key.endsWith("_reason") && value !== null && value !== "" && value !== false,
   );
   return told
     .map(([key, value]) => {
-      const shown =
-        value === " " ? "spaces" : value === "\t" ? "tab" : value === true ? "yes" : String(value);
+      const shown = MARK_NAMES[String(value)] ?? String(value);
       return `${key.replace(/([A-Z])/g, " $1").toLowerCase()} ${shown}`;
     })
     .join("; ");

@@ -115,7 +115,7 @@ const UNITS: Readonly<Record<string, string>> = {
 
 /** `eV/cm`, `1/cm`, `µm^3`, `1/µW` in the macros of siunitx; what is not known is set as words. */
 export function unitToLatex(unit: string, command: string): string {
-  const [over, under] = unit.replace(/[()]/g, "").split("/") as [string, string | undefined];
+  const [over, under] = unit.replace(/[(){}]/g, "").split("/") as [string, string | undefined];
   const macro = (part: string): string | null => {
     const match = /^(\p{L}+)(?:\^(\d)|([²³]))?$/u.exec(part.trim());
     const known = match === null ? undefined : UNITS[match[1]!];
@@ -168,8 +168,7 @@ const SPECIAL: Readonly<Record<string, string>> = {
   "⁻": "$^-$",
 };
 
+/** Words as they are: every mark that LaTeX would obey is set as a character, in one pass. */
 export function escapeLatex(text: string): string {
-  return text
-    .replace(/[\\~^−±×µ⁻]/g, (c) => SPECIAL[c]!)
-    .replace(/[&%$#_{}]/g, (c) => (c === "$" || c === "{" || c === "}" ? c : `\\${c}`));
+  return text.replace(/[\\~^&%$#_{}−±×µ⁻]/g, (c) => SPECIAL[c] ?? `\\${c}`);
 }

@@ -1,0 +1,137 @@
+import { describe, expect, it } from "vitest";
+import { figureFile, figureToSvg, reportContents, type Figure } from "../../../app/report/index.ts";
+import {
+  linearAxis,
+  linearTicks,
+  logarithmicAxis,
+  quantumNumberAxis,
+} from "../../../app/report/figures/axis.ts";
+import { compareSamples } from "../../../app/tasks/index.ts";
+import { reportCurves, reportSamples } from "../../support/report-samples.ts";
+
+const RUN = { version: "0.1.0", node: "v20.0.0", started: "2026-01-02T03:04:05.000Z" };
+
+function plot(x: number[], y: (number | null)[]): Figure {
+  return {
+    name: "plot",
+    caption: "A *plot*",
+    width_mm: 86,
+    height_mm: 60,
+    legend: [],
+    panels: [
+      {
+        x: linearAxis("*x* / eV", [0, 10], { pad: 0 }),
+        y: linearAxis("*y*", [0, 10], { pad: 0 }),
+        marks: [{ kind: "line", x, y, colour: "#000000" }],
+        share: 1,
+      },
+    ],
+  };
+}
+
+/** End points of the path of a line, in points, from its relative steps. */
+function walk(path: string): number[][] {
+  const [, startX, startY, rest] = /^M(-?[\d.]+) (-?[\d.]+)l(.*)$/.exec(path)!;
+  const steps = (rest!.match(/-?(?:\d+\.?\d*|\.\d+)/g) ?? []).map(Number);
+  const out = [[Number(startX), Number(startY)]];
+  for (let i = 0; i < steps.length; i += 2) {
+    const [x, y] = out.at(-1)!;
+    out.push([x! + steps[i]!, y! + steps[i + 1]!]);
+  }
+  return out;
+}
+
+describe("axes", () => {
+  it("have ticks at 1, 2 or 5 times a power of ten, written with a true minus", () => {
+    // Derived: 0 to 10 in about five steps is a step of 2; -0.3 to 0.3 one of 0.1
+    expect(linearTicks(0, 10).map(({ label }) => label)).toEqual(["0", "2", "4", "6", "8", "10"]);
+    expect(linearTicks(-0.3, 0.3).map(({ label }) => label)).toEqual([
+      "−0.3",
+      "−0.2",
+      "−0.1",
+      "0.0",
+      "0.1",
+      "0.2",
+      "0.3",
+    ]);
+    expect(linearTicks(2.1400025, 2.1730491).map(({ label }) => label)).toEqual(
+      ["2.140", "2.145", "2.150", "2.155", "2.160", "2.165", "2.170"].slice(1),
+    );
+  });
+
+  it("of one value, of none and of nothing finite still have a range", () => {
+    for (const values of [[], [3], [null, NaN], [0]]) {
+      const axis = linearAxis("", values);
+      expect(axis.high).toBeGreaterThan(axis.low);
+      const logarithmic = logarithmicAxis("", values);
+      expect(logarithmic.high).toBeGreaterThan(logarithmic.low);
+      expect(logarithmic.low).toBeGreaterThan(0);
+    }
+  });
+
+  it("of n number what has room and tick the rest", () => {
+    const { ticks } = quantumNumberAxis(
+      Array.from({ length: 24 }, (_, i) => i + 2),
+      "logarithmic",
+    );
+    expect(ticks).toHaveLength(24);
+    expect(ticks[0]!.label).toBe("2");
+    expect(ticks.filter(({ label }) => label !== "").length).toBeLessThan(16);
+  });
+});
+
+describe("a figure as SVG", () => {
+  it("has the size of print, a text for readers of the screen, and no more than XML needs", () => {
+    const text = figureFile(plot([0, 10], [0, 10]));
+    expect(text).toContain('width="86mm" height="60mm"');
+    expect(text).toContain('aria-label="A plot"');
+    expect(text).not.toMatch(/<script|<style|href/);
+  });
+
+  it("draws a line where it belongs, without points that lie on the way, and broken where data are missing", () => {
+    const x = Array.from({ length: 101 }, (_, i) => i / 10);
+    const straight = /d="(M[^"]*l[^"]*)"/.exec(figureToSvg(plot(x, x)))![1]!;
+    const points = walk(straight);
+    expect(points.length).toBeLessThan(5);
+    // Derived: right and top ends of the panel: 86 mm less the margin of 6 points; the margin above is 5 points
+    expect(points.at(-1)![0]).toBeCloseTo((86 * 72) / 25.4 - 6, 0);
+    expect(points.at(-1)![1]).toBeCloseTo(5, 0);
+    const curve = x.map((value) => 5 + 5 * Math.sin(value));
+    const wave = walk(/d="(M[^"]*l[^"]*)"/.exec(figureToSvg(plot(x, curve)))![1]!);
+    // Derived: drawn tenths of a point do not add up to more than their own rounding at the end
+    const height = points[0]![1]! - 5;
+    expect(wave.at(-1)![1]).toBeCloseTo(points[0]![1]! - (height * curve.at(-1)!) / 10, 0);
+    const broken = figureToSvg(plot([0, 1, 2, 3], [1, 1, null, 1]));
+    expect(broken).toMatch(/d="M[^"M]*"/);
+  });
+
+  it("holds nothing that is no number, whatever is missing in the results", () => {
+    const results = reportSamples(3);
+    const holes = { value: null, sigma: null, low: null, high: null };
+    results[1]!.lines[0]!.width_eV = holes;
+    results[1]!.lines[1]!.area = holes;
+    results[1]!.series!.gap_eV = holes;
+    const compared = compareSamples(results, {}, RUN);
+    const contents = reportContents({
+      results,
+      curves: results.map((result) => reportCurves(result, 500)),
+      comparison: compared.ok ? compared.value : null,
+      run: RUN,
+    });
+    const figures = [
+      ...contents.samples.flatMap((sample) => sample.figures),
+      ...contents.comparison!.figures,
+    ];
+    expect(figures.length).toBeGreaterThan(15);
+    for (const figure of figures) expect(figureToSvg(figure)).not.toMatch(/NaN|Infinity|undefined|null/);
+  });
+
+  it("names axes as quantity / unit", () => {
+    const results = reportSamples(1);
+    const [sample] = reportContents({ results, curves: [null], comparison: null, run: RUN }).samples;
+    const titles = sample!.figures.flatMap(({ panels }) => panels.flatMap(({ x, y }) => [x.title, y.title]));
+    expect(titles).toContain("*Γ*_{n} / µeV");
+    expect(titles).toContain("1/(*n* − *δ*)^{2}");
+    expect(titles).toContain("(*E*_{n} − law) / µeV");
+  });
+});
