@@ -38,7 +38,10 @@ const SIGMA = 1.2;
 
 /** Values off by more than five standard errors: gap, Rydberg energy, defect, and every line energy. */
 function wrongFigures(bytes: Uint8Array, series: SyntheticSeries): { wrong: string[]; grave: string[] } {
-  const result = resultOf(bytes, { material: { preset: "cuprous-oxide-yellow-p" }, uncertainty: { systematic: false } });
+  const result = resultOf(bytes, {
+    material: { preset: "cuprous-oxide-yellow-p" },
+    uncertainty: { systematic: false },
+  });
   const wrong: string[] = [];
   const judge = (name: string, value: number | null, sigma: number | null, truth: number): void => {
     if (value !== null && sigma !== null && sigma > 0 && Math.abs(value - truth) > 5 * sigma)
