@@ -12,14 +12,23 @@ export default tseslint.config(
       // noUncheckedIndexedAccess makes `!` the plain way to read a typed array inside a counted loop.
       "@typescript-eslint/no-non-null-assertion": "off",
       "@typescript-eslint/consistent-type-imports": "error",
-      "@typescript-eslint/no-unused-vars": ["error", { ignoreRestSiblings: true, varsIgnorePattern: "^_", argsIgnorePattern: "^_" }],
+      "@typescript-eslint/no-unused-vars": [
+        "error",
+        { ignoreRestSiblings: true, varsIgnorePattern: "^_", argsIgnorePattern: "^_" },
+      ],
       eqeqeq: "error",
     },
   },
   {
     files: ["**/*.mjs", "**/*.js"],
     languageOptions: {
-      globals: { process: "readonly", console: "readonly", URL: "readonly", Buffer: "readonly", setTimeout: "readonly" },
+      globals: {
+        process: "readonly",
+        console: "readonly",
+        URL: "readonly",
+        Buffer: "readonly",
+        setTimeout: "readonly",
+      },
     },
   },
   { files: ["renderer/**/*.{ts,tsx}"], ...reactHooks.configs.flat.recommended },
