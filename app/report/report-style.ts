@@ -37,7 +37,7 @@ th, td { padding: .18rem .9rem .18rem 0; vertical-align: top; }
 th:last-child, td:last-child { padding-right: 0; }
 tbody tr:last-child td { border-bottom: 1.5px solid var(--ink); }
 td.n, th.n { text-align: right; }
-td.n { white-space: nowrap; }
+td.n, td.q { white-space: nowrap; }
 .remark { font-size: .8rem; color: var(--muted); margin: .3rem 0; }
 ul.notes { list-style: none; padding: 0; margin: .5rem 0; columns: 2 24rem; column-gap: 2rem; }
 ul.notes li { break-inside: avoid; margin-bottom: .7rem; font-size: .85rem; line-height: 1.4; padding-left: .7rem; border-left: 2px solid var(--line); }
@@ -48,7 +48,8 @@ pre { columns: 3 16rem; white-space: pre-wrap; overflow-wrap: anywhere; margin: 
 .hash { font-size: .72rem; overflow-wrap: anywhere; }
 .caution { border: 1px solid var(--accent); padding: .5rem .8rem; max-width: 46rem; }
 @media (max-width: 46rem) { figure.column { width: 100%; } body { padding: 1.2rem; } dl { grid-template-columns: 1fr; } dd { margin-bottom: .4rem; } }
-@page { size: A4; margin: 15mm 14mm 16mm; }
+@page { size: A4; margin: 15mm 14mm 16mm;
+  @bottom-right { content: counter(page); font: 8pt "IBM Plex Sans", Arial, "DejaVu Sans", sans-serif; color: #5a636c; } }
 @media print {
   html { background: none; }
   body { max-width: none; padding: 0; font-size: 9.5pt; line-height: 1.4; }

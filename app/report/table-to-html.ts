@@ -12,7 +12,7 @@ export function tableToHtml(table: DataTable): string {
   const rows = table.rows
     .map(
       (row) =>
-        `<tr>${row.map((cell, i) => `<td${sideOf(table.columns[i]!)}>${cellToHtml(cell)}</td>`).join("")}</tr>`,
+        `<tr>${row.map((cell, i) => `<td${sideOf(table.columns[i]!, cell)}>${cellToHtml(cell)}</td>`).join("")}</tr>`,
     )
     .join("\n");
   const remarks = table.remarks.map((remark) => `<p class="remark">${richToHtml(remark)}</p>`).join("");
@@ -22,8 +22,8 @@ export function tableToHtml(table: DataTable): string {
   );
 }
 
-function sideOf(column: DataColumn): string {
-  return column.kind === "numbers" ? ' class="n"' : "";
+function sideOf(column: DataColumn, cell?: Cell): string {
+  return column.kind === "numbers" ? ' class="n"' : cell?.kind === "quantity" ? ' class="q"' : "";
 }
 
 function headOf({ head, unit }: DataColumn): string {
@@ -33,7 +33,8 @@ function headOf({ head, unit }: DataColumn): string {
 export function cellToHtml(cell: Cell): string {
   switch (cell.kind) {
     case "text":
-      return escapeMarkup(cell.text);
+      // A power of ten stays with its number.
+      return escapeMarkup(cell.text.replaceAll(" × 10", "\u00a0×\u00a010"));
     case "number":
       return escapeMarkup(formatNumber(cell.value, cell.digits).replace(/^-/, "−"));
     case "quantity":

@@ -42,6 +42,7 @@ function bleachingFigure(power: PowerResult): Figure | null {
     values.push(...measured.map(({ area }) => share(area)));
     powers.push(...curve.data.map(({ power_uW }) => power_uW).filter((one) => one > 0));
   }
+  marks.push(...endLabels(power, curves, zero));
   return {
     name: "bleaching",
     caption:
@@ -51,7 +52,7 @@ function bleachingFigure(power: PowerResult): Figure | null {
     legend: curves.map(({ n }) => ({ text: `*n* = ${n}`, colour: paperColourOfN(n), shape: "circle" })),
     panels: [
       {
-        x: logarithmicAxis("Power / µW", powers),
+        x: logarithmicAxis("Power / µW", [...powers, 1.25 * Math.max(...powers)]),
         y: linearAxis(
           "*A*_{n} / *A*_{n,0}",
           values.map((value) => (value === null ? null : Math.min(1.6, Math.max(-0.3, value)))),
@@ -61,6 +62,35 @@ function bleachingFigure(power: PowerResult): Figure | null {
       },
     ],
   };
+}
+
+/** n at the right end of its curve, as long as neighbours leave room: the colours alone are too alike. */
+function endLabels(
+  power: PowerResult,
+  curves: PowerResult["curves"]["lines"],
+  zero: (n: number) => number | null,
+): Mark[] {
+  const highest = Math.max(...curves.flatMap(({ data }) => data.map(({ power_uW }) => power_uW)));
+  const at = power.curves.power_uW.findLastIndex((one) => one <= highest);
+  let last = Infinity;
+  return [...curves]
+    .sort((a, b) => a.n - b.n)
+    .flatMap(({ n, area }): Mark[] => {
+      const [end, area0] = [area[at] ?? null, zero(n)];
+      if (end === null || area0 === null || !(area0 > 0) || Math.abs(last - end / area0) < 0.06) return [];
+      last = end / area0;
+      return [
+        {
+          kind: "label",
+          x: power.curves.power_uW[at]! * 1.06,
+          y: last,
+          text: `*n* = ${n}`,
+          colour: paperColourOfN(n),
+          anchor: "start",
+          lift: 3,
+        },
+      ];
+    });
 }
 
 function saturationFigure(power: PowerResult): Figure | null {
