@@ -1,9 +1,13 @@
 import type { Wording } from "../../app/base/index.ts";
+import type { Comparison, ComparisonChoicesInput, RunglineResult } from "../../app/protocol/index.ts";
+import type { ReportInput } from "../../app/report/index.ts";
 import type {
   AnalysedFile,
   AnalysedSeries,
   FileRequest,
   Inspection,
+  NamedBytes,
+  RecordPart,
   RunFacts,
   SeriesRequest,
   WorkerReply,
@@ -31,7 +35,13 @@ export interface WorkerLike {
 }
 
 type Settle = (
-  outcome: Outcome<never> | Outcome<AnalysedFile> | Outcome<AnalysedSeries> | Outcome<Inspection>,
+  outcome:
+    | Outcome<never>
+    | Outcome<AnalysedFile>
+    | Outcome<AnalysedSeries>
+    | Outcome<Inspection>
+    | Outcome<Comparison>
+    | Outcome<NamedBytes>,
 ) => void;
 interface Pending {
   readonly settle: Settle;
@@ -58,10 +68,26 @@ export class JobClient {
   }
 
   inspect(request: FileRequest): Promise<Outcome<Inspection>> {
+    return this.#ask((id) => ({ type: "inspect", id, request }));
+  }
+
+  compare(
+    results: readonly RunglineResult[],
+    choices: ComparisonChoicesInput,
+    run: RunFacts,
+  ): Promise<Outcome<Comparison>> {
+    return this.#ask((id) => ({ type: "compare", id, results, choices, run }));
+  }
+
+  record(input: ReportInput, part: RecordPart): Promise<Outcome<NamedBytes>> {
+    return this.#ask((id) => ({ type: "record", id, input, part }));
+  }
+
+  #ask<T>(message: (id: number) => WorkerRequest): Promise<Outcome<T>> {
     const id = this.#nextId++;
     return new Promise((resolve) => {
       this.#pending.set(id, { settle: resolve as Settle, progress: null });
-      this.#ready().postMessage({ type: "inspect", id, request });
+      this.#ready().postMessage(message(id));
     });
   }
 
@@ -135,6 +161,10 @@ export class JobClient {
         return pending.settle({ kind: "done", value: reply.analysed });
       case "inspected":
         return pending.settle({ kind: "done", value: reply.inspection });
+      case "compared":
+        return pending.settle({ kind: "done", value: reply.comparison });
+      case "recorded":
+        return pending.settle({ kind: "done", value: reply.file });
       case "refused":
         return pending.settle({ kind: "refused", wordings: reply.wordings });
       case "cancelled":

@@ -1,17 +1,23 @@
 import type { Wording } from "../../app/base/index.ts";
 import {
+  parseResults,
   PROTOCOL_SCHEMA,
   resolveProtocol,
   wordProtocolIssue,
+  wordResultIssue,
   type ProtocolInput,
+  type RunglineResult,
 } from "../../app/protocol/index.ts";
-import { protocolToJson, resultToJson } from "../../app/report/index.ts";
-import type { Host, NamedBytes } from "../../app/tasks/index.ts";
-import type { JobClient, RunningJob } from "../jobs/job-client.ts";
+import { protocolToJson, resultToJson, type ReportInput } from "../../app/report/index.ts";
+import type { Host, NamedBytes, RecordPart } from "../../app/tasks/index.ts";
+import { batchesOf, gather, unfittedFiles } from "../batches/gather.ts";
+import type { JobClient, Outcome, RunningJob } from "../jobs/job-client.ts";
 import {
   addFiles,
+  addResults,
   chooseFile,
   editChoices,
+  editCompare,
   keepFit,
   keepPower,
   markSeries,
@@ -19,8 +25,10 @@ import {
   seriesOf,
   NO_CHOICES,
   removeFile,
+  removeResult,
   replaceChoices,
   shareChoices,
+  type CompareView,
   type Session,
 } from "./session.ts";
 import type { Message, Reading, Stage, ThemeChoice, WindowState, WindowStore } from "./store.ts";
@@ -43,6 +51,8 @@ export class Controller {
   readonly #now: () => Date;
   #running: RunningJob<unknown> | null = null;
   #messageId = 1;
+  /** What the last comparison was asked about. */
+  #compared: readonly unknown[] = [];
 
   constructor(store: WindowStore, host: Host, reader: JobClient, fitter: JobClient, now = () => new Date()) {
     this.store = store;
@@ -51,7 +61,10 @@ export class Controller {
     this.#fitter = fitter;
     this.#now = now;
     store.subscribe((state, before) => {
-      if (state.session !== before.session) this.#readCurrent();
+      if (state.session !== before.session) {
+        this.#readCurrent();
+        this.#compare();
+      }
     });
   }
 
@@ -87,10 +100,15 @@ export class Controller {
   /** Files from the dialog or dropped on the window; a protocol among them becomes the current file's choices. */
   add(files: readonly NamedBytes[]): void {
     const spectra: NamedBytes[] = [];
+    const results: { name: string; results: readonly RunglineResult[] }[] = [];
     let protocol: { name: string; choices: ProtocolInput } | null = null;
     for (const file of files) {
       const read = readProtocol(file);
-      if (read === null) spectra.push(file);
+      const found = read === null ? readResults(file) : null;
+      if (found?.ok === true) results.push({ name: file.name, results: found.results });
+      else if (found !== null)
+        for (const { message, remedy } of found.wordings) this.say(true, `${file.name}: ${message}`, remedy);
+      else if (read === null) spectra.push(file);
       else if (read.ok) protocol = { name: file.name, choices: read.choices };
       else
         for (const { message, remedy } of read.wordings) this.say(true, `${file.name}: ${message}`, remedy);
@@ -105,6 +123,9 @@ export class Controller {
       const { choices, name } = protocol;
       this.#edit((before) => replaceChoices(before, choices, `take protocol ${name}`));
     }
+    for (const { name, results: found } of results)
+      this.#edit((before) => addResults(before, name, found));
+    if (results.length > 0 && spectra.length === 0) this.#set({ stage: "batches" });
   }
 
   /** The demo power series, fitted at once. */
@@ -156,6 +177,62 @@ export class Controller {
 
   change(change: ProtocolInput, step: string): void {
     this.#edit((session) => editChoices(session, change, step));
+  }
+
+  closeResult(id: string): void {
+    this.#edit((session) => removeResult(session, id));
+  }
+
+  changeCompare(change: Partial<CompareView>, step: string): void {
+    this.#edit((session) => {
+      const edited = editCompare(session, change, step);
+      // A batch that a typed name has emptied can be no reference.
+      const { reference } = edited.compare.choices;
+      if (reference === undefined || reference === null) return edited;
+      const shown = gather(edited).filter((one) => one.shown);
+      return batchesOf(shown).includes(reference)
+        ? edited
+        : editCompare(edited, { choices: { ...edited.compare.choices, reference: null } }, step);
+    });
+  }
+
+  /** The figure of a sample that was chosen among others: its ladder, or its record where it came as a result alone. */
+  openSample(id: string): void {
+    const found = gather(this.store.getState().session).find((one) => one.id === id);
+    if (found === undefined) return;
+    if (found.of === "file") {
+      this.choose(id);
+      this.show("ladder");
+    } else this.#set({ stage: "record", recordOf: id });
+  }
+
+  recordOf(id: string | null): void {
+    this.#set({ recordOf: id });
+  }
+
+  /** One file of a record, made in the worker. */
+  makeRecord(input: Omit<ReportInput, "run">, part: RecordPart): Promise<Outcome<NamedBytes>> {
+    const { facts } = this.store.getState();
+    return this.#reader.record(
+      {
+        ...input,
+        run: {
+          version: facts?.version ?? "",
+          node: facts?.node ?? "",
+          started: this.#now().toISOString(),
+        },
+      },
+      part,
+    );
+  }
+
+  async saveRecord(input: Omit<ReportInput, "run">, part: RecordPart): Promise<void> {
+    const outcome = await this.makeRecord(input, part);
+    if (outcome.kind === "done") {
+      const name = await this.save(outcome.value.name, outcome.value.bytes);
+      if (name !== null) this.say(false, `${name} is kept`, "");
+    } else if (outcome.kind === "fault")
+      this.say(true, `a fault of Rungline: ${outcome.message}`, "keep the results and report it");
   }
 
   share(): void {
@@ -237,6 +314,83 @@ export class Controller {
           "keep the file and its protocol and report them",
         );
     }
+  }
+
+  /** Fit every file that has no fit with its present choices; what is finished stays when it is cancelled. */
+  async fitAll(): Promise<void> {
+    const { session, job, facts } = this.store.getState();
+    const ids = unfittedFiles(session);
+    if (ids.length === 0 || job !== null || facts === null) return;
+    const refused: string[] = [];
+    let kept = 0;
+    let cancelled = false;
+    for (const [i, id] of ids.entries()) {
+      const present = this.store.getState().session;
+      const file = present.files.find((one) => one.id === id);
+      // It was closed meanwhile.
+      if (file === undefined) continue;
+      const choices = present.choices[id] ?? NO_CHOICES;
+      const report = (fraction: number): void => {
+        const running = this.store.getState().job;
+        this.#set({
+          job: {
+            fileId: id,
+            what: "all",
+            fraction: (i + fraction) / ids.length,
+            step: `${i + 1} of ${ids.length}`,
+            cancelling: running?.cancelling ?? false,
+          },
+          ...(fraction === 0 && { refusals: without(this.store.getState().refusals, id) }),
+        });
+      };
+      report(0);
+      const running = this.#fitter.analyse(
+        { file: file.name, bytes: file.bytes, choices },
+        { version: facts.version, node: facts.node, started: this.#now().toISOString() },
+        report,
+      );
+      this.#running = running;
+      const outcome = await running.outcome;
+      this.#running = null;
+      if (outcome.kind === "done") {
+        // All fits of one press are one step back.
+        const { temporal } = this.store;
+        if (kept > 0) temporal.getState().pause();
+        this.#edit((before) => ({
+          ...keepFit(before, id, { analysed: outcome.value, choices }),
+          step: "fit all files",
+        }));
+        temporal.getState().resume();
+        kept++;
+      } else if (outcome.kind === "refused") {
+        refused.push(file.name);
+        this.#set({ refusals: { ...this.store.getState().refusals, [id]: outcome.wordings } });
+      } else if (outcome.kind === "fault") {
+        refused.push(file.name);
+        this.say(
+          true,
+          `a fault of Rungline while fitting ${file.name}: ${outcome.message}`,
+          "keep the file and its protocol and report them",
+        );
+      } else cancelled = true;
+      if (cancelled || this.store.getState().job?.cancelling === true) {
+        cancelled = true;
+        break;
+      }
+    }
+    this.#set({ job: null });
+    if (refused.length > 0)
+      this.say(
+        true,
+        `${refused.length} of ${ids.length} files could not be fitted: ${refused.join(", ")}`,
+        "choose one in the drawer to read why",
+      );
+    if (cancelled)
+      this.say(
+        false,
+        `fitting all files was cancelled; ${kept} of ${ids.length} were finished and are kept`,
+        "press Fit all to go on",
+      );
   }
 
   /** Fit the current file, or all files marked with it, as a power series. */
@@ -355,6 +509,52 @@ export class Controller {
     });
   }
 
+  /** Ask the worker to compare anew whenever a result that is shown or a choice has changed. */
+  #compare(): void {
+    const { session, compared, facts } = this.store.getState();
+    const { choices } = session.compare;
+    const results = gather(session).flatMap(({ shown, result }) => (shown ? [result] : []));
+    const asked = [choices, ...results];
+    if (asked.length === this.#compared.length && asked.every((one, i) => one === this.#compared[i])) return;
+    this.#compared = asked;
+    if (results.length < 2) {
+      if (compared !== null) this.#set({ compared: null });
+      return;
+    }
+    const before =
+      compared?.state === "done"
+        ? compared.comparison
+        : compared?.state === "working"
+          ? compared.before
+          : null;
+    this.#set({ compared: { state: "working", before } });
+    const run = {
+      version: facts?.version ?? "",
+      node: facts?.node ?? "",
+      started: this.#now().toISOString(),
+    };
+    void this.#reader.compare(results, choices, run).then((outcome) => {
+      // A later change may have overtaken this one.
+      if (this.#compared !== asked) return;
+      if (outcome.kind === "done") this.#set({ compared: { state: "done", comparison: outcome.value } });
+      else
+        this.#set({
+          compared: {
+            state: "refused",
+            wordings:
+              outcome.kind === "refused"
+                ? outcome.wordings
+                : [
+                    {
+                      message: outcome.kind === "fault" ? outcome.message : "cancelled",
+                      remedy: "change a choice to try again",
+                    },
+                  ],
+          },
+        });
+    });
+  }
+
   #setReading(id: string, reading: Reading): void {
     this.#set({ readings: { ...this.store.getState().readings, [id]: reading } });
   }
@@ -388,6 +588,21 @@ function readProtocol({ name, bytes }: NamedBytes): ProtocolFile | null {
   return resolved.ok
     ? { ok: true, choices: content as ProtocolInput }
     : { ok: false, wordings: resolved.issues.map(wordProtocolIssue) };
+}
+
+type ResultsFile =
+  | { readonly ok: true; readonly results: readonly RunglineResult[] }
+  | { readonly ok: false; readonly wordings: readonly Wording[] };
+
+/** Results from their JSON file or from a report that carries them; null where the file is neither. */
+function readResults({ name, bytes }: NamedBytes): ResultsFile | null {
+  if (!/\.(json|html)$/i.test(name)) return null;
+  const text = new TextDecoder().decode(bytes);
+  if (!text.includes('"rungline-result/')) return null;
+  const parsed = parseResults(text);
+  return parsed.ok
+    ? { ok: true, results: parsed.value }
+    : { ok: false, wordings: parsed.issues.map(wordResultIssue) };
 }
 
 function encode(text: string): Uint8Array {

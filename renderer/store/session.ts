@@ -1,6 +1,11 @@
 import { produce } from "immer";
 import type { AnalysedFile, AnalysedSeries, NamedBytes } from "../../app/tasks/index.ts";
-import { mergeChoices, type ProtocolInput } from "../../app/protocol/index.ts";
+import {
+  mergeChoices,
+  type ComparisonChoicesInput,
+  type ProtocolInput,
+  type RunglineResult,
+} from "../../app/protocol/index.ts";
 
 /** A file in the drawer. */
 export interface LoadedFile {
@@ -22,6 +27,23 @@ export interface PowerFitted {
   readonly fileIds: readonly string[];
 }
 
+/** A result that came as a file of its own, without its spectrum. */
+export interface LoadedResult {
+  readonly id: string;
+  readonly result: RunglineResult;
+}
+
+/** Which samples stand side by side, and how they are compared. */
+export interface CompareView {
+  readonly choices: ComparisonChoicesInput;
+  /** Batches that are left out. */
+  readonly hidden: readonly string[];
+  /** Bounds in kelvin; null: none. */
+  readonly temperature: readonly [number | null, number | null];
+  /** Bounds as dates, both days included; null: none. */
+  readonly date: readonly [string | null, string | null];
+}
+
 /**
  * What undo goes back over: the files, the choices of each, the fits that stand, and which of them is shown. Plain, never
  * changed in place; `step` names the edit that led here, for the undo button.
@@ -35,6 +57,8 @@ export interface Session {
   readonly series: readonly (readonly string[])[];
   /** By the id of the series' first file. */
   readonly powerFits: Readonly<Record<string, PowerFitted>>;
+  readonly results: readonly LoadedResult[];
+  readonly compare: CompareView;
   readonly step: string;
 }
 
@@ -45,6 +69,8 @@ export const EMPTY_SESSION: Session = {
   fits: {},
   series: [],
   powerFits: {},
+  results: [],
+  compare: { choices: {}, hidden: [], temperature: [null, null], date: [null, null] },
   step: "start",
 };
 
@@ -77,6 +103,7 @@ export function removeFile(session: Session, id: string): Session {
   const files = session.files.filter((file) => file.id !== id);
   const next = files[Math.min(at, files.length - 1)]?.id ?? null;
   return {
+    ...session,
     files,
     currentId: session.currentId === id ? next : session.currentId,
     choices: without(session.choices),
@@ -171,4 +198,39 @@ export function keepFit(session: Session, id: string, fitted: Fitted): Session {
   const file = session.files.find((one) => one.id === id);
   if (file === undefined) return session;
   return { ...session, fits: { ...session.fits, [id]: fitted }, step: `fit ${file.name}` };
+}
+
+/** Results beside the files; one that is there already is not taken twice. */
+export function addResults(session: Session, name: string, results: readonly RunglineResult[]): Session {
+  const key = ({ source, protocol }: RunglineResult): string => `${source.sha256} ${JSON.stringify(protocol)}`;
+  const known = new Set(session.results.map(({ result }) => key(result)));
+  const fresh = results.filter((result) => !known.has(key(result)) && known.add(key(result)));
+  if (fresh.length === 0) return session;
+  const taken = new Set(session.results.map(({ id }) => id));
+  const added = fresh.map((result, i): LoadedResult => {
+    const first = fresh.length === 1 ? name : `${name} [${i + 1}]`;
+    let id = first;
+    for (let copy = 2; taken.has(id); copy++) id = `${first} (${copy})`;
+    taken.add(id);
+    return { id, result };
+  });
+  return {
+    ...session,
+    results: [...session.results, ...added],
+    step: fresh.length === 1 ? `open result ${name}` : `open ${fresh.length} results of ${name}`,
+  };
+}
+
+export function removeResult(session: Session, id: string): Session {
+  const results = session.results.filter((one) => one.id !== id);
+  return results.length === session.results.length
+    ? session
+    : { ...session, results, step: `close result ${id}` };
+}
+
+export function editCompare(session: Session, change: Partial<CompareView>, step: string): Session {
+  const compare = { ...session.compare, ...change };
+  return JSON.stringify(compare) === JSON.stringify(session.compare)
+    ? session
+    : { ...session, compare, step };
 }

@@ -1,11 +1,11 @@
 import { temporal } from "zundo";
 import { create } from "zustand";
 import type { Wording } from "../../app/base/index.ts";
-import type { ProtocolInput } from "../../app/protocol/index.ts";
+import type { Comparison, ProtocolInput } from "../../app/protocol/index.ts";
 import type { HostFacts, Inspection } from "../../app/tasks/index.ts";
 import { EMPTY_SESSION, type Session } from "./session.ts";
 
-export type Stage = "read" | "lines" | "ladder" | "power";
+export type Stage = "read" | "lines" | "ladder" | "power" | "batches" | "record";
 export type ThemeChoice = "system" | "light" | "dark";
 
 /** How the current choices read a file. */
@@ -14,9 +14,16 @@ export type Reading =
   | { readonly state: "read"; readonly choices: ProtocolInput; readonly inspection: Inspection }
   | { readonly state: "refused"; readonly choices: ProtocolInput; readonly wordings: readonly Wording[] };
 
+/** How the samples that are shown compare. */
+export type Compared =
+  | { readonly state: "working"; readonly before: Comparison | null }
+  | { readonly state: "done"; readonly comparison: Comparison }
+  | { readonly state: "refused"; readonly wordings: readonly Wording[] };
+
 export interface FitJob {
+  /** The file at work. */
   readonly fileId: string;
-  readonly what: "fit" | "power";
+  readonly what: "fit" | "power" | "all";
   readonly fraction: number;
   readonly step: string;
   readonly cancelling: boolean;
@@ -47,6 +54,10 @@ export interface WindowState {
   readonly refusals: Readonly<Record<string, readonly Wording[]>>;
   /** Why a power series was refused, by the id of its first file. */
   readonly powerRefusals: Readonly<Record<string, readonly Wording[]>>;
+  /** What the record is about: one fit or result by its id; null: all that Batches shows. */
+  readonly recordOf: string | null;
+  /** Null with fewer than two samples. */
+  readonly compared: Compared | null;
   readonly job: FitJob | null;
   readonly messages: readonly Message[];
   readonly theme: ThemeChoice;
@@ -68,6 +79,8 @@ export function makeStore() {
         readings: {},
         refusals: {},
         powerRefusals: {},
+        recordOf: null,
+        compared: null,
         job: null,
         messages: [],
         theme: "system",

@@ -2,11 +2,14 @@ import { Cancelled, type Watch } from "../../app/base/index.ts";
 import {
   analyseFile,
   analysePower,
+  compareSamples,
   inspectFile,
   wordIssue,
   type WorkerReply,
   type WorkerRequest,
 } from "../../app/tasks/index.ts";
+import { makeRecordFile } from "./record-files.ts";
+import { wordComparisonIssue } from "./word-comparison-issue.ts";
 
 /** The page worker: all computation of the window happens here, never on the interface thread. */
 declare const self: DedicatedWorkerGlobalScope;
@@ -32,6 +35,16 @@ function answer(message: WorkerRequest): void {
     const inspected = inspectFile(message.request);
     if (inspected.ok) reply({ type: "inspected", id, inspection: inspected.value });
     else reply({ type: "refused", id, wordings: inspected.issues.map(wordIssue) });
+    return;
+  }
+  if (message.type === "compare") {
+    const compared = compareSamples(message.results, message.choices, message.run);
+    if (compared.ok) reply({ type: "compared", id, comparison: compared.value });
+    else reply({ type: "refused", id, wordings: compared.issues.map(wordComparisonIssue) });
+    return;
+  }
+  if (message.type === "record") {
+    reply({ type: "recorded", id, file: makeRecordFile(message.input, message.part) });
     return;
   }
   if (message.type === "analyse-power") {

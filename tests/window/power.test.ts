@@ -1,5 +1,6 @@
 import { readFileSync, statSync } from "node:fs";
 import { join } from "node:path";
+import { AxeBuilder } from "@axe-core/playwright";
 import type { Page } from "playwright-core";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
 import { dropFiles, openProgram, showStage, type Opened, type Watched } from "./program.ts";
@@ -123,7 +124,7 @@ describe("the demo power series", () => {
     expect(watched.troubles).toEqual([]);
   });
 
-  it("is drawn in light and dark, at both sizes", async () => {
+  it("is drawn in light and dark, at both sizes, and keeps to WCAG 2.2 AA", async () => {
     for (const [width, height, colorScheme] of [
       [1280, 800, "dark"],
       [1920, 1080, "dark"],
@@ -137,6 +138,13 @@ describe("the demo power series", () => {
       await page.screenshot({ path });
       // Derived: an empty picture of this size takes far less
       expect(statSync(path).size).toBeGreaterThan(40_000);
+      if (width !== 1280) continue;
+      await page.getByRole("button", { name: "What for", exact: true }).click();
+      await drawn();
+      const axe = new AxeBuilder({ page }).withTags(["wcag2a", "wcag2aa", "wcag21aa", "wcag22aa"]);
+      const { violations } = await axe.analyze();
+      expect(violations.map(({ id, nodes }) => `${id} ${nodes[0]?.target.join(" ")}`)).toEqual([]);
+      await page.getByRole("button", { name: "All", exact: true }).click();
     }
     expect(watched.troubles).toEqual([]);
   });
