@@ -1,4 +1,5 @@
 import { describe, expect, it } from "vitest";
+import { makeRandom } from "../../../app/base/index.ts";
 import { readTable, wordTableIssue } from "../../../app/table/index.ts";
 import { issueOf, rowsOf, tableOf } from "./reading.ts";
 
@@ -101,5 +102,54 @@ describe("JCAMP-DX files", () => {
       /2 spectra in one file/,
     );
     expect(issueOf(file("##PEAK TABLE=(XY..XY)\n17500,1")).facts.found).toMatch(/PEAK TABLE/);
+  });
+});
+
+/** Ordinates in DIFDUP form, ten to a line, each line begun with the ordinate that ended the one before. */
+function inDifferences(values: readonly number[], first: number, step: number): string {
+  const squeezed = (digits: string, value: number): string => {
+    const [lead, ...rest] = String(Math.abs(value));
+    const place = value < 0 ? Number(lead) + 9 : Number(lead);
+    return digits[place]! + rest.join("");
+  };
+  const lines: string[] = [];
+  for (let from = 0; from === 0 || from < values.length - 1; from += 10) {
+    const part = values.slice(from, from + 11);
+    let text = squeezed("@ABCDEFGHIabcdefghi", part[0]!);
+    const differences = part.slice(1).map((value, i) => value - part[i]!);
+    for (let i = 0; i < differences.length;) {
+      let times = 1;
+      while (differences[i + times] === differences[i]) times++;
+      text += squeezed("%JKLMNOPQRjklmnopqr", differences[i]!);
+      if (times > 1) text += "STUVWXYZs"[Number(String(times)[0]) - 1]! + String(times).slice(1);
+      i += times;
+    }
+    lines.push(`${first + from * step}${text}`);
+  }
+  return [
+    ...lines,
+    `${first + (values.length - 1) * step}${squeezed("@ABCDEFGHIabcdefghi", values.at(-1)!)}`,
+  ].join("\n");
+}
+
+describe("ordinates packed as differences", () => {
+  it("come back as they were, whatever their size, sign and repetitions", () => {
+    const random = makeRandom(5);
+    for (let round = 0; round < 20; round++) {
+      const count = 2 + Math.floor(60 * random.uniform());
+      const size = 10 ** Math.floor(7 * random.uniform());
+      const values: number[] = [];
+      while (values.length < count) {
+        const value = Math.round(size * (random.uniform() - 0.5));
+        for (let k = 1 + Math.floor(14 * random.uniform() ** 3); k > 0 && values.length < count; k--)
+          values.push(value);
+      }
+      const data = inDifferences(values, 17500, 2);
+      const text = `${HEAD}##XFACTOR=1\n##YFACTOR=1\n##FIRSTX=17500\n##LASTX=${17500 + 2 * (count - 1)}\n##NPOINTS=${count}\n##XYDATA=(X++(Y..Y))\n${data}\n##END=\n`;
+      const table = tableOf(text);
+      expect(Array.from(table.columns[1]!.values, (value) => value + 0)).toEqual(
+        values.map((value) => value + 0),
+      );
+    }
   });
 });
