@@ -32,11 +32,12 @@ export interface LineFault {
 
 /**
  * What      One line of `(X++(Y..Y))`: an abscissa in AFFN, then ordinates in any mixture of AFFN, PAC, SQZ, DIF, DUP.
- * Domain    A line without comments. `E` followed by a sign and digits is an exponent, any other `E` the digit 5.
+ * Domain    A line without comments that holds at most `most` ordinates: a damaged repetition may ask for any number.
+ *           `E` followed by a sign and digits is an exponent, any other `E` the digit 5.
  * Source    R. S. McDonald and P. A. Wilks, "JCAMP-DX: A Standard Form for Exchange of Infrared Spectra in Computer
  *           Readable Form", Appl. Spectrosc. 42, 151 (1988), sections 5.2 to 5.9 and table VII.
  */
-export function decodeLine(text: string): DecodedLine | LineFault {
+export function decodeLine(text: string, most = 1_000_000): DecodedLine | LineFault {
   const start = skip(text, 0);
   const first = match(NUMBER, text, start);
   if (first === null) return { fault: "the line does not begin with a number", at: start + 1 };
@@ -49,6 +50,8 @@ export function decodeLine(text: string): DecodedLine | LineFault {
     const { token, end } = read;
     if (token.kind === "repeat") {
       if (last === null || token.count < 1) return { fault: "a repetition of nothing", at: at + 1 };
+      if (ordinates.length + token.count - 1 > most)
+        return { fault: `a repetition of ${token.count}, more than the points of the file`, at: at + 1 };
       for (let i = 1; i < token.count; i++) append(ordinates, last);
     } else {
       if (token.kind === "difference" && ordinates.length === 0)

@@ -160,16 +160,19 @@ function readOrdinates(block: JcampBlock, data: LabelledRecord): Points | Fault 
     if (value === null) return { line: data.line, found: `##XYDATA= without a number in ##${label}=` };
     values[label] = value;
   }
+  const count = values["NPOINTS"]!;
+  if (!Number.isInteger(count) || count < 2)
+    return { line: recordOf(block, "NPOINTS")!.line, found: `##NPOINTS=${count}` };
   const [xFactor, yFactor] = [factor(block, "XFACTOR"), factor(block, "YFACTOR")];
   if (typeof xFactor !== "number") return xFactor;
   if (typeof yFactor !== "number") return yFactor;
   const first = values["FIRSTX"]!;
-  const step = (values["LASTX"]! - first) / (values["NPOINTS"]! - 1);
+  const step = (values["LASTX"]! - first) / (count - 1);
   const y: number[] = [];
   const at: number[] = [];
   let check: number | null = null;
   for (const { line, text } of body(data)) {
-    const decoded = decodeLine(text);
+    const decoded = decodeLine(text, count + 1);
     if ("fault" in decoded) return { line, found: `${decoded.fault} (character ${decoded.at})` };
     let { ordinates } = decoded;
     if (check !== null) {

@@ -79,6 +79,7 @@ describe("JCAMP-DX files", () => {
     ["a lost line", "17500 1 2 3 3\n17508 -2 -3", /abscissa 17508 where 17504 is due/, 18],
     ["too few points", "17500 1 2 3 3 2 1 0 -1", /8 points where ##NPOINTS= says 10/, 16],
     ["a strange character", "17500 1 2 3 x 2 1 0 -1 -2 -3", /"x" is no ordinate \(character 13\)/, 17],
+    ["a repetition without end", "17500 1 2V999999999", /repetition of 4999999999, more than/, 17],
     ["a difference of nothing", "17500 JJ%jjjjjj", /difference without an ordinate/, 17],
     ["words", "17500 1 2 3\nnonsense", /does not begin with a number/, 18],
   ])("with %s are refused with the line", (_, data, found, line) => {
