@@ -32,7 +32,7 @@ export function powerTables(power: PowerResult, result: RunglineResult): readonl
 }
 
 function limit(value: number | null): Cell {
-  return value === null ? words("") : words(`< ${formatNumber(value, 2)}`);
+  return value === null ? words("") : words(`<\u00a0${formatNumber(value, 2)}`);
 }
 
 function saturationTable(power: PowerResult, result: RunglineResult): DataTable {

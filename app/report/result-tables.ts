@@ -222,7 +222,7 @@ function lineSizesTable(result: RunglineResult): DataTable | null {
     columns: [
       numberColumn("*n*"),
       numberColumn("*A*_{n} *n*^{3}", area.includes("/") ? `(${area})` : area),
-      ...(strengths ? [numberColumn("*N f*", "(1/cm^3)")] : []),
+      ...(strengths ? [numberColumn("*N f*", "(1/cm^{3})")] : []),
       numberColumn("mean radius", "µm"),
     ],
     rows: lines.map((line) => [

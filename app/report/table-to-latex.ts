@@ -165,10 +165,14 @@ const SPECIAL: Readonly<Record<string, string>> = {
   "±": "$\\pm$",
   "×": "$\\times$",
   µ: "\\textmu{}",
-  "⁻": "$^-$",
+  "\u00a0": "~",
 };
 
 /** Words as they are: every mark that LaTeX would obey is set as a character, in one pass. */
 export function escapeLatex(text: string): string {
-  return text.replace(/[\\~^&%$#_{}−±×µ⁻]/g, (c) => SPECIAL[c] ?? `\\${c}`);
+  return text.replace(/[⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+|[\\~^&%$#_{}−±×µ\u00a0]/g, (part) => {
+    const raised = Array.from(part, (c) => (c === "⁻" ? "-" : SUPERSCRIPTS.indexOf(c)));
+    if (raised.every((digit) => digit !== -1)) return `$^{${raised.join("")}}$`;
+    return SPECIAL[part] ?? `\\${part}`;
+  });
 }

@@ -1,3 +1,6 @@
+import { symmetric } from "../../../app/base/index.ts";
+import type { TemperatureLaw } from "../../../app/protocol/index.ts";
+import { temperatureFigures } from "../../../app/report/figures/temperature-figures.ts";
 import { describe, expect, it } from "vitest";
 import { figureFile, figureToSvg, reportContents, type Figure } from "../../../app/report/index.ts";
 import {
@@ -133,5 +136,70 @@ describe("a figure as SVG", () => {
     expect(titles).toContain("*Γ*_{n} / µeV");
     expect(titles).toContain("1/(*n* − *δ*)^{2}");
     expect(titles).toContain("(*E*_{n} − law) / µeV");
+  });
+});
+
+describe("a figure of laws of temperature", () => {
+  const parameter = (name: string, unit: string, value: number) => ({
+    name,
+    unit,
+    quantity: symmetric(value, value / 100),
+  });
+  const law = (name: TemperatureLaw["law"], parameters: TemperatureLaw["parameters"]): TemperatureLaw => ({
+    law: name,
+    parameters,
+    chi2: 1,
+    dof: 1,
+    p: 0.3,
+    aic: 7,
+    aic_difference: 0,
+    weight: 1,
+    stationary: true,
+    scaled_by: 1,
+  });
+
+  it("draws the laws through what they give", () => {
+    const points = [4, 50, 150, 300].map((temperature_K) => ({ temperature_K, value: 1.5, sigma: 1e-4 }));
+    const [gap, width] = temperatureFigures({
+      notes: [],
+      series: [
+        {
+          quantity: "gap_eV",
+          n: null,
+          points,
+          preferred: "varshni",
+          decided: true,
+          laws: [
+            law("varshni", [
+              parameter("gap0", "eV", 1.519),
+              parameter("alpha", "eV/K", 5.405e-4),
+              parameter("beta", "K", 204),
+            ]),
+          ],
+        },
+        {
+          quantity: "width_eV[5]",
+          n: 5,
+          points: points.map((point) => ({ ...point, value: 1e-4, sigma: 1e-6 })),
+          preferred: null,
+          decided: false,
+          laws: [law("acoustic", [parameter("width0", "eV", 1e-4), parameter("acoustic", "eV/K", 1e-7)])],
+        },
+      ],
+    });
+    const lineOf = (figure: Figure): { x: number; y: number } => {
+      const mark = figure.panels[0]!.marks[0]!;
+      if (mark.kind !== "line") throw new Error("the law comes first");
+      const i = mark.x.length - 1;
+      return { x: mark.x[i]!, y: mark.y[i]! };
+    };
+    const last = lineOf(gap!);
+    // Derived: Varshni's law E0 - alpha T^2/(T + beta) at the last temperature drawn
+    expect(last.y).toBeCloseTo(1.519 - (5.405e-4 * last.x ** 2) / (last.x + 204), 12);
+    const wide = lineOf(width!);
+    // Derived: (1e-4 + 1e-7 T) eV in ueV
+    expect(wide.y).toBeCloseTo(100 + 0.1 * wide.x, 9);
+    expect(width!.panels[0]!.y.title).toBe("*Γ*_{5} / µeV");
+    for (const figure of [gap!, width!]) expect(figureToSvg(figure)).not.toMatch(/NaN|undefined/);
   });
 });

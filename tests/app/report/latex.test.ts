@@ -57,6 +57,10 @@ describe("tables for LaTeX", () => {
     }
   });
 
+  it("set powers of ten in words as powers", () => {
+    expect(escapeLatex("<\u00a01.8 × 10⁻⁵ µeV")).toBe("<~1.8 $\\times$ 10$^{-5}$ \\textmu{}eV");
+  });
+
   it("keep the marks of LaTeX in names as they are", () => {
     expect(escapeLatex("50 % of A_1 & B#2 {x} $5 ~ ^ \\")).toBe(
       "50 \\% of A\\_1 \\& B\\#2 \\{x\\} \\$5 \\textasciitilde{} \\textasciicircum{} \\textbackslash{}",
