@@ -1,7 +1,9 @@
 import type { Wording } from "../base/index.ts";
 import type { Curves } from "../analysis/index.ts";
-import type { RunglineResult } from "../protocol/index.ts";
+import type { Comparison, ComparisonChoicesInput, RunglineResult } from "../protocol/index.ts";
+import type { ReportInput } from "../report/index.ts";
 import type { AnalysedFile, FileRequest, RunFacts } from "./analyse-file.ts";
+import type { NamedBytes } from "./host.ts";
 import type { Inspection } from "./inspect-file.ts";
 
 /** The files of one power series, in the order given, and what the user chose. */
@@ -20,6 +22,9 @@ export interface AnalysedSeries {
   }[];
 }
 
+/** What can be kept of a record: each one file, an archive where it holds several. */
+export type RecordPart = "report" | "figures" | "csv" | "latex" | "results" | "protocol";
+
 /** What a shell asks of a worker (a page worker in the window, a pool thread in main), and what comes back. */
 export type WorkerRequest =
   | {
@@ -36,6 +41,14 @@ export type WorkerRequest =
       readonly run: RunFacts;
       readonly cancel: Int32Array | null;
     }
+  | {
+      readonly type: "compare";
+      readonly id: number;
+      readonly results: readonly RunglineResult[];
+      readonly choices: ComparisonChoicesInput;
+      readonly run: RunFacts;
+    }
+  | { readonly type: "record"; readonly id: number; readonly input: ReportInput; readonly part: RecordPart }
   | { readonly type: "inspect"; readonly id: number; readonly request: FileRequest };
 
 export type WorkerReply =
@@ -43,6 +56,8 @@ export type WorkerReply =
   | { readonly type: "analysed"; readonly id: number; readonly analysed: AnalysedFile }
   | { readonly type: "analysed-power"; readonly id: number; readonly analysed: AnalysedSeries }
   | { readonly type: "inspected"; readonly id: number; readonly inspection: Inspection }
+  | { readonly type: "compared"; readonly id: number; readonly comparison: Comparison }
+  | { readonly type: "recorded"; readonly id: number; readonly file: NamedBytes }
   | { readonly type: "refused"; readonly id: number; readonly wordings: readonly Wording[] }
   | { readonly type: "cancelled"; readonly id: number }
   | { readonly type: "fault"; readonly id: number; readonly message: string; readonly stack: string };

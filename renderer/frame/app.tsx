@@ -1,11 +1,13 @@
 import { useEffect, useRef, useState, type DragEvent } from "react";
 import { Button, Menu, MenuItem, MenuTrigger, Popover } from "react-aria-components";
+import { BatchesStage } from "../batches/batches-stage.tsx";
 import { readFiles } from "../host/page-files.ts";
 import { LadderStage } from "../ladder/ladder-stage.tsx";
 import { LinesStage } from "../lines/lines-stage.tsx";
 import type { FigureHandle } from "../plot/figure.tsx";
 import { PowerStage } from "../power/power-stage.tsx";
 import { ReadStage } from "../read/read-stage.tsx";
+import { RecordStage } from "../record/record-stage.tsx";
 import { RungStrip } from "../rungs/rung-strip.tsx";
 import {
   currentFile,
@@ -95,6 +97,8 @@ export function App() {
         {stage === "lines" && <LinesStage figureRef={figure} />}
         {stage === "ladder" && <LadderStage figureRef={figure} />}
         {stage === "power" && <PowerStage figureRef={figure} />}
+        {stage === "batches" && <BatchesStage figureRef={figure} />}
+        {stage === "record" && <RecordStage />}
         {drawer && (
           <FilesDrawer
             onClose={() => {
@@ -104,7 +108,9 @@ export function App() {
           />
         )}
         {dropping && (
-          <div className="drop-hint">Drop spectra to read them, or a protocol to use its choices</div>
+          <div className="drop-hint">
+            Drop spectra to read them, results to compare them, or a protocol to use its choices
+          </div>
         )}
       </main>
       <NotesLine />

@@ -1,7 +1,15 @@
 import { useEffect, useMemo, useRef, useState } from "react";
 import type { Note } from "../../app/base/index.ts";
 import { gravestFirst } from "../../app/report/index.ts";
-import { currentFit, currentPower, currentReading, useController, useWindow } from "../store/context.ts";
+import {
+  currentComparison,
+  currentFit,
+  currentPower,
+  currentReading,
+  useController,
+  useWindow,
+} from "../store/context.ts";
+import type { Message } from "../store/store.ts";
 
 interface Line {
   readonly key: string;
@@ -21,21 +29,20 @@ export function NotesLine() {
   const fit = useWindow((state) => (state.stage === "power" ? currentPower(state) : currentFit(state)));
   const reading = useWindow(currentReading);
   const messages = useWindow((state) => state.messages);
+  const comparison = useWindow((state) => (state.stage === "batches" ? currentComparison(state) : null));
   const [open, setOpen] = useState(false);
   const panel = useRef<HTMLDivElement>(null);
   const lines = useMemo((): readonly Line[] => {
+    if (comparison !== null)
+      return [
+        ...messages.map(ofMessage),
+        ...gravestFirst([...comparison.notes, ...(comparison.temperature?.notes ?? [])]).map(ofNote),
+      ];
     const read = reading?.state === "read" ? reading.inspection.spectrum.notes : [];
     const fitted = fit?.analysed.result.notes ?? [];
     const known = new Set(fitted.map((note) => note.code));
     const notes = gravestFirst([...fitted, ...read.filter((note) => !known.has(note.code))]);
-    const said = messages.map(({ id, grave, text, remedy }): Line => ({
-      key: `message ${id}`,
-      mark: grave ? "refused" : "said",
-      about: "",
-      text,
-      remedy,
-      dismiss: id,
-    }));
+    const said = messages.map(ofMessage);
     const refusals: Line[] =
       reading?.state === "refused"
         ? reading.wordings.map(({ message, remedy }, i) => ({
@@ -52,7 +59,7 @@ export function NotesLine() {
       ...said.filter(({ mark }) => mark === "said"),
       ...notes.map(ofNote),
     ];
-  }, [fit, reading, messages]);
+  }, [fit, reading, messages, comparison]);
   useEffect(() => {
     if (open) panel.current?.focus();
   }, [open]);
@@ -137,6 +144,17 @@ function NoteMark({ mark }: { readonly mark: Line["mark"] }) {
   );
 }
 
+function ofMessage({ id, grave, text, remedy }: Message): Line {
+  return {
+    key: `message ${id}`,
+    mark: grave ? "refused" : "said",
+    about: "",
+    text,
+    remedy,
+    dismiss: id,
+  };
+}
+
 function ofNote(note: Note): Line {
   return {
     key: `${note.code} ${note.about}`,
@@ -158,6 +176,13 @@ const ABOUT: readonly (readonly [RegExp, string])[] = [
   [/^tail/, "Tail"],
   [/^derived/, "Derived"],
   [/^background/, "Background"],
+  [/^parameters\.gap/, "Gap"],
+  [/^parameters\.rydberg/, "Rydberg energy"],
+  [/^parameters\.defect/, "Quantum defect"],
+  [/^parameters\.width/, "Width law"],
+  [/^parameters/, "Comparison"],
+  [/^samples/, "Samples"],
+  [/^temperature/, "Temperature"],
   [/^power\.lines/, "Bleaching"],
   [/^power/, "Power"],
   [/^fit/, "Fit"],

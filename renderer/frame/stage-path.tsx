@@ -1,5 +1,7 @@
 import { formatQuantity } from "../../app/report/index.ts";
+import { batchesOf, gather } from "../batches/gather.ts";
 import {
+  currentComparison,
   currentFile,
   currentFit,
   currentPower,
@@ -36,7 +38,7 @@ const MARK_WORDS: Readonly<Record<Mark, string>> = {
   refused: "refused",
 };
 
-/** The way from file to ladder and on to power, each stage with its state in words and mark. */
+/** The way from file to ladder and on to power, batches and record, each stage with its state in words and mark. */
 export function StagePath() {
   const controller = useController();
   const shown = useWindow((state) => state.stage);
@@ -48,11 +50,17 @@ export function StagePath() {
   const ladderMark = useWindow(ladderMarkOf);
   const power = useWindow(powerState);
   const powerMark = useWindow(powerMarkOf);
+  const batches = useWindow(batchesState);
+  const batchesMark = useWindow(batchesMarkOf);
+  const record = useWindow(recordState);
+  const recordMark = useWindow(recordMarkOf);
   const stages: readonly StageState[] = [
     { stage: "read", title: "Read", mark: readingMark, words: reading },
     { stage: "lines", title: "Lines", mark: linesMark, words: lines },
     { stage: "ladder", title: "Ladder", mark: ladderMark, words: ladder },
     { stage: "power", title: "Power", mark: powerMark, words: power },
+    { stage: "batches", title: "Batches", mark: batchesMark, words: batches },
+    { stage: "record", title: "Record", mark: recordMark, words: record },
   ];
   return (
     <nav className="path" aria-label="Stages">
@@ -161,9 +169,46 @@ function powerState(state: WindowState): string {
   return `${power.spectra.length} powers, ${seen} bleach`;
 }
 
+function batchesMarkOf(state: WindowState): Mark {
+  const { compared, session } = state;
+  if (state.job?.what === "all" || compared?.state === "working") return "busy";
+  if (compared?.state === "refused") return "refused";
+  const comparison = currentComparison(state);
+  if (comparison === null) return "not-yet";
+  const old = gather(session).some((one) => one.shown && one.old);
+  return old || comparison.notes.some(({ level }) => level === "doubt") ? "doubt" : "done";
+}
+
+function batchesState(state: WindowState): string {
+  if (state.job?.what === "all") return `fitting ${state.job.step}`;
+  if (state.compared?.state === "refused") return "refused";
+  const comparison = currentComparison(state);
+  if (comparison === null) {
+    const found = gather(state.session).length;
+    return found === 0 ? "no sample yet" : found === 1 ? "one sample" : "filtered out";
+  }
+  const batches = batchesOf(gather(state.session).filter(({ shown }) => shown)).length;
+  return `${comparison.samples.length} in ${batches} ${batches === 1 ? "batch" : "batches"}`;
+}
+
+function recordMarkOf({ session }: WindowState): Mark {
+  const shown = gather(session).filter((one) => one.shown);
+  if (shown.length === 0) return "not-yet";
+  return shown.some(({ old, result }) => old || result.notes.some(({ level }) => level === "doubt"))
+    ? "doubt"
+    : "done";
+}
+
+function recordState({ session }: WindowState): string {
+  const shown = gather(session).filter((one) => one.shown);
+  if (shown.length === 0) return "nothing to keep";
+  if (shown.some(({ old }) => old)) return "choices changed";
+  return shown.length === 1 ? "one result" : `${shown.length} results`;
+}
+
 const isFittingPower = (state: WindowState): boolean =>
   state.job !== null && state.job.what === "power" && state.job.fileId === currentSeriesId(state);
 const isFitting = (state: WindowState): boolean =>
-  state.job !== null && state.job.what === "fit" && state.job.fileId === state.session.currentId;
+  state.job !== null && state.job.what !== "power" && state.job.fileId === state.session.currentId;
 const refused = (state: WindowState): boolean =>
   state.session.currentId !== null && state.refusals[state.session.currentId] !== undefined;

@@ -1,7 +1,7 @@
 import { createContext, use } from "react";
 import { useStore } from "zustand";
 import type { AnalysedFile } from "../../app/tasks/index.ts";
-import type { ProtocolInput, RunglineResult } from "../../app/protocol/index.ts";
+import type { Comparison, ProtocolInput, RunglineResult } from "../../app/protocol/index.ts";
 import type { Controller } from "./controller.ts";
 import { NO_CHOICES, seriesOf, type Fitted, type LoadedFile, type PowerFitted } from "./session.ts";
 import type { Reading, WindowState } from "./store.ts";
@@ -71,6 +71,10 @@ export const currentPower = (state: WindowState): PowerFitted | null => {
   const id = currentSeriesId(state);
   return (id === null ? undefined : state.session.powerFits[id]) ?? null;
 };
+
+/** The comparison of the samples that are shown; the one before while a new one is on its way. */
+export const currentComparison = ({ compared }: WindowState): Comparison | null =>
+  compared?.state === "done" ? compared.comparison : compared?.state === "working" ? compared.before : null;
 
 export const powerIsOld = (state: WindowState): boolean => {
   const fit = currentPower(state);

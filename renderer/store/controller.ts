@@ -123,8 +123,7 @@ export class Controller {
       const { choices, name } = protocol;
       this.#edit((before) => replaceChoices(before, choices, `take protocol ${name}`));
     }
-    for (const { name, results: found } of results)
-      this.#edit((before) => addResults(before, name, found));
+    for (const { name, results: found } of results) this.#edit((before) => addResults(before, name, found));
     if (results.length > 0 && spectra.length === 0) this.#set({ stage: "batches" });
   }
 
@@ -204,6 +203,14 @@ export class Controller {
       this.choose(id);
       this.show("ladder");
     } else this.#set({ stage: "record", recordOf: id });
+  }
+
+  /** The same by the file that a comparison names. */
+  openMeasured(file: string, sha256: string): void {
+    const found = gather(this.store.getState().session).find(
+      ({ result }) => result.source.file === file && result.source.sha256 === sha256,
+    );
+    if (found !== undefined) this.openSample(found.id);
   }
 
   recordOf(id: string | null): void {

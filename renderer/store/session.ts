@@ -202,7 +202,8 @@ export function keepFit(session: Session, id: string, fitted: Fitted): Session {
 
 /** Results beside the files; one that is there already is not taken twice. */
 export function addResults(session: Session, name: string, results: readonly RunglineResult[]): Session {
-  const key = ({ source, protocol }: RunglineResult): string => `${source.sha256} ${JSON.stringify(protocol)}`;
+  const key = ({ source, protocol }: RunglineResult): string =>
+    `${source.sha256} ${JSON.stringify(protocol)}`;
   const known = new Set(session.results.map(({ result }) => key(result)));
   const fresh = results.filter((result) => !known.has(key(result)) && known.add(key(result)));
   if (fresh.length === 0) return session;

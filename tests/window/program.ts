@@ -90,7 +90,10 @@ export async function settled(page: Page): Promise<void> {
   await page.waitForSelector('.figure[data-state="drawn"]');
 }
 
-export async function showStage(page: Page, stage: "read" | "lines" | "ladder" | "power"): Promise<void> {
+export async function showStage(
+  page: Page,
+  stage: "read" | "lines" | "ladder" | "power" | "batches",
+): Promise<void> {
   await page.click(`.path-stage[data-stage="${stage}"]`);
   await page.waitForSelector(`.stage[data-stage="${stage}"] .figure[data-state="drawn"]`);
 }

@@ -1,0 +1,179 @@
+import { Button } from "react-aria-components";
+import { dayNumber } from "../../app/batch/index.ts";
+import type { ComparedSample } from "../../app/protocol/index.ts";
+import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
+import { parseNumber } from "../controls/parse-number.ts";
+import { useController, useWindow } from "../store/context.ts";
+import type { CompareView } from "../store/session.ts";
+import { batchesOf, gather, unfittedFiles } from "./gather.ts";
+
+const NONE = "";
+
+/** Which samples stand side by side and how they are compared, as a sentence. */
+export function BatchesChoices({ chosen }: { readonly chosen: ComparedSample | null }) {
+  const controller = useController();
+  const session = useWindow((state) => state.session);
+  const view = session.compare;
+  const gathered = gather(session);
+  const batches = batchesOf(gathered.filter(({ shown }) => shown));
+  const labels = factLabels(session);
+  const change = (part: Partial<CompareView>, step: string): void => controller.changeCompare(part, step);
+  const choose = (part: CompareView["choices"], step: string): void =>
+    change({ choices: { ...view.choices, ...part } }, step);
+  const bound = (
+    key: "temperature" | "date",
+    at: 0 | 1,
+    value: number | string | null,
+    step: string,
+  ): void => {
+    const pair = [...view[key]] as [never, never];
+    pair[at] = value as never;
+    change({ [key]: pair } as Partial<CompareView>, step);
+  };
+  const temperature = (at: 0 | 1, label: string, placeholder: string) => (
+    <Amount
+      label={label}
+      value={view.temperature[at] === null ? "" : String(view.temperature[at])}
+      placeholder={placeholder}
+      width={4}
+      onCommit={(text) => {
+        const value = text === "" ? null : parseNumber(text);
+        if (text !== "" && (value === null || value < 0)) return "a temperature in kelvin, or nothing";
+        bound("temperature", at, value, "temperatures shown");
+        return null;
+      }}
+    />
+  );
+  const date = (at: 0 | 1, label: string, placeholder: string) => (
+    <Amount
+      label={label}
+      value={view.date[at] ?? ""}
+      placeholder={placeholder}
+      width={9}
+      onCommit={(text) => {
+        if (text !== "" && dayNumber(text) === null) return "a date as 2025-03-11, or nothing";
+        bound("date", at, text === "" ? null : text, "dates shown");
+        return null;
+      }}
+    />
+  );
+  return (
+    <div className="choices">
+      <Sentence label="Which samples are compared, and how">
+        <Clause>
+          Samples measured from {temperature(0, "Lowest temperature in kelvin", "any")} to{" "}
+          {temperature(1, "Highest temperature in kelvin", "any")} K,
+        </Clause>
+        <Clause>
+          from {date(0, "First date", "any date")} to {date(1, "Last date", "any date")};
+        </Clause>
+        <Clause>
+          compared by their{" "}
+          <Pick
+            label="Errors that count"
+            value={view.choices.errors ?? "total"}
+            options={[
+              { value: "total", text: "total errors" },
+              { value: "statistical", text: "statistical errors" },
+            ]}
+            onPick={(errors) => choose({ errors }, "errors that count")}
+          />
+          ,
+        </Clause>
+        <Clause>
+          batches{" "}
+          <Pick
+            label="Reference batch"
+            value={view.choices.reference ?? NONE}
+            options={[
+              { value: NONE, text: "each with each" },
+              ...batches.map((batch) => ({ value: batch, text: `against ${batch}` })),
+            ]}
+            onPick={(reference) =>
+              choose({ reference: reference === NONE ? null : reference }, "reference batch")
+            }
+          />
+          ,
+        </Clause>
+        <Clause>
+          <Pick
+            label="Trend along"
+            value={view.choices.against ?? NONE}
+            options={[
+              { value: NONE, text: "without a trend" },
+              ...labels.map((label) => ({ value: label, text: `trend along ${label.toLowerCase()}` })),
+            ]}
+            onPick={(against) => choose({ against: against === NONE ? null : against }, "trend")}
+          />
+          .
+        </Clause>
+        {chosen !== null && (
+          <Clause>
+            {chosen.sample} belongs to batch{" "}
+            <Amount
+              label={`Batch of ${chosen.sample}`}
+              value={chosen.batch}
+              placeholder="as the header says"
+              width={8}
+              onCommit={(text) => {
+                choose(
+                  { values: typedBatch(view.choices.values ?? [], chosen, text) },
+                  `batch of ${chosen.sample}`,
+                );
+                return null;
+              }}
+            />
+            .
+          </Clause>
+        )}
+      </Sentence>
+      <FitAllButton />
+    </div>
+  );
+}
+
+type Values = NonNullable<CompareView["choices"]["values"]>;
+
+/** Typed over the header for every file of the sample; nothing typed gives the header back. */
+function typedBatch(values: Values, { results }: ComparedSample, text: string): Values {
+  const files = results.map(({ file }) => file);
+  const others = values.filter(({ of }) => !files.includes(of));
+  return text === "" ? others : [...others, ...files.map((of) => ({ of, facts: { batch: text } }))];
+}
+
+/** Facts of the headers that say something else from sample to sample and could order them. */
+function factLabels(session: Parameters<typeof gather>[0]): readonly string[] {
+  const texts = new Map<string, Set<string>>();
+  for (const { result } of gather(session))
+    for (const { key, label, text } of result.reading.facts) {
+      if (key === "sample" || key === "batch") continue;
+      const name = key === "other" ? label : key;
+      if (/\d/.test(text)) texts.set(name, (texts.get(name) ?? new Set()).add(text));
+    }
+  return [...texts].flatMap(([name, different]) => (different.size > 1 ? [name] : []));
+}
+
+/** Fit every file without a fit of its present choices, with progress and a way out. */
+export function FitAllButton() {
+  const controller = useController();
+  const job = useWindow((state) => state.job);
+  const left = useWindow((state) => unfittedFiles(state.session).length);
+  if (job !== null)
+    return (
+      <div className="fit-place fit-job" data-state={job.cancelling ? "cancelling" : "running"}>
+        <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
+          Cancel
+        </Button>
+        <progress className="fit-all-progress" max={1} value={job.fraction} aria-label="Fit all" />
+        <span className="small progress-step">{job.cancelling ? "stopping" : job.step}</span>
+      </div>
+    );
+  return (
+    <div className="fit-place">
+      <Button className="button button-main" isDisabled={left === 0} onPress={() => void controller.fitAll()}>
+        Fit all
+      </Button>
+      <span className="small">{left === 0 ? "all are fitted" : `${left} to fit`}</span>
+    </div>
+  );
+}

@@ -1,0 +1,45 @@
+import type { Comparison } from "../../app/protocol/index.ts";
+import type { FittedCurves, ReportInput } from "../../app/report/index.ts";
+import { gather } from "../batches/gather.ts";
+import type { Session } from "../store/session.ts";
+
+export type RecordInput = Omit<ReportInput, "run">;
+
+/** The part of a fit's curves that a record draws. */
+function drawn({ energy_eV, signal, model, background, residual }: FittedCurves): FittedCurves {
+  return { energy_eV, signal, model, background, residual };
+}
+
+/**
+ * What the record is about: one file with its power series, one result that came alone, or all samples that Batches
+ * shows, with their comparison.
+ */
+export function recordInput(session: Session, comparison: Comparison | null, of: string | null): RecordInput {
+  const found = gather(session).filter((one) => (of === null ? one.shown : one.id === of));
+  const items = found.map(({ id, of: kind, result }) => ({
+    result,
+    curves: kind === "file" ? drawn(session.fits[id]!.analysed.curves) : null,
+  }));
+  const series = Object.entries(session.powerFits)
+    .filter(([id, { fileIds }]) => of === null || id === of || fileIds.includes(of))
+    .map(([, { analysed }]) => ({
+      result: analysed.result,
+      // The spectrum of a power series is that of its lowest power.
+      curves: analysed.spectra[0] === undefined ? null : drawn(analysed.spectra[0].curves),
+    }));
+  const all = [...items, ...series];
+  return {
+    results: all.map(({ result }) => result),
+    curves: all.map(({ curves }) => curves),
+    comparison: of === null && found.length > 1 ? comparison : null,
+  };
+}
+
+/** Whether two records would say the same, so that a preview is not written twice. */
+export function sameRecord(one: RecordInput, other: RecordInput): boolean {
+  return (
+    one.comparison === other.comparison &&
+    one.results.length === other.results.length &&
+    one.results.every((result, i) => result === other.results[i])
+  );
+}
