@@ -1,5 +1,5 @@
 import { NOT_DETERMINED, symmetric } from "../../app/base/index.ts";
-import { formatNumber, formatQuantity, PARAMETER_TITLES } from "../../app/report/index.ts";
+import { formatNumber, formatQuantity, PARAMETER_TITLES, roundSigma } from "../../app/report/index.ts";
 import type {
   ComparedDifference,
   ComparedParameter,
@@ -175,7 +175,7 @@ function trendSection(part: ComparedPart, comparison: Comparison): LedgerSection
       }),
     ],
     remark: trend.seen
-      ? `a trend is seen, p = ${formatNumber(trend.p, 2)}`
+      ? `a trend is seen${trend.p === null ? "" : `, ${chanceText(trend.p)}`}`
       : `no trend seen${
           trend.detectable === null
             ? ""
@@ -190,6 +190,11 @@ function gravest(part: ComparedPart): ComparedDifference | undefined {
   return [...pairs].sort((a, b) => (a.p_corrected ?? 2) - (b.p_corrected ?? 2))[0];
 }
 
+/** Below a ten-thousandth the figure says no more than that. */
+function chanceText(p: number): string {
+  return p < 1e-4 ? "p < 0.0001" : `p = ${formatNumber(p, 2)}`;
+}
+
 /** Whether batches differ, in a sentence; "no difference" never without the size that could have been seen. */
 export function verdict(part: ComparedPart): string {
   const pairs = part.shifts.length > 0 ? part.shifts : part.pairs;
@@ -202,9 +207,8 @@ export function verdict(part: ComparedPart): string {
   const seen = pairs.filter((pair) => pair.seen);
   const words = pairs.length === 1 ? "" : ` of ${pairs.length}`;
   if (seen.length > 0)
-    return `${pairs.length === 1 ? "a difference is seen" : `${seen.length}${words} differences seen`}, p = ${formatNumber(
+    return `${pairs.length === 1 ? "a difference is seen" : `${seen.length}${words} differences seen`}, ${chanceText(
       Math.min(...seen.map((pair) => pair.p_corrected ?? 1)),
-      2,
     )}`;
   const sizes = pairs.flatMap((pair) => (pair.detectable === null ? [] : [pair.detectable]));
   if (sizes.length === 0) return "no difference could be seen with so few crystals";
@@ -227,7 +231,7 @@ function alike(part: ComparedPart, comparison: Comparison): LedgerEntry {
     quantity: NOT_DETERMINED,
     scale: 1,
     unit: "",
-    plain: p === null ? "not determined" : `p = ${formatNumber(p, 2)}`,
+    plain: p === null ? "not determined" : chanceText(p),
   });
 }
 
@@ -253,10 +257,13 @@ function difference(
     table: {
       caption: "The test",
       head: ["p", "corrected", "could be seen"],
-      rows: [[formatNumber(pair.p, 2), formatNumber(pair.p_corrected, 2), size(pair.detectable)]],
+      rows: [[bareChance(pair.p), bareChance(pair.p_corrected), size(pair.detectable)]],
     },
   };
 }
+
+const bareChance = (p: number | null): string =>
+  p === null ? "not determined" : chanceText(p).replace(/^p (= )?/, "");
 
 interface Shown {
   readonly quantity: LedgerEntry["quantity"];
@@ -285,20 +292,27 @@ function entry(
   };
 }
 
-/** A measured parameter with its parts apart, as a table shows it: value(statistical)(systematic). */
+/** A measured parameter with its parts apart as a table shows it: value(statistical)(systematic), both in its last place. */
 export function measuredText(
   one: { value: number | null; statistical: number | null; systematic: number | null } | undefined,
   scale: number,
 ): string {
   if (one === undefined || one.value === null) return "not determined";
   const scaled = (value: number | null): number | null => (value === null ? null : value * scale);
-  const bare = formatQuantity(scaled(one.value), scaled(one.statistical), "", {
-    groupSpace: THIN,
-    exactWord: "exact",
-  }).replace(/\s*\(exact\)/, "");
-  return one.systematic === null || one.systematic === 0
-    ? bare
-    : `${bare} ±${THIN}${formatNumber(one.systematic * scale, 2)}`;
+  const statistical = scaled(one.statistical);
+  if (statistical === null || !(statistical > 0)) return formatNumber(one.value * scale);
+  const bare = formatQuantity(scaled(one.value), statistical, "", { groupSpace: THIN });
+  if (one.systematic === null) return bare;
+  const { place } = roundSigma(statistical);
+  const last = (one.systematic * scale) / 10 ** place;
+  // With decimals in the brackets before, as in 13.7(2.7), there is no bare last place to count in.
+  const written =
+    bare.includes(".") && /\(\d+\)$/.test(bare)
+      ? last >= 0.5 || last === 0
+        ? String(Math.round(last))
+        : "<1"
+      : formatNumber(one.systematic * scale, 2);
+  return `${bare}(${written})`;
 }
 
 export const parameterWords = (name: ComparedParameter): string => PARAMETER_TITLES[name];

@@ -10,11 +10,12 @@ import { dayNumber } from "../../app/batch/index.ts";
 import type { ComparedSample, Comparison } from "../../app/protocol/index.ts";
 import { formatNumber } from "../../app/report/index.ts";
 import { useMode } from "../frame/theme.ts";
+import { Symbol } from "../ledger/ledger.tsx";
 import { useController } from "../store/context.ts";
 import { batchLook } from "./batch-look.ts";
 import { BatchMarkSign } from "./batch-mark.tsx";
 import { measuredText } from "./batches-ledger.ts";
-import { MAIN_PARAMETERS, title, valueUnit } from "./parameter-words.ts";
+import { MAIN_PARAMETERS, PARAMETER_SYMBOLS, title, valueUnit } from "./parameter-words.ts";
 
 /** A sample with its place in the comparison. */
 interface Row {
@@ -63,7 +64,15 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
         const { unit, scale } = valueUnit(part, comparison);
         return helper.accessor((row) => row.sample.parameters[part.name]?.value ?? undefined, {
           id: part.name,
-          header: `${title(part.name)}${unit === "" ? "" : ` / ${unit}`}`,
+          header: () => (
+            <span title={`${title(part.name)}: value(statistical)(systematic)`}>
+              <span className="hidden">{title(part.name)}</span>
+              <span aria-hidden="true">
+                <Symbol symbol={PARAMETER_SYMBOLS[part.name]} />
+              </span>
+              {unit === "" ? "" : ` / ${unit}`}
+            </span>
+          ),
           cell: ({ row }) => {
             const one = row.original.sample.parameters[part.name];
             return (
@@ -110,7 +119,9 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
           onChoose(order[next] ?? null);
         }}
       >
-        <caption className="hidden">Samples side by side; arrow keys choose one, Enter opens it</caption>
+        <caption className="hidden">
+          Samples side by side, value(statistical)(systematic part); arrow keys choose one, Enter opens it
+        </caption>
         <thead>
           {table.getHeaderGroups().map((group) => (
             <tr key={group.id}>

@@ -10,6 +10,7 @@ import { ReadStage } from "../read/read-stage.tsx";
 import { RecordStage } from "../record/record-stage.tsx";
 import { RungStrip } from "../rungs/rung-strip.tsx";
 import {
+  currentComparison,
   currentFile,
   currentFit,
   currentPower,
@@ -189,14 +190,20 @@ const SAVED = [
 function SaveMenu({ figure }: { readonly figure: React.RefObject<FigureHandle | null> }) {
   const controller = useController();
   const fitted = useWindow(
-    (state) => (state.stage === "power" ? currentPower(state) : currentFit(state)) !== null,
+    (state) =>
+      (state.stage === "power"
+        ? currentPower(state)
+        : state.stage === "batches"
+          ? currentComparison(state)
+          : currentFit(state)) !== null,
   );
   const file = useWindow(currentFile);
   const stage = useWindow((state) => state.stage);
   const saveFigure = async (format: "svg" | "png"): Promise<void> => {
     const bytes = await figure.current?.image(format);
     if (bytes === undefined || file === null) return;
-    await controller.save(`${file.name.replace(/\.[^.]+$/, "")}-${stage}.${format}`, bytes);
+    const base = stage === "batches" ? "comparison" : `${file.name.replace(/\.[^.]+$/, "")}-${stage}`;
+    await controller.save(`${base}.${format}`, bytes);
   };
   return (
     <MenuTrigger>
@@ -207,7 +214,11 @@ function SaveMenu({ figure }: { readonly figure: React.RefObject<FigureHandle | 
         <Menu
           className="menu"
           aria-label="Save"
-          disabledKeys={fitted ? [] : ["result", "protocol"]}
+          disabledKeys={[
+            ...(fitted ? [] : ["result"]),
+            ...(fitted && stage !== "batches" ? [] : ["protocol"]),
+            ...(stage === "record" ? ["svg", "png"] : []),
+          ]}
           onAction={(key) => {
             if (key === "result" || key === "protocol") void controller.saveFit(key);
             else void saveFigure(key as "svg" | "png");

@@ -1,5 +1,6 @@
 import { useEffect, useRef, useState } from "react";
 import { Button } from "react-aria-components";
+import { unfittedFiles } from "../batches/gather.ts";
 import { useController, useWindow } from "../store/context.ts";
 import type { WindowState } from "../store/store.ts";
 
@@ -9,7 +10,8 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
   const state = useWindow((one) => one);
   const panel = useRef<HTMLElement>(null);
   const [picked, setPicked] = useState<readonly string[]>([]);
-  const { files, currentId, series } = state.session;
+  const { files, currentId, series, results } = state.session;
+  const left = unfittedFiles(state.session).length;
   const marked = picked.filter((id) => files.some((file) => file.id === id));
   const memberOf = (id: string): readonly string[] | null => series.find((one) => one.includes(id)) ?? null;
   useEffect(() => panel.current?.querySelector<HTMLElement>("[aria-current]")?.focus(), []);
@@ -85,6 +87,29 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
             </button>
           </li>
         ))}
+        {results.map(({ id, result }) => (
+          <li key={`result ${id}`}>
+            <button
+              type="button"
+              className="drawer-file"
+              onClick={() => {
+                controller.openSample(id);
+                onClose();
+              }}
+            >
+              <span className="drawer-name">{id}</span>
+              <span className="small">result of {result.source.file}, without its spectrum</span>
+            </button>
+            <button
+              type="button"
+              className="quiet"
+              aria-label={`Close result ${id}`}
+              onClick={() => controller.closeResult(id)}
+            >
+              ✕
+            </button>
+          </li>
+        ))}
       </ul>
       {files.length > 1 && (
         <footer>
@@ -97,6 +122,17 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
             }}
           >
             One power series{marked.length > 1 ? ` of ${marked.length}` : ""}
+          </Button>
+          <Button
+            className="button"
+            isDisabled={left === 0 || state.job !== null}
+            onPress={() => {
+              controller.show("batches");
+              void controller.fitAll();
+              onClose();
+            }}
+          >
+            Fit all{left === 0 ? "" : ` ${left}`}
           </Button>
           <Button className="button" onPress={() => controller.share()}>
             Use these choices for all files

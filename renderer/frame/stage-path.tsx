@@ -1,5 +1,6 @@
 import { formatQuantity } from "../../app/report/index.ts";
 import { batchesOf, gather } from "../batches/gather.ts";
+import { recorded } from "../record/record-input.ts";
 import {
   currentComparison,
   currentFile,
@@ -192,7 +193,7 @@ function batchesState(state: WindowState): string {
 }
 
 function recordMarkOf({ session }: WindowState): Mark {
-  const shown = gather(session).filter((one) => one.shown);
+  const shown = recorded(session);
   if (shown.length === 0) return "not-yet";
   return shown.some(({ old, result }) => old || result.notes.some(({ level }) => level === "doubt"))
     ? "doubt"
@@ -200,7 +201,7 @@ function recordMarkOf({ session }: WindowState): Mark {
 }
 
 function recordState({ session }: WindowState): string {
-  const shown = gather(session).filter((one) => one.shown);
+  const shown = recorded(session);
   if (shown.length === 0) return "nothing to keep";
   if (shown.some(({ old }) => old)) return "choices changed";
   return shown.length === 1 ? "one result" : `${shown.length} results`;

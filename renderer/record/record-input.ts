@@ -1,6 +1,6 @@
 import type { Comparison } from "../../app/protocol/index.ts";
 import type { FittedCurves, ReportInput } from "../../app/report/index.ts";
-import { gather } from "../batches/gather.ts";
+import { gather, type Gathered } from "../batches/gather.ts";
 import type { Session } from "../store/session.ts";
 
 export type RecordInput = Omit<ReportInput, "run">;
@@ -10,12 +10,21 @@ function drawn({ energy_eV, signal, model, background, residual }: FittedCurves)
   return { energy_eV, signal, model, background, residual };
 }
 
+/** What Batches shows; the same file fitted alike is there once. */
+export function recorded(session: Session): readonly Gathered[] {
+  const seen = new Set<string>();
+  return gather(session).filter(({ shown, result: { source, protocol } }) => {
+    const key = `${source.sha256} ${source.file} ${JSON.stringify(protocol)}`;
+    return shown && !seen.has(key) && seen.add(key);
+  });
+}
+
 /**
  * What the record is about: one file with its power series, one result that came alone, or all samples that Batches
  * shows, with their comparison.
  */
 export function recordInput(session: Session, comparison: Comparison | null, of: string | null): RecordInput {
-  const found = gather(session).filter((one) => (of === null ? one.shown : one.id === of));
+  const found = of === null ? recorded(session) : gather(session).filter(({ id }) => id === of);
   const items = found.map(({ id, of: kind, result }) => ({
     result,
     curves: kind === "file" ? drawn(session.fits[id]!.analysed.curves) : null,

@@ -8,10 +8,11 @@ import {
   type ProtocolInput,
   type RunglineResult,
 } from "../../app/protocol/index.ts";
-import { protocolToJson, resultToJson, type ReportInput } from "../../app/report/index.ts";
+import { comparisonToJson, protocolToJson, resultToJson, type ReportInput } from "../../app/report/index.ts";
 import type { Host, NamedBytes, RecordPart } from "../../app/tasks/index.ts";
 import { batchesOf, gather, unfittedFiles } from "../batches/gather.ts";
 import type { JobClient, Outcome, RunningJob } from "../jobs/job-client.ts";
+import { currentComparison } from "./context.ts";
 import {
   addFiles,
   addResults,
@@ -457,6 +458,12 @@ export class Controller {
   async saveFit(what: "result" | "protocol"): Promise<void> {
     const { session } = this.store.getState();
     const { currentId } = session;
+    if (this.store.getState().stage === "batches") {
+      const comparison = currentComparison(this.store.getState());
+      if (what === "result" && comparison !== null)
+        await this.save("comparison.json", encode(comparisonToJson(comparison)));
+      return;
+    }
     if (currentId === null) return;
     const power = this.store.getState().stage === "power";
     const fit = power ? session.powerFits[seriesOf(session, currentId)[0]!] : session.fits[currentId];
