@@ -2,6 +2,7 @@ export * from "./analyse-file.ts";
 export * from "./inspect-file.ts";
 export * from "./analyse-power.ts";
 export * from "./compare-samples.ts";
+export * from "./record-files.ts";
 export * from "./messages.ts";
 export * from "./host.ts";
 export { wordIssue } from "./word-issue.ts";

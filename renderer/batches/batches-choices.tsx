@@ -5,7 +5,7 @@ import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
 import { parseNumber } from "../controls/parse-number.ts";
 import { useController, useWindow } from "../store/context.ts";
 import type { CompareView } from "../store/session.ts";
-import { batchesOf, gather, unfittedFiles } from "./gather.ts";
+import { batchesOf, gather, unfittedFiles } from "../store/gather.ts";
 
 const NONE = "";
 

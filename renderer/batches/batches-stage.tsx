@@ -15,7 +15,7 @@ import { BatchesChoices } from "./batches-choices.tsx";
 import { batchesFigure, type BatchesPanel } from "./batches-figure.ts";
 import { batchesLedger, parameterWords } from "./batches-ledger.ts";
 import { BatchesTable, useOpenSample } from "./batches-table.tsx";
-import { batchesOf, gather, unfittedFiles } from "./gather.ts";
+import { batchesOf, gather, unfittedFiles } from "../store/gather.ts";
 
 /** All samples side by side: what differs between crystals, and whether it does. */
 export function BatchesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle> }) {

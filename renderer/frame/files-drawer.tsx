@@ -1,6 +1,6 @@
 import { useEffect, useRef, useState } from "react";
 import { Button } from "react-aria-components";
-import { unfittedFiles } from "../batches/gather.ts";
+import { unfittedFiles } from "../store/gather.ts";
 import { useController, useWindow } from "../store/context.ts";
 import type { WindowState } from "../store/store.ts";
 

@@ -1,5 +1,5 @@
 import { formatQuantity } from "../../app/report/index.ts";
-import { batchesOf, gather } from "../batches/gather.ts";
+import { batchesOf, gather } from "../store/gather.ts";
 import { recorded } from "../record/record-input.ts";
 import {
   currentComparison,

@@ -1,6 +1,6 @@
 import type { Comparison } from "../../app/protocol/index.ts";
 import type { FittedCurves, ReportInput } from "../../app/report/index.ts";
-import { gather, type Gathered } from "../batches/gather.ts";
+import { gather, type Gathered } from "../store/gather.ts";
 import type { Session } from "../store/session.ts";
 
 export type RecordInput = Omit<ReportInput, "run">;

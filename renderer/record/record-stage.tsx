@@ -3,7 +3,7 @@ import { Button } from "react-aria-components";
 import { CRYOGEN_CAUTION, LASER_CAUTION, gravestFirst } from "../../app/report/index.ts";
 import type { RecordPart } from "../../app/tasks/index.ts";
 import { FitAllButton } from "../batches/batches-choices.tsx";
-import { gather } from "../batches/gather.ts";
+import { gather } from "../store/gather.ts";
 import { Clause, Pick, Sentence } from "../controls/choices.tsx";
 import { EmptyPlace } from "../frame/empty-place.tsx";
 import { currentComparison, useController, useWindow } from "../store/context.ts";

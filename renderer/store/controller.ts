@@ -10,7 +10,7 @@ import {
 } from "../../app/protocol/index.ts";
 import { comparisonToJson, protocolToJson, resultToJson, type ReportInput } from "../../app/report/index.ts";
 import type { Host, NamedBytes, RecordPart } from "../../app/tasks/index.ts";
-import { batchesOf, gather, unfittedFiles } from "../batches/gather.ts";
+import { batchesOf, gather, unfittedFiles } from "./gather.ts";
 import type { JobClient, Outcome, RunningJob } from "../jobs/job-client.ts";
 import { currentComparison } from "./context.ts";
 import {

@@ -4,11 +4,12 @@ import {
   analysePower,
   compareSamples,
   inspectFile,
+  recordFiles,
   wordIssue,
   type WorkerReply,
   type WorkerRequest,
 } from "../../app/tasks/index.ts";
-import { makeRecordFile } from "./record-files.ts";
+import { oneFile } from "./one-file.ts";
 import { wordComparisonIssue } from "./word-comparison-issue.ts";
 
 /** The page worker: all computation of the window happens here, never on the interface thread. */
@@ -44,7 +45,7 @@ function answer(message: WorkerRequest): void {
     return;
   }
   if (message.type === "record") {
-    reply({ type: "recorded", id, file: makeRecordFile(message.input, message.part) });
+    reply({ type: "recorded", id, file: oneFile(recordFiles(message.input, message.part)) });
     return;
   }
   if (message.type === "analyse-power") {

@@ -1,7 +1,7 @@
 import { beforeEach, describe, expect, it } from "vitest";
 import { resultsToJson } from "../../app/report/index.ts";
 import type { Host } from "../../app/tasks/index.ts";
-import { gather, unfittedFiles } from "../../renderer/batches/gather.ts";
+import { gather, unfittedFiles } from "../../renderer/store/gather.ts";
 import { JobClient } from "../../renderer/jobs/job-client.ts";
 import { currentComparison } from "../../renderer/store/context.ts";
 import { Controller } from "../../renderer/store/controller.ts";

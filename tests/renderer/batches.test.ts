@@ -2,11 +2,11 @@ import { describe, expect, it } from "vitest";
 import { batchLook } from "../../renderer/batches/batch-look.ts";
 import { batchesFigure } from "../../renderer/batches/batches-figure.ts";
 import { batchesLedger, measuredText, verdict } from "../../renderer/batches/batches-ledger.ts";
-import { batchesOf, gather, unfittedFiles } from "../../renderer/batches/gather.ts";
+import { batchesOf, gather, unfittedFiles } from "../../renderer/store/gather.ts";
 import { PALETTES } from "../../renderer/plot/colours.ts";
 import { recorded, recordInput } from "../../renderer/record/record-input.ts";
 import { addResults, editChoices, editCompare, removeResult } from "../../renderer/store/session.ts";
-import { makeRecordFile } from "../../renderer/worker/record-files.ts";
+import { recordFiles, type RecordPart } from "../../app/tasks/index.ts";
 import { CRYSTALS, crystalComparison, crystalResult, crystalSession } from "./batches-sample.ts";
 
 const session = crystalSession();
@@ -150,15 +150,18 @@ describe("the record", () => {
     expect(one.comparison).toBeNull();
   });
 
-  it("is kept as one file each, the same to the bit from the same results", () => {
+  it("is kept in files named after their input, one protocol for all where it is the same", () => {
+    const names = (input: Parameters<typeof recordFiles>[0], part: RecordPart): string[] =>
+      recordFiles(input, part).files.map(({ name }) => name);
     const one = { ...recordInput(session, null, "Q1.csv"), run };
-    expect(makeRecordFile(one, "report").name).toBe("Q1.report.html");
-    expect(makeRecordFile(one, "protocol").name).toBe("Q1.protocol.json");
-    expect(makeRecordFile(one, "csv").name).toBe("Q1.csv");
+    expect(names(one, "report")).toEqual(["Q1.report.html"]);
+    expect(names(one, "protocol")).toEqual(["Q1.protocol.json"]);
+    expect(names(one, "latex")).toEqual(["Q1.tables.tex"]);
     const all = { ...recordInput(session, comparison, null), run };
-    expect(makeRecordFile(all, "protocol").name).toBe("rungline.protocol.json");
-    const archive = makeRecordFile(all, "csv");
-    expect(archive.name).toBe("rungline.tables.zip");
-    expect(makeRecordFile(all, "csv").bytes).toEqual(archive.bytes);
+    expect(names(all, "protocol")).toEqual(["rungline.protocol.json"]);
+    expect(names(all, "results")).toEqual(["rungline.results.json"]);
+    expect(recordFiles(all, "csv").archive).toBe("rungline.tables.zip");
+    expect(names(all, "csv")).toEqual(["P1.csv", "P2.csv", "P3.csv", "Q1.csv", "Q2.csv", "comparison.csv"]);
+    expect(names(all, "figures")).toContain("compare-widths.svg");
   });
 });

@@ -5,7 +5,7 @@ import {
   type ComparisonChoicesInput,
   type RunglineResult,
 } from "../../app/protocol/index.ts";
-import type { CompareView, LoadedResult, Session } from "../store/session.ts";
+import type { CompareView, LoadedResult, Session } from "./session.ts";
 
 /** One result of the session with the facts that name it, and whether the filters let it stand. */
 export interface Gathered {

@@ -1,4 +1,3 @@
-import { strToU8, zipSync, type Zippable } from "fflate";
 import {
   comparisonToCsv,
   comparisonToLatex,
@@ -11,20 +10,24 @@ import {
   resultToJson,
   resultToLatex,
   type ReportInput,
-} from "../../app/report/index.ts";
-import type { NamedBytes, RecordPart } from "../../app/tasks/index.ts";
+} from "../report/index.ts";
+import type { RecordPart } from "./messages.ts";
 
-interface TextFile {
+export interface TextFile {
   readonly name: string;
   readonly text: string;
 }
 
-const BASE_OF_MANY = "rungline";
-/** An archive of the same files is the same to the bit: the date that the format wants says nothing. */
-const NO_DATE = new Date("1980-01-01T00:00:00");
+/** Files of one part, and the name of the archive that a shell makes of them where there are several. */
+export interface RecordFiles {
+  readonly archive: string;
+  readonly files: readonly TextFile[];
+}
 
-/** What is kept of a record as one file: an archive where it takes several. */
-export function makeRecordFile(input: ReportInput, part: RecordPart): NamedBytes {
+const BASE_OF_MANY = "rungline";
+
+/** What is kept of a record: one file or several. */
+export function recordFiles(input: ReportInput, part: RecordPart): RecordFiles {
   const names = recordNames(input);
   const base = names.length === 1 ? names[0]! : BASE_OF_MANY;
   switch (part) {
@@ -100,13 +103,10 @@ export function recordNames({ results }: Pick<ReportInput, "results">): string[]
   );
 }
 
-function plain({ name, text }: TextFile): NamedBytes {
-  return { name, bytes: strToU8(text) };
+function plain(file: TextFile): RecordFiles {
+  return { archive: file.name, files: [file] };
 }
 
-function gathered(archive: string, files: readonly TextFile[]): NamedBytes {
-  if (files.length === 1) return plain(files[0]!);
-  const entries: Zippable = {};
-  for (const { name, text } of files) entries[name] = [strToU8(text), { mtime: NO_DATE }];
-  return { name: archive, bytes: zipSync(entries) };
+function gathered(archive: string, files: readonly TextFile[]): RecordFiles {
+  return { archive, files };
 }
