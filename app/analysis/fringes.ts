@@ -54,18 +54,27 @@ export function findFringes(energy: Float64Array, residuals: Float64Array): Seen
   const step = 1 / OVERSAMPLING;
   const most = Math.min(MOST_PERIODS, count / 5);
   for (let periods = FEWEST_PERIODS; periods <= most; periods += step) {
-    let [cc, cs, ss, yc, ys] = [0, 0, 0, 0, 0];
+    let cc = 0;
+    let cs = 0;
+    let ss = 0;
+    let yc = 0;
+    let ys = 0;
+    // Cosine and sine turn by one bin at a time: 1500 rotations lose a few 1e-13.
+    const turn = (2 * Math.PI * periods) / count;
+    const turnC = Math.cos(turn);
+    const turnS = Math.sin(turn);
+    let c = Math.cos(0.5 * turn);
+    let s = Math.sin(0.5 * turn);
     for (let i = 0; i < count; i++) {
       const w = weight[i]!;
-      if (w === 0) continue;
-      const phase = (2 * Math.PI * periods * (i + 0.5)) / count;
-      const c = Math.cos(phase);
-      const s = Math.sin(phase);
       cc += w * c * c;
       cs += w * c * s;
       ss += w * s * s;
       yc += sum[i]! * c;
       ys += sum[i]! * s;
+      const next = c * turnC - s * turnS;
+      s = s * turnC + c * turnS;
+      c = next;
     }
     const det = cc * ss - cs * cs;
     const a = (ss * yc - cs * ys) / det;
