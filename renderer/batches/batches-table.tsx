@@ -77,7 +77,7 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
             const one = row.original.sample.parameters[part.name];
             return (
               <>
-                {measuredText(one, scale)}
+                {part.name === "highest_n" ? (one?.value ?? "none seen") : measuredText(one, scale)}
                 {one?.left_out !== null && one?.left_out !== undefined && (
                   <span title={`left out: ${one.left_out}`}> ◇</span>
                 )}

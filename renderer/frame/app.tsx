@@ -53,7 +53,7 @@ export function App() {
         void controller.open();
       } else if (key === "s") {
         event.preventDefault();
-        void controller.saveFit("result");
+        void controller.saveShown();
       }
     };
     addEventListener("keydown", press);

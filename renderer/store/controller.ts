@@ -12,6 +12,7 @@ import { comparisonToJson, protocolToJson, resultToJson, type ReportInput } from
 import type { Host, NamedBytes, RecordPart } from "../../app/tasks/index.ts";
 import { batchesOf, gather, unfittedFiles } from "./gather.ts";
 import type { JobClient, Outcome, RunningJob } from "../jobs/job-client.ts";
+import { recordInput } from "../record/record-input.ts";
 import { currentComparison } from "./context.ts";
 import {
   addFiles,
@@ -76,11 +77,21 @@ export class Controller {
       this.#set({ facts });
       const files = start.files.length > 0 ? start.files : await this.#host.demoFiles();
       const choices = start.files.length > 0 ? (start.choices as ProtocolInput) : DEMO_CHOICES;
-      this.#edit((session) => ({ ...addFiles(session, files, choices), step: "start" }));
+      const results = files.map((file) => ({ file, found: readResults(file) }));
+      const spectra = results.flatMap(({ file, found }) => (found?.ok === true ? [] : [file]));
+      this.#edit((session) => ({
+        ...results.reduce(
+          (before, { file, found }) =>
+            found?.ok === true ? addResults(before, file.name, found.results) : before,
+          addFiles(session, spectra, choices),
+        ),
+        step: "start",
+      }));
       // The first files are where undo ends, not a step of their own.
       this.store.temporal.getState().clear();
       this.#set({ start: "ready" });
-      if (files.length > 0) {
+      if (spectra.length === 0 && results.length > 0) this.#set({ stage: "batches" });
+      if (spectra.length > 0) {
         this.#set({ stage: "lines" });
         await this.fit();
       }
@@ -241,6 +252,14 @@ export class Controller {
       if (name !== null) this.say(false, `${name} is kept`, "");
     } else if (outcome.kind === "fault")
       this.say(true, `a fault of Rungline: ${outcome.message}`, "keep the results and report it");
+  }
+
+  /** What the stage is about: the report in Record, the comparison in Batches, else the result. */
+  async saveShown(): Promise<void> {
+    const { stage, session, recordOf } = this.store.getState();
+    if (stage !== "record") return this.saveFit("result");
+    const input = recordInput(session, currentComparison(this.store.getState()), recordOf);
+    if (input.results.length > 0) await this.saveRecord(input, "report");
   }
 
   share(): void {

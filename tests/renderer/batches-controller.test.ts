@@ -157,4 +157,15 @@ describe("the record", () => {
     await done;
     expect(saved).toEqual(["P1.report.html"]);
   });
+
+  it("is what Ctrl+S keeps in its stage", async () => {
+    controller.add([{ name: "P1.json", bytes: encode(resultsToJson([crystalResult(CRYSTALS[0]!)])) }]);
+    controller.show("record");
+    const done = controller.saveShown();
+    expect(reader.asked.at(-1)).toMatchObject({ type: "record", part: "report" });
+    const { id } = reader.asked.at(-1)!;
+    reader.answer({ type: "recorded", id, file: { name: "P1.report.html", bytes: encode("<p>") } });
+    await done;
+    expect(saved).toEqual(["P1.report.html"]);
+  });
 });
