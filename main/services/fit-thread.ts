@@ -5,7 +5,8 @@ import { runPower } from "./power-runner.ts";
 
 /** The thread that fits: one request at a time, cancelled through shared memory, since it is busy while it fits. */
 parentPort?.on("message", (message: WorkerRequest) => {
-  if (message.type === "inspect") return;
+  // The window's other messages never come here.
+  if (message.type !== "analyse" && message.type !== "analyse-power") return;
   const { id, run, cancel } = message;
   const post = (reply: WorkerReply): void => parentPort?.postMessage(reply);
   const progress = (fraction: number, step: string): void => post({ type: "progress", id, fraction, step });

@@ -1,3 +1,4 @@
+import { endsWork } from "./ends-work.ts";
 import { Worker } from "node:worker_threads";
 import { Cancelled, type Watch, type Wording } from "../../app/base/index.ts";
 import {
@@ -70,7 +71,7 @@ export function runPowerInThread(program: URL): RunPower {
       signal.addEventListener("abort", onAbort, { once: true });
       thread.on("message", (reply: WorkerReply) => {
         if (reply.type === "progress") progress(reply.fraction, reply.step);
-        else if (reply.type !== "inspected" && reply.type !== "analysed") end(reply);
+        else if (endsWork(reply) && reply.type !== "analysed") end(reply);
       });
       thread.on("error", (thrown: unknown) => end(faultOf(thrown)));
       thread.on("exit", (code) =>

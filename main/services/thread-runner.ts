@@ -1,6 +1,7 @@
 import { Worker } from "node:worker_threads";
 import type { WorkerReply, WorkerRequest } from "../../app/tasks/index.ts";
 import { faultOf, type FitOutcome, type FitRunner } from "./fit-outcome.ts";
+import { endsWork } from "./ends-work.ts";
 
 /** Fits in one thread that is started at once, so that it loads while the input is read. */
 export function makeThreadRunner(program: URL): FitRunner {
@@ -48,7 +49,7 @@ export function makeThreadRunner(program: URL): FitRunner {
         const onMessage = (reply: WorkerReply): void => {
           if (reply.id !== id) return;
           if (reply.type === "progress") progress(reply.fraction, reply.step);
-          else if (reply.type !== "inspected" && reply.type !== "analysed-power") end(reply);
+          else if (endsWork(reply) && reply.type !== "analysed-power") end(reply);
         };
         const onError = (thrown: unknown): void => {
           broken = null;
