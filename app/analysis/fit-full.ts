@@ -163,12 +163,14 @@ function fitFreeLevels(
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
     const began = watch.seconds();
-    const fit = withAskedErrors(fitPass(model), protocol);
+    const plain = fitPass(model);
+    const fit = withAskedErrors(plain, protocol);
     const solveSeconds = watch.seconds() - began;
     stopIfCancelled(watch);
     const range = judgeLevels(fit, protocol);
     const next = withLevelRange(stateAfter(fit, model.state), range);
-    const seen = significances(fit);
+    // A first fit that is still poor would widen its errors until no line is left: the plain ones decide what is seen.
+    const seen = significances(plain);
     let keep = state.ns.length;
     if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
     const dropped = keep < state.ns.length;
