@@ -213,7 +213,8 @@ function intervals(
   return {
     traces,
     x: axis(palette, unit === "" ? name : `${name} / ${unit}`, {
-      nticks: 5,
+      nticks: 4,
+      tickangle: 0,
       showgrid: false,
       zeroline: gap,
       zerolinecolor: palette.grid,

@@ -187,7 +187,8 @@ function trendSection(part: ComparedPart, comparison: Comparison): LedgerSection
 /** The pair that differs most surely; with a reference batch, against it. */
 function gravest(part: ComparedPart): ComparedDifference | undefined {
   const pairs = part.shifts.length > 0 ? part.shifts : part.pairs;
-  return [...pairs].sort((a, b) => (a.p_corrected ?? 2) - (b.p_corrected ?? 2))[0];
+  // Many corrected probabilities are one: then the bare ones tell which pair is the furthest apart.
+  return [...pairs].sort((a, b) => (a.p_corrected ?? 2) - (b.p_corrected ?? 2) || (a.p ?? 2) - (b.p ?? 2))[0];
 }
 
 /** Below a ten-thousandth the figure says no more than that. */

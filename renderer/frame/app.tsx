@@ -201,13 +201,14 @@ function SaveMenu({ figure }: { readonly figure: React.RefObject<FigureHandle | 
   const stage = useWindow((state) => state.stage);
   const saveFigure = async (format: "svg" | "png"): Promise<void> => {
     const bytes = await figure.current?.image(format);
-    if (bytes === undefined || file === null) return;
-    const base = stage === "batches" ? "comparison" : `${file.name.replace(/\.[^.]+$/, "")}-${stage}`;
+    if (bytes === undefined) return;
+    const base =
+      stage === "batches" ? "comparison" : `${(file?.name ?? "figure").replace(/\.[^.]+$/, "")}-${stage}`;
     await controller.save(`${base}.${format}`, bytes);
   };
   return (
     <MenuTrigger>
-      <Button className="button" isDisabled={file === null}>
+      <Button className="button" isDisabled={file === null && !fitted}>
         Save
       </Button>
       <Popover className="menu-place" placement="bottom end">
