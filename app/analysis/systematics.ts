@@ -1,5 +1,5 @@
 import { doubt, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
-import { fitSpectrum, withAxisJitter, type FitPoints } from "../fit/index.ts";
+import { fitSpectrum, withAxisJitter, type FitPoints, type SpectrumFit } from "../fit/index.ts";
 import type { BackgroundTerm, Protocol, RunglineResult } from "../protocol/index.ts";
 import { fitLevels, type LevelFit } from "../series/index.ts";
 import { informationCriteria, runsTest } from "../solve/index.ts";
@@ -42,7 +42,8 @@ export function judgeSystematics(
   const trials = planTrials(points, state, protocol, choices);
   const rows: (Systematic["trials"][number] & { samePoints: boolean })[] = [];
   for (const trial of trials) {
-    const row = runTrial(points, state, reference, protocol, spectrum.unit, trial, watch);
+    const chi2 = trial.samePoints ? (rows[0]?.chi2 ?? null) : null;
+    const row = runTrial(points, state, reference, protocol, spectrum.unit, trial, chi2, watch);
     if (row !== null) rows.push({ ...row, samePoints: trial.samePoints });
   }
   const bics = rows.filter((row) => row.samePoints && row.bic !== null).map((row) => row.bic!);
@@ -159,6 +160,10 @@ function planTrials(
   return trials;
 }
 
+const FIRST_LOOK = 4;
+const MOST_ITERATIONS = 20;
+const HOPELESS = 5;
+
 function runTrial(
   points: FitPoints,
   state: LadderState,
@@ -166,6 +171,7 @@ function runTrial(
   protocol: Protocol,
   unit: Spectrum["unit"],
   trial: Trial,
+  chosenChi2: number | null,
   watch: Watch,
 ): Systematic["trials"][number] | null {
   const inside = (value: number): boolean => value >= trial.low && value <= trial.high;
@@ -182,12 +188,17 @@ function runTrial(
     unit,
     trial.choices,
   );
-  const raw = fitSpectrum(part, model.spec, model.start, {
-    watch,
-    maxIterations: 20,
-    gradientTolerance: 1e-4,
-    costTolerance: 1e-6,
-  });
+  const attempt = (maxIterations: number): SpectrumFit =>
+    fitSpectrum(part, model.spec, model.start, {
+      watch,
+      maxIterations,
+      gradientTolerance: 1e-4,
+      costTolerance: 1e-6,
+    });
+  let raw = attempt(FIRST_LOOK);
+  // A trial that is still this far off after a first look never becomes defensible: it is listed where it stands.
+  const hopeless = chosenChi2 !== null && raw.solution.chi2 > HOPELESS * chosenChi2;
+  if (!raw.solution.converged && !hopeless) raw = attempt(MOST_ITERATIONS);
   const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
   // A fit that was stopped has values of no meaning.
   stopIfCancelled(watch);
