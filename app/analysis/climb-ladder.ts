@@ -83,7 +83,7 @@ export function startLadder(peaks: readonly Peak[], assignment: Assignment, prot
 }
 
 /**
- * Low lines may lie off the law of the higher ones (PHYSICS of the level law), and must not steer the first tail:
+ * Low lines may lie off the law of the higher ones, and must not steer the first tail:
  * the lowest n from which the law holds to a part of the line widths, at least four lines.
  */
 function firstLaw(

@@ -102,7 +102,7 @@ export function describeResult(
   const lines: RunglineResult["lines"] = fit.lines.ns.map((n, j) => {
     const bound = fit.atBound.includes(n);
     const { binding_eV: _, ...derived } = derivedParts.lines[j]!;
-    // q of a line whose area is hardly seen says nothing (PHYSICS of the asymmetry).
+    // q of a line whose area is hardly seen says nothing.
     const held = (parameter: "energy" | "width" | "area"): Quantity | null =>
       isHeld(fit, n, parameter) ? heldQuantity(fit.lines[parameter][j]!) : null;
     const qKnown = asymmetryFree && (protocol.lines.asymmetry === "shared" || seen[j]! > 3);

@@ -288,7 +288,7 @@ export function fringeNotes(
   return notes;
 }
 
-/** Fringes may be added to the signal where the optical depth varies by less than this (PHYSICS of the background). */
+/** Fringes may be added to the signal where the optical depth varies by less than this. */
 export const ADDITIVE_RANGE = 0.2;
 /** A wave of fewer periods may as well be a background that does not fit. */
 const FEWEST_SAID = 4.5;

@@ -12,7 +12,7 @@ import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec
  * Shapes    all columns (m).
  * Units     eV, 1/eV.
  * Accuracy  the band replaces lines whose width is at least `BLENDED` spacings: ripple exp(-pi BLENDED) of its height.
- * Source    PHYSICS of the series limit: Elliott, Phys. Rev. 108, 1384 (1957); midpoint rule for the sum over n.
+ * Source    Elliott, Phys. Rev. 108, 1384 (1957); midpoint rule for the sum over n.
  */
 export interface TailColumns {
   /** f-part without the odd partner, and the odd partner (times 2 q). */

@@ -46,7 +46,7 @@ export type AbsorptionModel = Pick<
  * Units     T as a fraction; period in eV; other parameters as in SpectrumProblem.
  * Domain    alpha of either sign; where exp(-alpha d) overflows the model is not finite and the solver turns back.
  * Accuracy  derivatives are those of the discretised model to rounding: tests/app/fit/transmittance-problem.test.ts.
- * Source    PHYSICS of the slit: it averages light, not absorption; fringes: Airy's sum with partial coherence v.
+ * Source    the slit averages light, not absorption; fringes: Airy's sum with partial coherence v.
  */
 export class TransmittanceProblem implements GeneralProblem {
   readonly rows: number;

@@ -43,7 +43,7 @@ const ON_LINE = 1;
 
 /**
  * What      From line parameters against power to saturation, density, blockade volume and what the crystal is good
- *           for (PHYSICS.md 9), with standard errors from the covariance of the joint fit and seeded draws of the rest.
+ *           for (design notes of this project on the physics, section 9), with standard errors from the covariance of the joint fit and seeded draws of the rest.
  * Units     uW, um, ps, eV.
  * Domain    two or more different powers; everything that a missing input leaves open is not determined, not guessed.
  * Accuracy  tests/app/power, tests/bench/power-coverage.bench.ts.

@@ -69,7 +69,7 @@ export const REJECTED_BELOW = 0.01;
  * Domain    two lines or more; the defect is free from four lines on, a Ritz term from five (delta4: six); with a held
  *           Rydberg energy from one line less. With fewer the notes say what was held and why.
  * Accuracy  tests/reference/atomic-series.test.ts (measured levels), tests/app/series/level-fit.test.ts.
- * Source    see laws/level.ts; the convention for few lines is PHYSICS of the level law.
+ * Source    see laws/level.ts; the convention for few lines follows from the degrees of freedom.
  */
 export function fitLevels(input: LevelInput): Result<LevelFit, SeriesIssue> {
   const k = input.n.length;

@@ -91,7 +91,7 @@ const ROUNDS = 3;
  *           var T = [v(S) + T^2 v(F) + (1 - T)^2 v(D)]/(F - D)^2, the last only with a dark reading. S is that of the
  *           smoothed T: from the single reading it would follow its noise and bias the weights.
  * Units     gain in electrons a count, read noise r in counts; N readings are averaged in each value (not summed).
- * Source    PHYSICS of the counts, with the dark part written out: dT/dD = (T - 1)/(F - D).
+ * Source    propagation of the counts' variances, with the dark part written out: dT/dD = (T - 1)/(F - D).
  */
 function countsNoise(points: Points, gain: number, detector: ReadingChoices["noise"]): PointNoise | null {
   const { value, divisor, dark, relative } = points;

@@ -114,7 +114,7 @@ describe("worked numbers", () => {
       area_um2: Math.PI * 50 ** 2,
       thickness_um: 34,
     };
-    // Source: PHYSICS.md 9 of the design: 1.175e-4 per um^3 (four digits)
+    // Source: design notes of this project on the physics, section 9: 1.175e-4 per um^3 (four digits)
     expect(excitonDensity(input)).toBeCloseTo(1.175e-4, 7);
     // Derived: in SI, photons per second absorbed slice by slice, times the lifetime, over the volume
     const photons = (1e-6 * 0.75) / (2.172 * 1.602176634e-19);
@@ -135,7 +135,7 @@ describe("worked numbers", () => {
   test("dipole-dipole volumes at n = 10 and 20", () => {
     const volume = (n: number): number =>
       sphereVolume(blockadeRadius("dipole-dipole", 2.37e-4, n, width(n), 0.5));
-    // Source: PHYSICS.md 9 of the design: 1.24 and 159 um^3 (three digits)
+    // Source: design notes of this project on the physics, section 9: 1.24 and 159 um^3 (three digits)
     expect(volume(10)).toBeCloseTo(1.24, 2);
     expect(Math.abs(volume(20) - 159)).toBeLessThan(0.5);
     // Derived: volume where the interaction exceeds half the width, counted on a radial grid
@@ -147,7 +147,7 @@ describe("worked numbers", () => {
     // Derived: the part that a shift x^-p (in half widths) takes from a Lorentz line, 1/(1 + x^2p), over 3 x^2 dx
     const soft = (p: number): number =>
       integrate((x) => (3 * x * x) / (1 + x ** (2 * p)), 0, 60) + (p === 3 ? 60 ** -3 : 0);
-    // Source: PHYSICS.md 9 of the design: 1.1107 and 1.5708
+    // Source: design notes of this project on the physics, section 9: 1.1107 and 1.5708
     expect(soft(6)).toBeCloseTo(1.1107, 4);
     expect(soft(3)).toBeCloseTo(1.5708, 4);
     expect(INTERACTIONS["van-der-waals"].soft).toBeCloseTo(soft(6), 6);
@@ -169,12 +169,12 @@ describe("worked numbers", () => {
       // Derived: mean over the centre's depth of the part of the sphere inside
       expect(slabFactor(radius, d)).toBeCloseTo(direct(radius, d), 4);
     }
-    // Source: PHYSICS.md 9 of the design: 1 - 3 R/(8 d)
+    // Source: design notes of this project on the physics, section 9: 1 - 3 R/(8 d)
     expect(slabFactor(4, 34)).toBeCloseTo(1 - 12 / 272, 12);
   });
 
   test("the plain hyperbola read into a self-probing Gaussian beam is low by 13, 29, 44, 55 %", () => {
-    // Source: PHYSICS.md 9 of the design, for S P up to 0.5, 2, 5, 10
+    // Source: design notes of this project on the physics, section 9, for S P up to 0.5, 2, 5, 10
     for (const [reach, low] of [
       [0.5, 13],
       [2, 29],
@@ -248,7 +248,7 @@ describe("exact limits", () => {
       const fitted =
         x.reduce((sum, one, i) => sum + (one - mean(x)) * y[i]!, 0) /
         x.reduce((sum, one) => sum + (one - mean(x)) ** 2, 0);
-      // Source: PHYSICS.md 9 of the design ("about"; the range of n is not stated there, here 7 to 13)
+      // Source: design notes of this project on the physics, section 9 ("about"; the range of n is not stated there, here 7 to 13)
       expect(Math.abs(fitted - expected)).toBeLessThan(0.3);
     }
   });

@@ -98,7 +98,7 @@ describe("common practice", () => {
     // common practice, no source: about 100 meV, published values 86-98 meV
     expect(rydberg).toBeGreaterThan(86);
     expect(rydberg).toBeLessThan(98);
-    // Derived: 719.982274 meV nm/(92 meV 7.5), the other way round (PHYSICS of derived quantities: 1.043 nm).
+    // Derived: 719.982274 meV nm/(92 meV 7.5), the other way round.
     expect(bohrRadiusFromRydberg(0.092, 7.5)).toBeCloseTo(1.043, 3);
   });
 

@@ -140,7 +140,7 @@ describe("a slit on strong lines", () => {
       NO_WATCH,
     ).result;
     expect(code(forced)).toContain("alpha-domain-biased");
-    // Derived: PHYSICS.md 3, a slit as wide as a line takes per cents of its area; the errors here are tenths.
+    // Derived: design notes of this project on the physics, section 3, a slit as wide as a line takes per cents of its area; the errors here are tenths.
     expect(largest(pulls(forced.lines, truth.lines))).toBeGreaterThan(4);
   });
 

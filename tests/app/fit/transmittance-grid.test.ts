@@ -67,7 +67,7 @@ describe("the mean over the slit", () => {
 
 describe("the area that a fit of the logarithm loses to the slit", () => {
   it.each([
-    // Source: PHYSICS.md 3 (checked numerically there), peak optical depth 1, slit/G and loss of area in %, two digits.
+    // Source: design notes of this project on the physics, section 3 (checked numerically there), peak optical depth 1, slit/G and loss of area in %, two digits.
     [0.2, -0.55, 0.01],
     [0.5, -2.6, 0.06],
     [1, -6.3, 0.06],

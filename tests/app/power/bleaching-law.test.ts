@@ -108,7 +108,7 @@ describe("beams", () => {
     expect(spotArea("flat", "full", 100)).toBeCloseTo(Math.PI * 2500, 9);
     // Derived: pi w^2 with w = D/2
     expect(spotArea("gaussian", "1/e2", 100)).toBeCloseTo(Math.PI * 2500, 9);
-    // Source: PHYSICS of a Gaussian beam, w = 0.8493 FWHM (four digits; Siegman, Lasers (1986), ch. 17)
+    // Source: Gaussian beam, w = 0.8493 FWHM (four digits; Siegman, Lasers (1986), ch. 17)
     expect(Math.sqrt(spotArea("gaussian", "fwhm", 1) / Math.PI)).toBeCloseTo(0.8493, 4);
     // Derived: pi (w_pump^2 + w_probe^2)/2 with a probe of half the size
     expect(spotArea("gaussian", "1/e2", 100, 0.25)).toBeCloseTo((Math.PI * (2500 + 625)) / 2, 9);
@@ -122,7 +122,7 @@ describe("beams", () => {
   test("the law follows how the series was taken", () => {
     const power = DEFAULT_PROTOCOL.power;
     const law = (changes: object): string => describeBeam({ ...power, ...changes }).areaLaw;
-    // Derived: PHYSICS.md 9 of the design, the table of excitation and profile
+    // Derived: design notes of this project on the physics, section 9, the table of excitation and profile
     expect(law({})).toBe("separate-pump");
     expect(law({ excitation: "scanned-probe" })).toBe("scanned-probe");
     expect(law({ spot_profile: "gaussian" })).toBe("gaussian-self");

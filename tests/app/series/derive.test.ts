@@ -77,7 +77,7 @@ test("peaks, lifetimes and oscillator strengths follow from width, area and asym
   expect(third.peak.value! / highest).toBeCloseTo(1, 8);
   // Source: CODATA, hbar = 658.2119569 ueV ps.
   expect(third.lifetime_ps.value! * widthOf(3) * 1e6).toBeCloseTo(658.2119569, 6);
-  // Derived: area times index over 1.0976e-16 eV cm^2 (PHYSICS of widths and strengths).
+  // Derived: area times index over 1.0976e-16 eV cm^2.
   expect(third.strength_per_cm3.value! / ((areaOf(3) * 2.95) / 1.0976e-16)).toBeCloseTo(1, 12);
 });
 

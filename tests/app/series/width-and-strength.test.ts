@@ -57,7 +57,7 @@ describe("the width law", () => {
     const fit = mustBe(
       fitWidths({ ...widths(null), width_eV, covariance, exponent: "free", floorKind: "none" }),
     );
-    // Derived: PHYSICS of the width law warns that ignoring a floor lowers the exponent (2.78 for lines up to 25).
+    // Derived: design notes of this project on the physics, section 7: ignoring a floor lowers the exponent (2.78 for lines up to 25).
     expect(fit.estimates.values[2]!).toBeLessThan(2.96);
     expect(fit.estimates.values[2]!).toBeGreaterThan(2.7);
   });

@@ -68,7 +68,7 @@ describe("transmittance and optical depth", () => {
   });
 
   it("takes the reflectance from the index", () => {
-    // Source: PHYSICS.md 10, index 2.95 (R 0.244)
+    // Source: design notes of this project on the physics, section 10, index 2.95 (R 0.244)
     expect(reflectance(2.95)).toBeCloseTo(0.2437, 4);
     // Derived: [(2.95 - 1.028)/(2.95 + 1.028)]^2
     expect(reflectance(2.95, 1.028)).toBeCloseTo((1.922 / 3.978) ** 2, 14);
