@@ -5,3 +5,4 @@ export * from "./estimates.ts";
 export * from "./random.ts";
 export * from "./watch.ts";
 export { sha256 } from "./sha256.ts";
+export { nearestWord } from "./nearest-word.ts";

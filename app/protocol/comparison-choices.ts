@@ -1,6 +1,5 @@
-import { failure, success, type Result } from "../base/index.ts";
+import { failure, nearestWord, success, type Result } from "../base/index.ts";
 import { comparisonChoicesSchema, type ComparisonChoices } from "./comparison-schema.ts";
-import { nearestWord } from "./nearest-word.ts";
 import type { ProtocolIssue } from "./resolve-protocol.ts";
 
 /** What a user wrote to the full choices of a comparison; unknown keys are refused with the nearest known one. */

@@ -12,7 +12,6 @@ export {
   type ProtocolIssue,
 } from "./resolve-protocol.ts";
 export { choicesFromSetting, composeChoices } from "./set-key.ts";
-export { nearestWord } from "./nearest-word.ts";
 export {
   parseResult,
   parseResults,

@@ -1,7 +1,6 @@
-import { failure, success, type Issue, type Result, type Wording } from "../base/index.ts";
+import { failure, nearestWord, success, type Issue, type Result, type Wording } from "../base/index.ts";
 import { z } from "zod";
 import { DEFAULT_PROTOCOL } from "./defaults.ts";
-import { nearestWord } from "./nearest-word.ts";
 import { findPreset, PRESETS } from "./presets.ts";
 import { PROTOCOL_SCHEMA, protocolSchema, type Protocol, type ProtocolInput } from "./protocol-schema.ts";
 

@@ -1,8 +1,7 @@
-import { failure, success, type Result } from "../base/index.ts";
+import { failure, nearestWord, success, type Result } from "../base/index.ts";
 import type { Table, TableColumn } from "../table/index.ts";
 import { plainWords } from "./header-words.ts";
 import type { SpectrumIssue } from "./issue.ts";
-import { nearestHeader } from "./nearest-header.ts";
 
 /** The column that the choices name by its 1-based number, its header as written, or its name without the unit. */
 export function findColumn(
@@ -26,7 +25,13 @@ export function findColumn(
       file: table.file,
       key,
       found: wanted,
-      nearest: number !== null ? null : nearestHeader(String(wanted), names),
+      nearest:
+        number !== null
+          ? null
+          : nearestWord(
+              String(wanted),
+              names.filter((name) => name !== ""),
+            ),
       columns: table.columns.map(describeColumn).join(", "),
     },
   });

@@ -1,11 +1,11 @@
 import { describe, expect, it } from "vitest";
+import { nearestWord } from "../../../app/base/index.ts";
 import {
   choicesFromSetting,
   composeChoices,
   DEFAULT_PROTOCOL,
   findPreset,
   mergeChoices,
-  nearestWord,
   PRESETS,
   protocolJsonSchema,
   protocolSchema,
