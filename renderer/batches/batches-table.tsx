@@ -1,14 +1,8 @@
-import { useMemo } from "react";
-import {
-  createColumnHelper,
-  createSortedRowModel,
-  rowSortingFeature,
-  tableFeatures,
-  useTable,
-} from "@tanstack/react-table";
+import { useCallback, useMemo } from "react";
 import { dayNumber } from "../../app/batch/index.ts";
 import type { ComparedSample, Comparison } from "../../app/protocol/index.ts";
 import { formatNumber } from "../../app/report/index.ts";
+import { SortedTable, sortedColumns } from "../controls/sorted-table.tsx";
 import { useMode } from "../frame/theme.ts";
 import { Symbol } from "../ledger/ledger.tsx";
 import { useController } from "../store/context.ts";
@@ -23,8 +17,7 @@ interface Row {
   readonly i: number;
 }
 
-const features = tableFeatures({ rowSortingFeature, sortedRowModel: createSortedRowModel() });
-const helper = createColumnHelper<typeof features, Row>();
+const helper = sortedColumns<Row>();
 
 interface Props {
   readonly comparison: Comparison;
@@ -45,7 +38,17 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
       comparison.parameters.filter((part) => part.name === name),
     );
     return helper.columns([
-      helper.accessor((row) => row.sample.sample, { id: "sample", header: "Sample" }),
+      helper.accessor((row) => row.sample.sample, {
+        id: "sample",
+        header: "Sample",
+        cell: ({ row: { original } }) => (
+          <SampleName
+            row={original}
+            look={batchLook(batches.indexOf(original.sample.batch), mode)}
+            onOpen={onOpen}
+          />
+        ),
+      }),
       helper.accessor((row) => row.sample.batch, { id: "batch", header: "Batch" }),
       helper.accessor((row) => dayOf(row.sample), {
         id: "date",
@@ -86,122 +89,65 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
           },
         });
       }),
-      helper.accessor((row) => row.sample.doubts.length, { id: "doubts", header: "Doubts" }),
+      helper.accessor((row) => row.sample.doubts.length, {
+        id: "doubts",
+        header: "Doubts",
+        cell: ({ row }) => {
+          const { doubts } = row.original.sample;
+          return doubts.length === 0 ? (
+            "none"
+          ) : (
+            <span className="mark-doubt" title={doubts.join(", ")}>
+              ▲ {doubts.length}
+            </span>
+          );
+        },
+      }),
     ]);
-  }, [comparison]);
-  const table = useTable({ features, columns, data, getRowId: (row) => String(row.i) });
+  }, [comparison, batches, mode, onOpen]);
   return (
     <div className="batches-scroll" tabIndex={0} role="group" aria-label="Samples">
-      <table
-        className="lines-table batches-table"
-        role="grid"
-        tabIndex={0}
-        aria-activedescendant={chosen === null ? undefined : `sample-row-${chosen}`}
-        onKeyDown={(event) => {
-          if (event.target !== event.currentTarget) return;
-          if (event.key === "Enter" && chosen !== null) {
-            event.preventDefault();
-            onOpen(chosen);
-            return;
-          }
-          const order = table.getRowModel().rows.map((row) => row.original.i);
-          const at = chosen === null ? -1 : order.indexOf(chosen);
-          const last = order.length - 1;
-          const next = {
-            ArrowDown: Math.min(last, at + 1),
-            ArrowUp: at < 0 ? last : Math.max(0, at - 1),
-            Home: 0,
-            End: last,
-            Escape: -1,
-          }[event.key];
-          if (next === undefined) return;
-          event.preventDefault();
-          onChoose(order[next] ?? null);
+      <SortedTable
+        className="batches-table"
+        caption="Samples side by side, value(statistical)(systematic part); arrow keys choose one, Enter opens it"
+        columns={columns}
+        data={data}
+        keyOf={(row) => row.i}
+        prefix="sample-row"
+        lit={lit}
+        chosen={chosen}
+        onPoint={onPoint}
+        onChoose={onChoose}
+        onOpen={onOpen}
+        marks={(row) => ({ "data-sample": row.sample.sample })}
+      />
+    </div>
+  );
+}
+
+interface NameProps {
+  readonly row: Row;
+  readonly look: ReturnType<typeof batchLook>;
+  readonly onOpen: (i: number) => void;
+}
+
+function SampleName({ row: { sample, i }, look, onOpen }: NameProps) {
+  return (
+    <span className="line-name">
+      <BatchMarkSign look={look} />
+      <button
+        type="button"
+        className="sample-open"
+        title={`Open ${sample.sample}`}
+        onClick={(event) => {
+          event.stopPropagation();
+          onOpen(i);
         }}
       >
-        <caption className="hidden">
-          Samples side by side, value(statistical)(systematic part); arrow keys choose one, Enter opens it
-        </caption>
-        <thead>
-          {table.getHeaderGroups().map((group) => (
-            <tr key={group.id}>
-              {group.headers.map((header) => {
-                const sorted = header.column.getIsSorted();
-                return (
-                  <th
-                    key={header.id}
-                    scope="col"
-                    aria-sort={sorted === "asc" ? "ascending" : sorted === "desc" ? "descending" : "none"}
-                  >
-                    <button type="button" onClick={header.column.getToggleSortingHandler()}>
-                      <table.FlexRender header={header} />
-                      <span aria-hidden="true" className="sort-mark">
-                        {sorted === "asc" ? "↑" : sorted === "desc" ? "↓" : ""}
-                      </span>
-                    </button>
-                  </th>
-                );
-              })}
-            </tr>
-          ))}
-        </thead>
-        <tbody>
-          {table.getRowModel().rows.map((row) => {
-            const { i, sample } = row.original;
-            return (
-              <tr
-                key={row.id}
-                id={`sample-row-${i}`}
-                data-sample={sample.sample}
-                aria-selected={chosen === i}
-                data-lit={lit === i || undefined}
-                data-chosen={chosen === i || undefined}
-                onPointerEnter={() => onPoint(i)}
-                onPointerLeave={() => onPoint(null)}
-                onClick={() => onChoose(chosen === i ? null : i)}
-                onDoubleClick={() => onOpen(i)}
-              >
-                {row.getAllCells().map((cell) =>
-                  cell.column.id === "sample" ? (
-                    <th key={cell.id} scope="row">
-                      <span className="line-name">
-                        <BatchMarkSign look={batchLook(batches.indexOf(sample.batch), mode)} />
-                        <button
-                          type="button"
-                          className="sample-open"
-                          title={`Open ${sample.sample}`}
-                          onClick={(event) => {
-                            event.stopPropagation();
-                            onOpen(i);
-                          }}
-                        >
-                          {sample.sample}
-                        </button>
-                        {sample.results.length > 1 && (
-                          <span className="small">{sample.results.length} measurements</span>
-                        )}
-                      </span>
-                    </th>
-                  ) : cell.column.id === "doubts" ? (
-                    <td key={cell.id} title={sample.doubts.join(", ")}>
-                      {sample.doubts.length === 0 ? (
-                        "none"
-                      ) : (
-                        <span className="mark-doubt">▲ {sample.doubts.length}</span>
-                      )}
-                    </td>
-                  ) : (
-                    <td key={cell.id}>
-                      <table.FlexRender cell={cell} />
-                    </td>
-                  ),
-                )}
-              </tr>
-            );
-          })}
-        </tbody>
-      </table>
-    </div>
+        {sample.sample}
+      </button>
+      {sample.results.length > 1 && <span className="small">{sample.results.length} measurements</span>}
+    </span>
   );
 }
 
@@ -212,8 +158,11 @@ function dayOf({ date }: ComparedSample): number | undefined {
 /** Open the first measurement of a sample. */
 export function useOpenSample(comparison: Comparison | null): (i: number) => void {
   const controller = useController();
-  return (i) => {
-    const found = comparison?.samples[i]?.results[0];
-    if (found !== undefined) controller.openMeasured(found.file, found.sha256);
-  };
+  return useCallback(
+    (i) => {
+      const found = comparison?.samples[i]?.results[0];
+      if (found !== undefined) controller.openMeasured(found.file, found.sha256);
+    },
+    [controller, comparison],
+  );
 }

@@ -1,21 +1,14 @@
 import { useMemo } from "react";
-import {
-  createColumnHelper,
-  createSortedRowModel,
-  rowSortingFeature,
-  tableFeatures,
-  useTable,
-} from "@tanstack/react-table";
 import type { Quantity } from "../../app/base/index.ts";
 import type { LineResult, RunglineResult } from "../../app/protocol/index.ts";
+import { SortedTable, sortedColumns } from "../controls/sorted-table.tsx";
 import { valueText } from "../ledger/value-text.ts";
 import { notesOfLine } from "../rungs/rung-layout.ts";
 import { colourOfN } from "../plot/colours.ts";
 import { useMode } from "../frame/theme.ts";
 import { useController, useWindow } from "../store/context.ts";
 
-const features = tableFeatures({ rowSortingFeature, sortedRowModel: createSortedRowModel() });
-const helper = createColumnHelper<typeof features, LineResult>();
+const helper = sortedColumns<LineResult>();
 
 /** eV, or eV/cm: above it areas are printed in milli-units. */
 const LARGE_AREA = 0.02;
@@ -34,7 +27,35 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
   const columns = useMemo(
     () =>
       helper.columns([
-        helper.accessor("n", { id: "n", header: "n", cell: (cell) => cell.getValue() }),
+        helper.accessor("n", {
+          id: "n",
+          header: "n",
+          cell: ({ row }) => {
+            const { n, significance } = row.original;
+            const doubtful =
+              significance < 5 ||
+              notesOfLine(result.notes, row.index, n).some((note) => note.level === "doubt");
+            return (
+              <span className="line-name">
+                <svg width="10" height="10" aria-hidden="true">
+                  <rect
+                    x="1"
+                    y="1"
+                    width="8"
+                    height="8"
+                    rx="1"
+                    fill={doubtful ? "none" : colourOfN(n, mode)}
+                    stroke={colourOfN(n, mode)}
+                    strokeWidth="1.4"
+                  />
+                </svg>
+                <span className="hidden">n = </span>
+                {n}
+                {doubtful && <span className="hidden">, in doubt</span>}
+              </span>
+            );
+          },
+        }),
         helper.accessor((line) => line.energy_eV.value ?? undefined, {
           id: "energy",
           header: "E / eV",
@@ -56,103 +77,20 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
           cell: (cell) => cell.getValue().toFixed(0),
         }),
       ]),
-    [perCm, large],
+    [perCm, large, mode, result.notes],
   );
-  const table = useTable({ features, columns, data: result.lines, getRowId: (line) => String(line.n) });
   return (
-    <table
-      className="lines-table"
-      role="grid"
-      tabIndex={0}
-      aria-activedescendant={selected === null ? undefined : `line-row-${selected}`}
-      onKeyDown={(event) => {
-        if (event.target !== event.currentTarget) return;
-        const numbers = table.getRowModel().rows.map((row) => row.original.n);
-        const at = selected === null ? -1 : numbers.indexOf(selected);
-        const last = numbers.length - 1;
-        const next = {
-          ArrowDown: Math.min(last, at + 1),
-          ArrowUp: at < 0 ? last : Math.max(0, at - 1),
-          Home: 0,
-          End: last,
-          Escape: -1,
-        }[event.key];
-        if (next === undefined) return;
-        event.preventDefault();
-        controller.select(numbers[next] ?? null);
-      }}
-    >
-      <caption className="hidden">Fitted lines; arrow keys choose one</caption>
-      <thead>
-        {table.getHeaderGroups().map((group) => (
-          <tr key={group.id}>
-            {group.headers.map((header) => {
-              const sorted = header.column.getIsSorted();
-              return (
-                <th
-                  key={header.id}
-                  scope="col"
-                  aria-sort={sorted === "asc" ? "ascending" : sorted === "desc" ? "descending" : "none"}
-                >
-                  <button type="button" onClick={header.column.getToggleSortingHandler()}>
-                    <table.FlexRender header={header} />
-                    <span aria-hidden="true" className="sort-mark">
-                      {sorted === "asc" ? "↑" : sorted === "desc" ? "↓" : ""}
-                    </span>
-                  </button>
-                </th>
-              );
-            })}
-          </tr>
-        ))}
-      </thead>
-      <tbody>
-        {table.getRowModel().rows.map((row) => {
-          const { n, significance } = row.original;
-          const doubtful =
-            significance < 5 ||
-            notesOfLine(result.notes, row.index, n).some((note) => note.level === "doubt");
-          return (
-            <tr
-              key={row.id}
-              id={`line-row-${n}`}
-              aria-selected={selected === n}
-              data-n={n}
-              data-lit={pointed === n || undefined}
-              data-chosen={selected === n || undefined}
-              onPointerEnter={() => controller.point(n)}
-              onPointerLeave={() => controller.point(null)}
-              onClick={() => controller.select(selected === n ? null : n)}
-            >
-              {row.getAllCells().map((cell) =>
-                cell.column.id === "n" ? (
-                  <th key={cell.id} scope="row" aria-label={`n = ${n}${doubtful ? ", in doubt" : ""}`}>
-                    <span className="line-name">
-                      <svg width="10" height="10" aria-hidden="true">
-                        <rect
-                          x="1"
-                          y="1"
-                          width="8"
-                          height="8"
-                          rx="1"
-                          fill={doubtful ? "none" : colourOfN(n, mode)}
-                          stroke={colourOfN(n, mode)}
-                          strokeWidth="1.4"
-                        />
-                      </svg>
-                      {n}
-                    </span>
-                  </th>
-                ) : (
-                  <td key={cell.id}>
-                    <table.FlexRender cell={cell} />
-                  </td>
-                ),
-              )}
-            </tr>
-          );
-        })}
-      </tbody>
-    </table>
+    <SortedTable
+      caption="Fitted lines; arrow keys choose one"
+      columns={columns}
+      data={result.lines}
+      keyOf={(line) => line.n}
+      prefix="line-row"
+      lit={pointed}
+      chosen={selected}
+      onPoint={(n) => controller.point(n)}
+      onChoose={(n) => controller.select(n)}
+      marks={(line) => ({ "data-n": line.n })}
+    />
   );
 }

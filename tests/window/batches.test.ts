@@ -69,6 +69,7 @@ describe("the stage Batches", () => {
     ] as const) {
       await page.setViewportSize({ width, height });
       await page.emulateMedia({ colorScheme });
+      await page.waitForSelector(`html[data-theme="${colorScheme}"]`);
       await page.waitForSelector('.figure[data-state="drawn"]');
       expect(await faults()).toEqual([]);
       const path = join(opened.folder, `batches-${width}.png`);
@@ -99,6 +100,7 @@ describe("the stage Record", () => {
     await page.getByRole("link", { name: "TH-B1" }).first().click();
     for (const colorScheme of ["dark", "light"] as const) {
       await page.emulateMedia({ colorScheme });
+      await page.waitForSelector(`html[data-theme="${colorScheme}"]`);
       expect(await faults()).toEqual([]);
     }
     expect(watched.troubles).toEqual([]);
