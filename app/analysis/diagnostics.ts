@@ -1,6 +1,12 @@
 import type { SpectrumFit } from "../fit/index.ts";
 import type { Diagnostics, Protocol } from "../protocol/index.ts";
-import { jointRegion, levelInfluence } from "../series/index.ts";
+import {
+  jointRegion,
+  levelInfluence,
+  levelProfileCurves,
+  type LevelFit,
+  type LevelInput,
+} from "../series/index.ts";
 import { autocorrelation, correlationTime, normalQuantile } from "../solve/index.ts";
 import type { FullFit } from "./fit-full.ts";
 import { levelInput } from "./level-range.ts";
@@ -42,7 +48,8 @@ export function describeDiagnostics(full: FullFit, protocol: Protocol): Diagnost
       : [],
     condition: finite(condition),
     bounds: nearBounds(fit),
-    regions: free && protocol.uncertainty.profile ? regions(full, protocol) : [],
+    regions: free && protocol.uncertainty.profile ? regions(input, range.fit) : [],
+    profiles: free && protocol.uncertainty.profile ? profiles(input, range.fit) : [],
   };
 }
 
@@ -150,19 +157,28 @@ function nearBounds(fit: SpectrumFit): Diagnostics["bounds"] {
 
 const FACTOR_TOP = 1.2;
 
-function regions(full: FullFit, protocol: Protocol): Diagnostics["regions"] {
-  const input = levelInput(full.fit, protocol);
-  if (input === null || full.range === null) return [];
-  const { level } = protocol.uncertainty;
-  const { fit } = full.range;
+/** What a plot of two parameters shows: levels of one and two standard deviations, for the two together. */
+const REGION_LEVELS = [0.6827, 0.9545];
+const REGION_PAIRS = [
+  ["gap_eV", "rydberg_eV"],
+  ["gap_eV", "defect0"],
+  ["rydberg_eV", "defect0"],
+] as const;
+
+function regions(input: LevelInput, fit: LevelFit): Diagnostics["regions"] {
   const out: Diagnostics["regions"] = [];
-  for (const [x, y] of [
-    ["gap_eV", "rydberg_eV"],
-    ["rydberg_eV", "defect0"],
-  ] as const) {
-    const region = jointRegion(input, fit, x, y, level);
-    if (region !== null && region.points.every((point) => point.every(Number.isFinite)))
-      out.push({ x, y, level, points: region.points.map(([a, b]): [number, number] => [a, b]) });
-  }
+  for (const [x, y] of REGION_PAIRS)
+    for (const level of REGION_LEVELS) {
+      const region = jointRegion(input, fit, x, y, level);
+      if (region !== null && region.points.every((point) => point.every(Number.isFinite)))
+        out.push({ x, y, level, points: region.points.map(([a, b]): [number, number] => [a, b]) });
+    }
   return out;
+}
+
+function profiles(input: LevelInput, fit: LevelFit): NonNullable<Diagnostics["profiles"]> {
+  return levelProfileCurves(input, fit).map(({ name, points }) => ({
+    name,
+    points: points.map(([value, rise]): [number, number] => [value, rise]),
+  }));
 }

@@ -92,7 +92,7 @@ export const diagnosticsSchema = z.strictObject({
   bounds: z.array(
     z.strictObject({ name: z.string(), value: z.number(), bound: z.number(), distance_sigma: number }),
   ),
-  /** Curves of equal likelihood in two series parameters. */
+  /** Curves of equal likelihood in two series parameters; the level is of the two together. */
   regions: z.array(
     z.strictObject({
       x: z.string(),
@@ -101,6 +101,10 @@ export const diagnosticsSchema = z.strictObject({
       points: z.array(z.tuple([z.number(), z.number()])),
     }),
   ),
+  /** Rise of chi square (value, rise) along one series parameter, the others fitted again. */
+  profiles: z
+    .array(z.strictObject({ name: z.string(), points: z.array(z.tuple([z.number(), z.number()])) }))
+    .optional(),
 });
 
 export const resamplingSchema = z.strictObject({
@@ -110,10 +114,21 @@ export const resamplingSchema = z.strictObject({
   seed: z.int(),
   /** Residuals are drawn in blocks of this many neighbours. */
   block_points: z.int(),
+  /** Coefficients of the autoregression that the noise was drawn with, lag 1 first; absent for white noise. */
+  autoregression: z.array(z.number()).optional(),
   gap_eV: resampledSchema,
   rydberg_eV: resampledSchema,
   defect0: resampledSchema,
   width_exponent: resampledSchema,
+  /** The draws that did not fail, in their order, the first 2,000 of them; parameters that were held are left out. */
+  draws: z
+    .strictObject({
+      gap_eV: z.array(z.number()),
+      rydberg_eV: z.array(z.number()),
+      defect0: z.array(z.number()).optional(),
+      width_exponent: z.array(z.number()).optional(),
+    })
+    .optional(),
   lines: z.array(
     z.strictObject({
       n: z.int(),

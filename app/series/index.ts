@@ -27,5 +27,5 @@ export {
 export { wordSeriesIssue, type SeriesIssue } from "./wording.ts";
 export { jointRegion, type JointRegion, type LevelName } from "./joint-region.ts";
 export { levelInfluence, type LineInfluence } from "./influence.ts";
-export { profileLevels, type LevelProfile } from "./level-profile.ts";
+export { levelProfileCurves, profileLevels, type LevelProfile, type ProfileCurve } from "./level-profile.ts";
 export { seriesToResult, strengthsToResult, widthsToResult } from "./to-result.ts";

@@ -4,6 +4,8 @@ import {
   fitLevels,
   jointRegion,
   levelInfluence,
+  levelProfileCurves,
+  profileLevels,
   type LevelFit,
   type LevelInput,
 } from "../../../app/series/index.ts";
@@ -94,5 +96,35 @@ describe("influence of single lines", () => {
       (without.estimates.values[0]! - fit.estimates.values[0]!) / Math.sqrt(fit.estimates.covariance[0]!);
     // Derived: the definition, by another call
     expect(worst.gap_eV!).toBeCloseTo(change, 4);
+  });
+});
+
+describe("profile curves of the series parameters", () => {
+  it("are the parabola of the covariance where the law is linear, and leave out what is held", () => {
+    const input = ladder(1e-5, 1, "none");
+    const fit = fitted(input);
+    const curves = levelProfileCurves(input, fit);
+    expect(curves.map(({ name }) => name)).toEqual(["gap_eV", "rydberg_eV"]);
+    curves.forEach(({ points }, i) => {
+      const sigma = Math.sqrt(fit.estimates.covariance[i * 6]!);
+      for (const [value, rise] of points)
+        // Derived: chi square of a linear law rises as the square of the distance in standard errors
+        expect(Math.abs(rise - ((value - fit.estimates.values[i]!) / sigma) ** 2)).toBeLessThan(1e-3);
+    });
+  });
+
+  it("rise to one at the ends of the profile intervals where the law bends", () => {
+    const input = ladder(3e-4, 2, "constant");
+    const fit = fitted(input);
+    const { rydberg_eV: ends } = profileLevels(input, fit);
+    const { points } = levelProfileCurves(input, fit).find(({ name }) => name === "rydberg_eV")!;
+    for (const end of [ends.low!, ends.high!]) {
+      const above = points.findIndex(([value]) => value > end);
+      const [[a, low], [b, high]] = [points[above - 1]!, points[above]!];
+      // Derived: a curve through rise 1 lies on both sides of it beside that place
+      expect((low - 1) * (high - 1)).toBeLessThanOrEqual(0);
+      expect(a).toBeLessThan(end);
+      expect(b).toBeGreaterThan(end);
+    }
   });
 });
