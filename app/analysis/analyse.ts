@@ -14,6 +14,13 @@ import { buildModel, type LadderState, type ModelChoices } from "./ladder-model.
 import { judgeLevels } from "./level-range.ts";
 import { asksForFringes, findFringes, givenPeriod, startWave, withoutWave } from "./fringes.ts";
 import { fitInDomain } from "./measured-domain.ts";
+import {
+  drawSpectra,
+  planResampling,
+  summariseDraws,
+  type ResampledDraw,
+  type ResamplingPlan,
+} from "./resample.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 import {
@@ -33,6 +40,16 @@ export type AnalysisResult = Omit<RunglineResult, "run"> & {
 export interface Analysis {
   readonly result: AnalysisResult;
   readonly curves: Curves;
+  /** What is still to be drawn, where the caller wanted to do it: see `withResampling`. Null: nothing is left. */
+  readonly resampling: ResamplingPlan | null;
+}
+
+export interface AnalyseOptions {
+  /**
+   * `now`: resampled spectra (`uncertainty.resample`) are drawn before the result is given. `later`: the caller draws them, in
+   * any slices and on any thread (`drawSpectra`), and joins them with `withResampling`; the result is the same to the bit.
+   */
+  readonly resampling?: "now" | "later";
 }
 
 /**
@@ -40,7 +57,12 @@ export interface Analysis {
  * fit the laws, derive, and say every doubt. Pure: the same spectrum and protocol give the same bits.
  * Throws `Cancelled` when the watch says so.
  */
-export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): Analysis {
+export function analyse(
+  spectrum: Spectrum,
+  protocol: Protocol,
+  watch: Watch,
+  options: AnalyseOptions = {},
+): Analysis {
   const began = watch.seconds();
   watch.report(0.05, "looking for lines");
   const everything = selectPoints(
@@ -96,28 +118,44 @@ export function analyse(spectrum: Spectrum, protocol: Protocol, watch: Watch): A
   );
   watch.report(0.8, "uncertainties");
   const uncertaintyBegan = watch.seconds();
-  const described = describeResult(
-    spectrum,
-    protocol,
-    fitted,
-    peaks,
-    assignment,
-    full,
-    chosen.choices,
-    watch,
+  const described = describeResult(spectrum, protocol, fitted, peaks, assignment, full, watch);
+  const plan = planResampling(fitted, full, protocol, spectrum.unit, watch);
+  const result: AnalysisResult = {
+    ...described,
+    notes: sortNotes([...described.notes, ...judged.notes]),
+    seconds: {
+      guess: guessSeconds,
+      solve: full.solveSeconds,
+      uncertainty: watch.seconds() - uncertaintyBegan,
+    },
+  };
+  const curves = drawCurves(spectrum, fitted, full);
+  if (plan === null || options.resampling === "later") return { result, curves, resampling: plan };
+  const { resamples } = protocol.uncertainty;
+  const draws = drawSpectra(plan, 0, resamples, watch, (done) =>
+    watch.report(0.85 + (0.14 * done) / resamples, `drawing spectra anew, ${done} of ${resamples}`),
   );
-  const parts = { ...described, notes: sortNotes([...described.notes, ...judged.notes]) };
   watch.report(1, "done");
   return {
-    result: {
-      ...parts,
-      seconds: {
-        guess: guessSeconds,
-        solve: full.solveSeconds,
-        uncertainty: watch.seconds() - uncertaintyBegan,
-      },
-    },
-    curves: drawCurves(spectrum, fitted, full),
+    result: withResampling(result, plan, draws, watch.seconds() - uncertaintyBegan),
+    curves,
+    resampling: null,
+  };
+}
+
+/** The result with its resampled intervals, from all draws of its plan in their order. */
+export function withResampling(
+  result: AnalysisResult,
+  plan: ResamplingPlan,
+  draws: readonly (ResampledDraw | null)[],
+  uncertaintySeconds = result.seconds.uncertainty,
+): AnalysisResult {
+  const { resampled, notes } = summariseDraws(plan, draws);
+  return {
+    ...result,
+    notes: sortNotes([...result.notes, ...notes]),
+    resampled,
+    seconds: { ...result.seconds, uncertainty: uncertaintySeconds },
   };
 }
 
@@ -395,5 +433,6 @@ function noSeries(
       seconds: { guess: seconds, solve: 0, uncertainty: 0 },
     },
     curves: emptyCurves(spectrum),
+    resampling: null,
   };
 }

@@ -39,11 +39,9 @@ import type { Peak } from "./find-peaks.ts";
 import { FRINGE_PERIOD } from "./fringes.ts";
 import type { FullFit } from "./fit-full.ts";
 import { intervalFactor } from "./interval.ts";
-import type { ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces, levelInput } from "./level-range.ts";
 import type { SelectedPoints } from "./select-points.ts";
 import { judgeSystematics, systematicNotes } from "./systematics.ts";
-import { resampleSpectrum } from "./resample.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 
 export type Described = Omit<AnalysisResult, "seconds">;
@@ -56,7 +54,6 @@ export function describeResult(
   peaks: readonly Peak[],
   assignment: Assignment,
   full: FullFit,
-  choices: ModelChoices,
   watch: Watch,
 ): Described {
   const { fit, state, range } = full;
@@ -140,13 +137,10 @@ export function describeResult(
           state,
           range.fit,
           protocol,
-          choices,
+          full.choices,
           watch,
         )
       : null;
-  const drawn = resampleSpectrum(points, full, protocol, spectrum.unit, choices, watch, (done, of) =>
-    watch.report(0.85 + (0.14 * done) / of, `drawing spectra anew, ${done} of ${of}`),
-  );
   const parameters = parameterCount(fit);
   const criteria = informationCriteria(solution.chi2, m, parameters + (full.domain.parts?.length ?? 0));
   const lag1 = neighbourCorrelation(solution.residuals);
@@ -191,7 +185,6 @@ export function describeResult(
     ...constraintNotes(full, protocol),
     ...derivedParts.notes,
     ...systematicNotes(systematic),
-    ...(drawn?.notes ?? []),
   ]);
   return {
     schema: RESULT_SCHEMA,
@@ -233,7 +226,6 @@ export function describeResult(
       })),
     ],
     diagnostics: describeDiagnostics(full, protocol),
-    ...(drawn === null ? {} : { resampled: drawn.resampled }),
   };
 }
 

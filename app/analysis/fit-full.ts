@@ -30,14 +30,17 @@ export interface FitDomain {
     readonly value: number;
     readonly sigma: number;
   }[];
-  /** Period of fringes that were fitted to the light. */
+  /** Period of fringes that were fitted to the light, and whether the lines turn their phase. */
   readonly fringes?: number;
+  readonly dispersion?: boolean;
 }
 
 const ABSORPTION: FitDomain = { name: "alpha", notes: [], answered: [] };
 
 export interface FullFit extends Climbed {
   readonly domain: FitDomain;
+  /** What the last fit was made with, ties to the laws among it. */
+  readonly choices: ModelChoices;
   readonly range: RangeChoice | null;
   /** Seconds of the last fit, from its start values through its covariance. */
   readonly solveSeconds: number;
@@ -185,6 +188,7 @@ function fitFreeLevels(
       solveSeconds,
       selfConsistent: settled,
       domain: ABSORPTION,
+      choices,
       ...(model.state.fringes === undefined ? {} : { fringesAt: model.state.fringes.period }),
     };
     state = dropped ? withLines(next, state.ns.slice(0, keep)) : next;

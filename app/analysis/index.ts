@@ -1,4 +1,10 @@
-export { analyse, type Analysis, type AnalysisResult } from "./analyse.ts";
+export {
+  analyse,
+  withResampling,
+  type Analysis,
+  type AnalyseOptions,
+  type AnalysisResult,
+} from "./analyse.ts";
 export { drawCurves, type Curves } from "./curves.ts";
 export { lineCurve } from "./line-curves.ts";
 export { intervalFactor } from "./interval.ts";
@@ -7,3 +13,4 @@ export type { LadderState, ModelChoices } from "./ladder-model.ts";
 export { selectPoints, type SelectedPoints } from "./select-points.ts";
 export { linesForThinning, thinPoints } from "./thin-points.ts";
 export { sortNotes } from "./describe-result.ts";
+export { drawSpectra, type ResampledDraw, type ResamplingPlan } from "./resample.ts";

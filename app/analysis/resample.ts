@@ -2,18 +2,43 @@ import { doubt, makeRandom, stopIfCancelled, type Note, type Random, type Watch 
 import { fitSpectrum, type FitPoints, type SpectrumFit } from "../fit/index.ts";
 import type { Protocol, Resampling } from "../protocol/index.ts";
 import { fitLevels, fitWidths, type LevelFit } from "../series/index.ts";
-import { correlationTime } from "../solve/index.ts";
+import { autoregression, correlationTime } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
+import { drawNoise, type NoiseSource } from "./drawn-noise.ts";
 import type { FullFit } from "./fit-full.ts";
-import { buildModel, type ModelChoices } from "./ladder-model.ts";
+import { buildModel, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces } from "./level-range.ts";
 
-/** A line whose energy leaves its place by more than this part of its width and its errors is another line. */
 const FIT = { maxIterations: 40, gradientTolerance: 1e-5, costTolerance: 1e-8 };
 /** Intervals that differ by more than this part ask for a note. */
 const DIFFERS = 0.25;
 
-interface Draw {
+/** Everything that draws need: plain data, the same for all of them, to be handed to a thread. */
+export interface ResamplingPlan {
+  readonly points: FitPoints;
+  readonly state: LadderState;
+  readonly protocol: Protocol;
+  readonly unit: Spectrum["unit"];
+  readonly choices: ModelChoices;
+  /** The curve (m) that noise is added to. */
+  readonly fitted: Float64Array;
+  readonly noise: NoiseSource;
+  readonly ns: readonly number[];
+  readonly law: {
+    readonly n: readonly number[];
+    readonly defect: LevelFit["defect"];
+    readonly held: number;
+    /** d parameters/d energies (5 x lines). */
+    readonly gain: Float64Array;
+    /** Standard errors of gap, Rydberg energy and defect that the intervals are compared with. */
+    readonly sigma: readonly number[];
+  };
+  /** Covariances of the energies and widths of `law.n` where they allow for correlated noise; null: those of each draw. */
+  readonly weights: { readonly energy: Float64Array; readonly width: Float64Array } | null;
+}
+
+/** What one drawn spectrum gave; lines run with `ns` of the plan. */
+export interface ResampledDraw {
   readonly gap: number;
   readonly rydberg: number;
   readonly defect0: number;
@@ -24,54 +49,108 @@ interface Draw {
 }
 
 /**
- * What      The spectrum drawn anew and fitted again, lines, laws and all, from the fit as its start: fitted curve plus noise
- *           of the given sigma (`parametric`), or plus the fit's own residuals drawn with replacement (`residual`), enlarged by
- *           sqrt(m/(m - p)) and, where neighbours correlate, in blocks of neighbours three correlation times long.
+ * What      What `uncertainty.resample` asks for: fitted curve plus noise, drawn anew and fitted again, lines, laws and all, from
+ *           the fit as its start and with its ties and constraints. `parametric`: normal noise of the given sigma; where the
+ *           protocol allows for correlated noise, of the residuals' size and with their autocorrelation. `residual`: the fit's
+ *           own residuals drawn with replacement, enlarged by sqrt(m/(m - p)) and, where neighbours correlate, in blocks of
+ *           neighbours three correlation times long. Null where nothing is asked for, or there is no level law.
  * Units     as in the result.
- * Domain    n and the range of the level law stay those of the fit. A draw whose fit does not converge, or whose law cannot be
- *           fitted, is counted as failed and left out.
+ * Domain    n and the range of the level law stay those of the fit. Where the light was fitted, the draws are of the light
+ *           linearised about its fit.
  * Accuracy  the 68 % interval of N draws has a relative error of about 1.2/sqrt(N); tests/app/analysis/resample.test.ts.
  * Source    Efron and Tibshirani, An Introduction to the Bootstrap (1993), 9.4 and 13.3; blocks: Kunsch, Ann. Stat. 17, 1217
- *           (1989).
+ *           (1989); autoregression: Buhlmann, Bernoulli 3, 123 (1997).
  */
-export function resampleSpectrum(
+export function planResampling(
   points: FitPoints,
   full: FullFit,
   protocol: Protocol,
   unit: Spectrum["unit"],
-  choices: ModelChoices,
   watch: Watch,
-  report: (done: number, of: number) => void,
-): { readonly resampled: Resampling; readonly notes: readonly Note[] } | null {
-  const { resample: kind, resamples: count, seed } = protocol.uncertainty;
+): ResamplingPlan | null {
+  const { resample: kind, correlated } = protocol.uncertainty;
   const law = full.range?.fit ?? null;
   if (kind === "none" || law === null) return null;
-  const plain: Protocol = {
-    ...protocol,
-    uncertainty: { ...protocol.uncertainty, correlated: "note", scale_by_residuals: false },
+  const { energy, signal, sigma } = points;
+  const allowed = correlated === "allow";
+  const common = {
+    points: { energy, signal, sigma },
+    state: full.state,
+    protocol: {
+      ...protocol,
+      uncertainty: { ...protocol.uncertainty, correlated: "note", scale_by_residuals: false } as const,
+    },
+    unit,
+    choices: full.choices,
   };
-  const base = fitOnce(points, full, plain, unit, choices, watch);
-  const { fitted, residuals } = base.solution;
-  const m = points.energy.length;
-  const { time } = correlationTime(residuals);
-  const block = kind === "residual" && time > NEARLY_WHITE ? Math.min(Math.ceil(3 * time), m >> 3) : 1;
-  const random = makeRandom(seed);
-  const noise = kind === "parametric" ? normalNoise(random, m) : ownNoise(random, base, block);
-  const draws: Draw[] = [];
-  let failed = 0;
-  for (let i = 0; i < count; i++) {
+  const base = fitOnce(common, signal, watch);
+  const { fitted, residuals, chi2, degreesOfFreedom } = base.solution;
+  const size = law.estimates.values.length;
+  const widthPlaces = determinedPlaces(full.fit, 1);
+  return {
+    ...common,
+    fitted,
+    noise:
+      kind === "residual"
+        ? ownNoise(residuals, degreesOfFreedom)
+        : allowed
+          ? {
+              kind: "gaussian",
+              scale: Math.sqrt(chi2 / Math.max(1, degreesOfFreedom)),
+              process: autoregression(residuals),
+            }
+          : { kind: "gaussian", scale: 1, process: null },
+    ns: base.lines.ns,
+    law: {
+      n: law.n,
+      defect: law.defect,
+      held: law.estimates.values[2]!,
+      gain: law.gain,
+      sigma: [0, 1, 2].map((i) => Math.sqrt(law.estimates.covariance[i * (size + 1)]!)),
+    },
+    weights: allowed
+      ? {
+          energy: covarianceBlock(full.fit, 0, determinedLawPlaces(full.fit, law.n)),
+          width: covarianceBlock(full.fit, 1, widthPlaces),
+        }
+      : null,
+  };
+}
+
+/** Draws `from` to `to - 1` of a plan; null for one whose fit does not converge, or whose law cannot be fitted. */
+export function drawSpectra(
+  plan: ResamplingPlan,
+  from: number,
+  to: number,
+  watch: Watch,
+  report: (index: number) => void = () => undefined,
+): (ResampledDraw | null)[] {
+  const { points, fitted, noise, protocol } = plan;
+  const { seed } = protocol.uncertainty;
+  const out: (ResampledDraw | null)[] = [];
+  for (let index = from; index < to; index++) {
     stopIfCancelled(watch);
-    report(i, count);
-    const drawn = noise();
+    report(index);
+    // A stream of random numbers of its own: draws may be made in any order and on any thread.
+    const random = makeRandom(seed, index + 1);
+    const drawn = drawNoise(noise, random, fitted.length);
     const signal = Float64Array.from(fitted, (value, j) => value + points.sigma[j]! * drawn[j]!);
-    const fit = fitOnce({ ...points, signal }, full, plain, unit, choices, watch);
+    const fit = fitOnce(plan, signal, watch);
     stopIfCancelled(watch);
-    const draw = fit.solution.converged && fit.atBound.length === 0 ? lawsOf(fit, law, protocol) : null;
-    if (draw === null) failed++;
-    else draws.push(draw);
+    out.push(fit.solution.converged && fit.atBound.length === 0 ? lawsOf(fit, plan, random) : null);
   }
-  const level = protocol.uncertainty.level;
-  const over = (pick: (draw: Draw) => number | null): Resampling["gap_eV"] =>
+  return out;
+}
+
+/** Medians and intervals of all draws of a plan, whoever made them; what to say about them. */
+export function summariseDraws(
+  plan: ResamplingPlan,
+  all: readonly (ResampledDraw | null)[],
+): { readonly resampled: Resampling; readonly notes: readonly Note[] } {
+  const { protocol, law, noise } = plan;
+  const { level, seed, resample } = protocol.uncertainty;
+  const draws = all.filter((draw) => draw !== null);
+  const over = (pick: (draw: ResampledDraw) => number | null): Resampling["gap_eV"] =>
     summary(
       draws.map(pick).filter((value): value is number => value !== null && Number.isFinite(value)),
       level,
@@ -80,111 +159,123 @@ export function resampleSpectrum(
   const exponentFree = protocol.width.exponent === "free";
   const nothing = { median: null, low: null, high: null };
   const resampled: Resampling = {
-    kind,
-    count,
-    failed,
+    kind: resample === "residual" ? "residual" : "parametric",
+    count: all.length,
+    failed: all.length - draws.length,
     seed,
-    block_points: block,
+    block_points: noise.kind === "own" ? noise.block : 1,
+    ...(noise.kind === "gaussian" && noise.process !== null
+      ? { autoregression: [...noise.process.stages[noise.process.stages.length - 1]!.coefficients] }
+      : {}),
     gap_eV: over((draw) => draw.gap),
     rydberg_eV: over((draw) => draw.rydberg),
     defect0: defectFree ? over((draw) => draw.defect0) : nothing,
     width_exponent: exponentFree ? over((draw) => draw.exponent) : nothing,
-    lines: base.lines.ns.map((n, j) => ({
+    lines: plan.ns.map((n, j) => ({
       n,
       energy_eV: over((draw) => draw.energy[j]!),
       width_eV: over((draw) => draw.width[j]!),
       area: over((draw) => draw.area[j]!),
     })),
   };
-  return { resampled, notes: resamplingNotes(resampled, law, level) };
+  return { resampled, notes: resamplingNotes(resampled, law.sigma, level) };
 }
 
 /** Correlation times up to this are what white noise shows by chance and the fit's own parameters make. */
 const NEARLY_WHITE = 1.3;
 
 function fitOnce(
-  points: FitPoints,
-  full: FullFit,
-  protocol: Protocol,
-  unit: Spectrum["unit"],
-  choices: ModelChoices,
+  {
+    points,
+    state,
+    protocol,
+    unit,
+    choices,
+  }: Omit<ResamplingPlan, "fitted" | "noise" | "ns" | "law" | "weights">,
+  signal: Float64Array,
   watch: Watch,
 ): SpectrumFit {
-  const model = buildModel(points, full.state, protocol, unit, choices);
-  return fitSpectrum(points, model.spec, model.start, { ...FIT, watch });
-}
-
-function normalNoise(random: Random, m: number): () => Float64Array {
-  const out = new Float64Array(m);
-  return () => {
-    for (let i = 0; i < m; i++) out[i] = random.normal();
-    return out;
-  };
+  const drawn = { ...points, signal };
+  const model = buildModel(drawn, state, protocol, unit, choices);
+  return fitSpectrum(drawn, model.spec, model.start, { ...FIT, watch });
 }
 
 /** Standardised residuals about their mean, enlarged for the parameters that were fitted to them. */
-function ownNoise(random: Random, base: SpectrumFit, block: number): () => Float64Array {
-  const { residuals, degreesOfFreedom } = base.solution;
+function ownNoise(residuals: Float64Array, degreesOfFreedom: number): NoiseSource {
   const m = residuals.length;
+  const { time } = correlationTime(residuals);
   const mean = residuals.reduce((sum, value) => sum + value, 0) / m;
   const scale = Math.sqrt(m / Math.max(1, degreesOfFreedom));
-  const pool = residuals.map((value) => scale * (value - mean));
-  const out = new Float64Array(m);
-  return () => {
-    for (let i = 0; i < m; i += block) {
-      const from = Math.floor(random.uniform() * (m - block + 1));
-      for (let j = 0; j < block && i + j < m; j++) out[i + j] = pool[from + j]!;
-    }
-    return out;
+  return {
+    kind: "own",
+    pool: residuals.map((value) => scale * (value - mean)),
+    block: time > NEARLY_WHITE ? Math.max(1, Math.min(Math.ceil(3 * time), m >> 3)) : 1,
   };
 }
 
-function lawsOf(fit: SpectrumFit, law: LevelFit, protocol: Protocol): Draw | null {
-  const places = determinedPlaces(fit, 0).filter((j) => law.n.includes(fit.lines.ns[j]!));
-  if (places.length !== law.n.length) return null;
-  const tied = protocol.series.mode === "tied";
+/** Lines of the law whose energies were free and determined. */
+function determinedLawPlaces(fit: SpectrumFit, ns: readonly number[]): number[] {
+  return determinedPlaces(fit, 0).filter((j) => ns.includes(fit.lines.ns[j]!));
+}
+
+function lawsOf(fit: SpectrumFit, plan: ResamplingPlan, random: Random): ResampledDraw | null {
+  const { law, protocol, weights } = plan;
   const { lines } = fit;
+  const jitter = protocol.axis.jitter_eV;
+  const shifts = Float64Array.from(law.n, () => (jitter > 0 ? jitter * random.normal() : 0));
   let values: Float64Array;
-  if (tied) {
+  const energy = lines.energy.slice();
+  if (protocol.series.mode === "tied") {
     const levels = fit.laws?.levels;
     if (levels === undefined) return null;
     values = Float64Array.of(levels.gap, levels.rydberg, levels.defect0);
+    for (let i = 0; i < values.length; i++)
+      for (let l = 0; l < shifts.length; l++) values[i]! += law.gain[i * shifts.length + l]! * shifts[l]!;
   } else {
-    const covariance = covarianceBlock(fit, 0, places);
-    const jitter = protocol.axis.jitter_eV ** 2;
-    for (let j = 0; j < places.length; j++) covariance[j * (places.length + 1)]! += jitter;
+    const places = determinedLawPlaces(fit, law.n);
+    if (places.length !== law.n.length) return null;
+    places.forEach((j, l) => (energy[j]! += shifts[l]!));
+    const covariance = weights?.energy ?? covarianceBlock(fit, 0, places);
+    if (weights === null)
+      for (let j = 0; j < places.length; j++) covariance[j * (places.length + 1)]! += jitter * jitter;
     const levels = fitLevels({
       n: law.n,
-      energy_eV: Float64Array.from(places, (j) => lines.energy[j]!),
+      energy_eV: Float64Array.from(places, (j) => energy[j]!),
       covariance,
       defect: law.defect,
-      heldDefect: law.estimates.values[2],
+      heldDefect: law.held,
       how: "newton",
     });
     if (!levels.ok || !levels.value.converged) return null;
     values = levels.value.estimates.values;
   }
-  const widthPlaces = determinedPlaces(fit, 1);
-  const widths = fitWidths({
-    n: widthPlaces.map((j) => lines.ns[j]!),
-    width_eV: Float64Array.from(widthPlaces, (j) => lines.width[j]!),
-    covariance: covarianceBlock(fit, 1, widthPlaces),
-    exponent: protocol.width.exponent,
-    base: protocol.width.base,
-    floorKind: protocol.width.floor_kind,
-    defect0: values[2]!,
-    testExponent: false,
-    how: "newton",
-  });
   return {
     gap: values[0]!,
     rydberg: values[1]!,
     defect0: values[2]!,
-    exponent: widths.ok ? widths.value.estimates.values[2]! : null,
-    energy: lines.energy,
+    exponent: exponentOf(fit, plan, values[2]!),
+    energy,
     width: lines.width,
     area: lines.area,
   };
+}
+
+function exponentOf(fit: SpectrumFit, { protocol, weights }: ResamplingPlan, defect0: number): number | null {
+  const tied = fit.constrained?.widthLaw ?? null;
+  if (tied !== null) return tied.values[2]!;
+  const places = determinedPlaces(fit, 1);
+  const widths = fitWidths({
+    n: places.map((j) => fit.lines.ns[j]!),
+    width_eV: Float64Array.from(places, (j) => fit.lines.width[j]!),
+    covariance: weights?.width ?? covarianceBlock(fit, 1, places),
+    exponent: protocol.width.exponent,
+    base: protocol.width.base,
+    floorKind: protocol.width.floor_kind,
+    defect0,
+    testExponent: false,
+    how: "newton",
+  });
+  return widths.ok ? widths.value.estimates.values[2]! : null;
 }
 
 function summary(values: number[], level: number): Resampling["gap_eV"] {
@@ -199,7 +290,7 @@ function summary(values: number[], level: number): Resampling["gap_eV"] {
   return { median: at(0.5), low: at(0.5 - level / 2), high: at(0.5 + level / 2) };
 }
 
-function resamplingNotes(resampled: Resampling, law: LevelFit, level: number): Note[] {
+function resamplingNotes(resampled: Resampling, sigmas: readonly number[], level: number): Note[] {
   const notes: Note[] = [];
   const { failed, count } = resampled;
   if (failed > 0.05 * count)
@@ -211,11 +302,10 @@ function resamplingNotes(resampled: Resampling, law: LevelFit, level: number): N
         "look for a line that is hardly seen (lines.n, lines.max_n)",
       ),
     );
-  const size = law.estimates.values.length;
   const names = ["gap_eV", "rydberg_eV", "defect0"] as const;
   const differing = names.filter((name, i) => {
     const { low, high } = resampled[name];
-    const sigma = Math.sqrt(law.estimates.covariance[i * (size + 1)]!);
+    const sigma = sigmas[i]!;
     if (low === null || high === null || !(sigma > 0) || level < 0.6 || level > 0.75) return false;
     const ratio = (high - low) / (2 * sigma);
     return Math.abs(ratio - 1) > DIFFERS + 4 / Math.sqrt(2 * (count - failed));
@@ -228,8 +318,7 @@ function resamplingNotes(resampled: Resampling, law: LevelFit, level: number): N
         `Intervals from ${count} drawn spectra differ from the standard errors by more than a quarter: ${differing
           .map((name) => {
             const i = names.indexOf(name);
-            const sigma = Math.sqrt(law.estimates.covariance[i * (size + 1)]!);
-            return `${name} ${((resampled[name].high! - resampled[name].low!) / (2 * sigma)).toFixed(2)} times`;
+            return `${name} ${((resampled[name].high! - resampled[name].low!) / (2 * sigmas[i]!)).toFixed(2)} times`;
           })
           .join(", ")}.`,
         "quote the resampled intervals; the model is not linear over one standard error, or the noise is not what the errors assume",

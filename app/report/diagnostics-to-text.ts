@@ -55,9 +55,12 @@ export function resamplingLines(resampled: Resampling, level: number): string[] 
       ? []
       : [[name, one.median.toFixed(digits), `${one.low.toFixed(digits)} to ${one.high.toFixed(digits)}`]];
   const blocks = resampled.block_points > 1 ? ` in blocks of ${resampled.block_points} points` : "";
+  const order = resampled.autoregression?.length ?? 0;
+  const correlated =
+    order > 0 ? ` with the correlation of the residuals (autoregression of order ${order})` : "";
   return [
     "",
-    `  ${resampled.count} spectra drawn anew (${resampled.kind}${blocks}, seed ${resampled.seed}), ${resampled.failed} failed:`,
+    `  ${resampled.count} spectra drawn anew (${resampled.kind}${blocks}${correlated}, seed ${resampled.seed}), ${resampled.failed} failed:`,
     ...textTable(
       [
         ["", "median", `interval at ${(100 * level).toPrecision(4)} %`],

@@ -17,3 +17,4 @@ export { fSurvival } from "./fDistribution.ts";
 export { condenseRows, LEAST_POINTS, NODES } from "./condense.ts";
 export type { CondensedRows, Panel } from "./condense.ts";
 export { autocorrelation, correlationTime, defaultLags } from "./autocorrelation.ts";
+export { autoregression, drawAutoregression, type Autoregression } from "./autoregression.ts";

@@ -38,6 +38,26 @@ describe("sha256", () => {
 });
 
 describe("random numbers", () => {
+  it("have streams of one seed that do not run together", () => {
+    const rows = Array.from({ length: 200 }, (_, stream) => {
+      const random = makeRandom(7, stream);
+      return Array.from({ length: 50 }, () => random.normal());
+    });
+    for (const [a, b] of [
+      [0, 1],
+      [1, 2],
+      [7, 8],
+      [100, 199],
+    ] as const) {
+      const product = rows[a]!.reduce((sum, value, i) => sum + value * rows[b]![i]!, 0) / 50;
+      // Derived: products of independent normal numbers scatter by 1/sqrt(50) = 0.14; four of it
+      expect(Math.abs(product)).toBeLessThan(0.57);
+    }
+    const means = rows[0]!.map((_, i) => rows.reduce((sum, row) => sum + row[i]!, 0) / rows.length);
+    // Derived: means over 200 streams scatter by 1/sqrt(200) = 0.071; the largest of 50 stays below four and a half of it
+    expect(Math.max(...means.map(Math.abs))).toBeLessThan(0.32);
+  });
+
   it("are the same for the same seed and others for another", () => {
     const draw = (seed: number): number[] => {
       const random = makeRandom(seed);
