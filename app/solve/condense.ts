@@ -86,7 +86,12 @@ class PanelWork {
   private readonly moment: readonly Float64Array[];
   private readonly alpha = new Float64Array(NODES);
   private readonly beta = new Float64Array(NODES);
-  private readonly vectors = new Float64Array(NODES * NODES);
+  private readonly node = new Float64Array(NODES);
+  private readonly part = new Float64Array(NODES);
+  private readonly order = new Int32Array(NODES);
+  private readonly value = new Float64Array(NODES);
+  private square = 0;
+  private tilt = 0;
 
   constructor(longest: number, columns: number) {
     this.t = new Float64Array(longest);
@@ -106,101 +111,156 @@ class PanelWork {
     out: CondensedRows,
     at: number,
   ): void {
-    const { t, rest, alpha, beta, moment, vectors } = this;
+    const { t, rest, alpha, beta, moment, node, part, order, value } = this;
     const size = end - first;
     const middle = (x[first]! + x[end - 1]!) / 2;
     const half = (x[end - 1]! - x[first]!) / 2;
     for (let i = 0; i < size; i++) t[i] = (x[first + i]! - middle) / half;
-    columns.forEach((column, c) => {
-      for (let i = 0; i < size; i++) rest[c]![i] = weight[first + i]! * column[first + i]!;
-    });
+    for (let c = 0; c < rest.length; c++) {
+      const own = rest[c]!;
+      const column = columns[c]!;
+      for (let i = 0; i < size; i++) own[i] = weight[first + i]! * column[first + i]!;
+    }
     // Monic orthogonal polynomials times the root of the weight, one after another.
     let norm = 0;
-    let square = 0;
     for (let j = 0; j < NODES; j++) {
-      const before = square;
-      square = j === 0 ? this.begin(weight, first, size) : this.next(alpha[j - 1]!, beta[j - 1]! ** 2, size);
+      const before = this.square;
+      if (j === 0) this.begin(weight, first, size);
+      else this.next(alpha[j - 1]!, beta[j - 1]! ** 2, size);
+      const { square } = this;
       if (j === 0) norm = Math.sqrt(square);
       else beta[j] = Math.sqrt(square / before);
-      const { now } = this;
-      let a = 0;
-      for (let i = 0; i < size; i++) a += t[i]! * now[i]! * now[i]!;
-      alpha[j] = a / square;
+      alpha[j] = this.tilt / square;
+      const length = Math.sqrt(square);
+      const lengthBefore = Math.sqrt(before);
       for (let c = 0; c < rest.length; c++) {
-        const part = takeOut(now, square, rest[c]!, size);
-        moment[c]![j] = part;
-        if (j >= NODES - 2) out.highest[c]! += part * part;
+        const own = moment[c]!;
+        const taken = j === 0 ? 0 : own[j - 1]! / lengthBefore;
+        const found = takeOutAndMultiply(rest[c]!, taken, this.before, this.now, size) / length;
+        own[j] = found;
+        if (j >= NODES - 2) out.highest[c]! += found * found;
       }
     }
+    const length = Math.sqrt(this.square);
     for (let c = 0; c < rest.length; c++) {
-      for (let i = 0; i < size; i++) out.lost[c]! += rest[c]![i]! * rest[c]![i]!;
+      const taken = moment[c]![NODES - 1]! / length;
+      const own = rest[c]!;
+      let sum = 0;
+      for (let i = 0; i < size; i++) sum += (own[i]! - taken * this.now[i]!) ** 2;
+      out.lost[c]! += sum;
     }
-    tridiagonalEigen(alpha, beta, vectors);
+    node.set(alpha);
+    tridiagonalEigen(node, beta, part);
     // In ascending order of the nodes.
-    const order = Array.from(alpha.keys()).sort((i, j) => alpha[i]! - alpha[j]!);
-    order.forEach((k, place) => {
-      const root = norm * vectors[k]!;
-      out.x[at + place] = middle + half * alpha[k]!;
-      out.weight[at + place] = Math.abs(root);
-      moment.forEach((one, c) => {
+    for (let k = 0; k < NODES; k++) {
+      let place = k;
+      for (; place > 0 && node[order[place - 1]!]! > node[k]!; place--) order[place] = order[place - 1]!;
+      order[place] = k;
+    }
+    for (let place = 0; place < NODES; place++) {
+      const k = order[place]!;
+      const u = node[k]!;
+      // Orthonormal polynomials at the node, by their recursion.
+      value[0] = 1 / norm;
+      for (let j = 1; j < NODES; j++) {
+        const second = j === 1 ? 0 : beta[j - 1]! * value[j - 2]!;
+        value[j] = ((u - alpha[j - 1]!) * value[j - 1]! - second) / beta[j]!;
+      }
+      out.x[at + place] = middle + half * u;
+      out.weight[at + place] = Math.abs(norm * part[k]!);
+      for (let c = 0; c < rest.length; c++) {
+        const own = moment[c]!;
         let sum = 0;
-        for (let j = 0; j < NODES; j++) sum += vectors[j * NODES + k]! * one[j]!;
-        out.columns[c]![at + place] = sum / root;
-      });
-    });
+        for (let j = 0; j < NODES; j++) sum += value[j]! * own[j]!;
+        out.columns[c]![at + place] = sum;
+      }
+    }
   }
 
-  /** The first polynomial, 1; returns its square. */
-  private begin(weight: Float64Array, first: number, size: number): number {
-    const { now, before } = this;
+  /** The first polynomial, 1, with its square and the sum of t times its square. */
+  private begin(weight: Float64Array, first: number, size: number): void {
+    const { t, now, before } = this;
     let square = 0;
+    let tilt = 0;
     for (let i = 0; i < size; i++) {
       const value = weight[first + i]!;
       now[i] = value;
       before[i] = 0;
       square += value * value;
+      tilt += t[i]! * value * value;
     }
-    return square;
+    this.square = square;
+    this.tilt = tilt;
   }
 
-  /** p := (t - a) p - b p_before; returns its square. */
-  private next(a: number, b: number, size: number): number {
+  /** p := (t - a) p - b p_before, with its square and the sum of t times its square. */
+  private next(a: number, b: number, size: number): void {
     const { t, now, before } = this;
     let square = 0;
-    for (let i = 0; i < size; i++) {
-      const value = (t[i]! - a) * now[i]! - b * before[i]!;
-      before[i] = value;
-      square += value * value;
+    let tilt = 0;
+    let squareOdd = 0;
+    let tiltOdd = 0;
+    let i = 0;
+    for (; i + 1 < size; i += 2) {
+      const u = t[i]!;
+      const v = t[i + 1]!;
+      const even = (u - a) * now[i]! - b * before[i]!;
+      const odd = (v - a) * now[i + 1]! - b * before[i + 1]!;
+      before[i] = even;
+      before[i + 1] = odd;
+      square += even * even;
+      squareOdd += odd * odd;
+      tilt += u * even * even;
+      tiltOdd += v * odd * odd;
     }
+    if (i < size) {
+      const even = (t[i]! - a) * now[i]! - b * before[i]!;
+      before[i] = even;
+      square += even * even;
+      tilt += t[i]! * even * even;
+    }
+    this.square = square + squareOdd;
+    this.tilt = tilt + tiltOdd;
     this.now = before;
     this.before = now;
-    return square;
   }
 }
 
-/** v := v less its part along u, whose square is given; returns that part for u brought to unit length. */
-function takeOut(u: Float64Array, square: number, v: Float64Array, size: number): number {
+/** v := v - factor u, and its product with w. */
+function takeOutAndMultiply(
+  v: Float64Array,
+  factor: number,
+  u: Float64Array,
+  w: Float64Array,
+  size: number,
+): number {
   let even = 0;
   let odd = 0;
   let i = 0;
   for (; i + 1 < size; i += 2) {
-    even += u[i]! * v[i]!;
-    odd += u[i + 1]! * v[i + 1]!;
+    const a = v[i]! - factor * u[i]!;
+    const b = v[i + 1]! - factor * u[i + 1]!;
+    v[i] = a;
+    v[i + 1] = b;
+    even += a * w[i]!;
+    odd += b * w[i + 1]!;
   }
-  if (i < size) even += u[i]! * v[i]!;
-  const factor = (even + odd) / square;
-  for (i = 0; i < size; i++) v[i] = v[i]! - factor * u[i]!;
-  return factor * Math.sqrt(square);
+  if (i < size) {
+    const a = v[i]! - factor * u[i]!;
+    v[i] = a;
+    even += a * w[i]!;
+  }
+  return even + odd;
 }
 
 /**
- * Eigenvalues (into `diagonal`) and eigenvectors (columns of `vectors`, row-major) of the symmetric tridiagonal matrix
- * with this diagonal and off-diagonal elements beta[1..], by implicit QL (Golub and Van Loan, algorithm 8.3.3).
+ * Eigenvalues (into `diagonal`) and the first component of each eigenvector of the symmetric tridiagonal matrix with this
+ * diagonal and off-diagonal elements beta[1..], by implicit QL (Golub and Van Loan, algorithm 8.3.3; Golub and Welsch).
  */
-function tridiagonalEigen(diagonal: Float64Array, beta: Float64Array, vectors: Float64Array): void {
+function tridiagonalEigen(diagonal: Float64Array, beta: Float64Array, component: Float64Array): void {
   const n = NODES;
-  vectors.fill(0);
-  for (let i = 0; i < n; i++) vectors[i * n + i] = 1;
+  component.fill(0);
+  component[0] = 1;
   const e = new Float64Array(n);
   for (let i = 1; i < n; i++) e[i - 1] = beta[i]!;
   for (let l = 0; l < n; l++) {
@@ -234,11 +294,9 @@ function tridiagonalEigen(diagonal: Float64Array, beta: Float64Array, vectors: F
         p = s * r;
         diagonal[i + 1] = g + p;
         g = c * r - b;
-        for (let k = 0; k < n; k++) {
-          f = vectors[k * n + i + 1]!;
-          vectors[k * n + i + 1] = s * vectors[k * n + i]! + c * f;
-          vectors[k * n + i] = c * vectors[k * n + i]! - s * f;
-        }
+        f = component[i + 1]!;
+        component[i + 1] = s * component[i]! + c * f;
+        component[i] = c * component[i]! - s * f;
       }
       if (r === 0 && m - 1 >= l) continue;
       diagonal[l] = diagonal[l]! - p;

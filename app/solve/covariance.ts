@@ -1,7 +1,7 @@
+import { conditionOfTriangle, invertTriangle } from "./invertTriangle.ts";
 import { RANK_TOLERANCE } from "./linearStage.ts";
 import { pivotedQr } from "./pivotedQr.ts";
 import { RowBlockTriangle } from "./rowBlockTriangle.ts";
-import { singularValues } from "./singularValues.ts";
 
 export interface JacobianAnalysis {
   /** (n x n, row-major) (J'J)^-1; rows and columns of undetermined parameters are NaN. */
@@ -17,8 +17,6 @@ export interface JacobianAnalysis {
 
 /** A parameter takes part in the null space when this much of it, in units of a column's length, does. */
 const NULL_PART = 1e-6;
-/** Cosine left between the rotated rows; the condition number is good to about this part. */
-const CONDITION_TOLERANCE = 1e-5;
 
 /**
  * What      Covariance of least squares at a solution, (J'J)^-1 = R^-1 R^-T, from the QR of the weighted columns with
@@ -51,7 +49,6 @@ export function analyseJacobian(
   triangle.factor([...groups, residual], [...counts, 1], [...counts.map(() => ld), ld], rows);
   const scale = new Float64Array(n);
   const small = new Float64Array(size * size);
-  const forValues = new Float64Array(n * n);
   const permutation = new Int32Array(size);
   for (let j = 0; j < size; j++) {
     permutation[j] = j;
@@ -64,13 +61,6 @@ export function analyseJacobian(
     }
   }
   const rank = pivotedQr(small, size, size, 0, 0, n, permutation, RANK_TOLERANCE);
-  let condition = wantCondition ? Infinity : NaN;
-  if (rank === n && wantCondition) {
-    // The rows of the pivoted triangle are nearly orthogonal already: few rotations are left.
-    for (let i = 0; i < n; i++) for (let j = i; j < n; j++) forValues[i * n + j] = small[j * size + i]!;
-    const values = singularValues(forValues, n, CONDITION_TOLERANCE);
-    condition = values[0]! / values[n - 1]!;
-  }
   let remaining = 0;
   const image = new Float64Array(rank);
   for (let j = 0; j < rank; j++) {
@@ -84,15 +74,9 @@ export function analyseJacobian(
   }
 
   // Columns of R^-1 (rank x rank), packed by column.
-  const inverse = new Float64Array(rank * rank);
-  for (let j = 0; j < rank; j++) {
-    inverse[j * rank + j] = 1 / small[j * size + j]!;
-    for (let i = j - 1; i >= 0; i--) {
-      let sum = 0;
-      for (let l = i + 1; l <= j; l++) sum += small[l * size + i]! * inverse[j * rank + l]!;
-      inverse[j * rank + i] = -sum / small[i * size + i]!;
-    }
-  }
+  const inverse = invertTriangle(small, size, rank);
+  let condition = NaN;
+  if (wantCondition) condition = rank === n ? conditionOfTriangle(small, size, inverse, n) : Infinity;
   for (let a = 0; a < rank; a++) {
     const i = permutation[a]!;
     for (let b = 0; b <= a; b++) {

@@ -7,7 +7,7 @@ export { linearLeastSquares } from "./linearLeastSquares.ts";
 export type { LinearSolution } from "./linearLeastSquares.ts";
 export { choleskyFactor, choleskyInverse, choleskySolve, invertPositiveDefinite } from "./cholesky.ts";
 export { backSubstitute, forwardSubstitute } from "./cholesky.ts";
-export { singularValues } from "./singularValues.ts";
+export { largestEigenvalue } from "./largestEigenvalue.ts";
 export { fitLaw } from "./fitLaw.ts";
 export type { LawFit, LawOptions, LawProblem } from "./fitLaw.ts";
 export * from "./statistics.ts";

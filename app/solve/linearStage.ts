@@ -77,6 +77,7 @@ export class LinearStage {
     c.fill(0, 0, k);
     if (this.normal) {
       this.rank = k;
+      for (let i = 0; i < rows; i++) residual[i] = target[i]!;
       return this.correctAll(phi, target, c, residual);
     }
     this.factorOrthogonal(phi, target, c);
@@ -106,9 +107,11 @@ export class LinearStage {
    * true residual until they are spent.
    */
   solveWith(phi: Float64Array, target: Float64Array, c: Float64Array, residual: Float64Array): number {
+    residualOf(phi, this.k, this.ld, this.rows, c, target, residual);
     return this.correctAll(phi, target, c, residual);
   }
 
+  /** `residual` must be that of c. */
   private correctAll(
     phi: Float64Array,
     target: Float64Array,
@@ -116,12 +119,12 @@ export class LinearStage {
     residual: Float64Array,
   ): number {
     const { k, ld, rows } = this;
-    residualOf(phi, k, ld, rows, c, target, residual);
     const enough = SPENT * SPENT * sumOfSquares(target, rows);
     for (let turn = 0; turn < MOST_TURNS; turn++) {
       const moved = this.correct(phi, residual, c);
-      residualOf(phi, k, ld, rows, c, target, residual);
+      // The coefficients take the last correction too; the residual need not be summed again for it.
       if (moved <= enough) break;
+      residualOf(phi, k, ld, rows, c, target, residual);
     }
     return sumOfSquares(residual, rows);
   }

@@ -1,7 +1,7 @@
+import { conditionOfTriangle, invertTriangle } from "./invertTriangle.ts";
 import { RANK_TOLERANCE } from "./linearStage.ts";
 import { pivotedQr } from "./pivotedQr.ts";
 import { RowBlockTriangle } from "./rowBlockTriangle.ts";
-import { singularValues } from "./singularValues.ts";
 
 /** One member's weighted columns at the solution, reduced to a triangle. */
 export interface MemberColumns {
@@ -107,7 +107,6 @@ function eliminateOwn(member: MemberColumns, q: number): Eliminated | null {
   const n = own.length;
   const size = n + q + 1;
   const small = new Float64Array(size * size);
-  const forValues = new Float64Array(n * n);
   const scale = new Float64Array(n);
   const permutation = new Int32Array(size);
   for (let j = 0; j < size; j++) {
@@ -118,26 +117,13 @@ function eliminateOwn(member: MemberColumns, q: number): Eliminated | null {
     if (j < n) scale[j] = factor;
     for (let i = 0; i < size; i++) {
       small[j * size + i] = triangle[i * size + j]! * factor;
-      if (j < n && i < n) forValues[j * n + i] = small[j * size + i]!;
     }
   }
   const rank = pivotedQr(small, size, size, 0, 0, n, permutation, RANK_TOLERANCE);
-  let condition = Infinity;
-  if (rank === n && n > 0) {
-    const values = singularValues(forValues, n);
-    condition = values[0]! / values[n - 1]!;
-  }
   let remaining = 0;
   for (let i = 0; i < rank; i++) remaining += small[(size - 1) * size + i]! ** 2;
-  const inverse = new Float64Array(rank * rank);
-  for (let j = 0; j < rank; j++) {
-    inverse[j * rank + j] = 1 / small[j * size + j]!;
-    for (let i = j - 1; i >= 0; i--) {
-      let sum = 0;
-      for (let l = i + 1; l <= j; l++) sum += small[l * size + i]! * inverse[j * rank + l]!;
-      inverse[j * rank + i] = -sum / small[i * size + i]!;
-    }
-  }
+  const inverse = invertTriangle(small, size, rank);
+  const condition = rank === n && n > 0 ? conditionOfTriangle(small, size, inverse, n) : Infinity;
   /** Row a of R^-1 times column `column` of what was reflected along. */
   const solveRow = (a: number, column: number): number => {
     let sum = 0;
@@ -198,15 +184,7 @@ function coverShared(
   const rank = pivotedQr(stacked, rows, n + 1, 0, 0, n, permutation, RANK_TOLERANCE);
   let remaining = 0;
   for (let i = 0; i < rank; i++) remaining += stacked[n * rows + i]! ** 2;
-  const inverse = new Float64Array(rank * rank);
-  for (let j = 0; j < rank; j++) {
-    inverse[j * rank + j] = 1 / stacked[j * rows + j]!;
-    for (let i = j - 1; i >= 0; i--) {
-      let sum = 0;
-      for (let l = i + 1; l <= j; l++) sum += stacked[l * rows + i]! * inverse[j * rank + l]!;
-      inverse[j * rank + i] = -sum / stacked[i * rows + i]!;
-    }
-  }
+  const inverse = invertTriangle(stacked, rows, rank);
   for (let a = 0; a < rank; a++) {
     for (let b = 0; b <= a; b++) {
       let sum = 0;

@@ -5,7 +5,7 @@ import {
   choleskySolve,
   invertPositiveDefinite,
   linearLeastSquares,
-  singularValues,
+  largestEigenvalue,
 } from "../../../app/solve/index.ts";
 import { crossProduct, gramMatrix, residualOf, transposedTimes } from "../../../app/solve/gram.ts";
 import { RowBlockTriangle } from "../../../app/solve/rowBlockTriangle.ts";
@@ -78,13 +78,23 @@ describe("factorisations", () => {
     }
   });
 
-  test("singular values of a Hilbert matrix", () => {
+  test("largest eigenvalues of a Hilbert matrix and of its inverse", () => {
     const n = 5;
     const hilbert = Float64Array.from({ length: 25 }, (_, at) => 1 / (1 + Math.floor(at / n) + (at % n)));
-    const values = singularValues(hilbert, n);
+    const inverse = invertPositiveDefinite(hilbert, n)!;
     // Source: condition number of the 5 x 5 Hilbert matrix, 4.766e5 (Higham, Accuracy and Stability of Numerical
     // Algorithms, 2nd ed. (2002), table 28.1; value from memory)
-    expect(values[0]! / values[4]! / 4.766e5).toBeCloseTo(1, 3);
+    expect((largestEigenvalue(hilbert, n) * largestEigenvalue(inverse, n)) / 4.766e5).toBeCloseTo(1, 3);
+  });
+
+  test("largest eigenvalue of a chain of springs", () => {
+    for (const n of [1, 2, 3, 40]) {
+      const chain = new Float64Array(n * n);
+      for (let i = 0; i < n; i++) chain[i * n + i] = 2;
+      for (let i = 1; i < n; i++) chain[i * n + i - 1] = -1;
+      // Derived: 2 - 2 cos(n pi/(n + 1)), the highest mode of n masses between walls
+      expect(largestEigenvalue(chain, n)).toBeCloseTo(2 - 2 * Math.cos((n * Math.PI) / (n + 1)), 13);
+    }
   });
 
   test("Cholesky solves and inverts, and refuses what is not positive definite", () => {
