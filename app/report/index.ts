@@ -33,5 +33,21 @@ export {
   type ReportContents,
   type ReportInput,
 } from "./report-to-html.ts";
-export { figureFile, figureToSvg, FIGURE_SVG_MARK, type Figure } from "./figures/figure.ts";
+export { figureFile, figureToSvg, FIGURE_SVG_MARK } from "./figures/figure-to-svg.ts";
+export { FULL_WIDTH_MM, ONE_COLUMN_MM, type Figure } from "./figures/figure.ts";
+export { NARROWEST_MM, WIDEST_MM, resizeFigure } from "./figures/resize-figure.ts";
+export {
+  FIGURE_DPI,
+  FIGURE_KINDS,
+  FIGURE_PDF_MARK,
+  FIGURE_PNG_MARK,
+  OWN_SIZE,
+  makeFigurePress,
+  type DrawingTools,
+  type FigureChoices,
+  type FigureKind,
+  type FigurePress,
+} from "./figures/figure-files.ts";
+export type { FontFiles } from "./figures/typefaces.ts";
+export { colourOfN, colourOfPower, type Mode } from "./figures/colours.ts";
 export { comparisonToCsv, comparisonToJson, COMPARISON_CSV_MARK } from "./comparison-to-csv.ts";

@@ -57,7 +57,7 @@ pre { columns: 3 16rem; white-space: pre-wrap; overflow-wrap: anywhere; margin: 
   h2, h3, caption { break-after: avoid; }
   section.sample { break-before: page; }
   section.sample h2 { margin-top: 0; }
-  figure.column { width: 86mm; } figure.wide { width: 178mm; }
+  figure.column { width: 85mm; } figure.wide { width: 178mm; }
   .figures { gap: 5mm 9mm; }
   .table { overflow: visible; }
   figcaption, .remark { font-size: 8pt; }

@@ -1,3 +1,4 @@
+import { colourOfPower } from "../../app/report/index.ts";
 import type { AnalysedSeries } from "../../app/tasks/index.ts";
 import type { Palette } from "../plot/colours.ts";
 import type { Axis, Trace } from "../plot/figure-description.ts";
@@ -50,7 +51,7 @@ export function spectraPanel(
       signal.push(curves.used[i] === 1 ? curves.signal[i]! + lift : Number.NaN);
       model.push(curves.model[i]! + lift);
     });
-    const colour = colourOfPower(k, spectra.length, palette);
+    const colour = colourOfPower(k, spectra.length, palette.mode, palette.accent);
     data.push(
       line(`data at ${power} µW`, x, signal, { width: 0.7, color: palette.data }, "data"),
       line(`${power} µW`, x, model, { width: 1.5, color: colour }, "model"),
@@ -95,13 +96,4 @@ export function spectraPanel(
       meta: { part },
     };
   }
-}
-
-/** Power by lightness, without colour: colour belongs to n; the highest power wears the accent. */
-export function colourOfPower(rank: number, count: number, palette: Palette): string {
-  const share = count < 2 ? 0 : rank / (count - 1);
-  const [from, to] = palette.mode === "light" ? [30, 150] : [235, 115];
-  const level = Math.round(from + (to - from) * share);
-  const hex = level.toString(16).padStart(2, "0");
-  return share === 1 ? palette.accent : `#${hex}${hex}${hex}`;
 }

@@ -25,6 +25,7 @@ const APP_PACKAGES: Readonly<Record<string, readonly string[]>> = {
   table: ["papaparse"],
   series: ["ml-levenberg-marquardt"],
   power: ["ml-levenberg-marquardt"],
+  report: ["@cantoo/pdf-lib", "fontkit"],
   temperature: ["ml-levenberg-marquardt"],
   solve: ["ml-levenberg-marquardt"],
 };

@@ -6,7 +6,7 @@ import type { FigureDescription, Trace } from "../../renderer/plot/figure-descri
 import { parsePowers } from "../../renderer/power/parse-powers.ts";
 import { powerFigure, type PowerPanel } from "../../renderer/power/power-figure.ts";
 import { mostTelling, powerLedger } from "../../renderer/power/power-ledger.ts";
-import { colourOfPower } from "../../renderer/power/spectra-panel.ts";
+import { colourOfPower } from "../../app/report/index.ts";
 import { samplePower } from "./power-sample.ts";
 
 let analysed: AnalysedSeries;
@@ -161,7 +161,7 @@ describe("all panels", () => {
     const first = Array.from(models[0]!.y, (value) => value!);
     const last = Array.from(models[9]!.y, (value) => value!);
     expect(Math.min(...last)).toBeGreaterThan(Math.max(...first));
-    const shades = [0, 4, 8].map((rank) => colourOfPower(rank, 10, PALETTES.light));
+    const shades = [0, 4, 8].map((rank) => colourOfPower(rank, 10, "light", PALETTES.light.accent));
     expect([...shades].sort()).toEqual(shades);
   });
 });
