@@ -8,7 +8,7 @@ import { LEAST_SIGNIFICANCE } from "./climb-ladder.ts";
 import type { Peak } from "./find-peaks.ts";
 import { pointJitter } from "./axis-jitter.ts";
 import type { FullFit } from "./fit-full.ts";
-import { findFringes, fringeNotes } from "./fringes.ts";
+import { findFringes, fringeNotes, plateReflectance } from "./fringes.ts";
 import { energyOf } from "./ladder-model.ts";
 import { depthPerSignal } from "./light.ts";
 import { findSatellites } from "./satellites.ts";
@@ -305,6 +305,7 @@ function doubtsOfFringes({ points, full, protocol, spectrum }: DoubtInput): Note
       : {
           period,
           how: full.domain.fringes === undefined ? ("additive" as const) : ("multiplicative" as const),
+          dispersion: full.domain.dispersion === true,
         };
   const seen = known === null ? findFringes(points.energy, residuals) : null;
   let low = Infinity;
@@ -314,7 +315,23 @@ function doubtsOfFringes({ points, full, protocol, spectrum }: DoubtInput): Note
     high = Math.max(high, value);
   }
   const depth = depthPerSignal(spectrum);
-  return fringeNotes(known, seen, depth === null ? null : depth * (high - low), full.state, protocol);
+  const range = depth === null ? null : depth * (high - low);
+  return fringeNotes(known, seen, range, swingOfFringes(depth), full.state, protocol);
+
+  /** Amplitude of the fringes in optical depth, between the lines. */
+  function swingOfFringes(perSignal: number | null): number | null {
+    if (perSignal === null) return null;
+    if (full.domain.fringes !== undefined) {
+      const visibility = full.domain.parts?.find((one) => one.name === "visibility")?.value;
+      const R = plateReflectance(spectrum, protocol);
+      if (visibility === undefined || R === null) return null;
+      return 2 * visibility * R * Math.exp(-Math.max(0, perSignal * low));
+    }
+    if (wave !== undefined) return perSignal * Math.hypot(wave.cos, wave.sin);
+    if (seen === null) return null;
+    const sigma = points.sigma.slice().sort()[points.sigma.length >> 1]!;
+    return perSignal * seen.amplitude * sigma;
+  }
 }
 
 /** Refractive index where the protocol names neither index nor permittivity; common practice, no source. */
@@ -354,8 +371,8 @@ function doubtsOfUnexplained({ points, full, fit, spectrum, protocol }: DoubtInp
         doubt(
           "low-n-coherent",
           "lines",
-          "The strongest line changes the refractive index so much that Beer's law fails for it.",
-          "leave the lowest lines out of the window",
+          `The strongest line changes the refractive index by about ${(k / 2).toPrecision(2)} to either side, and with it the light lost at each surface by ${((100 * 2 * k) / (index * index - 1)).toPrecision(2)} % of itself: Beer's law fails for it.`,
+          "leave the lowest lines out of the window, or measure a thinner crystal to see what changes",
         ),
       );
     }

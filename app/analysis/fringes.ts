@@ -155,6 +155,14 @@ export function asksForFringes(protocol: Protocol): boolean {
   return protocol.background.some((term) => term.term === "fringes");
 }
 
+export type FringePhase = Extract<Protocol["background"][number], { term: "fringes" }>["phase"];
+
+/** What turns the phase of fringes of the light beside their period. */
+export function fringePhase(protocol: Protocol): FringePhase {
+  for (const term of protocol.background) if (term.term === "fringes") return term.phase;
+  return "auto";
+}
+
 /** The period that the protocol gives, or null. */
 export function givenPeriod(protocol: Protocol): number | null {
   for (const term of protocol.background) if (term.term === "fringes") return term.period_eV;
@@ -215,11 +223,19 @@ export function opticalThickness(period: number, protocol: Protocol): string {
   return `n_g d = ${product.toPrecision(4)} um${thickness}`;
 }
 
-/** Notes on fringes that were fitted, or are seen in the residuals without having been asked for. */
+/**
+ * Notes on fringes that were fitted, or are seen in the residuals without having been asked for. `swing`: amplitude of the
+ * fringes in optical depth, null where it is not known.
+ */
 export function fringeNotes(
-  fitted: { readonly period: number; readonly how: "additive" | "multiplicative" } | null,
+  fitted: {
+    readonly period: number;
+    readonly how: "additive" | "multiplicative";
+    readonly dispersion: boolean;
+  } | null,
   seen: SeenFringes | null,
   depthRange: number | null,
+  swing: number | null,
   state: LadderState,
   protocol: Protocol,
 ): Note[] {
@@ -240,7 +256,7 @@ export function fringeNotes(
       assumption(
         "fringes-fitted",
         "background",
-        `Interference fringes of period ${meV(fitted.period)} are part of the model (${fitted.how}): ${opticalThickness(fitted.period, protocol)}.`,
+        `Interference fringes of period ${meV(fitted.period)} are part of the model (${fitted.how}${fitted.dispersion ? ", their phase turned by the index of the lines" : ""}): ${opticalThickness(fitted.period, protocol)}.`,
         "compare with the thickness of the crystal",
       ),
     );
@@ -276,16 +292,28 @@ export function fringeNotes(
           "wedge or roughen the crystal, immerse it, or measure another thickness",
         ),
       );
-    notes.push(
-      doubt(
-        "low-n-coherent",
-        "lines",
-        "Fringes show that the light keeps its phase through the crystal, so strong lines change their own interference: Beer's law fails for them.",
-        "leave the lowest lines out of the window",
-      ),
-    );
+    if (fitted?.dispersion !== true)
+      notes.push(
+        doubt(
+          "low-n-coherent",
+          "lines",
+          `Fringes show that the light keeps its phase through the crystal, and lines turn that phase by their own index: Beer's law fails for them. ${coherentBias(swing)}`,
+          "fit the light with the index of the lines: thickness and index (signal.thickness_um, signal.surface.index), the background term fringes, lines.domain=transmittance",
+        ),
+      );
   }
   return notes;
+}
+
+/**
+ * With -ln T = alpha d - a cos(phi + d beta), a = 2 v R x, a line A (L, D) gives a sin(phi) d beta = -a sin(phi) A d D: a
+ * false asymmetry q = -(a/2) sin phi, which moves a line fitted with another q by about q times its width.
+ */
+function coherentBias(swing: number | null): string {
+  if (swing === null)
+    return "Each line takes a false asymmetry of up to half the amplitude of the fringes in optical depth, and moves by as much of its width.";
+  const part = (swing / 2).toPrecision(2);
+  return `With fringes of ${swing.toPrecision(2)} in optical depth each line takes a false asymmetry of up to ${part}, and its energy may be off by ${part} of its width.`;
 }
 
 /** Fringes may be added to the signal where the optical depth varies by less than this. */

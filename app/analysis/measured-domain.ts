@@ -11,7 +11,7 @@ import {
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { fitEveryPoint, type FitDomain, type FullFit } from "./fit-full.ts";
-import { ADDITIVE_RANGE, plateReflectance } from "./fringes.ts";
+import { ADDITIVE_RANGE, fringePhase, plateReflectance, type FringePhase } from "./fringes.ts";
 import { slitOf, withoutSlit } from "./instrument.ts";
 import { depthPerSignal } from "./light.ts";
 import type { ModelChoices } from "./ladder-model.ts";
@@ -85,41 +85,47 @@ export function fitInDomain(
     fringes: plate,
   };
   const frame = [light.energy[0]!, light.energy[light.energy.length - 1]!] as const;
-  let last = full.fit;
-  let linearised: FitPoints = selected;
-  let parts: DomainParts = { rows: [], fringes: null, atZero: false };
   // Fringes of the light itself take the place of those added to the signal.
   const { fringes: _, ...state } = full.state;
   const how: ModelChoices =
     plate === null
       ? choices
       : { ...choices, background: choices.background.filter((term) => term.term !== "fringes") };
-  const measured = fitEveryPoint(
-    selected,
-    plate === null ? full.state : state,
-    withoutSlit(protocol),
-    spectrum.unit,
-    how,
-    watch,
-    report,
-    (model) => {
-      const columns = (energy: Float64Array): ReturnType<typeof backgroundColumns> =>
-        backgroundColumns(
-          how.background,
-          energy,
-          spectrum.unit,
-          model.state.levels.gap,
-          frame,
-          model.state.fringes ?? null,
-        );
-      const started = startFrom(light, parts);
-      const done = fitTransmittance(started, model.spec, columns, model.start, last, { watch });
-      last = done.fit;
-      parts = partsOf(done);
-      linearised = done.linearised;
-      return done.fit;
-    },
-  );
+  const fitLight = (dispersion: boolean): LightFit => {
+    let last = full.fit;
+    let linearised: FitPoints = selected;
+    let parts: DomainParts = { rows: [], fringes: null, atZero: false };
+    const first = plate === null ? light : { ...light, fringes: { ...plate, dispersion } };
+    const measured = fitEveryPoint(
+      selected,
+      plate === null ? full.state : state,
+      withoutSlit(protocol),
+      spectrum.unit,
+      how,
+      watch,
+      report,
+      (model) => {
+        const columns = (energy: Float64Array): ReturnType<typeof backgroundColumns> =>
+          backgroundColumns(
+            how.background,
+            energy,
+            spectrum.unit,
+            model.state.levels.gap,
+            frame,
+            model.state.fringes ?? null,
+          );
+        const started = startFrom(first, parts);
+        const done = fitTransmittance(started, model.spec, columns, model.start, last, { watch });
+        last = done.fit;
+        parts = partsOf(done);
+        linearised = done.linearised;
+        return done.fit;
+      },
+    );
+    return { measured, linearised, parts, dispersion: plate !== null && dispersion };
+  };
+  const { measured, linearised, parts, dispersion } =
+    plate === null ? fitLight(false) : byPhase(fringePhase(protocol), fitLight);
   if (!measured.fit.solution.converged && domain === "auto" && full.fit.solution.converged)
     return asSignal([failedNote()]);
   return {
@@ -134,12 +140,34 @@ export function fitInDomain(
         ],
         answered: ["saturated-points", "low-transmission"],
         parts: parts.rows,
-        ...(parts.fringes === null ? {} : { fringes: parts.fringes.period }),
+        ...(parts.fringes === null ? {} : { fringes: parts.fringes.period, dispersion }),
       },
     },
     points: { ...linearised, place: selected.place },
   };
 }
+
+interface LightFit {
+  readonly measured: FullFit;
+  readonly linearised: FitPoints;
+  readonly parts: DomainParts;
+  readonly dispersion: boolean;
+}
+
+/** The index that the fringes see: as asked, or the lines' own unless that leaves a misfit and a constant one does not. */
+function byPhase(phase: FringePhase, fit: (dispersion: boolean) => LightFit): LightFit {
+  const first = fit(phase !== "constant");
+  const { chi2, degreesOfFreedom } = first.measured.fit.solution;
+  if (phase !== "auto" || chi2 < degreesOfFreedom + MISFIT_DEVIATIONS * Math.sqrt(2 * degreesOfFreedom))
+    return first;
+  const other = fit(false);
+  const { solution } = other.measured.fit;
+  return solution.converged && solution.chi2 < chi2 - CLEARLY_LESS ? other : first;
+}
+
+/** Chi square beyond its expectation, in its standard deviations. */
+const MISFIT_DEVIATIONS = 4;
+const CLEARLY_LESS = 10;
 
 /** Stray light that is not known starts here. */
 const STRAY_START = 1e-3;
@@ -175,6 +203,7 @@ function plateFringes(
   return {
     reflectance: R,
     reference: wave.reference,
+    dispersion: true,
     start: {
       visibility: Math.min(0.95, Math.max(0.02, visibility)),
       period: wave.period,

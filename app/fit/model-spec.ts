@@ -104,6 +104,8 @@ export interface ModelSpec {
   } | null;
   readonly tail: TailSpec | null;
   readonly background: readonly BackgroundColumn[];
+  /** The change of the index that goes with the lines, in place of their absorption (turnPair); false by default. */
+  readonly partner?: boolean;
   /** Rules line by line and lines of other series; none by default. */
   readonly constraints?: ConstraintSpec;
 }

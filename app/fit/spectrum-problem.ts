@@ -1,9 +1,12 @@
 import { LEVEL, levelLaw } from "../laws/index.ts";
-import { linePair, linePairWithDerivatives } from "../lines/index.ts";
+import { linePair, linePairWithDerivatives, turnPair } from "../lines/index.ts";
 import type { CondensedProblem, SeparableProblem } from "../solve/index.ts";
 import { condenseSpectrum } from "./condense-spectrum.ts";
 import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
 import { TailEvaluator } from "./tail.ts";
+
+/** Rows evaluated at once: the profiles of a line stay in the first-level cache. */
+const BLOCK = 256;
 
 /** Places of the nonlinear parameters in theta. */
 export interface ThetaLayout {
@@ -38,13 +41,14 @@ export class SpectrumProblem implements SeparableProblem {
   readonly spec: ModelSpec;
   readonly points: FitPoints;
   private readonly tail: TailEvaluator | null;
-  private readonly profile: {
-    l: Float64Array;
-    d: Float64Array;
-    lE: Float64Array;
-    lG: Float64Array;
-    dE: Float64Array;
-    dG: Float64Array;
+  /** The pair of one line and its derivatives on a block of rows. */
+  private readonly profile = {
+    l: new Float64Array(BLOCK),
+    d: new Float64Array(BLOCK),
+    lE: new Float64Array(BLOCK),
+    lG: new Float64Array(BLOCK),
+    dE: new Float64Array(BLOCK),
+    dG: new Float64Array(BLOCK),
   };
   private readonly law = new Float64Array(LEVEL.size);
 
@@ -60,9 +64,9 @@ export class SpectrumProblem implements SeparableProblem {
     this.nonlinear = this.layout.count;
     this.linear = k * (hasOddAreas(spec) ? 2 : 1) + spec.background.length;
     this.tail =
-      spec.tail === null ? null : new TailEvaluator(points, spec.tail, spec.gaussStd, spec.instrumentLorentz);
-    const make = (): Float64Array => new Float64Array(m);
-    this.profile = { l: make(), d: make(), lE: make(), lG: make(), dE: make(), dG: make() };
+      spec.tail === null
+        ? null
+        : new TailEvaluator(points, spec.tail, spec.gaussStd, spec.instrumentLorentz, spec.partner);
   }
 
   /** The nonlinear start from the lines' start values. */
@@ -150,77 +154,129 @@ export class SpectrumProblem implements SeparableProblem {
   }
 
   columns(theta: Float64Array, phi: Float64Array): void {
-    const { points, spec, layout, rows: m } = this;
-    const { l, d } = this.profile;
-    const k = spec.ns.length;
-    const q = this.asymmetryOf(theta);
-    const free = hasOddAreas(spec);
-    const tail = this.tailColumns(theta, q, false);
-    for (let j = 0; j < k; j++) {
-      const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
-      linePair(points.energy, 0, m, this.energyOf(j, theta), width, this.stdOf(j), l, d);
-      const at = j * m;
-      const share = spec.tail?.strengthShare[j] ?? 0;
-      const odd = 2 * q;
-      for (let i = 0; i < m; i++) phi[at + i] = l[i]! + odd * d[i]!;
-      if (tail !== null && share !== 0) {
-        for (let i = 0; i < m; i++) phi[at + i]! += share * (tail.even[i]! + odd * tail.odd[i]!);
-      }
-      if (free) {
-        const second = (k + j) * m;
-        for (let i = 0; i < m; i++) phi[second + i] = 2 * d[i]!;
-        // The tail is as asymmetric as the lines that speak for its strength: its odd part follows their odd areas.
-        if (tail !== null && share !== 0)
-          for (let i = 0; i < m; i++) phi[second + i]! += 2 * share * tail.odd[i]!;
-      }
-    }
-    spec.background.forEach((column, b) => phi.set(column.values, (this.backgroundAt + b) * m));
+    const { rows: m } = this;
+    const tail = this.tailColumns(theta, this.asymmetryOf(theta), false);
+    for (let first = 0; first < m; first += BLOCK)
+      this.writeColumns(theta, tail, first, Math.min(m, first + BLOCK), phi, m, first);
   }
 
   derivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
-    const { points, spec, layout, rows: m } = this;
+    const { rows: m } = this;
+    const strength = this.tailStrength(theta, coefficients);
+    this.tailColumns(theta, strength.q, true);
+    for (let first = 0; first < m; first += BLOCK)
+      this.writeDerivatives(theta, coefficients, strength, first, Math.min(m, first + BLOCK), out, m, first);
+  }
+
+  blocks(
+    theta: Float64Array,
+    coefficients: Float64Array,
+  ): (first: number, end: number, phi: Float64Array, derivatives: Float64Array) => void {
+    const strength = this.tailStrength(theta, coefficients);
+    const tail = this.tailColumns(theta, strength.q, true);
+    return (first, end, phi, derivatives) => {
+      const height = end - first;
+      for (let from = first; from < end; from += BLOCK) {
+        const to = Math.min(end, from + BLOCK);
+        this.writeColumns(theta, tail, from, to, phi, height, from - first);
+        this.writeDerivatives(theta, coefficients, strength, from, to, derivatives, height, from - first);
+      }
+    };
+  }
+
+  /** Columns of the rows first <= i < end, as rows `at` and on of a matrix with leading dimension `ld`. */
+  private writeColumns(
+    theta: Float64Array,
+    tail: { even: Float64Array; odd: Float64Array } | null,
+    first: number,
+    end: number,
+    phi: Float64Array,
+    ld: number,
+    at: number,
+  ): void {
+    const { points, spec, layout } = this;
+    const { l, d } = this.profile;
+    const k = spec.ns.length;
+    const height = end - first;
+    const free = hasOddAreas(spec);
+    const odd = 2 * this.asymmetryOf(theta);
+    for (let j = 0; j < k; j++) {
+      const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
+      linePair(points.energy, first, end, this.energyOf(j, theta), width, this.stdOf(j), l, d, -first);
+      if (spec.partner === true) turnPair(l, d);
+      const column = j * ld + at;
+      for (let i = 0; i < height; i++) phi[column + i] = l[i]! + odd * d[i]!;
+      const second = (k + j) * ld + at;
+      if (free) for (let i = 0; i < height; i++) phi[second + i] = 2 * d[i]!;
+      const share = spec.tail?.strengthShare[j] ?? 0;
+      if (tail === null || share === 0) continue;
+      for (let i = 0; i < height; i++)
+        phi[column + i]! += share * (tail.even[first + i]! + odd * tail.odd[first + i]!);
+      // The tail is as asymmetric as the lines that speak for its strength: its odd part follows their odd areas.
+      if (free) for (let i = 0; i < height; i++) phi[second + i]! += 2 * share * tail.odd[first + i]!;
+    }
+    spec.background.forEach(({ values }, b) => {
+      const column = (this.backgroundAt + b) * ld + at;
+      for (let i = 0; i < height; i++) phi[column + i] = values[first + i]!;
+    });
+  }
+
+  /** Derivatives in the same way; those of the tail must be at hand. */
+  private writeDerivatives(
+    theta: Float64Array,
+    coefficients: Float64Array,
+    strength: TailStrength,
+    first: number,
+    end: number,
+    out: Float64Array,
+    ld: number,
+    at: number,
+  ): void {
+    const { points, spec, layout } = this;
     const { l, d, lE, lG, dE, dG } = this.profile;
     const k = spec.ns.length;
+    const height = end - first;
     const q = this.asymmetryOf(theta);
     const free = hasOddAreas(spec);
-    out.fill(0);
+    // Where levels are tied a column has parts from many lines; the others belong to one line alone.
+    const shared = (column: number): void => void out.fill(0, column * ld + at, column * ld + at + height);
+    for (let p = 0; p < layout.lawCount; p++) shared(p);
+    if (layout.asymmetryAt >= 0) shared(layout.asymmetryAt);
+    if (layout.factorAt >= 0) shared(layout.factorAt);
     const tied = spec.tiedLevels === null ? null : this.tiedLaw(theta);
     for (let j = 0; j < k; j++) {
+      const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
       const energy = this.energyOf(j, theta);
-      linePairWithDerivatives(
-        points.energy,
-        0,
-        m,
-        energy,
-        theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0),
-        this.stdOf(j),
-        l,
-        d,
-        lE,
-        lG,
-        dE,
-        dG,
-      );
+      const std = this.stdOf(j);
+      linePairWithDerivatives(points.energy, first, end, energy, width, std, l, d, lE, lG, dE, dG, -first);
+      if (spec.partner === true)
+        for (const [x, y] of [
+          [l, d],
+          [lE, dE],
+          [lG, dG],
+        ] as const)
+          turnPair(x, y);
       const a = coefficients[j]!;
       const b = 2 * (q * a + (free ? coefficients[k + j]! : 0));
-      const widthColumn = layout.widthAt[j]! * m;
-      for (let i = 0; i < m; i++) out[widthColumn + i]! += a * lG[i]! + b * dG[i]!;
+      const byWidth = layout.widthAt[j]! * ld + at;
+      for (let i = 0; i < height; i++) out[byWidth + i] = a * lG[i]! + b * dG[i]!;
       if (layout.energyAt[j]! >= 0) {
-        const energyColumn = layout.energyAt[j]! * m;
-        for (let i = 0; i < m; i++) out[energyColumn + i]! += a * lE[i]! + b * dE[i]!;
+        const byEnergy = layout.energyAt[j]! * ld + at;
+        for (let i = 0; i < height; i++) out[byEnergy + i] = a * lE[i]! + b * dE[i]!;
       } else if (tied !== null) {
         levelLaw(spec.ns[j]!, tied, this.law);
         for (let p = 0; p < layout.lawCount; p++) {
           const slope = this.law[1 + p]!;
-          for (let i = 0; i < m; i++) out[p * m + i]! += slope * (a * lE[i]! + b * dE[i]!);
+          const column = p * ld + at;
+          for (let i = 0; i < height; i++) out[column + i]! += slope * (a * lE[i]! + b * dE[i]!);
         }
       }
       if (layout.asymmetryAt >= 0) {
-        const column = layout.asymmetryAt * m;
-        for (let i = 0; i < m; i++) out[column + i]! += 2 * a * d[i]!;
+        const column = layout.asymmetryAt * ld + at;
+        for (let i = 0; i < height; i++) out[column + i]! += 2 * a * d[i]!;
       }
     }
-    this.tailDerivatives(theta, coefficients, out);
+    this.addTailDerivatives(theta, strength, first, end, out, ld, at);
   }
 
   /** T = even + 2 q odd at theta (m each), or null; with `derivatives` the evaluator's derivative columns are filled too. */
@@ -242,7 +298,7 @@ export class SpectrumProblem implements SeparableProblem {
   }
 
   /** C = sum share_j A_j, and the q of the tail: the shared one, or that of the lines by their shares. */
-  private tailStrength(theta: Float64Array, coefficients: Float64Array): { strength: number; q: number } {
+  private tailStrength(theta: Float64Array, coefficients: Float64Array): TailStrength {
     const k = this.spec.ns.length;
     let strength = 0;
     let odd = 0;
@@ -254,26 +310,35 @@ export class SpectrumProblem implements SeparableProblem {
     return { strength, q: strength === 0 ? 0 : odd / strength };
   }
 
-  private tailDerivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
-    const { tail, spec, layout, rows: m } = this;
+  private addTailDerivatives(
+    theta: Float64Array,
+    { strength, q }: TailStrength,
+    first: number,
+    end: number,
+    out: Float64Array,
+    ld: number,
+    at: number,
+  ): void {
+    const { tail, spec, layout } = this;
     if (tail === null || spec.tail === null) return;
     const k = spec.ns.length;
-    const { strength, q } = this.tailStrength(theta, coefficients);
-    this.tailColumns(theta, q, true);
+    const height = end - first;
     const { tiedEven, tiedOdd, heldOdd, byLevel, byWidth } = tail.columns;
     const f = this.factorOf(theta);
     if (layout.asymmetryAt >= 0) {
-      const column = layout.asymmetryAt * m;
-      for (let i = 0; i < m; i++) out[column + i]! += 2 * strength * (f * tiedOdd[i]! + heldOdd[i]!);
+      const column = layout.asymmetryAt * ld + at;
+      for (let i = 0; i < height; i++)
+        out[column + i]! += 2 * strength * (f * tiedOdd[first + i]! + heldOdd[first + i]!);
     }
     if (layout.factorAt >= 0) {
-      const column = layout.factorAt * m;
-      for (let i = 0; i < m; i++) out[column + i]! += strength * (tiedEven[i]! + 2 * q * tiedOdd[i]!);
+      const column = layout.factorAt * ld + at;
+      for (let i = 0; i < height; i++)
+        out[column + i]! += strength * (tiedEven[first + i]! + 2 * q * tiedOdd[first + i]!);
     }
     const add = (target: number, source: Float64Array, factor: number): void => {
       if (factor === 0) return;
-      const column = target * m;
-      for (let i = 0; i < m; i++) out[column + i]! += factor * source[i]!;
+      const column = target * ld + at;
+      for (let i = 0; i < height; i++) out[column + i]! += factor * source[first + i]!;
     };
     if (spec.tiedLevels !== null) for (let p = 0; p < layout.lawCount; p++) add(p, byLevel[p]!, strength);
     else {
@@ -303,6 +368,11 @@ export class SpectrumProblem implements SeparableProblem {
     for (let p = 0; p < this.layout.lawCount; p++) value[p] = theta[p]!;
     return { gap: value[0]!, rydberg: value[1]!, defect0: value[2]!, defect2: value[3]!, defect4: 0 };
   }
+}
+
+interface TailStrength {
+  readonly strength: number;
+  readonly q: number;
 }
 
 /** Whether every line has an odd area B = (q_n - q) A beside its own; q is 0 where asymmetries are free. */

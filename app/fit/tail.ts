@@ -1,5 +1,5 @@
 import { defectAt, LEVEL, levelLaw, strength, WIDTH, widthLaw, type LevelParameters } from "../laws/index.ts";
-import { continuumPair, linePairWithDerivatives, type ContinuumOutputs } from "../lines/index.ts";
+import { continuumPair, linePairWithDerivatives, turnPair, type ContinuumOutputs } from "../lines/index.ts";
 import { addFromGrid, makeSparseGrid, type SparseGrid } from "./sparse-grid.ts";
 import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec.ts";
 
@@ -39,6 +39,7 @@ export class TailEvaluator {
   private readonly spec: TailSpec;
   private readonly gaussStd: number;
   private readonly lorentz: number;
+  private readonly partner: boolean;
   private readonly grid: SparseGrid;
   private readonly scratch: Float64Array[];
   private readonly sums: Float64Array[];
@@ -46,12 +47,16 @@ export class TailEvaluator {
   private readonly bands: readonly BandGroup[];
   private readonly bandScratch: Record<BandColumn, Float64Array>;
 
-  /** `lorentz`: FWHM of a Lorentzian instrument, which adds to every width. */
-  constructor(points: FitPoints, spec: TailSpec, gaussStd: number, lorentz = 0) {
+  /**
+   * `lorentz`: FWHM of a Lorentzian instrument, which adds to every width. `partner`: the change of the index that goes
+   * with the absorption, in its place (turnPair).
+   */
+  constructor(points: FitPoints, spec: TailSpec, gaussStd: number, lorentz = 0, partner = false) {
     this.points = points;
     this.spec = spec;
     this.gaussStd = gaussStd;
     this.lorentz = lorentz;
+    this.partner = partner;
     this.leastWidth = Math.max(LEAST_WIDTH, 0.5 * stepAt(points.energy, spec.levels.gap));
     this.bands = spec.band ? groupBands(spec) : [];
     const m = points.energy.length;
@@ -177,7 +182,12 @@ export class TailEvaluator {
       dE,
       dG,
     );
+    this.turn([l, d], [lE, dE], [lG, dG]);
     return { level, width };
+  }
+
+  private turn(...pairs: readonly (readonly [Float64Array, Float64Array])[]): void {
+    if (this.partner) for (const [absorptive, dispersive] of pairs) turnPair(absorptive, dispersive);
   }
 
   /**
@@ -193,8 +203,10 @@ export class TailEvaluator {
     q: number,
     derivatives: boolean,
   ): void {
-    const { sums, spec } = this;
+    const { sums, spec, partner } = this;
     const nodes = this.grid.nodes;
+    const ofL = partner ? 2 * q : 1;
+    const ofD = partner ? -1 : 2 * q;
     const bottom = new Float64Array(LEVEL.size);
     const top = new Float64Array(LEVEL.size);
     const width = new Float64Array(WIDTH.size);
@@ -214,18 +226,20 @@ export class TailEvaluator {
         const below = 1 / (a * a + g * g);
         const above = 1 / (b * b + g * g);
         // The difference of angles as one angle, and of logarithms as one, so that far wings do not cancel.
-        const even = perAngle * Math.atan2(g * (a - b), g * g + a * b);
-        const odd = 0.5 * perAngle * Math.log1p((a - b) * (a + b) * above);
+        const l = perAngle * Math.atan2(g * (a - b), g * g + a * b);
+        const d = 0.5 * perAngle * Math.log1p((a - b) * (a + b) * above);
+        const even = partner ? -d : l;
+        const odd = partner ? l : d;
         sums[0]![i]! += even;
         sums[1]![i]! += odd;
         if (!derivatives) continue;
         const scale = factor * perAngle;
-        const byLow = -scale * (g + 2 * q * a) * below;
-        const byHigh = scale * (g + 2 * q * b) * above;
+        const byLow = -scale * (ofL * g + ofD * a) * below;
+        const byHigh = scale * (ofL * g + ofD * b) * above;
         for (let p = 0; p < LEVEL_COUNT; p++)
           sums[2 + p]![i]! += byLow * bottom[1 + p]! + byHigh * top[1 + p]!;
         sums[3]![i]! -= (factor * (even + 2 * q * odd)) / law.rydberg;
-        const byWidth = slope * scale * (b * above - a * below + 2 * q * g * (below - above));
+        const byWidth = slope * scale * (ofL * (b * above - a * below) + ofD * g * (below - above));
         for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
       }
     }
@@ -239,6 +253,12 @@ export class TailEvaluator {
     widthLaw(FAR_N, spec.levels.defect0, widths, width);
     const limit = Math.max(0, width[WIDTH.width]!) + this.lorentz;
     continuumPair(nodes, 0, nodes.length, law.gap, law.rydberg, spec.envelope, this.edgeWidth(limit), out);
+    this.turn(
+      [out.absorptive, out.dispersive],
+      [out.absorptiveByGap, out.dispersiveByGap],
+      [out.absorptiveByRydberg, out.dispersiveByRydberg],
+      [out.absorptiveByBroadening, out.dispersiveByBroadening],
+    );
     addFromGrid(grid, out.absorptive, 1, columns.heldEven);
     if (spec.continuumOdd) addFromGrid(grid, out.dispersive, 1, columns.heldOdd);
     if (!derivatives) return;
@@ -300,6 +320,7 @@ export class TailEvaluator {
         dE,
         dG,
       );
+      this.turn([l, d], [lE, dE], [lG, dG]);
       for (let i = 0; i < m; i++) {
         columns.heldEven[i]! += s * l[i]!;
         columns.heldOdd[i]! += s * d[i]!;

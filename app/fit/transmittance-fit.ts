@@ -8,7 +8,7 @@ import type { BackgroundColumn, FitPoints, ModelSpec } from "./model-spec.ts";
 import { setUpFit, type FitSetUp } from "./set-up-fit.ts";
 import { hasOddAreas, type SpectrumProblem } from "./spectrum-problem.ts";
 import { makeSlitGrid, type Feature } from "./transmittance-grid.ts";
-import { TransmittanceProblem, type MeasuredLight } from "./transmittance-problem.ts";
+import { TransmittanceProblem, type AbsorptionModel, type MeasuredLight } from "./transmittance-problem.ts";
 
 export interface TransmittanceFit {
   /**
@@ -73,7 +73,12 @@ export function fitTransmittance(
         { ...sharp, background: background(nodes) },
         start,
       );
-  const problem = new TransmittanceProblem(light, inner.problem, grid);
+  const problem = new TransmittanceProblem(
+    light,
+    inner.problem,
+    grid,
+    partnerOf(light, nodes, sharp, background, start),
+  );
   const p = outer.problem.nonlinear;
   const lower = new Float64Array(problem.parameters).fill(-Infinity);
   const upper = new Float64Array(problem.parameters).fill(Infinity);
@@ -104,6 +109,21 @@ export function fitTransmittance(
     watch: { ...(control.watch ?? NO_WATCH), report: () => undefined },
   });
   return asSignal(light, outer, problem, spec, start, solution);
+}
+
+/** The same model of the index on the nodes, where the phase of fringes needs it: its background has none. */
+function partnerOf(
+  light: MeasuredLight,
+  nodes: Float64Array,
+  sharp: ModelSpec,
+  background: (energy: Float64Array) => readonly BackgroundColumn[],
+  start: FitStart,
+): AbsorptionModel | null {
+  if (light.fringes?.dispersion !== true) return null;
+  const nothing = new Float64Array(nodes.length);
+  const none = background(nodes).map((column) => ({ ...column, values: nothing }));
+  const points: FitPoints = { energy: nodes, signal: nothing, sigma: nothing.map(() => 1) };
+  return setUpFit(points, { ...sharp, background: none, partner: true }, start).problem;
 }
 
 /** A fit may change the period of fringes by this part; beyond lies another fringe order over the window. */

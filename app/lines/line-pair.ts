@@ -272,3 +272,18 @@ function farCurvature(x: number, y: number, out: Float64Array): void {
   out[1] = f * sr;
   if (y < 1e-10 && x * x < 746) out[0] += (4 * x * x - 2) * Math.exp(-x * x);
 }
+
+/**
+ * What      The pair of the other half of the response, in place: (L, D) becomes (-D, L). With F = -D + i L, the line's
+ *           analytic amplitude 1/[pi (E0 - E - i g)], absorption A (L + 2 q D) is Im[A (1 - 2 i q) F]; the same expression on
+ *           the turned pair, A (-D + 2 q L), is its real part: 2 E/(hbar c) times the change of the refractive index.
+ * Shapes    two columns of one length, both written.
+ * Source    Kramers-Kronig relations of a narrow line (E0 in place of E in the slow factor).
+ */
+export function turnPair(absorptive: Float64Array, dispersive: Float64Array): void {
+  for (let i = 0; i < absorptive.length; i++) {
+    const value = absorptive[i]!;
+    absorptive[i] = -dispersive[i]!;
+    dispersive[i] = value;
+  }
+}

@@ -18,7 +18,15 @@ export const backgroundTermSchema = z.discriminatedUnion("term", [
   z.strictObject({ term: z.literal("square-root"), onset_eV: positive }),
   z.strictObject({ term: z.literal("urbach"), energy_eV: positive }),
   /** Interference in a plane-parallel plate; the period starts from here, or is found in the residuals. */
-  z.strictObject({ term: z.literal("fringes"), period_eV: positive.nullable().default(null) }),
+  z.strictObject({
+    term: z.literal("fringes"),
+    period_eV: positive.nullable().default(null),
+    /**
+     * In the transmitted light: the lines turn the phase by their own index, or the index is constant. `auto`: the
+     * lines do, unless that leaves a misfit and the constant index describes the light better.
+     */
+    phase: z.enum(["auto", "lines", "constant"]).default("auto"),
+  }),
   z.strictObject({
     term: z.literal("measured"),
     energy_eV: z.array(z.number()).min(2),

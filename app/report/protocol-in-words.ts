@@ -100,7 +100,7 @@ function termInWords(term: BackgroundTerm): string {
     case "urbach":
       return `Urbach tail of ${term.energy_eV} eV`;
     case "fringes":
-      return term.period_eV === null ? "fringes" : `fringes of period ${term.period_eV} eV`;
+      return `fringes${term.period_eV === null ? "" : ` of period ${term.period_eV} eV`}${term.phase === "auto" ? "" : term.phase === "constant" ? " at constant index" : " with the index of the lines"}`;
     case "measured":
       return `measured curve of ${term.energy_eV.length} points`;
   }

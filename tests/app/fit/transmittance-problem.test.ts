@@ -47,6 +47,7 @@ interface Case {
 const FRINGES: NonNullable<MeasuredLight["fringes"]> = {
   reflectance: 0.24,
   reference: 0.99,
+  dispersion: false,
   start: { visibility: 0.6, period: 0.0021, phase: 0.7 },
 };
 
@@ -64,6 +65,11 @@ const CASES: Case[] = [
     spec: {},
   },
   { name: "fringes without surfaces and slit", light: { fringes: FRINGES, slitStd: 0 }, spec: {} },
+  ...[{}, { asymmetry: "free" as const }, { tail: TAIL }].map((spec): Case => ({
+    name: `fringes whose phase the lines turn, ${Object.keys(spec)[0] ?? "plain"}`,
+    light: { fringes: { ...FRINGES, dispersion: true }, surface: "single", reflectance: 0.24 },
+    spec,
+  })),
   { name: "stray light that is known", light: { stray: { value: 0.05, free: false } }, spec: {} },
   { name: "stray light as a parameter", light: { stray: { value: 0.05, free: true } }, spec: {} },
   {
@@ -101,6 +107,14 @@ function build({ light, spec }: Case): { problem: TransmittanceProblem; paramete
     { energy: grid.nodes, signal: nothing, sigma: nothing.map(() => 1) },
     { ...full, background: background(grid.nodes) },
   );
+  const none = background(grid.nodes).map((column) => ({ ...column, values: nothing }));
+  const partner =
+    measured.fringes?.dispersion === true
+      ? new SpectrumProblem(
+          { energy: grid.nodes, signal: nothing, sigma: nothing.map(() => 1) },
+          { ...full, background: none, partner: true },
+        )
+      : null;
   const theta = inner.startFrom(LINES, -0.2, 0.9);
   const perSignal = 1 / measured.depthPerSignal;
   const areas = LINES.map((line) => line.area * perSignal);
@@ -115,7 +129,7 @@ function build({ light, spec }: Case): { problem: TransmittanceProblem; paramete
     ...((measured.fringes ?? null) === null ? [] : Object.values(measured.fringes!.start)),
     ...(measured.stray?.free === true ? [measured.stray.value] : []),
   ]);
-  return { problem: new TransmittanceProblem(measured, inner, grid), parameters };
+  return { problem: new TransmittanceProblem(measured, inner, grid, partner), parameters };
 }
 
 describe("transmitted light as a function of lines and background", () => {
