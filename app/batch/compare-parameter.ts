@@ -39,13 +39,32 @@ export function compareParameter(
   choices: ComparisonChoices,
   againstUnit: string,
 ): ComparedPart {
-  const taking = samples.filter((sample) => {
+  const taking = samples.flatMap((sample): OneNumber[] => {
     const one = sample.parameters[name];
-    return one?.left_out === null && one.value !== null && one.sigma !== null;
+    return one?.left_out === null && one.value !== null && one.sigma !== null
+      ? [{ batch: sample.batch, value: one.value, sigma: one.sigma, against: sample.against }]
+      : [];
   });
+  return { name, unit, ...compareNumbers(taking, choices, againstUnit) };
+}
+
+/** A number of one sample with its standard error. */
+export interface OneNumber {
+  readonly batch: string;
+  readonly value: number;
+  readonly sigma: number;
+  readonly against: number | null;
+}
+
+/** The same for numbers of any origin. */
+export function compareNumbers(
+  taking: readonly OneNumber[],
+  choices: ComparisonChoices,
+  againstUnit: string,
+): Omit<ComparedPart, "name" | "unit"> {
   const n = taking.length;
-  const y = Float64Array.from(taking, (sample) => sample.parameters[name]!.value!);
-  const variances = Float64Array.from(taking, (sample) => sample.parameters[name]!.sigma! ** 2);
+  const y = Float64Array.from(taking, ({ value }) => value);
+  const variances = Float64Array.from(taking, ({ sigma }) => sigma ** 2);
   const names = [...new Set(taking.map((sample) => sample.batch))];
   const groups = taking.map((sample) => names.indexOf(sample.batch));
   const factor = twoSidedQuantile(1 - choices.level, Infinity);
@@ -113,8 +132,6 @@ export function compareParameter(
   );
   const reference = batches.find((batch) => batch.name === choices.reference);
   return {
-    name,
-    unit,
     samples: n,
     homogeneity: homogeneityOf(commonMean(y, variances)),
     within: scatter(byBatch, within2, withinDof),
@@ -178,7 +195,7 @@ export function homogeneityOf(observations: Observations): ComparedPart["homogen
  * the degrees of freedom that the scatter leaves.
  */
 function trendOf(
-  taking: readonly ComparedSample[],
+  taking: readonly OneNumber[],
   y: Float64Array,
   variances: Float64Array,
   choices: ComparisonChoices,

@@ -15,6 +15,7 @@ import {
   type RunglineResult,
 } from "../protocol/index.ts";
 import { compareParameter } from "./compare-parameter.ts";
+import { powerOf } from "./power-part.ts";
 import { qualityOf } from "./quality.ts";
 import { readSamples } from "./read-samples.ts";
 import { temperatureOf } from "./temperature-part.ts";
@@ -58,19 +59,50 @@ export function compareResults(
   const parameters = choices.parameters.map((name) =>
     compareParameter(name, read.units[name], samples, choices, read.againstUnit),
   );
+  const quality = qualityOf(samples, parameters, choices);
   return success({
     schema: COMPARISON_SCHEMA,
     choices,
     samples: [...samples],
     parameters,
-    quality: qualityOf(samples, parameters, choices),
+    quality,
     temperature: temperatureOf(read.results, choices),
+    power: powerOf(read.results, choices),
     notes: [
       ...read.notes,
       ...aboutNumbers(parameters, batches.length, samples.length),
+      ...aboutQuality(quality, choices),
       ...(choices.against !== null && batches.length > 1 ? [trendInBatches(choices.against)] : []),
     ],
   });
+}
+
+/** A part that was asked for and cannot count is said, or the figure would be of other parts than the user weighed. */
+function aboutQuality(quality: Comparison["quality"], choices: ComparisonChoices): readonly Note[] {
+  if (quality === null) return [];
+  const counted = new Set<string>(quality.parts.map(({ name }) => name));
+  const left = Object.keys(choices.quality).filter((name) => !counted.has(name));
+  const notes: Note[] = [];
+  if (left.length > 0)
+    notes.push(
+      doubt(
+        "quality-part-left-out",
+        "quality",
+        `${left.join(", ")} ${left.length === 1 ? "is" : "are"} left out of the figure of quality: fewer than two samples have it, or all have the same.`,
+        "take it out of the weights, or compare samples that have it",
+      ),
+    );
+  const without = quality.samples.filter(({ figure }) => figure.value === null).length;
+  if (without > 0 && quality.parts.length > 0)
+    notes.push(
+      doubt(
+        "quality-not-of-all",
+        "quality",
+        `${without} of ${quality.samples.length} samples lack a part and have no figure of quality.`,
+        "weigh only what every sample has",
+      ),
+    );
+  return notes;
 }
 
 function trendInBatches(against: string): Note {

@@ -9,6 +9,7 @@ import type { DecimalMark } from "../table/index.ts";
 import { factValue, temperatureIn, type FactValue } from "./fact-value.ts";
 import { dependsOnSignal, parameterUnit, readParameter } from "./parameters.ts";
 import { pauleMandel, pooledMean } from "./random-effects.ts";
+import { stepOf, TEMPERATURES_ALIKE_K, temperatureSteps } from "./temperature-steps.ts";
 import { commonMean } from "./weighted-fit.ts";
 
 export type Measured = NonNullable<ComparedSample["parameters"][ComparedParameter]>;
@@ -94,7 +95,9 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
   const results: NamedResult[] = [];
   const seen = new Map<string, RunglineResult>();
   for (const result of all) {
-    const identity = `${result.source.sha256} ${result.source.file}`;
+    // A power series is named after its first spectrum, which may be there by itself too.
+    const kind = (result.power ?? null) === null ? "spectrum" : "power series";
+    const identity = `${kind} ${result.source.sha256} ${result.source.file}`;
     const before = seen.get(identity);
     if (before !== undefined) {
       const same = JSON.stringify(before.protocol) === JSON.stringify(result.protocol);
@@ -121,9 +124,17 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
   notes.push(...aboutAll(results, choices));
 
   const groups = new Map<string, NamedResult[]>();
+  const temperatures = new Map<string, readonly number[]>();
+  const name = (one: NamedResult): string => `${one.batch}\n${one.sample}`;
+  for (const key of new Set(results.map(name)))
+    temperatures.set(
+      key,
+      temperatureSteps(results.filter((one) => name(one) === key).map((one) => one.temperature_K)),
+    );
   for (const one of results) {
-    // A sample along a trend stands once for each value of it.
-    const key = `${one.batch}\n${one.sample}\n${one.against?.value ?? ""}`;
+    // A sample stands once for each value along a trend and for each temperature: their mean would be of no use.
+    const step = stepOf(one.temperature_K, temperatures.get(name(one))!);
+    const key = `${name(one)}\n${step ?? ""}\n${one.against?.value ?? ""}`;
     groups.set(key, [...(groups.get(key) ?? []), one]);
   }
   const signalUnits = new Set(results.map((one) => one.result.reading.signal_unit));
@@ -142,19 +153,22 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
   if (choices.against !== null) sorted.sort((one, other) => order(one) - order(other) || 0);
   const samples = sorted.map((group): ComparedSample => {
     const first = group[0]!;
-    if (group.length > 1)
+    // What a power series says of its first spectrum is no second measurement.
+    const alone = group.filter(({ result }) => (result.power ?? null) === null);
+    const taken = alone.length > 0 ? alone : group;
+    if (taken.length > 1)
       notes.push(
         assumption(
           "repeats-combined",
           `samples[${first.sample}]`,
-          `${group.length} measurements of ${first.sample} are combined into one mean with the scatter between them (Paule-Mandel).`,
+          `${taken.length} measurements of ${first.sample} are combined into one mean with the scatter between them (Paule-Mandel).`,
           "give the measurements different sample names to see them side by side",
         ),
       );
     const parameters: Partial<Record<ComparedParameter, Measured>> = {};
     for (const name of choices.parameters)
       parameters[name] = combine(
-        group.map(({ result }) => measure(result, name, choices, mostCommon)),
+        taken.map(({ result }) => measure(result, name, choices, mostCommon)),
         choices,
       );
     return {
@@ -177,7 +191,7 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
         ),
       ],
       parameters,
-      lines: first.result.lines.map(({ n, width_eV, area_n3 }) => ({ n, width_eV, area_n3 })),
+      lines: taken[0]!.result.lines.map(({ n, width_eV, area_n3 }) => ({ n, width_eV, area_n3 })),
     };
   });
   const units = Object.fromEntries(
@@ -253,8 +267,6 @@ function meanOf(values: readonly (number | null)[]): number | null {
   const known = values.filter((value) => value !== null);
   return known.length === 0 ? null : known.reduce((sum, value) => sum + value, 0) / known.length;
 }
-
-const TEMPERATURES_ALIKE_K = 1;
 
 function aboutAll(results: readonly NamedResult[], choices: ComparisonChoices): Note[] {
   const notes: Note[] = [];

@@ -1,5 +1,11 @@
 import { failure, nearestWord, success, type Result } from "../base/index.ts";
-import { comparisonChoicesSchema, type ComparisonChoices } from "./comparison-schema.ts";
+import {
+  COMPARISON_CHOICES_SCHEMA,
+  COMPARISON_SCHEMA,
+  comparisonChoicesSchema,
+  type ComparisonChoices,
+} from "./comparison-schema.ts";
+import { embeddedDocuments } from "./embedded-documents.ts";
 import type { ProtocolIssue } from "./resolve-protocol.ts";
 
 /** What a user wrote to the full choices of a comparison; unknown keys are refused with the nearest known one. */
@@ -27,4 +33,25 @@ export function resolveComparisonChoices(input: unknown): Result<ComparisonChoic
       return { code: "protocol/bad-value", facts };
     }),
   );
+}
+
+/**
+ * The choices in the text of a file, to be resolved: of a comparison (JSON), of a report that carries one, or written by
+ * hand as one object. Null where there are none.
+ */
+export function findComparisonChoices(text: string): unknown {
+  let documents: readonly unknown[];
+  try {
+    documents = embeddedDocuments(text);
+  } catch {
+    return null;
+  }
+  for (const json of documents) {
+    if (typeof json !== "object" || json === null || Array.isArray(json)) continue;
+    const schema = "schema" in json ? json.schema : undefined;
+    if (schema === undefined && documents.length === 1) return json;
+    if ((schema === COMPARISON_SCHEMA || schema === COMPARISON_CHOICES_SCHEMA) && "choices" in json)
+      return json.choices;
+  }
+  return null;
 }

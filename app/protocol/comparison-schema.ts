@@ -2,6 +2,8 @@ import { z } from "zod";
 import { noteSchema, quantitySchema } from "./result-schema.ts";
 
 export const COMPARISON_SCHEMA = "rungline-comparison/1";
+/** Of the choices alone, as a report carries them. */
+export const COMPARISON_CHOICES_SCHEMA = "rungline-comparison-choices/1";
 
 const number = z.number().nullable();
 
@@ -47,6 +49,8 @@ export const comparisonChoicesSchema = z.strictObject({
   level: z.number().gt(0).lt(1).default(0.6827),
   /** Weights of a quality figure by parameter; a negative weight where less is better. Empty: no figure. */
   quality: z.partialRecord(parameterName, z.number()).default({}),
+  /** Line at which power series are compared. Null: the highest n that most of them have a volume of. */
+  power_n: z.int().min(1).nullable().default(null),
 });
 export type ComparisonChoices = z.output<typeof comparisonChoicesSchema>;
 export type ComparisonChoicesInput = z.input<typeof comparisonChoicesSchema>;
@@ -164,6 +168,8 @@ const temperatureLaw = z.strictObject({
   stationary: z.boolean(),
   /** Standard errors are multiplied by this where the law is rejected (p < 0.01); 1 elsewhere. */
   scaled_by: z.number(),
+  /** The fitted law on the grid of its series, eV: drawable also where a parameter by itself is not determined. */
+  curve: z.array(number),
 });
 export type TemperatureLaw = z.output<typeof temperatureLaw>;
 
@@ -171,7 +177,14 @@ const temperatureSeries = z.strictObject({
   /** `gap_eV`, `width_floor_eV` or `width_eV[n]`. */
   quantity: z.string(),
   n: z.int().nullable(),
-  points: z.array(z.strictObject({ temperature_K: z.number(), value: z.number(), sigma: z.number() })),
+  /** Whose runs these are; null where the series goes over several samples. */
+  sample: z.string().nullable(),
+  batch: z.string().nullable(),
+  points: z.array(
+    z.strictObject({ temperature_K: z.number(), value: z.number(), sigma: z.number(), file: z.string() }),
+  ),
+  /** Temperatures of the laws' curves, K. */
+  grid_K: z.array(z.number()),
   laws: z.array(temperatureLaw),
   /** The law with the lowest information criterion; `decided` where it leads every law that does not hold it by 6 or more. */
   preferred: z.string().nullable(),
@@ -184,6 +197,66 @@ export const temperatureSchema = z.strictObject({
   notes: z.array(noteSchema),
 });
 export type TemperatureResult = z.output<typeof temperatureSchema>;
+
+/** `factor`: multiplicative standard error where logarithms are compared, null elsewhere. */
+const spread = z.strictObject({ ...quantitySchema.shape, factor: number });
+
+const comparedPowerPart = z.strictObject({
+  name: z.enum(["saturation_per_uW", "blockade_volume_um3", "exponent"]),
+  unit: z.string(),
+  /** Of the line; null for the exponent. */
+  n: z.int().nullable(),
+  /** Logarithms are compared: means are geometric, differences ratios, scatters and detectable sizes factors. */
+  logarithmic: z.boolean(),
+  samples: z.array(
+    z.strictObject({
+      sample: z.string(),
+      batch: z.string(),
+      file: z.string(),
+      quantity: spread,
+      /** One-sided at 95 %, where only that is known. */
+      limit: number,
+      /** By the sample's own widths and areas (exponent), or of the interaction (volume). */
+      expected: number,
+      left_out: z.string().nullable(),
+    }),
+  ),
+  homogeneity,
+  within: scatter,
+  between: scatter,
+  mean: spread,
+  batches: z.array(z.strictObject({ batch: z.string(), samples: z.int(), mean: spread })),
+  pairs: z.array(difference.extend({ difference: spread })),
+  shifts: z.array(difference.extend({ difference: spread })),
+});
+export type ComparedPowerPart = z.output<typeof comparedPowerPart>;
+export type ComparedSpread = z.output<typeof spread>;
+
+const comparedPower = z.strictObject({
+  /** The line that is compared, and those that could be. */
+  n: z.int().nullable(),
+  numbers: z.array(z.int()),
+  parts: z.array(comparedPowerPart),
+  /** Every line of every series, for one picture. */
+  series: z.array(
+    z.strictObject({
+      sample: z.string(),
+      batch: z.string(),
+      file: z.string(),
+      lines: z.array(
+        z.strictObject({
+          n: z.int(),
+          saturation_per_uW: spread,
+          blockade_volume_um3: spread,
+          saturation_limit_per_uW: number,
+          blockade_volume_limit_um3: number,
+        }),
+      ),
+    }),
+  ),
+  notes: z.array(noteSchema),
+});
+export type ComparedPower = z.output<typeof comparedPower>;
 
 export const comparisonSchema = z.strictObject({
   schema: z.literal(COMPARISON_SCHEMA),
@@ -213,6 +286,8 @@ export const comparisonSchema = z.strictObject({
     })
     .nullable(),
   temperature: temperatureSchema.nullable(),
+  /** Power series side by side; null with fewer than two. */
+  power: comparedPower.nullable(),
   notes: z.array(noteSchema),
   run: z.strictObject({ version: z.string(), node: z.string(), started: z.string() }),
 });

@@ -22,4 +22,4 @@ export {
 } from "./parse-result.ts";
 export { differences, type Difference } from "./differences.ts";
 export * from "./comparison-schema.ts";
-export { resolveComparisonChoices } from "./comparison-choices.ts";
+export { findComparisonChoices, resolveComparisonChoices } from "./comparison-choices.ts";

@@ -1,4 +1,5 @@
 import { failure, success, type Issue, type Result, type Wording } from "../base/index.ts";
+import { embeddedDocuments } from "./embedded-documents.ts";
 import { resolveProtocol } from "./resolve-protocol.ts";
 import { RESULT_SCHEMA, resultSchema, type RunglineResult } from "./result-schema.ts";
 
@@ -70,15 +71,18 @@ export function parseProtocolSource(text: string): Result<ProtocolSource, Result
   return success({ choices: results.value[0]!.protocol, results: results.value });
 }
 
-const EMBEDDED = /<script\b[^>]*\btype=["']?application\/json["']?[^>]*>([\s\S]*?)<\/script>/gi;
-
 /** A report may embed other data than results; those are passed over. */
 function documentsIn(text: string): Result<readonly unknown[], ResultIssue> {
-  const bare = text.replace(/^\uFEFF/, "");
   try {
-    if (!bare.trimStart().startsWith("<")) return success([JSON.parse(bare)]);
-    const embedded = Array.from(bare.matchAll(EMBEDDED), (match): unknown => JSON.parse(match[1]!));
-    const results = embedded
+    const documents = embeddedDocuments(text);
+    if (
+      !text
+        .replace(/^\uFEFF/, "")
+        .trimStart()
+        .startsWith("<")
+    )
+      return success(documents);
+    const results = documents
       .flat()
       .filter(
         (json) =>

@@ -1,17 +1,30 @@
-import type { ComparedDifference, ComparedPart, Comparison, TemperatureResult } from "../protocol/index.ts";
+import type {
+  ComparedDifference,
+  ComparedPart,
+  ComparedPower,
+  ComparedSpread,
+  Comparison,
+  TemperatureResult,
+} from "../protocol/index.ts";
 import {
-  LAW_TITLES,
+  LAW_FORMULAS,
   PARAMETER_TITLES,
+  powerPairInWords,
+  powerScatterInWords,
+  powerTitle,
   probability,
+  sampleLabels,
   scatterInWords,
   seriesTitle,
   shownUnit,
+  TEMPERATURE_PARAMETERS,
+  temperatureVerdict,
 } from "./comparison-to-text.ts";
 import { count, measured, numberColumn, textColumn, words, type Cell, type DataTable } from "./data-table.ts";
 import { energyUnit, formatNumber, NOT_DETERMINED_WORDS, type EnergyUnit } from "./format-quantity.ts";
 import { percent } from "./protocol-in-words.ts";
 
-/** The tables of a comparison: samples, means and scatter, differences, quality, temperature. */
+/** The tables of a comparison: samples, means and scatter, differences, quality, temperature, power series. */
 export function comparisonTables(comparison: Comparison): readonly DataTable[] {
   return [
     samplesTable(comparison),
@@ -20,6 +33,7 @@ export function comparisonTables(comparison: Comparison): readonly DataTable[] {
     trendsTable(comparison),
     qualityTable(comparison),
     ...(comparison.temperature === null ? [] : temperatureTables(comparison.temperature)),
+    ...(comparison.power === null ? [] : powerComparisonTables(comparison.power)),
   ].filter((table) => table !== null);
 }
 
@@ -33,6 +47,7 @@ function plain(
 }
 
 function samplesTable({ samples, choices, parameters }: Comparison): DataTable {
+  const labels = sampleLabels({ samples });
   const names = IN_SAMPLES.filter((name) => choices.parameters.includes(name));
   const units = names.map((name) => {
     const values = samples.map((sample) => sample.parameters[name]?.value ?? null);
@@ -53,8 +68,8 @@ function samplesTable({ samples, choices, parameters }: Comparison): DataTable {
       ),
       numberColumn("doubts"),
     ],
-    rows: samples.map((sample) => [
-      words(sample.sample),
+    rows: samples.map((sample, at) => [
+      words(labels[at]!),
       words(sample.batch),
       sample.temperature_K === null ? words("") : count(sample.temperature_K, 4),
       ...names.map((name, i): Cell => {
@@ -250,19 +265,6 @@ function qualityTable({ quality }: Comparison): DataTable | null {
   };
 }
 
-const PARAMETERS: Readonly<Record<string, string>> = {
-  gap0: "E₀",
-  alpha: "α",
-  beta: "β",
-  gapB: "E_B",
-  coupling: "a_B",
-  theta: "Θ",
-  width0: "Γ₀",
-  acoustic: "acoustic coupling",
-  optical: "optical coupling",
-  phonon_energy: "phonon energy",
-};
-
 export function temperatureTables(temperature: TemperatureResult): readonly DataTable[] {
   const rows = temperature.series.flatMap((series) =>
     series.laws.flatMap((law): Cell[][] =>
@@ -271,8 +273,8 @@ export function temperatureTables(temperature: TemperatureResult): readonly Data
           unit.startsWith("eV") && name !== "gap0" && name !== "gapB" ? energyUnit(quantity.value) : null;
         return [
           words(i === 0 ? seriesTitle(series) : ""),
-          words(i === 0 ? LAW_TITLES[law.law] : ""),
-          words(PARAMETERS[name] ?? name),
+          words(i === 0 ? LAW_FORMULAS[law.law] : ""),
+          words(TEMPERATURE_PARAMETERS[name] ?? name),
           measured(
             quantity,
             small?.perElectronvolt ?? 1,
@@ -299,7 +301,82 @@ export function temperatureTables(temperature: TemperatureResult): readonly Data
             textColumn("weight"),
           ],
           rows,
-          remarks: ["Weight: share of the laws by Akaike's criterion."],
+          remarks: [
+            "Weight: share of the laws by Akaike's criterion.",
+            ...temperature.series.map((series) => `${seriesTitle(series)}: ${temperatureVerdict(series)}.`),
+          ],
+        },
+      ];
+}
+
+/** Factor errors have no last place to stand in: value, factor and interval have columns of their own. */
+function powerComparisonTables({ parts, n }: ComparedPower): readonly DataTable[] {
+  const wordsOf = (quantity: ComparedSpread): Cell[] => [
+    quantity.factor === null ? measured(plain(quantity.value, quantity.sigma)) : count(quantity.value, 3),
+    quantity.factor === null ? words("") : count(quantity.factor, 3),
+    words(
+      quantity.value === null ? "" : `${formatNumber(quantity.low, 3)} to ${formatNumber(quantity.high, 3)}`,
+    ),
+  ];
+  const unitInWords = (unit: string): string => (unit === "" ? "" : ` / ${unit}`);
+  const values: DataTable = {
+    name: "power-values",
+    title: `Power series by sample and batch${n === null ? "" : `, at *n* = ${n}`}`,
+    columns: [
+      textColumn("quantity"),
+      textColumn("batch"),
+      textColumn("sample"),
+      textColumn("value"),
+      textColumn("error factor"),
+      textColumn("interval"),
+      textColumn("expected, or why there is none"),
+    ],
+    rows: parts.flatMap((part): Cell[][] => [
+      ...part.samples.map((one, i): Cell[] => [
+        words(i === 0 ? `${powerTitle(part)}${unitInWords(part.unit)}` : ""),
+        words(one.batch),
+        words(one.sample),
+        ...(one.left_out === null
+          ? wordsOf(one.quantity)
+          : [words(NOT_DETERMINED_WORDS), words(""), words("")]),
+        one.left_out === null
+          ? one.expected === null
+            ? words("")
+            : count(one.expected, 3)
+          : words(`${one.left_out}${one.limit === null ? "" : `, below ${formatNumber(one.limit, 3)}`}`),
+      ]),
+      ...part.batches.map(({ batch, samples, mean }): Cell[] => [
+        words(""),
+        words(batch),
+        words(samples === 1 ? "the batch, of one" : `mean of ${samples}`),
+        ...wordsOf(mean),
+        words(""),
+      ]),
+    ]),
+    remarks: [
+      "An error factor f means value times or over f; means of such values are geometric.",
+      ...parts.map(
+        (part) =>
+          `${powerTitle(part)}: scatter within batches ${powerScatterInWords(part, part.within)}, between ${powerScatterInWords(part, part.between)}.`,
+      ),
+    ],
+  };
+  const rows = parts.flatMap((part): Cell[][] =>
+    (part.shifts.length > 0 ? part.shifts : part.pairs).map((pair) => [
+      words(powerTitle(part)),
+      words(powerPairInWords(part, pair)),
+    ]),
+  );
+  return rows.length === 0
+    ? [values]
+    : [
+        values,
+        {
+          name: "power-differences",
+          title: "Power series: ratios and differences of batches",
+          columns: [textColumn("quantity"), textColumn("verdict")],
+          rows,
+          remarks: [],
         },
       ];
 }

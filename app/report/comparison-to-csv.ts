@@ -1,4 +1,5 @@
-import { comparisonSchema, type Comparison } from "../protocol/index.ts";
+import { comparisonSchema, type ComparedSpread, type Comparison } from "../protocol/index.ts";
+import { comparisonNotes } from "./comparison-to-text.ts";
 import { csvLine } from "./csv.ts";
 
 export const COMPARISON_CSV_COLUMNS = [
@@ -113,14 +114,25 @@ export function comparisonToCsv(comparison: Comparison): string {
         text: trend.seen ? "seen" : "no trend seen",
       });
   }
-  for (const { sample, batch, figure } of comparison.quality?.samples ?? [])
+  for (const { name, weight, origin, scale } of comparison.quality?.parts ?? [])
+    row({
+      section: "quality_part",
+      parameter: name,
+      value: weight,
+      text: `weight of (value - ${origin})/${scale}`,
+    });
+  for (const { sample, batch, figure, contributions } of comparison.quality?.samples ?? []) {
     row({ section: "quality", first: sample, second: batch, ...figure });
+    for (const [parameter, value] of Object.entries(contributions))
+      row({ section: "quality_contribution", parameter, first: sample, second: batch, value });
+  }
   for (const series of comparison.temperature?.series ?? []) {
     for (const { temperature_K, value, sigma } of series.points)
       row({
         section: "temperature_point",
         parameter: series.quantity,
         first: String(temperature_K),
+        second: series.sample,
         value,
         sigma,
         unit: "eV",
@@ -134,6 +146,7 @@ export function comparisonToCsv(comparison: Comparison): string {
           second: name,
           ...quantity,
           unit,
+          text: series.sample,
         });
       row({
         section: "temperature_fit",
@@ -142,11 +155,55 @@ export function comparisonToCsv(comparison: Comparison): string {
         value: law.chi2,
         dof: law.dof,
         p: law.p,
+        second: series.sample,
         text: `AIC ${law.aic ?? ""}, weight ${law.weight ?? ""}`,
       });
     }
   }
-  for (const note of [...comparison.notes, ...(comparison.temperature?.notes ?? [])])
+  for (const part of comparison.power?.parts ?? []) {
+    const common = {
+      parameter: part.n === null ? `power.${part.name}` : `power.${part.name}[${part.n}]`,
+      unit: part.unit,
+    };
+    const factorOf = ({ factor }: ComparedSpread): string => (factor === null ? "" : `factor ${factor}`);
+    const plain = ({ value, sigma, low, high }: ComparedSpread): Cells => ({ value, sigma, low, high });
+    for (const { sample, batch, quantity, left_out } of part.samples)
+      row({
+        section: "power_sample",
+        ...common,
+        first: sample,
+        second: batch,
+        ...plain(quantity),
+        text: left_out ?? factorOf(quantity),
+      });
+    for (const { batch, mean, samples } of part.batches)
+      row({
+        section: "power_batch",
+        ...common,
+        first: batch,
+        ...plain(mean),
+        text: `${samples} samples${part.logarithmic ? `, ${factorOf(mean)}` : ""}`,
+      });
+    for (const [section, list] of [
+      ["power_pair", part.pairs],
+      ["power_shift", part.shifts],
+    ] as const)
+      for (const { first, second, difference, dof, p, p_corrected, seen, detectable } of list)
+        row({
+          section,
+          ...common,
+          unit: part.logarithmic ? "" : part.unit,
+          first,
+          second,
+          ...plain(difference),
+          dof,
+          p,
+          p_corrected,
+          detectable,
+          text: `${part.logarithmic ? "ratio" : "difference"}, ${seen ? "seen" : "no difference seen"}`,
+        });
+  }
+  for (const note of comparisonNotes(comparison))
     row({
       section: "note",
       first: note.code,

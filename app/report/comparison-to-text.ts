@@ -1,4 +1,11 @@
-import type { ComparedParameter, ComparedPart, Comparison, TemperatureSeries } from "../protocol/index.ts";
+import type {
+  ComparedParameter,
+  ComparedPart,
+  ComparedPowerPart,
+  ComparedSpread,
+  Comparison,
+  TemperatureSeries,
+} from "../protocol/index.ts";
 import {
   energyUnit,
   ELECTRONVOLT,
@@ -60,11 +67,12 @@ export function comparisonToText(comparison: Comparison): string {
     ...parameters.flatMap((part) => (part.samples === 0 ? [] : partInText(part, comparison))),
     ...qualityInText(comparison),
     ...temperatureInText(comparison),
-    ...(comparison.notes.length + (comparison.temperature?.notes.length ?? 0) === 0
+    ...powerInText(comparison),
+    ...(comparisonNotes(comparison).length === 0
       ? []
       : [
           ...heading("Notes"),
-          ...gravestFirst([...comparison.notes, ...(comparison.temperature?.notes ?? [])]).flatMap((note) => {
+          ...gravestFirst(comparisonNotes(comparison)).flatMap((note) => {
             const [first, ...rest] = wrap(noteLine(note), "    ");
             return [`  ${first!.trimStart()}`, ...rest];
           }),
@@ -73,6 +81,11 @@ export function comparisonToText(comparison: Comparison): string {
     ...wrap(COMPARISON_METHODS, "  "),
   ];
   return `${lines.join("\n").trimEnd()}\n`;
+}
+
+/** All notes of a comparison with those of its parts. */
+export function comparisonNotes({ notes, temperature, power }: Comparison): Comparison["notes"] {
+  return [...notes, ...(temperature?.notes ?? []), ...(power?.notes ?? [])];
 }
 
 /** A probability that a double cannot hold is told as a bound. */
@@ -248,6 +261,85 @@ export function scatterInWords(
     : `${bare(scatter.tau, unit, small)} (${ends})`;
 }
 
+export const POWER_TITLES: Readonly<Record<ComparedPowerPart["name"], string>> = {
+  saturation_per_uW: "bleaching at low power",
+  blockade_volume_um3: "blockade volume",
+  exponent: "exponent of the bleaching",
+};
+
+export function powerTitle({ name, n }: ComparedPowerPart): string {
+  return n === null ? POWER_TITLES[name] : `${POWER_TITLES[name]}, n = ${n}`;
+}
+
+/** A positive number whose error is a factor: 12.3 /× 1.2, with the ends of its interval; else value(error). */
+export function spreadInWords(quantity: ComparedSpread, unit: string): string {
+  const { value, sigma, low, high, factor } = quantity;
+  const after = unit === "" ? "" : ` ${unit}`;
+  if (value === null) return NOT_DETERMINED_WORDS;
+  if (factor === null) return formatQuantity(value, sigma, unit);
+  return `${formatNumber(value, 3)}${after} ×/÷ ${formatNumber(factor, 3)} (${formatNumber(low, 3)} to ${formatNumber(high, 3)})`;
+}
+
+/** What one pair differs by: a ratio of numbers with factors as errors, else a difference. */
+export function powerPairInWords(part: ComparedPowerPart, pair: ComparedPowerPart["pairs"][number]): string {
+  const what = part.logarithmic ? `${pair.second}/${pair.first}` : `${pair.second} - ${pair.first}`;
+  const size = spreadInWords(pair.difference, part.logarithmic ? "" : part.unit);
+  const could =
+    pair.detectable === null
+      ? ""
+      : `; ${part.logarithmic ? "a factor of " : ""}${formatNumber(pair.detectable, 3)} would have been seen`;
+  return `${what}: ${pair.seen ? "" : "no difference seen, "}${size}, ${probability(pair.p_corrected)}${pair.seen ? "" : could}`;
+}
+
+export function powerScatterInWords(
+  { logarithmic }: ComparedPowerPart,
+  scatter: ComparedPart["within"],
+): string {
+  const { tau, low, high } = scatter;
+  if (tau === null) return NOT_DETERMINED_WORDS;
+  const factor = logarithmic ? "a factor of " : "";
+  const none = logarithmic ? 1 : 0;
+  return tau === none
+    ? `none seen beyond the errors (up to ${factor}${formatNumber(high, 3)})`
+    : `${factor}${formatNumber(tau, 3)} (${formatNumber(low, 3)} to ${formatNumber(high, 3)})`;
+}
+
+function powerInText({ power }: Comparison): string[] {
+  if (power === null) return [];
+  return [
+    ...heading("Power series"),
+    ...power.parts.flatMap((part) => {
+      const rows = [
+        [powerTitle(part), "batch", "value", "expected"],
+        ...part.samples.map(({ sample, batch, quantity, limit, expected, left_out }) => [
+          sample,
+          batch,
+          left_out === null
+            ? spreadInWords(quantity, part.unit)
+            : `${limit === null ? "" : `below ${formatNumber(limit, 3)} ${part.unit}; `}${left_out}`,
+          expected === null ? "" : formatNumber(expected, 3),
+        ]),
+      ];
+      const list = part.shifts.length > 0 ? part.shifts : part.pairs;
+      return [
+        ...textTable(rows, ["left", "left", "left", "right"]),
+        ...part.batches.flatMap(({ batch, samples, mean }) =>
+          wrap(
+            `batch ${batch}, ${count(samples, "sample", "samples")}: ${spreadInWords(mean, part.unit)}`,
+            "  ",
+          ),
+        ),
+        ...wrap(
+          `scatter within batches ${powerScatterInWords(part, part.within)}; between ${powerScatterInWords(part, part.between)}`,
+          "  ",
+        ),
+        ...list.flatMap((pair) => wrap(powerPairInWords(part, pair), "  ")),
+        "",
+      ];
+    }),
+  ];
+}
+
 function qualityInText({ quality }: Comparison): string[] {
   if (quality === null) return [];
   const names = quality.parts.map((part) => part.name);
@@ -275,7 +367,7 @@ function qualityInText({ quality }: Comparison): string[] {
   ];
 }
 
-export const LAW_TITLES = {
+export const LAW_FORMULAS = {
   varshni: "Varshni, E0 - alpha T^2/(T + beta)",
   "bose-einstein": "Bose-Einstein, EB - a [1 + 2/(exp(Theta/T) - 1)]",
   phonons: "phonons, G0 + a T + b/(exp(hw/kT) - 1)",
@@ -283,19 +375,45 @@ export const LAW_TITLES = {
   acoustic: "acoustic phonons, G0 + a T",
 } as const;
 
+export const TEMPERATURE_LAW_NAMES: Readonly<Record<keyof typeof LAW_FORMULAS, string>> = {
+  varshni: "Varshni",
+  "bose-einstein": "Bose-Einstein",
+  phonons: "acoustic and optical phonons",
+  optical: "optical phonons",
+  acoustic: "acoustic phonons",
+};
+
+export const TEMPERATURE_PARAMETERS: Readonly<Record<string, string>> = {
+  gap0: "E₀",
+  alpha: "α",
+  beta: "β",
+  gapB: "E_B",
+  coupling: "a_B",
+  theta: "Θ",
+  width0: "Γ₀",
+  acoustic: "acoustic coupling",
+  optical: "optical coupling",
+  phonon_energy: "phonon energy",
+};
+
+/** Which law of temperature the data prefer, and whether they decide. */
+export function temperatureVerdict({ laws, preferred, decided }: TemperatureSeries): string {
+  const best = laws.find(({ law }) => law === preferred);
+  if (best === undefined) return "no law fitted";
+  const name = TEMPERATURE_LAW_NAMES[best.law];
+  if (laws.length === 1) return `${name} is the only law that so few temperatures allow`;
+  return decided ? `the data prefer ${name}` : `${name} lies nearest, the data do not decide`;
+}
+
 function temperatureInText({ temperature }: Comparison): string[] {
   if (temperature === null || temperature.series.length === 0) return [];
   return [
     ...heading("Against temperature"),
     ...temperature.series.flatMap((series) => [
-      `  ${seriesTitle(series)}, ${count(series.points.length, "point", "points")}: ${
-        series.preferred === null
-          ? "no law fitted"
-          : `${series.preferred} has the lowest information criterion${series.decided ? "" : ", not decided"}`
-      }`,
+      `  ${seriesTitle(series)}, ${count(series.points.length, "point", "points")}: ${temperatureVerdict(series)}`,
       ...series.laws.flatMap((law) =>
         wrap(
-          `${LAW_TITLES[law.law]}: ${law.parameters
+          `${LAW_FORMULAS[law.law]}: ${law.parameters
             .map(({ name, unit, quantity }) => {
               const energy =
                 unit === "eV" && name !== "gap0" && name !== "gapB" ? energyUnit(quantity.value) : null;
@@ -311,7 +429,19 @@ function temperatureInText({ temperature }: Comparison): string[] {
   ];
 }
 
-export function seriesTitle({ quantity, n }: TemperatureSeries): string {
-  if (quantity === "gap_eV") return "gap";
-  return n === null ? "floor of the widths" : `width of n = ${n}`;
+export function seriesTitle({ quantity, n, sample }: TemperatureSeries): string {
+  const what = quantity === "gap_eV" ? "gap" : n === null ? "floor of the widths" : `width of n = ${n}`;
+  return sample === null ? what : `${what}, ${sample}`;
+}
+
+/** Names of samples as rows show them: what is there several times carries its temperature, or its place along the trend. */
+export function sampleLabels({ samples }: Pick<Comparison, "samples">): readonly string[] {
+  const times = new Map<string, number>();
+  const key = ({ sample, batch }: Comparison["samples"][number]): string => `${batch}\n${sample}`;
+  for (const sample of samples) times.set(key(sample), (times.get(key(sample)) ?? 0) + 1);
+  return samples.map((sample) => {
+    if (times.get(key(sample)) === 1) return sample.sample;
+    if (sample.temperature_K !== null) return `${sample.sample}, ${formatNumber(sample.temperature_K)} K`;
+    return sample.against === null ? sample.sample : `${sample.sample}, ${formatNumber(sample.against)}`;
+  });
 }

@@ -17,7 +17,21 @@ export {
 } from "./summary.ts";
 export { resultToJson, resultsToJson, protocolToJson } from "./result-to-json.ts";
 export { inspectionToText, type ReadingShown } from "./inspection-to-text.ts";
-export { comparisonToText, COMPARISON_TEXT_MARK, PARAMETER_TITLES } from "./comparison-to-text.ts";
+export {
+  comparisonNotes,
+  comparisonToText,
+  COMPARISON_TEXT_MARK,
+  LAW_FORMULAS,
+  PARAMETER_TITLES,
+  powerPairInWords,
+  powerScatterInWords,
+  powerTitle,
+  sampleLabels,
+  seriesTitle,
+  spreadInWords,
+  temperatureVerdict,
+  TEMPERATURE_PARAMETERS,
+} from "./comparison-to-text.ts";
 export {
   resultToLatex,
   comparisonToLatex,

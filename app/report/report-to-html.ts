@@ -1,7 +1,13 @@
-import type { Comparison, Protocol, RunglineResult } from "../protocol/index.ts";
+import {
+  COMPARISON_CHOICES_SCHEMA,
+  type Comparison,
+  type Protocol,
+  type RunglineResult,
+} from "../protocol/index.ts";
 import { signalName } from "./area-unit.ts";
 import { cautionsFor, CRYOGEN_CAUTION, LASER_CAUTION } from "./cautions.ts";
 import { comparisonTables } from "./comparison-tables.ts";
+import { comparisonNotes } from "./comparison-to-text.ts";
 import type { FittedCurves } from "./curves-csv.ts";
 import type { DataTable } from "./data-table.ts";
 import { ELECTRONVOLT, energyUnit, formatEnergy, formatNumber, formatQuantity } from "./format-quantity.ts";
@@ -120,7 +126,7 @@ export function reportToHtml(input: ReportInput): string {
 </head>
 <body>
 ${body.join("\n")}
-${input.results.map(embedded).join("\n")}
+${[...input.results, ...choicesOf(input.comparison)].map(embedded).join("\n")}
 </body>
 </html>
 `;
@@ -134,9 +140,14 @@ function lead({ results, run }: ReportInput): string {
   );
 }
 
+/** How the samples were compared, so that the same comparison can be had from the report. */
+function choicesOf(comparison: Comparison | null): object[] {
+  return comparison === null ? [] : [{ schema: COMPARISON_CHOICES_SCHEMA, choices: comparison.choices }];
+}
+
 /** In HTML data the only thing that could end the element is its closing tag. */
-function embedded(result: RunglineResult): string {
-  return `<script type="application/json">${JSON.stringify(result).replaceAll("<", "\\u003c")}</script>`;
+function embedded(data: object): string {
+  return `<script type="application/json">${JSON.stringify(data).replaceAll("<", "\\u003c")}</script>`;
 }
 
 function doubts(result: RunglineResult): number {
@@ -189,7 +200,7 @@ function number(text: string): string {
 
 function comparisonSection(comparison: Comparison | null, { comparison: shown }: ReportContents): string[] {
   if (comparison === null || shown === null) return [];
-  const notes = [...comparison.notes, ...(comparison.temperature?.notes ?? [])];
+  const notes = comparisonNotes(comparison);
   return [
     `<section id="comparison"><h2>Comparison</h2>`,
     shown.tables.map(tableToHtml).join("\n"),
@@ -408,6 +419,6 @@ function repeatSection({ results }: ReportInput): string {
     )
     .join("\n");
   return `<section id="repeat"><h2>To repeat the run</h2>
-<p>This file carries its results and their protocol as data: <code>rungline fit FILE --protocol REPORT.html</code> repeats the run of one protocol to the last bit and names a changed input, protocol or version; <code>rungline compare REPORT.html</code> reads the results again. Inputs are known by their SHA-256.</p>
+<p>This file carries its results and their protocol as data: <code>rungline fit FILE --protocol REPORT.html</code> repeats the run of one protocol to the last bit and names a changed input, protocol or version; <code>rungline compare REPORT.html --choices REPORT.html</code> repeats the comparison with its weights and typed columns. Inputs are known by their SHA-256.</p>
 <div class="table"><table><caption>Inputs and versions</caption><thead><tr><th scope="col">file</th><th scope="col">SHA-256</th><th scope="col">version</th><th scope="col">runtime</th><th scope="col">fitted</th></tr></thead><tbody>${rows}</tbody></table></div></section>`;
 }

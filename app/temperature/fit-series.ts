@@ -90,7 +90,7 @@ const DECIDED = 6;
  * What      The laws of gap or width against temperature fitted to one series, each with errors, and which of them the
  *           data prefer by Akaike's criterion for known errors, chi2/c + 2 k; c is 1, or the reduced chi square of the best
  *           law where even that is rejected (then chi square in stated errors would decide too much).
- * Shapes    points (m), any order.
+ * Shapes    points (m), any order; grid: temperatures at which each law is evaluated for a figure.
  * Units     K, eV.
  * Domain    A law is fitted where there is at least one point more than it has parameters, at different temperatures;
  *           laws without that are left out. Errors are scaled by the root of reduced chi square where p < 0.01.
@@ -102,11 +102,12 @@ export function fitTemperatureSeries(
   kind: "gap" | "width",
   points: readonly TemperaturePoint[],
   factor: number,
+  grid: readonly number[] = [],
 ): Pick<TemperatureSeries, "laws" | "preferred" | "decided"> {
   const different = new Set(points.map((point) => point.temperature_K)).size;
   const plain = (kind === "gap" ? GAP_LAWS : WIDTH_LAWS)
     .filter((law) => different > law.parameters.length)
-    .map((law) => fitOne(law, points, factor));
+    .map((law) => fitOne(law, points, factor, grid));
   // Where even the best law is rejected the stated errors are too small, and chi square counts in scaled ones.
   const inflation = Math.min(...plain.filter((law) => law.stationary).map((law) => law.scaled_by ** 2));
   const fitted = plain.map((law) => ({
@@ -138,7 +139,12 @@ export function fitTemperatureSeries(
   return { laws, preferred: best?.law ?? null, decided };
 }
 
-function fitOne(law: LawChoice, points: readonly TemperaturePoint[], factor: number): TemperatureLaw {
+function fitOne(
+  law: LawChoice,
+  points: readonly TemperaturePoint[],
+  factor: number,
+  grid: readonly number[],
+): TemperatureLaw {
   const m = points.length;
   const data = Float64Array.from(points, (point) => point.value);
   const sigmas = Float64Array.from(points, (point) => point.sigma);
@@ -185,6 +191,10 @@ function fitOne(law: LawChoice, points: readonly TemperaturePoint[], factor: num
     weight: null,
     stationary: fit.stationary,
     scaled_by: scaled,
+    curve: grid.map((temperature) => {
+      law.evaluate(temperature, fit.values, out);
+      return Number.isFinite(out[0]!) ? out[0]! : null;
+    }),
   };
 }
 

@@ -12,12 +12,16 @@ const FEWEST_POINTS = 4;
 /** Below this range neither law can be told from a parabola. */
 const SHORT_RANGE_K = 20;
 
+/** Steps of the curves of the laws from 0 K to a little above the highest temperature. */
+const GRID_STEPS = 60;
+
 /**
  * Gap, floor of the widths and the width of every line that is there at enough temperatures, against temperature.
- * `systematic`: whether the systematic part of the gap counts, in quadrature; it is common to spectra of one set-up.
+ * `whose`: the sample, null where there are several. `systematic`: whether the systematic part of the gap counts, in quadrature; it is common to spectra of one set-up.
  */
 export function temperatureSeriesOf(
   readings: readonly TemperatureReading[],
+  whose: { readonly sample: string; readonly batch: string } | null,
   systematic: boolean,
   factor: number,
 ): TemperatureResult {
@@ -26,22 +30,32 @@ export function temperatureSeriesOf(
     .sort((one, other) => one.temperature_K - other.temperature_K);
   const series: TemperatureSeries[] = [];
   const notes: Note[] = [];
+  const highest = Math.max(0, ...sorted.map((one) => one.temperature_K));
+  const grid = Array.from({ length: GRID_STEPS + 1 }, (_, i) => (1.04 * highest * i) / GRID_STEPS);
   const add = (
     kind: "gap" | "width",
     quantity: string,
     n: number | null,
     pick: (result: RunglineResult) => { value: number | null; sigma: number | null } | undefined,
   ): void => {
-    const points = sorted.flatMap(({ result, temperature_K }): TemperaturePoint[] => {
+    const points = sorted.flatMap(({ result, temperature_K }): (TemperaturePoint & { file: string })[] => {
       const one = pick(result);
       return one === undefined || one.value === null || one.sigma === null || !(one.sigma > 0)
         ? []
-        : [{ temperature_K, value: one.value, sigma: one.sigma }];
+        : [{ temperature_K, value: one.value, sigma: one.sigma, file: result.source.file }];
     });
     const different = new Set(points.map((point) => point.temperature_K)).size;
     if (different < (kind === "gap" ? FEWEST_POINTS : 3)) return;
-    const found = fitTemperatureSeries(kind, points, factor);
-    series.push({ quantity, n, points, ...found });
+    const found = fitTemperatureSeries(kind, points, factor, grid);
+    series.push({
+      quantity,
+      n,
+      sample: whose?.sample ?? null,
+      batch: whose?.batch ?? null,
+      points,
+      grid_K: grid,
+      ...found,
+    });
     notes.push(...doubtsOf(quantity, found));
   };
   add("gap", "gap_eV", null, ({ series: levels, systematic: part }) => {

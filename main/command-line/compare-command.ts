@@ -2,12 +2,15 @@ import { readFile } from "node:fs/promises";
 import { resolve } from "node:path";
 import {
   COMPARED_PARAMETERS,
+  findComparisonChoices,
+  resolveComparisonChoices,
   wordProtocolIssue,
   type Comparison,
   type ComparisonChoicesInput,
   type ProtocolIssue,
 } from "../../app/protocol/index.ts";
 import {
+  comparisonNotes,
   comparisonToCsv,
   comparisonToJson,
   comparisonToLatex,
@@ -37,6 +40,8 @@ export interface CompareOptions {
   readonly parameters?: string;
   readonly quality?: string;
   readonly alpha?: number;
+  readonly powerN?: number;
+  readonly choices?: string;
   readonly out?: string;
   readonly format?: Format;
 }
@@ -72,8 +77,7 @@ export async function compareCommand(
     return compared.issues.some((issue) => issue.code === "batch/too-few") ? EXIT.input : EXIT.usage;
   }
   const comparison = compared.value;
-  for (const note of gravestFirst([...comparison.notes, ...(comparison.temperature?.notes ?? [])]))
-    io.stderr(`  ${noteLine(note)}\n`);
+  for (const note of gravestFirst(comparisonNotes(comparison))) io.stderr(`  ${noteLine(note)}\n`);
   const format = options.format ?? (out === null ? "text" : formatOf(out));
   const text = RENDER[format](comparison);
   if (out === null) await io.stdout(text);
@@ -98,14 +102,17 @@ export async function comparisonChoicesFrom(
   options: CompareOptions,
   workingFolder: string,
 ): Promise<ComparisonChoicesInput> {
-  const { reference, against, errors, alpha, parameters, quality, values } = options;
+  const { reference, against, errors, alpha, parameters, quality, values, powerN } = options;
+  const file = options.choices === undefined ? {} : await readChoicesFile(options.choices, workingFolder);
   return {
+    ...file,
     ...(reference !== undefined && { reference }),
     ...(against !== undefined && { against }),
     ...(errors !== undefined && { errors }),
     ...(alpha !== undefined && { alpha }),
     ...(parameters !== undefined && { parameters: parameters.split(",").map((one) => knownName(one)) }),
     ...(quality !== undefined && { quality: weightsFrom(quality) }),
+    ...(powerN !== undefined && { power_n: powerN }),
     ...(values !== undefined && { values: await readValues(values, workingFolder) }),
   };
 }
@@ -130,6 +137,25 @@ function weightsFrom(text: string): Partial<Record<Name, number>> {
       return [knownName(name), Number(weight)];
     }),
   );
+}
+
+/** Choices of an earlier comparison; what is given beside them wins. */
+async function readChoicesFile(file: string, workingFolder: string): Promise<ComparisonChoicesInput> {
+  let text: string;
+  try {
+    text = await readFile(resolve(workingFolder, file), "utf8");
+  } catch (cause) {
+    throw new UsageError(`--choices ${file}: ${reasonInWords(cause)}`);
+  }
+  const found = findComparisonChoices(text);
+  if (found === null)
+    throw new UsageError(
+      `--choices ${file}: no choices of a comparison; give a comparison as JSON or a report of several samples`,
+    );
+  const resolved = resolveComparisonChoices(found);
+  if (resolved.ok) return resolved.value;
+  const { message, remedy } = wordIssue(resolved.issues[0]!);
+  throw new UsageError(`--choices ${file}: ${message.replace(/^comparison: /, "")}; ${remedy}`);
 }
 
 async function readValues(file: string, workingFolder: string): Promise<ReturnType<typeof typedValues>> {

@@ -5,11 +5,21 @@ import {
   comparisonToCsv,
   comparisonToLatex,
   curvesFromCsv,
-  figureFile,
+  FIGURE_DPI,
+  FIGURE_KINDS,
+  FULL_WIDTH_MM,
+  makeFigurePress,
+  NARROWEST_MM,
+  ONE_COLUMN_MM,
+  OWN_SIZE,
   reportContents,
   reportToHtml,
   resultToCsv,
   resultToLatex,
+  WIDEST_MM,
+  type FigureChoices,
+  type FigureKind,
+  type FigurePress,
   type FittedCurves,
   type ReportInput,
 } from "../../app/report/index.ts";
@@ -28,9 +38,15 @@ import type { CommandLineIo } from "./command-line-io.ts";
 import { comparisonChoicesFrom, wordIssue, type CompareOptions } from "./compare-command.ts";
 import { EXIT, UsageError } from "./exit-status.ts";
 
-export interface ReportOptions extends Pick<CompareOptions, "reference" | "against" | "values"> {
+export interface ReportOptions extends Pick<
+  CompareOptions,
+  "reference" | "against" | "values" | "errors" | "quality" | "powerN" | "choices"
+> {
   readonly out?: string;
   readonly figures?: string;
+  readonly figureKinds?: string;
+  readonly figureWidth?: string;
+  readonly figureDpi?: string;
   readonly tables?: string;
 }
 
@@ -38,7 +54,7 @@ interface Output {
   readonly file: string;
   readonly kind: OutputKind;
   /** Made when it is written: many figures need not be held at once. */
-  readonly text: () => string;
+  readonly content: () => string | Promise<Uint8Array>;
 }
 
 /** `rungline report RESULT...`: one HTML file, and figures and tables alone. */
@@ -48,6 +64,7 @@ export async function reportCommand(
   io: CommandLineIo,
 ): Promise<number> {
   const choices = await comparisonChoicesFrom(options, io.workingFolder);
+  const look = figureLookFrom(options);
   const out = options.out === undefined ? null : resolve(io.workingFolder, options.out);
   if (out !== null) {
     if ((await pathKind(out)) === "folder") throw new UsageError(`--out ${options.out}: is a folder`);
@@ -75,11 +92,12 @@ export async function reportCommand(
   }
   const curves = await Promise.all(results.map((result, i) => curvesBeside(result, paths, i, io)));
   const input: ReportInput = { results, curves, comparison, run };
+  const press = options.figures === undefined ? null : await openPress();
   const outputs: Output[] = [
-    ...(out === null ? [] : [{ file: out, kind: "report" as const, text: () => reportToHtml(input) }]),
-    ...(options.figures === undefined
+    ...(out === null ? [] : [{ file: out, kind: "report" as const, content: () => reportToHtml(input) }]),
+    ...(press === null
       ? []
-      : figureOutputs(resolve(io.workingFolder, options.figures), input, paths)),
+      : figureOutputs(resolve(io.workingFolder, options.figures!), input, paths, press, look)),
     ...(options.tables === undefined
       ? []
       : tableOutputs(resolve(io.workingFolder, options.tables), input, paths)),
@@ -89,7 +107,11 @@ export async function reportCommand(
   for (const { file, kind } of outputs) await refuseOther(file, kind);
   for (const folder of [options.figures, options.tables])
     if (folder !== undefined) await makeFolder(resolve(io.workingFolder, folder));
-  for (const { file, text } of outputs) await writeWhole(file, text());
+  for (const { file, content } of outputs) await writeWhole(file, await content());
+  for (const character of press?.missing() ?? [])
+    io.stderr(
+      `rungline: the typeface of the figures has no sign for "${character}": another stands for it\n`,
+    );
   return refused.length > 0 ? EXIT.input : EXIT.done;
 }
 
@@ -135,23 +157,91 @@ function namesOf(input: ReportInput, paths: readonly string[]): string[] {
   );
 }
 
-function figureOutputs(folder: string, input: ReportInput, paths: readonly string[]): Output[] {
+/** Which files a figure becomes, and how large. */
+interface FigureLook {
+  readonly kinds: readonly FigureKind[];
+  readonly choices: FigureChoices;
+}
+
+function figureLookFrom(options: ReportOptions): FigureLook {
+  const { figures, figureKinds, figureWidth, figureDpi } = options;
+  const kinds = kindsFrom(figureKinds ?? FIGURE_KINDS[0]);
+  for (const [option, value] of [
+    ["--figure-kinds", figureKinds],
+    ["--figure-width", figureWidth],
+    ["--figure-dpi", figureDpi],
+  ])
+    if (value !== undefined && figures === undefined)
+      throw new UsageError(`${option} says how figures are written: name their folder with --figures`);
+  if (figureDpi !== undefined && !kinds.includes("png"))
+    throw new UsageError("--figure-dpi is for PNG: ask for it with --figure-kinds png");
+  return {
+    kinds,
+    choices: {
+      width_mm: figureWidth === undefined ? null : widthFrom(figureWidth),
+      dpi: figureDpi === undefined ? OWN_SIZE.dpi : dpiFrom(figureDpi),
+    },
+  };
+}
+
+function kindsFrom(words: string): readonly FigureKind[] {
+  const found = words.split(",").map((word) => {
+    const bare = word.trim().toLowerCase().replace(/^\./, "");
+    const kind = FIGURE_KINDS.find((one) => one === bare);
+    if (kind === undefined)
+      throw new UsageError(
+        `--figure-kinds ${words}: "${word.trim()}" is none of ${FIGURE_KINDS.join(", ")}; several are separated by commas`,
+      );
+    return kind;
+  });
+  return [...new Set(found)];
+}
+
+const WIDTH_NAMES: Readonly<Record<string, number>> = { column: ONE_COLUMN_MM, page: FULL_WIDTH_MM };
+
+function widthFrom(words: string): number {
+  const width = WIDTH_NAMES[words] ?? Number(words.replace(/\s*mm$/, ""));
+  if (words.trim() === "" || !(width >= NARROWEST_MM && width <= WIDEST_MM))
+    throw new UsageError(
+      `--figure-width ${words}: is column (${ONE_COLUMN_MM} mm), page (${FULL_WIDTH_MM} mm) or a number of mm from ${NARROWEST_MM} to ${WIDEST_MM}`,
+    );
+  return width;
+}
+
+function dpiFrom(words: string): number {
+  const dpi = FIGURE_DPI.find((one) => String(one) === words);
+  if (dpi === undefined) throw new UsageError(`--figure-dpi ${words}: is one of ${FIGURE_DPI.join(", ")}`);
+  return dpi;
+}
+
+/** Only where figures are asked for: typefaces and what writes PDF are large. */
+async function openPress(): Promise<FigurePress> {
+  const { drawingTools } = await import("../services/drawing-tools.ts");
+  return makeFigurePress(await drawingTools());
+}
+
+function figureOutputs(
+  folder: string,
+  input: ReportInput,
+  paths: readonly string[],
+  press: FigurePress,
+  { kinds, choices }: FigureLook,
+): Output[] {
   const names = namesOf(input, paths);
   const { samples, comparison } = reportContents(input);
-  return [
-    ...samples.flatMap(({ figures }, i) =>
-      figures.map((figure): Output => ({
-        file: join(folder, `${names[i]!}-${figure.name}.svg`),
-        kind: "figure",
-        text: () => figureFile(figure),
-      })),
+  const figures = [
+    ...samples.flatMap((sample, i) =>
+      sample.figures.map((figure) => ({ name: `${names[i]!}-${figure.name}`, figure })),
     ),
-    ...(comparison?.figures ?? []).map((figure): Output => ({
-      file: join(folder, `${figure.name}.svg`),
-      kind: "figure",
-      text: () => figureFile(figure),
-    })),
+    ...(comparison?.figures ?? []).map((figure) => ({ name: figure.name, figure })),
   ];
+  return figures.flatMap(({ name, figure }) =>
+    kinds.map((kind): Output => ({
+      file: join(folder, `${name}.${kind}`),
+      kind: "figure",
+      content: () => press.make(figure, kind, choices),
+    })),
+  );
 }
 
 function tableOutputs(folder: string, input: ReportInput, paths: readonly string[]): Output[] {
@@ -159,8 +249,8 @@ function tableOutputs(folder: string, input: ReportInput, paths: readonly string
   const { comparison } = input;
   return [
     ...input.results.flatMap((result, i): Output[] => [
-      { file: join(folder, `${names[i]!}.tex`), kind: "result", text: () => resultToLatex(result) },
-      { file: join(folder, `${names[i]!}.csv`), kind: "result", text: () => resultToCsv(result) },
+      { file: join(folder, `${names[i]!}.tex`), kind: "result", content: () => resultToLatex(result) },
+      { file: join(folder, `${names[i]!}.csv`), kind: "result", content: () => resultToCsv(result) },
     ]),
     ...(comparison === null
       ? []
@@ -168,12 +258,12 @@ function tableOutputs(folder: string, input: ReportInput, paths: readonly string
           {
             file: join(folder, "comparison.tex"),
             kind: "comparison" as const,
-            text: () => comparisonToLatex(comparison),
+            content: () => comparisonToLatex(comparison),
           },
           {
             file: join(folder, "comparison.csv"),
             kind: "comparison" as const,
-            text: () => comparisonToCsv(comparison),
+            content: () => comparisonToCsv(comparison),
           },
         ]),
   ];

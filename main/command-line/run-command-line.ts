@@ -143,6 +143,8 @@ function describeProgram(
     )
     .option("--parameters <names>", "what is compared, separated by commas", once())
     .option("--quality <weights>", "weights of a figure of quality: highest_n=1,width_floor=-1", once())
+    .option("--power-n <n>", "the line at which power series are compared", wholeNumber)
+    .option("--choices <file>", "choices of an earlier comparison, from its JSON or a report", once())
     .option("--out <file>", "a file; the ending says the format")
     .addOption(new Option("--format <format>", "how the comparison is written").choices([...FORMATS]))
     .action(async (results: string[], options: CompareOptions) => {
@@ -155,11 +157,24 @@ function describeProgram(
     .description("results to one HTML file that stands alone: figures, tables, notes, methods, protocol")
     .argument("<result...>", "results as JSON, reports, or folders of results")
     .option("--out <file>", "the report; without it, and without the options below, standard output", once())
-    .option("--figures <folder>", "each figure alone as SVG at the size of print", once())
+    .option("--figures <folder>", "each figure alone at the size of print", once())
+    .option("--figure-kinds <kinds>", "svg, pdf, png; several are separated by commas (default: svg)", once())
+    .option(
+      "--figure-width <mm>",
+      "mm, or column (85), or page (178); default: each figure its own of these two",
+      once(),
+    )
+    .option("--figure-dpi <dpi>", "dots an inch of PNG: 300 or 600 (default: 600)", once())
     .option("--tables <folder>", "the tables as CSV and LaTeX", once())
     .option("--reference <batch>", "the batch that the others are compared with", once())
     .option("--against <fact>", "trend over a header fact or typed column", once())
     .option("--values <file>", "typed columns, as for compare", once())
+    .addOption(
+      new Option("--errors <kind>", "which errors count (default: total)").choices(["total", "statistical"]),
+    )
+    .option("--quality <weights>", "weights of a figure of quality, as for compare", once())
+    .option("--power-n <n>", "the line at which power series are compared", wholeNumber)
+    .option("--choices <file>", "choices of an earlier comparison, from its JSON or a report", once())
     .action(async (results: string[], options: ReportOptions) => {
       const { reportCommand } = await import("./report-command.ts");
       end(await reportCommand(results, options, io));

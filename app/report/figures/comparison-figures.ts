@@ -1,6 +1,9 @@
 import type { ComparedPart, ComparedSample, Comparison } from "../../protocol/index.ts";
-import { PARAMETER_TITLES } from "../comparison-to-text.ts";
+import { PARAMETER_TITLES, sampleLabels } from "../comparison-to-text.ts";
 import { energyUnit } from "../format-quantity.ts";
+import { powerComparisonFigures } from "./power-comparison-figures.ts";
+import { qualityFigure } from "./quality-figure.ts";
+import { shortName } from "./short-name.ts";
 import { linearAxis, logarithmicAxis, namedAxis, quantumNumberAxis, type AxisDescription } from "./axis.ts";
 import { batchLook, type BatchLook } from "./colours.ts";
 import { FULL_WIDTH_MM, ONE_COLUMN_MM, type Figure, type LegendEntry, type Mark } from "./figure.ts";
@@ -14,6 +17,8 @@ export function comparisonFigures(comparison: Comparison): readonly Figure[] {
       .filter((part) => part.samples > 1)
       .map((part) => intervals(part, comparison, looks)),
     ...allLines(comparison, looks),
+    ...(comparison.quality === null ? [] : qualityFigure(comparison, comparison.quality)),
+    ...(comparison.power === null ? [] : powerComparisonFigures(comparison.power, looks)),
   ];
 }
 
@@ -28,6 +33,7 @@ function intervals(
   looks: ReadonlyMap<string, BatchLook>,
 ): Figure {
   const samples = inBatches(comparison, looks);
+  const labels = new Map(sampleLabels(comparison).map((label, i) => [comparison.samples[i]!, label]));
   const centre = part.name === "gap_eV" ? (part.mean.value ?? 0) : 0;
   const size = Math.max(
     ...samples.map((sample) => Math.abs((sample.parameters[part.name]?.value ?? 0) - centre)),
@@ -94,19 +100,13 @@ function intervals(
     panels: [
       {
         x: linearAxis(`${quantity}${unit === "" ? "" : ` / ${unit}`}`, ends, { count: 4 }),
-        y: namedAxis(samples.map((sample) => shortName(sample.sample))),
+        y: namedAxis(samples.map((sample) => shortName(labels.get(sample)!))),
         marks,
         share: 1,
         grid: "x",
       },
     ],
   };
-}
-
-/** A long name keeps its beginning and its end. */
-function shortName(name: string): string {
-  const letters = Array.from(name);
-  return letters.length <= 18 ? name : `${letters.slice(0, 9).join("")}…${letters.slice(-8).join("")}`;
 }
 
 function capital(text: string): string {

@@ -1,35 +1,29 @@
-import { boseEinsteinGap, phononWidth, varshni } from "../../laws/index.ts";
-import type { TemperatureLaw, TemperatureResult, TemperatureSeries } from "../../protocol/index.ts";
+import type { TemperatureResult, TemperatureSeries } from "../../protocol/index.ts";
+import { TEMPERATURE_LAW_NAMES, temperatureVerdict } from "../comparison-to-text.ts";
 import { energyUnit } from "../format-quantity.ts";
 import { linearAxis } from "./axis.ts";
 import { ACCENT, DATA, INK } from "./colours.ts";
 import { ONE_COLUMN_MM, type Figure, type Mark } from "./figure.ts";
 
-const LAW_NAMES: Readonly<Record<TemperatureLaw["law"], string>> = {
-  varshni: "Varshni",
-  "bose-einstein": "Bose-Einstein",
-  phonons: "acoustic and optical phonons",
-  optical: "optical phonons",
-  acoustic: "acoustic phonons",
-};
 const DASHES = [undefined, "4 2", "1.5 1.5"] as const;
 const COLOURS = [ACCENT, INK, DATA] as const;
 
 export function temperatureFigures(temperature: TemperatureResult): readonly Figure[] {
-  return temperature.series.map(seriesFigure);
+  const samples = new Set(temperature.series.map(({ sample, batch }) => `${batch}\n${sample}`));
+  return temperature.series.map((series) => seriesFigure(series, samples.size > 1 ? series.sample : null));
 }
 
-function seriesFigure(series: TemperatureSeries): Figure {
+/** `of`: the sample, where the series of several are told apart. */
+function seriesFigure(series: TemperatureSeries, of: string | null): Figure {
   const values = series.points.map(({ value }) => value);
   const unit =
     series.quantity === "gap_eV" ? { name: "eV", perElectronvolt: 1 } : energyUnit(Math.max(...values));
   const temperatures = series.points.map(({ temperature_K }) => temperature_K);
   const highest = Math.max(...temperatures);
-  const grid = Array.from({ length: 80 }, (_, i) => (1.04 * highest * i) / 79);
   const laws: Mark[] = series.laws.map((law, i) => ({
     kind: "line",
-    x: grid,
-    y: grid.map((t) => evaluate(law, t) * unit.perElectronvolt),
+    x: series.grid_K,
+    y: law.curve.map((value) => (value === null ? null : value * unit.perElectronvolt)),
     colour: COLOURS[i % COLOURS.length]!,
     width: 0.8,
     ...(DASHES[i % DASHES.length] !== undefined && { dash: DASHES[i % DASHES.length]! }),
@@ -41,12 +35,15 @@ function seriesFigure(series: TemperatureSeries): Figure {
   const low = scaled(({ value, sigma }) => value - sigma);
   const high = scaled(({ value, sigma }) => value + sigma);
   return {
-    name: `temperature-${series.quantity.replace(/[^a-z0-9]+/gi, "-").replace(/-$/, "")}`,
-    caption: `${what} against temperature with the laws fitted to it.`,
+    name: `temperature-${[series.quantity, ...(of === null ? [] : [of])]
+      .join("-")
+      .replace(/[^a-z0-9]+/gi, "-")
+      .replace(/-$/, "")}`,
+    caption: `${what}${of === null ? "" : ` of ${of.replace(/[*_^]/g, " ")}`} against temperature with the laws fitted to it; ${temperatureVerdict(series)}.`,
     width_mm: ONE_COLUMN_MM,
     height_mm: 64,
     legend: series.laws.map((law, i) => ({
-      text: LAW_NAMES[law.law],
+      text: TEMPERATURE_LAW_NAMES[law.law],
       colour: COLOURS[i % COLOURS.length]!,
       ...(DASHES[i % DASHES.length] !== undefined && { dash: DASHES[i % DASHES.length]! }),
     })),
@@ -62,15 +59,4 @@ function seriesFigure(series: TemperatureSeries): Figure {
       },
     ],
   };
-}
-
-function evaluate(law: TemperatureLaw, temperature: number): number {
-  const of = (name: string): number => law.parameters.find((one) => one.name === name)?.quantity.value ?? 0;
-  const out = new Float64Array(5);
-  if (law.law === "varshni") varshni(temperature, of("gap0"), of("alpha"), of("beta"), out);
-  else if (law.law === "bose-einstein")
-    boseEinsteinGap(temperature, of("gapB"), of("coupling"), of("theta"), out);
-  else
-    phononWidth(temperature, of("width0"), of("acoustic"), of("optical"), of("phonon_energy") || 0.02, out);
-  return out[0]!;
 }

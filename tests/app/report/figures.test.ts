@@ -145,9 +145,14 @@ describe("a figure of laws of temperature", () => {
     unit,
     quantity: symmetric(value, value / 100),
   });
-  const law = (name: TemperatureLaw["law"], parameters: TemperatureLaw["parameters"]): TemperatureLaw => ({
+  const law = (
+    name: TemperatureLaw["law"],
+    parameters: TemperatureLaw["parameters"],
+    curve: TemperatureLaw["curve"],
+  ): TemperatureLaw => ({
     law: name,
     parameters,
+    curve,
     chi2: 1,
     dof: 1,
     p: 0.3,
@@ -159,31 +164,49 @@ describe("a figure of laws of temperature", () => {
   });
 
   it("draws the laws through what they give", () => {
-    const points = [4, 50, 150, 300].map((temperature_K) => ({ temperature_K, value: 1.5, sigma: 1e-4 }));
+    const points = [4, 50, 150, 300].map((temperature_K) => ({
+      temperature_K,
+      value: 1.5,
+      sigma: 1e-4,
+      file: `${temperature_K}.csv`,
+    }));
+    const common = { sample: "K1", batch: "K", grid_K: [0, 150, 310] };
     const [gap, width] = temperatureFigures({
       notes: [],
       series: [
         {
+          ...common,
           quantity: "gap_eV",
           n: null,
           points,
           preferred: "varshni",
           decided: true,
           laws: [
-            law("varshni", [
-              parameter("gap0", "eV", 1.519),
-              parameter("alpha", "eV/K", 5.405e-4),
-              parameter("beta", "K", 204),
-            ]),
+            law(
+              "varshni",
+              [
+                parameter("gap0", "eV", 1.519),
+                parameter("alpha", "eV/K", 5.405e-4),
+                parameter("beta", "K", 204),
+              ],
+              [1.519, null, 1.42],
+            ),
           ],
         },
         {
+          ...common,
           quantity: "width_eV[5]",
           n: 5,
           points: points.map((point) => ({ ...point, value: 1e-4, sigma: 1e-6 })),
           preferred: null,
           decided: false,
-          laws: [law("acoustic", [parameter("width0", "eV", 1e-4), parameter("acoustic", "eV/K", 1e-7)])],
+          laws: [
+            law(
+              "acoustic",
+              [parameter("width0", "eV", 1e-4), parameter("acoustic", "eV/K", 1e-7)],
+              [1e-4, 1.15e-4, 1.31e-4],
+            ),
+          ],
         },
       ],
     });
@@ -194,11 +217,11 @@ describe("a figure of laws of temperature", () => {
       return { x: mark.x[i]!, y: mark.y[i]! };
     };
     const last = lineOf(gap!);
-    // Derived: Varshni's law E0 - alpha T^2/(T + beta) at the last temperature drawn
-    expect(last.y).toBeCloseTo(1.519 - (5.405e-4 * last.x ** 2) / (last.x + 204), 12);
+    // Derived: the last point of the curve that was given, in eV
+    expect(last).toEqual({ x: 310, y: 1.42 });
     const wide = lineOf(width!);
-    // Derived: (1e-4 + 1e-7 T) eV in ueV
-    expect(wide.y).toBeCloseTo(100 + 0.1 * wide.x, 9);
+    // Derived: 1.31e-4 eV in ueV
+    expect(wide.y).toBeCloseTo(131, 9);
     expect(width!.panels[0]!.y.title).toBe("*Γ*_{5} / µeV");
     for (const figure of [gap!, width!]) expect(figureToSvg(figure)).not.toMatch(/NaN|undefined/);
   });

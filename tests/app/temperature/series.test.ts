@@ -5,6 +5,7 @@ import type { RunglineResult } from "../../../app/protocol/index.ts";
 import { temperatureSeriesOf } from "../../../app/temperature/index.ts";
 import { makeLine, makeResult } from "../../main/make-result.ts";
 
+const SAMPLE = { sample: "K1", batch: "K" };
 const TEMPERATURES = [5, 30, 60, 90, 120, 150];
 
 function at(temperature_K: number): { result: RunglineResult; temperature_K: number } {
@@ -27,7 +28,7 @@ function at(temperature_K: number): { result: RunglineResult; temperature_K: num
 
 describe("a series of temperatures", () => {
   it("gives the laws of the gap and of each line that is there often enough", () => {
-    const { series } = temperatureSeriesOf(TEMPERATURES.map(at), false, 1);
+    const { series } = temperatureSeriesOf(TEMPERATURES.map(at), SAMPLE, false, 1);
     expect(series.map((one) => one.quantity)).toStrictEqual(["gap_eV", "width_floor_eV", "width_eV[2]"]);
     const [gap, , width] = series;
     expect(gap).toMatchObject({ preferred: "varshni", decided: true });
@@ -38,11 +39,17 @@ describe("a series of temperatures", () => {
       expect.closeTo(200, 3),
     ]);
     expect(width!.preferred).toBe("optical");
+    expect(gap).toMatchObject({ sample: "K1", batch: "K" });
+    const [varshniLaw] = gap!.laws;
+    const out = new Float64Array(5);
+    varshni(gap!.grid_K.at(-1)!, 2.172, 4e-4, 200, out);
+    // Derived: the curve's own law where the drawn one ends
+    expect(varshniLaw!.curve.at(-1)).toBeCloseTo(out[0]!, 8);
   });
 
   it("adds the systematic part of the gap where total errors count", () => {
     const sigma = (systematic: boolean): number =>
-      temperatureSeriesOf(TEMPERATURES.map(at), systematic, 1).series[0]!.points[0]!.sigma;
+      temperatureSeriesOf(TEMPERATURES.map(at), SAMPLE, systematic, 1).series[0]!.points[0]!.sigma;
     expect(sigma(false)).toBe(2e-6);
     // Derived: 2e-6 and 2e-5 in quadrature
     expect(sigma(true)).toBeCloseTo(Math.hypot(2e-6, 2e-5), 12);
@@ -50,7 +57,7 @@ describe("a series of temperatures", () => {
 
   it("says where there are too few temperatures, or too short a range", () => {
     const codes = (temperatures: readonly number[]): string[] =>
-      temperatureSeriesOf(temperatures.map(at), false, 1).notes.map((note) => note.code);
+      temperatureSeriesOf(temperatures.map(at), SAMPLE, false, 1).notes.map((note) => note.code);
     expect(codes([5, 30, 60])).toContain("temperatures-few");
     expect(codes([5, 6, 7, 8, 9])).toContain("temperature-range-short");
     expect(codes(TEMPERATURES)).not.toContain("temperature-range-short");
