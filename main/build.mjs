@@ -8,8 +8,9 @@
 import { createHash } from "node:crypto";
 import { mkdir, readdir, readFile, rename, rm, stat, writeFile } from "node:fs/promises";
 import { existsSync, readdirSync, readFileSync, statSync } from "node:fs";
-import { dirname, join, relative } from "node:path";
+import { basename, dirname, join, relative } from "node:path";
 import { fileURLToPath } from "node:url";
+import { DRAWING_FILES } from "./services/drawing-files.mjs";
 
 export const ROOT = dirname(dirname(fileURLToPath(import.meta.url)));
 const DIST = join(ROOT, "dist");
@@ -141,6 +142,9 @@ async function buildCommandLine() {
       ].join(""),
     },
   });
+  // Typefaces and rasteriser are read as they are, when a figure is asked for (main/services/drawing-tools.ts).
+  for (const file of Object.values(DRAWING_FILES).flat())
+    await putFile(join(folder, "drawing", basename(file)), await readFile(join(ROOT, "node_modules", file)));
   const isEntry = (path) => dirname(path) === folder;
   for (const file of files) if (!isEntry(file.path)) await putFile(file.path, file.contents);
   for (const file of files) if (isEntry(file.path)) await putFile(file.path, file.contents);

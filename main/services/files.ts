@@ -15,16 +15,16 @@ export async function pathKind(path: string): Promise<PathKind> {
 }
 
 /** Whole or not at all: written beside, flushed, renamed. A device or pipe is written to as it is. */
-export async function writeWhole(file: string, text: string): Promise<void> {
+export async function writeWhole(file: string, content: string | Uint8Array): Promise<void> {
   try {
     if ((await pathKind(file)) === "other") {
       const handle = await open(file, "w");
       try {
-        await handle.writeFile(text);
+        await handle.writeFile(content);
       } finally {
         await handle.close();
       }
-    } else await writeFileAtomic(file, text);
+    } else await writeFileAtomic(file, content);
   } catch (cause) {
     throw outputError(file, cause);
   }

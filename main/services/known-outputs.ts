@@ -11,6 +11,8 @@ import {
   COMPARISON_LATEX_MARK,
   COMPARISON_TEXT_MARK,
   CURVES_CSV_MARK,
+  FIGURE_PDF_MARK,
+  FIGURE_PNG_MARK,
   FIGURE_SVG_MARK,
   REPORT_HTML_MARK,
   RESULT_CSV_MARK,
@@ -43,6 +45,8 @@ async function kindOf(file: string): Promise<OutputKind | null> {
   if (start.startsWith(COMPARISON_LATEX_MARK)) return "comparison";
   if (start.startsWith(REPORT_HTML_MARK)) return "report";
   if (start.startsWith(FIGURE_SVG_MARK)) return "figure";
+  if (start.startsWith("%PDF-") && start.includes(FIGURE_PDF_MARK)) return "figure";
+  if (start.startsWith("PNG", 1) && start.includes(FIGURE_PNG_MARK)) return "figure";
   if (start.startsWith(CURVES_CSV_MARK)) return "curves";
   if (start.startsWith(SUMMARY_MARK)) return "summary";
   if (start.startsWith(COMPARISON_TEXT_MARK) || start.startsWith(COMPARISON_CSV_MARK)) return "comparison";
