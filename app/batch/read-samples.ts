@@ -9,7 +9,7 @@ import type { DecimalMark } from "../table/index.ts";
 import { factValue, temperatureIn, type FactValue } from "./fact-value.ts";
 import { dependsOnSignal, parameterUnit, readParameter } from "./parameters.ts";
 import { pauleMandel, pooledMean } from "./random-effects.ts";
-import { stepOf, TEMPERATURES_ALIKE_K, temperatureSteps } from "./temperature-steps.ts";
+import { FEWEST_TEMPERATURES, stepOf, TEMPERATURES_ALIKE_K, temperatureSteps } from "./temperature-steps.ts";
 import { commonMean } from "./weighted-fit.ts";
 
 export type Measured = NonNullable<ComparedSample["parameters"][ComparedParameter]>;
@@ -121,20 +121,35 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
     seen.set(identity, result);
     results.push(nameResult(result, choices));
   }
-  notes.push(...aboutAll(results, choices));
-
-  const groups = new Map<string, NamedResult[]>();
   const temperatures = new Map<string, readonly number[]>();
-  const name = (one: NamedResult): string => `${one.batch}\n${one.sample}`;
-  for (const key of new Set(results.map(name)))
+  const nameOf = (one: NamedResult): string => `${one.batch}\n${one.sample}`;
+  for (const key of new Set(results.map(nameOf)))
     temperatures.set(
       key,
-      temperatureSteps(results.filter((one) => name(one) === key).map((one) => one.temperature_K)),
+      temperatureSteps(results.filter((one) => nameOf(one) === key).map((one) => one.temperature_K)),
     );
-  for (const one of results) {
+  const step = (one: NamedResult): number | null => stepOf(one.temperature_K, temperatures.get(nameOf(one))!);
+  const apart = setApart(results, temperatures, nameOf, choices);
+  const listed = results.filter(
+    (one) => !apart.has(nameOf(one)) || step(one) === null || step(one) === apart.get(nameOf(one)),
+  );
+  for (const [key, kept] of apart) {
+    const name = results.find((one) => nameOf(one) === key)!.sample;
+    notes.push(
+      assumption(
+        "temperature-run-set-apart",
+        "samples",
+        `${name} was measured at ${temperatures.get(key)!.length} temperatures: among the samples it stands with what was measured at ${kept} K; all of it is in the laws of temperature.`,
+        "compare along temperature to have all side by side (--against temperature)",
+      ),
+    );
+  }
+  notes.push(...aboutAll(listed, choices));
+
+  const groups = new Map<string, NamedResult[]>();
+  for (const one of listed) {
     // A sample stands once for each value along a trend and for each temperature: their mean would be of no use.
-    const step = stepOf(one.temperature_K, temperatures.get(name(one))!);
-    const key = `${name(one)}\n${step ?? ""}\n${one.against?.value ?? ""}`;
+    const key = `${nameOf(one)}\n${step(one) ?? ""}\n${one.against?.value ?? ""}`;
     groups.set(key, [...(groups.get(key) ?? []), one]);
   }
   const signalUnits = new Set(results.map((one) => one.result.reading.signal_unit));
@@ -181,7 +196,7 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
         version: result.run.version,
       })),
       date: first.date,
-      temperature_K: meanOf(group.map((one) => one.temperature_K)),
+      temperature_K: meanOf(taken.map((one) => one.temperature_K)),
       against: meanOf(group.map((one) => one.against?.value ?? null)),
       doubts: [
         ...new Set(
@@ -208,6 +223,33 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
       ),
     );
   return { results, samples, units, againstUnit: [...againstUnits][0] ?? "", notes };
+}
+
+/**
+ * Samples that were measured at many temperatures, where others are there that were not, and the step of each that lies
+ * nearest to the others (the lowest where those say none): their other spectra would make a batch of temperatures.
+ */
+function setApart(
+  results: readonly NamedResult[],
+  temperatures: ReadonlyMap<string, readonly number[]>,
+  nameOf: (one: NamedResult) => string,
+  choices: ComparisonChoices,
+): ReadonlyMap<string, number> {
+  const runs = [...temperatures].filter(([, steps]) => steps.length >= FEWEST_TEMPERATURES);
+  if (choices.against === "temperature" || temperatures.size < 2) return new Map();
+  const others = results
+    .filter((one) => !runs.some(([key]) => key === nameOf(one)))
+    .flatMap((one) => (one.temperature_K === null ? [] : [one.temperature_K]))
+    .sort((a, b) => a - b);
+  const middle = others[Math.floor(others.length / 2)] ?? -Infinity;
+  return new Map(
+    runs.map(([key, steps]) => [
+      key,
+      middle === -Infinity
+        ? steps[0]!
+        : steps.reduce((best, one) => (Math.abs(one - middle) < Math.abs(best - middle) ? one : best)),
+    ]),
+  );
 }
 
 function measure(

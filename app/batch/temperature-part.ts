@@ -3,14 +3,11 @@ import type { ComparisonChoices, TemperatureResult } from "../protocol/index.ts"
 import { temperatureSeriesOf } from "../temperature/index.ts";
 import { twoSidedQuantile } from "./quantiles.ts";
 import type { NamedResult } from "./read-samples.ts";
-import { temperatureSteps } from "./temperature-steps.ts";
-
-/** So many different temperatures make a series by themselves; with fewer the comparison has to be along temperature. */
-const FEWEST_STEPS = 4;
+import { FEWEST_TEMPERATURES, temperatureSteps } from "./temperature-steps.ts";
 
 /**
  * The laws of temperature: of every sample that was measured at enough temperatures, each for itself; where none was, of
- * all samples together, which is said. Null where temperature does not vary enough to ask.
+ * all samples together, which is said. Null where there are few temperatures and the comparison is not along them.
  */
 export function temperatureOf(
   results: readonly NamedResult[],
@@ -35,7 +32,7 @@ export function temperatureOf(
       choices.errors === "total",
       twoSidedQuantile(1 - choices.level, Infinity),
     );
-  const runs = taking.filter((members) => steps(members) >= FEWEST_STEPS);
+  const runs = taking.filter((members) => steps(members) >= FEWEST_TEMPERATURES);
   if (runs.length > 0 || (asked && taking.length === 1)) {
     const found = (runs.length > 0 ? runs : taking).map((members) => {
       const { sample, batch } = members[0]!;
@@ -48,7 +45,7 @@ export function temperatureOf(
     };
   }
   const all = taking.flat();
-  if (!asked && steps(all) < FEWEST_STEPS) return null;
+  if (!asked && steps(all) < FEWEST_TEMPERATURES) return null;
   const found = fit(all, null);
   const mixed = doubt(
     "temperature-of-several-samples",

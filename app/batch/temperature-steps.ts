@@ -1,6 +1,9 @@
 /** Temperatures of one kind of measurement differ by less than this, K. */
 export const TEMPERATURES_ALIKE_K = 1;
 
+/** So many different temperatures are a series by themselves. */
+export const FEWEST_TEMPERATURES = 4;
+
 /**
  * The lowest temperatures of groups that lie within TEMPERATURES_ALIKE_K, ascending. A temperature belongs to the last
  * step that is not above it.

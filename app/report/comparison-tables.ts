@@ -19,6 +19,7 @@ import {
   shownUnit,
   TEMPERATURE_PARAMETERS,
   temperatureVerdict,
+  weightInWords,
 } from "./comparison-to-text.ts";
 import { count, measured, numberColumn, textColumn, words, type Cell, type DataTable } from "./data-table.ts";
 import { energyUnit, formatNumber, NOT_DETERMINED_WORDS, type EnergyUnit } from "./format-quantity.ts";
@@ -275,13 +276,15 @@ export function temperatureTables(temperature: TemperatureResult): readonly Data
           words(i === 0 ? seriesTitle(series) : ""),
           words(i === 0 ? LAW_FORMULAS[law.law] : ""),
           words(TEMPERATURE_PARAMETERS[name] ?? name),
-          measured(
-            quantity,
-            small?.perElectronvolt ?? 1,
-            small === null ? unit : unit.replace("eV", small.name),
-          ),
+          quantity.value !== null && quantity.sigma === null
+            ? words(`${formatNumber(quantity.value)} ${unit}, at its bound`)
+            : measured(
+                quantity,
+                small?.perElectronvolt ?? 1,
+                small === null ? unit : unit.replace("eV", small.name),
+              ),
           words(i === 0 ? `${formatNumber(law.chi2, 3)} for ${law.dof}` : ""),
-          words(i === 0 ? formatNumber(law.weight, 2) : ""),
+          words(i === 0 ? weightInWords(law.weight) : ""),
         ];
       }),
     ),

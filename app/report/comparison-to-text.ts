@@ -396,6 +396,11 @@ export const TEMPERATURE_PARAMETERS: Readonly<Record<string, string>> = {
   phonon_energy: "phonon energy",
 };
 
+/** A share so small says no more than that. */
+export function weightInWords(weight: number | null): string {
+  return weight !== null && weight < 1e-3 ? "< 0.001" : formatNumber(weight, 2);
+}
+
 /** Which law of temperature the data prefer, and whether they decide. */
 export function temperatureVerdict({ laws, preferred, decided }: TemperatureSeries): string {
   const best = laws.find(({ law }) => law === preferred);
@@ -417,11 +422,13 @@ function temperatureInText({ temperature }: Comparison): string[] {
             .map(({ name, unit, quantity }) => {
               const energy =
                 unit === "eV" && name !== "gap0" && name !== "gapB" ? energyUnit(quantity.value) : null;
+              if (quantity.value !== null && quantity.sigma === null)
+                return `${name} = ${bare(quantity.value, unit, energy)} (at its bound)`;
               return `${name} = ${shown(quantity.value, quantity.sigma, unit, energy)}`;
             })
             .join(
               ", ",
-            )}; chi square ${formatNumber(law.chi2, 3)} for ${law.dof}, weight ${formatNumber(law.weight, 2)}`,
+            )}; chi square ${formatNumber(law.chi2, 3)} for ${law.dof}, weight ${weightInWords(law.weight)}`,
           "    ",
         ),
       ),

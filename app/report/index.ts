@@ -31,6 +31,7 @@ export {
   spreadInWords,
   temperatureVerdict,
   TEMPERATURE_PARAMETERS,
+  weightInWords,
 } from "./comparison-to-text.ts";
 export {
   resultToLatex,

@@ -23,6 +23,7 @@ interface LawChoice {
   /** The last parameter's grid for the start; empty where it does not count. */
   readonly grid: readonly number[];
   readonly lower: readonly number[];
+  readonly upper?: readonly number[];
 }
 
 /** Start values of temperatures and phonon energies, from far below to far above what crystals show. */
@@ -41,6 +42,8 @@ const GAP_LAWS: readonly LawChoice[] = [
     evaluate: (t, v, out) => varshni(t, v[0]!, v[1]!, v[2]!, out),
     grid: KELVIN_GRID,
     lower: [-Infinity, -Infinity, 1e-3],
+    // Beyond, the law is a parabola that alpha and beta describe together alone, without end.
+    upper: [Infinity, Infinity, 1e4],
   },
   {
     name: "bose-einstein",
@@ -168,7 +171,10 @@ function fitOne(
   const fit = fitLaw(problem, startOf(law, free, points, data, sigmas), {
     fixed: Array.from({ length: law.count }, (_, j) => !free.includes(j)),
     lower: Float64Array.from(law.lower),
+    ...(law.upper !== undefined && { upper: Float64Array.from(law.upper) }),
   });
+  // At that end only a ratio of the parameters is known.
+  const degenerate = fit.activeBounds[law.count - 1] === 1;
   const dof = fit.degreesOfFreedom;
   const scaled = fit.p !== null && fit.p < REJECTED ? Math.sqrt(fit.chi2 / dof) : 1;
   const quantity = (at: number): Quantity => {
@@ -176,7 +182,7 @@ function fitOne(
     const sigma = scaled * Math.sqrt(fit.covariance[at * law.count + at]!);
     // A scale that is not known within a factor of ten says nothing, though the matrix could be inverted.
     const unknown = fit.undetermined[at] === 1 || (at === law.count - 1 && sigma > 10 * Math.abs(value));
-    if (unknown) return { value: null, sigma: null, low: null, high: null };
+    if (unknown || (degenerate && at > 0)) return { value: null, sigma: null, low: null, high: null };
     if (fit.activeBounds[at] !== 0) return { value, sigma: null, low: null, high: null };
     return symmetric(value, sigma, factor);
   };

@@ -1,5 +1,10 @@
 import { doubt, type Note } from "../base/index.ts";
-import type { RunglineResult, TemperatureResult, TemperatureSeries } from "../protocol/index.ts";
+import type {
+  RunglineResult,
+  TemperatureLaw,
+  TemperatureResult,
+  TemperatureSeries,
+} from "../protocol/index.ts";
 import { fitTemperatureSeries, type TemperaturePoint } from "./fit-series.ts";
 
 /** One result with the temperature that belongs to it. */
@@ -56,7 +61,6 @@ export function temperatureSeriesOf(
       grid_K: grid,
       ...found,
     });
-    notes.push(...doubtsOf(quantity, found));
   };
   add("gap", "gap_eV", null, ({ series: levels, systematic: part }) => {
     if (levels === null) return undefined;
@@ -91,44 +95,49 @@ export function temperatureSeriesOf(
         "measure up to where kT is a good part of the phonon energy",
       ),
     );
-  return { series, notes };
+  return { series, notes: [...notes, ...doubtsOf(series)] };
 }
 
-function doubtsOf(
-  quantity: string,
-  { laws, preferred, decided }: Pick<TemperatureSeries, "laws" | "preferred" | "decided">,
-): Note[] {
+/** What is to be said of every series, each kind of doubt once with all that it is about. */
+function doubtsOf(all: readonly TemperatureSeries[]): Note[] {
   const notes: Note[] = [];
-  const about = `temperature.${quantity}`;
-  const best = laws.find((law) => law.law === preferred);
-  if (best === undefined) return notes;
-  if (best.p !== null && best.p < 0.01)
-    notes.push(
-      doubt(
-        "temperature-law-rejected",
-        about,
-        `Even the best law (${best.law}) does not describe ${quantity} within its errors (p = ${best.p.toPrecision(2)}); its errors are scaled by ${best.scaled_by.toPrecision(3)}.`,
-        "check the temperatures and the systematic errors of each spectrum",
-      ),
-    );
-  if (!decided && laws.length > 1)
-    notes.push(
-      doubt(
-        "temperature-law-not-decided",
-        about,
-        `The data do not decide between the laws of ${quantity}: the information criteria differ by less than 6.`,
-        "extend the range of temperatures",
-      ),
-    );
-  const held = best.parameters.filter(({ quantity: one }) => one.sigma === null).map(({ name }) => name);
-  if (held.length > 0)
-    notes.push(
-      doubt(
-        "temperature-parameter-not-determined",
-        about,
-        `${held.join(" and ")} of the law ${best.law} ${held.length === 1 ? "is" : "are"} not determined (at a bound, or not in the data).`,
-        "extend the range of temperatures",
-      ),
-    );
+  const list = (members: readonly TemperatureSeries[]): string =>
+    members.map(({ quantity }) => quantity).join(", ");
+  const add = (members: readonly TemperatureSeries[], code: string, text: string, remedy: string): void => {
+    if (members.length === 0) return;
+    const about = members.length === 1 ? `temperature.${members[0]!.quantity}` : "temperature";
+    notes.push(doubt(code, about, text, remedy));
+  };
+  const bestOf = ({ laws, preferred }: TemperatureSeries): TemperatureLaw | undefined =>
+    laws.find((law) => law.law === preferred);
+  const rejected = all.filter((one) => (bestOf(one)?.p ?? 1) < 0.01);
+  add(
+    rejected,
+    "temperature-law-rejected",
+    `Even the best law does not describe ${list(rejected)} within the errors (p = ${rejected
+      .map((one) => bestOf(one)!.p!.toPrecision(2))
+      .join(", ")}); errors of the parameters are scaled by ${rejected
+      .map((one) => bestOf(one)!.scaled_by.toPrecision(3))
+      .join(", ")}.`,
+    "check the temperatures and the systematic errors of each spectrum",
+  );
+  const open = all.filter((one) => bestOf(one) !== undefined && !one.decided && one.laws.length > 1);
+  add(
+    open,
+    "temperature-law-not-decided",
+    `The data do not decide between the laws of ${list(open)}: the information criteria differ by less than 6.`,
+    "extend the range of temperatures",
+  );
+  const held = (one: TemperatureSeries): readonly string[] =>
+    (bestOf(one)?.parameters ?? []).filter(({ quantity }) => quantity.sigma === null).map(({ name }) => name);
+  const undetermined = all.filter((one) => held(one).length > 0);
+  add(
+    undetermined,
+    "temperature-parameter-not-determined",
+    `Not determined by the best law (at a bound, or not in the data): ${undetermined
+      .map((one) => `${held(one).join(" and ")} of ${one.quantity}`)
+      .join("; ")}.`,
+    "extend the range of temperatures",
+  );
   return notes;
 }
