@@ -1,4 +1,4 @@
-import type { SpectrumFit } from "../fit/index.ts";
+import type { LevelValues, SpectrumFit } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import { chooseLevelRange, type LevelInput, type RangeChoice } from "../series/index.ts";
 import { isSensible, type LadderState } from "./ladder-model.ts";
@@ -31,6 +31,11 @@ export function determinedPlaces(fit: SpectrumFit, block: number): number[] {
       const variance = fit.lines.covariance[i * 4 * k + i]!;
       return variance > 0 && Number.isFinite(variance) && !fit.atBound.includes(fit.lines.ns[j]!);
     });
+}
+
+/** The level law of a fit whose line energies are tied to it; null else. */
+export function tiedLevels({ problem, solution }: SpectrumFit): LevelValues | null {
+  return problem.spec.tiedLevels === null ? null : problem.tiedLaw(solution.theta);
 }
 
 /** Line energies with their full covariance, as the level law takes them; null where too few are determined. */

@@ -7,7 +7,7 @@ import type { Spectrum } from "../spectrum/index.ts";
 import { drawNoise, type NoiseSource } from "./drawn-noise.ts";
 import type { FullFit } from "./fit-full.ts";
 import { buildModel, type LadderState, type ModelChoices } from "./ladder-model.ts";
-import { covarianceBlock, determinedPlaces } from "./level-range.ts";
+import { covarianceBlock, determinedPlaces, tiedLevels } from "./level-range.ts";
 
 const FIT = { maxIterations: 40, gradientTolerance: 1e-5, costTolerance: 1e-8 };
 /** Intervals that differ by more than this part ask for a note. */
@@ -171,6 +171,7 @@ export function summariseDraws(
     rydberg_eV: over((draw) => draw.rydberg),
     defect0: defectFree ? over((draw) => draw.defect0) : nothing,
     width_exponent: exponentFree ? over((draw) => draw.exponent) : nothing,
+    draws: keptDraws(draws.slice(0, MOST_KEPT), defectFree, exponentFree),
     lines: plan.ns.map((n, j) => ({
       n,
       energy_eV: over((draw) => draw.energy[j]!),
@@ -179,6 +180,41 @@ export function summariseDraws(
     })),
   };
   return { resampled, notes: resamplingNotes(resampled, law.sigma, level) };
+}
+
+/** Draws whose numbers the result keeps: enough to draw a distribution. */
+const MOST_KEPT = 2000;
+
+function keptDraws(
+  draws: readonly ResampledDraw[],
+  defectFree: boolean,
+  exponentFree: boolean,
+): NonNullable<Resampling["draws"]> {
+  return {
+    gap_eV: draws.map((draw) => draw.gap),
+    rydberg_eV: draws.map((draw) => draw.rydberg),
+    ...(defectFree && { defect0: draws.map((draw) => draw.defect0) }),
+    ...(exponentFree && {
+      width_exponent: draws.flatMap(({ exponent }) =>
+        exponent !== null && Number.isFinite(exponent) ? [exponent] : [],
+      ),
+    }),
+  };
+}
+
+/** The main job takes about as long as this many draws. */
+const DRAWS_A_FIT = 25;
+
+/** The part of the whole work that is done before the first spectrum is drawn. */
+export function shareBeforeDraws({ resample, resamples }: Protocol["uncertainty"]): number {
+  return resample === "none" ? 1 : DRAWS_A_FIT / (DRAWS_A_FIT + resamples);
+}
+
+/** How far the whole work is, and in words, when draw number `done` (0, 1, ...) is begun. */
+export function drawingProgress(done: number, uncertainty: Protocol["uncertainty"]): [number, string] {
+  const { resamples } = uncertainty;
+  const share = shareBeforeDraws(uncertainty);
+  return [share + ((1 - share) * done) / resamples, `drawing spectra anew, ${done} of ${resamples}`];
 }
 
 /** Correlation times up to this are what white noise shows by chance and the fit's own parameters make. */
@@ -225,10 +261,9 @@ function lawsOf(fit: SpectrumFit, plan: ResamplingPlan, random: Random): Resampl
   const shifts = Float64Array.from(law.n, () => (jitter > 0 ? jitter * random.normal() : 0));
   let values: Float64Array;
   const energy = lines.energy.slice();
-  if (protocol.series.mode === "tied") {
-    const levels = fit.laws?.levels;
-    if (levels === undefined) return null;
-    values = Float64Array.of(levels.gap, levels.rydberg, levels.defect0);
+  const tied = tiedLevels(fit);
+  if (tied !== null) {
+    values = Float64Array.of(tied.gap, tied.rydberg, tied.defect0);
     for (let i = 0; i < values.length; i++)
       for (let l = 0; l < shifts.length; l++) values[i]! += law.gain[i * shifts.length + l]! * shifts[l]!;
   } else {

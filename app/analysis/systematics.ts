@@ -7,7 +7,7 @@ import type { Spectrum } from "../spectrum/index.ts";
 import { areaSystematic } from "./area-systematic.ts";
 import { buildModel, energyOf, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { parameterCount } from "./describe-constraints.ts";
-import { covarianceBlock, determinedPlaces } from "./level-range.ts";
+import { covarianceBlock, determinedPlaces, tiedLevels } from "./level-range.ts";
 
 type Systematic = NonNullable<RunglineResult["systematic"]>;
 
@@ -27,7 +27,8 @@ const DEFENSIBLE_BIC = 10;
  * What      Spread that other defensible backgrounds and windows put on gap, Rydberg energy and defect: half the range
  *           of the values, the chosen model among them. Trials on the same points count when their BIC is within 10 of
  *           the best (Kass and Raftery, J. Am. Stat. Assoc. 90, 773 (1995): "very strong" evidence beyond); trials of
- *           another window always count. Every trial is listed, whether it counts or not.
+ *           another window always count. Every trial is listed, whether it counts or not. Trials have the ties and constraints of
+ *           the reported fit.
  * Shapes    points: the averaged points (differences between trials are what matters).
  */
 export function judgeSystematics(
@@ -160,6 +161,21 @@ function planTrials(
   return trials;
 }
 
+/** Gap, Rydberg energy and defect of a trial: those of the spectrum fit where the lines are tied to the law. */
+function levelsOf(fit: SpectrumFit, reference: LevelFit): ArrayLike<number> | null {
+  const tied = tiedLevels(fit);
+  if (tied !== null) return [tied.gap, tied.rydberg, tied.defect0];
+  const places = determinedPlaces(fit, 0).filter((j) => reference.n.includes(fit.lines.ns[j]!));
+  const levels = fitLevels({
+    n: places.map((j) => fit.lines.ns[j]!),
+    energy_eV: Float64Array.from(places, (j) => fit.lines.energy[j]!),
+    covariance: covarianceBlock(fit, 0, places),
+    defect: reference.defect,
+    heldDefect: reference.estimates.values[2],
+  });
+  return levels.ok ? levels.value.estimates.values : null;
+}
+
 const FIRST_LOOK = 4;
 const MOST_ITERATIONS = 20;
 const HOPELESS = 5;
@@ -181,13 +197,7 @@ function runTrial(
     signal: Float64Array.from(keep, (i) => points.signal[i]!),
     sigma: Float64Array.from(keep, (i) => points.sigma[i]!),
   };
-  const model = buildModel(
-    part,
-    state,
-    { ...protocol, series: { ...protocol.series, mode: "free" } },
-    unit,
-    trial.choices,
-  );
+  const model = buildModel(part, state, protocol, unit, trial.choices);
   const attempt = (maxIterations: number): SpectrumFit =>
     fitSpectrum(part, model.spec, model.start, {
       watch,
@@ -202,16 +212,8 @@ function runTrial(
   const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
   // A fit that was stopped has values of no meaning.
   stopIfCancelled(watch);
-  const places = determinedPlaces(fit, 0).filter((j) => reference.n.includes(fit.lines.ns[j]!));
-  const levels = fitLevels({
-    n: places.map((j) => fit.lines.ns[j]!),
-    energy_eV: Float64Array.from(places, (j) => fit.lines.energy[j]!),
-    covariance: covarianceBlock(fit, 0, places),
-    defect: reference.defect,
-    heldDefect: reference.estimates.values[2],
-  });
+  const values = levelsOf(fit, reference);
   const parameters = parameterCount(fit);
-  const values = levels.ok ? levels.value.estimates.values : null;
   return {
     name: trial.name,
     gap_eV: values?.[0] ?? null,

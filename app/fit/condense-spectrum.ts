@@ -1,7 +1,7 @@
 import { LEVEL, levelLaw, WIDTH, widthLaw } from "../laws/index.ts";
 import { condenseRows, type CondensedProblem } from "../solve/index.ts";
 import { panelsFor, panelsServe } from "./condense-points.ts";
-import type { ModelSpec } from "./model-spec.ts";
+import type { FitPoints, ModelSpec } from "./model-spec.ts";
 import type { SpectrumProblem } from "./spectrum-problem.ts";
 import { groupBands } from "./tail.ts";
 import type { Feature } from "./transmittance-grid.ts";
@@ -22,10 +22,28 @@ const FAR_N = 1e6;
  * Shapes    those of `problem`; `build` makes the same problem from other points and background columns.
  */
 export function condenseSpectrum(problem: SpectrumProblem, theta: Float64Array): CondensedProblem | null {
+  const condensed = condenseWith(problem, (at) => featuresAt(problem, at), theta);
+  return condensed === null ? null : { ...condensed, problem: condensed.inner };
+}
+
+export interface CondensedSpectrum {
+  readonly points: FitPoints;
+  /** The same model on these points. */
+  readonly inner: SpectrumProblem;
+  readonly lost: number;
+  serves(theta: Float64Array): boolean;
+}
+
+/** The same for a problem around this one, which may have features of its own at its parameters `at`. */
+export function condenseWith(
+  problem: SpectrumProblem,
+  features: (at: Float64Array) => readonly Feature[],
+  start: Float64Array,
+): CondensedSpectrum | null {
   const { points, spec, weights } = problem;
   const m = points.energy.length;
   if (m < LEAST_ROWS) return null;
-  const panels = panelsFor(points.energy, featuresAt(problem, theta));
+  const panels = panelsFor(points.energy, features(start));
   const columns = spec.background.map((column) => column.values);
   const rows = condenseRows(points.energy, [points.signal, ...columns], weights, panels);
   if (rows.x.length > WORTH_WHILE * m) return null;
@@ -38,21 +56,28 @@ export function condenseSpectrum(problem: SpectrumProblem, theta: Float64Array):
     ...spec,
     background: spec.background.map((column, b) => ({ ...column, values: rows.columns[b + 1]! })),
   };
+  const few: FitPoints = {
+    energy: rows.x,
+    signal: rows.columns[0]!,
+    sigma: rows.weight.map((weight) => 1 / weight),
+  };
   return {
-    problem: problem.onPoints(
-      { energy: rows.x, signal: rows.columns[0]!, sigma: rows.weight.map((weight) => 1 / weight) },
-      reduced,
-    ),
+    points: few,
+    inner: problem.onPoints(few, reduced),
     lost: rows.lost[0]!,
-    serves: (other) => panelsServe(points.energy, panels, featuresAt(problem, other)),
+    serves: (at) => panelsServe(points.energy, panels, features(at)),
   };
 }
 
+/** What the instrument adds to the width of a line, for the distance of its poles. */
+export function lineReach({ gaussStd, lineStds, instrumentLorentz }: ModelSpec): number {
+  return 2 * GAUSS_REACH * Math.min(gaussStd, ...(lineStds ?? [])) + (instrumentLorentz ?? 0);
+}
+
 /** Lines, tied lines, and the edges of groups of lines and of the continuum: wherever the model is not smooth. */
-function featuresAt(problem: SpectrumProblem, theta: Float64Array): Feature[] {
+export function featuresAt(problem: SpectrumProblem, theta: Float64Array): Feature[] {
   const { spec } = problem;
-  const extra =
-    2 * GAUSS_REACH * Math.min(spec.gaussStd, ...(spec.lineStds ?? [])) + (spec.instrumentLorentz ?? 0);
+  const extra = lineReach(spec);
   const features: Feature[] = spec.ns.map((_, j) => ({
     energy: problem.energyOf(j, theta),
     width: problem.widthOf(j, theta) + extra,

@@ -1,10 +1,12 @@
 import { levelEnergy, LEVEL, levelLaw, strength, WIDTH, widthLaw } from "../laws/index.ts";
-import { linePair, linePairWithDerivatives } from "../lines/index.ts";
-import type { SeparableProblem } from "../solve/index.ts";
+import { linePair, linePairWithDerivatives, turnPair } from "../lines/index.ts";
+import type { CondensedProblem, SeparableProblem } from "../solve/index.ts";
 import { ASYMMETRY_BOUND, FACTOR_BOUND, WIDTH_BOUND_FACTOR } from "./bounds.ts";
+import { condenseWith, featuresAt, lineReach } from "./condense-spectrum.ts";
 import type { ConstraintSpec, LineParameterName, Rule } from "./constraint-spec.ts";
 import type { FitPoints, LevelValues, WidthValues } from "./model-spec.ts";
 import type { SpectrumProblem } from "./spectrum-problem.ts";
+import type { Feature } from "./transmittance-grid.ts";
 
 /** One nonlinear parameter of the constrained problem. */
 export interface OwnParameter {
@@ -54,6 +56,7 @@ export class ConstrainedProblem implements SeparableProblem {
   readonly wideNonlinear: number;
   readonly wideLinear: number;
   private readonly points: FitPoints;
+  private readonly innerStart: Float64Array;
   /** u of each wide theta, -1 where it is derived or held. */
   private readonly ownAt: Int32Array;
   /** Constants of held entries. */
@@ -77,6 +80,7 @@ export class ConstrainedProblem implements SeparableProblem {
 
   constructor(points: FitPoints, inner: SpectrumProblem, spec: ConstraintSpec, start: Float64Array) {
     this.points = points;
+    this.innerStart = start;
     this.inner = inner;
     this.spec = spec;
     this.rows = inner.rows;
@@ -239,6 +243,24 @@ export class ConstrainedProblem implements SeparableProblem {
     return this.parametersAt(u, false).theta;
   }
 
+  /** The plain problem's few rows, with the extra lines among its features. */
+  condense(u: Float64Array): CondensedProblem | null {
+    const { inner, spec, innerStart, extraLines } = this;
+    const features = (at: Float64Array): Feature[] => {
+      const theta = this.thetaOf(at);
+      const reach = lineReach(inner.spec);
+      const extra = extraLines.map((line) => ({
+        energy: theta[line.energyAt]!,
+        width: theta[line.widthAt]! + reach,
+      }));
+      return [...featuresAt(inner, theta.subarray(0, inner.nonlinear)), ...extra];
+    };
+    const few = condenseWith(inner, features, u);
+    if (few === null) return null;
+    const { lost, serves } = few;
+    return { problem: new ConstrainedProblem(few.points, few.inner, spec, innerStart), lost, serves };
+  }
+
   columns(u: Float64Array, phi: Float64Array): void {
     this.fillWide(u);
     const map = this.coefficientMap(u, null, false).matrix;
@@ -282,6 +304,13 @@ export class ConstrainedProblem implements SeparableProblem {
       ];
       const { energy, width } = this.extraPlace(line, theta);
       linePairWithDerivatives(points.energy, 0, m, energy, width, inner.spec.gaussStd, l, d, lE, lG, dE, dG);
+      if (inner.spec.partner === true)
+        for (const [x, y] of [
+          [l, d],
+          [lE, dE],
+          [lG, dG],
+        ] as const)
+          turnPair(x, y);
       const a = coefficients[inner.linear + x]!;
       for (let i = 0; i < m; i++) {
         wideDerivative[line.energyAt * m + i] = a * (lE[i]! + 2 * q * dE[i]!);
@@ -589,6 +618,7 @@ export class ConstrainedProblem implements SeparableProblem {
       const [l, d] = this.scratch as [Float64Array, Float64Array];
       const { energy, width } = this.extraPlace(line, theta);
       linePair(points.energy, 0, m, energy, width, inner.spec.gaussStd, l, d);
+      if (inner.spec.partner === true) turnPair(l, d);
       const at = (inner.linear + x) * m;
       for (let i = 0; i < m; i++) wide[at + i] = l[i]! + 2 * q * d[i]!;
     });

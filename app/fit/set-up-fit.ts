@@ -54,9 +54,27 @@ export function setUpFit(points: FitPoints, spec: ModelSpec, start: FitStart): F
     reduce: (coefficients) => problem.reduce(coefficients),
     describe: (solution) => {
       const { solution: wide, parts } = expandSolution(problem, solution);
-      return { ...describeFit(inner, wide), constrained: parts };
+      return withoutHeldVariance({ ...describeFit(inner, wide), constrained: parts });
     },
   };
+}
+
+/** An asymmetry is a ratio of areas, so that one that is held would keep the rounding of their covariance. */
+export function withoutHeldVariance(fit: SpectrumFit): SpectrumFit {
+  const held = fit.constrained?.held.asymmetry ?? [];
+  if (held.length === 0) return fit;
+  const { lines } = fit;
+  const k = lines.ns.length;
+  const size = 4 * k;
+  const covariance = lines.covariance.slice();
+  for (const n of held) {
+    const i = 3 * k + lines.ns.indexOf(n);
+    for (let j = 0; j < size; j++) {
+      covariance[i * size + j] = 0;
+      covariance[j * size + i] = 0;
+    }
+  }
+  return { ...fit, lines: { ...lines, covariance } };
 }
 
 /** The linear coefficients of the plain model at its start. */
