@@ -37,6 +37,7 @@ import {
 import type { CommandLineIo } from "./command-line-io.ts";
 import { comparisonChoicesFrom, wordIssue, type CompareOptions } from "./compare-command.ts";
 import { EXIT, UsageError } from "./exit-status.ts";
+import { makeProgress } from "./progress-bar.ts";
 
 export interface ReportOptions extends Pick<
   CompareOptions,
@@ -62,6 +63,7 @@ export async function reportCommand(
   words: readonly string[],
   options: ReportOptions,
   io: CommandLineIo,
+  signal: AbortSignal,
 ): Promise<number> {
   const choices = await comparisonChoicesFrom(options, io.workingFolder);
   const look = figureLookFrom(options);
@@ -107,12 +109,34 @@ export async function reportCommand(
   for (const { file, kind } of outputs) await refuseOther(file, kind);
   for (const folder of [options.figures, options.tables])
     if (folder !== undefined) await makeFolder(resolve(io.workingFolder, folder));
-  for (const { file, content } of outputs) await writeWhole(file, await content());
+  if (!(await writeAll(outputs, io, signal))) return EXIT.cancelled;
   for (const character of press?.missing() ?? [])
     io.stderr(
       `rungline: the typeface of the figures has no sign for "${character}": another stands for it\n`,
     );
   return refused.length > 0 ? EXIT.input : EXIT.done;
+}
+
+/** False where it was cancelled: what is written by then is whole. */
+async function writeAll(
+  outputs: readonly Output[],
+  io: CommandLineIo,
+  signal: AbortSignal,
+): Promise<boolean> {
+  const bar = io.terminal !== null && outputs.length > 1 ? await makeProgress(io, ["writing"]) : null;
+  bar?.begin(0);
+  try {
+    for (const [i, { file, content }] of outputs.entries()) {
+      if (signal.aborted) return false;
+      bar?.update(0, i / outputs.length, basename(file));
+      await writeWhole(file, await content());
+      // Nothing here waits for long, so Ctrl+C is heard only where it is let in.
+      await new Promise((resolve) => setImmediate(resolve));
+    }
+    return true;
+  } finally {
+    bar?.close();
+  }
 }
 
 async function refuseOther(file: string, kind: OutputKind): Promise<void> {

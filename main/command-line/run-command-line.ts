@@ -177,7 +177,7 @@ function describeProgram(
     .option("--choices <file>", "choices of an earlier comparison, from its JSON or a report", once())
     .action(async (results: string[], options: ReportOptions) => {
       const { reportCommand } = await import("./report-command.ts");
-      end(await reportCommand(results, options, io));
+      end(await reportCommand(results, options, io, signal));
     });
 
   addChoices(

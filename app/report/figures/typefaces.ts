@@ -1,4 +1,4 @@
-import * as fontkit from "fontkit";
+import { create } from "fontkit";
 import { richText } from "../rich-text.ts";
 import { SCRIPT_SIZE, scriptShift, type Drawn } from "./drawing.ts";
 
@@ -8,8 +8,28 @@ export interface FontFiles {
   readonly italic: readonly Uint8Array[];
 }
 
+/** What is used of an opened typeface. */
+export interface OpenFont {
+  readonly postscriptName: string;
+  readonly unitsPerEm: number;
+  hasGlyphForCodePoint(codePoint: number): boolean;
+  layout(text: string, features?: Readonly<Record<string, boolean>>): { readonly glyphs: readonly Glyph[] };
+}
+
+interface Glyph {
+  readonly advanceWidth: number;
+  /** In units of the typeface, y upwards. */
+  readonly path: GlyphPath;
+}
+
+interface GlyphPath {
+  scale(x: number, y: number): GlyphPath;
+  translate(x: number, y: number): GlyphPath;
+  toSVG(): string;
+}
+
 export interface Face {
-  readonly font: fontkit.Font;
+  readonly font: OpenFont;
   readonly bytes: Uint8Array;
 }
 
@@ -37,7 +57,7 @@ export class Typefaces {
   readonly #missing = new Set<string>();
 
   constructor({ upright, italic }: FontFiles) {
-    const open = (bytes: Uint8Array): Face => ({ font: fontkit.create(bytes), bytes });
+    const open = (bytes: Uint8Array): Face => ({ font: create(bytes) as OpenFont, bytes });
     this.#upright = upright.map(open);
     // A name of a sample in an alphabet that has no italic here is still written.
     this.#italic = [...italic.map(open), ...this.#upright];
