@@ -1,4 +1,4 @@
-import { doubt, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
+import { doubt, partOfWatch, stopIfCancelled, type Note, type Watch } from "../base/index.ts";
 import { fitSpectrum, type SpectrumFit } from "../fit/index.ts";
 import { strength } from "../laws/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
@@ -15,8 +15,10 @@ import { judgeLevels } from "./level-range.ts";
 import { asksForFringes, findFringes, givenPeriod, startWave, withoutWave } from "./fringes.ts";
 import { fitInDomain } from "./measured-domain.ts";
 import {
+  drawingProgress,
   drawSpectra,
   planResampling,
+  shareBeforeDraws,
   summariseDraws,
   type ResampledDraw,
   type ResamplingPlan,
@@ -60,9 +62,10 @@ export interface AnalyseOptions {
 export function analyse(
   spectrum: Spectrum,
   protocol: Protocol,
-  watch: Watch,
+  whole: Watch,
   options: AnalyseOptions = {},
 ): Analysis {
+  const watch = partOfWatch(whole, 0, shareBeforeDraws(protocol.uncertainty));
   const began = watch.seconds();
   watch.report(0.05, "looking for lines");
   const everything = selectPoints(
@@ -130,12 +133,11 @@ export function analyse(
     },
   };
   const curves = drawCurves(spectrum, fitted, full);
-  if (plan === null || options.resampling === "later") return { result, curves, resampling: plan };
-  const { resamples } = protocol.uncertainty;
-  const draws = drawSpectra(plan, 0, resamples, watch, (done) =>
-    watch.report(0.85 + (0.14 * done) / resamples, `drawing spectra anew, ${done} of ${resamples}`),
-  );
   watch.report(1, "done");
+  if (plan === null || options.resampling === "later") return { result, curves, resampling: plan };
+  const draws = drawSpectra(plan, 0, protocol.uncertainty.resamples, whole, (done) =>
+    whole.report(...drawingProgress(done, protocol.uncertainty)),
+  );
   return {
     result: withResampling(result, plan, draws, watch.seconds() - uncertaintyBegan),
     curves,

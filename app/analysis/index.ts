@@ -13,4 +13,4 @@ export type { LadderState, ModelChoices } from "./ladder-model.ts";
 export { selectPoints, type SelectedPoints } from "./select-points.ts";
 export { linesForThinning, thinPoints } from "./thin-points.ts";
 export { sortNotes } from "./describe-result.ts";
-export { drawSpectra, type ResampledDraw, type ResamplingPlan } from "./resample.ts";
+export { drawingProgress, drawSpectra, type ResampledDraw, type ResamplingPlan } from "./resample.ts";

@@ -1,6 +1,7 @@
 import {
   doubt,
   failure,
+  partOfWatch,
   success,
   symmetric,
   type Note,
@@ -20,7 +21,6 @@ import {
 import type { PowerResult, Protocol } from "../protocol/index.ts";
 import { fitPowerSeries, type FittedMember, type FittedSeries } from "./fit-series.ts";
 import { judgePower } from "./judge-power.ts";
-import { partOfWatch } from "./part-of-watch.ts";
 import type { PowerSeries, SeriesIssue } from "./read-series.ts";
 import { wordPowerSeriesIssue, type PowerSeriesIssue } from "./series-issue.ts";
 import { powerInput, withHeaderFacts } from "./series-input.ts";

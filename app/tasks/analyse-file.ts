@@ -1,5 +1,12 @@
 import { sha256, success, type Issue, type Result, type Watch } from "../base/index.ts";
-import { analyse, type Curves } from "../analysis/index.ts";
+import {
+  analyse,
+  withResampling,
+  type AnalyseOptions,
+  type Curves,
+  type ResampledDraw,
+  type ResamplingPlan,
+} from "../analysis/index.ts";
 import type { JudgeIssue, PowerSeriesIssue } from "../power/index.ts";
 import {
   resolveProtocol,
@@ -43,6 +50,11 @@ export interface AnalysedFile {
   readonly curves: Curves;
 }
 
+/** A file whose resampled spectra the caller still has to draw; null: nothing is left to draw. */
+export interface UndrawnFile extends AnalysedFile {
+  readonly resampling: ResamplingPlan | null;
+}
+
 /** Bytes to spectrum: what `inspect`, the stage Read and every fit begin with. */
 export function readFile(request: FileRequest): Result<ReadFile, TaskIssue> {
   const protocol = resolveProtocol(request.choices);
@@ -65,16 +77,32 @@ export function analyseFile(
   request: FileRequest,
   run: RunFacts,
   watch: Watch,
-): Result<AnalysedFile, TaskIssue> {
+  options: AnalyseOptions = {},
+): Result<UndrawnFile, TaskIssue> {
   const began = watch.seconds();
   watch.report(0, "reading");
   const read = readFile(request);
   if (!read.ok) return read;
   const readSeconds = watch.seconds() - began;
-  const { result, curves } = analyse(read.value.spectrum, read.value.protocol, watch);
+  const { result, curves, resampling } = analyse(read.value.spectrum, read.value.protocol, watch, options);
   const { seconds, ...rest } = result;
   return success({
     result: { ...rest, run: { ...run, seconds: { read: readSeconds, ...seconds } } },
     curves,
+    resampling,
   });
+}
+
+/** A file with all draws of its plan, in their order, whoever made them: the same to the bit as if drawn at once. */
+export function withDraws(
+  { result, curves }: AnalysedFile,
+  plan: ResamplingPlan,
+  draws: readonly (ResampledDraw | null)[],
+  drawingSeconds: number,
+): AnalysedFile {
+  const { run, ...rest } = result;
+  const { read, ...seconds } = run.seconds;
+  const drawn = withResampling({ ...rest, seconds }, plan, draws, seconds.uncertainty + drawingSeconds);
+  const { seconds: all, ...described } = drawn;
+  return { result: { ...described, run: { ...run, seconds: { read, ...all } } }, curves };
 }

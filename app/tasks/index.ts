@@ -5,5 +5,6 @@ export * from "./compare-samples.ts";
 export * from "./record-files.ts";
 export * from "./messages.ts";
 export * from "./host.ts";
+export { drawingProgress, drawSpectra, type ResampledDraw, type ResamplingPlan } from "../analysis/index.ts";
 export { wordIssue } from "./word-issue.ts";
 export { typedValues, wordBatchIssue, type BatchIssue } from "../batch/index.ts";

@@ -81,10 +81,17 @@ export async function fitCommand(
 ): Promise<number> {
   const began = Date.now();
   const inputs = await listInputs(words, io.workingFolder);
-  const threads = Math.max(1, Math.min(options.threads ?? availableParallelism(), inputs.files.length));
-  const runner = io.makeRunner(threads);
+  const most = options.threads ?? availableParallelism();
+  const threads = Math.max(1, Math.min(most, inputs.files.length));
+  // Made before the choices are read, so that it loads meanwhile.
+  let runner = io.makeRunner(threads);
   try {
     const choices = await readChoices(options, io.workingFolder);
+    if (choices.protocol.uncertainty.resample !== "none" && most > threads) {
+      // Spectra of one file are drawn by all threads.
+      await runner.close();
+      runner = io.makeRunner(most);
+    }
     const place = await placeOutput(options.out, options.format, inputs, io.workingFolder, options.curves);
     let status: number = EXIT.done;
     const raise = (to: number): void => {
