@@ -6,6 +6,7 @@ import {
   type Quantity,
   type Watch,
 } from "../base/index.ts";
+import type { LineParameterName } from "../fit/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import {
   deriveQuantities,
@@ -102,29 +103,36 @@ export function describeResult(
     // q of a line whose area is hardly seen says nothing.
     const held = (parameter: "energy" | "width" | "area"): Quantity | null =>
       isHeld(fit, n, parameter) ? heldQuantity(fit.lines[parameter][j]!) : null;
+    // At a bound the data say where a value wants to be, not how well it is known; so it is with what follows from it.
+    const ended = (parameter: LineParameterName): boolean =>
+      fit.constrained?.limited.some((one) => one.n === n && one.parameter === parameter) ?? false;
+    const unlessEnded = (found: Quantity, ...parameters: LineParameterName[]): Quantity =>
+      parameters.some(ended) ? { ...found, sigma: null, low: null, high: null } : found;
     const qKnown = asymmetryFree && (protocol.lines.asymmetry === "shared" || seen[j]! > 3);
     return {
       n,
-      energy_eV: held("energy") ?? quantity(fit.lines.energy[j]!, error(0, j), bound),
-      width_eV: held("width") ?? quantity(fit.lines.width[j]!, error(1, j), bound),
-      area: held("area") ?? quantity(fit.lines.area[j]!, error(2, j)),
+      energy_eV: held("energy") ?? quantity(fit.lines.energy[j]!, error(0, j), bound || ended("energy")),
+      width_eV: held("width") ?? quantity(fit.lines.width[j]!, error(1, j), bound || ended("width")),
+      area: held("area") ?? quantity(fit.lines.area[j]!, error(2, j), ended("area")),
       asymmetry: isHeld(fit, n, "asymmetry")
         ? heldQuantity(fit.lines.asymmetry[j]!)
         : !asymmetryFree
           ? { value: 0, sigma: 0, low: 0, high: 0 }
           : qKnown
-            ? quantity(fit.lines.asymmetry[j]!, error(3, j))
+            ? quantity(fit.lines.asymmetry[j]!, error(3, j), ended("asymmetry"))
             : NOT_DETERMINED,
       significance: isHeld(fit, n, "area") ? 0 : seen[j]!,
       bic_gain: isHeld(fit, n, "area") ? null : bicGain(seen[j]!, m),
-      peak: derived.peak,
+      peak: unlessEnded(derived.peak, "width", "area", "asymmetry"),
       spacing_eV: derived.spacing_eV,
       width_over_spacing: derived.width_over_spacing,
-      lifetime_ps: derived.lifetime_ps,
-      law_offset_eV: tiedNs.includes(n) ? { value: 0, sigma: 0, low: 0, high: 0 } : derived.law_offset_eV,
+      lifetime_ps: unlessEnded(derived.lifetime_ps, "width"),
+      law_offset_eV: tiedNs.includes(n)
+        ? { value: 0, sigma: 0, low: 0, high: 0 }
+        : unlessEnded(derived.law_offset_eV, "energy"),
       in_level_fit: derived.in_level_fit,
-      area_n3: derived.area_n3,
-      strength_per_cm3: derived.strength_per_cm3,
+      area_n3: unlessEnded(derived.area_n3, "area"),
+      strength_per_cm3: unlessEnded(derived.strength_per_cm3, "area"),
     };
   });
   const laws = describeLaws(full, protocol, factor);

@@ -95,6 +95,15 @@ describe("bounded parameters", () => {
     const result = fitted({ lines: { constraints: [{ n: 6, parameter, ...bound }] } });
     const note = result.notes.find(({ code }) => code === "constraint-at-bound");
     expect(note?.about).toContain("n=6");
+    const line = lineOf(result, 6);
+    // Derived: at a bound nothing is known of an error, so none is stated, nor for what follows from the value.
+    const key = ({ energy: "energy_eV", width: "width_eV", area: "area", asymmetry: "asymmetry" } as const)[
+      parameter
+    ];
+    expect(line[key].sigma).toBeNull();
+    if (parameter === "width") expect(line.lifetime_ps.sigma).toBeNull();
+    if (parameter === "area") expect(line.area_n3.sigma).toBeNull();
+    if (parameter === "energy") expect(line.law_offset_eV.sigma).toBeNull();
   });
 });
 
