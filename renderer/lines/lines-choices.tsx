@@ -2,6 +2,7 @@ import { PRESETS, resolveProtocol, type BackgroundTerm } from "../../app/protoco
 import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
 import { parseNumber } from "../controls/parse-number.ts";
 import { FitButton } from "../controls/fit-button.tsx";
+import { ExtraSeriesClauses } from "./extra-series.tsx";
 import { parseList } from "./parse-list.ts";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 
@@ -14,7 +15,7 @@ export function LinesChoices() {
   const resolved = resolveProtocol(choices);
   if (!resolved.ok) return null;
   const protocol = resolved.value;
-  const { lines, series } = protocol;
+  const { lines, series, width, strength } = protocol;
   const polynomial = protocol.background.find((term) => term.term === "polynomial");
   const window = protocol.window_eV;
   return (
@@ -104,6 +105,7 @@ export function LinesChoices() {
               { value: "shared", text: "one asymmetry for all" },
               { value: "free", text: "an asymmetry each" },
               { value: "zero", text: "symmetric lines" },
+              { value: "law", text: "an asymmetry smooth in n" },
             ]}
             onPick={(asymmetry) => controller.change({ lines: { asymmetry } }, `asymmetry ${asymmetry}`)}
           />
@@ -140,16 +142,26 @@ export function LinesChoices() {
         </Clause>
         <Clause>
           levels{" "}
-          <Pick
+          <FreeOrLaw
             label="Levels"
             value={series.mode}
-            options={[
-              { value: "free", text: "free" },
-              { value: "tied", text: "tied to the law" },
-            ]}
             onPick={(mode) => controller.change({ series: { mode } }, `levels ${mode}`)}
           />
+          , widths{" "}
+          <FreeOrLaw
+            label="Widths"
+            value={width.mode}
+            onPick={(mode) => controller.change({ width: { mode } }, `widths ${mode}`)}
+          />
+          , areas{" "}
+          <FreeOrLaw
+            label="Areas"
+            value={strength.mode}
+            onPick={(mode) => controller.change({ strength: { mode } }, `areas ${mode}`)}
+          />
+          ;
         </Clause>
+        <ExtraSeriesClauses extra={series.extra} />
       </Sentence>
       <FitButton />
     </div>
@@ -169,6 +181,25 @@ export function LinesChoices() {
     controller.change({ window_eV: moved }, `window ${moved[0]} to ${moved[1]} eV`);
     return null;
   }
+}
+
+interface FreeOrLawProps {
+  readonly label: string;
+  readonly value: "free" | "tied";
+  readonly onPick: (value: "free" | "tied") => void;
+}
+
+/** Whether a parameter of the lines is fitted line by line or is the law itself. */
+function FreeOrLaw(props: FreeOrLawProps) {
+  return (
+    <Pick
+      {...props}
+      options={[
+        { value: "free", text: "free" },
+        { value: "tied", text: "by their law" },
+      ]}
+    />
+  );
 }
 
 function withOrder(terms: readonly BackgroundTerm[], order: string): BackgroundTerm[] {

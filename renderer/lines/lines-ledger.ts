@@ -3,6 +3,7 @@ import type { RunglineResult } from "../../app/protocol/index.ts";
 import { formatNumber } from "../../app/report/index.ts";
 import type { CardText, LedgerEntry, LedgerSection } from "../ledger/ledger-entry.ts";
 import { notesOfLine } from "../rungs/rung-layout.ts";
+import { lineUnits } from "./line-units.ts";
 
 const SHAPE = "α_n = (A_n/π)[g + 2q(E − E_n)]/[(E − E_n)² + g²], g = Γ_n/2";
 const TOYOZAWA = "Toyozawa, J. Phys. Chem. Solids 25, 59 (1964)";
@@ -59,6 +60,13 @@ const CARDS = {
   },
 } as const satisfies Record<string, CardText>;
 
+/** Why a number that is not the line's own parameter has no error: others were held. */
+const EXACT_WORDS: Partial<Record<keyof typeof CARDS, string>> = {
+  offset: "follows the law",
+  peak: "from held values",
+  lifetime: "from held values",
+};
+
 /** The numbers of the chosen line. */
 export function lineSection(result: RunglineResult, n: number): LedgerSection | null {
   const index = result.lines.findIndex((line) => line.n === n);
@@ -66,6 +74,7 @@ export function lineSection(result: RunglineResult, n: number): LedgerSection | 
   if (line === undefined) return null;
   const about = notesOfLine(result.notes, index, n);
   const perCm = result.reading.signal_unit === "1/cm";
+  const { unit: areaUnit, scale: areaScale } = lineUnits(result).area;
   const entry = (
     id: keyof typeof CARDS,
     letter: string,
@@ -78,6 +87,7 @@ export function lineSection(result: RunglineResult, n: number): LedgerSection | 
     plain?: string,
   ): LedgerEntry => ({
     id: `line-${id}`,
+    exactWord: EXACT_WORDS[id] ?? "held",
     symbol: below === undefined ? { letter } : { letter, below },
     name,
     quantity,
@@ -96,7 +106,7 @@ export function lineSection(result: RunglineResult, n: number): LedgerSection | 
     entries: [
       entry("energy", "E", sub, "Energy", line.energy_eV, "eV", 1, "energy_eV"),
       entry("width", "Γ", sub, "Width", line.width_eV, "µeV", 1e6, "width_eV"),
-      entry("area", "A", sub, "Area", line.area, perCm ? "meV/cm" : "meV", 1e3, "area"),
+      entry("area", "A", sub, "Area", line.area, areaUnit, areaScale, "area"),
       entry("asymmetry", "q", sub, "Asymmetry", line.asymmetry, "", 1, "asymmetry"),
       entry("peak", "α", sub, "Peak", line.peak, perCm ? "1/cm" : "", 1, "peak"),
       entry("offset", "Δ", sub, "From the law", line.law_offset_eV, "µeV", 1e6, "law_offset_eV"),

@@ -7,6 +7,7 @@ import type { Edge } from "../plot/edge-handle.tsx";
 import { Figure, type FigureHandle } from "../plot/figure.tsx";
 import { currentAnalysed, currentChoices, useController, useWindow } from "../store/context.ts";
 import { backgroundSection, fitSection, lineSection } from "./lines-ledger.ts";
+import { LineChoices } from "./line-choices.tsx";
 import { LinesChoices } from "./lines-choices.tsx";
 import { fittedWindow, linesFigure, type LinesView } from "./lines-figure.ts";
 import { LinesTable } from "./lines-table.tsx";
@@ -121,6 +122,7 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
       ledger={
         <>
           <LinesTable result={result} />
+          <LineChoices result={result} n={selected} />
           {selected === null && (
             <p className="small ledger-hint">Choose a line here or on the ladder to see its numbers.</p>
           )}

@@ -55,7 +55,7 @@ export function rungLayout(result: RunglineResult, height: number): RungLayout |
     else
       levels.push({
         n,
-        kind: isDoubtful(result.notes, found.i, n, found.line.significance) ? "doubtful" : "determined",
+        kind: isDoubtful(result, found.i) ? "doubtful" : "determined",
         energy_eV: energy,
         width: found.line.width_eV.value,
       });
@@ -122,8 +122,11 @@ function place(levels: readonly Level[], gap: number, height: number): RungLayou
 
 const SURE = 5;
 
-function isDoubtful(notes: readonly Note[], index: number, n: number, significance: number): boolean {
-  return significance < SURE || notesOfLine(notes, index, n).some((note) => note.level === "doubt");
+/** Whether the line at this place is hardly seen, or a doubt is about it. A held area says nothing of how well it is seen. */
+export function isDoubtful({ lines, notes }: RunglineResult, index: number): boolean {
+  const { n, significance, area } = lines[index]!;
+  if (significance < SURE && area.sigma !== 0) return true;
+  return notesOfLine(notes, index, n).some((note) => note.level === "doubt");
 }
 
 /** Notes about one line: `lines[n=7]...`, `lines[n=7,8]...`, or `lines[i]...` with i its place in the result. */
