@@ -156,16 +156,29 @@ export class SpectrumProblem implements SeparableProblem {
   columns(theta: Float64Array, phi: Float64Array): void {
     const { rows: m } = this;
     const tail = this.tailColumns(theta, this.asymmetryOf(theta), false);
-    for (let first = 0; first < m; first += BLOCK)
-      this.writeColumns(theta, tail, first, Math.min(m, first + BLOCK), phi, m, first);
+    for (let first = 0; first < m; first += BLOCK) {
+      const block = { first, end: Math.min(m, first + BLOCK), ld: m, at: first };
+      for (let j = 0; j < this.spec.ns.length; j++) {
+        this.takePair(j, theta, block, false);
+        this.writeColumns(j, theta, tail, block, phi);
+      }
+      this.writeBackground(block, phi);
+    }
   }
 
   derivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
     const { rows: m } = this;
     const strength = this.tailStrength(theta, coefficients);
     this.tailColumns(theta, strength.q, true);
-    for (let first = 0; first < m; first += BLOCK)
-      this.writeDerivatives(theta, coefficients, strength, first, Math.min(m, first + BLOCK), out, m, first);
+    for (let first = 0; first < m; first += BLOCK) {
+      const block = { first, end: Math.min(m, first + BLOCK), ld: m, at: first };
+      this.clearShared(block, out);
+      for (let j = 0; j < this.spec.ns.length; j++) {
+        this.takePair(j, theta, block, true);
+        this.writeDerivatives(j, theta, coefficients, block, out);
+      }
+      this.addTailDerivatives(theta, strength, block, out);
+    }
   }
 
   blocks(
@@ -174,109 +187,110 @@ export class SpectrumProblem implements SeparableProblem {
   ): (first: number, end: number, phi: Float64Array, derivatives: Float64Array) => void {
     const strength = this.tailStrength(theta, coefficients);
     const tail = this.tailColumns(theta, strength.q, true);
-    return (first, end, phi, derivatives) => {
-      const height = end - first;
-      for (let from = first; from < end; from += BLOCK) {
-        const to = Math.min(end, from + BLOCK);
-        this.writeColumns(theta, tail, from, to, phi, height, from - first);
-        this.writeDerivatives(theta, coefficients, strength, from, to, derivatives, height, from - first);
+    return (from, to, phi, derivatives) => {
+      for (let first = from; first < to; first += BLOCK) {
+        const block = { first, end: Math.min(to, first + BLOCK), ld: to - from, at: first - from };
+        this.clearShared(block, derivatives);
+        for (let j = 0; j < this.spec.ns.length; j++) {
+          this.takePair(j, theta, block, true);
+          this.writeColumns(j, theta, tail, block, phi);
+          this.writeDerivatives(j, theta, coefficients, block, derivatives);
+        }
+        this.writeBackground(block, phi);
+        this.addTailDerivatives(theta, strength, block, derivatives);
       }
     };
   }
 
-  /** Columns of the rows first <= i < end, as rows `at` and on of a matrix with leading dimension `ld`. */
+  /** The pair of line j on a block of rows, with its derivatives where asked for. */
+  private takePair(j: number, theta: Float64Array, { first, end }: Block, derivatives: boolean): void {
+    const { points, spec, layout } = this;
+    const { l, d, lE, lG, dE, dG } = this.profile;
+    const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
+    const energy = this.energyOf(j, theta);
+    const std = this.stdOf(j);
+    if (derivatives)
+      linePairWithDerivatives(points.energy, first, end, energy, width, std, l, d, lE, lG, dE, dG, -first);
+    else linePair(points.energy, first, end, energy, width, std, l, d, -first);
+    if (spec.partner !== true) return;
+    turnPair(l, d);
+    if (!derivatives) return;
+    turnPair(lE, dE);
+    turnPair(lG, dG);
+  }
+
+  /** Columns of line j from its pair. */
   private writeColumns(
+    j: number,
     theta: Float64Array,
     tail: { even: Float64Array; odd: Float64Array } | null,
-    first: number,
-    end: number,
+    { first, end, ld, at }: Block,
     phi: Float64Array,
-    ld: number,
-    at: number,
   ): void {
-    const { points, spec, layout } = this;
+    const { spec } = this;
     const { l, d } = this.profile;
-    const k = spec.ns.length;
     const height = end - first;
     const free = hasOddAreas(spec);
     const odd = 2 * this.asymmetryOf(theta);
-    for (let j = 0; j < k; j++) {
-      const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
-      linePair(points.energy, first, end, this.energyOf(j, theta), width, this.stdOf(j), l, d, -first);
-      if (spec.partner === true) turnPair(l, d);
-      const column = j * ld + at;
-      for (let i = 0; i < height; i++) phi[column + i] = l[i]! + odd * d[i]!;
-      const second = (k + j) * ld + at;
-      if (free) for (let i = 0; i < height; i++) phi[second + i] = 2 * d[i]!;
-      const share = spec.tail?.strengthShare[j] ?? 0;
-      if (tail === null || share === 0) continue;
-      for (let i = 0; i < height; i++)
-        phi[column + i]! += share * (tail.even[first + i]! + odd * tail.odd[first + i]!);
-      // The tail is as asymmetric as the lines that speak for its strength: its odd part follows their odd areas.
-      if (free) for (let i = 0; i < height; i++) phi[second + i]! += 2 * share * tail.odd[first + i]!;
-    }
-    spec.background.forEach(({ values }, b) => {
+    const column = j * ld + at;
+    for (let i = 0; i < height; i++) phi[column + i] = l[i]! + odd * d[i]!;
+    const second = (spec.ns.length + j) * ld + at;
+    if (free) for (let i = 0; i < height; i++) phi[second + i] = 2 * d[i]!;
+    const share = spec.tail?.strengthShare[j] ?? 0;
+    if (tail === null || share === 0) return;
+    for (let i = 0; i < height; i++)
+      phi[column + i]! += share * (tail.even[first + i]! + odd * tail.odd[first + i]!);
+    // The tail is as asymmetric as the lines that speak for its strength: its odd part follows their odd areas.
+    if (free) for (let i = 0; i < height; i++) phi[second + i]! += 2 * share * tail.odd[first + i]!;
+  }
+
+  private writeBackground({ first, end, ld, at }: Block, phi: Float64Array): void {
+    this.spec.background.forEach(({ values }, b) => {
       const column = (this.backgroundAt + b) * ld + at;
-      for (let i = 0; i < height; i++) phi[column + i] = values[first + i]!;
+      for (let i = first; i < end; i++) phi[column + i - first] = values[i]!;
     });
   }
 
-  /** Derivatives in the same way; those of the tail must be at hand. */
+  /** Columns of derivatives that more than one line adds to begin at nothing; the others belong to one line. */
+  private clearShared({ first, end, ld, at }: Block, out: Float64Array): void {
+    const { lawCount, asymmetryAt, factorAt } = this.layout;
+    const clear = (p: number): void => void out.fill(0, p * ld + at, p * ld + at + end - first);
+    for (let p = 0; p < lawCount; p++) clear(p);
+    if (asymmetryAt >= 0) clear(asymmetryAt);
+    if (factorAt >= 0) clear(factorAt);
+  }
+
+  /** What line j gives to the derivatives, from its pair. */
   private writeDerivatives(
+    j: number,
     theta: Float64Array,
     coefficients: Float64Array,
-    strength: TailStrength,
-    first: number,
-    end: number,
+    { first, end, ld, at }: Block,
     out: Float64Array,
-    ld: number,
-    at: number,
   ): void {
-    const { points, spec, layout } = this;
-    const { l, d, lE, lG, dE, dG } = this.profile;
-    const k = spec.ns.length;
+    const { spec, layout } = this;
+    const { d, lE, lG, dE, dG } = this.profile;
     const height = end - first;
-    const q = this.asymmetryOf(theta);
-    const free = hasOddAreas(spec);
-    // Where levels are tied a column has parts from many lines; the others belong to one line alone.
-    const shared = (column: number): void => void out.fill(0, column * ld + at, column * ld + at + height);
-    for (let p = 0; p < layout.lawCount; p++) shared(p);
-    if (layout.asymmetryAt >= 0) shared(layout.asymmetryAt);
-    if (layout.factorAt >= 0) shared(layout.factorAt);
-    const tied = spec.tiedLevels === null ? null : this.tiedLaw(theta);
-    for (let j = 0; j < k; j++) {
-      const width = theta[layout.widthAt[j]!]! + (spec.instrumentLorentz ?? 0);
-      const energy = this.energyOf(j, theta);
-      const std = this.stdOf(j);
-      linePairWithDerivatives(points.energy, first, end, energy, width, std, l, d, lE, lG, dE, dG, -first);
-      if (spec.partner === true)
-        for (const [x, y] of [
-          [l, d],
-          [lE, dE],
-          [lG, dG],
-        ] as const)
-          turnPair(x, y);
-      const a = coefficients[j]!;
-      const b = 2 * (q * a + (free ? coefficients[k + j]! : 0));
-      const byWidth = layout.widthAt[j]! * ld + at;
-      for (let i = 0; i < height; i++) out[byWidth + i] = a * lG[i]! + b * dG[i]!;
-      if (layout.energyAt[j]! >= 0) {
-        const byEnergy = layout.energyAt[j]! * ld + at;
-        for (let i = 0; i < height; i++) out[byEnergy + i] = a * lE[i]! + b * dE[i]!;
-      } else if (tied !== null) {
-        levelLaw(spec.ns[j]!, tied, this.law);
-        for (let p = 0; p < layout.lawCount; p++) {
-          const slope = this.law[1 + p]!;
-          const column = p * ld + at;
-          for (let i = 0; i < height; i++) out[column + i]! += slope * (a * lE[i]! + b * dE[i]!);
-        }
-      }
-      if (layout.asymmetryAt >= 0) {
-        const column = layout.asymmetryAt * ld + at;
-        for (let i = 0; i < height; i++) out[column + i]! += 2 * a * d[i]!;
+    const a = coefficients[j]!;
+    const own = hasOddAreas(spec) ? coefficients[spec.ns.length + j]! : 0;
+    const b = 2 * (this.asymmetryOf(theta) * a + own);
+    const byWidth = layout.widthAt[j]! * ld + at;
+    for (let i = 0; i < height; i++) out[byWidth + i] = a * lG[i]! + b * dG[i]!;
+    if (layout.energyAt[j]! >= 0) {
+      const byEnergy = layout.energyAt[j]! * ld + at;
+      for (let i = 0; i < height; i++) out[byEnergy + i] = a * lE[i]! + b * dE[i]!;
+    } else if (spec.tiedLevels !== null) {
+      levelLaw(spec.ns[j]!, this.tiedLaw(theta), this.law);
+      for (let p = 0; p < layout.lawCount; p++) {
+        const slope = this.law[1 + p]!;
+        const column = p * ld + at;
+        for (let i = 0; i < height; i++) out[column + i]! += slope * (a * lE[i]! + b * dE[i]!);
       }
     }
-    this.addTailDerivatives(theta, strength, first, end, out, ld, at);
+    if (layout.asymmetryAt >= 0) {
+      const column = layout.asymmetryAt * ld + at;
+      for (let i = 0; i < height; i++) out[column + i]! += 2 * a * d[i]!;
+    }
   }
 
   /** T = even + 2 q odd at theta (m each), or null; with `derivatives` the evaluator's derivative columns are filled too. */
@@ -313,11 +327,8 @@ export class SpectrumProblem implements SeparableProblem {
   private addTailDerivatives(
     theta: Float64Array,
     { strength, q }: TailStrength,
-    first: number,
-    end: number,
+    { first, end, ld, at }: Block,
     out: Float64Array,
-    ld: number,
-    at: number,
   ): void {
     const { tail, spec, layout } = this;
     if (tail === null || spec.tail === null) return;
@@ -368,6 +379,14 @@ export class SpectrumProblem implements SeparableProblem {
     for (let p = 0; p < this.layout.lawCount; p++) value[p] = theta[p]!;
     return { gap: value[0]!, rydberg: value[1]!, defect0: value[2]!, defect2: value[3]!, defect4: 0 };
   }
+}
+
+/** Rows first <= i < end, as rows `at` and on of a matrix with leading dimension `ld`. */
+interface Block {
+  readonly first: number;
+  readonly end: number;
+  readonly ld: number;
+  readonly at: number;
 }
 
 interface TailStrength {

@@ -3,8 +3,9 @@ import { Companion } from "./companion.ts";
 import { analyseJacobian, type JacobianAnalysis } from "./covariance.ts";
 import { scaledNorm, StepFinder } from "./dampedStep.ts";
 import type { Steering } from "./dampedStep.ts";
+import { passEveryRow } from "./everyRow.ts";
 import { gather, weigh } from "./gather.ts";
-import { residualOf, sumOfSquares, transposedTimes } from "./gram.ts";
+import { sumOfSquares, transposedTimes } from "./gram.ts";
 import { LinearStage } from "./linearStage.ts";
 import { SteeringBuilder } from "./steering.ts";
 import type {
@@ -14,6 +15,7 @@ import type {
   SolveOptions,
   Termination,
 } from "./types.ts";
+import { agree, imageSquares, weakDirections, type Directions } from "./weakDirections.ts";
 
 const EPSILON = 2 ** -52;
 
@@ -79,6 +81,10 @@ function solveCondensed(
     const serves = condensed.serves(theta);
     if (solution.termination === "cancelled" || serves || iterations >= most) {
       if (rough) return withEveryRow(solution, problem, condensed, iterations, evaluations);
+      if (converged && serves) {
+        const sure = confirmed(problem, search.conclude(solution.termination), search);
+        if (sure !== null) return { ...sure, iterations, evaluations: evaluations + 1 };
+      }
       break;
     }
     condensed = condense(theta);
@@ -90,6 +96,46 @@ function solveCondensed(
     ...solution,
     iterations: solution.iterations + iterations,
     evaluations: solution.evaluations + evaluations,
+  };
+}
+
+/**
+ * The answer of condensed rows under every row, where one pass over those shows that nothing is left to do: the linearised
+ * minimum of all parameters, which no single cosine of the gradient can exceed, lies within the tolerance, bounds hold and
+ * leave go as they did, and the worst determined directions are as long. Null elsewhere.
+ */
+function confirmed(
+  problem: SeparableProblem,
+  few: SeparableSolution,
+  search: Search,
+): SeparableSolution | null {
+  const { nonlinear: p, linear: k, rows, data, weights } = problem;
+  const { theta, coefficients, covariance, rank, activeBounds, tolerances } = few;
+  const n = p + k;
+  let free = k;
+  for (let j = 0; j < p; j++) if (activeBounds[j] === 0) free++;
+  if (!few.converged || rank < free) return null;
+  const directions = weakDirections(covariance, n);
+  const every = passEveryRow(problem, theta, coefficients, directions);
+  if (every === null) return null;
+  const { residuals, chi2, gradient } = every;
+  let promise = 0;
+  for (let i = 0; i < n; i++)
+    for (let j = 0; j < n; j++) promise += gradient[i]! * covariance[i * n + j]! * gradient[j]!;
+  promise = Math.max(0, promise);
+  const largest = chi2 > 0 ? Math.sqrt(promise / chi2) : 0;
+  if (!(largest <= tolerances.gradient)) return null;
+  for (let j = 0; j < p; j++) if (search.boundHeld(j, gradient[j]!) !== activeBounds[j]) return null;
+  if (!agree(search.imageSquares(directions), every.squares)) return null;
+  return {
+    ...few,
+    fitted: data.map((value, i) => value - residuals[i]! / weights[i]!),
+    residuals,
+    chi2,
+    degreesOfFreedom: rows - rank,
+    termination: "gradient",
+    reached: { ...few.reached, gradient: largest },
+    remaining: Math.sqrt(promise),
   };
 }
 
@@ -448,6 +494,11 @@ class Search {
   }
 
   private finish(termination: Termination): SeparableSolution {
+    return this.conclude(termination, this.wanted);
+  }
+
+  /** The answer at theta, with its covariance. */
+  conclude(termination: Termination, wanted = true): SeparableSolution {
     const { problem, p, k, m } = this;
     const n = p + k;
     const finite = Number.isFinite(this.cost);
@@ -463,7 +514,7 @@ class Search {
     let remaining = NaN;
     let reached = termination;
     const open = termination !== "cancelled" && termination !== "notFinite";
-    if (finite && open && this.wanted && !this.haveDerivatives) {
+    if (finite && open && wanted && !this.haveDerivatives) {
       // The last step was accepted: what is reported about the gradient is that of the final point.
       if (this.takeDerivatives()) {
         const steering = this.steer();
@@ -475,10 +526,10 @@ class Search {
         reached = "notFinite";
       }
     }
-    if (this.haveDerivatives && this.wanted) {
+    if (this.haveDerivatives && wanted) {
       const free: number[] = [];
       for (let j = 0; j < p; j++) {
-        activeBounds[j] = this.boundHeld(j);
+        activeBounds[j] = this.boundHeld(j, this.slopeAlong(j));
         if (activeBounds[j] === 0) free.push(j);
       }
       const analysis = this.analyse(free);
@@ -559,100 +610,34 @@ class Search {
       // The gradient along the coefficients is nothing: they are solved for.
       free.forEach((j, at) => (gradient[at] = this.fullGradient[j]!));
       const analysis = analyseJacobian(few, counts, rows, rows, { gradient });
-      if (sameWeakDirections(analysis, few, rows, all, m, counts)) return analysis;
+      if (analysis.rank === free.length + k) {
+        const directions = weakDirections(analysis.covariance, analysis.rank);
+        const squares = imageSquares(few, counts, rows, directions);
+        if (agree(squares, imageSquares(all, counts, m, directions))) return analysis;
+      }
     }
     return analyseJacobian(all, counts, m, m, { residual }, this.options.answer !== "condensed");
   }
 
   /** -1 or 1 where the parameter stands at a bound and the cost would fall beyond it (or the bounds coincide). */
-  private boundHeld(j: number): -1 | 0 | 1 {
-    const { m, derivative, residual } = this;
+  boundHeld(j: number, slope: number): -1 | 0 | 1 {
     const atLower = this.theta[j] === this.lower[j];
     const atUpper = this.theta[j] === this.upper[j];
-    if (!atLower && !atUpper) return 0;
+    if (atLower && (slope <= 0 || atUpper)) return -1;
+    return atUpper && slope >= 0 ? 1 : 0;
+  }
+
+  private slopeAlong(j: number): number {
+    const { m, derivative, residual } = this;
     let g = 0;
     for (let r = 0; r < m; r++) g += derivative[j * m + r]! * residual[r]!;
-    if (atLower && (g <= 0 || atUpper)) return -1;
-    return atUpper && g >= 0 ? 1 : 0;
+    return g;
   }
-}
 
-/** Directions that are compared: those that the data determine worst, where condensed rows would err most. */
-const DIRECTIONS = 3;
-const TURNS = 4;
-/** A variance of the condensed rows may differ from that of every row by this part. */
-const AGREEMENT = 1e-8;
-
-/**
- * Whether condensed rows J and all rows give the same |J v|^2 along the eigenvectors v of the covariance with the largest
- * values (of the correlation matrix, so that units do not matter), found by subspace iteration.
- */
-function sameWeakDirections(
-  analysis: JacobianAnalysis,
-  few: readonly Float64Array[],
-  fewRows: number,
-  all: readonly Float64Array[],
-  allRows: number,
-  counts: readonly number[],
-): boolean {
-  const { covariance, rank } = analysis;
-  const n = counts.reduce((sum, count) => sum + count, 0);
-  if (rank < n) return false;
-  const sigma = Float64Array.from({ length: n }, (_, i) => Math.sqrt(covariance[i * n + i]!));
-  const vectors: Float64Array[] = [];
-  for (let d = 0; d < Math.min(DIRECTIONS, n); d++) {
-    let v = Float64Array.from({ length: n }, (_, i) => Math.cos((d + 1) * (i + 0.5)));
-    for (let turn = 0; turn < TURNS; turn++) {
-      const next = new Float64Array(n);
-      for (let i = 0; i < n; i++)
-        for (let j = 0; j < n; j++) next[i]! += (covariance[i * n + j]! / (sigma[i]! * sigma[j]!)) * v[j]!;
-      for (const other of vectors) {
-        let part = 0;
-        for (let i = 0; i < n; i++) part += other[i]! * next[i]!;
-        for (let i = 0; i < n; i++) next[i]! -= part * other[i]!;
-      }
-      const length = Math.sqrt(next.reduce((sum, value) => sum + value * value, 0));
-      v = next.map((value) => value / length);
-    }
-    vectors.push(v);
+  /** |[D | Phi] v|^2 at theta, whose derivatives must be at hand. */
+  imageSquares(directions: Directions): Float64Array {
+    return imageSquares([this.derivative, this.phi], [this.p, this.k], this.m, directions);
   }
-  // In units of the covariance: C v = lambda v means the direction C v of the parameters, of length |J C v|.
-  const directions = vectors.map((v) => {
-    const direction = new Float64Array(n);
-    for (let i = 0; i < n; i++)
-      for (let j = 0; j < n; j++) direction[i]! += (covariance[i * n + j]! / sigma[j]!) * v[j]!;
-    return direction;
-  });
-  const a = imageSquares(few, fewRows, counts, directions);
-  const b = imageSquares(all, allRows, counts, directions);
-  return a.every((square, d) => Math.abs(square - b[d]!) <= AGREEMENT * b[d]!);
-}
-
-const IMAGE_ROWS = 512;
-
-/** |J v|^2 of columns in groups, for each v; by blocks of rows, so that the matrix is read once. */
-function imageSquares(
-  groups: readonly Float64Array[],
-  rows: number,
-  counts: readonly number[],
-  directions: readonly Float64Array[],
-): number[] {
-  const sums = directions.map(() => 0);
-  const image = new Float64Array(IMAGE_ROWS);
-  for (let start = 0; start < rows; start += IMAGE_ROWS) {
-    const height = Math.min(IMAGE_ROWS, rows - start);
-    directions.forEach((v, d) => {
-      image.fill(0);
-      let at = 0;
-      groups.forEach((group, g) => {
-        const part = v.subarray(at, at + counts[g]!);
-        residualOf(group.subarray(start), counts[g]!, rows, height, part, image, image);
-        at += counts[g]!;
-      });
-      sums[d]! += sumOfSquares(image, height);
-    });
-  }
-  return sums;
 }
 
 function clamp(value: number, low: number, high: number): number {

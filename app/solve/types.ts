@@ -28,6 +28,15 @@ export interface SeparableProblem {
   derivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void;
   /** The part of the model without a linear coefficient (m). */
   offset?(theta: Float64Array, out: Float64Array): void;
+  /**
+   * Columns and derivatives at one place, for one block of rows after another: what it returns writes those of the rows
+   * first <= i < end, (end - first) x k and (end - first) x p, column-major. With it a pass over every row of a condensed
+   * problem needs no matrix of all of them. For problems without `offset`.
+   */
+  blocks?(
+    theta: Float64Array,
+    coefficients: Float64Array,
+  ): (first: number, end: number, phi: Float64Array, derivatives: Float64Array) => void;
   /** The same problem on few rows, good for parameters near theta; null where none is to be had. */
   condense?(theta: Float64Array): CondensedProblem | null;
 }

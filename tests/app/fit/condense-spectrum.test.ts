@@ -134,6 +134,41 @@ describe("condensed rows", () => {
   });
 });
 
+test("blocks of rows hold what the whole columns and derivatives hold", () => {
+  for (const { problem, theta } of [ladderWithTail(), makeEngineProblem(4, 700, 20e-6, "ladder")]) {
+    const { rows: m, nonlinear: p, linear: k } = problem;
+    const coefficients = Float64Array.from({ length: k }, (_, j) => 1e-4 * (1 + Math.cos(j)));
+    const phi = new Float64Array(m * k);
+    const derivatives = new Float64Array(m * p);
+    problem.columns(theta, phi);
+    problem.derivatives(theta, coefficients, derivatives);
+    const write = problem.blocks(theta, coefficients);
+    let apart = 0;
+    const compare = (part: Float64Array, whole: Float64Array, columns: number, first: number): void => {
+      const height = part.length / columns;
+      for (let j = 0; j < columns; j++) {
+        const column = whole.subarray(j * m, (j + 1) * m);
+        const largest = column.reduce((most, value) => Math.max(most, Math.abs(value)), 0);
+        for (let i = 0; i < height; i++)
+          apart = Math.max(apart, Math.abs(part[j * height + i]! - column[first + i]!) / largest);
+      }
+    };
+    for (const [first, end] of [
+      [0, 300],
+      [300, 301],
+      [301, m],
+    ] as const) {
+      const partPhi = new Float64Array((end - first) * k).fill(NaN);
+      const part = new Float64Array((end - first) * p).fill(NaN);
+      write(first, end, partPhi, part);
+      compare(partPhi, phi, k, first);
+      compare(part, derivatives, p, first);
+    }
+    // Derived: the pair of a block comes from the loop that makes derivatives too, which rounds differently
+    expect(apart).toBeLessThan(1e-14);
+  }
+});
+
 function ladderWithTail(): { problem: SpectrumProblem; theta: Float64Array } {
   const random = makeRandom(91);
   const m = 5000;
