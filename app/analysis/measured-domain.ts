@@ -5,8 +5,8 @@ import {
   slitBias,
   type FittedValue,
   type FitPoints,
+  type LightParts,
   type MeasuredLight,
-  type TransmittanceFit,
 } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
@@ -139,7 +139,8 @@ export function fitInDomain(
           ...(protocol.lines.instrument_lorentz_fwhm_eV > 0 ? [lorentzNote()] : []),
         ],
         answered: ["saturated-points", "low-transmission"],
-        parts: parts.rows,
+        // With the standard errors that the protocol asks for.
+        parts: measured.fit.light === undefined ? parts.rows : partsOf(measured.fit.light).rows,
         ...(parts.fringes === null ? {} : { fringes: parts.fringes.period, dispersion }),
       },
     },
@@ -228,7 +229,7 @@ function startFrom(light: MeasuredLight, parts: DomainParts): MeasuredLight {
   };
 }
 
-function partsOf({ fringes, stray }: TransmittanceFit): DomainParts {
+function partsOf({ fringes, stray }: LightParts): DomainParts {
   const row = (
     term: string,
     name: string,

@@ -1,5 +1,6 @@
 import { autocorrelation, correlationTime } from "../solve/index.ts";
-import { describeFit, withScaledErrors, type SpectrumFit } from "./fit-spectrum.ts";
+import { describeFit, type Solved, type SpectrumFit } from "./fit-spectrum.ts";
+import { separableJacobian } from "./set-up-fit.ts";
 
 /**
  * What      The same fit with the covariance that ordinary weights have under correlated noise:
@@ -8,9 +9,8 @@ import { describeFit, withScaledErrors, type SpectrumFit } from "./fit-spectrum.
  * Shapes    J (m x (p + k)); lags as correlationTime chooses them.
  * Units     those of the fit; g_0 is the variance of the residuals, so that noise which neighbours share, and which an estimate
  *           of white noise cannot see, counts too.
- * Domain    noise whose correlation depends on the distance in points only. Fits of transmitted light and those with
- *           constraints line by line take the factor g_0 (1 + 2 sum w_k rho_k) for all parameters, the limit of lines
- *           wide against the correlation.
+ * Domain    noise whose correlation depends on the distance in points only. Where the light was fitted, or parameters are held
+ *           or tied, J is that of what was solved.
  * Accuracy  tests/app/fit/correlated-errors.test.ts: pulls of width one under noise of a moving average.
  * Source    Newey and West, Econometrica 55, 703 (1987), for one stationary autocovariance instead of products of scores.
  */
@@ -19,17 +19,18 @@ export function withCorrelatedErrors(fit: SpectrumFit): SpectrumFit {
   const { residuals } = solution;
   const m = residuals.length;
   const variance = solution.chi2 / Math.max(1, solution.degreesOfFreedom);
-  const { time, lags } = correlationTime(residuals);
-  if (fit.measured === true || "constrained" in fit) return withScaledErrors(fit, variance * time);
+  const { lags } = correlationTime(residuals);
   const rho = autocorrelation(residuals, lags);
-  const p = problem.nonlinear;
-  const n = p + problem.linear;
-  const jacobian = new Float64Array(m * n);
-  const columns = jacobian.subarray(p * m);
-  problem.columns(solution.theta, columns);
-  problem.derivatives(solution.theta, solution.coefficients, jacobian.subarray(0, p * m));
+  const solved: Solved = fit.solved ?? {
+    weights: problem.weights,
+    covariance: solution.covariance,
+    jacobian: () => separableJacobian(problem, solution),
+    describe: (covariance) => describeFit(problem, { ...solution, covariance }),
+  };
+  const jacobian = solved.jacobian();
+  const n = jacobian.length / m;
   for (let j = 0; j < n; j++)
-    for (let i = 0; i < m; i++) jacobian[j * m + i] = jacobian[j * m + i]! * problem.weights[i]!;
+    for (let i = 0; i < m; i++) jacobian[j * m + i] = jacobian[j * m + i]! * solved.weights[i]!;
   const taper = Float64Array.from({ length: lags + 1 }, (_, k) => (1 - k / (lags + 1)) * rho[k]!);
   const filtered = new Float64Array(m);
   const inner = new Float64Array(n * n);
@@ -50,11 +51,12 @@ export function withCorrelatedErrors(fit: SpectrumFit): SpectrumFit {
       inner[b * n + a] = sum;
     }
   }
-  const c = solution.covariance;
-  const half = product(c, inner, n);
-  const covariance = product(half, c, n);
-  for (let i = 0; i < covariance.length; i++) covariance[i] = covariance[i]! * variance;
-  return describeFit(problem, { ...solution, covariance });
+  // What the data do not determine stays so, and says nothing about the rest.
+  const known = solved.covariance.map((value) => (Number.isNaN(value) ? 0 : value));
+  const covariance = product(product(known, inner, n), known, n);
+  for (let i = 0; i < covariance.length; i++)
+    covariance[i] = Number.isNaN(solved.covariance[i]!) ? NaN : covariance[i]! * variance;
+  return solved.describe(covariance);
 }
 
 /** a b of square matrices (n x n, row-major). */

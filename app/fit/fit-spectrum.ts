@@ -35,10 +35,34 @@ export interface SpectrumFit {
   }[];
   /** n of lines that ended at a bound of their energy or width. */
   readonly atBound: readonly number[];
-  /** True where the transmitted light was fitted: `problem` is then the signal, and not what the residuals belong to. */
-  readonly measured?: boolean;
+  /** Present where the transmitted light was fitted: `problem` is then the signal, and not what the residuals belong to. */
+  readonly light?: LightParts;
   /** Present where parameters were held, bounded, shared or tied line by line, or other series were fitted too. */
   readonly constrained?: ConstrainedParts;
+  /** What was solved, where that is not `problem` itself. */
+  readonly solved?: Solved;
+}
+
+/** What the transmitted light has beside its absorption; null where it was held or none was asked for. */
+export interface LightParts {
+  readonly fringes: {
+    readonly visibility: FittedValue;
+    readonly period: FittedValue;
+    readonly phase: FittedValue;
+  } | null;
+  readonly stray: (FittedValue & { readonly atZero: boolean }) | null;
+}
+
+/** The problem behind a fit, for a covariance made anew. */
+export interface Solved {
+  /** 1/sigma of the rows (m). */
+  readonly weights: Float64Array;
+  /** (n x n, row-major) */
+  readonly covariance: Float64Array;
+  /** Derivatives of the model by the n parameters (m x n, column-major). */
+  jacobian(): Float64Array;
+  /** The same fit with this covariance. */
+  describe(covariance: Float64Array): SpectrumFit;
 }
 
 export interface FitStart {
@@ -221,7 +245,23 @@ export function withScaledErrors(fit: SpectrumFit, variance: number): SpectrumFi
     asymmetry: { ...fit.asymmetry, sigma: fit.asymmetry.sigma * scale },
     factor: fit.factor === null ? null : { ...fit.factor, sigma: fit.factor.sigma * scale },
     background: fit.background.map((column) => ({ ...column, sigma: column.sigma * scale })),
+    ...(fit.light === undefined ? {} : { light: withScaledLight(fit.light, scale) }),
     ...(fit.constrained === undefined ? {} : { constrained: withScaledParts(fit.constrained, scale) }),
+  };
+}
+
+function withScaledLight({ fringes, stray }: LightParts, scale: number): LightParts {
+  const wider = <T extends FittedValue>(one: T): T => ({ ...one, sigma: one.sigma * scale });
+  return {
+    fringes:
+      fringes === null
+        ? null
+        : {
+            visibility: wider(fringes.visibility),
+            period: wider(fringes.period),
+            phase: wider(fringes.phase),
+          },
+    stray: stray === null ? null : wider(stray),
   };
 }
 

@@ -52,15 +52,39 @@ export function setUpFit(points: FitPoints, spec: ModelSpec, start: FitStart): F
     ...problem.narrowed(bounds.lower, bounds.upper),
     thetaOf: (own) => problem.thetaOf(own).slice(0, inner.nonlinear),
     reduce: (coefficients) => problem.reduce(coefficients),
-    describe: (solution) => {
-      const { solution: wide, parts } = expandSolution(problem, solution);
-      return withoutHeldVariance({ ...describeFit(inner, wide), constrained: parts });
-    },
+    describe: (solution) => describeConstrained(problem, solution),
   };
 }
 
+function describeConstrained(problem: ConstrainedProblem, solution: SeparableSolution): SpectrumFit {
+  const { solution: wide, parts } = expandSolution(problem, solution);
+  const fit: SpectrumFit = {
+    ...describeFit(problem.inner, wide),
+    constrained: parts,
+    solved: {
+      weights: problem.weights,
+      covariance: solution.covariance,
+      jacobian: () => separableJacobian(problem, solution),
+      describe: (covariance) => describeConstrained(problem, { ...solution, covariance }),
+    },
+  };
+  return withoutHeldVariance(fit);
+}
+
+/** Derivatives by theta, then by the coefficients (m x (p + k), column-major). */
+export function separableJacobian(
+  problem: SeparableProblem,
+  { theta, coefficients }: Pick<SeparableSolution, "theta" | "coefficients">,
+): Float64Array {
+  const split = problem.nonlinear * problem.rows;
+  const out = new Float64Array(split + problem.linear * problem.rows);
+  problem.columns(theta, out.subarray(split));
+  problem.derivatives(theta, coefficients, out.subarray(0, split));
+  return out;
+}
+
 /** An asymmetry is a ratio of areas, so that one that is held would keep the rounding of their covariance. */
-export function withoutHeldVariance(fit: SpectrumFit): SpectrumFit {
+function withoutHeldVariance(fit: SpectrumFit): SpectrumFit {
   const held = fit.constrained?.held.asymmetry ?? [];
   if (held.length === 0) return fit;
   const { lines } = fit;

@@ -3,14 +3,14 @@ import { WIDTH, widthLaw } from "../laws/index.ts";
 import { solveGeneral, type SeparableSolution } from "../solve/index.ts";
 import { depthFromTransmittance, transmittanceSlope } from "../units/index.ts";
 import type { FittedValue } from "./describe-constrained.ts";
-import type { FitControl, FitStart, SpectrumFit } from "./fit-spectrum.ts";
+import type { FitControl, FitStart, LightParts, SpectrumFit } from "./fit-spectrum.ts";
 import type { BackgroundColumn, FitPoints, ModelSpec } from "./model-spec.ts";
 import { setUpFit, type FitSetUp } from "./set-up-fit.ts";
 import { hasOddAreas, type SpectrumProblem } from "./spectrum-problem.ts";
 import { makeSlitGrid, type Feature } from "./transmittance-grid.ts";
 import { TransmittanceProblem, type AbsorptionModel, type MeasuredLight } from "./transmittance-problem.ts";
 
-export interface TransmittanceFit {
+export interface TransmittanceFit extends LightParts {
   /**
    * As a fit of the signal, so that all that follows is the same: `residuals` are in standard deviations of T, `fitted`
    * is the signal that belongs to the fitted T (as the measured signal belongs to the measured T).
@@ -21,13 +21,6 @@ export interface TransmittanceFit {
    * sigma = sigma_T/|dT/d signal|. A fit of these is one Gauss-Newton step of the fit of T, and T <= 0 is no exception.
    */
   readonly linearised: FitPoints;
-  readonly fringes: {
-    readonly visibility: FittedValue;
-    readonly period: FittedValue;
-    readonly phase: FittedValue;
-  } | null;
-  /** Free stray light; null where it was held or none was asked for. */
-  readonly stray: (FittedValue & { readonly atZero: boolean }) | null;
 }
 
 const FAR_N = 1e6;
@@ -221,14 +214,32 @@ function asSignal(
     sigma: Math.sqrt(solution.covariance[at * size + at]!),
   });
   const at = problem.fringesAt;
-  return {
-    fit: { ...outer.describe(parts), measured: true },
-    linearised: { energy: light.energy, signal, sigma },
+  const own: LightParts = {
     fringes: at < 0 ? null : { visibility: valueAt(at), period: valueAt(at + 1), phase: valueAt(at + 2) },
     stray:
       problem.strayAt < 0
         ? null
         : { ...valueAt(problem.strayAt), atZero: solution.activeBounds[problem.strayAt] !== 0 },
+  };
+  return {
+    fit: {
+      ...outer.describe(parts),
+      light: own,
+      solved: {
+        weights: problem.weights,
+        covariance: solution.covariance,
+        jacobian: () => {
+          const out = new Float64Array(m * size);
+          problem.model(solution.theta, new Float64Array(m));
+          problem.jacobian(solution.theta, out);
+          return out;
+        },
+        describe: (covariance) =>
+          asSignal(light, outer, problem, spec, start, { ...solution, covariance }).fit,
+      },
+    },
+    linearised: { energy: light.energy, signal, sigma },
+    ...own,
   };
 }
 

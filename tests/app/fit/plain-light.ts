@@ -73,10 +73,21 @@ export function unevenEnergies(low: number, high: number, count: number): Float6
   });
 }
 
-export function spectrumOf(energy: Float64Array, light: PlainLight, sigmaT: number, seed: number): Spectrum {
+/** `correlation`: of the noise of neighbouring points. */
+export function spectrumOf(
+  energy: Float64Array,
+  light: PlainLight,
+  sigmaT: number,
+  seed: number,
+  correlation = 0,
+): Spectrum {
   const random = makeRandom(seed);
   const clean = Float64Array.from(energy, (e) => transmitted(light, e));
-  const value = clean.map((T) => T + sigmaT * random.normal());
+  let last = correlation === 0 ? 0 : random.normal();
+  const value = clean.map((T) => {
+    last = correlation * last + Math.sqrt(1 - correlation * correlation) * random.normal();
+    return T + sigmaT * last;
+  });
   const R = light.surface.reflectance;
   const { model } = light.surface;
   const through = (1 - R) * (1 - R);
