@@ -1,7 +1,7 @@
 import type { Wording } from "../base/index.ts";
 import type { Curves } from "../analysis/index.ts";
 import type { Comparison, ComparisonChoicesInput, RunglineResult } from "../protocol/index.ts";
-import type { ReportInput } from "../report/index.ts";
+import type { FigureChoices, FigureKind, ReportInput } from "../report/index.ts";
 import type { AnalysedFile, FileRequest, RunFacts } from "./analyse-file.ts";
 import type { NamedBytes } from "./host.ts";
 import type { Inspection } from "./inspect-file.ts";
@@ -23,7 +23,20 @@ export interface AnalysedSeries {
 }
 
 /** What can be kept of a record: each one file, an archive where it holds several. */
-export type RecordPart = "report" | "figures" | "csv" | "latex" | "results" | "protocol";
+export type RecordPart = "report" | "csv" | "latex" | "results" | "protocol";
+
+/** Figures of a record alone: which (its name, or null for all), as what kind of file, how large. */
+export interface FigureWish {
+  readonly name: string | null;
+  readonly kind: FigureKind;
+  readonly choices: FigureChoices;
+}
+
+/** One figure, or an archive of several; and the characters that the typeface lacks. */
+export interface MadeFigures {
+  readonly file: NamedBytes;
+  readonly missing: readonly string[];
+}
 
 /** What a shell asks of a worker (a page worker in the window, a pool thread in main), and what comes back. */
 export type WorkerRequest =
@@ -49,6 +62,14 @@ export type WorkerRequest =
       readonly run: RunFacts;
     }
   | { readonly type: "record"; readonly id: number; readonly input: ReportInput; readonly part: RecordPart }
+  | { readonly type: "figure-names"; readonly id: number; readonly input: ReportInput }
+  | {
+      readonly type: "figures";
+      readonly id: number;
+      readonly input: ReportInput;
+      readonly wish: FigureWish;
+      readonly cancel: Int32Array | null;
+    }
   | { readonly type: "inspect"; readonly id: number; readonly request: FileRequest };
 
 export type WorkerReply =
@@ -58,6 +79,8 @@ export type WorkerReply =
   | { readonly type: "inspected"; readonly id: number; readonly inspection: Inspection }
   | { readonly type: "compared"; readonly id: number; readonly comparison: Comparison }
   | { readonly type: "recorded"; readonly id: number; readonly file: NamedBytes }
+  | { readonly type: "figure-names"; readonly id: number; readonly names: readonly string[] }
+  | { readonly type: "figures-made"; readonly id: number; readonly made: MadeFigures }
   | { readonly type: "refused"; readonly id: number; readonly wordings: readonly Wording[] }
   | { readonly type: "cancelled"; readonly id: number }
   | { readonly type: "fault"; readonly id: number; readonly message: string; readonly stack: string };

@@ -1,7 +1,7 @@
+import { stopIfCancelled, type Watch } from "../base/index.ts";
 import {
   comparisonToCsv,
   comparisonToLatex,
-  figureFile,
   protocolToJson,
   reportContents,
   reportToHtml,
@@ -9,19 +9,21 @@ import {
   resultToCsv,
   resultToJson,
   resultToLatex,
+  type Figure,
+  type FigurePress,
   type ReportInput,
 } from "../report/index.ts";
-import type { RecordPart } from "./messages.ts";
+import type { FigureWish, RecordPart } from "./messages.ts";
 
-export interface TextFile {
+export interface KeptFile {
   readonly name: string;
-  readonly text: string;
+  readonly content: string | Uint8Array;
 }
 
 /** Files of one part, and the name of the archive that a shell makes of them where there are several. */
 export interface RecordFiles {
   readonly archive: string;
-  readonly files: readonly TextFile[];
+  readonly files: readonly KeptFile[];
 }
 
 const BASE_OF_MANY = "rungline";
@@ -32,20 +34,18 @@ export function recordFiles(input: ReportInput, part: RecordPart): RecordFiles {
   const base = names.length === 1 ? names[0]! : BASE_OF_MANY;
   switch (part) {
     case "report":
-      return plain({ name: `${base}.report.html`, text: reportToHtml(input) });
-    case "figures":
-      return gathered(`${base}.figures.zip`, figures(input, names));
+      return plain({ name: `${base}.report.html`, content: reportToHtml(input) });
     case "csv":
       return gathered(`${base}.tables.zip`, [
-        ...input.results.map((result, i) => ({ name: `${names[i]!}.csv`, text: resultToCsv(result) })),
+        ...input.results.map((result, i) => ({ name: `${names[i]!}.csv`, content: resultToCsv(result) })),
         ...(input.comparison === null
           ? []
-          : [{ name: "comparison.csv", text: comparisonToCsv(input.comparison) }]),
+          : [{ name: "comparison.csv", content: comparisonToCsv(input.comparison) }]),
       ]);
     case "latex":
       return plain({
         name: `${base}.tables.tex`,
-        text: [
+        content: [
           resultToLatex(...input.results),
           ...(input.comparison === null ? [] : [comparisonToLatex(input.comparison)]),
         ].join("\n"),
@@ -53,38 +53,60 @@ export function recordFiles(input: ReportInput, part: RecordPart): RecordFiles {
     case "results":
       return plain(
         input.results.length === 1
-          ? { name: `${base}.json`, text: resultToJson(input.results[0]!) }
-          : { name: `${base}.results.json`, text: resultsToJson(input.results) },
+          ? { name: `${base}.json`, content: resultToJson(input.results[0]!) }
+          : { name: `${base}.results.json`, content: resultsToJson(input.results) },
       );
     case "protocol":
       return gathered(`${base}.protocols.zip`, protocols(input, names));
   }
 }
 
-function figures(input: ReportInput, names: readonly string[]): TextFile[] {
+/** Every figure of a record, by the name that its file has before the ending. */
+export function recordFigures(input: ReportInput): { readonly name: string; readonly figure: Figure }[] {
+  const names = recordNames(input);
   const { samples, comparison } = reportContents(input);
   return [
-    ...samples.flatMap(({ figures: own }, i) =>
-      own.map((figure) => ({ name: `${names[i]!}-${figure.name}.svg`, text: figureFile(figure) })),
+    ...samples.flatMap(({ figures }, i) =>
+      figures.map((figure) => ({ name: `${names[i]!}-${figure.name}`, figure })),
     ),
-    ...(comparison?.figures ?? []).map((figure) => ({
-      name: `${figure.name}.svg`,
-      text: figureFile(figure),
-    })),
+    ...(comparison?.figures ?? []).map((figure) => ({ name: figure.name, figure })),
   ];
 }
 
+/**
+ * Figures alone, one after the other. `pause` lets the thread hear others in between. Throws `Cancelled` when the watch
+ * says so.
+ */
+export async function figureFiles(
+  input: ReportInput,
+  { name, kind, choices }: FigureWish,
+  press: FigurePress,
+  watch: Watch,
+  pause: () => Promise<void>,
+): Promise<RecordFiles> {
+  const names = recordNames(input);
+  const asked = recordFigures(input).filter((one) => name === null || one.name === name);
+  const files: KeptFile[] = [];
+  for (const one of asked) {
+    await pause();
+    stopIfCancelled(watch);
+    watch.report(files.length / asked.length, one.name);
+    files.push({ name: `${one.name}.${kind}`, content: await press.make(one.figure, kind, choices) });
+  }
+  return gathered(`${names.length === 1 ? names[0]! : BASE_OF_MANY}.figures.zip`, files);
+}
+
 /** One protocol where all results have the same. */
-function protocols({ results }: ReportInput, names: readonly string[]): TextFile[] {
+function protocols({ results }: ReportInput, names: readonly string[]): KeptFile[] {
   const texts = results.map(({ protocol }) => protocolToJson(protocol));
   if (new Set(texts).size === 1)
     return [
       {
         name: results.length === 1 ? `${names[0]!}.protocol.json` : `${BASE_OF_MANY}.protocol.json`,
-        text: texts[0]!,
+        content: texts[0]!,
       },
     ];
-  return texts.map((text, i) => ({ name: `${names[i]!}.protocol.json`, text }));
+  return texts.map((content, i) => ({ name: `${names[i]!}.protocol.json`, content }));
 }
 
 /** The file that a result came from without its ending; a number where two would be alike. */
@@ -103,10 +125,10 @@ export function recordNames({ results }: Pick<ReportInput, "results">): string[]
   );
 }
 
-function plain(file: TextFile): RecordFiles {
+function plain(file: KeptFile): RecordFiles {
   return { archive: file.name, files: [file] };
 }
 
-function gathered(archive: string, files: readonly TextFile[]): RecordFiles {
+function gathered(archive: string, files: readonly KeptFile[]): RecordFiles {
   return { archive, files };
 }

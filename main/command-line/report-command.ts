@@ -110,7 +110,7 @@ export async function reportCommand(
   for (const folder of [options.figures, options.tables])
     if (folder !== undefined) await makeFolder(resolve(io.workingFolder, folder));
   if (!(await writeAll(outputs, io, signal))) return EXIT.cancelled;
-  for (const character of press?.missing() ?? [])
+  for (const character of press?.takeMissing() ?? [])
     io.stderr(
       `rungline: the typeface of the figures has no sign for "${character}": another stands for it\n`,
     );

@@ -14,7 +14,7 @@ export async function drawingTools(): Promise<DrawingTools> {
       await startRasteriser();
       const drawing = new Resvg(svg, {
         fitTo: { mode: "width", value: width },
-        font: { loadSystemFonts: false },
+        font: { fontBuffers: [] },
       });
       const picture = drawing.render();
       try {

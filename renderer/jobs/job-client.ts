@@ -4,8 +4,10 @@ import type { ReportInput } from "../../app/report/index.ts";
 import type {
   AnalysedFile,
   AnalysedSeries,
+  FigureWish,
   FileRequest,
   Inspection,
+  MadeFigures,
   NamedBytes,
   RecordPart,
   RunFacts,
@@ -41,7 +43,9 @@ type Settle = (
     | Outcome<AnalysedSeries>
     | Outcome<Inspection>
     | Outcome<Comparison>
-    | Outcome<NamedBytes>,
+    | Outcome<NamedBytes>
+    | Outcome<readonly string[]>
+    | Outcome<MadeFigures>,
 ) => void;
 interface Pending {
   readonly settle: Settle;
@@ -81,6 +85,18 @@ export class JobClient {
 
   record(input: ReportInput, part: RecordPart): Promise<Outcome<NamedBytes>> {
     return this.#ask((id) => ({ type: "record", id, input, part }));
+  }
+
+  figureNames(input: ReportInput): Promise<Outcome<readonly string[]>> {
+    return this.#ask((id) => ({ type: "figure-names", id, input }));
+  }
+
+  figures(
+    input: ReportInput,
+    wish: FigureWish,
+    progress: (fraction: number, step: string) => void,
+  ): RunningJob<MadeFigures> {
+    return this.#run(progress, (id, cancel) => ({ type: "figures", id, input, wish, cancel }));
   }
 
   #ask<T>(message: (id: number) => WorkerRequest): Promise<Outcome<T>> {
@@ -165,6 +181,10 @@ export class JobClient {
         return pending.settle({ kind: "done", value: reply.comparison });
       case "recorded":
         return pending.settle({ kind: "done", value: reply.file });
+      case "figure-names":
+        return pending.settle({ kind: "done", value: reply.names });
+      case "figures-made":
+        return pending.settle({ kind: "done", value: reply.made });
       case "refused":
         return pending.settle({ kind: "refused", wordings: reply.wordings });
       case "cancelled":

@@ -7,13 +7,13 @@ import { gather } from "../store/gather.ts";
 import { Clause, Pick, Sentence } from "../controls/choices.tsx";
 import { EmptyPlace } from "../frame/empty-place.tsx";
 import { currentComparison, useController, useWindow } from "../store/context.ts";
+import { FiguresAlone } from "./figures-alone.tsx";
 import { recordInput, sameRecord, type RecordInput } from "./record-input.ts";
 import { ReportPreview } from "./report-preview.tsx";
 
 const ALL = "";
 
 const PARTS: readonly { readonly part: RecordPart; readonly text: string; readonly kind: string }[] = [
-  { part: "figures", text: "Figures", kind: "SVG" },
   { part: "csv", text: "Tables", kind: "CSV" },
   { part: "latex", text: "Tables", kind: "LaTeX" },
   { part: "results", text: "Results", kind: "JSON" },
@@ -133,6 +133,7 @@ function Keep({ input, ready }: { readonly input: RecordInput; readonly ready: b
           Print
         </Button>
       </section>
+      <FiguresAlone input={input} />
       <section>
         <h3>Its parts</h3>
         {PARTS.map(({ part, text, kind }) => (

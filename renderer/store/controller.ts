@@ -9,7 +9,7 @@ import {
   type RunglineResult,
 } from "../../app/protocol/index.ts";
 import { comparisonToJson, protocolToJson, resultToJson, type ReportInput } from "../../app/report/index.ts";
-import type { Host, NamedBytes, RecordPart } from "../../app/tasks/index.ts";
+import type { FigureWish, Host, MadeFigures, NamedBytes, RecordPart } from "../../app/tasks/index.ts";
 import { batchesOf, gather, unfittedFiles } from "./gather.ts";
 import type { JobClient, Outcome, RunningJob } from "../jobs/job-client.ts";
 import { recordInput } from "../record/record-input.ts";
@@ -231,18 +231,44 @@ export class Controller {
 
   /** One file of a record, made in the worker. */
   makeRecord(input: Omit<ReportInput, "run">, part: RecordPart): Promise<Outcome<NamedBytes>> {
+    return this.#reader.record(this.#withRun(input), part);
+  }
+
+  figureNames(input: Omit<ReportInput, "run">): Promise<Outcome<readonly string[]>> {
+    return this.#reader.figureNames(this.#withRun(input));
+  }
+
+  makeFigures(
+    input: Omit<ReportInput, "run">,
+    wish: FigureWish,
+    progress: (fraction: number, step: string) => void,
+  ): RunningJob<MadeFigures> {
+    return this.#reader.figures(this.#withRun(input), wish, progress);
+  }
+
+  /** Offers made figures to be kept, and says which characters could not be drawn. */
+  async saveFigures({ file, missing }: MadeFigures): Promise<void> {
+    const name = await this.save(file.name, file.bytes);
+    if (name === null) return;
+    if (missing.length === 0) this.say(false, `${name} is kept`, "");
+    else
+      this.say(
+        false,
+        `${name} is kept; its typeface has no sign for ${missing.join(" ")}, another stands for it`,
+        "name the sample in letters of Latin, Greek or Cyrillic, or take the SVG",
+      );
+  }
+
+  #withRun(input: Omit<ReportInput, "run">): ReportInput {
     const { facts } = this.store.getState();
-    return this.#reader.record(
-      {
-        ...input,
-        run: {
-          version: facts?.version ?? "",
-          node: facts?.node ?? "",
-          started: this.#now().toISOString(),
-        },
+    return {
+      ...input,
+      run: {
+        version: facts?.version ?? "",
+        node: facts?.node ?? "",
+        started: this.#now().toISOString(),
       },
-      part,
-    );
+    };
   }
 
   async saveRecord(input: Omit<ReportInput, "run">, part: RecordPart): Promise<void> {

@@ -6,8 +6,10 @@ const NO_DATE = new Date("1980-01-01T00:00:00");
 
 /** A page may offer one file at a time: several become an archive. */
 export function oneFile({ archive, files }: RecordFiles): NamedBytes {
-  if (files.length === 1) return { name: files[0]!.name, bytes: strToU8(files[0]!.text) };
+  const bytesOf = (content: string | Uint8Array): Uint8Array =>
+    typeof content === "string" ? strToU8(content) : content;
+  if (files.length === 1) return { name: files[0]!.name, bytes: bytesOf(files[0]!.content) };
   const entries: Zippable = {};
-  for (const { name, text } of files) entries[name] = [strToU8(text), { mtime: NO_DATE }];
+  for (const { name, content } of files) entries[name] = [bytesOf(content), { mtime: NO_DATE }];
   return { name: archive, bytes: zipSync(entries) };
 }

@@ -1,9 +1,12 @@
 import { Cancelled, type Watch } from "../../app/base/index.ts";
+import { makeFigurePress, type FigurePress } from "../../app/report/index.ts";
 import {
   analyseFile,
   analysePower,
   compareSamples,
+  figureFiles,
   inspectFile,
+  recordFigures,
   recordFiles,
   wordIssue,
   type WorkerReply,
@@ -20,17 +23,22 @@ const PROGRESS_INTERVAL_MS = 40;
 self.onmessage = (event: MessageEvent<WorkerRequest>): void => {
   const message = event.data;
   try {
-    answer(message);
+    if (message.type === "figures") makeFigures(message).catch((error: unknown) => fail(message.id, error));
+    else answer(message);
   } catch (error) {
-    if (error instanceof Cancelled) reply({ type: "cancelled", id: message.id });
-    else {
-      const { message: text, stack } = error instanceof Error ? error : new Error(String(error));
-      reply({ type: "fault", id: message.id, message: text, stack: stack ?? "" });
-    }
+    fail(message.id, error);
   }
 };
 
-function answer(message: WorkerRequest): void {
+function fail(id: number, error: unknown): void {
+  if (error instanceof Cancelled) reply({ type: "cancelled", id });
+  else {
+    const { message, stack } = error instanceof Error ? error : new Error(String(error));
+    reply({ type: "fault", id, message, stack: stack ?? "" });
+  }
+}
+
+function answer(message: Exclude<WorkerRequest, { type: "figures" }>): void {
   const { id } = message;
   if (message.type === "inspect") {
     const inspected = inspectFile(message.request);
@@ -48,6 +56,10 @@ function answer(message: WorkerRequest): void {
     reply({ type: "recorded", id, file: oneFile(recordFiles(message.input, message.part)) });
     return;
   }
+  if (message.type === "figure-names") {
+    reply({ type: "figure-names", id, names: recordFigures(message.input).map(({ name }) => name) });
+    return;
+  }
   if (message.type === "analyse-power") {
     const series = analysePower(message.request, message.run, watchFor(id, message.cancel));
     if (series.ok) reply({ type: "analysed-power", id, analysed: series.value });
@@ -57,6 +69,34 @@ function answer(message: WorkerRequest): void {
   const analysed = analyseFile(message.request, message.run, watchFor(id, message.cancel));
   if (analysed.ok) reply({ type: "analysed", id, analysed: analysed.value });
   else reply({ type: "refused", id, wordings: analysed.issues.map(wordIssue) });
+}
+
+let press: Promise<FigurePress> | null = null;
+
+async function makeFigures({
+  id,
+  input,
+  wish,
+  cancel,
+}: Extract<WorkerRequest, { type: "figures" }>): Promise<void> {
+  press ??= openPress().catch((error: unknown) => {
+    // Another time the files may be had.
+    press = null;
+    throw error;
+  });
+  const ready = await press;
+  const files = await figureFiles(input, wish, ready, watchFor(id, cancel), hearOthers);
+  reply({ type: "figures-made", id, made: { file: oneFile(files), missing: ready.takeMissing() } });
+}
+
+async function openPress(): Promise<FigurePress> {
+  const { drawingTools } = await import("./drawing-tools.ts");
+  return makeFigurePress(await drawingTools());
+}
+
+/** What was sent meanwhile is answered before the next figure. */
+function hearOthers(): Promise<void> {
+  return new Promise((resolve) => setTimeout(resolve));
 }
 
 function watchFor(id: number, cancel: Int32Array | null): Watch {

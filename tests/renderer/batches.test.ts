@@ -6,7 +6,7 @@ import { batchesOf, gather, unfittedFiles } from "../../renderer/store/gather.ts
 import { PALETTES } from "../../renderer/plot/colours.ts";
 import { recorded, recordInput } from "../../renderer/record/record-input.ts";
 import { addResults, editChoices, editCompare, removeResult } from "../../renderer/store/session.ts";
-import { recordFiles, type RecordPart } from "../../app/tasks/index.ts";
+import { recordFigures, recordFiles, type RecordPart } from "../../app/tasks/index.ts";
 import { CRYSTALS, crystalComparison, crystalResult, crystalSession } from "./batches-sample.ts";
 
 const session = crystalSession();
@@ -162,6 +162,6 @@ describe("the record", () => {
     expect(names(all, "results")).toEqual(["rungline.results.json"]);
     expect(recordFiles(all, "csv").archive).toBe("rungline.tables.zip");
     expect(names(all, "csv")).toEqual(["P1.csv", "P2.csv", "P3.csv", "Q1.csv", "Q2.csv", "comparison.csv"]);
-    expect(names(all, "figures")).toContain("compare-widths.svg");
+    expect(recordFigures(all).map(({ name }) => name)).toContain("compare-widths");
   });
 });

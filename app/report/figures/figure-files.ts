@@ -29,8 +29,8 @@ export const OWN_SIZE: FigureChoices = { width_mm: null, dpi: 600 };
 /** Makes files of figures, one after the other; the same figure and choices give the same bytes. */
 export interface FigurePress {
   make(figure: Figure, kind: FigureKind, choices: FigureChoices): Promise<Uint8Array>;
-  /** Characters of PDF and PNG figures so far that no typeface has, in the order met; U+FFFD stands for them. */
-  missing(): readonly string[];
+  /** Characters of PDF and PNG figures that no typeface has, met since this was asked last; U+FFFD stands for them. */
+  takeMissing(): readonly string[];
 }
 
 /** Loaded when the first figure is asked for: what writes PDF and opens typefaces is larger than all the rest. */

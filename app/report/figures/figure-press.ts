@@ -14,7 +14,7 @@ const MM_PER_INCH = 25.4;
 export function figurePress({ fonts, rasterise }: DrawingTools): FigurePress {
   const typefaces = new Typefaces(fonts);
   return {
-    missing: () => typefaces.missing,
+    takeMissing: () => typefaces.takeMissing(),
     async make(figure: Figure, kind: FigureKind, { width_mm, dpi }: FigureChoices): Promise<Uint8Array> {
       const sized = width_mm === null ? figure : resizeFigure(figure, width_mm);
       if (kind === "svg") return new TextEncoder().encode(figureFile(sized));

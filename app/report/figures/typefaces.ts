@@ -63,9 +63,11 @@ export class Typefaces {
     this.#italic = [...italic.map(open), ...this.#upright];
   }
 
-  /** Characters met so far that no face has, in the order met. */
-  get missing(): readonly string[] {
-    return [...this.#missing];
+  /** Characters that no face has, met since this was asked last, in the order met. */
+  takeMissing(): readonly string[] {
+    const met = [...this.#missing];
+    this.#missing.clear();
+    return met;
   }
 
   /** A text cut into pieces by style and face, measured and put in its place around the anchor. */
