@@ -4,7 +4,14 @@ import { strength } from "../laws/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { assignTwoPeaks, listAssignments, type Assignment, type AssignmentChoices } from "./assign-n.ts";
-import { climbLadder, LEAST_SIGNIFICANCE, significances, startLadder, type Climbed } from "./climb-ladder.ts";
+import {
+  climbLadder,
+  LEAST_BIC_GAIN,
+  LEAST_SIGNIFICANCE,
+  significances,
+  startLadder,
+  type Climbed,
+} from "./climb-ladder.ts";
 import { drawCurves, emptyCurves, type Curves } from "./curves.ts";
 import { describeReading, describeResult, sortNotes } from "./describe-result.ts";
 import { presetNotes } from "./find-doubts.ts";
@@ -347,7 +354,8 @@ function fitWithTailOrWithout(
       watch.report(from + 0.02 * Math.min(pass, 5), `fitting every point, pass ${pass + 1}`),
     ),
   });
-  const first = fit(points, climbed.state, choices, 0.4);
+  const plain = fit(points, climbed.state, choices, 0.4);
+  const first = lookBetweenLines(plain, spectrum, protocol, watch, fit);
   const reduced = reducedChi2(first.full);
   if (!choices.tail || reduced < GROSS_MISFIT || followsStrengthLaw(first.full)) return first;
   watch.report(0.6, "trying without a tail");
@@ -356,6 +364,39 @@ function fitWithTailOrWithout(
   const second = fit(other.points, other.state, { ...choices, tail: false }, 0.6);
   return reducedChi2(second.full) < reduced / GROSS_MISFIT ? second : first;
 }
+
+/**
+ * Where the lines on their own leave a misfit: what high lines have lost may be smeared over their surroundings. Taken when
+ * it explains at least half of what was left over and the information criterion prefers it.
+ */
+function lookBetweenLines(
+  plain: ChosenFit,
+  spectrum: Spectrum,
+  protocol: Protocol,
+  watch: Watch,
+  fit: (on: SelectedPoints, state: LadderState, how: ModelChoices, from: number) => ChosenFit,
+): ChosenFit {
+  const { points, choices, full } = plain;
+  const { chi2, degreesOfFreedom } = full.fit.solution;
+  const { smeared, cutoff_n } = protocol.tail;
+  const enough = full.state.ns.length >= FEWEST_TO_FADE && cutoff_n === null && smeared === "auto";
+  if (!choices.tail || !enough || chi2 < LEAST_MISFIT * degreesOfFreedom) return plain;
+  watch.report(0.5, "looking between the lines");
+  const how: ModelChoices = { ...choices, smeared: true };
+  const free = withFreeLevels(protocol);
+  const thinned = thinPoints(points, linesForThinning(full.state, protocol));
+  const climbed = climbLadder(thinned, full.state, free, spectrum.unit, how, watch);
+  const other = fit(points, climbed.state, how, 0.5);
+  const { solution } = other.full.fit;
+  const more = degreesOfFreedom - solution.degreesOfFreedom;
+  const gain = chi2 - solution.chi2 - more * Math.log(points.energy.length);
+  const explained = solution.chi2 - degreesOfFreedom < 0.5 * (chi2 - degreesOfFreedom);
+  return solution.converged && gain > LEAST_BIC_GAIN && explained ? other : plain;
+}
+
+const FEWEST_TO_FADE = 6;
+/** Estimated noise is good to a few percent, so a tenth of chi square is a misfit. */
+const LEAST_MISFIT = 1.1;
 
 /** Areas over the strength law within a factor of three of each other, and a tail that is neither nothing nor too much. */
 function followsStrengthLaw({ fit }: FullFit): boolean {

@@ -162,7 +162,21 @@ export function climbLadder(
       if (current.state.ns[current.state.ns.length - 1]! <= top || reachable - top < LINES_TRIED_AHEAD) break;
     }
   }
-  return current;
+  return protocol.lines.n === "auto" ? fillHoles(current, points, (state) => run(state, ROUGH)) : current;
+}
+
+/** Lines inside that were lost on the way up come back where they belong to the spectrum after all. */
+function fillHoles(climbed: Climbed, points: FitPoints, run: (state: LadderState) => Climbed): Climbed {
+  const { ns } = climbed.state;
+  const all = Array.from({ length: ns[ns.length - 1]! - ns[0]! + 1 }, (_, i) => ns[0]! + i);
+  const holes = all.filter((n) => !ns.includes(n));
+  if (holes.length === 0 || holes.length > ns.length) return climbed;
+  const other = run(withLines(climbed.state, all));
+  const seen = significances(other.fit);
+  const needed = leastSignificance(points.energy.length);
+  const gain = climbed.fit.solution.chi2 - other.fit.solution.chi2;
+  const price = LEAST_BIC_GAIN + holes.length * PARAMETERS_PER_LINE * Math.log(points.energy.length);
+  return gain > price && holes.every((n) => seen[all.indexOf(n)]! > needed) ? other : climbed;
 }
 
 /** Highest n whose area the linearised model, with all lines up to there free, tells from zero. */

@@ -1,4 +1,5 @@
 import { linePair } from "../lines/index.ts";
+import { SMEARED } from "../fit/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import type { FullFit } from "./fit-full.ts";
 import type { SelectedPoints } from "./select-points.ts";
@@ -58,11 +59,13 @@ export function drawCurves(spectrum: Spectrum, points: SelectedPoints, full: Pic
     return out;
   };
   const background = new Float64Array(points.energy.length);
+  const tail = fit.problem.tailCurve(fit.solution.theta, fit.solution.coefficients);
   fit.problem.spec.background.forEach((column, b) => {
     const coefficient = fit.background[b]!.value;
-    for (let i = 0; i < background.length; i++) background[i]! += coefficient * column.values[i]!;
+    // What lines have lost to their surroundings belongs to the series.
+    const sum = column.term === SMEARED && tail !== null ? tail : background;
+    for (let i = 0; i < sum.length; i++) sum[i]! += coefficient * column.values[i]!;
   });
-  const tail = fit.problem.tailCurve(fit.solution.theta, fit.solution.coefficients);
   const used = new Uint8Array(m);
   points.place.forEach((place) => (used[place] = 1));
   return {

@@ -1,5 +1,5 @@
 import { assumption, doubt, type Note } from "../base/index.ts";
-import type { FitPoints } from "../fit/index.ts";
+import { SMEARED, type FitPoints } from "../fit/index.ts";
 import { findPreset, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { normalCdf } from "../solve/index.ts";
@@ -253,6 +253,8 @@ function doubtsOfTail({ tail, full, protocol }: DoubtInput): Note[] {
     ];
   }
   if (tail === null || full.fit.factor === null) return [];
+  const smeared = full.fit.background.filter((one) => one.term === SMEARED);
+  if (smeared.length > 0) return [smearedNote(full, smeared)];
   const { value, sigma, atBound } = full.fit.factor;
   if (atBound && value > 1) {
     return [
@@ -275,6 +277,22 @@ function doubtsOfTail({ tail, full, protocol }: DoubtInput): Note[] {
     ];
   }
   return [];
+}
+
+/** Shares of the law's strength that stand between the lines. */
+function smearedNote({ fit }: FullFit, smeared: FullFit["fit"]["background"]): Note {
+  const shares = fit.problem.spec.tail?.strengthShare ?? new Float64Array(0);
+  const whole = shares.reduce((sum, share, j) => sum + share * fit.lines.area[j]!, 0);
+  const told = smeared.map(
+    ({ name, value }) =>
+      `${((100 * value) / whole).toFixed(0)} % ${name === "continuum" ? "at the gap" : `at ${name.replace("n", "n = ")}`}`,
+  );
+  return doubt(
+    "lines-smeared",
+    "tail",
+    `High lines are weaker than the law, and what they have lost is found between them: of the law's strength ${told.join(", ")} stand as a smooth absorption, which is part of the model. Nothing is assumed about how lines fade.`,
+    "charges, fields, strain or too much light smear high lines; tail.smeared=none shows the fit without it",
+  );
 }
 
 function doubtsOfSampling({ points, full }: DoubtInput): Note[] {

@@ -2,6 +2,8 @@ import {
   backgroundColumns,
   isConstrained,
   levelLink,
+  smearedColumns,
+  smearedKnots,
   strengthShare,
   widthLink,
   type FitPoints,
@@ -48,6 +50,8 @@ export interface ModelChoices {
   readonly tail: boolean;
   readonly continuumOdd: boolean;
   readonly asymmetry: Protocol["lines"]["asymmetry"];
+  /** What lines have lost is looked for between them (smeared-series.ts), and the continuum with it; false by default. */
+  readonly smeared?: boolean;
   /** n whose widths (areas) are the law itself; absent: none. */
   readonly tiedWidths?: readonly number[];
   readonly tiedAreas?: readonly number[];
@@ -101,7 +105,7 @@ export function buildModel(
         ns: state.ns,
         value: state.areaSigma,
         sigma: state.areaSigma,
-        include: speaking(state.include, rules.area, choices.tiedAreas !== undefined, 1),
+        include: speaking(strengthSpeakers(state, choices), rules.area, choices.tiedAreas !== undefined, 1),
       },
       { law: protocol.strength.law, base: protocol.strength.base },
       levels.values.defect0,
@@ -125,14 +129,7 @@ export function buildModel(
       ? { values: levels.values, count: 2 + defectCount, tiedNs: tiedEnergies(state, protocol) }
       : null,
     tail: choices.tail ? describeTail(points, updated, protocol, links, choices) : null,
-    background: backgroundColumns(
-      choices.background,
-      points.energy,
-      unit,
-      levels.values.gap,
-      undefined,
-      state.fringes ?? null,
-    ),
+    background: modelBackground(points.energy, updated, protocol, unit, choices),
     ...(isConstrained(constraints) ? { constraints } : {}),
   };
   // A line that leaves its own place has become another line or part of the background.
@@ -152,6 +149,41 @@ export function buildModel(
       reach,
     },
   };
+}
+
+/** The background on these energies, and with it what the series has lost from its lines where that is looked for. */
+export function modelBackground(
+  energy: Float64Array,
+  state: LadderState,
+  protocol: Protocol,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+  frame?: readonly [number, number],
+): ReturnType<typeof backgroundColumns> {
+  const { gap } = state.levels;
+  const columns = backgroundColumns(choices.background, energy, unit, gap, frame, state.fringes ?? null);
+  if (choices.smeared !== true || !choices.tail) return columns;
+  const smeared = smearedColumns(
+    energy,
+    {
+      levels: state.levels,
+      widths: state.widths,
+      strength: { law: protocol.strength.law, base: protocol.strength.base },
+      envelope: envelopeOf(protocol),
+      top: state.ns[state.ns.length - 1]!,
+      asymmetry: state.asymmetry,
+      lorentz: protocol.lines.instrument_lorentz_fwhm_eV,
+    },
+    unit,
+  );
+  return [...columns, ...smeared];
+}
+
+/** Lines that have lost strength to their surroundings do not say what the law is. */
+function strengthSpeakers(state: LadderState, choices: ModelChoices): readonly boolean[] {
+  const whole = smearedKnots(state.ns[state.ns.length - 1]!)[0]!;
+  if (choices.smeared !== true || state.ns.filter((n) => n <= whole).length < 2) return state.include;
+  return state.ns.map((n) => n <= whole);
 }
 
 /** Whether a law fitted anew is still the law of this ladder. */
@@ -195,7 +227,8 @@ function describeTail(
       protocol.tail.cutoff_n === null
         ? lastTiedLine(points, state, fromN, protocol.lines.instrument_lorentz_fwhm_eV)
         : Math.max(fromN - 1, protocol.tail.cutoff_n),
-    band: protocol.tail.cutoff_n === null,
+    band: protocol.tail.cutoff_n === null && choices.smeared !== true,
+    ...(choices.smeared === true ? { continuum: false } : {}),
     below: linesBelow(points, state, protocol),
     levels: state.levels,
     levelLink: links.levelLink,
@@ -203,16 +236,16 @@ function describeTail(
     widthLink: links.widthLink,
     strengthShare: links.strengthShare,
     strength: links.strength,
-    envelope:
-      protocol.material.dimension < 2.5
-        ? "allowed-2d"
-        : protocol.material.envelope === "P"
-          ? "forbidden-3d"
-          : "allowed-3d",
+    envelope: envelopeOf(protocol),
     continuumOdd: choices.continuumOdd,
     factorFree: true,
     factor: state.factor,
   };
+}
+
+function envelopeOf(protocol: Protocol): TailSpec["envelope"] {
+  if (protocol.material.dimension < 2.5) return "allowed-2d";
+  return protocol.material.envelope === "P" ? "forbidden-3d" : "allowed-3d";
 }
 
 /** Lines are summed one by one until they run together, or stand closer than the points can tell. */

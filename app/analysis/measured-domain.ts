@@ -1,6 +1,5 @@
 import { assumption, doubt, type Note, type Watch } from "../base/index.ts";
 import {
-  backgroundColumns,
   fitTransmittance,
   slitBias,
   type FittedValue,
@@ -14,7 +13,7 @@ import { fitEveryPoint, type FitDomain, type FullFit } from "./fit-full.ts";
 import { ADDITIVE_RANGE, fringePhase, plateReflectance, type FringePhase } from "./fringes.ts";
 import { slitOf, withoutSlit } from "./instrument.ts";
 import { depthPerSignal } from "./light.ts";
-import type { ModelChoices } from "./ladder-model.ts";
+import { modelBackground, type ModelChoices } from "./ladder-model.ts";
 import type { SelectedPoints } from "./select-points.ts";
 
 /** The fit in the domain that was chosen, `full.domain`, and its points. */
@@ -105,15 +104,8 @@ export function fitInDomain(
       watch,
       report,
       (model) => {
-        const columns = (energy: Float64Array): ReturnType<typeof backgroundColumns> =>
-          backgroundColumns(
-            how.background,
-            energy,
-            spectrum.unit,
-            model.state.levels.gap,
-            frame,
-            model.state.fringes ?? null,
-          );
+        const columns = (energy: Float64Array): ReturnType<typeof modelBackground> =>
+          modelBackground(energy, model.state, protocol, spectrum.unit, how, frame);
         const started = startFrom(first, parts);
         const done = fitTransmittance(started, model.spec, columns, model.start, last, { watch });
         last = done.fit;

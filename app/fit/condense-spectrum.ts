@@ -82,6 +82,7 @@ export function featuresAt(problem: SpectrumProblem, theta: Float64Array): Featu
     energy: problem.energyOf(j, theta),
     width: problem.widthOf(j, theta) + extra,
   }));
+  for (const column of spec.background) features.push(...(column.features ?? []));
   const { tail } = spec;
   if (tail === null) return features;
   const { levels, widths } = problem.lawsAt(theta);

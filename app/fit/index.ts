@@ -12,3 +12,4 @@ export { fitTransmittance, type TransmittanceFit } from "./transmittance-fit.ts"
 export { TransmittanceProblem, type MeasuredLight } from "./transmittance-problem.ts";
 export { applySlit, makeSlitGrid, type Feature, type SlitGrid } from "./transmittance-grid.ts";
 export { slitBias } from "./transmittance-bias.ts";
+export { SMEARED, smearedColumns, smearedKnots } from "./smeared-series.ts";

@@ -16,6 +16,8 @@ export interface BackgroundColumn {
   readonly unit: string;
   /** (m) */
   readonly values: Float64Array;
+  /** Where it has structure of its own, as lines have; none by default. */
+  readonly features?: readonly { readonly energy: number; readonly width: number }[];
 }
 
 /** Additive fringes: cos and sin amplitudes of the fit before, and the period the columns are made with. */
@@ -63,6 +65,8 @@ export interface TailSpec {
   readonly toN: number;
   /** Whether the lines above toN are there, as a band up to the gap; false where the series is cut off at toN. */
   readonly band: boolean;
+  /** Whether the continuum follows the lines' strength; false where it is one of the smeared columns. */
+  readonly continuum?: boolean;
   /** Lines below the window that reach in with their wings. */
   readonly below: readonly number[];
   readonly levels: LevelValues;

@@ -248,6 +248,7 @@ export class TailEvaluator {
   /** The continuum, its edge as broad as the width law's limit at infinite n. */
   private addContinuum(law: LevelParameters, widths: WidthValues, q: number, derivatives: boolean): void {
     const { columns, spec, bandScratch: out, grid } = this;
+    if (spec.continuum === false) return;
     const nodes = grid.nodes;
     const width = new Float64Array(WIDTH.size);
     widthLaw(FAR_N, spec.levels.defect0, widths, width);

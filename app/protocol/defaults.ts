@@ -53,7 +53,7 @@ export const DEFAULT_PROTOCOL: Protocol = {
     constraints: [],
     domain: "auto",
   },
-  tail: { model: "law", cutoff_n: null },
+  tail: { model: "law", cutoff_n: null, smeared: "auto" },
   series: { defect: "constant", mode: "free", fit_n: "auto", extra: [] },
   width: { mode: "free", exponent: "free", base: "n", floor_kind: "lorentzian" },
   strength: { mode: "free", law: "cubic", base: "n" },

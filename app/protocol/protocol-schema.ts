@@ -180,6 +180,8 @@ export const protocolSchema = z.strictObject({
     model: z.enum(["law", "none"]),
     /** Highest n that the crystal still shows: lines above it are absent up to the gap. Null: the series goes on. */
     cutoff_n: z.int().min(2).max(200).nullable(),
+    /** `auto`: where lines alone leave a misfit, what they have lost is looked for between them; `none`: it is not. */
+    smeared: z.enum(["auto", "none"]).default("auto"),
   }),
   series: z.strictObject({
     defect: z.enum(["none", "constant", "ritz"]),

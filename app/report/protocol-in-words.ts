@@ -35,6 +35,7 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
     said.push(`Lorentzian instrument of ${lines.instrument_lorentz_fwhm_eV} eV taken off the widths`);
   said.push(`background ${protocol.background.map(termInWords).join(" + ") || "none"}`);
   said.push(tail.model === "law" ? "tail of the series tied to the laws" : "tail of the series left out");
+  if (tail.smeared === "none") said.push("nothing looked for between the lines");
   said.push(
     {
       none: "quantum defect held at zero",
