@@ -5,19 +5,17 @@ import { parseNumber } from "../controls/parse-number.ts";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 import {
   countRules,
-  faultOf,
   firstRule,
   followsLaw,
   LAW_NAMES,
   LINE_PARAMETERS,
-  ruleInWords,
   ruleOf,
-  withRule,
   type LineParameter,
   type LineRule,
 } from "./line-rules.ts";
 import { fromPrinted, lineUnits, printed } from "./line-units.ts";
 import { parseList } from "./parse-list.ts";
+import { takeRule } from "./take-rule.ts";
 
 /** What the fit may do with the chosen line, as a sentence; and one way to have all lines free again. */
 export function LineChoices({ result, n }: { readonly result: RunglineResult; readonly n: number | null }) {
@@ -64,16 +62,7 @@ function ParameterClause({ result, protocol, n, parameter, end }: ClauseProps) {
   const unit = units[parameter];
   const rule = ruleOf(protocol, n, parameter);
   const named = (what: string): string => `${what} of the ${parameter} of n = ${n}`;
-  const take = (next: LineRule): string | null => {
-    const fault = faultOf(next, result, n, parameter, units);
-    if (fault !== null) return fault;
-    const words = ruleInWords(next, n, parameter, units);
-    controller.change(
-      { lines: { constraints: withRule(protocol.lines.constraints, n, parameter, next) } },
-      `${parameter} of n = ${n} ${words === "" ? "as for all lines" : words}`,
-    );
-    return null;
-  };
+  const take = (next: LineRule): string | null => takeRule(controller, result, protocol, n, parameter, next);
   const amount = (label: string, value: number | null, onValue: (value: number | null) => string | null) => (
     <Amount
       label={`${named(label)}${unit.unit === "" ? "" : ` in ${unit.unit}`}`}

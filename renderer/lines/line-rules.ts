@@ -145,10 +145,10 @@ function firstBounds(line: LineResult, parameter: LineParameter, value: number):
   }
 }
 
-/** One digit finer than the standard error's second, so that holding moves nothing that could be seen. */
+/** To two digits of the standard error or finer, so that holding moves nothing that could be seen. */
 function rounded(value: number, sigma: number | null, { scale }: PrintedUnit): number {
   if (sigma === null || !(sigma > 0)) return Number(value.toPrecision(9));
-  const digits = Math.min(14, Math.max(0, 2 - Math.floor(Math.log10(sigma * scale))));
+  const digits = Math.min(14, Math.max(0, 1 - Math.floor(Math.log10(sigma * scale))));
   return Number((Number((value * scale).toFixed(digits)) / scale).toPrecision(14));
 }
 

@@ -1,4 +1,5 @@
 import { useMemo, useState, type Ref } from "react";
+import { resolveProtocol } from "../../app/protocol/index.ts";
 import { Segments } from "../controls/choices.tsx";
 import { usePalette } from "../frame/theme.ts";
 import { StageFrame } from "../frame/stage-frame.tsx";
@@ -7,10 +8,12 @@ import type { Edge } from "../plot/edge-handle.tsx";
 import { Figure, type FigureHandle } from "../plot/figure.tsx";
 import { currentAnalysed, currentChoices, useController, useWindow } from "../store/context.ts";
 import { backgroundSection, fitSection, lineSection } from "./lines-ledger.ts";
+import { energyEdges } from "./energy-edges.ts";
 import { LineChoices } from "./line-choices.tsx";
 import { LinesChoices } from "./lines-choices.tsx";
 import { fittedWindow, linesFigure, type LinesView } from "./lines-figure.ts";
 import { LinesTable } from "./lines-table.tsx";
+import { takeRule } from "./take-rule.ts";
 import { Unfitted } from "../frame/unfitted.tsx";
 
 /** A window cannot be made narrower than this share of itself at once. */
@@ -42,6 +45,7 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
   if (analysed === null || figure === null)
     return <Unfitted choices={<LinesChoices />} figureRef={figureRef} />;
   const { result, curves } = analysed;
+  const protocol = resolveProtocol(choices);
   // A chosen window stands before it is fitted; else the one that was.
   const window = chosenWindow ?? fittedWindow(curves, result);
   const near = (x: number): number | null => {
@@ -79,6 +83,11 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
       highest: energy[energy.length - 1]!,
       onMoved: (x) => moveTo(low, x),
     },
+    ...(protocol.ok
+      ? energyEdges(result, protocol.value, selected, (n, rule) => {
+          takeRule(controller, result, protocol.value, n, "energy", rule);
+        })
+      : []),
   ];
   return (
     <StageFrame

@@ -17,6 +17,8 @@ export interface Edge {
   /** Between what it may be moved. */
   readonly lowest: number;
   readonly highest: number;
+  /** Of the whole figure, or of one line: thinner, its grip at the foot. */
+  readonly of?: "line";
   readonly onMoved: (x: number) => void;
 }
 
@@ -29,6 +31,8 @@ export function EdgeHandle({ edge, place }: { readonly edge: Edge; readonly plac
   const span = place.to - place.from;
   const left = place.left + ((x - place.from) / span) * place.width;
   if (!(left > place.left - 1 && left < place.left + place.width + 1)) return null;
+  // A line is placed finer than a border of the window.
+  const digits = edge.of === "line" ? 7 : 5;
   const held = (value: number): number => Math.min(edge.highest, Math.max(edge.lowest, value));
   const take = (): void => {
     if (draft !== null && draft !== edge.x) edge.onMoved(draft);
@@ -56,7 +60,8 @@ export function EdgeHandle({ edge, place }: { readonly edge: Edge; readonly plac
       aria-valuenow={x}
       aria-valuemin={edge.lowest}
       aria-valuemax={edge.highest}
-      aria-valuetext={`${x.toFixed(5)} eV`}
+      aria-valuetext={`${x.toFixed(digits)} eV`}
+      data-of={edge.of}
       data-moving={draft !== null || undefined}
       style={{ left, top: place.top, height: place.height }}
       onPointerDown={(event) => event.currentTarget.setPointerCapture(event.pointerId)}
@@ -70,7 +75,7 @@ export function EdgeHandle({ edge, place }: { readonly edge: Edge; readonly plac
       onBlur={take}
     >
       <span className="edge-grip" aria-hidden="true" />
-      {draft !== null && <span className="edge-value">{draft.toFixed(5)} eV</span>}
+      {draft !== null && <span className="edge-value">{draft.toFixed(digits)} eV</span>}
     </div>
   );
 }
