@@ -8,4 +8,4 @@ export * from "./weighted-fit.ts";
 export { holm } from "./holm.ts";
 export { detectableDifference, effectiveDegrees } from "./detectable.ts";
 export { chiSquareQuantile, twoSided, twoSidedQuantile } from "./quantiles.ts";
-export { typedValues } from "./typed-values.ts";
+export { columnHead, typedValues } from "./typed-values.ts";

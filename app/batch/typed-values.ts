@@ -7,7 +7,7 @@ import { readTextTable } from "../table/index.ts";
  */
 export function typedValues(bytes: Uint8Array): ComparisonChoices["values"] {
   const { header, rows } = readTextTable(bytes);
-  const columns = header.slice(1).map(nameAndUnit);
+  const columns = header.slice(1).map(columnHead);
   return rows.flatMap((row) => {
     const of = row[0] ?? "";
     if (of === "") return [];
@@ -21,7 +21,7 @@ export function typedValues(bytes: Uint8Array): ComparisonChoices["values"] {
 }
 
 /** The unit behind a slash that stands apart, or in brackets at the end: any unit, not only those that spectra have. */
-function nameAndUnit(header: string): { name: string; unit: string } {
+export function columnHead(header: string): { name: string; unit: string } {
   const match = /^(.+?)\s+\/\s*(\S.*)$/.exec(header) ?? /^(.+?)\s*[([]([^)\]]+)[)\]]$/.exec(header);
   return match === null ? { name: header, unit: "" } : { name: match[1]!.trim(), unit: match[2]!.trim() };
 }

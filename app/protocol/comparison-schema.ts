@@ -170,6 +170,8 @@ const temperatureLaw = z.strictObject({
   scaled_by: z.number(),
   /** The fitted law on the grid of its series, eV: drawable also where a parameter by itself is not determined. */
   curve: z.array(number),
+  /** (value - law)/sigma of each point of its series. */
+  residuals: z.array(z.number()),
 });
 export type TemperatureLaw = z.output<typeof temperatureLaw>;
 

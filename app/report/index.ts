@@ -30,7 +30,7 @@ export {
   seriesTitle,
   spreadInWords,
   temperatureVerdict,
-  TEMPERATURE_PARAMETERS,
+  TEMPERATURE_LAW_NAMES,
   weightInWords,
 } from "./comparison-to-text.ts";
 export {

@@ -197,6 +197,10 @@ function fitOne(
     weight: null,
     stationary: fit.stationary,
     scaled_by: scaled,
+    residuals: points.map((point) => {
+      law.evaluate(point.temperature_K, fit.values, out);
+      return (point.value - out[0]!) / point.sigma;
+    }),
     curve: grid.map((temperature) => {
       law.evaluate(temperature, fit.values, out);
       return Number.isFinite(out[0]!) ? out[0]! : null;

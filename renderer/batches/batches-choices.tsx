@@ -5,6 +5,7 @@ import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
 import { parseNumber } from "../controls/parse-number.ts";
 import { useController, useWindow } from "../store/context.ts";
 import type { CompareView } from "../store/session.ts";
+import { typedColumns, typeFacts } from "../store/typed-facts.ts";
 import { batchesOf, gather, unfittedFiles } from "../store/gather.ts";
 
 const NONE = "";
@@ -116,8 +117,10 @@ export function BatchesChoices({ chosen }: { readonly chosen: ComparedSample | n
               placeholder="as the header says"
               width={8}
               onCommit={(text) => {
+                // Typed over the header for every file of the sample; nothing typed gives the header back.
+                const changes = chosen.results.map(({ file }) => ({ of: file, name: "batch", text }));
                 choose(
-                  { values: typedBatch(view.choices.values ?? [], chosen, text) },
+                  { values: typeFacts(view.choices.values ?? [], changes) },
                   `batch of ${chosen.sample}`,
                 );
                 return null;
@@ -132,25 +135,20 @@ export function BatchesChoices({ chosen }: { readonly chosen: ComparedSample | n
   );
 }
 
-type Values = NonNullable<CompareView["choices"]["values"]>;
-
-/** Typed over the header for every file of the sample; nothing typed gives the header back. */
-function typedBatch(values: Values, { results }: ComparedSample, text: string): Values {
-  const files = results.map(({ file }) => file);
-  const others = values.filter(({ of }) => !files.includes(of));
-  return text === "" ? others : [...others, ...files.map((of) => ({ of, facts: { batch: text } }))];
-}
-
-/** Facts of the headers that say something else from sample to sample and could order them. */
+/** Facts of the headers that say something else from sample to sample and could order them, and typed columns. */
 function factLabels(session: Parameters<typeof gather>[0]): readonly string[] {
   const texts = new Map<string, Set<string>>();
+  for (const { named } of gather(session))
+    if (named.temperature_K !== null)
+      texts.set("temperature", (texts.get("temperature") ?? new Set()).add(String(named.temperature_K)));
   for (const { result } of gather(session))
     for (const { key, label, text } of result.reading.facts) {
-      if (key === "sample" || key === "batch") continue;
+      if (key === "sample" || key === "batch" || key === "temperature") continue;
       const name = key === "other" ? label : key;
       if (/\d/.test(text)) texts.set(name, (texts.get(name) ?? new Set()).add(text));
     }
-  return [...texts].flatMap(([name, different]) => (different.size > 1 ? [name] : []));
+  const told = [...texts].flatMap(([name, different]) => (different.size > 1 ? [name] : []));
+  return [...new Set([...told, ...typedColumns(session.compare.choices.values ?? [])])];
 }
 
 /** Fit every file without a fit of its present choices, with progress and a way out. */

@@ -1,4 +1,4 @@
-import { PARAMETER_TITLES } from "../../app/report/index.ts";
+import { PARAMETER_TITLES, sampleLabels } from "../../app/report/index.ts";
 import type {
   ComparedParameter,
   ComparedPart,
@@ -107,18 +107,20 @@ function shortName(name: string): string {
     : `${letters.slice(0, 9).join("")}…${letters.slice(-8).join("")}`;
 }
 
-function leftMargin(rows: readonly number[], { samples }: Comparison): number {
-  const longest = Math.max(0, ...rows.map((i) => shortName(samples[i]!.sample).length));
+function leftMargin(rows: readonly number[], comparison: Comparison): number {
+  const labels = sampleLabels(comparison);
+  const longest = Math.max(0, ...rows.map((i) => shortName(labels[i]!).length));
   return 24 + 6.5 * longest;
 }
 
-function namesAxis(rows: readonly number[], { samples }: Comparison, palette: Palette, named: boolean): Axis {
+function namesAxis(rows: readonly number[], comparison: Comparison, palette: Palette, named: boolean): Axis {
+  const labels = sampleLabels(comparison);
   return axis(palette, "", {
     range: [rows.length - 0.4, -0.6],
     tickvals: rows.map((_, row) => row),
     // Of very many samples only some names have room; the others are told by pointing.
     ticktext: rows.map((i, row) =>
-      row % Math.ceil(rows.length / MOST_NAMES) === 0 ? shortName(samples[i]!.sample) : "",
+      row % Math.ceil(rows.length / MOST_NAMES) === 0 ? shortName(labels[i]!) : "",
     ),
     showticklabels: named,
     ticks: "",

@@ -1,7 +1,7 @@
 import { useCallback, useMemo } from "react";
 import { dayNumber } from "../../app/batch/index.ts";
-import type { ComparedSample, Comparison } from "../../app/protocol/index.ts";
-import { formatNumber } from "../../app/report/index.ts";
+import type { ComparedParameter, ComparedSample, Comparison } from "../../app/protocol/index.ts";
+import { formatNumber, formatQuantity } from "../../app/report/index.ts";
 import { SortedTable, sortedColumns } from "../controls/sorted-table.tsx";
 import { useMode } from "../frame/theme.ts";
 import { Symbol } from "../ledger/ledger.tsx";
@@ -89,6 +89,24 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
           },
         });
       }),
+      ...(comparison.quality === null
+        ? []
+        : [
+            helper.accessor((row) => comparison.quality!.samples[row.i]?.figure.value ?? undefined, {
+              id: "quality",
+              header: () => <span title="Figure of quality: value(statistical)">Quality</span>,
+              cell: ({ row }) => {
+                const one = comparison.quality!.samples[row.original.i];
+                return (
+                  <span title={one === undefined ? "" : contributionsText(one.contributions)}>
+                    {one === undefined || one.figure.value === null
+                      ? "not determined"
+                      : formatQuantity(one.figure.value, one.figure.sigma, "")}
+                  </span>
+                );
+              },
+            }),
+          ]),
       helper.accessor((row) => row.sample.doubts.length, {
         id: "doubts",
         header: "Doubts",
@@ -123,6 +141,12 @@ export function BatchesTable({ comparison, batches, lit, chosen, onPoint, onChoo
       />
     </div>
   );
+}
+
+function contributionsText(contributions: Readonly<Partial<Record<ComparedParameter, number>>>): string {
+  return (Object.entries(contributions) as [ComparedParameter, number][])
+    .map(([name, size]) => `${title(name)} ${formatNumber(size, 3)}`)
+    .join(", ");
 }
 
 interface NameProps {

@@ -1,6 +1,6 @@
 import { useEffect, useMemo, useRef, useState } from "react";
 import type { Note } from "../../app/base/index.ts";
-import { gravestFirst } from "../../app/report/index.ts";
+import { comparisonNotes, gravestFirst } from "../../app/report/index.ts";
 import {
   currentComparison,
   currentFit,
@@ -36,7 +36,7 @@ export function NotesLine() {
     if (comparison !== null)
       return [
         ...messages.map(ofMessage),
-        ...gravestFirst([...comparison.notes, ...(comparison.temperature?.notes ?? [])]).map(ofNote),
+        ...gravestFirst(comparisonNotes(comparison)).map(ofNote),
       ];
     const read = reading?.state === "read" ? reading.inspection.spectrum.notes : [];
     const fitted = fit?.analysed.result.notes ?? [];

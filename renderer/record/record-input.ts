@@ -13,7 +13,8 @@ function drawn({ energy_eV, signal, model, background, residual }: FittedCurves)
 /** What Batches shows; the same file fitted alike is there once. */
 export function recorded(session: Session): readonly Gathered[] {
   const seen = new Set<string>();
-  return gather(session).filter(({ shown, result: { source, protocol } }) => {
+  return gather(session).filter(({ shown, of, result: { source, protocol } }) => {
+    if (of === "series") return false;
     const key = `${source.sha256} ${source.file} ${JSON.stringify(protocol)}`;
     return shown && !seen.has(key) && seen.add(key);
   });
@@ -24,7 +25,8 @@ export function recorded(session: Session): readonly Gathered[] {
  * shows, with their comparison.
  */
 export function recordInput(session: Session, comparison: Comparison | null, of: string | null): RecordInput {
-  const found = of === null ? recorded(session) : gather(session).filter(({ id }) => id === of);
+  const found =
+    of === null ? recorded(session) : gather(session).filter((one) => one.id === of && one.of !== "series");
   const items = found.map(({ id, of: kind, result }) => ({
     result,
     curves: kind === "file" ? drawn(session.fits[id]!.analysed.curves) : null,

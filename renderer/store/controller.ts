@@ -211,9 +211,9 @@ export class Controller {
   openSample(id: string): void {
     const found = gather(this.store.getState().session).find((one) => one.id === id);
     if (found === undefined) return;
-    if (found.of === "file") {
+    if (found.of !== "result") {
       this.choose(id);
-      this.show("ladder");
+      this.show(found.of === "file" ? "ladder" : "power");
     } else this.#set({ stage: "record", recordOf: id });
   }
 

@@ -9,9 +9,9 @@ import type { CompareView, LoadedResult, Session } from "./session.ts";
 
 /** One result of the session with the facts that name it, and whether the filters let it stand. */
 export interface Gathered {
-  /** Of its file, or of the result that was opened alone. */
+  /** Of its file, of the first file of its power series, or of the result that was opened alone. */
   readonly id: string;
-  readonly of: "file" | "result";
+  readonly of: "file" | "series" | "result";
   readonly result: RunglineResult;
   readonly named: NamedResult;
   readonly shown: boolean;
@@ -21,7 +21,7 @@ export interface Gathered {
 
 const known = new WeakMap<Session, readonly Gathered[]>();
 
-/** Every fit of the session's files, then results that came alone; the same list for the same session. */
+/** Every fit of the session's files, results that came alone, power series where there are several; the same list for the same session. */
 export function gather(session: Session): readonly Gathered[] {
   const before = known.get(session);
   if (before !== undefined) return before;
@@ -39,6 +39,12 @@ export function gather(session: Session): readonly Gathered[] {
     }),
     ...session.results.map(({ id, result }: LoadedResult) => make(id, "result", result, false)),
   ];
+  const series = Object.entries(session.powerFits).map(([id, { analysed, choices: made }]) =>
+    make(id, "series", analysed.result, made !== session.choices[id]),
+  );
+  // One power series by itself has nothing to stand beside.
+  if (series.length + gathered.filter(({ result }) => (result.power ?? null) !== null).length > 1)
+    gathered.push(...series);
   known.set(session, gathered);
   return gathered;
 }

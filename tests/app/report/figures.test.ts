@@ -153,6 +153,7 @@ describe("a figure of laws of temperature", () => {
     law: name,
     parameters,
     curve,
+    residuals: [0, 1, -1, 0],
     chi2: 1,
     dof: 1,
     p: 0.3,
