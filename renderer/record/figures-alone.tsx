@@ -21,18 +21,12 @@ const KINDS: readonly { readonly value: FigureKind; readonly text: string }[] = 
   { value: "png", text: "PNG" },
 ];
 
-const KIND_WORDS: Readonly<Record<FigureKind, string>> = {
-  pdf: "Vector graphics, the typeface embedded.",
-  svg: "Vector graphics; texts stay texts, the typeface is named.",
-  png: "Dots, with their number an inch.",
-};
-
 /** Between one column and the page: common with journals that set wide columns. */
 const MIDDLE_MM = 120;
 const OWN = "own";
 const WIDTHS: readonly { readonly value: string; readonly text: string }[] = [
-  { value: OWN, text: `own width, ${ONE_COLUMN_MM} or ${FULL_WIDTH_MM} mm` },
-  { value: String(ONE_COLUMN_MM), text: `one column, ${ONE_COLUMN_MM} mm` },
+  { value: OWN, text: "own width" },
+  { value: String(ONE_COLUMN_MM), text: `column, ${ONE_COLUMN_MM} mm` },
   { value: String(MIDDLE_MM), text: `between, ${MIDDLE_MM} mm` },
   { value: String(FULL_WIDTH_MM), text: `page, ${FULL_WIDTH_MM} mm` },
 ];
@@ -81,15 +75,17 @@ export function FiguresAlone({ input }: { readonly input: RecordInput }) {
         onPick={setChosen}
       />
       <Segments label="Kind of file" value={kind} options={KINDS} onPick={setKind} />
-      <Pick label="Width in print" value={width} options={WIDTHS} onPick={setWidth} />
-      {kind === "png" && (
-        <Pick
-          label="Dots an inch"
-          value={dpi}
-          options={FIGURE_DPI.map((one) => ({ value: String(one), text: `${one} dots an inch` }))}
-          onPick={setDpi}
-        />
-      )}
+      <div className="figures-size">
+        <Pick label="Width in print" value={width} options={WIDTHS} onPick={setWidth} />
+        {kind === "png" && (
+          <Pick
+            label="Dots an inch"
+            value={dpi}
+            options={FIGURE_DPI.map((one) => ({ value: String(one), text: `${one} dpi` }))}
+            onPick={setDpi}
+          />
+        )}
+      </div>
       {making === null ? (
         <Button className="button" isDisabled={names.length === 0} onPress={save}>
           {name === ALL ? "Save the figures" : "Save the figure"}
@@ -102,7 +98,6 @@ export function FiguresAlone({ input }: { readonly input: RecordInput }) {
           </Button>
         </div>
       )}
-      <p className="small">{KIND_WORDS[kind]}</p>
     </section>
   );
 }

@@ -122,31 +122,35 @@ function Keep({ input, ready }: { readonly input: RecordInput; readonly ready: b
           One file that stands alone: job, reading, protocol, figures, tables, notes, methods, versions and
           hashes. It opens without a network, prints, and can be dropped here again.
         </p>
-        <Button
-          className="button button-main"
-          isDisabled={!ready || saving !== null}
-          onPress={() => save("report")}
-        >
-          Save the report
-        </Button>
-        <Button className="button" isDisabled={!ready} onPress={() => window.print()}>
-          Print
-        </Button>
+        <div className="record-pair">
+          <Button
+            className="button button-main"
+            isDisabled={!ready || saving !== null}
+            onPress={() => save("report")}
+          >
+            Save the report
+          </Button>
+          <Button className="button" isDisabled={!ready} onPress={() => window.print()}>
+            Print
+          </Button>
+        </div>
       </section>
       <FiguresAlone input={input} />
       <section>
         <h3>Its parts</h3>
-        {PARTS.map(({ part, text, kind }) => (
-          <Button
-            key={part}
-            className="button record-part"
-            aria-label={`Save ${text.toLowerCase()}, ${kind}`}
-            isDisabled={saving !== null}
-            onPress={() => save(part)}
-          >
-            {text} <span className="small">{kind}</span>
-          </Button>
-        ))}
+        <div className="record-parts">
+          {PARTS.map(({ part, text, kind }) => (
+            <Button
+              key={part}
+              className="button record-part"
+              aria-label={`Save ${text.toLowerCase()}, ${kind}`}
+              isDisabled={saving !== null}
+              onPress={() => save(part)}
+            >
+              {text} <span className="small">{kind}</span>
+            </Button>
+          ))}
+        </div>
       </section>
       <section>
         <h3>From</h3>
