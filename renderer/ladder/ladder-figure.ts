@@ -1,16 +1,12 @@
 import type { Quantity } from "../../app/base/index.ts";
 import type { LineResult, RunglineResult } from "../../app/protocol/index.ts";
 import { colourOfN, type Palette } from "../plot/colours.ts";
+import { composePanels, type Drawn, type Place } from "../plot/compose-panels.ts";
 import type { Axis, FigureDescription, Trace } from "../plot/figure-description.ts";
 import { axis, baseLayout, logarithmic } from "../plot/layout.ts";
 
 export type LadderPanel = "all" | "levels" | "widths" | "strengths" | "asymmetries" | "ranges";
 export type RangeQuantity = "gap" | "rydberg" | "defect";
-
-interface Place {
-  readonly x: readonly [number, number];
-  readonly y: readonly [number, number];
-}
 
 type PanelName = "levels" | "offsets" | "widths" | "strengths" | "asymmetries" | "ranges";
 type Places = Partial<Record<PanelName, Place>>;
@@ -38,32 +34,24 @@ export function ladderFigure(
   panel: LadderPanel,
   ranged: RangeQuantity,
 ): FigureDescription {
-  const data: Trace[] = [];
-  const layout: Record<string, unknown> = {
-    ...baseLayout(palette),
-    hovermode: "closest",
-    uirevision: `${result.source.sha256} ${panel} ${ranged}`,
-  };
   const panels = Object.entries(PLACES[panel]) as [PanelName, Place][];
-  panels.forEach(([name, place], i) => {
-    const suffix = i === 0 ? "" : String(i + 1);
-    const names = { xaxis: `x${suffix}`, yaxis: `y${suffix}` };
-    const drawn = draw(name);
-    data.push(...drawn.data.map((trace) => ({ ...trace, ...names })));
-    layout[`xaxis${suffix}`] = { ...drawn.x, domain: place.x, anchor: names.yaxis };
-    layout[`yaxis${suffix}`] = { ...drawn.y, domain: place.y, anchor: names.xaxis };
-  });
   const series = result.series;
   return {
     summary:
       series === null
         ? "No series was seen"
         : `Series plots of ${result.lines.length} lines, law fitted from n = ${series.fit_n[0]} to ${series.fit_n[1]}`,
-    data,
-    layout,
+    ...composePanels(
+      panels.map(([name, place]) => ({ place, drawn: draw(name) })),
+      {
+        ...baseLayout(palette),
+        hovermode: "closest",
+        uirevision: `${result.source.sha256} ${panel} ${ranged}`,
+      },
+    ),
   };
 
-  function draw(name: PanelName): { data: Trace[]; x: Axis; y: Axis } {
+  function draw(name: PanelName): Drawn {
     switch (name) {
       case "levels":
         return levels(result, palette);

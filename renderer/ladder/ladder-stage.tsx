@@ -6,32 +6,42 @@ import { Unfitted } from "../frame/unfitted.tsx";
 import { Ledger } from "../ledger/ledger.tsx";
 import { Figure, type FigureHandle } from "../plot/figure.tsx";
 import { currentAnalysed, useController, useWindow } from "../store/context.ts";
+import { errorFigure, type ErrorView } from "./error-figure.ts";
+import { ErrorKey } from "./error-key.tsx";
+import { ErrorLedger } from "./error-ledger.tsx";
 import { LadderChoices } from "./ladder-choices.tsx";
 import { ladderFigure, type LadderPanel, type RangeQuantity } from "./ladder-figure.ts";
 import { ladderLedger } from "./ladder-ledger.ts";
 
-/** The series: its plots and its numbers. */
+/** The series: its plots and its numbers, and what stands behind their errors. */
 export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandle> }) {
   const controller = useController();
   const analysed = useWindow(currentAnalysed);
   const palette = usePalette();
   const pointed = useWindow((state) => state.pointedN);
   const selected = useWindow((state) => state.selectedN);
-  const [panel, setPanel] = useState<LadderPanel>("all");
+  const [panel, setPanel] = useState<LadderPanel | "errors">("all");
   const [ranged, setRanged] = useState<RangeQuantity>("gap");
+  const [view, setView] = useState<ErrorView>("regions");
   const figure = useMemo(
-    () => (analysed === null ? null : ladderFigure(analysed.result, palette, panel, ranged)),
-    [analysed, palette, panel, ranged],
+    () =>
+      analysed === null
+        ? null
+        : panel === "errors"
+          ? errorFigure(analysed.result, palette, view)
+          : ladderFigure(analysed.result, palette, panel, ranged),
+    [analysed, palette, panel, ranged, view],
   );
   const sections = useMemo(() => (analysed === null ? [] : ladderLedger(analysed.result)), [analysed]);
   if (analysed === null || figure === null)
     return <Unfitted choices={<LadderChoices />} figureRef={figureRef} />;
+  const { result } = analysed;
   return (
     <StageFrame
       choices={<LadderChoices />}
       tools={
         <>
-          <Segments<LadderPanel>
+          <Segments<LadderPanel | "errors">
             label="Plots"
             value={panel}
             options={[
@@ -39,10 +49,11 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
               { value: "levels", text: "Levels" },
               { value: "widths", text: "Widths" },
               { value: "strengths", text: "Strengths" },
-              ...(analysed.result.protocol.lines.asymmetry === "free"
+              ...(result.protocol.lines.asymmetry === "free"
                 ? [{ value: "asymmetries" as const, text: "Asymmetries" }]
                 : []),
               { value: "ranges", text: "Ranges of n" },
+              { value: "errors", text: "Errors" },
             ]}
             onPick={setPanel}
           />
@@ -61,20 +72,48 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
               />
             </span>
           )}
+          {panel === "errors" && (
+            <span className="tool-words">
+              errors:{" "}
+              <Pick<ErrorView>
+                label="What the errors rest on"
+                value={view}
+                options={[
+                  { value: "regions", text: "joint regions" },
+                  { value: "profiles", text: "profiles" },
+                  { value: "influence", text: "influence of each line" },
+                  { value: "correlations", text: "correlations" },
+                  { value: "residuals", text: "residuals" },
+                  { value: "draws", text: "spectra drawn anew" },
+                ]}
+                onPick={setView}
+              />
+            </span>
+          )}
+          {panel === "errors" && <ErrorKey result={result} view={view} />}
         </>
       }
       figure={
-        <Figure
-          ref={figureRef}
-          figure={figure}
-          lit={pointed ?? selected}
-          onPoint={(_, n) => controller.point(n)}
-          onChoose={(_, n) => {
-            if (n !== null) controller.select(n);
-          }}
-        />
+        figure.data.length === 0 ? (
+          <div className="figure-empty" data-state="empty">
+            <p>{figure.summary}.</p>
+            {view === "draws" && <p>Choose their number and seed beside this, and draw them.</p>}
+          </div>
+        ) : (
+          <Figure
+            ref={figureRef}
+            figure={figure}
+            lit={pointed ?? selected}
+            onPoint={(_, n) => controller.point(n)}
+            onChoose={(_, n) => {
+              if (n !== null) controller.select(n);
+            }}
+          />
+        )
       }
-      ledger={<Ledger sections={sections} />}
+      ledger={
+        panel === "errors" ? <ErrorLedger result={result} view={view} /> : <Ledger sections={sections} />
+      }
     />
   );
 }

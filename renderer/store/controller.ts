@@ -20,6 +20,7 @@ import {
   chooseFile,
   editChoices,
   editCompare,
+  keepDrawn,
   keepFit,
   keepPower,
   markSeries,
@@ -31,6 +32,7 @@ import {
   replaceChoices,
   shareChoices,
   type CompareView,
+  type Fitted,
   type Session,
 } from "./session.ts";
 import type { Message, Reading, Stage, ThemeChoice, WindowState, WindowStore } from "./store.ts";
@@ -333,10 +335,40 @@ export class Controller {
 
   /** Fit the current file with its present choices, in the worker. One fit at a time. */
   async fit(): Promise<void> {
+    await this.#fitCurrent(
+      (choices) => choices,
+      (before, id, fitted) => keepFit(before, id, fitted),
+      (name) => [`the fit of ${name} was cancelled`, "press Fit to start it again"],
+    );
+  }
+
+  /** Fit the current file and spectra drawn anew from its fit; the choices are kept with the fit, as one step. */
+  async drawAnew(
+    wanted: Required<Pick<NonNullable<ProtocolInput["uncertainty"]>, "resample" | "resamples" | "seed">>,
+  ): Promise<void> {
+    const change: ProtocolInput = { uncertainty: wanted };
+    const step = `draw ${wanted.resamples} spectra anew`;
+    let present = NO_CHOICES;
+    await this.#fitCurrent(
+      (choices) => {
+        present = choices;
+        const { session } = this.store.getState();
+        return editChoices(session, change, step).choices[session.currentId!] ?? NO_CHOICES;
+      },
+      (before, id, fitted) => keepDrawn(before, id, fitted, present, change, step),
+      (name) => [`drawing spectra of ${name} anew was cancelled; the fit before stands`, "draw them again"],
+    );
+  }
+
+  async #fitCurrent(
+    choose: (present: ProtocolInput) => ProtocolInput,
+    keep: (session: Session, id: string, fitted: Fitted) => Session,
+    cancelledWords: (name: string) => readonly [text: string, remedy: string],
+  ): Promise<void> {
     const { session, job, facts } = this.store.getState();
     const file = session.files.find((one) => one.id === session.currentId);
     if (file === undefined || job !== null || facts === null) return;
-    const choices = session.choices[file.id] ?? NO_CHOICES;
+    const choices = choose(session.choices[file.id] ?? NO_CHOICES);
     this.#set({
       job: { fileId: file.id, what: "fit", fraction: 0, step: "starting", cancelling: false },
       refusals: without(this.store.getState().refusals, file.id),
@@ -352,13 +384,13 @@ export class Controller {
     this.#set({ job: null });
     switch (outcome.kind) {
       case "done":
-        this.#edit((before) => keepFit(before, file.id, { analysed: outcome.value, choices }));
+        this.#edit((before) => keep(before, file.id, { analysed: outcome.value, choices }));
         break;
       case "refused":
         this.#set({ refusals: { ...this.store.getState().refusals, [file.id]: outcome.wordings } });
         break;
       case "cancelled":
-        this.say(false, `the fit of ${file.name} was cancelled`, "press Fit to start it again");
+        this.say(false, ...cancelledWords(file.name));
         break;
       case "fault":
         this.say(

@@ -200,6 +200,23 @@ export function keepFit(session: Session, id: string, fitted: Fitted): Session {
   return { ...session, fits: { ...session.fits, [id]: fitted }, step: `fit ${file.name}` };
 }
 
+/** A fit whose choices differ from those before by `change` alone: both are kept as one step. */
+export function keepDrawn(
+  session: Session,
+  id: string,
+  fitted: Fitted,
+  before: ProtocolInput,
+  change: ProtocolInput,
+  step: string,
+): Session {
+  const kept = keepFit(session, id, fitted);
+  if (kept === session) return session;
+  const present = session.choices[id] ?? NO_CHOICES;
+  // What was chosen meanwhile stays chosen; the fit is then out of date.
+  const after = present === before ? fitted.choices : (mergeChoices(present, change) as ProtocolInput);
+  return { ...kept, choices: withChoices(session, id, after), step };
+}
+
 /** Results beside the files; one that is there already is not taken twice. */
 export function addResults(session: Session, name: string, results: readonly RunglineResult[]): Session {
   const key = ({ source, protocol }: RunglineResult): string =>
