@@ -119,8 +119,8 @@ function Keep({ input, ready }: { readonly input: RecordInput; readonly ready: b
       <section>
         <h3>The whole</h3>
         <p className="small">
-          One file that stands alone: job, reading, protocol, figures, tables, notes, methods, versions and
-          hashes. It opens without a network, prints, and can be dropped here again.
+          One file that stands alone: reading, protocol, figures, tables, notes, methods, versions and hashes.
+          It opens without a network, prints, and can be dropped here again.
         </p>
         <div className="record-pair">
           <Button
