@@ -10,9 +10,12 @@ interface Props {
   readonly wide?: boolean;
 }
 
+/** From here on the style sheet sets larger type. */
+const LARGE_WINDOW = 1600;
+
 /** Figure in the middle, as large as can be, and the ledger to its right; the border between them moves. */
 export function StageFrame({ choices, tools, figure, ledger, wide = false }: Props) {
-  const width = wide ? 400 : 316;
+  const width = (wide ? 400 : 316) * (window.innerWidth >= LARGE_WINDOW ? 1.1 : 1);
   return (
     <Group orientation="horizontal" id={wide ? "stage-wide" : "stage"} className="stage-group">
       <Panel id="middle" minSize="40%">

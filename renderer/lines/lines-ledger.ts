@@ -3,7 +3,8 @@ import type { RunglineResult } from "../../app/protocol/index.ts";
 import { formatNumber } from "../../app/report/index.ts";
 import type { CardText, LedgerEntry, LedgerSection } from "../ledger/ledger-entry.ts";
 import { notesOfLine } from "../rungs/rung-layout.ts";
-import { lineUnits } from "./line-units.ts";
+import { valueText } from "../ledger/value-text.ts";
+import { lineUnits, type PrintedUnit } from "./line-units.ts";
 
 const SHAPE = "α_n = (A_n/π)[g + 2q(E − E_n)]/[(E − E_n)² + g²], g = Γ_n/2";
 const TOYOZAWA = "Toyozawa, J. Phys. Chem. Solids 25, 59 (1964)";
@@ -214,4 +215,67 @@ export function backgroundSection(result: RunglineResult): LedgerSection | null 
       correlations: [],
     })),
   };
+}
+
+const EXTRA_CARDS = {
+  defect: {
+    definition: "Quantum defect of a series that shares gap and Rydberg energy with the main one.",
+    formula: "E_n = E_g − Ry/(n − δ)²",
+    source: "fitted with the lines",
+    improve: "more lines of this series; or hold it at a published value",
+  },
+  energy: {
+    definition: "Energy of a line of the other series, as gap, Rydberg energy and its own defect give it.",
+    formula: "E_n = E_g − Ry/(n − δ)²",
+    source: "fitted with the lines",
+    improve: CLEARER,
+  },
+} as const satisfies Record<string, CardText>;
+
+/** The other series that were fitted with the main one. */
+export function extraSections(result: RunglineResult): LedgerSection[] {
+  const units = lineUnits(result);
+  const value = (quantity: LedgerEntry["quantity"], { unit, scale }: PrintedUnit): string => {
+    const text = valueText({ quantity, scale, unit, exactWord: "held" });
+    return text.unit === "" ? text.value : `${text.value} ${text.unit}`;
+  };
+  return (result.extra ?? []).map(({ name, defect, lines }, i) => {
+    const notes = result.notes.filter(
+      ({ about, text }) => about === "extra" && text.includes(`extra series ${name}`),
+    );
+    return {
+      title: `Series ${name}`,
+      entries: [
+        {
+          id: `extra-${i}-defect`,
+          symbol: { letter: "δ", below: name },
+          name: "Quantum defect",
+          quantity: defect,
+          unit: "",
+          scale: 1,
+          exactWord: "held",
+          notes,
+          card: EXTRA_CARDS.defect,
+          correlations: [],
+        },
+        ...lines.map((line) => ({
+          id: `extra-${i}-${line.n}`,
+          symbol: { letter: "E", below: String(line.n) },
+          name: `Energy, ${line.significance.toFixed(0)} standard errors seen`,
+          quantity: line.energy_eV,
+          unit: "eV",
+          scale: 1,
+          exactWord: "from held values",
+          notes: [],
+          card: EXTRA_CARDS.energy,
+          correlations: [],
+          table: {
+            caption: "Its width and area",
+            head: ["Γ", "A"],
+            rows: [[value(line.width_eV, units.width), value(line.area, units.area)]],
+          },
+        })),
+      ],
+    };
+  });
 }

@@ -7,7 +7,7 @@ import { Ledger } from "../ledger/ledger.tsx";
 import type { Edge } from "../plot/edge-handle.tsx";
 import { Figure, type FigureHandle } from "../plot/figure.tsx";
 import { currentAnalysed, currentChoices, useController, useWindow } from "../store/context.ts";
-import { backgroundSection, fitSection, lineSection } from "./lines-ledger.ts";
+import { backgroundSection, extraSections, fitSection, lineSection } from "./lines-ledger.ts";
 import { energyEdges } from "./energy-edges.ts";
 import { LineChoices } from "./line-choices.tsx";
 import { LinesChoices } from "./lines-choices.tsx";
@@ -38,9 +38,9 @@ export function LinesStage({ figureRef }: { readonly figureRef: Ref<FigureHandle
     if (analysed === null) return [];
     const { result } = analysed;
     const line = selected === null ? null : lineSection(result, selected);
-    return (line === null ? [fitSection(result), backgroundSection(result)] : [line]).filter(
-      (section) => section !== null,
-    );
+    return (
+      line === null ? [fitSection(result), ...extraSections(result), backgroundSection(result)] : [line]
+    ).filter((section) => section !== null);
   }, [analysed, selected]);
   if (analysed === null || figure === null)
     return <Unfitted choices={<LinesChoices />} figureRef={figureRef} />;
