@@ -63,6 +63,7 @@ export function addFromGrid(
   out: Float64Array,
   offset = 0,
 ): void {
+  if (factor === 0) return;
   const { first, share } = grid;
   const m = first.length;
   const last = values.length - 1;

@@ -2,11 +2,13 @@ import { LEVEL, levelLaw } from "../laws/index.ts";
 import { linePair, linePairWithDerivatives, turnPair } from "../lines/index.ts";
 import type { CondensedProblem, SeparableProblem } from "../solve/index.ts";
 import { condenseSpectrum } from "./condense-spectrum.ts";
-import type { FitPoints, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
-import { TailEvaluator } from "./tail.ts";
+import type { FitPoints, LawLink, LevelValues, LineStart, ModelSpec, WidthValues } from "./model-spec.ts";
+import { leastEdgeWidth, TailEvaluator } from "./tail.ts";
 
 /** Rows evaluated at once: the profiles of a line stay in the first-level cache. */
 const BLOCK = 256;
+/** Points whose tail is held at once, a multiple of BLOCK: spectra of common length are one piece. */
+const PIECE = 2 ** 16;
 
 /** Places of the nonlinear parameters in theta. */
 export interface ThetaLayout {
@@ -40,7 +42,9 @@ export class SpectrumProblem implements SeparableProblem {
   readonly layout: ThetaLayout;
   readonly spec: ModelSpec;
   readonly points: FitPoints;
-  private readonly tail: TailEvaluator | null;
+  /** Least width of an edge of the tail, eV. */
+  private readonly leastWidth: number;
+  private piece: TailPiece | null = null;
   /** The pair of one line and its derivatives on a block of rows. */
   private readonly profile = {
     l: new Float64Array(BLOCK),
@@ -52,7 +56,8 @@ export class SpectrumProblem implements SeparableProblem {
   };
   private readonly law = new Float64Array(LEVEL.size);
 
-  constructor(points: FitPoints, spec: ModelSpec) {
+  /** `leastWidth`: of an edge of the tail (eV), where these points stand for others. */
+  constructor(points: FitPoints, spec: ModelSpec, leastWidth?: number) {
     this.points = points;
     this.spec = spec;
     const m = points.energy.length;
@@ -63,10 +68,8 @@ export class SpectrumProblem implements SeparableProblem {
     this.layout = makeLayout(spec);
     this.nonlinear = this.layout.count;
     this.linear = k * (hasOddAreas(spec) ? 2 : 1) + spec.background.length;
-    this.tail =
-      spec.tail === null
-        ? null
-        : new TailEvaluator(points, spec.tail, spec.gaussStd, spec.instrumentLorentz, spec.partner);
+    this.leastWidth =
+      leastWidth ?? (spec.tail === null ? 0 : leastEdgeWidth(points.energy, spec.tail.levels.gap));
   }
 
   /** The nonlinear start from the lines' start values. */
@@ -141,7 +144,7 @@ export class SpectrumProblem implements SeparableProblem {
 
   /** The same model of other points, `spec` with its background columns on those. */
   onPoints(points: FitPoints, spec: ModelSpec): SpectrumProblem {
-    return new SpectrumProblem(points, spec);
+    return new SpectrumProblem(points, spec, this.leastWidth);
   }
 
   condense(theta: Float64Array): CondensedProblem | null {
@@ -155,9 +158,9 @@ export class SpectrumProblem implements SeparableProblem {
 
   columns(theta: Float64Array, phi: Float64Array): void {
     const { rows: m } = this;
-    const tail = this.tailColumns(theta, this.asymmetryOf(theta), false);
     for (let first = 0; first < m; first += BLOCK) {
       const block = { first, end: Math.min(m, first + BLOCK), ld: m, at: first };
+      const tail = this.tailAt(theta, first);
       for (let j = 0; j < this.spec.ns.length; j++) {
         this.takePair(j, theta, block, false);
         this.writeColumns(j, theta, tail, block, phi);
@@ -169,7 +172,6 @@ export class SpectrumProblem implements SeparableProblem {
   derivatives(theta: Float64Array, coefficients: Float64Array, out: Float64Array): void {
     const { rows: m } = this;
     const strength = this.tailStrength(theta, coefficients);
-    this.tailColumns(theta, strength.q, true);
     for (let first = 0; first < m; first += BLOCK) {
       const block = { first, end: Math.min(m, first + BLOCK), ld: m, at: first };
       this.clearShared(block, out);
@@ -186,10 +188,12 @@ export class SpectrumProblem implements SeparableProblem {
     coefficients: Float64Array,
   ): (first: number, end: number, phi: Float64Array, derivatives: Float64Array) => void {
     const strength = this.tailStrength(theta, coefficients);
-    const tail = this.tailColumns(theta, strength.q, true);
     return (from, to, phi, derivatives) => {
-      for (let first = from; first < to; first += BLOCK) {
-        const block = { first, end: Math.min(to, first + BLOCK), ld: to - from, at: first - from };
+      // Pieces of the tail end at multiples of BLOCK.
+      for (let first = from; first < to;) {
+        const end = Math.min(to, first - (first % BLOCK) + BLOCK);
+        const block = { first, end, ld: to - from, at: first - from };
+        const tail = this.tailAt(theta, first);
         this.clearShared(block, derivatives);
         for (let j = 0; j < this.spec.ns.length; j++) {
           this.takePair(j, theta, block, true);
@@ -198,6 +202,7 @@ export class SpectrumProblem implements SeparableProblem {
         }
         this.writeBackground(block, phi);
         this.addTailDerivatives(theta, strength, block, derivatives);
+        first = end;
       }
     };
   }
@@ -223,7 +228,7 @@ export class SpectrumProblem implements SeparableProblem {
   private writeColumns(
     j: number,
     theta: Float64Array,
-    tail: { even: Float64Array; odd: Float64Array } | null,
+    tail: TailPiece | null,
     { first, end, ld, at }: Block,
     phi: Float64Array,
   ): void {
@@ -238,10 +243,11 @@ export class SpectrumProblem implements SeparableProblem {
     if (free) for (let i = 0; i < height; i++) phi[second + i] = 2 * d[i]!;
     const share = spec.tail?.strengthShare[j] ?? 0;
     if (tail === null || share === 0) return;
-    for (let i = 0; i < height; i++)
-      phi[column + i]! += share * (tail.even[first + i]! + odd * tail.odd[first + i]!);
+    const { even, odd: partner } = tail;
+    const from = first - tail.first;
+    for (let i = 0; i < height; i++) phi[column + i]! += share * (even[from + i]! + odd * partner[from + i]!);
     // The tail is as asymmetric as the lines that speak for its strength: its odd part follows their odd areas.
-    if (free) for (let i = 0; i < height; i++) phi[second + i]! += 2 * share * tail.odd[first + i]!;
+    if (free) for (let i = 0; i < height; i++) phi[second + i]! += 2 * share * partner[from + i]!;
   }
 
   private writeBackground({ first, end, ld, at }: Block, phi: Float64Array): void {
@@ -293,22 +299,47 @@ export class SpectrumProblem implements SeparableProblem {
     }
   }
 
-  /** T = even + 2 q odd at theta (m each), or null; with `derivatives` the evaluator's derivative columns are filled too. */
-  private tailColumns(
-    theta: Float64Array,
-    q: number,
-    derivatives: boolean,
-  ): { even: Float64Array; odd: Float64Array } | null {
-    const { tail } = this;
-    if (tail === null) return null;
+  /** T = even + 2 q odd at theta on the piece of the points that holds this row; null without a tail. */
+  private tailAt(theta: Float64Array, row: number): TailPiece | null {
+    const { spec, points } = this;
+    if (spec.tail === null) return null;
+    let { piece } = this;
+    if (piece === null || row < piece.first || row >= piece.end) {
+      const first = row - (row % PIECE);
+      const end = Math.min(this.rows, first + PIECE);
+      const part = (column: Float64Array): Float64Array => column.subarray(first, end);
+      const some = { energy: part(points.energy), signal: part(points.signal), sigma: part(points.sigma) };
+      const { gaussStd, instrumentLorentz, partner } = spec;
+      const { leastWidth } = this;
+      const tail = new TailEvaluator(some, spec.tail, gaussStd, instrumentLorentz, partner, leastWidth);
+      const make = (): Float64Array => new Float64Array(end - first);
+      const at = new Float64Array(theta.length).fill(NaN);
+      piece = { first, end, tail, even: make(), odd: make(), at, slopesFor: null };
+      this.piece = piece;
+    }
+    if (piece.at.some((value, i) => value !== theta[i])) {
+      const { levels, widths } = this.lawsAt(theta);
+      piece.tail.evaluate(levels, widths);
+      const f = this.factorOf(theta);
+      const { tiedEven, tiedOdd, heldEven, heldOdd } = piece.tail.columns;
+      for (let i = 0; i < piece.even.length; i++) {
+        piece.even[i] = f * tiedEven[i]! + heldEven[i]!;
+        piece.odd[i] = f * tiedOdd[i]! + heldOdd[i]!;
+      }
+      piece.at.set(theta);
+      piece.slopesFor = null;
+    }
+    return piece;
+  }
+
+  /** The same with its derivatives at this q. */
+  private tailWithSlopesAt(theta: Float64Array, q: number, row: number): TailPiece | null {
+    const piece = this.tailAt(theta, row);
+    if (piece === null || piece.slopesFor === q) return piece;
     const { levels, widths } = this.lawsAt(theta);
-    const f = this.factorOf(theta);
-    tail.evaluate(levels, widths, f, q, derivatives);
-    const { tiedEven, tiedOdd, heldEven, heldOdd } = tail.columns;
-    return {
-      even: tiedEven.map((value, i) => f * value + heldEven[i]!),
-      odd: tiedOdd.map((value, i) => f * value + heldOdd[i]!),
-    };
+    piece.tail.differentiate(levels, widths, this.factorOf(theta), q);
+    piece.slopesFor = q;
+    return piece;
   }
 
   /** C = sum share_j A_j, and the q of the tail: the shared one, or that of the lines by their shares. */
@@ -330,44 +361,56 @@ export class SpectrumProblem implements SeparableProblem {
     { first, end, ld, at }: Block,
     out: Float64Array,
   ): void {
-    const { tail, spec, layout } = this;
-    if (tail === null || spec.tail === null) return;
+    const { spec, layout } = this;
+    const piece = this.tailWithSlopesAt(theta, q, first);
+    if (piece === null || spec.tail === null) return;
     const k = spec.ns.length;
     const height = end - first;
-    const { tiedEven, tiedOdd, heldOdd, byLevel, byWidth } = tail.columns;
+    const from = first - piece.first;
+    const { tiedEven, tiedOdd, heldOdd, byLevel, byWidth } = piece.tail.columns;
     const f = this.factorOf(theta);
     if (layout.asymmetryAt >= 0) {
       const column = layout.asymmetryAt * ld + at;
       for (let i = 0; i < height; i++)
-        out[column + i]! += 2 * strength * (f * tiedOdd[first + i]! + heldOdd[first + i]!);
+        out[column + i]! += 2 * strength * (f * tiedOdd[from + i]! + heldOdd[from + i]!);
     }
     if (layout.factorAt >= 0) {
       const column = layout.factorAt * ld + at;
       for (let i = 0; i < height; i++)
-        out[column + i]! += strength * (tiedEven[first + i]! + 2 * q * tiedOdd[first + i]!);
+        out[column + i]! += strength * (tiedEven[from + i]! + 2 * q * tiedOdd[from + i]!);
     }
-    const add = (target: number, source: Float64Array, factor: number): void => {
-      if (factor === 0) return;
+    const add = (target: number, sources: readonly Float64Array[], factors: readonly number[]): void => {
       const column = target * ld + at;
-      for (let i = 0; i < height; i++) out[column + i]! += factor * source[first + i]!;
+      const [a = 0, b = 0, c = 0, d = 0] = factors;
+      const [x, y = x, z = x, w = x] = sources;
+      if (d === 0)
+        for (let i = 0; i < height; i++)
+          out[column + i]! += a * x![from + i]! + b * y![from + i]! + c * z![from + i]!;
+      else
+        for (let i = 0; i < height; i++)
+          out[column + i]! += a * x![from + i]! + b * y![from + i]! + (c * z![from + i]! + d * w![from + i]!);
     };
-    if (spec.tiedLevels !== null) for (let p = 0; p < layout.lawCount; p++) add(p, byLevel[p]!, strength);
-    else {
-      const { gain, parameters } = spec.tail.levelLink;
-      for (let j = 0; j < k; j++)
-        for (let p = 0; p < parameters; p++)
-          add(layout.energyAt[j]!, byLevel[p]!, strength * gain[p * k + j]!);
-    }
-    const { gain, parameters } = spec.tail.widthLink;
-    for (let j = 0; j < k; j++)
-      for (let p = 0; p < parameters; p++) add(layout.widthAt[j]!, byWidth[p]!, strength * gain[p * k + j]!);
+    if (spec.tiedLevels !== null) for (let p = 0; p < layout.lawCount; p++) add(p, [byLevel[p]!], [strength]);
+    const link = (target: Int32Array, { gain, parameters }: LawLink, by: readonly Float64Array[]): void => {
+      for (let j = 0; j < k; j++) {
+        const factors = Array.from({ length: parameters }, (_, p) => strength * gain[p * k + j]!);
+        if (factors.some((factor) => factor !== 0)) add(target[j]!, by, factors);
+      }
+    };
+    if (spec.tiedLevels === null) link(layout.energyAt, spec.tail.levelLink, byLevel);
+    link(layout.widthAt, spec.tail.widthLink, byWidth);
   }
 
   /** The tail alone for these parameters: C T. */
   tailCurve(theta: Float64Array, coefficients: Float64Array): Float64Array | null {
     const { strength, q } = this.tailStrength(theta, coefficients);
-    const column = this.tailColumns(theta, q, false);
-    return column === null ? null : column.even.map((even, i) => strength * (even + 2 * q * column.odd[i]!));
+    if (this.spec.tail === null) return null;
+    const out = new Float64Array(this.rows);
+    for (let i = 0; i < this.rows;) {
+      const { first, end, even, odd } = this.tailAt(theta, i)!;
+      for (; i < end; i++) out[i] = strength * (even[i - first]! + 2 * q * odd[i - first]!);
+    }
+    return out;
   }
 
   /** The level law at theta, where levels are tied to it. */
@@ -379,6 +422,18 @@ export class SpectrumProblem implements SeparableProblem {
     for (let p = 0; p < this.layout.lawCount; p++) value[p] = theta[p]!;
     return { gap: value[0]!, rydberg: value[1]!, defect0: value[2]!, defect2: value[3]!, defect4: 0 };
   }
+}
+
+/** The tail on a piece of the points, as it was last evaluated. */
+interface TailPiece {
+  readonly first: number;
+  readonly end: number;
+  readonly tail: TailEvaluator;
+  readonly even: Float64Array;
+  readonly odd: Float64Array;
+  /** theta of the values, and q of the derivatives where those are at hand. */
+  readonly at: Float64Array;
+  slopesFor: number | null;
 }
 
 /** Rows first <= i < end, as rows `at` and on of a matrix with leading dimension `ld`. */

@@ -1,5 +1,11 @@
 import { defectAt, LEVEL, levelLaw, strength, WIDTH, widthLaw, type LevelParameters } from "../laws/index.ts";
-import { continuumPair, linePairWithDerivatives, turnPair, type ContinuumOutputs } from "../lines/index.ts";
+import {
+  continuumPair,
+  linePair,
+  linePairWithDerivatives,
+  turnPair,
+  type ContinuumOutputs,
+} from "../lines/index.ts";
 import { addFromGrid, makeSparseGrid, type SparseGrid } from "./sparse-grid.ts";
 import type { FitPoints, LevelValues, TailSpec, WidthValues } from "./model-spec.ts";
 
@@ -25,8 +31,6 @@ export interface TailColumns {
   readonly byWidth: readonly Float64Array[];
 }
 
-type BandColumn = keyof Required<ContinuumOutputs>;
-
 const LEVEL_COUNT = 4;
 const WIDTH_COUNT = 3;
 const FAR_N = 1e6;
@@ -41,23 +45,43 @@ export class TailEvaluator {
   private readonly lorentz: number;
   private readonly partner: boolean;
   private readonly grid: SparseGrid;
-  private readonly scratch: Float64Array[];
-  private readonly sums: Float64Array[];
+  private readonly scratch: readonly [
+    Float64Array,
+    Float64Array,
+    Float64Array,
+    Float64Array,
+    Float64Array,
+    Float64Array,
+  ];
+  /** Tied lines with the band, and the band alone, on the nodes. */
+  private readonly values: Record<"even" | "odd" | "bandEven" | "bandOdd", Float64Array>;
+  /** Their derivatives by level and width laws. */
+  private readonly slopes: readonly Float64Array[];
   private readonly leastWidth: number;
   private readonly bands: readonly BandGroup[];
-  private readonly bandScratch: Record<BandColumn, Float64Array>;
+  private readonly continuum: Record<keyof Required<ContinuumOutputs>, Float64Array>;
+  /** The width law at infinite n. */
+  private readonly limit = new Float64Array(WIDTH.size);
 
   /**
    * `lorentz`: FWHM of a Lorentzian instrument, which adds to every width. `partner`: the change of the index that goes
-   * with the absorption, in its place (turnPair).
+   * with the absorption, in its place (turnPair). `leastWidth` (eV): of an edge, as leastEdgeWidth gives it for all points
+   * where these are some of them or stand for them.
    */
-  constructor(points: FitPoints, spec: TailSpec, gaussStd: number, lorentz = 0, partner = false) {
+  constructor(
+    points: FitPoints,
+    spec: TailSpec,
+    gaussStd: number,
+    lorentz = 0,
+    partner = false,
+    leastWidth = leastEdgeWidth(points.energy, spec.levels.gap),
+  ) {
     this.points = points;
     this.spec = spec;
     this.gaussStd = gaussStd;
     this.lorentz = lorentz;
     this.partner = partner;
-    this.leastWidth = Math.max(LEAST_WIDTH, 0.5 * stepAt(points.energy, spec.levels.gap));
+    this.leastWidth = leastWidth;
     this.bands = spec.band ? groupBands(spec) : [];
     const m = points.energy.length;
     const { gap, rydberg, defect0 } = spec.levels;
@@ -69,10 +93,11 @@ export class TailEvaluator {
       1.5 * (gap - low) + 30 * (spec.widths.floor + lorentz),
     );
     const nodes = this.grid.nodes.length;
-    this.scratch = Array.from({ length: 6 }, () => new Float64Array(nodes));
-    this.sums = Array.from({ length: 2 + LEVEL_COUNT + WIDTH_COUNT }, () => new Float64Array(nodes));
     const node = (): Float64Array => new Float64Array(nodes);
-    this.bandScratch = {
+    this.scratch = [node(), node(), node(), node(), node(), node()];
+    this.values = { even: node(), odd: node(), bandEven: node(), bandOdd: node() };
+    this.slopes = Array.from({ length: LEVEL_COUNT + WIDTH_COUNT }, node);
+    this.continuum = {
       absorptive: node(),
       dispersive: node(),
       absorptiveByGap: node(),
@@ -93,97 +118,108 @@ export class TailEvaluator {
     };
   }
 
-  /** Fills `columns`; the derivatives only where asked for. */
-  evaluate(levels: LevelValues, widths: WidthValues, factor: number, q: number, derivatives: boolean): void {
-    const { spec, columns, sums } = this;
-    for (const column of [columns.tiedEven, columns.tiedOdd, columns.heldEven, columns.heldOdd])
-      column.fill(0);
-    for (const column of [...columns.byLevel, ...columns.byWidth]) column.fill(0);
-    for (const sum of sums) sum.fill(0);
+  /** Fills the values among `columns`. */
+  evaluate(levels: LevelValues, widths: WidthValues): void {
+    const { spec, columns, grid, values, scratch } = this;
+    const { tiedEven, tiedOdd, heldEven, heldOdd } = columns;
+    for (const column of [tiedEven, tiedOdd, heldEven, heldOdd]) column.fill(0);
     const law = { ...levels, defect4: 0 };
-    for (let n = spec.fromN; n <= spec.toN; n++)
-      this.addLine(n, law, widths, factor, q, derivatives, this.grid.nodes);
-    this.addBand(law, widths, factor, q, derivatives);
-    addFromGrid(this.grid, sums[0]!, 1, columns.tiedEven);
-    addFromGrid(this.grid, sums[1]!, 1, columns.tiedOdd);
-    if (derivatives) {
-      for (let i = 0; i < LEVEL_COUNT; i++) addFromGrid(this.grid, sums[2 + i]!, 1, columns.byLevel[i]!);
-      for (let i = 0; i < WIDTH_COUNT; i++)
-        addFromGrid(this.grid, sums[2 + LEVEL_COUNT + i]!, 1, columns.byWidth[i]!);
+    const { even, odd, bandEven, bandOdd } = values;
+    this.addBand(law, widths);
+    even.set(bandEven);
+    odd.set(bandOdd);
+    const [l, d] = scratch;
+    for (let n = spec.fromN; n <= spec.toN; n++) {
+      const s = tiedStrength(n, spec);
+      const { energy, width } = this.place(n, law, widths);
+      linePair(grid.nodes, 0, grid.nodes.length, energy, width, this.gaussStd, l, d);
+      this.turn([l, d]);
+      for (let i = 0; i < even.length; i++) {
+        even[i]! += s * l[i]!;
+        odd[i]! += s * d[i]!;
+      }
     }
-    this.addBelow(law, widths, q, derivatives);
-    this.addContinuum(law, widths, q, derivatives);
+    addFromGrid(grid, even, 1, tiedEven);
+    addFromGrid(grid, odd, 1, tiedOdd);
+    for (const n of spec.below) {
+      const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
+      const { energy, width } = this.place(n, law, widths);
+      this.onPoints((energies, first, end) => {
+        linePair(energies, first, end, energy, width, this.gaussStd, l, d, -first);
+        this.turn([l, d]);
+        for (let i = first; i < end; i++) {
+          heldEven[i]! += s * l[i - first]!;
+          heldOdd[i]! += s * d[i - first]!;
+        }
+      });
+    }
+    this.addContinuum(law, widths);
   }
 
-  private addLine(
+  /** Fills d T/d p for this f and q, at the laws of the last `evaluate`. */
+  differentiate(levels: LevelValues, widths: WidthValues, factor: number, q: number): void {
+    const { spec, columns, grid, slopes, scratch } = this;
+    for (const column of [...columns.byLevel, ...columns.byWidth, ...slopes]) column.fill(0);
+    const law = { ...levels, defect4: 0 };
+    const [l, d, lE, lG, dE, dG] = scratch;
+    for (let n = spec.fromN; n <= spec.toN; n++) {
+      const s = factor * tiedStrength(n, spec);
+      const { energy, width, level, widthSlopes } = this.place(n, law, widths);
+      const { nodes } = grid;
+      const std = this.gaussStd;
+      linePairWithDerivatives(nodes, 0, nodes.length, energy, width, std, l, d, lE, lG, dE, dG);
+      this.turn([lE, dE], [lG, dG]);
+      for (let i = 0; i < nodes.length; i++) {
+        lE[i] = s * (lE[i]! + 2 * q * dE[i]!);
+        lG[i] = s * (lG[i]! + 2 * q * dG[i]!);
+      }
+      for (let p = 0; p < LEVEL_COUNT; p++) addTimes(slopes[p]!, 0, lE, level[1 + p]!, nodes.length);
+      for (let p = 0; p < WIDTH_COUNT; p++)
+        addTimes(slopes[LEVEL_COUNT + p]!, 0, lG, widthSlopes[1 + p]!, nodes.length);
+    }
+    this.differentiateBand(law, widths, factor, q);
+    for (let i = 0; i < LEVEL_COUNT; i++) addFromGrid(grid, slopes[i]!, 1, columns.byLevel[i]!);
+    for (let i = 0; i < WIDTH_COUNT; i++) addFromGrid(grid, slopes[LEVEL_COUNT + i]!, 1, columns.byWidth[i]!);
+    for (const n of spec.below) {
+      const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
+      const { energy, width, level, widthSlopes } = this.place(n, law, widths);
+      this.onPoints((energies, first, end) => {
+        const std = this.gaussStd;
+        linePairWithDerivatives(energies, first, end, energy, width, std, l, d, lE, lG, dE, dG, -first);
+        this.turn([lE, dE], [lG, dG]);
+        const height = end - first;
+        for (let i = 0; i < height; i++) {
+          lE[i] = s * (lE[i]! + 2 * q * dE[i]!);
+          lG[i] = s * (lG[i]! + 2 * q * dG[i]!);
+        }
+        for (let p = 0; p < LEVEL_COUNT; p++) addTimes(columns.byLevel[p]!, first, lE, level[1 + p]!, height);
+        for (let p = 0; p < WIDTH_COUNT; p++)
+          addTimes(columns.byWidth[p]!, first, lG, widthSlopes[1 + p]!, height);
+      });
+    }
+    this.differentiateContinuum(q);
+  }
+
+  /** Energy and width of line n, with the laws' slopes. */
+  private place(
     n: number,
     law: LevelParameters,
     widths: WidthValues,
-    factor: number,
-    q: number,
-    derivatives: boolean,
-    energies: Float64Array,
-  ): void {
-    const { sums, spec } = this;
-    const s = tiedStrength(n, spec);
-    const place = this.pair(n, law, widths, energies);
-    const [l, d, lE, lG, dE, dG] = this.scratch as [
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-    ];
-    const even = sums[0]!;
-    const odd = sums[1]!;
-    for (let i = 0; i < energies.length; i++) {
-      even[i]! += s * l[i]!;
-      odd[i]! += s * d[i]!;
-    }
-    if (!derivatives) return;
-    for (let i = 0; i < energies.length; i++) {
-      const byE = factor * s * (lE[i]! + 2 * q * dE[i]!);
-      const byG = factor * s * (lG[i]! + 2 * q * dG[i]!);
-      for (let p = 0; p < LEVEL_COUNT; p++) sums[2 + p]![i]! += byE * place.level[1 + p]!;
-      for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byG * place.width[1 + p]!;
-    }
-  }
-
-  private pair(
-    n: number,
-    law: LevelParameters,
-    widths: WidthValues,
-    energies: Float64Array,
-  ): { level: Float64Array; width: Float64Array } {
+  ): { energy: number; width: number; level: Float64Array; widthSlopes: Float64Array } {
     const level = new Float64Array(LEVEL.size);
-    const width = new Float64Array(WIDTH.size);
+    const widthSlopes = new Float64Array(WIDTH.size);
     levelLaw(n, law, level);
-    widthLaw(n, this.spec.levels.defect0, widths, width);
-    const [l, d, lE, lG, dE, dG] = this.scratch as [
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-    ];
-    linePairWithDerivatives(
-      energies,
-      0,
-      energies.length,
-      level[LEVEL.energy]!,
-      width[WIDTH.width]! + this.lorentz,
-      this.gaussStd,
-      l,
-      d,
-      lE,
-      lG,
-      dE,
-      dG,
-    );
-    this.turn([l, d], [lE, dE], [lG, dG]);
-    return { level, width };
+    widthLaw(n, this.spec.levels.defect0, widths, widthSlopes);
+    const width = widthSlopes[WIDTH.width]! + this.lorentz;
+    return { energy: level[LEVEL.energy]!, width, level, widthSlopes };
+  }
+
+  /** All points, in blocks that the scratch columns hold. */
+  private onPoints(use: (energies: Float64Array, first: number, end: number) => void): void {
+    const { energy } = this.points;
+    const block = this.scratch[0].length;
+    for (let first = 0; first < energy.length; first += block)
+      use(energy, first, Math.min(energy.length, first + block));
   }
 
   private turn(...pairs: readonly (readonly [Float64Array, Float64Array])[]): void {
@@ -196,64 +232,89 @@ export class TailEvaluator {
    * those of lines do.
    *   L = h [atan((E-E_c)/g) - atan((E-E_d)/g)]/(2 pi Ry),  D = h ln{[(E-E_c)^2 + g^2]/[(E-E_d)^2 + g^2]}/(4 pi Ry)
    */
-  private addBand(
-    law: LevelParameters,
-    widths: WidthValues,
-    factor: number,
-    q: number,
-    derivatives: boolean,
-  ): void {
-    const { sums, spec, partner } = this;
-    const nodes = this.grid.nodes;
+  private addBand(law: LevelParameters, widths: WidthValues): void {
+    const { values, partner, grid } = this;
+    const { nodes } = grid;
+    const { bandEven, bandOdd } = values;
+    bandEven.fill(0);
+    bandOdd.fill(0);
+    for (const group of this.bands) {
+      const { low, high, g, perAngle } = this.placeBand(group, law, widths);
+      for (let i = 0; i < nodes.length; i++) {
+        const a = nodes[i]! - low;
+        const b = nodes[i]! - high;
+        // The difference of angles as one angle, and of logarithms as one, so that far wings do not cancel.
+        const l = perAngle * Math.atan2(g * (a - b), g * g + a * b);
+        const d = 0.5 * perAngle * Math.log1p(((a - b) * (a + b)) / (b * b + g * g));
+        bandEven[i]! += partner ? -d : l;
+        bandOdd[i]! += partner ? l : d;
+      }
+    }
+  }
+
+  private differentiateBand(law: LevelParameters, widths: WidthValues, factor: number, q: number): void {
+    const { slopes, values, partner, grid, scratch } = this;
+    const { nodes } = grid;
     const ofL = partner ? 2 * q : 1;
     const ofD = partner ? -1 : 2 * q;
-    const bottom = new Float64Array(LEVEL.size);
-    const top = new Float64Array(LEVEL.size);
-    const width = new Float64Array(WIDTH.size);
-    for (const { edgeN, upperN, middleN, height } of this.bands) {
-      levelLaw(edgeN, law, bottom);
-      levelLaw(upperN, law, top);
-      widthLaw(middleN, spec.levels.defect0, widths, width);
-      const lawWidth = Math.max(0, width[WIDTH.width]!) + this.lorentz;
-      const g = this.edgeWidth(lawWidth) / 2;
-      const slope = this.edgeSlope(lawWidth) / 2;
-      const low = bottom[LEVEL.energy]!;
-      const high = top[LEVEL.energy]!;
-      const perAngle = height / (2 * Math.PI * law.rydberg);
+    const [byLow, byHigh, byWidth] = scratch;
+    for (const group of this.bands) {
+      const { low, high, g, perAngle, slope, bottom, top, width } = this.placeBand(group, law, widths);
+      const scale = factor * perAngle;
       for (let i = 0; i < nodes.length; i++) {
         const a = nodes[i]! - low;
         const b = nodes[i]! - high;
         const below = 1 / (a * a + g * g);
         const above = 1 / (b * b + g * g);
-        // The difference of angles as one angle, and of logarithms as one, so that far wings do not cancel.
-        const l = perAngle * Math.atan2(g * (a - b), g * g + a * b);
-        const d = 0.5 * perAngle * Math.log1p((a - b) * (a + b) * above);
-        const even = partner ? -d : l;
-        const odd = partner ? l : d;
-        sums[0]![i]! += even;
-        sums[1]![i]! += odd;
-        if (!derivatives) continue;
-        const scale = factor * perAngle;
-        const byLow = -scale * (ofL * g + ofD * a) * below;
-        const byHigh = scale * (ofL * g + ofD * b) * above;
-        for (let p = 0; p < LEVEL_COUNT; p++)
-          sums[2 + p]![i]! += byLow * bottom[1 + p]! + byHigh * top[1 + p]!;
-        sums[3]![i]! -= (factor * (even + 2 * q * odd)) / law.rydberg;
-        const byWidth = slope * scale * (ofL * (b * above - a * below) + ofD * g * (below - above));
-        for (let p = 0; p < WIDTH_COUNT; p++) sums[2 + LEVEL_COUNT + p]![i]! += byWidth * width[1 + p]!;
+        byLow[i] = -scale * (ofL * g + ofD * a) * below;
+        byHigh[i] = scale * (ofL * g + ofD * b) * above;
+        byWidth[i] = slope * scale * (ofL * (b * above - a * below) + ofD * g * (below - above));
       }
+      for (let p = 0; p < LEVEL_COUNT; p++) {
+        addTimes(slopes[p]!, 0, byLow, bottom[1 + p]!, nodes.length);
+        addTimes(slopes[p]!, 0, byHigh, top[1 + p]!, nodes.length);
+      }
+      for (let p = 0; p < WIDTH_COUNT; p++)
+        addTimes(slopes[LEVEL_COUNT + p]!, 0, byWidth, width[1 + p]!, nodes.length);
     }
+    const { bandEven, bandOdd } = values;
+    const byRydberg = slopes[1]!;
+    for (let i = 0; i < nodes.length; i++)
+      byRydberg[i]! -= (factor * (bandEven[i]! + 2 * q * bandOdd[i]!)) / law.rydberg;
   }
 
-  /** The continuum, its edge as broad as the width law's limit at infinite n. */
-  private addContinuum(law: LevelParameters, widths: WidthValues, q: number, derivatives: boolean): void {
-    const { columns, spec, bandScratch: out, grid } = this;
-    if (spec.continuum === false) return;
-    const nodes = grid.nodes;
+  /** Edges of a group, half the width of both with its slope by the law's width, and its height by angle. */
+  private placeBand(
+    { edgeN, upperN, middleN, height }: BandGroup,
+    law: LevelParameters,
+    widths: WidthValues,
+  ): PlacedBand {
+    const bottom = new Float64Array(LEVEL.size);
+    const top = new Float64Array(LEVEL.size);
     const width = new Float64Array(WIDTH.size);
-    widthLaw(FAR_N, spec.levels.defect0, widths, width);
-    const limit = Math.max(0, width[WIDTH.width]!) + this.lorentz;
-    continuumPair(nodes, 0, nodes.length, law.gap, law.rydberg, spec.envelope, this.edgeWidth(limit), out);
+    levelLaw(edgeN, law, bottom);
+    levelLaw(upperN, law, top);
+    widthLaw(middleN, this.spec.levels.defect0, widths, width);
+    const lawWidth = Math.max(0, width[WIDTH.width]!) + this.lorentz;
+    return {
+      low: bottom[LEVEL.energy]!,
+      high: top[LEVEL.energy]!,
+      g: this.edgeWidth(lawWidth) / 2,
+      slope: this.edgeSlope(lawWidth) / 2,
+      perAngle: height / (2 * Math.PI * law.rydberg),
+      bottom,
+      top,
+      width,
+    };
+  }
+
+  /** The continuum, its edge as broad as the width law's limit at infinite n; its derivatives are kept. */
+  private addContinuum(law: LevelParameters, widths: WidthValues): void {
+    const { columns, spec, continuum: out, grid, limit } = this;
+    const { nodes } = grid;
+    widthLaw(FAR_N, spec.levels.defect0, widths, limit);
+    const width = Math.max(0, limit[WIDTH.width]!) + this.lorentz;
+    continuumPair(nodes, 0, nodes.length, law.gap, law.rydberg, spec.envelope, this.edgeWidth(width), out);
     this.turn(
       [out.absorptive, out.dispersive],
       [out.absorptiveByGap, out.dispersiveByGap],
@@ -262,15 +323,18 @@ export class TailEvaluator {
     );
     addFromGrid(grid, out.absorptive, 1, columns.heldEven);
     if (spec.continuumOdd) addFromGrid(grid, out.dispersive, 1, columns.heldOdd);
-    if (!derivatives) return;
+  }
+
+  private differentiateContinuum(q: number): void {
+    const { columns, spec, continuum: out, grid, limit } = this;
     const odd = spec.continuumOdd ? 2 * q : 0;
     addFromGrid(grid, out.absorptiveByGap, 1, columns.byLevel[0]!);
     addFromGrid(grid, out.dispersiveByGap, odd, columns.byLevel[0]!);
     addFromGrid(grid, out.absorptiveByRydberg, 1, columns.byLevel[1]!);
     addFromGrid(grid, out.dispersiveByRydberg, odd, columns.byLevel[1]!);
-    const slope = this.edgeSlope(limit);
+    const slope = this.edgeSlope(Math.max(0, limit[WIDTH.width]!) + this.lorentz);
     for (let p = 0; p < WIDTH_COUNT; p++) {
-      const factor = slope * width[1 + p]!;
+      const factor = slope * limit[1 + p]!;
       if (factor === 0) continue;
       addFromGrid(grid, out.absorptiveByBroadening, factor, columns.byWidth[p]!);
       addFromGrid(grid, out.dispersiveByBroadening, factor * odd, columns.byWidth[p]!);
@@ -289,51 +353,6 @@ export class TailEvaluator {
     return 0.5346 * w + Math.sqrt(0.2166 * w * w + gauss * gauss);
   }
 
-  private addBelow(law: LevelParameters, widths: WidthValues, q: number, derivatives: boolean): void {
-    const { columns, spec, points } = this;
-    if (spec.below.length === 0) return;
-    const m = points.energy.length;
-    const [l, d, lE, lG, dE, dG] = Array.from({ length: 6 }, () => new Float64Array(m)) as [
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-      Float64Array,
-    ];
-    for (const n of spec.below) {
-      const s = strength(n, spec.levels.defect0, spec.strength.law, spec.strength.base);
-      const level = new Float64Array(LEVEL.size);
-      const width = new Float64Array(WIDTH.size);
-      levelLaw(n, law, level);
-      widthLaw(n, spec.levels.defect0, widths, width);
-      linePairWithDerivatives(
-        points.energy,
-        0,
-        m,
-        level[LEVEL.energy]!,
-        width[WIDTH.width]! + this.lorentz,
-        this.gaussStd,
-        l,
-        d,
-        lE,
-        lG,
-        dE,
-        dG,
-      );
-      this.turn([l, d], [lE, dE], [lG, dG]);
-      for (let i = 0; i < m; i++) {
-        columns.heldEven[i]! += s * l[i]!;
-        columns.heldOdd[i]! += s * d[i]!;
-        if (!derivatives) continue;
-        const byE = s * (lE[i]! + 2 * q * dE[i]!);
-        const byG = s * (lG[i]! + 2 * q * dG[i]!);
-        for (let p = 0; p < LEVEL_COUNT; p++) columns.byLevel[p]![i]! += byE * level[1 + p]!;
-        for (let p = 0; p < WIDTH_COUNT; p++) columns.byWidth[p]![i]! += byG * width[1 + p]!;
-      }
-    }
-  }
-
   /** d(edgeWidth)/d width. */
   private edgeSlope(width: number): number {
     const w = Math.hypot(width, this.leastWidth);
@@ -342,6 +361,23 @@ export class TailEvaluator {
     const gauss = FWHM_OF_STD * this.gaussStd;
     return (0.5346 + (0.2166 * w) / Math.sqrt(0.2166 * w * w + gauss * gauss)) * inner;
   }
+}
+
+interface PlacedBand {
+  readonly low: number;
+  readonly high: number;
+  readonly g: number;
+  readonly slope: number;
+  readonly perAngle: number;
+  readonly bottom: Float64Array;
+  readonly top: Float64Array;
+  readonly width: Float64Array;
+}
+
+/** out_i += factor x_i for i < count, out from place `at`. */
+function addTimes(out: Float64Array, at: number, x: Float64Array, factor: number, count: number): void {
+  if (factor === 0) return;
+  for (let i = 0; i < count; i++) out[at + i]! += factor * x[i]!;
 }
 
 /** A group of lines that run together. */
@@ -391,6 +427,11 @@ export function groupBands(spec: TailSpec): BandGroup[] {
     groups.push({ edgeN, upperN, middleN, height });
     low = high;
   }
+}
+
+/** Half a sampling step at the gap, eV: an edge cannot be placed between two points. */
+export function leastEdgeWidth(energy: Float64Array, gap: number): number {
+  return Math.max(LEAST_WIDTH, 0.5 * stepAt(energy, gap));
 }
 
 /** Sampling step where an energy lies, or at the nearer end of the points. */

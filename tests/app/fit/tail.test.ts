@@ -44,7 +44,7 @@ test.each([
       factor: 1,
     };
     const tail = new TailEvaluator({ energy, signal: energy, sigma: energy }, spec, 0);
-    tail.evaluate(spec.levels, spec.widths, 1, series.asymmetry, false);
+    tail.evaluate(spec.levels, spec.widths);
     const lines = new Float64Array(energy.length);
     for (let n = fromN; n <= 400; n++)
       addLine(energy, energyOf(series, n), widthOf(series, n), strengthOf(law, n), series.asymmetry, lines);
