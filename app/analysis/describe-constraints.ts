@@ -3,6 +3,7 @@ import type { ConstrainedParts, FittedValue, LineParameterName, SpectrumFit } fr
 import type { Protocol, RunglineResult } from "../protocol/index.ts";
 import { chiSquareSurvival } from "../solve/index.ts";
 import type { FullFit } from "./fit-full.ts";
+import type { ProfileEnds } from "./spectrum-profile.ts";
 
 const NAMES: readonly LineParameterName[] = ["energy", "width", "area", "asymmetry"];
 const KEYS = { energy: "energy_eV", width: "width_eV", area: "area", asymmetry: "asymmetry" } as const;
@@ -36,6 +37,7 @@ export function tiedWidthLaw(
   parts: ConstrainedParts | undefined,
   base: string,
   factor: number,
+  exponentProfile: ProfileEnds | null,
 ): RunglineResult["width_law"] {
   const law = parts?.widthLaw ?? null;
   if (law === null) return null;
@@ -44,13 +46,18 @@ export function tiedWidthLaw(
   return {
     floor_eV: at(0),
     coefficient_eV: at(1),
-    exponent: at(2),
+    exponent: withEnds(at(2), exponentProfile),
     base,
     fit_n: [law.ns[0]!, law.ns[law.ns.length - 1]!],
     chi2: null,
     dof: 0,
     p: null,
   };
+}
+
+function withEnds(plain: Quantity, ends: ProfileEnds | null): Quantity {
+  if (ends === null || ends.low === null || ends.high === null) return plain;
+  return { ...plain, low: ends.low, high: ends.high };
 }
 
 export function tiedStrengthLaw(

@@ -42,6 +42,7 @@ import type { FullFit } from "./fit-full.ts";
 import { intervalFactor } from "./interval.ts";
 import { covarianceBlock, determinedPlaces, levelInput } from "./level-range.ts";
 import type { SelectedPoints } from "./select-points.ts";
+import { profileSpectrum, type SpectrumProfile } from "./spectrum-profile.ts";
 import { judgeSystematics, systematicNotes } from "./systematics.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 
@@ -135,7 +136,10 @@ export function describeResult(
       strength_per_cm3: unlessEnded(derived.strength_per_cm3, "area"),
     };
   });
-  const laws = describeLaws(full, protocol, factor);
+  const profile = protocol.uncertainty.profile
+    ? profileSpectrum(points, full, protocol, spectrum.unit, watch)
+    : null;
+  const laws = describeLaws(full, protocol, factor, profile);
   stopIfCancelled(watch);
   const systematic =
     protocol.uncertainty.systematic && range !== null
@@ -256,7 +260,12 @@ interface DescribedLaws {
 }
 
 /** Level, width and strength laws on the parameters of the lines. */
-function describeLaws(full: FullFit, protocol: Protocol, factor: number): DescribedLaws {
+function describeLaws(
+  full: FullFit,
+  protocol: Protocol,
+  factor: number,
+  spectrumProfile: SpectrumProfile | null,
+): DescribedLaws {
   const { range } = full;
   // Lines that are tied to a law cannot judge it: those of the fit before do.
   const fit = full.untied ?? full.fit;
@@ -308,11 +317,18 @@ function describeLaws(full: FullFit, protocol: Protocol, factor: number): Descri
       strengths: strengthInput,
     });
     const input = levelInput(full.fit, protocol);
-    // Tied levels come from the spectrum fit itself; their profile would need that fit again for every value.
-    const profile =
-      protocol.uncertainty.profile && protocol.series.mode === "free" && input !== null
-        ? profileLevels(input, range.fit, factor)
-        : undefined;
+    // Tied levels come from the spectrum fit itself, and so do their intervals.
+    const profile = !protocol.uncertainty.profile
+      ? undefined
+      : protocol.series.mode === "tied"
+        ? {
+            gap_eV: spectrumProfile?.gap_eV,
+            rydberg_eV: spectrumProfile?.rydberg_eV,
+            defect0: spectrumProfile?.defect0,
+          }
+        : input === null
+          ? undefined
+          : profileLevels(input, range.fit, factor);
     series = seriesToResult(range, readings, factor, profile);
     notes.push(...range.notes, ...readings.notes);
   }
@@ -321,7 +337,7 @@ function describeLaws(full: FullFit, protocol: Protocol, factor: number): Descri
   return {
     series,
     width:
-      tiedWidthLaw(full.fit.constrained, protocol.width.base, factor) ??
+      tiedWidthLaw(full.fit.constrained, protocol.width.base, factor, spectrumProfile?.exponent ?? null) ??
       (widths.ok ? widthsToResult(widths.value, protocol.width.base, factor) : null),
     strength:
       tiedStrengthLaw(full.fit.constrained, protocol.strength, factor) ??

@@ -4,6 +4,7 @@ export * from "./constraint-spec.ts";
 export type { ConstrainedParts, ExtraFit, FittedValue, LimitedParameter } from "./describe-constrained.ts";
 export { ConstrainedProblem } from "./constrained-problem.ts";
 export * from "./joint-fit.ts";
+export { setUpFit } from "./set-up-fit.ts";
 export { withCorrelatedErrors } from "./correlated-errors.ts";
 export { SpectrumProblem } from "./spectrum-problem.ts";
 export { backgroundColumns } from "./background-columns.ts";

@@ -258,6 +258,8 @@ export const resultSchema = z.strictObject({
       floor_eV: quantitySchema,
       coefficient_eV: quantitySchema,
       exponent: quantitySchema,
+      /** Where the exponent is held: what it is when it is freed, with its profile interval; a test of the held one. */
+      free_exponent: quantitySchema.optional(),
       base: z.string(),
       fit_n: z.tuple([z.int(), z.int()]),
       chi2: number,

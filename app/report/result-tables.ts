@@ -134,6 +134,9 @@ function lawsTable(result: RunglineResult): DataTable | null {
         words(`base ${width.base}`),
       ],
       [words("width exponent"), measured(width.exponent, 1, ""), words("")],
+      ...(width.free_exponent === undefined
+        ? []
+        : [[words("width exponent set free"), measured(width.free_exponent, 1, ""), words("a test")]]),
     );
   if (strength !== null)
     rows.push(

@@ -138,6 +138,8 @@ function resultRows(result: RunglineResult): string {
     row("width_law", "floor", null, width_law.floor_eV, "eV");
     row("width_law", "coefficient", null, width_law.coefficient_eV, "eV", `base ${width_law.base}`);
     row("width_law", "exponent", null, width_law.exponent, "");
+    if (width_law.free_exponent !== undefined)
+      row("width_law", "free_exponent", null, width_law.free_exponent, "", "set free as a test");
     number("width_law", "chi2", width_law.chi2);
     number("width_law", "dof", width_law.dof);
     number("width_law", "p", width_law.p);

@@ -301,12 +301,21 @@ function widthPart(result: RunglineResult): string[] {
           held(law.floor_eV, MICROELECTRONVOLT),
         ],
         ["coefficient G_1", held(law.coefficient_eV, energyUnit(law.coefficient_eV.value))],
-        ["exponent k", pure(law.exponent)],
+        ["exponent k", exponentWithEnds(law.exponent)],
+        ...(law.free_exponent === undefined
+          ? []
+          : [["exponent set free, as a test", exponentWithEnds(law.free_exponent)]]),
       ],
       ["left", "left"],
     ),
     lawChi2InWords(law),
   ];
+}
+
+/** The interval beside the value: its ends are those of the profile where one was made. */
+function exponentWithEnds(exponent: Quantity): string {
+  const known = exponent.sigma !== null && exponent.sigma > 0 && exponent.low !== null;
+  return known ? `${pure(exponent)}, interval ${interval(exponent, PURE)}` : pure(exponent);
 }
 
 function held(quantity: Quantity, unit: EnergyUnit): string {

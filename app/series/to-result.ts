@@ -20,11 +20,12 @@ function quantityOf(
   i: number,
   factor: number,
   scale = 1,
-  interval?: { readonly low: number | null; readonly high: number | null },
+  interval?: { readonly low: number | null; readonly high: number | null } | null,
 ): Quantity {
   const sigma = scale * Math.sqrt(estimates.covariance[i * estimates.values.length + i]!);
   const plain = symmetric(estimates.values[i]!, sigma, factor);
-  if (interval === undefined || interval.low === null || interval.high === null) return plain;
+  if (interval === undefined || interval === null || interval.low === null || interval.high === null)
+    return plain;
   return { ...plain, low: interval.low, high: interval.high };
 }
 
@@ -33,7 +34,7 @@ export function seriesToResult(
   choice: RangeChoice,
   readings: Readings,
   factor = 1,
-  profile?: LevelProfile,
+  profile?: Partial<{ readonly [K in keyof LevelProfile]: LevelProfile[K] | null | undefined }>,
 ): SeriesPart {
   const { fit } = choice;
   const { estimates } = fit;
@@ -94,7 +95,16 @@ export function widthsToResult(fit: WidthFit, base: string, factor = 1): WidthPa
     chi2: fit.chi2,
     dof: fit.degreesOfFreedom,
     p: fit.degreesOfFreedom > 0 ? fit.p : null,
+    ...(free || exponentTest === null ? {} : { free_exponent: freeExponent(exponentTest, factor) }),
   };
+}
+
+function freeExponent(
+  { value, sigma, low, high }: NonNullable<WidthFit["exponentTest"]>,
+  factor: number,
+): Quantity {
+  const plain = symmetric(value, sigma, factor);
+  return low === null || high === null ? plain : { ...plain, low, high };
 }
 
 /** The `strength_law` part of a result. */
