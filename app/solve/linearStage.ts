@@ -17,7 +17,7 @@ const SPENT = 1e-12;
 const MOST_TURNS = 5;
 
 /** Below this much work the orthogonal path costs nothing worth saving. */
-const SMALL_WORK = 20_000;
+const SMALL_WORK = 4_000;
 
 /**
  * What      min over c of |t - Phi c|: coefficients and residual, for one matrix after another of the same shape.

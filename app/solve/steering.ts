@@ -13,7 +13,7 @@ const NORMAL_LIMIT = 1e-10;
 const FACTOR_ERROR = 64 * 2 ** -52;
 
 /** rows x columns^2 below which the orthogonal path costs nothing worth saving. */
-const SMALL_WORK = 1_000_000;
+const SMALL_WORK = 100_000;
 
 /**
  * What      The matrix that steers the step: J'J = D'D - D'Phi (Phi'Phi)^-1 Phi'D (a Schur complement of blocked normal
