@@ -283,6 +283,7 @@ function TemperatureTools({ comparison, shown, onRun, onWidth }: TemperatureTool
         {keys.flatMap((series) =>
           lawsInOrder(series).map(({ law }, k) => (
             <li key={`${series.quantity} ${law}`}>
+              {k === 0 && <strong>{series.quantity === "gap_eV" ? "Gap" : "Width"} </strong>}
               <svg width="22" height="8" aria-hidden="true">
                 <line
                   x1="0"

@@ -170,7 +170,7 @@ function SampleName({ row: { sample, i }, look, onOpen }: NameProps) {
       >
         {sample.sample}
       </button>
-      {sample.results.length > 1 && <span className="small">{sample.results.length} measurements</span>}
+      {sample.results.length > 1 && <span className="small">{sample.results.length} results</span>}
     </span>
   );
 }

@@ -23,21 +23,63 @@ const CARD: CardText = {
   improve: "power series of more crystals of a batch; a better known spot and power",
 };
 
+const DIFFERENCE: CardText = {
+  definition:
+    "What two batches differ by: the ratio of their means where errors are factors, else the difference. Seen where its corrected probability is below the chosen chance of a false one.",
+  formula: "x̄_2/x̄_1, p corrected over all pairs",
+  source: "Holm, Scand. J. Stat. 6, 65 (1979)",
+  improve: "power series of more crystals of a batch",
+};
+/** The ledger keeps to one page; the record has all. */
+const MOST_PAIRS = 3;
+
 /** Means of the batches and what the tests say, for each compared number. */
 export function powerComparisonLedger(power: ComparedPower): readonly LedgerSection[] {
   return power.parts.map((part): LedgerSection => {
-    const pairs = part.shifts.length > 0 ? part.shifts : part.pairs;
+    const pairs = [...(part.shifts.length > 0 ? part.shifts : part.pairs)].sort(
+      (a, b) => (a.p ?? 2) - (b.p ?? 2),
+    );
     return {
       title: powerPartTitle(part),
-      entries: part.batches.map((batch) => entry(part, power, batch)),
+      entries: [
+        ...part.batches.map((batch) => entry(part, power, batch)),
+        ...pairs.slice(0, MOST_PAIRS).map((pair) => difference(part, power, pair)),
+      ],
       remark: [
         ...(part.batches.length === 0 ? ["no series has it"] : []),
-        ...pairs.slice(0, 3).map((pair) => powerPairInWords(part, pair)),
-        ...(pairs.length > 3 ? [`${pairs.length - 3} more pairs in the record`] : []),
-        ...(part.within.tau === null ? [] : [`scatter in batches ${powerScatterInWords(part, part.within)}`]),
+        ...(part.within.tau === null
+          ? []
+          : [`scatter in batches: ${powerScatterInWords(part, part.within)}`]),
+        ...(pairs.length > MOST_PAIRS ? [`${pairs.length - MOST_PAIRS} more pairs in the record`] : []),
       ].join("; "),
     };
   });
+}
+
+function difference(
+  part: ComparedPowerPart,
+  { notes }: ComparedPower,
+  pair: ComparedPowerPart["pairs"][number],
+): LedgerEntry {
+  const chance = (p: number | null): string =>
+    p === null ? "not determined" : p < 1e-4 ? "< 0.0001" : formatNumber(p, 2);
+  return {
+    id: `power-${part.name}-${pair.first}-${pair.second}`,
+    symbol: { letter: part.logarithmic ? "r" : "Δ" },
+    name: `${pair.second}${part.logarithmic ? "/" : " − "}${pair.first}${pair.seen ? "" : ": not seen"}`,
+    quantity: part.logarithmic ? NOT_DETERMINED : pair.difference,
+    ...(part.logarithmic && { plain: factorText(pair.difference) }),
+    unit: "",
+    scale: 1,
+    notes: notesAbout(notes, `power.${part.name}`),
+    card: DIFFERENCE,
+    correlations: [],
+    table: {
+      caption: "The test",
+      head: ["p", "corrected", part.logarithmic ? "factor that could be seen" : "could be seen"],
+      rows: [[chance(pair.p), chance(pair.p_corrected), formatNumber(pair.detectable, 3)]],
+    },
+  };
 }
 
 function entry(

@@ -1,5 +1,5 @@
 import { formatNumber, PARAMETER_TITLES, sampleLabels } from "../../app/report/index.ts";
-import type { Comparison } from "../../app/protocol/index.ts";
+import type { ComparedParameter, Comparison } from "../../app/protocol/index.ts";
 import type { Mode, Palette } from "../plot/colours.ts";
 import type { FigureDescription, Trace } from "../plot/figure-description.ts";
 import { axis, baseLayout } from "../plot/layout.ts";
@@ -9,10 +9,19 @@ import { PARAMETER_SYMBOLS } from "./parameter-words.ts";
 /** Parts are no batches: their colours start where few batches reach. */
 const PARTS_FROM = 3;
 /** Share of the axis below which a bar has no room for its symbol. */
-const ROOM = 0.045;
+const ROOM = 0.03;
 
 export function partColour(k: number, mode: Mode): string {
   return batchLook(k + PARTS_FROM, mode).colour;
+}
+
+/** Marks of the plot library for subscripts are styled inline, which the content policy refuses: digits lowered, words beside. */
+function plainSymbol(name: ComparedParameter): string {
+  const { letter, below } = PARAMETER_SYMBOLS[name];
+  if (below === undefined) return letter;
+  return /^\d$/.test(below)
+    ? `${letter}${String.fromCodePoint(0x2080 + Number(below))}`
+    : `${letter} ${below}`;
 }
 
 /** The figure of quality of each sample as the sum of its parts: bars end to end to either side, the sum with its error. */
@@ -27,7 +36,8 @@ export function qualityFigure(
     .map((sample, i) => ({ ...sample, i, label: labels[i]! }))
     .sort((a, b) => (b.figure.value ?? -Infinity) - (a.figure.value ?? -Infinity));
   const shapes: object[] = [];
-  const bars: { x: number; row: number; text: string; width: number; i: number; hover: string }[] = [];
+  const bars: { x: number; row: number; name: ComparedParameter; width: number; i: number; hover: string }[] =
+    [];
   let [low, high] = [0, 0];
   rows.forEach(({ contributions, figure, i, sample }, row) => {
     let above = 0;
@@ -50,19 +60,21 @@ export function qualityFigure(
         opacity: palette.mode === "light" ? 0.4 : 0.5,
         line: { width: 0 },
       });
-      const { letter, below: index } = PARAMETER_SYMBOLS[name];
       bars.push({
         x: (from + to) / 2,
         row,
         i,
         width: Math.abs(size),
-        text: index === undefined ? letter : `${letter}<sub>${index}</sub>`,
+        name,
         hover: `${sample}: ${PARAMETER_TITLES[name]} × ${weight} gives ${formatNumber(size, 3)}`,
       });
     });
     low = Math.min(low, below, figure.low ?? 0);
     high = Math.max(high, above, figure.high ?? 0);
   });
+  // One symbol a part, in its widest bar: in every bar they would hide the figure.
+  const widest = new Map<ComparedParameter, (typeof bars)[number]>();
+  for (const bar of bars) if (bar.width > (widest.get(bar.name)?.width ?? 0)) widest.set(bar.name, bar);
   const room = 0.04 * (high - low || 1);
   const known = rows.flatMap((one, row) =>
     one.figure.value === null ? [] : [{ ...one, row, value: one.figure.value }],
@@ -74,7 +86,9 @@ export function qualityFigure(
       x: bars.map(({ x }) => x),
       y: bars.map(({ row }) => row),
       mode: "text",
-      text: bars.map(({ text, width }) => (width > ROOM * (high - low) ? text : "")),
+      text: bars.map((bar) =>
+        widest.get(bar.name) === bar && bar.width > ROOM * (high - low) ? plainSymbol(bar.name) : "",
+      ),
       textfont: { size: 11, color: palette.ink },
       customdata: bars.map(({ i }) => i),
       hovertext: bars.map(({ hover }) => hover),
