@@ -41,6 +41,8 @@ export {
 } from "./result-to-latex.ts";
 export { latexNumber } from "./table-to-latex.ts";
 export { curvesToCsv, curvesFromCsv, CURVES_CSV_MARK, type FittedCurves } from "./curves-csv.ts";
+export { seriesCurvesToCsv, seriesCurvesFromCsv, SERIES_CURVES_CSV_MARK } from "./series-curves-csv.ts";
+export { stackSpectra, type PowerSpectrum } from "./figures/stack-spectra.ts";
 export {
   reportContents,
   reportToHtml,

@@ -15,8 +15,10 @@ import { comparisonFigures } from "./figures/comparison-figures.ts";
 import { figureToSvg } from "./figures/figure-to-svg.ts";
 import { FULL_WIDTH_MM, type Figure } from "./figures/figure.ts";
 import { powerFigures } from "./figures/power-figures.ts";
+import { powerSpectraFigures } from "./figures/power-spectra-figure.ts";
 import { seriesFigures } from "./figures/series-figures.ts";
 import { spectrumFigures } from "./figures/spectrum-figure.ts";
+import type { PowerSpectrum } from "./figures/stack-spectra.ts";
 import { temperatureFigures } from "./figures/temperature-figures.ts";
 import { methodsInWords } from "./methods.ts";
 import { gravestFirst } from "./notes.ts";
@@ -36,6 +38,8 @@ export interface ReportInput {
   readonly results: readonly RunglineResult[];
   /** Fitted curves of each result where they are at hand, in the order of the results. */
   readonly curves: readonly (FittedCurves | null)[];
+  /** All spectra of each power series where they are at hand, from the lowest power, in the order of the results. */
+  readonly spectra?: readonly (readonly PowerSpectrum[] | null)[];
   readonly comparison: Comparison | null;
   /** The program that makes the report. */
   readonly run: { readonly version: string; readonly node: string; readonly started: string };
@@ -56,17 +60,19 @@ export interface ReportContents {
 }
 
 /** Figures and tables of all results and of their comparison: what the report shows and what can be had alone. */
-export function reportContents({ results, curves, comparison }: ReportInput): ReportContents {
+export function reportContents({ results, curves, spectra = [], comparison }: ReportInput): ReportContents {
   return {
     samples: results.map((result, i) => {
       const power = result.power ?? null;
       const fitted = curves[i] ?? null;
+      const series = spectra[i] ?? null;
       return {
         result,
         name: sampleName(result),
         figures: [
           ...(fitted === null ? [] : spectrumFigures(result, fitted)),
           ...seriesFigures(result),
+          ...(series === null ? [] : powerSpectraFigures(result, series)),
           ...(power === null ? [] : powerFigures(power)),
         ],
         tables: [...resultTables(result), ...(power === null ? [] : powerTables(power, result))],
@@ -226,7 +232,7 @@ function sampleSection(sample: SampleContents, i: number, several: boolean, with
           ...(withCurves
             ? []
             : [
-                '<p class="remark">The spectrum itself is not drawn: its fitted curves did not lie beside the result (rungline fit --curves writes them).</p>',
+                '<p class="remark">The spectrum itself is not drawn: its fitted curves did not lie beside the result (rungline fit or power with --curves writes them).</p>',
               ]),
           figuresToHtml(figures, `s${i + 1}`),
         ]),

@@ -9,6 +9,7 @@ import {
   resultToJson,
   resultToLatex,
   resultToText,
+  seriesCurvesToCsv,
 } from "../../app/report/index.ts";
 import {
   listInputs,
@@ -28,6 +29,7 @@ import { sayFault } from "./say.ts";
 export interface PowerOptions extends ChoiceOptions {
   readonly out?: string;
   readonly format?: Format;
+  readonly curves?: boolean;
 }
 
 /**
@@ -44,7 +46,13 @@ export async function powerCommand(
   const inputs = await listInputs(words, io.workingFolder);
   // One series is one result, whatever it was gathered from.
   const single = { ...inputs, files: inputs.files.slice(0, 1), hasFolder: false };
-  const place = await placeOutput(options.out, options.format, single, io.workingFolder);
+  const place = await placeOutput(
+    options.out,
+    options.format,
+    single,
+    io.workingFolder,
+    options.curves === true,
+  );
   let status: number = EXIT.done;
   for (const { word, why } of inputs.nothingFound) {
     io.stderr(`rungline: ${word}: ${why}\n`);
@@ -85,11 +93,12 @@ export async function powerCommand(
     sayFault(fault, io);
     return EXIT.fault;
   }
-  const { result } = outcome.analysed;
+  const { result, spectra } = outcome.analysed;
   const text = render(result, place.format);
   // Written first, then said to be done.
   if (place.kind === "file") {
     await writeWhole(place.protocol, protocolToJson(choices.protocol));
+    if (place.curves !== null) await writeWhole(place.curves, seriesCurvesToCsv(spectra, result));
     await writeWhole(place.result, text);
   }
   progress.end(0, outcomeInWords(result), true);

@@ -16,11 +16,13 @@ import {
   reportToHtml,
   resultToCsv,
   resultToLatex,
+  seriesCurvesFromCsv,
   WIDEST_MM,
   type FigureChoices,
   type FigureKind,
   type FigurePress,
   type FittedCurves,
+  type PowerSpectrum,
   type ReportInput,
 } from "../../app/report/index.ts";
 import { compareSamples } from "../../app/tasks/index.ts";
@@ -92,8 +94,14 @@ export async function reportCommand(
       return EXIT.usage;
     }
   }
-  const curves = await Promise.all(results.map((result, i) => curvesBeside(result, paths, i, io)));
-  const input: ReportInput = { results, curves, comparison, run };
+  const beside = await Promise.all(results.map((result, i) => curvesBeside(result, paths, i, io)));
+  const input: ReportInput = {
+    results,
+    curves: beside.map(({ curves }) => curves),
+    spectra: beside.map(({ spectra }) => spectra),
+    comparison,
+    run,
+  };
   const press = options.figures === undefined ? null : await openPress();
   const outputs: Output[] = [
     ...(out === null ? [] : [{ file: out, kind: "report" as const, content: () => reportToHtml(input) }]),
@@ -146,25 +154,37 @@ async function refuseOther(file: string, kind: OutputKind): Promise<void> {
     );
 }
 
-/** NAME.curves.csv beside NAME.json, if it is of the same data; a file with several results has none. */
+interface CurvesBeside {
+  readonly curves: FittedCurves | null;
+  readonly spectra: readonly PowerSpectrum[] | null;
+}
+
+const NO_CURVES: CurvesBeside = { curves: null, spectra: null };
+
+/**
+ * NAME.curves.csv beside NAME.json, if it is of the same data; a file with several results has none. The spectrum of a power
+ * series is that of its lowest power.
+ */
 async function curvesBeside(
   result: RunglineResult,
   paths: readonly string[],
   i: number,
   io: CommandLineIo,
-): Promise<FittedCurves | null> {
+): Promise<CurvesBeside> {
   const path = paths[i]!;
-  if (paths.filter((other) => other === path).length > 1 || !/\.json$/i.test(path)) return null;
+  if (paths.filter((other) => other === path).length > 1 || !/\.json$/i.test(path)) return NO_CURVES;
   const file = resolve(io.workingFolder, path.replace(/\.json$/i, ".curves.csv"));
   let text: string;
   try {
     text = await readFile(file, "utf8");
   } catch {
-    return null;
+    return NO_CURVES;
   }
-  const curves = curvesFromCsv(text, result);
+  const isSeries = (result.power ?? null) !== null;
+  const spectra = isSeries ? seriesCurvesFromCsv(text, result) : null;
+  const curves = isSeries ? (spectra?.[0]?.curves ?? null) : curvesFromCsv(text, result);
   if (curves === null) io.stderr(`rungline: ${file}: not the curves of ${path}; left out\n`);
-  return curves;
+  return { curves, spectra };
 }
 
 /** A name for files from the result's own file; a number where two would be alike. */

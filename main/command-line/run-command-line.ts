@@ -118,6 +118,10 @@ function describeProgram(
   )
     .option("--out <path>", "a file for the result; the ending says the format")
     .addOption(new Option("--format <format>", "how the result is written").choices([...FORMATS]))
+    .option(
+      "--curves",
+      "write the fitted curves of all spectra beside the result, for figures and the report",
+    )
     .action(async (files: string[], options: PowerOptions) => {
       const { powerCommand } = await import("./power-command.ts");
       end(await powerCommand(files, options, io, signal));

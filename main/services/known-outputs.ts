@@ -18,6 +18,7 @@ import {
   RESULT_CSV_MARK,
   RESULT_LATEX_MARK,
   RESULT_TEXT_MARK,
+  SERIES_CURVES_CSV_MARK,
   SUMMARY_MARK,
   SUMMARY_SCHEMA,
 } from "../../app/report/index.ts";
@@ -47,7 +48,7 @@ async function kindOf(file: string): Promise<OutputKind | null> {
   if (start.startsWith(FIGURE_SVG_MARK)) return "figure";
   if (start.startsWith("%PDF-") && start.includes(FIGURE_PDF_MARK)) return "figure";
   if (start.startsWith("PNG", 1) && start.includes(FIGURE_PNG_MARK)) return "figure";
-  if (start.startsWith(CURVES_CSV_MARK)) return "curves";
+  if (start.startsWith(CURVES_CSV_MARK) || start.startsWith(SERIES_CURVES_CSV_MARK)) return "curves";
   if (start.startsWith(SUMMARY_MARK)) return "summary";
   if (start.startsWith(COMPARISON_TEXT_MARK) || start.startsWith(COMPARISON_CSV_MARK)) return "comparison";
   const schema = /^\s*\[?\s*\{\s*"schema"\s*:\s*"([^"]*)"/.exec(start)?.[1] ?? "";

@@ -30,6 +30,7 @@ export function recordInput(session: Session, comparison: Comparison | null, of:
   const items = found.map(({ id, of: kind, result }) => ({
     result,
     curves: kind === "file" ? drawn(session.fits[id]!.analysed.curves) : null,
+    spectra: null,
   }));
   const series = Object.entries(session.powerFits)
     .filter(([id, { fileIds }]) => of === null || id === of || fileIds.includes(of))
@@ -37,11 +38,13 @@ export function recordInput(session: Session, comparison: Comparison | null, of:
       result: analysed.result,
       // The spectrum of a power series is that of its lowest power.
       curves: analysed.spectra[0] === undefined ? null : drawn(analysed.spectra[0].curves),
+      spectra: analysed.spectra.map(({ power_uW, curves }) => ({ power_uW, curves: drawn(curves) })),
     }));
   const all = [...items, ...series];
   return {
     results: all.map(({ result }) => result),
     curves: all.map(({ curves }) => curves),
+    spectra: all.map(({ spectra }) => spectra),
     comparison: of === null && found.length > 1 ? comparison : null,
   };
 }
