@@ -5,20 +5,25 @@
  * Source    Box, Jenkins, Reinsel, Time Series Analysis, 3rd ed. (1994), 2.1.
  */
 export function autocorrelation(residuals: ArrayLike<number>, most: number): Float64Array {
+  const at = correlationAt(residuals);
+  return Float64Array.from({ length: most + 1 }, (_, lag) => at(lag));
+}
+
+/** rho_k, one at a time. */
+function correlationAt(residuals: ArrayLike<number>): (lag: number) => number {
   const m = residuals.length;
-  const out = new Float64Array(most + 1).fill(NaN);
-  if (m < 2) return out;
+  if (m < 2) return () => NaN;
   let mean = 0;
   for (let i = 0; i < m; i++) mean += residuals[i]! / m;
-  let square = 0;
-  for (let i = 0; i < m; i++) square += (residuals[i]! - mean) ** 2;
-  if (!(square > 0)) return out;
-  for (let lag = 0; lag <= most; lag++) {
-    let sum = 0;
-    for (let i = lag; i < m; i++) sum += (residuals[i]! - mean) * (residuals[i - lag]! - mean);
-    out[lag] = sum / square;
-  }
-  return out;
+  const d = Float64Array.from(residuals, (value) => value - mean);
+  const square = product(d, 0);
+  return (lag) => (square > 0 ? product(d, lag) / square : NaN);
+}
+
+function product(d: Float64Array, lag: number): number {
+  let sum = 0;
+  for (let i = lag; i < d.length; i++) sum += d[i]! * d[i - lag]!;
+  return sum;
 }
 
 /** Lags after which white noise would show no more: the rule 4 (m/100)^(2/9) of the Newey-West estimate, at least 1. */
@@ -36,13 +41,15 @@ export function correlationTime(residuals: ArrayLike<number>): {
 } {
   const m = residuals.length;
   const most = Math.max(1, Math.floor(m / 20));
-  const rho = autocorrelation(residuals, most);
+  const at = correlationAt(residuals);
+  // Of a long series most lags are never looked at.
+  const rho = [1];
   let lags = Math.min(most, defaultLags(m));
   let died = 0;
-  while (died < most && Math.abs(rho[died + 1]!) > 2 / Math.sqrt(m)) died++;
+  while (died < most && Math.abs((rho[died + 1] = at(died + 1))) > 2 / Math.sqrt(m)) died++;
   // Bartlett's weights reach zero at L + 1: twice the length of the correlation keeps most of it.
   lags = Math.min(most, Math.max(lags, 3 * died));
   let time = 1;
-  for (let k = 1; k <= lags; k++) time += 2 * (1 - k / (lags + 1)) * rho[k]!;
+  for (let k = 1; k <= lags; k++) time += 2 * (1 - k / (lags + 1)) * (rho[k] ?? at(k));
   return { time: Number.isFinite(time) ? Math.max(time, 1e-3) : 1, lags };
 }
