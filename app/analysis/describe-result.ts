@@ -10,6 +10,7 @@ import type { LineParameterName } from "../fit/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import {
   deriveQuantities,
+  exponentCurve,
   fitStrengths,
   fitWidths,
   profileLevels,
@@ -237,7 +238,7 @@ export function describeResult(
         quantity: quantity(value, sigma),
       })),
     ],
-    diagnostics: describeDiagnostics(full, protocol),
+    diagnostics: describeDiagnostics(full, protocol, laws.exponentCurve),
   };
 }
 
@@ -256,6 +257,8 @@ interface DescribedLaws {
   readonly series: RunglineResult["series"];
   readonly width: RunglineResult["width_law"];
   readonly strength: RunglineResult["strength_law"];
+  /** Of the exponent that is fitted to the widths of the lines; empty where it is part of the spectrum fit. */
+  readonly exponentCurve: readonly (readonly [number, number])[];
   readonly notes: readonly Note[];
 }
 
@@ -334,8 +337,13 @@ function describeLaws(
   }
   if (widths.ok) notes.push(...widths.value.notes);
   if (strengths.ok) notes.push(...strengths.value.notes);
+  const ownWidths = full.fit.constrained?.widthLaw ?? null;
   return {
     series,
+    exponentCurve:
+      protocol.uncertainty.profile && widths.ok && ownWidths === null
+        ? exponentCurve(widthInput, widths.value)
+        : [],
     width:
       tiedWidthLaw(full.fit.constrained, protocol.width.base, factor, spectrumProfile?.exponent ?? null) ??
       (widths.ok ? widthsToResult(widths.value, protocol.width.base, factor) : null),

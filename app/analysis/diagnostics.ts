@@ -18,7 +18,11 @@ const MOST_STRONG = 12;
 const NEAR_BOUND = 5;
 
 /** What a referee asks of a fit, beside chi square, runs and Durbin-Watson. */
-export function describeDiagnostics(full: FullFit, protocol: Protocol): Diagnostics {
+export function describeDiagnostics(
+  full: FullFit,
+  protocol: Protocol,
+  exponentCurve: readonly (readonly [number, number])[],
+): Diagnostics {
   const { fit, range } = full;
   const { residuals, condition } = fit.solution;
   const { time } = correlationTime(residuals);
@@ -49,7 +53,10 @@ export function describeDiagnostics(full: FullFit, protocol: Protocol): Diagnost
     condition: finite(condition),
     bounds: nearBounds(fit),
     regions: free && protocol.uncertainty.profile ? regions(input, range.fit) : [],
-    profiles: free && protocol.uncertainty.profile ? profiles(input, range.fit) : [],
+    profiles: [
+      ...(free && protocol.uncertainty.profile ? profiles(input, range.fit) : []),
+      ...(exponentCurve.length === 0 ? [] : [{ name: "width_exponent", points: pairs(exponentCurve) }]),
+    ],
   };
 }
 
@@ -179,6 +186,10 @@ function regions(input: LevelInput, fit: LevelFit): Diagnostics["regions"] {
 function profiles(input: LevelInput, fit: LevelFit): NonNullable<Diagnostics["profiles"]> {
   return levelProfileCurves(input, fit).map(({ name, points }) => ({
     name,
-    points: points.map(([value, rise]): [number, number] => [value, rise]),
+    points: pairs(points),
   }));
+}
+
+function pairs(points: readonly (readonly [number, number])[]): [number, number][] {
+  return points.map(([value, rise]) => [value, rise]);
 }

@@ -14,7 +14,7 @@ export {
   type Readings,
   type ReadingsInput,
 } from "./readings.ts";
-export { fitWidths, type WidthFit, type WidthInput } from "./width-fit.ts";
+export { exponentCurve, fitWidths, type WidthFit, type WidthInput } from "./width-fit.ts";
 export { fitStrengths, type StrengthFit, type StrengthInput } from "./strength-fit.ts";
 export { bindingOf, lawAt, offsetFromLaw, type Derived, type LineEnergies } from "./relation.ts";
 export {

@@ -264,6 +264,29 @@ function testExponent(input: WidthInput, chosen: Chosen): WidthFit["exponentTest
   return { value, sigma, low, high, gain: Math.max(0, chosen.solution.chi2 - free.solution.chi2) };
 }
 
+/** Points of a curve on each side of its minimum. */
+const STEPS = 6;
+
+/**
+ * Chi square over its minimum along the exponent, floor and coefficient fitted again at every value: rows (value, rise) at steps
+ * of half a standard error to three on each side of the free exponent. Empty where it cannot be freed.
+ */
+export function exponentCurve(given: WidthInput, fit: WidthFit): readonly (readonly [number, number])[] {
+  const test = fit.exponentTest;
+  if (test === null || !(test.sigma > 0)) return [];
+  const input = withModelErrors(given);
+  const places = fit.n.map((n) => input.n.indexOf(n));
+  const least = fit.chi2 - test.gain;
+  const points: [number, number][] = [];
+  for (let step = -STEPS; step <= STEPS; step++) {
+    const value = test.value + (3 * test.sigma * step) / STEPS;
+    if (value < LEAST_EXPONENT || value > MOST_EXPONENT) continue;
+    const rise = step === 0 ? 0 : (fitLines(input, places, value, "newton")?.solution.chi2 ?? NaN) - least;
+    if (Number.isFinite(rise)) points.push([value, rise]);
+  }
+  return points;
+}
+
 function fewNotes(
   input: WidthInput,
   exponentFree: boolean,

@@ -2,6 +2,7 @@ import { describe, expect, test } from "vitest";
 import { makeRandom } from "../../../app/base/index.ts";
 import {
   conventionalShift,
+  exponentCurve,
   fitStrengths,
   fitWidths,
   rankReadings,
@@ -34,6 +35,20 @@ describe("the width law", () => {
     expect(coefficient! / TRUTH.coefficient).toBeCloseTo(1, 7);
     expect(exponent!).toBeCloseTo(3, 7);
   });
+
+  test.each([3, "free"] as const)(
+    "has a profile of the exponent that rises to one at its interval (%s)",
+    (exponent) => {
+      const input = widths(7, { exponent });
+      const fit = mustBe(fitWidths(input));
+      const { low, high, value } = fit.exponentTest!;
+      const points = exponentCurve(input, fit);
+      // Derived: six steps on each side and the minimum
+      expect(points.length).toBe(13);
+      expect(points[6]).toEqual([value, 0]);
+      for (const [one, rise] of points) if (one !== value) expect(rise > 1).toBe(one < low! || one > high!);
+    },
+  );
 
   test("has pulls of width one", () => {
     const seeds = 300;
