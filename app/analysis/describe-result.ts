@@ -1,4 +1,5 @@
 import {
+  assumption,
   NOT_DETERMINED,
   stopIfCancelled,
   symmetric,
@@ -40,6 +41,7 @@ import { findDoubts } from "./find-doubts.ts";
 import type { Peak } from "./find-peaks.ts";
 import { FRINGE_PERIOD } from "./fringes.ts";
 import type { FullFit } from "./fit-full.ts";
+import { heldDefect, heldDefectNotes } from "./held-defect.ts";
 import { intervalFactor } from "./interval.ts";
 import { covarianceBlock, determinedPlaces, levelInput } from "./level-range.ts";
 import type { SelectedPoints } from "./select-points.ts";
@@ -142,6 +144,7 @@ export function describeResult(
     : null;
   const laws = describeLaws(full, protocol, factor, profile);
   stopIfCancelled(watch);
+  const held = range === null ? null : heldDefect(fit, range.fit, protocol);
   const systematic =
     protocol.uncertainty.systematic && range !== null
       ? judgeSystematics(
@@ -151,6 +154,7 @@ export function describeResult(
           range.fit,
           protocol,
           full.choices,
+          held,
           watch,
         )
       : null;
@@ -195,6 +199,8 @@ export function describeResult(
     ...full.domain.notes,
     ...findDoubts({ spectrum, protocol, points, peaks, assignment, full, fit: fitPart, lines, tail, series }),
     ...laws.notes,
+    ...heldDefectNotes(held),
+    ...linearisedNotes(full, protocol),
     ...constraintNotes(full, protocol),
     ...derivedParts.notes,
     ...systematicNotes(systematic),
@@ -239,6 +245,24 @@ export function describeResult(
       })),
     ],
     diagnostics: describeDiagnostics(full, protocol, laws.exponentCurve),
+/** Trials and drawn spectra of fits of the light are not fits of the light. */
+function linearisedNotes({ domain }: FullFit, { uncertainty }: Protocol): Note[] {
+  const made = [
+    ...(uncertainty.systematic ? ["other backgrounds and windows"] : []),
+    ...(uncertainty.resample === "none" ? [] : ["resampled spectra"]),
+  ];
+  if (domain.name === "alpha" || made.length === 0) return [];
+  const beside = (domain.parts?.length ?? 0) > 0 ? ", with fringes and stray light as they were found" : "";
+  return [
+    assumption(
+      "trials-linearised",
+      "systematic",
+      `The fits of ${made.join(" and ")} are those of the light linearised about its fit${beside}.`,
+      "nothing to do where the trials lie within a few standard errors of the fit",
+    ),
+  ];
+}
+
   };
 }
 

@@ -5,6 +5,7 @@ import { fitLevels, type LevelFit } from "../series/index.ts";
 import { informationCriteria, runsTest } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { areaSystematic } from "./area-systematic.ts";
+import type { HeldDefect } from "./held-defect.ts";
 import { buildModel, energyOf, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { parameterCount } from "./describe-constraints.ts";
 import { covarianceBlock, determinedPlaces, tiedLevels } from "./level-range.ts";
@@ -38,6 +39,7 @@ export function judgeSystematics(
   reference: LevelFit,
   protocol: Protocol,
   choices: ModelChoices,
+  held: HeldDefect | null,
   watch: Watch,
 ): Systematic {
   const trials = planTrials(points, state, protocol, choices);
@@ -63,10 +65,14 @@ export function judgeSystematics(
   const { offset_sigma_eV: offset, scale_sigma: scale } = protocol.axis;
   const relative = areaSystematic(spectrum, protocol, points);
   return {
-    // An error of the axis stands even where no other background could be tried.
-    gap_eV: withAxis(gap, Math.hypot(offset, scale * state.levels.gap)),
-    rydberg_eV: withAxis(rydberg, scale * state.levels.rydberg),
-    defect0: half((row) => row.defect0),
+    // An error of the axis, or of a defect that is held, stands even where no other background could be tried.
+    gap_eV: withOthers(gap, Math.hypot(offset, scale * state.levels.gap, held?.gap_eV ?? 0)),
+    rydberg_eV: withOthers(rydberg, Math.hypot(scale * state.levels.rydberg, held?.rydberg_eV ?? 0)),
+    defect0: withOthers(
+      half((row) => row.defect0),
+      held?.sigma ?? 0,
+    ),
+    ...(held === null ? {} : { held_defect: held }),
     ...(relative === null ? {} : { area_relative: relative }),
     trials: rows.map(({ samePoints, ...row }, i) => ({
       ...row,
@@ -76,9 +82,9 @@ export function judgeSystematics(
   };
 }
 
-function withAxis(spread: number | null, axis: number): number | null {
-  if (spread === null) return axis > 0 ? axis : null;
-  return Math.hypot(spread, axis);
+function withOthers(spread: number | null, others: number): number | null {
+  if (spread === null) return others > 0 ? others : null;
+  return Math.hypot(spread, others);
 }
 
 /** A background on the list that describes the spectrum clearly better than the one that was asked for is said, not taken. */

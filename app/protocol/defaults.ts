@@ -37,6 +37,7 @@ export const DEFAULT_PROTOCOL: Protocol = {
     gap_eV: null,
     rydberg_eV: null,
     defect0: null,
+    defect0_sigma: null,
     permittivity: null,
     reduced_mass: null,
     bohr_radius_nm: null,

@@ -149,6 +149,8 @@ export const protocolSchema = z.strictObject({
     gap_eV: positive.nullable(),
     rydberg_eV: positive.nullable(),
     defect0: z.number().min(-3).max(3).nullable(),
+    /** One standard uncertainty of `defect0`, for where too few lines leave it held; null: 0.1 is assumed, and said. */
+    defect0_sigma: z.number().min(0).max(1).nullable().default(null),
     permittivity: positive.nullable(),
     reduced_mass: positive.nullable(),
     bohr_radius_nm: positive.nullable(),

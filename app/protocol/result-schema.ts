@@ -234,6 +234,16 @@ export const resultSchema = z.strictObject({
       gap_eV: number,
       rydberg_eV: number,
       defect0: number,
+      /** A defect held for want of lines: its value, its uncertainty, and what that puts on the others (part of them). */
+      held_defect: z
+        .strictObject({
+          defect0: z.number(),
+          sigma: z.number(),
+          assumed: z.boolean(),
+          gap_eV: z.number(),
+          rydberg_eV: z.number(),
+        })
+        .optional(),
       /** Relative error that thickness and reflectance put on all areas alike. */
       area_relative: number.optional(),
       trials: z.array(

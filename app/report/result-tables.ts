@@ -83,9 +83,20 @@ function seriesTable(result: RunglineResult): DataTable | null {
     ],
     remarks: [
       `Chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, *p* = ${formatNumber(series.p, 3)}. The standard error is statistical; the systematic part is the spread over defensible choices.`,
+      ...heldDefectRemark(systematic?.held_defect, rydberg),
       ...correlations(series.correlation),
     ],
   };
+}
+
+function heldDefectRemark(
+  held: NonNullable<RunglineResult["systematic"]>["held_defect"],
+  rydberg: EnergyUnit,
+): string[] {
+  if (held === undefined) return [];
+  return [
+    `The defect is held at ${held.defect0} ± ${held.sigma}${held.assumed ? " (assumed)" : ""}, which puts ${systematicWords(held.gap_eV, null)} on the gap and ${systematicWords(held.rydberg_eV, rydberg)} on the Rydberg energy (systematic).`,
+  ];
 }
 
 function correlations({

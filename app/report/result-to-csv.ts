@@ -127,6 +127,11 @@ function resultRows(result: RunglineResult): string {
     row("systematic", "gap", null, part(systematic.gap_eV), "eV");
     row("systematic", "rydberg", null, part(systematic.rydberg_eV), "eV");
     row("systematic", "defect0", null, part(systematic.defect0), "");
+    if (systematic.held_defect !== undefined) {
+      row("held_defect", "gap", null, part(systematic.held_defect.gap_eV), "eV");
+      row("held_defect", "rydberg", null, part(systematic.held_defect.rydberg_eV), "eV");
+      row("held_defect", "defect0", null, part(systematic.held_defect.sigma), "");
+    }
     for (const trial of systematic.trials) {
       const plain = (value: number | null): Quantity => ({ value, sigma: null, low: null, high: null });
       row("trial", "gap", null, plain(trial.gap_eV), "eV", trial.name);

@@ -170,6 +170,12 @@ function seriesPart(result: RunglineResult): string[] {
     `  chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, p = ${formatNumber(series.p, 3)}`,
     "  The standard error is statistical only; the systematic part is the spread over defensible choices.",
   ];
+  if (systematic?.held_defect !== undefined) {
+    const { defect0, sigma, assumed, gap_eV, rydberg_eV } = systematic.held_defect;
+    out.push(
+      `  The defect is held at ${defect0} ± ${sigma}${assumed ? " (assumed)" : ""}, which puts ${systematicWords(gap_eV, null)} on E_g and ${systematicWords(rydberg_eV, rydberg)} on Ry (systematic).`,
+    );
+  }
   if (systematic?.area_relative !== undefined && systematic.area_relative !== null)
     out.push(
       `  Thickness and reflectance put ±${formatNumber(100 * systematic.area_relative, 2)} % on all areas alike (systematic).`,
