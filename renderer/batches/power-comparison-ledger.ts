@@ -1,9 +1,4 @@
-import {
-  formatNumber,
-  powerPairInWords,
-  powerScatterInWords,
-  spreadInWords,
-} from "../../app/report/index.ts";
+import { formatNumber, powerScatterInWords, spreadInWords } from "../../app/report/index.ts";
 import { NOT_DETERMINED } from "../../app/base/index.ts";
 import type { ComparedPower, ComparedPowerPart, ComparedSpread } from "../../app/protocol/index.ts";
 import { notesAbout, type CardText, type LedgerEntry, type LedgerSection } from "../ledger/ledger-entry.ts";
