@@ -1,4 +1,4 @@
-import { mkdir, readdir, readFile, writeFile } from "node:fs/promises";
+import { mkdir, readdir, readFile, rm, writeFile } from "node:fs/promises";
 import { join } from "node:path";
 import { afterEach, beforeEach, describe, expect, it } from "vitest";
 import { resultToJson, REPORT_HTML_MARK } from "../../app/report/index.ts";
@@ -90,6 +90,48 @@ describe("rungline report", () => {
     );
     // Replaced by the same again.
     expect((await bench.run("report", "results", "--figures", "f", "--tables", "t")).status).toBe(0);
+  });
+
+  it("writes figures of the kinds, width and dots asked for, replaces its own and nothing else", async () => {
+    const run = (...more: string[]) => bench.run("report", "results/r1.json", "--figures", "f", ...more);
+    expect(
+      (await run("--figure-kinds", "PDF, png", "--figure-width", "column", "--figure-dpi", "300")).status,
+    ).toBe(0);
+    const files = await list("f");
+    expect(files).toContain("r1-levels.pdf");
+    expect(files).toContain("r1-levels.png");
+    expect(files.some((file) => file.endsWith(".svg"))).toBe(false);
+    const png = await readFile(join(bench.folder, "f/r1-levels.png"));
+    // Derived: 85 mm at 300 dots an inch: 85/25.4*300 = 1003.9
+    expect(png.readUInt32BE(16)).toBe(1004);
+    expect(
+      (await run("--figure-kinds", "pdf,png,svg", "--figure-width", "120mm", "--figure-dpi", "300")).status,
+    ).toBe(0);
+    expect(await get("f/r1-levels.svg")).toContain('width="120mm"');
+    for (const name of ["f/r1-levels.pdf", "f/r1-levels.png"]) {
+      await put(name, name.endsWith("pdf") ? "%PDF-1.7 mine" : "\x89PNG mine");
+      const refused = await run("--figure-kinds", "pdf,png");
+      expect(refused.status).toBe(2);
+      expect(refused.error).toContain("not a figure of Rungline");
+      await rm(join(bench.folder, name));
+    }
+  });
+
+  it("says what is wrong with how figures are asked for", async () => {
+    const wrong: [string[], string][] = [
+      [["--figures", "f", "--figure-kinds", "svg,tiff"], '"tiff" is none of svg, pdf, png'],
+      [["--figures", "f", "--figure-width", "20"], "a number of mm from 60 to 260"],
+      [["--figures", "f", "--figure-width", "wide"], "column (85 mm), page (178 mm)"],
+      [["--figures", "f", "--figure-kinds", "png", "--figure-dpi", "72"], "is one of 300, 600"],
+      [["--figures", "f", "--figure-dpi", "300"], "--figure-kinds png"],
+      [["--figure-kinds", "pdf"], "name their folder with --figures"],
+    ];
+    for (const [words, message] of wrong) {
+      const { status, error } = await bench.run("report", "results/r1.json", ...words);
+      expect(status).toBe(2);
+      expect(error).toContain(message);
+    }
+    expect(await list(".")).not.toContain("f");
   });
 
   it("refuses a reference batch that is not there", async () => {

@@ -46,7 +46,7 @@ export function powerSpectraFigures(
   const unit = result.reading.signal_unit === "1/cm" ? "*α* / cm^{−1}" : "Optical depth *αd*";
   return [
     {
-      name: "power-spectra",
+      name: "spectra-by-power",
       caption: `Spectra towards the gap at ${rows.length} powers, each above the one before by the same offset: data (grey), model (the higher the power the lighter; highest red). Numbers: *n*${
         gap !== null && gap <= high ? "; dashed: gap" : ""
       }.`,

@@ -1,7 +1,16 @@
 import { describe, expect, it } from "vitest";
 import { lineCurve } from "../../../app/analysis/index.ts";
-import { curvesFromCsv, curvesToCsv, CURVES_CSV_MARK } from "../../../app/report/index.ts";
+import {
+  curvesFromCsv,
+  curvesToCsv,
+  CURVES_CSV_MARK,
+  reportContents,
+  seriesCurvesFromCsv,
+  seriesCurvesToCsv,
+  SERIES_CURVES_CSV_MARK,
+} from "../../../app/report/index.ts";
 import { makeResult } from "../../main/make-result.ts";
+import { samplePower } from "../../renderer/power-sample.ts";
 
 const energy_eV = Float64Array.of(2.14, 2.168, 2.1682, 2.17, 2.173);
 const curves = {
@@ -59,5 +68,47 @@ describe("fitted curves as CSV", () => {
     });
     const none = { value: null, sigma: null, low: null, high: null };
     expect(lineCurve(result, { ...line, width_eV: none }, energy_eV)).toBeNull();
+  });
+});
+
+describe("the curves of a power series", () => {
+  const { result, spectra } = samplePower();
+
+  it("go to CSV spectrum after spectrum and come back bit for bit, and not for other powers", () => {
+    const text = seriesCurvesToCsv(spectra, result);
+    expect(text.startsWith(SERIES_CURVES_CSV_MARK)).toBe(true);
+    const back = seriesCurvesFromCsv(text, result)!;
+    expect(back.map(({ power_uW }) => power_uW)).toEqual(spectra.map(({ power_uW }) => power_uW));
+    back.forEach((one, i) => {
+      const { energy_eV, signal, model, background, residual } = spectra[i]!.curves;
+      expect(one.curves).toEqual({ energy_eV, signal, model, background, residual });
+    });
+    const fewer = { ...result, power: { ...result.power!, spectra: result.power!.spectra.slice(1) } };
+    expect(seriesCurvesFromCsv(text, fewer)).toBeNull();
+    expect(seriesCurvesFromCsv(curvesToCsv(curves, result), result)).toBeNull();
+  });
+
+  it("are drawn towards the gap, each above the one before by the same offset", () => {
+    const run = { version: "0.1.0", node: "v20.0.0", started: "2026-01-02T03:04:05.000Z" };
+    const drawn = (series: typeof spectra | null) =>
+      reportContents({
+        results: [result],
+        curves: [null],
+        spectra: [series],
+        comparison: null,
+        run,
+      }).samples[0]!.figures.find(({ name }) => name === "spectra-by-power");
+    expect(drawn(null)).toBeUndefined();
+    // The same spectrum at every power: what is left between two curves is the offset.
+    const same = spectra.map(({ power_uW, label }) => ({ power_uW, label, curves: spectra[0]!.curves }));
+    const marks = drawn(same)!.panels[0]!.marks;
+    const models = marks.filter((mark) => mark.kind === "line").filter((_, i) => i % 2 === 1);
+    expect(models).toHaveLength(spectra.length);
+    const first = models.map(({ y }) => y[0]!);
+    for (let i = 2; i < first.length; i++)
+      expect(first[i]! - first[i - 1]!).toBeCloseTo(first[1]! - first[0]!, 9);
+    expect(first[1]!).toBeGreaterThan(first[0]!);
+    const texts = marks.flatMap((mark) => (mark.kind === "label" ? [mark.text] : []));
+    expect(texts).toEqual(expect.arrayContaining(["0.5 µW", "200 µW", "14"]));
   });
 });
