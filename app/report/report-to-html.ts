@@ -232,7 +232,7 @@ function sampleSection(sample: SampleContents, i: number, several: boolean, with
           ...(withCurves
             ? []
             : [
-                '<p class="remark">The spectrum itself is not drawn: its fitted curves did not lie beside the result (rungline fit or power with --curves writes them).</p>',
+                '<p class="remark">The spectrum itself is not drawn: its fitted curves did not lie beside the result (rungline fit --curves and rungline power --curves write them).</p>',
               ]),
           figuresToHtml(figures, `s${i + 1}`),
         ]),

@@ -1,4 +1,4 @@
-import { readFile, writeFile } from "node:fs/promises";
+import { readdir, readFile, writeFile } from "node:fs/promises";
 import { join } from "node:path";
 import { afterEach, describe, expect, it } from "vitest";
 import type { RunglineResult } from "../../app/protocol/index.ts";
@@ -35,7 +35,7 @@ describe("rungline power", () => {
   it("writes one result for several files and its protocol beside it, and repeats from that to the last bit", async () => {
     const { run, folder } = await withFiles();
     const files = SMALL.powers_uW.map((power) => `s_${power}uW.csv`);
-    const first = await run("power", ...files, ...CHOICES, "--out", "series.json");
+    const first = await run("power", ...files, ...CHOICES, "--curves", "--out", "series.json");
     expect(first.status).toBe(0);
     expect(first.out).toBe("");
     expect(first.error).toContain("3 powers");
@@ -46,6 +46,11 @@ describe("rungline power", () => {
     const { run: _, ...one } = await read("series.json");
     const { run: __, ...other } = await read("again.json");
     expect(JSON.stringify(other)).toBe(JSON.stringify(one));
+    // The curves lie beside the result, where the report finds them.
+    expect((await run("report", "series.json", "--figures", "f")).error).toBe("");
+    expect(await readdir(join(folder, "f"))).toEqual(
+      expect.arrayContaining(["series-spectra-by-power.svg", "series-spectrum.svg"]),
+    );
   });
 
   it("takes a folder, names a broken file and one without a power, finishes the rest with status 3", async () => {
