@@ -1,6 +1,7 @@
 export * from "./format-quantity.ts";
 export { csvLine } from "./csv.ts";
 export { cautionsFor, CRYOGEN_CAUTION, LASER_CAUTION } from "./cautions.ts";
+export { besideN } from "./beside-n.ts";
 export { gravestFirst, noteLine } from "./notes.ts";
 export { protocolInWords } from "./protocol-in-words.ts";
 export { areaUnit, signalUnitWords, signalName } from "./area-unit.ts";

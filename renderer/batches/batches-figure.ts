@@ -1,4 +1,4 @@
-import { PARAMETER_TITLES, sampleLabels } from "../../app/report/index.ts";
+import { besideN, PARAMETER_TITLES, sampleLabels } from "../../app/report/index.ts";
 import type {
   ComparedParameter,
   ComparedPart,
@@ -238,6 +238,9 @@ function hoverText(sample: ComparedSample, one: Measured, unit: string, scale: n
   ].join("<br>");
 }
 
+/** Higher n crowd on a logarithmic axis. */
+const NUMBERED: readonly number[] = [8, 10, 12, 15, 20, 25, 30, 40];
+
 /** Widths or areas times n³ of all samples against n, each sample a line in the look of its batch. */
 function allLines(
   comparison: Comparison,
@@ -253,9 +256,7 @@ function allLines(
     const lines = sample.lines.filter((line) => (line[quantity].value ?? 0) > 0);
     if (at < 0 || lines.length === 0) return [];
     const { look } = looks[at]!;
-    // Samples lie a little apart, so that their intervals can be told.
-    const shift = 1 + 0.006 * (i - (comparison.samples.length - 1) / 2);
-    const x = lines.map(({ n }) => n * shift);
+    const x = lines.map(({ n }) => besideN(n, i, comparison.samples.length));
     const y = lines.map((line) => line[quantity].value! * scale);
     all.push(...y);
     lines.forEach(({ n }) => numbers.add(n));
@@ -302,7 +303,8 @@ function allLines(
     x: axis(palette, "Principal quantum number n", {
       type: "log",
       tickvals: marks,
-      ticktext: marks.map((n) => (n <= 10 || n % 2 === 0 ? String(n) : "")),
+      ticktext: marks.map((n) => (n <= 6 || NUMBERED.includes(n) ? String(n) : "")),
+      tickangle: 0,
       range: [Math.log10(low * 0.9), Math.log10(high * 1.1)],
     }),
     y: axis(

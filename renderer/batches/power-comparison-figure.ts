@@ -1,4 +1,4 @@
-import { formatNumber, powerTitle, spreadInWords } from "../../app/report/index.ts";
+import { besideN, formatNumber, powerTitle, spreadInWords } from "../../app/report/index.ts";
 import type { ComparedPower, ComparedPowerPart } from "../../app/protocol/index.ts";
 import type { Palette } from "../plot/colours.ts";
 import type { Axis, FigureDescription, Trace } from "../plot/figure-description.ts";
@@ -183,8 +183,7 @@ function againstN(
     const look = looks.get(one.batch);
     const lines = one.lines.filter((line) => line[quantity].value !== null);
     if (look === undefined || lines.length === 0) return [];
-    const shift = 1 + 0.006 * (i - (series.length - 1) / 2);
-    const x = lines.map(({ n }) => n * shift);
+    const x = lines.map(({ n }) => besideN(n, i, series.length));
     const y = lines.map((line) => line[quantity].value!);
     lines.forEach((line) => {
       numbers.add(line.n);

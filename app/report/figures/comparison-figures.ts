@@ -1,4 +1,5 @@
 import type { ComparedPart, ComparedSample, Comparison } from "../../protocol/index.ts";
+import { besideN } from "../beside-n.ts";
 import { PARAMETER_TITLES, sampleLabels } from "../comparison-to-text.ts";
 import { energyUnit } from "../format-quantity.ts";
 import { powerComparisonFigures } from "./power-comparison-figures.ts";
@@ -140,12 +141,8 @@ function allLines(comparison: Comparison, looks: ReadonlyMap<string, BatchLook>)
           const value = pick(line);
           return value === null ? null : value * factor;
         });
-      // Samples of one batch lie a little apart, so that their intervals can be told.
-      const same = samples.filter((other) => other.batch === sample.batch);
-      const batch = [...looks.keys()].indexOf(sample.batch);
-      const shift =
-        1 + 0.006 * (same.indexOf(sample) - (same.length - 1) / 2) + 0.012 * (batch - (looks.size - 1) / 2);
-      const x = lines.map(({ n }) => n * shift);
+      const place = samples.indexOf(sample);
+      const x = lines.map(({ n }) => besideN(n, place, samples.length));
       return [
         { kind: "line", x, y: at((line) => line[quantity].value), colour: look.colour, width: 0.35 },
         {
