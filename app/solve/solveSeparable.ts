@@ -83,7 +83,11 @@ function solveCondensed(
       if (rough) return withEveryRow(solution, problem, condensed, iterations, evaluations);
       if (converged && serves) {
         const sure = confirmed(problem, search.conclude(solution.termination), search);
-        if (sure !== null) return { ...sure, iterations, evaluations: evaluations + 1 };
+        if (sure !== null) {
+          iterations += sure.iterations;
+          evaluations += sure.evaluations;
+          return { ...sure, iterations, evaluations };
+        }
       }
       break;
     }
@@ -99,44 +103,67 @@ function solveCondensed(
   };
 }
 
+/** Passes over every row: one shows that nothing is left to do, or gives the step after which the next one shows it. */
+const MOST_PASSES = 3;
+
 /**
- * The answer of condensed rows under every row, where one pass over those shows that nothing is left to do: the linearised
- * minimum of all parameters, which no single cosine of the gradient can exceed, lies within the tolerance, bounds hold and
- * leave go as they did, and the worst determined directions are as long. Null elsewhere.
+ * The answer of condensed rows under every row: their matrix with the gradient of every row gives the steps that are left,
+ * mostly none or one, until the linearised minimum of all parameters lies within the tolerance (which no single cosine of the
+ * gradient then exceeds), bounds hold and leave go as they did, and the worst determined directions are as long. Null where
+ * that does not come about.
  */
 function confirmed(
   problem: SeparableProblem,
-  few: SeparableSolution,
+  first: SeparableSolution,
   search: Search,
 ): SeparableSolution | null {
   const { nonlinear: p, linear: k, rows, data, weights } = problem;
-  const { theta, coefficients, covariance, rank, activeBounds, tolerances } = few;
   const n = p + k;
-  let free = k;
-  for (let j = 0; j < p; j++) if (activeBounds[j] === 0) free++;
-  if (!few.converged || rank < free) return null;
-  const directions = weakDirections(covariance, n);
-  const every = passEveryRow(problem, theta, coefficients, directions);
-  if (every === null) return null;
-  const { residuals, chi2, gradient } = every;
-  let promise = 0;
-  for (let i = 0; i < n; i++)
-    for (let j = 0; j < n; j++) promise += gradient[i]! * covariance[i * n + j]! * gradient[j]!;
-  promise = Math.max(0, promise);
-  const largest = chi2 > 0 ? Math.sqrt(promise / chi2) : 0;
-  if (!(largest <= tolerances.gradient)) return null;
-  for (let j = 0; j < p; j++) if (search.boundHeld(j, gradient[j]!) !== activeBounds[j]) return null;
-  if (!agree(search.imageSquares(directions), every.squares)) return null;
-  return {
-    ...few,
-    fitted: data.map((value, i) => value - residuals[i]! / weights[i]!),
-    residuals,
-    chi2,
-    degreesOfFreedom: rows - rank,
-    termination: "gradient",
-    reached: { ...few.reached, gradient: largest },
-    remaining: Math.sqrt(promise),
-  };
+  let few = first;
+  let { coefficients } = first;
+  let before = Infinity;
+  for (let pass = 0; pass < MOST_PASSES; pass++) {
+    const { theta, covariance, rank, activeBounds, tolerances } = few;
+    let free = k;
+    for (let j = 0; j < p; j++) if (activeBounds[j] === 0) free++;
+    if (!few.converged || rank < free) return null;
+    const directions = weakDirections(covariance, n);
+    const every = passEveryRow(problem, theta, coefficients, directions);
+    if (every === null) return null;
+    const { residuals, chi2, gradient } = every;
+    for (let j = 0; j < p; j++) if (search.boundHeld(j, gradient[j]!) !== activeBounds[j]) return null;
+    const step = new Float64Array(n);
+    let promise = 0;
+    for (let i = 0; i < n; i++) {
+      for (let j = 0; j < n; j++) step[i] = step[i]! + covariance[i * n + j]! * gradient[j]!;
+      promise += step[i]! * gradient[i]!;
+    }
+    promise = Math.max(0, promise);
+    const largest = chi2 > 0 ? Math.sqrt(promise / chi2) : 0;
+    if (largest <= tolerances.gradient) {
+      if (!agree(search.imageSquares(directions), every.squares)) return null;
+      return {
+        ...few,
+        coefficients,
+        fitted: data.map((value, i) => value - residuals[i]! / weights[i]!),
+        residuals,
+        chi2,
+        degreesOfFreedom: rows - rank,
+        termination: "gradient",
+        iterations: pass,
+        evaluations: pass + 1,
+        reached: { ...few.reached, gradient: largest },
+        remaining: Math.sqrt(promise),
+      };
+    }
+    if (!(promise < 0.01 * before)) return null;
+    before = promise;
+    const next = search.concludeAt(theta.map((value, j) => value + step[j]!));
+    if (next === null) return null;
+    few = next;
+    coefficients = coefficients.map((value, j) => value + step[p + j]!);
+  }
+  return null;
 }
 
 /** Chi square and degrees of freedom of every row; fitted values and residuals stay those of the condensed rows. */
@@ -632,6 +659,17 @@ class Search {
     let g = 0;
     for (let r = 0; r < m; r++) g += derivative[j * m + r]! * residual[r]!;
     return g;
+  }
+
+  /** The same at another theta, as near as no step has to be asked for; null outside the bounds or where it is not finite. */
+  concludeAt(theta: Float64Array): SeparableSolution | null {
+    for (let j = 0; j < this.p; j++)
+      if (!(theta[j]! >= this.lower[j]! && theta[j]! <= this.upper[j]!)) return null;
+    this.trial.set(theta);
+    this.cost = this.evaluateTrial();
+    if (!Number.isFinite(this.cost)) return null;
+    this.acceptTrial();
+    return this.conclude("gradient");
   }
 
   /** |[D | Phi] v|^2 at theta, whose derivatives must be at hand. */
