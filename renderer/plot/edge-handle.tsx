@@ -22,6 +22,19 @@ export interface Edge {
   readonly onMoved: (x: number) => void;
 }
 
+/** Pixels that a handle takes to be hit. */
+const HANDLE = 24;
+
+/** The borders that a hand can tell apart: of those that would lie on each other only the first; zoomed in, all are there. */
+export function apart(edges: readonly Edge[], place: AxisPlace): readonly Edge[] {
+  const shown: Edge[] = [];
+  const scale = place.width / (place.to - place.from);
+  for (const edge of edges)
+    if (edge.of !== "line" || shown.every(({ x }) => Math.abs(x - edge.x) * scale >= HANDLE))
+      shown.push(edge);
+  return shown;
+}
+
 /** One key press moves by this share of what is shown. */
 const KEY_STEP = 0.004;
 

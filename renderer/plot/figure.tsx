@@ -1,7 +1,7 @@
 import { useEffect, useImperativeHandle, useRef, useState, type Ref } from "react";
 import Plotly from "plotly.js/lib/core";
 import scatter from "plotly.js/lib/scatter";
-import { EdgeHandle, type AxisPlace, type Edge } from "./edge-handle.tsx";
+import { apart, EdgeHandle, type AxisPlace, type Edge } from "./edge-handle.tsx";
 import type { FigureDescription, Trace } from "./figure-description.ts";
 
 Plotly.register([scatter]);
@@ -125,7 +125,8 @@ export function Figure({ figure, lit, onPoint, onChoose, edges, ref }: Props) {
         data-drawn={drawn}
         onPointerLeave={() => onPoint?.(null, null)}
       />
-      {place !== null && edges?.map((edge) => <EdgeHandle key={edge.label} edge={edge} place={place} />)}
+      {place !== null &&
+        apart(edges ?? [], place).map((edge) => <EdgeHandle key={edge.label} edge={edge} place={place} />)}
     </div>
   );
 }
