@@ -98,4 +98,30 @@ describe("rungline compare", () => {
     expect(temperature.error).toContain("temperature-of-several-samples");
     expect(temperature.error).toContain("temperatures-few");
   });
+
+  it("repeats a comparison from its file or from a report: weights, typed columns, reference", async () => {
+    await put("typed.csv", "sample;Growth (h)\r\na1;1\r\na2;2\r\nb1;3\r\nb2;4\r\n");
+    const choices = [
+      ...["--values", "typed.csv", "--against", "Growth", "--reference", "A"],
+      ...["--quality", "gap=1,highest_n=-0.5"],
+    ];
+    await bench.run("compare", "first", "second", ...choices, "--out", "c.json");
+    await bench.run("report", "first", "second", ...choices, "--out", "r.html");
+    const first = comparisonSchema.parse(JSON.parse(await get("c.json")));
+    expect(first.choices).toMatchObject({ quality: { gap_eV: 1, highest_n: -0.5 }, reference: "A" });
+    expect(first.notes.map(({ code }) => code)).toContain("quality-part-left-out");
+    for (const from of ["c.json", "r.html"]) {
+      const again = await bench.run(
+        "compare",
+        ...["first", "second", "--choices", from, "--out", "again.json"],
+      );
+      expect(again.status, again.error).toBe(0);
+      const repeated = comparisonSchema.parse(JSON.parse(await get("again.json")));
+      expect({ ...repeated, run: null }).toStrictEqual({ ...first, run: null });
+    }
+    const other = await bench.run("compare", "first", "second", "--choices", "c.json", "--reference", "B");
+    expect(other.out).toMatch(/^Reference +batch B$/m);
+    for (const wrong of ["first/a1.json", "typed.csv", "none.json"])
+      expect((await bench.run("compare", "first", "second", "--choices", wrong)).status, wrong).toBe(2);
+  });
 });

@@ -1,14 +1,25 @@
 import { describe, expect, it } from "vitest";
-import { resultSchema, parseProtocolSource, parseResults } from "../../../app/protocol/index.ts";
+import {
+  findComparisonChoices,
+  parseProtocolSource,
+  parseResults,
+  resultSchema,
+  type ComparisonChoicesInput,
+} from "../../../app/protocol/index.ts";
 import { reportToHtml, REPORT_HTML_MARK, type ReportInput } from "../../../app/report/index.ts";
 import { compareSamples } from "../../../app/tasks/index.ts";
+import { samplePower } from "../../renderer/power-sample.ts";
 import { reportCurves, reportSamples } from "../../support/report-samples.ts";
 
 const RUN = { version: "0.1.0", node: "v20.0.0", started: "2026-01-02T03:04:05.000Z" };
 
-function input(count: number, withCurves = false): ReportInput {
-  const results = reportSamples(count);
-  const compared = count > 1 ? compareSamples(results, {}, RUN) : null;
+function input(
+  count: number,
+  withCurves = false,
+  choices: ComparisonChoicesInput = {},
+  results = reportSamples(count),
+): ReportInput {
+  const compared = count > 1 ? compareSamples(results, choices, RUN) : null;
   if (compared !== null && !compared.ok) throw new Error(JSON.stringify(compared.issues));
   return {
     results,
@@ -71,6 +82,36 @@ describe("a report", () => {
     expect(source.ok && source.value.choices).toStrictEqual(input(2).results[0]!.protocol);
   });
 
+  it("carries laws of temperature, the parts of quality, power series side by side, and how all were compared", () => {
+    const power = samplePower().result.power!;
+    const results = reportSamples(8).map((result, i) => ({
+      ...result,
+      power: i < 2 ? power : null,
+      reading: {
+        ...result.reading,
+        facts: [
+          { key: "sample", label: "Sample", text: i < 2 ? `S${i}` : "S9" },
+          { key: "batch", label: "Batch", text: i === 0 ? "A" : "B" },
+          { key: "temperature", label: "T", text: `${i < 2 ? 2 : 30 * i} K` },
+        ],
+      },
+    }));
+    const choices = { quality: { gap_eV: 2 } };
+    const text = reportToHtml(input(8, false, choices, results));
+    for (const words of [
+      "Laws of temperature",
+      "Figure of quality, from the weights that were given",
+      "Figure of quality by the weights",
+      "Power series by sample and batch",
+      "Blockade volume, n = ",
+      "temperature with the laws fitted to it; ",
+    ])
+      expect(text).toContain(words);
+    expect(text).not.toMatch(/NaN|undefined/);
+    expect(findComparisonChoices(text)).toMatchObject(choices);
+    expect(parseResults(text).ok).toBe(true);
+  });
+
   it("says where no curves were beside a result, and when a fit did not converge", () => {
     const [first] = reportSamples(1);
     const failed = { ...first!, status: "not-converged" as const };
@@ -99,7 +140,7 @@ describe("a report", () => {
   });
 
   it("of 20 samples with spectra of 9,000 points is made in 5 s and smaller than 5 MB", () => {
-    const twenty = input(20, true);
+    const twenty = input(20, true, { quality: { gap_eV: 1, rydberg_eV: -1 } });
     const began = performance.now();
     const text = reportToHtml(twenty);
     expect(performance.now() - began).toBeLessThan(5000);
