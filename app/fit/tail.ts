@@ -311,6 +311,7 @@ export class TailEvaluator {
   /** The continuum, its edge as broad as the width law's limit at infinite n; its derivatives are kept. */
   private addContinuum(law: LevelParameters, widths: WidthValues): void {
     const { columns, spec, continuum: out, grid, limit } = this;
+    if (spec.continuum === false) return;
     const { nodes } = grid;
     widthLaw(FAR_N, spec.levels.defect0, widths, limit);
     const width = Math.max(0, limit[WIDTH.width]!) + this.lorentz;
@@ -327,6 +328,7 @@ export class TailEvaluator {
 
   private differentiateContinuum(q: number): void {
     const { columns, spec, continuum: out, grid, limit } = this;
+    if (spec.continuum === false) return;
     const odd = spec.continuumOdd ? 2 * q : 0;
     addFromGrid(grid, out.absorptiveByGap, 1, columns.byLevel[0]!);
     addFromGrid(grid, out.dispersiveByGap, odd, columns.byLevel[0]!);
