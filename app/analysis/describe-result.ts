@@ -245,6 +245,9 @@ export function describeResult(
       })),
     ],
     diagnostics: describeDiagnostics(full, protocol, laws.exponentCurve),
+  };
+}
+
 /** Trials and drawn spectra of fits of the light are not fits of the light. */
 function linearisedNotes({ domain }: FullFit, { uncertainty }: Protocol): Note[] {
   const made = [
@@ -261,9 +264,6 @@ function linearisedNotes({ domain }: FullFit, { uncertainty }: Protocol): Note[]
       "nothing to do where the trials lie within a few standard errors of the fit",
     ),
   ];
-}
-
-  };
 }
 
 /** 3 x 3 covariance of width, area and asymmetry of line j. */
