@@ -79,6 +79,8 @@ function scanWidth(
   const odd = new Float64Array(count);
   const normal = new Float64Array(BASIS * BASIS);
   const right = new Float64Array(BASIS);
+  const factor = new Float64Array(BASIS * BASIS);
+  const image = new Float64Array(BASIS);
   for (let c = 0; c < count; c++) {
     const at = first + c * stride;
     const middle = Math.floor((at - first) / binWidth);
@@ -141,39 +143,31 @@ function scanWidth(
       y2 += wuu * y;
       total += w * y * y;
     }
-    // The odd basis function is 2 u l, so its sum with 1 is twice that of u l.
-    normal.set([
-      ll,
-      0,
-      0,
-      0,
-      0,
-      lo,
-      oo,
-      0,
-      0,
-      0,
-      l1,
-      2 * lu,
-      s0,
-      0,
-      0,
-      lu,
-      ou,
-      s1,
-      s2,
-      0,
-      l2,
-      o2,
-      s2,
-      s3,
-      s4,
-    ]);
-    right.set([ly, oy, y0, y1, y2]);
     // A line needs points on both flanks and on its top; at the ends of the range a shortened window is enough.
     if (filled < 9 || core < 3 || middle - low < BINS_PER_WIDTH / 2 || high - middle < BINS_PER_WIDTH / 2)
       continue;
-    const solved = solveFirst(normal, right, total);
+    // The lower triangle; the odd basis function is 2 u l, so its sum with 1 is twice that of u l.
+    normal[0] = ll;
+    normal[5] = lo;
+    normal[6] = oo;
+    normal[10] = l1;
+    normal[11] = 2 * lu;
+    normal[12] = s0;
+    normal[15] = lu;
+    normal[16] = ou;
+    normal[17] = s1;
+    normal[18] = s2;
+    normal[20] = l2;
+    normal[21] = o2;
+    normal[22] = s2;
+    normal[23] = s3;
+    normal[24] = s4;
+    right[0] = ly;
+    right[1] = oy;
+    right[2] = y0;
+    right[3] = y1;
+    right[4] = y2;
+    const solved = solveFirst(normal, right, total, factor, image);
     if (solved === null) continue;
     const reduced = Math.max(1, solved.chi2 / Math.max(1, filled - BASIS));
     significance[c] = solved.first / Math.sqrt(solved.firstVariance * reduced);
@@ -203,11 +197,11 @@ function solveFirst(
   normal: Float64Array,
   right: Float64Array,
   total: number,
+  l: Float64Array,
+  z: Float64Array,
 ): { first: number; second: number; firstVariance: number; chi2: number } | null {
   const k = BASIS;
   // Order 4,3,2,1,0: the last pivot is then what is left of the line after the others, so its variance is 1/pivot^2.
-  const l = new Float64Array(k * k);
-  const z = new Float64Array(k);
   let explained = 0;
   for (let a = 0; a < k; a++) {
     const i = k - 1 - a;

@@ -64,7 +64,7 @@ export class SpectrumProblem implements SeparableProblem {
     const k = spec.ns.length;
     this.rows = m;
     this.data = points.signal;
-    this.weights = Float64Array.from(points.sigma, (sigma) => 1 / sigma);
+    this.weights = points.sigma.map((sigma) => 1 / sigma);
     this.layout = makeLayout(spec);
     this.nonlinear = this.layout.count;
     this.linear = k * (hasOddAreas(spec) ? 2 : 1) + spec.background.length;
@@ -391,10 +391,16 @@ export class SpectrumProblem implements SeparableProblem {
           out[column + i]! += a * x![from + i]! + b * y![from + i]! + (c * z![from + i]! + d * w![from + i]!);
     };
     if (spec.tiedLevels !== null) for (let p = 0; p < layout.lawCount; p++) add(p, [byLevel[p]!], [strength]);
+    const factors: number[] = [];
     const link = (target: Int32Array, { gain, parameters }: LawLink, by: readonly Float64Array[]): void => {
+      factors.length = parameters;
       for (let j = 0; j < k; j++) {
-        const factors = Array.from({ length: parameters }, (_, p) => strength * gain[p * k + j]!);
-        if (factors.some((factor) => factor !== 0)) add(target[j]!, by, factors);
+        let some = false;
+        for (let p = 0; p < parameters; p++) {
+          factors[p] = strength * gain[p * k + j]!;
+          some ||= factors[p] !== 0;
+        }
+        if (some) add(target[j]!, by, factors);
       }
     };
     if (spec.tiedLevels === null) link(layout.energyAt, spec.tail.levelLink, byLevel);

@@ -134,18 +134,19 @@ function scanDefect(input: LevelInput, shifted: Float64Array, defect: number | n
   const k = input.n.length;
   const scale = Float64Array.from(shifted, (_, i) => 1 / Math.sqrt(input.covariance[i * k + i]!));
   if (!scale.every((one) => Number.isFinite(one) && one > 0)) return null;
-  const correlation = input.covariance.map(
-    (value, at) => value * scale[Math.floor(at / k)]! * scale[at % k]!,
-  );
+  const correlation = new Float64Array(k * k);
+  for (let i = 0; i < k; i++)
+    for (let j = 0; j < k; j++) correlation[i * k + j] = input.covariance[i * k + j]! * scale[i]! * scale[j]!;
   const factor = choleskyFactor(correlation, k);
   if (factor === null) return null;
-  const whiten = (at: (i: number) => number): Float64Array => {
-    const out = Float64Array.from(shifted, (_, i) => at(i) * scale[i]!);
-    forwardSubstitute(factor, k, out);
-    return out;
+  const whiten = (values: Float64Array): Float64Array => {
+    for (let i = 0; i < k; i++) values[i] = values[i]! * scale[i]!;
+    forwardSubstitute(factor, k, values);
+    return values;
   };
-  const target = whiten((i) => shifted[i]!);
-  const ones = whiten(() => 1);
+  const target = whiten(shifted.slice());
+  const ones = whiten(new Float64Array(k).fill(1));
+  const column = new Float64Array(k);
   const onesNorm = dot(ones, ones);
   const first = Math.min(...input.n);
   const candidates: number[] = [];
@@ -156,7 +157,8 @@ function scanDefect(input: LevelInput, shifted: Float64Array, defect: number | n
   let best: Float64Array | null = null;
   let bestChi2 = Infinity;
   for (const delta of candidates) {
-    const column = whiten((i) => -1 / (input.n[i]! - delta) ** 2);
+    for (let i = 0; i < k; i++) column[i] = -1 / (input.n[i]! - delta) ** 2;
+    whiten(column);
     let rydberg = input.heldRydberg_eV;
     if (rydberg === undefined) {
       const share = dot(ones, column) / onesNorm;

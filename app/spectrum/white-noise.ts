@@ -55,7 +55,9 @@ const CUT_VARIANCE = 0.99389;
 /** Robust scale of numbers around zero; 0 where most of them are zero. */
 export function robustScale(z: ArrayLike<number>): number {
   if (z.length === 0) return 0;
-  const sizes = Float64Array.from(z, Math.abs).sort();
+  const sizes = new Float64Array(z.length);
+  for (let i = 0; i < z.length; i++) sizes[i] = Math.abs(z[i]!);
+  sizes.sort();
   let scale = 1.4826022 * sizes[sizes.length >> 1]!;
   if (scale === 0) {
     // Coarse digits: most neighbours are equal. The mean square then still sees the steps.
@@ -110,8 +112,9 @@ export function longContrasts(
   const leak = new Float64Array(m);
   const own = new Float64Array(m);
   const w = new Float64Array(size);
+  const work = makeWork();
   for (let i = HALF; i < m - HALF; i++) {
-    if (!residualWeights(x, relative, i, w)) {
+    if (!residualWeights(x, relative, i, w, work)) {
       leak[i] = Infinity;
       continue;
     }
@@ -139,25 +142,52 @@ export function longContrasts(
   return { z, long };
 }
 
+/** Room for residualWeights, which is called for every point. */
+interface Work {
+  readonly normal: Float64Array;
+  readonly moments: Float64Array;
+  readonly column: Float64Array;
+  readonly place: Float64Array;
+  readonly weight: Float64Array;
+}
+
+function makeWork(): Work {
+  const p = DEGREE + 1;
+  return {
+    normal: new Float64Array(p * p),
+    moments: new Float64Array(2 * DEGREE + 1),
+    column: new Float64Array(p),
+    place: new Float64Array(2 * HALF + 1),
+    weight: new Float64Array(2 * HALF + 1),
+  };
+}
+
 /** e_i minus the row of the weighted least-squares quintic about place i (size numbers); false where it is not determined. */
-function residualWeights(x: Float64Array, relative: Float64Array, i: number, out: Float64Array): boolean {
+function residualWeights(
+  x: Float64Array,
+  relative: Float64Array,
+  i: number,
+  out: Float64Array,
+  { normal, moments, column, place, weight }: Work,
+): boolean {
   const p = DEGREE + 1;
   const size = out.length;
   const first = i - HALF;
   const reach = Math.max(x[i]! - x[first]!, x[first + size - 1]! - x[i]!);
-  const normal = new Float64Array(p * p);
-  const moments = new Float64Array(2 * DEGREE + 1);
+  moments.fill(0);
   for (let j = 0; j < size; j++) {
     const u = (x[first + j]! - x[i]!) / reach;
+    place[j] = u;
     let power = 1 / relative[first + j]! ** 2;
-    for (let k = 0; k < moments.length; k++) {
+    weight[j] = power;
+    for (let k = 0; k <= 2 * DEGREE; k++) {
       moments[k] = moments[k]! + power;
       power *= u;
     }
   }
   for (let a = 0; a < p; a++) for (let b = 0; b < p; b++) normal[a * p + b] = moments[a + b]!;
   // First column of the inverse, by Cholesky: the value of the polynomial at u = 0.
-  const column = new Float64Array(p);
+  column.fill(0);
   column[0] = 1;
   for (let a = 0; a < p; a++) {
     for (let b = 0; b <= a; b++) {
@@ -180,10 +210,10 @@ function residualWeights(x: Float64Array, relative: Float64Array, i: number, out
     column[a] = sum / normal[a * p + a]!;
   }
   for (let j = 0; j < size; j++) {
-    const u = (x[first + j]! - x[i]!) / reach;
+    const u = place[j]!;
     let value = 0;
     for (let a = p - 1; a >= 0; a--) value = value * u + column[a]!;
-    out[j] = -value / relative[first + j]! ** 2;
+    out[j] = -value * weight[j]!;
   }
   out[HALF] = out[HALF]! + 1;
   return true;
