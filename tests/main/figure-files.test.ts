@@ -1,11 +1,12 @@
 import { crc32, inflateSync } from "node:zlib";
 import {
   decodePDFRawStream,
+  PDFArray,
   PDFDict,
   PDFDocument,
   PDFName,
-  PDFRawStream,
   type PDFObject,
+  type PDFRawStream,
 } from "@cantoo/pdf-lib";
 import { beforeAll, describe, expect, it } from "vitest";
 import {
@@ -69,9 +70,7 @@ async function textsOf(bytes: Uint8Array): Promise<string[]> {
   }
   const contents = node.Contents()!;
   const streams =
-    contents instanceof PDFRawStream
-      ? [contents]
-      : contents.asArray().map((one) => document.context.lookup(one));
+    contents instanceof PDFArray ? contents.asArray().map((one) => document.context.lookup(one)) : [contents];
   return streams
     .map(plain)
     .join("\n")
