@@ -225,7 +225,7 @@ function describeTail(
     fromN,
     toN:
       protocol.tail.cutoff_n === null
-        ? lastTiedLine(points, state, fromN, protocol.lines.instrument_lorentz_fwhm_eV)
+        ? lastTiedLine(state, fromN, protocol.lines.instrument_lorentz_fwhm_eV)
         : Math.max(fromN - 1, protocol.tail.cutoff_n),
     band: protocol.tail.cutoff_n === null && choices.smeared !== true,
     ...(choices.smeared === true ? { continuum: false } : {}),
@@ -248,18 +248,15 @@ function envelopeOf(protocol: Protocol): TailSpec["envelope"] {
   return protocol.material.envelope === "P" ? "forbidden-3d" : "allowed-3d";
 }
 
-/** Lines are summed one by one until they run together, or stand closer than the points can tell. */
-function lastTiedLine(points: FitPoints, state: LadderState, fromN: number, lorentz: number): number {
+/**
+ * Lines are summed one by one until they run together, however coarse the points: a few points between lines see a line or
+ * miss it, and not the mean.
+ */
+function lastTiedLine(state: LadderState, fromN: number, lorentz: number): number {
   const out = new Float64Array(WIDTH.size);
-  const { energy } = points;
-  let i = energy.length - 1;
   for (let n = fromN; n < fromN + MOST_TIED_LINES; n++) {
-    const gap = spacing(n, state.levels);
     widthLaw(n, state.levels.defect0, state.widths, out);
-    const at = energyOf(n, state.levels);
-    while (i > 1 && energy[i - 1]! > at) i--;
-    const step = i > 0 ? energy[i]! - energy[i - 1]! : 0;
-    if (out[WIDTH.width]! + lorentz >= BLENDED * gap || gap < 2 * step) return n - 1;
+    if (out[WIDTH.width]! + lorentz >= BLENDED * spacing(n, state.levels)) return n - 1;
   }
   return fromN + MOST_TIED_LINES - 1;
 }
