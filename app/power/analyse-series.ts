@@ -23,7 +23,7 @@ import { fitPowerSeries, type FittedMember, type FittedSeries } from "./fit-seri
 import { judgePower } from "./judge-power.ts";
 import type { PowerSeries, SeriesIssue } from "./read-series.ts";
 import { wordPowerSeriesIssue, type PowerSeriesIssue } from "./series-issue.ts";
-import { powerInput, withHeaderFacts } from "./series-input.ts";
+import { controlTable, powerInput, withHeaderFacts } from "./series-input.ts";
 import type { JudgeIssue } from "./judge-issue.ts";
 
 /** One spectrum as it was fitted, for a figure of all of them above each other. */
@@ -44,7 +44,8 @@ export interface SeriesAnalysis {
 
 /**
  * The main job on a power series: the spectrum of the lowest power gives the lines, all spectra are fitted together, and
- * what the power does is judged. Pure: the same series and protocol give the same bits. Throws `Cancelled` when the watch
+ * what the power does is judged, beside a control series where there is one (its own reference, its own joint fit).
+ * Pure: the same series and protocol give the same bits. Throws `Cancelled` when the watch
  * says so.
  */
 export function analyseSeries(
@@ -52,11 +53,18 @@ export function analyseSeries(
   protocol: Protocol,
   watch: Watch,
   wordIssue: (issue: SeriesIssue) => Wording,
+  control: PowerSeries | null = null,
 ): Result<SeriesAnalysis, JudgeIssue> {
   const reference = series.members[0]!;
-  const base = analyse(reference.spectrum, protocol, partOfWatch(watch, 0.08, 0.4));
+  const alone = withoutSmeared(protocol);
+  const base = analyse(reference.spectrum, alone, partOfWatch(watch, 0.08, 0.4));
   const unread = series.failed.map(({ label, issues }) => ({ label, wordings: issues.map(wordIssue) }));
-  const fitted = fitPowerSeries(series.members, base.result, protocol, partOfWatch(watch, 0.4, 0.9));
+  const fitted = fitPowerSeries(
+    series.members,
+    base.result,
+    protocol,
+    partOfWatch(watch, 0.4, control === null ? 0.9 : 0.82),
+  );
   if (fitted === null)
     return success({
       result: {
@@ -74,10 +82,16 @@ export function analyseSeries(
   ];
   const factor = intervalFactor(protocol.uncertainty.level);
   const facts = withHeaderFacts(protocol, fitted.members);
-  const judged = judgePower(powerInput(fitted, facts.protocol, factor), partOfWatch(watch, 0.9, 1));
+  const beside = control === null ? null : fitControl(control, alone, partOfWatch(watch, 0.82, 0.9));
+  const input = powerInput(fitted, facts.protocol, factor);
+  const judged = judgePower(
+    beside?.fitted == null ? input : { ...input, control: controlTable(beside.fitted) },
+    partOfWatch(watch, 0.9, 1),
+  );
   if (!judged.ok) return failure(...judged.issues);
   const notes = [
     ...leftOut(failed),
+    ...(beside?.notes ?? []),
     ...judged.value.notes,
     ...fitted.notes,
     ...series.notes,
@@ -90,7 +104,13 @@ export function analyseSeries(
       ...base.result,
       status: fitted.joint.solution.converged ? base.result.status : "not-converged",
       notes: sortNotes(notes),
-      power: { ...judged.value.power, fit: describeJoint(fitted, failed, factor) },
+      power: {
+        ...judged.value.power,
+        fit: {
+          ...describeJoint(fitted, failed, factor),
+          ...(beside?.fitted == null ? {} : { control: sourcesOf(beside.fitted) }),
+        },
+      },
     },
     spectra: fitted.members.map(drawMember),
     failed,
@@ -131,23 +151,58 @@ function describeJoint(
     dof: solution.degreesOfFreedom,
     reduced_chi2: solution.chi2 / Math.max(1, solution.degreesOfFreedom),
     iterations: solution.iterations,
-    sources: members.map(({ member, fit, points, heldWidths }) => ({
-      label: member.label,
-      file: member.spectrum.file,
-      sha256: member.spectrum.sha256,
-      power_uW: member.power_uW,
-      power_from: member.power_from,
-      points: points.energy.length,
-      reduced_chi2: fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom),
-      tail: fit.factor?.value ?? null,
-      held_widths: [...heldWidths],
-    })),
+    sources: sourcesOf({ members }),
     failed: failed.map(({ label, wordings }) => ({
       label,
       message: wordings
         .map(({ message, remedy }) => (remedy === "" ? message : `${message}; ${remedy}`))
         .join(". "),
     })),
+  };
+}
+
+function sourcesOf({ members }: Pick<FittedSeries, "members">): NonNullable<PowerResult["fit"]>["sources"] {
+  return members.map(({ member, fit, points, heldWidths }) => ({
+    label: member.label,
+    file: member.spectrum.file,
+    sha256: member.spectrum.sha256,
+    power_uW: member.power_uW,
+    power_from: member.power_from,
+    points: points.energy.length,
+    reduced_chi2: fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom),
+    tail: fit.factor?.value ?? null,
+    held_widths: [...heldWidths],
+  }));
+}
+
+/** The joint fit has no columns for what lines have lost to their surroundings; its reference must not have them either. */
+function withoutSmeared(protocol: Protocol): Protocol {
+  return { ...protocol, tail: { ...protocol.tail, smeared: "none" } };
+}
+
+/** The control series as fitted, null where it shows no series or too few powers, with what has to be said. */
+function fitControl(
+  control: PowerSeries,
+  protocol: Protocol,
+  watch: Watch,
+): { fitted: FittedSeries | null; notes: Note[] } {
+  const { spectrum } = control.members[0]!;
+  const base = analyse(spectrum, protocol, partOfWatch(watch, 0, 0.5));
+  const fitted = fitPowerSeries(control.members, base.result, protocol, partOfWatch(watch, 0.5, 1));
+  const powers = new Set(fitted?.members.map(({ member }) => member.power_uW)).size;
+  if (fitted !== null && powers >= 2) return { fitted, notes: [] };
+  return {
+    fitted: null,
+    notes: [
+      doubt(
+        "power-control-left-out",
+        "power.other.plasma",
+        fitted === null
+          ? `The control series shows no exciton series in ${control.members[0]!.label}, its lowest power, and says nothing.`
+          : "The control series has fewer than two powers that could be fitted, and says nothing.",
+        "give the control series at several powers, over the same window as the series",
+      ),
+    ],
   };
 }
 

@@ -85,6 +85,8 @@ interface Work {
   /** Whether the tail of tied lines bleaches on as n^10 or is all of one factor. */
   rolls: boolean;
   held: readonly number[];
+  /** By n: how far the area moves, in standard errors, with the other tail (one factor, or bleaching on as n^10). */
+  leans: ReadonlyMap<number, number>;
 }
 
 /**
@@ -164,6 +166,7 @@ export function fitPowerSeries(
         "leave out the spectra that look different, name the lines (lines.n), or shorten the window",
       ),
     );
+  notes.push(...leaningNotes(works));
   const weak = works.filter((work) => work.held.length > 0);
   if (weak.length > 0)
     notes.push(
@@ -222,6 +225,7 @@ function prepare(
     ),
     rolls: false,
     held: [],
+    leans: new Map(),
   };
 }
 
@@ -232,6 +236,7 @@ function prepare(
 function warmUp(work: Work, settings: Settings): void {
   const { protocol, unit, choices, watch } = settings;
   let best: { fit: SpectrumFit; state: LadderState; rolls: boolean } | null = null;
+  const trials: SpectrumFit[] = [];
   for (const rolls of choices.tail ? [false, true] : [false]) {
     work.rolls = rolls;
     const model = withBleachedTail(buildModel(work.thin, work.state, protocol, unit, choices), work);
@@ -251,15 +256,53 @@ function warmUp(work: Work, settings: Settings): void {
     );
     stopIfCancelled(watch);
     const fit = fits[0]!;
+    trials.push(fit);
     // Areas tell how far bleaching has gone before the second trial asks for it.
     if (!rolls) adopt(work, fit, model.state);
     if (best === null || fit.solution.chi2 < best.fit.solution.chi2 - CLEARLY)
       best = { fit, state: model.state, rolls };
   }
   if (best === null) return;
+  if (trials.length === 2) work.leans = leansOf(trials[0]!, trials[1]!);
   work.rolls = best.rolls;
   adopt(work, best.fit, best.state);
 }
+
+/** Change of each area from one fit to the other in standard errors of the larger one. */
+function leansOf(a: SpectrumFit, b: SpectrumFit): Map<number, number> {
+  const k = a.lines.ns.length;
+  const sigma = ({ lines }: SpectrumFit, j: number): number =>
+    Math.sqrt(lines.covariance[(2 * k + j) * 4 * k + 2 * k + j]!);
+  return new Map(
+    a.lines.ns.map((n, j) => {
+      const change = Math.abs(a.lines.area[j]! - b.lines.area[j]!) / Math.max(sigma(a, j), sigma(b, j));
+      return [n, Number.isFinite(change) ? change : 0];
+    }),
+  );
+}
+
+/** Lines whose area hangs on how the tail above them is thought to bleach. */
+function leaningNotes(works: readonly Work[]): Note[] {
+  const worst = new Map<number, { by: number; at: number }>();
+  for (const { leans, member } of works)
+    for (const [n, by] of leans)
+      if (by > LEANS && by > (worst.get(n)?.by ?? 0)) worst.set(n, { by, at: member.power_uW });
+  if (worst.size === 0) return [];
+  const told = [...worst]
+    .sort(([a], [b]) => a - b)
+    .map(([n, { by, at }]) => `n = ${n} by ${by.toFixed(1)} at ${at} uW`);
+  return [
+    doubt(
+      "lines-lean-on-tail",
+      "power.lines",
+      `Areas of the highest lines hang on how the tail above them bleaches: a tail of one factor and one that bleaches on as n^10 put them apart, in standard errors: ${told.join("; ")}. The better one is taken; what it could be otherwise is not in the errors.`,
+      "take saturation and exponent from the lines below, or resolve more lines (less power, narrower lines)",
+    ),
+  ];
+}
+
+/** Standard errors that count as leaning. */
+const LEANS = 1;
 
 /** The state of a spectrum after a fit; weak lines keep the width they had, errors of energies those of the reference. */
 function adopt(work: Work, fit: SpectrumFit, before: LadderState): void {

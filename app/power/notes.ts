@@ -461,7 +461,9 @@ function otherNotes({ power }: Findings): Note[] {
       "plasma-not-excluded",
       "power.other.plasma",
       `One colour cannot tell blockade from bleaching by a plasma or by heat. Evidence here: ${evidence === "" ? "none" : evidence}.`,
-      "take a control series with the pump between the lines or above the gap at the same absorbed power",
+      !power.other.plasma.some((one) => one.evidence.includes("control"))
+        ? "take a control series with the pump between the lines or above the gap at the same absorbed power (rungline power --control)"
+        : "the control series speaks per incident power: compare the absorbed powers of the two pumps",
     ),
   );
   if ((power.other.heating.significance ?? 0) > SPEAKS)

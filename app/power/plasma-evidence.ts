@@ -71,7 +71,7 @@ export function plasmaEvidence(
   const control = controlRatio(flow);
   if (control !== null) {
     out.push({
-      evidence: "bleaching in the control series over that in the series, mean of the lines",
+      evidence: "bleaching per power in the control series over that in the series, mean of the lines",
       value: control,
       speaks:
         control > 0.5

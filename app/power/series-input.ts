@@ -12,7 +12,7 @@ const SEEN = 5;
 
 /** Numbers of a joint fit as the judgement of a power series takes them; `factor` makes intervals of standard errors. */
 export function powerInput(series: FittedSeries, protocol: Protocol, factor: number): PowerInput {
-  const ns = [...new Set(series.members.flatMap(({ fit }) => [...fit.lines.ns]))].sort((a, b) => a - b);
+  const ns = linesOf(series);
   const table = lineTable(series, ns);
   const surrounding = surroundingAt(series.members[0]!, ns, protocol);
   return {
@@ -24,6 +24,15 @@ export function powerInput(series: FittedSeries, protocol: Protocol, factor: num
     series: levelLawOf(series.members[0]!),
     protocol,
   };
+}
+
+/** Lines and powers of a control series. */
+export function controlTable(series: FittedSeries): PowerInput["table"] {
+  return lineTable(series, linesOf(series));
+}
+
+function linesOf({ members }: FittedSeries): number[] {
+  return [...new Set(members.flatMap(({ fit }) => [...fit.lines.ns]))].sort((a, b) => a - b);
 }
 
 /** Energies, widths, areas and peaks of all lines at all powers with their whole covariance. */

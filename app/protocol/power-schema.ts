@@ -137,6 +137,21 @@ const scaling = z.strictObject({
   p: number,
 });
 
+/** One spectrum as it took part in a joint fit. */
+const powerSourceSchema = z.strictObject({
+  label: z.string(),
+  file: z.string(),
+  sha256: z.string(),
+  power_uW: z.number(),
+  power_from: z.enum(["typed in", "column header", "header line", "file name"]),
+  points: z.int(),
+  reduced_chi2: number,
+  /** Factor of the tail. */
+  tail: number,
+  /** Lines too weak for a width of their own. */
+  held_widths: z.array(z.int()),
+});
+
 /** The part `power` of a result. */
 export const powerSchema = z.strictObject({
   excitation: z.enum(["separate-pump", "scanned-probe", "broadband"]),
@@ -181,21 +196,9 @@ export const powerSchema = z.strictObject({
       dof: z.int(),
       reduced_chi2: number,
       iterations: z.int(),
-      sources: z.array(
-        z.strictObject({
-          label: z.string(),
-          file: z.string(),
-          sha256: z.string(),
-          power_uW: z.number(),
-          power_from: z.enum(["typed in", "column header", "header line", "file name"]),
-          points: z.int(),
-          reduced_chi2: number,
-          /** Factor of the tail. */
-          tail: number,
-          /** Lines too weak for a width of their own. */
-          held_widths: z.array(z.int()),
-        }),
-      ),
+      sources: z.array(powerSourceSchema),
+      /** Spectra of the control series, where one took part. */
+      control: z.array(powerSourceSchema).optional(),
       /** Spectra that could not take part, and why. */
       failed: z.array(z.strictObject({ label: z.string(), message: z.string() })),
     })

@@ -21,8 +21,11 @@ export function analysePower(
   if (!protocol.ok) return protocol;
   const series = readPowerSeries(request.files, protocol.value, watch);
   if (!series.ok) return series;
+  const control =
+    request.control === undefined ? null : readPowerSeries(request.control, protocol.value, watch);
+  if (control !== null && !control.ok) return control;
   const readSeconds = watch.seconds() - began;
-  const analysed = analyseSeries(series.value, protocol.value, watch, wordIssue);
+  const analysed = analyseSeries(series.value, protocol.value, watch, wordIssue, control?.value ?? null);
   if (!analysed.ok) return analysed;
   const { result, ...rest } = analysed.value;
   const { seconds, ...described } = result;

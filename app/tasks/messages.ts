@@ -9,6 +9,8 @@ import type { Inspection } from "./inspect-file.ts";
 /** The files of one power series, in the order given, and what the user chose. */
 export interface SeriesRequest {
   readonly files: readonly { readonly file: string; readonly bytes: Uint8Array }[];
+  /** A second series whose pump makes pairs but none of these excitons. */
+  readonly control?: readonly { readonly file: string; readonly bytes: Uint8Array }[];
   readonly choices: unknown;
 }
 

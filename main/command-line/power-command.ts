@@ -30,6 +30,7 @@ export interface PowerOptions extends ChoiceOptions {
   readonly out?: string;
   readonly format?: Format;
   readonly curves?: boolean;
+  readonly control?: readonly string[];
 }
 
 /**
@@ -61,6 +62,12 @@ export async function powerCommand(
   const { files, unreadable } = await readAll(inputs.files, io);
   if (unreadable > 0) status = EXIT.input;
   if (files.length === 0) return EXIT.input;
+  const beside = options.control === undefined ? null : await listInputs(options.control, io.workingFolder);
+  for (const { word, why } of beside?.nothingFound ?? []) io.stderr(`rungline: ${word}: ${why}\n`);
+  const control = beside === null ? null : await readAll(beside.files, io);
+  // Without its control the series would say less than was asked for.
+  if (beside !== null && control !== null && (beside.nothingFound.length > 0 || control.unreadable > 0))
+    return EXIT.input;
 
   const progress = await makeProgress(io, [
     files.length === 1 ? files[0]!.file : `${files.length} files as one power series`,
@@ -68,7 +75,7 @@ export async function powerCommand(
   progress.begin(0);
   const run = { version: programVersion(), node: process.version, started: io.now() };
   const outcome = await (io.runPower ?? runPowerInline)(
-    { files, choices: choices.choices },
+    { files, choices: choices.choices, ...(control === null ? {} : { control: control.files }) },
     run,
     (fraction, step) => progress.update(0, fraction, step),
     signal,

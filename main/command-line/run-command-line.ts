@@ -116,6 +116,10 @@ function describeProgram(
       .description("power series to saturation and blockade: columns of one file, several files, or a folder")
       .argument("<file...>", "spectra, folders of spectra, or patterns with * and ?"),
   )
+    .option(
+      "--control <file...>",
+      "a second series whose pump makes pairs but none of these excitons: what of the bleaching it shows is no blockade",
+    )
     .option("--out <path>", "a file for the result; the ending says the format")
     .addOption(new Option("--format <format>", "how the result is written").choices([...FORMATS]))
     .option(

@@ -77,4 +77,34 @@ describe("rungline power", () => {
     expect(missing.status).toBe(3);
     expect(missing.error).toContain("not_there_3uW.csv");
   });
+
+  it("sets a control series beside: a pump that bleaches a fifth as much says so in the evidence", async () => {
+    const { run, folder } = await withFiles();
+    const weak = { ...SMALL, saturation10_per_uW: SMALL.saturation10_per_uW / 5, seed: 12 };
+    const control = makePowerSeries(weak);
+    for (const [a, power] of weak.powers_uW.entries())
+      await writeFile(join(folder, `beside_${power}uW.csv`), singleFile(control, a));
+    const files = SMALL.powers_uW.map((power) => `s_${power}uW.csv`);
+    const { status, out } = await run(
+      "power",
+      ...files,
+      "--control",
+      "beside_*.csv",
+      ...CHOICES,
+      "--format",
+      "json",
+    );
+    expect(status).toBe(0);
+    const { power, notes } = JSON.parse(out) as RunglineResult;
+    const row = power!.other.plasma.find(({ evidence }) => evidence.includes("control"))!;
+    // Derived: every S of the control is a fifth; the highest lines, which weigh most, have it to a few percent.
+    expect(row.value!).toBeGreaterThan(0.1);
+    expect(row.value!).toBeLessThan(0.3);
+    expect(row.speaks).toContain("needs excitons of these lines");
+    expect(power!.fit!.control!.map(({ power_uW }) => power_uW)).toEqual(weak.powers_uW);
+    expect(notes.find(({ code }) => code === "plasma-not-excluded")!.text).toContain("control series");
+    const missing = await run("power", ...files, "--control", "not_there.csv", ...CHOICES);
+    expect(missing.status).toBe(3);
+    expect(missing.error).toContain("not_there.csv");
+  });
 });
