@@ -6,6 +6,7 @@ import {
   type ComparisonChoices,
 } from "./comparison-schema.ts";
 import { embeddedDocuments } from "./embedded-documents.ts";
+import { wordExpected } from "./word-expected.ts";
 import type { ProtocolIssue } from "./resolve-protocol.ts";
 
 /** What a user wrote to the full choices of a comparison; unknown keys are refused with the nearest known one. */
@@ -16,7 +17,7 @@ export function resolveComparisonChoices(input: unknown): Result<ComparisonChoic
   if (unknown.length > 0)
     return failure(
       ...unknown.map((key): ProtocolIssue => {
-        const facts = { key, nearest: nearestWord(key, known) };
+        const facts = { key, nearest: nearestWord(key, known), known: known.join(", ") };
         return { code: "protocol/unknown-key", facts };
       }),
     );
@@ -29,7 +30,7 @@ export function resolveComparisonChoices(input: unknown): Result<ComparisonChoic
         (value, part) => (value as Record<PropertyKey, unknown> | undefined)?.[part],
         input,
       );
-      const facts = { key, found: JSON.stringify(found) ?? "nothing", expected: issue.message };
+      const facts = { key, found: JSON.stringify(found) ?? "nothing", expected: wordExpected(issue) };
       return { code: "protocol/bad-value", facts };
     }),
   );

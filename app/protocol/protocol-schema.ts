@@ -158,7 +158,13 @@ export const protocolSchema = z.strictObject({
   }),
   lines: z
     .strictObject({
-      n: z.union([z.literal("auto"), z.array(z.int().min(1).max(99)).min(1)]),
+      n: z.union([
+        z.literal("auto"),
+        z
+          .array(z.int().min(1).max(99))
+          .min(1)
+          .refine((all) => new Set(all).size === all.length, "every n once"),
+      ]),
       max_n: z.int().min(2).max(60),
       slit_fwhm_eV: positive.nullable(),
       /** The same in nm (a grating: constant in wavelength, so the energy width grows as E^2) or in cm^-1; one of the three. */
@@ -188,7 +194,12 @@ export const protocolSchema = z.strictObject({
   series: z.strictObject({
     defect: z.enum(["none", "constant", "ritz"]),
     mode: z.enum(["free", "tied"]),
-    fit_n: z.union([z.literal("auto"), z.tuple([z.int().min(1), z.int().min(1)])]),
+    fit_n: z.union([
+      z.literal("auto"),
+      z
+        .tuple([z.int().min(1), z.int().min(1)])
+        .refine(([lowest, highest]) => lowest < highest, "the lowest n first, then a higher one"),
+    ]),
     /** Other series with the same gap and Rydberg energy (F beside P, S and D with field or strain). */
     extra: z.array(extraSeriesSchema).default([]),
   }),
@@ -212,8 +223,11 @@ export const protocolSchema = z.strictObject({
     profile: z.boolean(),
     systematic: z.boolean(),
     seed: z.int().min(0),
-    /** `note` says by how much correlated residuals would widen the standard errors; `allow` widens them. */
-    correlated: z.enum(["note", "allow"]).default("note"),
+    /**
+     * `allow` carries the correlation of neighbouring residuals into every standard error; `note` only says by how much it
+     * would widen them; `auto` allows for it where it is above 0.3.
+     */
+    correlated: z.enum(["auto", "note", "allow"]).default("auto"),
     /** Spectra drawn anew and fitted again: from the fit with the given noise, or with its own residuals. */
     resample: z.enum(["none", "parametric", "residual"]).default("none"),
     resamples: z.int().min(10).max(100_000).default(500),

@@ -3,11 +3,12 @@ import { z } from "zod";
 import { DEFAULT_PROTOCOL } from "./defaults.ts";
 import { findPreset, PRESETS } from "./presets.ts";
 import { PROTOCOL_SCHEMA, protocolSchema, type Protocol, type ProtocolInput } from "./protocol-schema.ts";
+import { wordExpected } from "./word-expected.ts";
 
 export type ProtocolIssue =
   | (Issue & {
       readonly code: "protocol/unknown-key";
-      readonly facts: { key: string; nearest: string | null };
+      readonly facts: { key: string; nearest: string | null; known: string };
     })
   | (Issue & {
       readonly code: "protocol/bad-value";
@@ -17,6 +18,7 @@ export type ProtocolIssue =
       readonly code: "protocol/unknown-preset";
       readonly facts: { found: string; nearest: string | null };
     })
+  | (Issue & { readonly code: "protocol/not-a-protocol"; readonly facts: { keys: string } })
   | (Issue & { readonly code: "protocol/schema"; readonly facts: { found: string; expected: string } });
 
 type Plain = { [key: string]: unknown };
@@ -56,6 +58,7 @@ function unknownKeys(found: unknown, known: unknown, path: string): ProtocolIssu
         facts: {
           key: dotted,
           nearest: nearest === null ? null : path === "" ? nearest : `${path}.${nearest}`,
+          known: Object.keys(known).join(", "),
         },
       });
     } else issues.push(...unknownKeys(value, known[key], dotted));
@@ -75,6 +78,14 @@ export function resolveProtocol(input: unknown): Result<Protocol, ProtocolIssue>
     return failure({
       code: "protocol/schema",
       facts: { found: describe(input["schema"]), expected: PROTOCOL_SCHEMA },
+    });
+  }
+  const keys = Object.keys(input);
+  // One misspelt key is a slip; several of which none is known are another kind of file.
+  if (keys.length > 1 && !keys.some((key) => Object.hasOwn(DEFAULT_PROTOCOL, key))) {
+    return failure({
+      code: "protocol/not-a-protocol",
+      facts: { keys: `${keys.slice(0, 3).join(", ")}${keys.length > 3 ? ", ..." : ""}` },
     });
   }
   const unknown = unknownKeys(input, DEFAULT_PROTOCOL, "");
@@ -104,7 +115,7 @@ export function resolveProtocol(input: unknown): Result<Protocol, ProtocolIssue>
       );
       return {
         code: "protocol/bad-value",
-        facts: { key: issue.path.join("."), found: describe(found), expected: issue.message },
+        facts: { key: issue.path.join("."), found: describe(found), expected: wordExpected(issue) },
       };
     }),
   );
@@ -121,7 +132,7 @@ export function wordProtocolIssue(issue: ProtocolIssue): Wording {
         message: `protocol: unknown key "${issue.facts.key}"`,
         remedy:
           issue.facts.nearest === null
-            ? "see the list of keys in DEVELOPERS.md"
+            ? `known here: ${issue.facts.known}`
             : `did you mean "${issue.facts.nearest}"?`,
       };
     case "protocol/bad-value":
@@ -133,6 +144,11 @@ export function wordProtocolIssue(issue: ProtocolIssue): Wording {
       return {
         message: `protocol: no material preset "${issue.facts.found}"`,
         remedy: `known: ${issue.facts.nearest ?? ""}`,
+      };
+    case "protocol/not-a-protocol":
+      return {
+        message: `protocol: not a protocol (its keys are ${issue.facts.keys})`,
+        remedy: `give a protocol (${PROTOCOL_SCHEMA}), or a result or report whose run is to be repeated`,
       };
     case "protocol/schema":
       return {

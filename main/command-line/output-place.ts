@@ -58,10 +58,24 @@ export async function placeOutput(
     : placeInFile(path, out, format ?? formatOf(path), withCurves);
 }
 
-const ENDINGS: Readonly<Record<string, Format>> = { ".json": "json", ".csv": "csv", ".tex": "latex" };
+const ENDINGS: Readonly<Record<string, Format>> = {
+  "": "json",
+  ".json": "json",
+  ".csv": "csv",
+  ".tex": "latex",
+  ".txt": "text",
+  ".text": "text",
+};
 
+/** What the name says, JSON where it has no ending; an ending that means nothing here is refused, not guessed. */
 export function formatOf(path: string): Format {
-  return ENDINGS[extname(path).toLowerCase()] ?? "text";
+  const ending = extname(path).toLowerCase();
+  const format = ENDINGS[ending];
+  if (format === undefined)
+    throw new UsageError(
+      `--out ${basename(path)}: the ending ${ending} does not say how to write; end it .json, .csv, .txt or .tex, or name a --format`,
+    );
+  return format;
 }
 
 async function placeInFile(

@@ -51,11 +51,12 @@ describe("a protocol", () => {
 
   it("refuses every unknown key at once, each with the nearest known one", () => {
     const issues = refused({ axis: { medum: "air" }, signal: { surface: { modell: "all" } }, xyzzyplugh: 1 });
-    expect(issues.map((issue) => issue.facts)).toStrictEqual([
+    expect(issues.map((issue) => issue.facts)).toMatchObject([
       { key: "axis.medum", nearest: "axis.medium" },
       { key: "signal.surface.modell", nearest: "signal.surface.model" },
       { key: "xyzzyplugh", nearest: null },
     ]);
+    expect(wordProtocolIssue(issues[2]!).remedy).toContain("axis, signal, window_eV");
   });
 
   it("refuses a value out of its range with key, value found and what is expected", () => {
@@ -70,6 +71,22 @@ describe("a protocol", () => {
     expect(refused({ background: [{ term: "polynomial", order: 2, extra: 1 }] })[0]?.code).toBe(
       "protocol/bad-value",
     );
+  });
+
+  it("says what a key takes, with an example where it takes a list", () => {
+    const remedies = (input: unknown) => refused(input).map((issue) => wordProtocolIssue(issue).remedy);
+    expect(remedies({ lines: { n: "5-9" } })).toEqual(["expected auto or a list, for example [2, 3, 4]"]);
+    expect(remedies({ series: { fit_n: [9, 5] } })).toEqual(["the lowest n first, then a higher one"]);
+    expect(remedies({ lines: { n: [2, 2, 3] } })).toEqual(["every n once"]);
+    expect(remedies({ width: { exponent: "x" } })).toEqual(["expected a number or free"]);
+    expect(remedies({ noise: { sigma: 0 } })).toEqual(["expected a number above 0"]);
+    expect(remedies({ table: { delimiter: "|" } })).toEqual(['expected ",", ";", "\\t" or " "']);
+  });
+
+  it("tells another kind of file from a protocol with a slip", () => {
+    const issues = refused({ name: "x", version: "1", scripts: {}, dependencies: {} });
+    expect(issues.map((issue) => issue.code)).toEqual(["protocol/not-a-protocol"]);
+    expect(wordProtocolIssue(issues[0]!).message).toContain("name, version, scripts, ...");
   });
 
   it("refuses another schema, an unknown preset and what is no object", () => {
