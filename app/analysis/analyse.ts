@@ -81,7 +81,8 @@ export function analyse(
     protocol.window_eV?.[0] ?? -Infinity,
     protocol.window_eV?.[1] ?? Infinity,
   );
-  let peaks = findPeaks(everything.energy, everything.signal, everything.sigma);
+  const noise = noiseOfLines(everything);
+  let peaks = findPeaks(everything.energy, everything.signal, noise);
   stopIfCancelled(watch);
   watch.report(0.15, "assigning n");
   const assignmentChoices: AssignmentChoices = {
@@ -95,7 +96,7 @@ export function analyse(
   if (listed.length === 0 && asksForFringes(protocol)) {
     const flat = withoutWave(everything, givenPeriod(protocol));
     if (flat !== null) {
-      peaks = findPeaks(everything.energy, flat, everything.sigma);
+      peaks = findPeaks(everything.energy, flat, noise);
       listed = listAssignments(peaks, assignmentChoices, MOST_READINGS);
     }
   }
@@ -389,7 +390,7 @@ function lookBetweenLines(
   const other = fit(points, climbed.state, how, 0.5);
   const { solution } = other.full.fit;
   const more = degreesOfFreedom - solution.degreesOfFreedom;
-  const gain = chi2 - solution.chi2 - more * Math.log(points.energy.length);
+  const gain = (chi2 - solution.chi2) / (points.pointsAsOne ?? 1) - more * Math.log(points.energy.length);
   const explained = solution.chi2 - degreesOfFreedom < 0.5 * (chi2 - degreesOfFreedom);
   return solution.converged && gain > LEAST_BIC_GAIN && explained ? other : plain;
 }
@@ -415,6 +416,13 @@ const LEAST_FACTOR = 0.3;
 function reducedChi2(full: FullFit): number {
   const { chi2, degreesOfFreedom } = full.fit.solution;
   return chi2 / Math.max(1, degreesOfFreedom);
+}
+
+/** One standard deviation per point as a line sees it that is wider than neighbours share their noise. */
+function noiseOfLines({ sigma, pointsAsOne }: SelectedPoints): Float64Array {
+  if (pointsAsOne === undefined) return sigma;
+  const root = Math.sqrt(pointsAsOne);
+  return sigma.map((one) => root * one);
 }
 
 /** Higher lines are hardly ever peaks of their own. */

@@ -3,6 +3,7 @@ import {
   fitSpectrum,
   levelLink,
   withAxisJitter,
+  withScaledErrors,
   type FitControl,
   type FitPoints,
   type SpectrumFit,
@@ -144,7 +145,7 @@ export function climbLadder(
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
     const raw = fitSpectrum(points, model.spec, model.start, { ...control, watch });
-    const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
+    const fit = withAxisJitter(withSharedNoise(raw, points), protocol.axis.jitter_eV);
     stopIfCancelled(watch);
     return { fit, state: withLevelRange(stateAfter(fit, model.state), judgeLevels(fit, protocol)) };
   };
@@ -165,6 +166,11 @@ export function climbLadder(
   return protocol.lines.n === "auto" ? fillHoles(current, points, (state) => run(state, ROUGH)) : current;
 }
 
+/** Standard errors for noise that neighbours share, before residuals can tell: what is significant is decided by them. */
+export function withSharedNoise(fit: SpectrumFit, { pointsAsOne }: FitPoints): SpectrumFit {
+  return pointsAsOne === undefined ? fit : withScaledErrors(fit, pointsAsOne);
+}
+
 /** Lines inside that were lost on the way up come back where they belong to the spectrum after all. */
 function fillHoles(climbed: Climbed, points: FitPoints, run: (state: LadderState) => Climbed): Climbed {
   const { ns } = climbed.state;
@@ -174,7 +180,7 @@ function fillHoles(climbed: Climbed, points: FitPoints, run: (state: LadderState
   const other = run(withLines(climbed.state, all));
   const seen = significances(other.fit);
   const needed = leastSignificance(points.energy.length);
-  const gain = climbed.fit.solution.chi2 - other.fit.solution.chi2;
+  const gain = (climbed.fit.solution.chi2 - other.fit.solution.chi2) / (points.pointsAsOne ?? 1);
   const price = LEAST_BIC_GAIN + holes.length * PARAMETERS_PER_LINE * Math.log(points.energy.length);
   return gain > price && holes.every((n) => seen[all.indexOf(n)]! > needed) ? other : climbed;
 }

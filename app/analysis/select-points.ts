@@ -14,18 +14,26 @@ export function selectPoints(
   low: number,
   high: number,
 ): SelectedPoints {
-  const place: number[] = [];
+  const places = new Int32Array(spectrum.energy_eV.length);
+  let count = 0;
   for (let i = 0; i < spectrum.energy_eV.length; i++) {
     const energy = spectrum.energy_eV[i]!;
     if (spectrum.used[i] === 0 || energy < low || energy > high) continue;
     if (!(spectrum.sigma[i]! > 0) || !Number.isFinite(spectrum.signal[i]!)) continue;
     if (masks.some(([from, to]) => energy >= from && energy <= to)) continue;
-    place.push(i);
+    places[count++] = i;
   }
+  const place = places.slice(0, count);
+  const pick = (values: Float64Array): Float64Array => {
+    const out = new Float64Array(count);
+    for (let i = 0; i < count; i++) out[i] = values[place[i]!]!;
+    return out;
+  };
   return {
-    place: Int32Array.from(place),
-    energy: Float64Array.from(place, (i) => spectrum.energy_eV[i]!),
-    signal: Float64Array.from(place, (i) => spectrum.signal[i]!),
-    sigma: Float64Array.from(place, (i) => spectrum.sigma[i]!),
+    place,
+    energy: pick(spectrum.energy_eV),
+    signal: pick(spectrum.signal),
+    sigma: pick(spectrum.sigma),
+    ...(spectrum.noise.pointsAsOne === undefined ? {} : { pointsAsOne: spectrum.noise.pointsAsOne }),
   };
 }

@@ -41,6 +41,7 @@ export function thinPoints(
     out.sigma.push(1 / Math.sqrt(weight));
   }
   return {
+    ...(points.pointsAsOne === undefined ? {} : { pointsAsOne: points.pointsAsOne }),
     energy: Float64Array.from(out.energy),
     signal: Float64Array.from(out.signal),
     sigma: Float64Array.from(out.sigma),

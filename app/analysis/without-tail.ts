@@ -2,7 +2,7 @@ import type { Watch } from "../base/index.ts";
 import { fitSpectrum, withAxisJitter } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
-import { leastSignificance, significances } from "./climb-ladder.ts";
+import { leastSignificance, significances, withSharedNoise } from "./climb-ladder.ts";
 import {
   buildModel,
   energyOf,
@@ -56,7 +56,7 @@ export function fitWithoutTail(
       costTolerance: 1e-7,
       maxIterations: 60,
     });
-    const fit = withAxisJitter(raw, protocol.axis.jitter_eV);
+    const fit = withAxisJitter(withSharedNoise(raw, points), protocol.axis.jitter_eV);
     const reducedChi2 = fit.solution.chi2 / Math.max(1, fit.solution.degreesOfFreedom);
     const after = stateAfter(fit, model.state);
     const seen = significances(fit);

@@ -7,6 +7,8 @@ export interface FitPoints {
   readonly energy: Float64Array;
   readonly signal: Float64Array;
   readonly sigma: Float64Array;
+  /** Neighbours that count as one, where they share their noise; absent where they are independent. */
+  readonly pointsAsOne?: number;
 }
 
 /** A background column that is known before the fit, with the name and unit its coefficient is reported under. */

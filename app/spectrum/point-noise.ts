@@ -1,4 +1,5 @@
 import { assumption, doubt, type Note } from "../base/index.ts";
+import { noiseCorrelation } from "./correlated-noise.ts";
 import { estimateNoise } from "./estimate-noise.ts";
 import type { Points } from "./gather-points.ts";
 import { count } from "./gather-points.ts";
@@ -11,6 +12,8 @@ export interface PointNoise {
   readonly sigma: Float64Array;
   /** The value without its noise, for weights. */
   readonly smooth: Float64Array;
+  /** Neighbours that count as one; 1 where they are independent. */
+  readonly pointsAsOne: number;
   readonly notes: readonly Note[];
 }
 
@@ -18,13 +21,53 @@ const ABOUT = "fit";
 /** So many given neighbours stand for a missing standard deviation. */
 const NEIGHBOURS = 11;
 
-/** `fixed`: the protocol's sigma in the unit of the value, null where it says nothing; `counts`: it is one of counts. */
+type Independent = Omit<PointNoise, "pointsAsOne">;
+
+/**
+ * The noise of every point, and whether neighbours share it. Where they do, an estimate from point to point is too small and
+ * is brought to the scatter of single readings; a sigma that is given stays.
+ */
 export function pointNoise(
   points: Points,
   fixed: number | null,
   counts: boolean,
   detector: ReadingChoices["noise"] | null = null,
 ): PointNoise {
+  const { energy_eV, value } = points;
+  const noise = independentNoise(points, fixed, counts, detector);
+  const { scale, length } = noiseCorrelation(energy_eV, value, noise.sigma);
+  if (!(length > LEAST_LENGTH)) return { ...noise, pointsAsOne: 1 };
+  const estimated = noise.source === "estimated";
+  const sigma = estimated ? noise.sigma.map((one) => scale * one) : noise.sigma;
+  const root = Math.sqrt(length);
+  const note = doubt(
+    "noise-correlated",
+    ABOUT,
+    `neighbouring points are not independent (smoothed, interpolated or oversampled): about ${length.toPrecision(2)} of them count as one where lines are sought${estimated ? `, and a single reading scatters ${scale.toPrecision(2)} times as much as neighbours differ (${shortest(sigma)} in the median)` : ""}`,
+    "fit the readings as they were measured, before smoothing or interpolation; set noise.sigma where the scatter of a reading is known",
+  );
+  return {
+    ...noise,
+    sigma,
+    smooth: smoothCurve(
+      value,
+      sigma.map((one) => root * one),
+    ),
+    pointsAsOne: length,
+    notes: [...noise.notes, note],
+  };
+}
+
+/** Fewer neighbours than this that count as one are within what the estimate can tell. */
+const LEAST_LENGTH = 1.25;
+
+/** `fixed`: the protocol's sigma in the unit of the value, null where it says nothing; `counts`: it is one of counts. */
+function independentNoise(
+  points: Points,
+  fixed: number | null,
+  counts: boolean,
+  detector: ReadingChoices["noise"] | null,
+): Independent {
   const { energy_eV, value, relative, sigma } = points;
   if (fixed === null && sigma === null && detector !== null && detector.gain_e_per_count !== null) {
     const known = countsNoise(points, detector.gain_e_per_count, detector);
@@ -93,7 +136,7 @@ const ROUNDS = 3;
  * Units     gain in electrons a count, read noise r in counts; N readings are averaged in each value (not summed).
  * Source    propagation of the counts' variances, with the dark part written out: dT/dD = (T - 1)/(F - D).
  */
-function countsNoise(points: Points, gain: number, detector: ReadingChoices["noise"]): PointNoise | null {
+function countsNoise(points: Points, gain: number, detector: ReadingChoices["noise"]): Independent | null {
   const { value, divisor, dark, relative } = points;
   const variance = (counts: number): number =>
     (Math.max(0, counts) / gain + detector.read_counts ** 2) / detector.accumulations;

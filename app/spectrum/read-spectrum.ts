@@ -106,7 +106,11 @@ export function readSpectrum(
     unit: read.quantity === "alpha" || read.thickness_um !== null ? "1/cm" : "1",
     thickness_cm: read.knownThickness_um === null ? null : read.knownThickness_um * CM_PER_UM,
     sigma,
-    noise: { source: noise.source, medianSigma: median(sigma) },
+    noise: {
+      source: noise.source,
+      medianSigma: median(sigma),
+      ...(noise.pointsAsOne > 1 ? { pointsAsOne: noise.pointsAsOne } : {}),
+    },
     transmittance,
     used,
     quantityRead: read.quantity,

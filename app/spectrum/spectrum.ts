@@ -67,7 +67,12 @@ export interface Spectrum {
   /** One standard deviation of `signal` per point; NaN where a given sigma is missing (zero or blank). */
   readonly sigma: Float64Array;
   /** `column`, `protocol` or `estimated` (from the data, white part). */
-  readonly noise: { readonly source: "column" | "protocol" | "estimated"; readonly medianSigma: number };
+  readonly noise: {
+    readonly source: "column" | "protocol" | "estimated";
+    readonly medianSigma: number;
+    /** Neighbours that count as one, where they share their noise (smoothed, interpolated or oversampled readings). */
+    readonly pointsAsOne?: number;
+  };
   /** What was measured, before the logarithm; present where transmittance (or counts) was read. */
   readonly transmittance: {
     readonly value: Float64Array;
