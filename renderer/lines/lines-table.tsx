@@ -60,7 +60,6 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
               <span className="hidden">n = </span>
               {n}
               {doubtful && <span className="hidden">, in doubt</span>}
-              {mark(row.original, "asymmetry", true)}
             </span>
           );
         },
@@ -83,8 +82,13 @@ export function LinesTable({ result }: { readonly result: RunglineResult }) {
       helper.accessor("significance", {
         id: "significance",
         header: "A/σ",
-        // A held area has no error that it could be compared with.
-        cell: ({ row }) => (row.original.area.sigma === 0 ? "held" : row.original.significance.toFixed(0)),
+        // A held area has no error that it could be compared with. The asymmetry has no column: its mark stands behind.
+        cell: ({ row }) => (
+          <span className="ruled ruled-behind">
+            {row.original.area.sigma === 0 ? "held" : row.original.significance.toFixed(0)}
+            {mark(row.original, "asymmetry", true)}
+          </span>
+        ),
       }),
     ]);
   }, [result, choices, mode]);
