@@ -83,9 +83,10 @@ export function analyseSeries(
   const factor = intervalFactor(protocol.uncertainty.level);
   const facts = withHeaderFacts(protocol, fitted.members);
   const beside = control === null ? null : fitControl(control, alone, partOfWatch(watch, 0.82, 0.9));
+  const controlled = beside?.fitted ?? null;
   const input = powerInput(fitted, facts.protocol, factor);
   const judged = judgePower(
-    beside?.fitted == null ? input : { ...input, control: controlTable(beside.fitted) },
+    controlled === null ? input : { ...input, control: controlTable(controlled) },
     partOfWatch(watch, 0.9, 1),
   );
   if (!judged.ok) return failure(...judged.issues);
@@ -108,7 +109,7 @@ export function analyseSeries(
         ...judged.value.power,
         fit: {
           ...describeJoint(fitted, failed, factor),
-          ...(beside?.fitted == null ? {} : { control: sourcesOf(beside.fitted) }),
+          ...(controlled === null ? {} : { control: sourcesOf(controlled) }),
         },
       },
     },
