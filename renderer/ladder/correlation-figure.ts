@@ -68,7 +68,7 @@ export function correlationFigure(result: RunglineResult, palette: Palette): Fig
       count === 0
         ? "No correlations: nothing was fitted"
         : `Correlations of ${count} parameters of the lines`,
-    data: [...rules, squares(true), squares(false)],
+    data: count === 0 ? [] : [...rules, squares(true), squares(false)],
     layout: {
       ...baseLayout(palette),
       hovermode: "closest",

@@ -10,7 +10,8 @@ type Kind = Exclude<Protocol["uncertainty"]["resample"], "none">;
 export function DrawChoices() {
   const controller = useController();
   const resolved = resolveProtocol(useWindow(currentChoices));
-  const busy = useWindow((state) => state.job !== null);
+  const job = useWindow((state) => state.job);
+  const busy = job !== null;
   const uncertainty = resolved.ok ? resolved.value.uncertainty : null;
   const asked = uncertainty?.resample ?? "none";
   const [kind, setKind] = useState<Kind>(asked === "none" ? "parametric" : asked);
@@ -65,13 +66,21 @@ export function DrawChoices() {
           />
         </Clause>
       </Sentence>
-      <Button
-        className="button button-main"
-        isDisabled={busy}
-        onPress={() => void controller.drawAnew({ resample: kind, resamples: count, seed })}
-      >
-        Draw and fit them
-      </Button>
+      {job === null ? (
+        <Button
+          className="button button-main"
+          onPress={() => void controller.drawAnew({ resample: kind, resamples: count, seed })}
+        >
+          Draw and fit them
+        </Button>
+      ) : (
+        <div className="draw-job">
+          <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
+            Stop
+          </Button>
+          <span className="small">{job.cancelling ? "stopping" : job.step}</span>
+        </div>
+      )}
       {asked !== "none" && (
         <p className="small draw-again">
           The protocol asks for them: every fit draws them again.{" "}

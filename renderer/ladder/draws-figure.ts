@@ -4,6 +4,7 @@ import { composePanels, evenPlaces, type Drawn } from "../plot/compose-panels.ts
 import type { FigureDescription, Trace } from "../plot/figure-description.ts";
 import { axis, baseLayout } from "../plot/layout.ts";
 import {
+  axisTitle,
   fittedParameter,
   PARAMETER_ORDER,
   SERIES_PARAMETERS,
@@ -38,13 +39,15 @@ function distribution(
   parameter: SeriesParameter,
   draws: readonly number[],
 ): Drawn {
-  const { scale, unit, fromFit } = SERIES_PARAMETERS[parameter];
+  const { scale, unit, absolute } = SERIES_PARAMETERS[parameter];
   const quantity = fittedParameter(result, parameter)!;
-  const from = (value: number): number => (value - quantity.value!) * scale;
+  const origin = absolute ? 0 : quantity.value!;
+  const from = (value: number): number => (value - origin) * scale;
+  const centre = from(quantity.value!);
   const values = draws.map(from);
   const sigma = quantity.sigma! * scale;
-  const low = Math.min(...values, -3 * sigma);
-  const high = Math.max(...values, 3 * sigma);
+  const low = Math.min(...values, centre - 3 * sigma);
+  const high = Math.max(...values, centre + 3 * sigma);
   // As many as Rice's rule asks for, twice the cube root of their number.
   const bins = Math.max(8, Math.ceil(2 * Math.cbrt(values.length)));
   const width = (high - low) / bins;
@@ -63,14 +66,14 @@ function distribution(
       line: { shape: "hv", width: 1, color: palette.data },
       fill: "tozeroy",
       fillcolor: palette.band,
-      hovertemplate: `%{x:.3g} ${unit}<br>%{y} spectra<extra></extra>`,
+      hovertemplate: `%{x:.4g} ${unit}<br>%{y} spectra<extra></extra>`,
       meta: { part: "draws" },
     },
     {
       type: "scatter",
       name: "standard error",
       x: steps,
-      y: steps.map((value) => height * Math.exp(-0.5 * (value / sigma) ** 2)),
+      y: steps.map((value) => height * Math.exp(-0.5 * ((value - centre) / sigma) ** 2)),
       mode: "lines",
       line: { width: 1.75, color: palette.accent },
       hoverinfo: "skip",
@@ -92,7 +95,7 @@ function distribution(
       mode: "lines+markers",
       line: { width: 2.5, color: colour },
       marker: { symbol: "line-ns-open", size: 9, color: colour, line: { width: 2 } },
-      hovertemplate: `%{x:.4g} ${unit}<extra></extra>`,
+      hovertemplate: `%{x:.5g} ${unit}<extra></extra>`,
       meta: { part },
     });
   };
@@ -101,7 +104,7 @@ function distribution(
   bar("drawn-interval", [drawn.low, drawn.high], 1.22 * top, palette.ink);
   return {
     data,
-    x: axis(palette, fromFit, { nticks: 7 }),
+    x: axis(palette, axisTitle(result, parameter), { nticks: 7 }),
     y: axis(palette, "Spectra", { range: [0, 1.32 * top], nticks: 5 }),
   };
 }

@@ -17,7 +17,7 @@ const KEYS: Readonly<Record<ErrorView, readonly (readonly [key: string, text: st
   ],
   residuals: [["chance", "by chance"]],
   draws: [
-    ["fitted", "standard error and interval of the fit"],
+    ["fitted", "fit"],
     ["drawn", "drawn"],
   ],
 };

@@ -1,7 +1,7 @@
 import type { Quantity } from "../../app/base/index.ts";
 import type { RunglineResult } from "../../app/protocol/index.ts";
 import { formatNumber } from "../../app/report/index.ts";
-import { fittedParameter, PARAMETER_ORDER, SERIES_PARAMETERS } from "./series-parameters.ts";
+import { fittedParameter, PARAMETER_ORDER, rowName, SERIES_PARAMETERS } from "./series-parameters.ts";
 
 export interface TableText {
   readonly title: string;
@@ -37,8 +37,8 @@ export function intervalTable(result: RunglineResult): TableText {
   const rows = PARAMETER_ORDER.flatMap((parameter): string[][] => {
     const quantity = fittedParameter(result, parameter);
     if (quantity === null) return [];
-    const { symbol, scale, unit } = SERIES_PARAMETERS[parameter];
-    return [[`${symbol} / ${unit}`, digits(quantity.sigma! * scale), ...endsOf(quantity, quantity, scale)]];
+    const { scale } = SERIES_PARAMETERS[parameter];
+    return [[rowName(parameter), digits(quantity.sigma! * scale), ...endsOf(quantity, quantity, scale)]];
   });
   return {
     title: "Intervals",
@@ -56,13 +56,13 @@ export function drawnTable(result: RunglineResult): TableText | null {
     const quantity = fittedParameter(result, parameter);
     const drawn = resampled[parameter];
     if (quantity === null || drawn.low === null || drawn.high === null) return [];
-    const { symbol, scale, unit } = SERIES_PARAMETERS[parameter];
+    const { scale } = SERIES_PARAMETERS[parameter];
     const fit = endsOf(quantity, quantity, scale);
     const ratio =
       quantity.low === null || quantity.high === null
         ? ABSENT
         : ((drawn.high - drawn.low) / (quantity.high - quantity.low)).toFixed(2);
-    return [[`${symbol} / ${unit}`, fit.join(" "), endsOf(drawn, quantity, scale).join(" "), ratio]];
+    return [[rowName(parameter), fit.join(" "), endsOf(drawn, quantity, scale).join(" "), ratio]];
   });
   const blocks = resampled.block_points > 1 ? `, in blocks of ${resampled.block_points} points` : "";
   const failed = resampled.failed === 0 ? "none failed" : `${resampled.failed} failed and are left out`;

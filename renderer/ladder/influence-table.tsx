@@ -1,6 +1,7 @@
 import { useMemo } from "react";
 import type { RunglineResult } from "../../app/protocol/index.ts";
 import { SortedTable, sortedColumns } from "../controls/sorted-table.tsx";
+import { Subscripts } from "./subscripts.tsx";
 import { useController, useWindow } from "../store/context.ts";
 
 type Influence = NonNullable<RunglineResult["diagnostics"]>["influence"][number];
@@ -12,7 +13,7 @@ const fixed = (value: number | null): string =>
 const cellOf = (key: Exclude<keyof Influence, "n">, header: string) =>
   helper.accessor((row) => row[key] ?? undefined, {
     id: key,
-    header,
+    header: () => <Subscripts text={header} />,
     cell: ({ row }) => fixed(row.original[key]),
   });
 

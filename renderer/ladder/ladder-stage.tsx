@@ -41,22 +41,41 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
       choices={<LadderChoices />}
       tools={
         <>
-          <Segments<LadderPanel | "errors">
-            label="Plots"
-            value={panel}
-            options={[
-              { value: "all", text: "All" },
-              { value: "levels", text: "Levels" },
-              { value: "widths", text: "Widths" },
-              { value: "strengths", text: "Strengths" },
-              ...(result.protocol.lines.asymmetry === "free"
-                ? [{ value: "asymmetries" as const, text: "Asymmetries" }]
-                : []),
-              { value: "ranges", text: "Ranges of n" },
-              { value: "errors", text: "Errors" },
-            ]}
-            onPick={setPanel}
-          />
+          <span className="tool-group">
+            <Segments<LadderPanel | "errors">
+              label="Plots"
+              value={panel}
+              options={[
+                { value: "all", text: "All" },
+                { value: "levels", text: "Levels" },
+                { value: "widths", text: "Widths" },
+                { value: "strengths", text: "Strengths" },
+                ...(result.protocol.lines.asymmetry === "free"
+                  ? [{ value: "asymmetries" as const, text: "Asymmetries" }]
+                  : []),
+                { value: "ranges", text: "Ranges of n" },
+                { value: "errors", text: "Errors" },
+              ]}
+              onPick={setPanel}
+            />
+            {panel === "errors" && (
+              <span className="tool-words">
+                <Pick<ErrorView>
+                  label="What the errors rest on"
+                  value={view}
+                  options={[
+                    { value: "regions", text: "joint regions" },
+                    { value: "profiles", text: "profiles" },
+                    { value: "influence", text: "influence of each line" },
+                    { value: "correlations", text: "correlations" },
+                    { value: "residuals", text: "residuals" },
+                    { value: "draws", text: "spectra drawn anew" },
+                  ]}
+                  onPick={setView}
+                />
+              </span>
+            )}
+          </span>
           {(panel === "all" || panel === "ranges") && (
             <span className="tool-words">
               ranges of n:{" "}
@@ -69,24 +88,6 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
                   { value: "defect", text: "quantum defect" },
                 ]}
                 onPick={setRanged}
-              />
-            </span>
-          )}
-          {panel === "errors" && (
-            <span className="tool-words">
-              errors:{" "}
-              <Pick<ErrorView>
-                label="What the errors rest on"
-                value={view}
-                options={[
-                  { value: "regions", text: "joint regions" },
-                  { value: "profiles", text: "profiles" },
-                  { value: "influence", text: "influence of each line" },
-                  { value: "correlations", text: "correlations" },
-                  { value: "residuals", text: "residuals" },
-                  { value: "draws", text: "spectra drawn anew" },
-                ]}
-                onPick={setView}
               />
             </span>
           )}

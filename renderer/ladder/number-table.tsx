@@ -1,3 +1,5 @@
+import { Subscripts } from "./subscripts.tsx";
+
 interface Props {
   readonly title: string;
   readonly head: readonly string[];
@@ -19,7 +21,7 @@ export function NumberTable({ title, head, rows, remark }: Props) {
                 <td key={i} />
               ) : (
                 <th key={i} scope="col">
-                  {word}
+                  <Subscripts text={word} />
                 </th>
               ),
             )}
@@ -28,7 +30,9 @@ export function NumberTable({ title, head, rows, remark }: Props) {
         <tbody>
           {rows.map(([name, ...cells]) => (
             <tr key={name}>
-              <th scope="row">{name}</th>
+              <th scope="row">
+                <Subscripts text={name ?? ""} />
+              </th>
               {cells.map((cell, i) => (
                 <td key={i}>{cell}</td>
               ))}

@@ -3,7 +3,7 @@ import type { Palette } from "../plot/colours.ts";
 import { composePanels, evenPlaces, type Drawn } from "../plot/compose-panels.ts";
 import type { FigureDescription, Trace } from "../plot/figure-description.ts";
 import { axis, baseLayout } from "../plot/layout.ts";
-import { fittedParameter, SERIES_PARAMETERS, type SeriesParameter } from "./series-parameters.ts";
+import { axisTitle, fittedParameter, SERIES_PARAMETERS, type SeriesParameter } from "./series-parameters.ts";
 
 /** Chi square along each series parameter, beside the parabola of its standard error. */
 export function profilesFigure(result: RunglineResult, palette: Palette): FigureDescription {
@@ -33,10 +33,11 @@ function profile(
   parameter: SeriesParameter,
   points: readonly (readonly [number, number])[],
 ): Drawn {
-  const { scale, unit, fromFit } = SERIES_PARAMETERS[parameter];
+  const { scale, unit, absolute } = SERIES_PARAMETERS[parameter];
   const quantity = fittedParameter(result, parameter);
-  const best = quantity?.value ?? points.find(([, rise]) => rise === 0)?.[0] ?? 0;
-  const x = points.map(([value]) => (value - best) * scale);
+  const best = points.find(([, rise]) => rise === 0)?.[0] ?? quantity?.value ?? 0;
+  const origin = absolute ? 0 : best;
+  const x = points.map(([value]) => (value - origin) * scale);
   const reach: [number, number] = [Math.min(...x), Math.max(...x)];
   const guide = (height: number): Trace => ({
     type: "scatter",
@@ -56,7 +57,7 @@ function profile(
       type: "scatter",
       name: "parabola of the standard error",
       x: steps,
-      y: steps.map((value) => (value / sigma) ** 2),
+      y: steps.map((value) => ((value - (best - origin) * scale) / sigma) ** 2),
       mode: "lines",
       line: { width: 1.25, color: palette.muted, dash: "dash" },
       hoverinfo: "skip",
@@ -71,12 +72,12 @@ function profile(
     mode: "lines+markers",
     line: { width: 2, color: palette.accent, shape: "spline" },
     marker: { size: 5, color: palette.accent },
-    hovertemplate: `%{x:.4g} ${unit}<br>χ² + %{y:.3g}<extra></extra>`,
+    hovertemplate: `%{x:.5g} ${unit}<br>χ² + %{y:.3g}<extra></extra>`,
     meta: { part: "profile" },
   });
   return {
     data,
-    x: axis(palette, fromFit, { nticks: 7 }),
+    x: axis(palette, axisTitle(result, parameter), { nticks: 7 }),
     y: axis(palette, "Rise of χ²", { range: [0, 9.6], tickvals: [0, 1, 4, 9] }),
   };
 }

@@ -1,24 +1,19 @@
 import type { RunglineResult } from "../../app/protocol/index.ts";
 import type { Palette } from "../plot/colours.ts";
-import { composePanels, type Drawn, type Place } from "../plot/compose-panels.ts";
-import type { FigureDescription, Trace } from "../plot/figure-description.ts";
+import { composePanels, evenPlaces, type Drawn } from "../plot/compose-panels.ts";
+import type { Axis, FigureDescription, Trace } from "../plot/figure-description.ts";
 import { axis, baseLayout } from "../plot/layout.ts";
 import { fittedParameter, SERIES_PARAMETERS, type SeriesParameter } from "./series-parameters.ts";
-
-const PLACES: readonly Place[] = [
-  { x: [0, 0.53], y: [0, 1] },
-  { x: [0.67, 1], y: [0.58, 1] },
-  { x: [0.67, 1], y: [0, 0.42] },
-];
 
 /** Joint regions of every pair of series parameters, with the spectra that were drawn anew as points. */
 export function regionsFigure(result: RunglineResult, palette: Palette): FigureDescription {
   const regions = result.diagnostics?.regions ?? [];
   const pairs = [...new Set(regions.map(({ x, y }) => `${x} ${y}`))];
+  const places = evenPlaces(pairs.length);
   const panels = pairs.map((pair, i) => {
     const [x, y] = pair.split(" ") as [SeriesParameter, SeriesParameter];
     return {
-      place: pairs.length === 1 ? ({ x: [0, 1], y: [0, 1] } satisfies Place) : PLACES[i]!,
+      place: places[i]!,
       drawn: region(result, palette, x, y),
     };
   });
@@ -92,11 +87,19 @@ function region(result: RunglineResult, palette: Palette, x: SeriesParameter, y:
   });
   return {
     data,
-    x: axis(palette, alongX.fromFit, { nticks: 7 }),
-    y: axis(palette, alongY.fromFit, { nticks: 7 }),
+    x: axis(palette, alongX.axis, { nticks: 7, ...reach(data, "x") }),
+    y: axis(palette, alongY.axis, { nticks: 7, ...reach(data, "y") }),
   };
 }
 
 function bar(length: number, palette: Palette): object {
   return { type: "data", array: [length], thickness: 1.25, width: 0, color: palette.accent };
+}
+
+/** All of the curves, which the library would cut between their points. */
+function reach(data: readonly Trace[], along: "x" | "y"): Axis {
+  const values = data.flatMap((trace) => Array.from(trace[along]).filter((value) => value !== null));
+  const [low, high] = [Math.min(...values), Math.max(...values)];
+  const margin = 0.06 * (high - low);
+  return high > low ? { range: [low - margin, high + margin] } : {};
 }

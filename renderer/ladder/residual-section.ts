@@ -100,6 +100,6 @@ function plain(
     notes: [],
     card,
     correlations: [],
-    plain: formatNumber(value, places),
+    plain: formatNumber(value, places).replace("-", "−"),
   };
 }

@@ -36,7 +36,7 @@ const UPPER: readonly [number, number] = [0.58, 1];
 const LOWER: readonly [number, number] = [0, 0.42];
 const WHOLE: readonly [number, number] = [0, 1];
 
-/** Places of one to four panels of one rank. */
+/** Places of up to four panels; of three the first is the largest. */
 export function evenPlaces(count: number): readonly Place[] {
   if (count <= 1) return [{ x: WHOLE, y: WHOLE }];
   if (count === 2)
@@ -44,10 +44,16 @@ export function evenPlaces(count: number): readonly Place[] {
       { x: LEFT, y: WHOLE },
       { x: RIGHT, y: WHOLE },
     ];
+  if (count === 3)
+    return [
+      { x: [0, 0.53], y: WHOLE },
+      { x: [0.67, 1], y: UPPER },
+      { x: [0.67, 1], y: LOWER },
+    ];
   return [
     { x: LEFT, y: UPPER },
     { x: RIGHT, y: UPPER },
     { x: LEFT, y: LOWER },
     { x: RIGHT, y: LOWER },
-  ].slice(0, count);
+  ];
 }

@@ -233,6 +233,52 @@ describe("a fit", () => {
   });
 });
 
+describe("spectra drawn anew", () => {
+  const WANTED = { resample: "residual", resamples: 50, seed: 3 } as const;
+
+  it("are asked for with their choices, which are kept with the fit as one step", async () => {
+    await startWithFit();
+    const steps = store.temporal.getState().pastStates.length;
+    const drawing = controller.drawAnew(WANTED);
+    const asked = fitter.asked.at(-1)!;
+    expect(asked.type === "analyse" && asked.request.choices).toMatchObject({ uncertainty: WANTED });
+    expect(currentChoices(store.getState()).uncertainty).toBeUndefined();
+    fitter.answer({ type: "analysed", id: asked.id, analysed: sampleAnalysed() });
+    await drawing;
+    expect(currentChoices(store.getState()).uncertainty).toEqual(WANTED);
+    expect(fitIsOld(store.getState())).toBe(false);
+    // Derived: one press, one step
+    expect(store.temporal.getState().pastStates.length).toBe(steps + 1);
+    controller.undo();
+    expect(currentChoices(store.getState()).uncertainty).toBeUndefined();
+    expect(fitIsOld(store.getState())).toBe(false);
+  });
+
+  it("do not undo what was chosen meanwhile", async () => {
+    await startWithFit();
+    const drawing = controller.drawAnew(WANTED);
+    controller.change({ lines: { asymmetry: "zero" } }, "asymmetry zero");
+    fitter.answer({ type: "analysed", id: lastAsked(fitter), analysed: sampleAnalysed() });
+    await drawing;
+    expect(currentChoices(store.getState())).toMatchObject({
+      lines: { asymmetry: "zero" },
+      uncertainty: WANTED,
+    });
+    expect(fitIsOld(store.getState())).toBe(true);
+  });
+
+  it("that are cancelled leave fit and choices as they were", async () => {
+    await startWithFit();
+    const before = store.getState().session;
+    const drawing = controller.drawAnew(WANTED);
+    controller.cancel();
+    fitter.answer({ type: "cancelled", id: lastAsked(fitter) });
+    await drawing;
+    expect(store.getState().session).toBe(before);
+    expect(store.getState().messages[0]?.text).toContain("the fit before stands");
+  });
+});
+
 describe("saving", () => {
   it("writes the result, and the protocol that repeats it", async () => {
     await startWithFit();
