@@ -164,10 +164,7 @@ export function describeResult(
   const fitPart: NonNullable<RunglineResult["fit"]> = {
     domain: full.domain.name,
     termination: solution.termination,
-    sigma_from:
-      protocol.uncertainty.scale_by_residuals || protocol.uncertainty.correlated === "allow"
-        ? "residuals"
-        : "given",
+    sigma_from: protocol.uncertainty.scale_by_residuals || full.correlated ? "residuals" : "given",
     chi2: solution.chi2,
     dof: solution.degreesOfFreedom,
     reduced_chi2: reduced,
@@ -199,11 +196,11 @@ export function describeResult(
     ...full.domain.notes,
     ...findDoubts({ spectrum, protocol, points, peaks, assignment, full, fit: fitPart, lines, tail, series }),
     ...laws.notes,
-    ...heldDefectNotes(held),
-    ...linearisedNotes(full, protocol),
     ...constraintNotes(full, protocol),
     ...derivedParts.notes,
     ...systematicNotes(systematic),
+    ...heldDefectNotes(held),
+    ...linearisedNotes(full, protocol),
   ]);
   return {
     schema: RESULT_SCHEMA,

@@ -7,8 +7,8 @@ import type { Assignment } from "./assign-n.ts";
 import { LEAST_SIGNIFICANCE } from "./climb-ladder.ts";
 import type { Peak } from "./find-peaks.ts";
 import { pointJitter } from "./axis-jitter.ts";
-import type { FullFit } from "./fit-full.ts";
-import { findFringes, fringeNotes, plateReflectance } from "./fringes.ts";
+import { CORRELATED_ABOVE, type FullFit } from "./fit-full.ts";
+import { findFringes, fringeNotes, isSteadyWave, plateReflectance } from "./fringes.ts";
 import { energyOf } from "./ladder-model.ts";
 import { depthPerSignal } from "./light.ts";
 import { findSatellites } from "./satellites.ts";
@@ -58,7 +58,7 @@ export function presetNotes(protocol: Protocol): Note[] {
   ];
 }
 
-function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
+function doubtsOfFit({ fit, full, spectrum, points, protocol }: DoubtInput): Note[] {
   const notes: Note[] = [];
   if (!full.fit.solution.converged) {
     notes.push(
@@ -115,18 +115,24 @@ function doubtsOfFit({ fit, full, spectrum, points }: DoubtInput): Note[] {
       doubt(
         "misfit",
         "fit.reduced_chi2",
-        `Reduced chi square is ${reduced.toPrecision(4)} for ${fit.dof} degrees of freedom: the model leaves more than the ${estimated ? "estimated" : "given"} noise, so standard errors are too small.`,
+        `Reduced chi square is ${reduced.toPrecision(4)} for ${fit.dof} degrees of freedom: the model leaves more than the ${estimated ? "estimated" : "given"} noise${full.correlated || protocol.uncertainty.scale_by_residuals ? "; standard errors follow from the residuals" : ", so standard errors are too small"}.`,
         "look at the residuals; free the asymmetry, change the background, or set uncertainty.scale_by_residuals=true",
       ),
     );
   }
-  if (lag1 > 0.3) {
+  if (lag1 > CORRELATED_ABOVE) {
+    const seen = `Neighbouring residuals correlate by ${lag1.toFixed(2)}: about ${Math.round(independent)} of ${points.energy.length} points are independent`;
+    const factor = Math.sqrt(points.energy.length / independent).toFixed(2);
     notes.push(
       doubt(
         "residuals-correlated",
         "fit.lag1",
-        `Neighbouring residuals correlate by ${lag1.toFixed(2)}: about ${Math.round(independent)} of ${points.energy.length} points are independent, and standard errors are too small by about ${Math.sqrt(points.energy.length / independent).toFixed(2)}.`,
-        "set uncertainty.correlated=allow, which carries the correlation into every standard error; or measure with a step no finer than the instrument resolves",
+        full.correlated
+          ? `${seen}. All standard errors allow for that and for the size of the residuals; where the model misses something, rather than the noise being correlated, they are a guess.`
+          : `${seen}, and standard errors are too small by about ${factor}.`,
+        full.correlated
+          ? "look at the residuals: a structure that repeats belongs into the model; uncertainty.correlated=note gives the errors of independent noise"
+          : "set uncertainty.correlated=auto or allow, which carries the correlation into every standard error; or measure with a step no finer than the instrument resolves",
       ),
     );
   }
@@ -325,7 +331,8 @@ function doubtsOfFringes({ points, full, protocol, spectrum }: DoubtInput): Note
           how: full.domain.fringes === undefined ? ("additive" as const) : ("multiplicative" as const),
           dispersion: full.domain.dispersion === true,
         };
-  const seen = known === null ? findFringes(points.energy, residuals) : null;
+  const found = known === null ? findFringes(points.energy, residuals) : null;
+  const seen = found !== null && isSteadyWave(points.energy, residuals, found) ? found : null;
   let low = Infinity;
   let high = -Infinity;
   for (const value of fitted) {

@@ -9,9 +9,10 @@ import {
 } from "../fit/index.ts";
 import type { Protocol } from "../protocol/index.ts";
 import { fitStrengths, fitWidths, type RangeChoice } from "../series/index.ts";
+import { neighbourCorrelation } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { sameWave } from "./fringes.ts";
-import { leastSignificance, significances, withSharedNoise, type Climbed } from "./climb-ladder.ts";
+import { leastSignificance, significances, type Climbed } from "./climb-ladder.ts";
 import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces, judgeLevels, withLevelRange } from "./level-range.ts";
 import { tiedRange } from "./tied-range.ts";
@@ -46,6 +47,8 @@ export interface FullFit extends Climbed {
   readonly solveSeconds: number;
   /** Whether the laws of the tail and those of the lines came to agree. */
   readonly selfConsistent: boolean;
+  /** Whether the standard errors allow for the correlation of neighbouring residuals. */
+  readonly correlated: boolean;
   /** Period that the columns of additive fringes were made with. */
   readonly fringesAt?: number;
   /** What tying widths or areas to their laws cost against the fit before, with every one free. */
@@ -173,7 +176,7 @@ function fitFreeLevels(
     const range = judgeLevels(fit, protocol);
     const next = withLevelRange(stateAfter(fit, model.state), range);
     // A first fit that is still poor would widen its errors until no line is left: the plain ones decide what is seen.
-    const seen = significances(withSharedNoise(plain, points));
+    const seen = significances(plain);
     let keep = state.ns.length;
     if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
     const dropped = keep < state.ns.length;
@@ -187,6 +190,7 @@ function fitFreeLevels(
       range,
       solveSeconds,
       selfConsistent: settled,
+      correlated: allowsCorrelation(plain, protocol),
       domain: ABSORPTION,
       choices,
       ...(model.state.fringes === undefined ? {} : { fringesAt: model.state.fringes.period }),
@@ -214,7 +218,8 @@ function tieLevels(
     stopIfCancelled(watch);
     const model = buildModel(points, state, protocol, unit, choices);
     const began = watch.seconds();
-    const fit = withAskedErrors(fitPass(model), protocol);
+    const plain = fitPass(model);
+    const fit = withAskedErrors(plain, protocol);
     const solveSeconds = watch.seconds() - began;
     const next = stateAfter(fit, model.state);
     // The weights of the tail's laws stay those of the free fit: lines on a law have no errors of their own.
@@ -227,6 +232,7 @@ function tieLevels(
       range: tiedRange(fit, free.fit, range, protocol.axis.jitter_eV),
       solveSeconds,
       selfConsistent,
+      correlated: allowsCorrelation(plain, protocol),
       ...(model.state.fringes === undefined ? {} : { fringesAt: model.state.fringes.period }),
     };
     if (selfConsistent) break;
@@ -234,9 +240,17 @@ function tieLevels(
   return result;
 }
 
-/** Standard errors scaled by the residuals where the protocol asks for it, and the jitter of the axis. */
+/** Neighbouring residuals that correlate by more make standard errors from independent noise clearly too small. */
+export const CORRELATED_ABOVE = 0.3;
+
+function allowsCorrelation({ solution }: SpectrumFit, { uncertainty }: Protocol): boolean {
+  if (uncertainty.correlated !== "auto") return uncertainty.correlated === "allow";
+  return neighbourCorrelation(solution.residuals) > CORRELATED_ABOVE;
+}
+
+/** Standard errors that allow for correlated residuals or are scaled by them, as the protocol asks, and the axis' jitter. */
 function withAskedErrors(fit: SpectrumFit, protocol: Protocol): SpectrumFit {
-  if (protocol.uncertainty.correlated === "allow")
+  if (allowsCorrelation(fit, protocol))
     return withAxisJitter(withCorrelatedErrors(fit), protocol.axis.jitter_eV);
   const { chi2, degreesOfFreedom } = fit.solution;
   const scaled = protocol.uncertainty.scale_by_residuals

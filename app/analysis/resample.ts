@@ -68,11 +68,11 @@ export function planResampling(
   unit: Spectrum["unit"],
   watch: Watch,
 ): ResamplingPlan | null {
-  const { resample: kind, correlated } = protocol.uncertainty;
+  const { resample: kind } = protocol.uncertainty;
   const law = full.range?.fit ?? null;
   if (kind === "none" || law === null) return null;
   const { energy, signal, sigma } = points;
-  const allowed = correlated === "allow";
+  const allowed = full.correlated;
   const common = {
     points: { energy, signal, sigma },
     state: full.state,

@@ -8,7 +8,7 @@ export interface Estimates {
   readonly values: Float64Array;
   readonly covariance: Float64Array;
   readonly degreesOfFreedom: number;
-  /** `given`: from the stated or estimated noise; `residuals`: scaled by the residuals. */
+  /** `given`: from the stated or estimated noise; `residuals`: scaled by the residuals, or from their correlation. */
   readonly sigmaFrom: "given" | "residuals";
 }
 

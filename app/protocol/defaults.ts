@@ -65,7 +65,7 @@ export const DEFAULT_PROTOCOL: Protocol = {
     profile: true,
     systematic: true,
     seed: 1,
-    correlated: "note",
+    correlated: "auto",
     resample: "none",
     resamples: 500,
   },

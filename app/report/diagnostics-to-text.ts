@@ -8,7 +8,7 @@ export function diagnosticsLines(diagnostics: Diagnostics): string[] {
   const rho = diagnostics.autocorrelation.slice(0, 5).map((value) => formatNumber(value, 2));
   out.push(
     `  Residuals: autocorrelation ${rho.join(", ")} at lags 1 to ${rho.length}; skewness ${formatNumber(diagnostics.skewness, 2)}, excess kurtosis ${formatNumber(diagnostics.excess_kurtosis, 2)}`,
-    `  Allowing for their size and correlation would multiply the standard errors by about ${formatNumber(diagnostics.error_factor, 3)}.`,
+    `  Their size and correlation multiply standard errors of independent noise by about ${formatNumber(diagnostics.error_factor, 3)}.`,
   );
   if (diagnostics.strongest.length > 0)
     out.push(

@@ -64,6 +64,8 @@ export function protocolInWords(protocol: Protocol): readonly string[] {
       ? "standard errors scaled by the residuals"
       : "standard errors from the given or estimated noise",
   );
+  if (uncertainty.correlated === "note") said.push("correlation of residuals not allowed for");
+  if (uncertainty.correlated === "allow") said.push("correlation of residuals allowed for");
   said.push(`intervals at ${percent(uncertainty.level)}`);
   return said;
 }

@@ -359,7 +359,7 @@ function fitToHtml(result: RunglineResult): string {
     ["Parameters", `${fit.parameters}, rank ${fit.rank}, condition ${formatNumber(fit.condition, 2)}`],
     [
       "Standard errors",
-      fit.sigma_from === "given" ? "from the given or estimated noise" : "scaled by the residuals",
+      fit.sigma_from === "given" ? "from the given or estimated noise" : "from the residuals",
     ],
   ])}`;
 }

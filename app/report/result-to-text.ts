@@ -516,7 +516,7 @@ function fitPart(result: RunglineResult): string[] {
     ["parameters", `${fit.parameters}, rank ${fit.rank}, condition ${formatNumber(fit.condition, 2)}`],
     [
       "standard errors",
-      fit.sigma_from === "given" ? "from the given or estimated noise" : "scaled by the residuals",
+      fit.sigma_from === "given" ? "from the given or estimated noise" : "from the residuals",
     ],
   ];
   return [...heading("Fit"), ...textTable(rows, ["left", "left"])];

@@ -77,15 +77,16 @@ const BOUNDED = [
 
 describe("errors under correlated noise of the light itself", () => {
   it.each([
-    ["fitted as it is", []],
-    ["with a width bounded and an asymmetry of its own", BOUNDED],
-  ] as const)("have pulls of width one, %s", (_, constraints) => {
+    ["fitted as it is", [], { correlated: "allow" }],
+    ["with a width bounded and an asymmetry of its own", BOUNDED, { correlated: "allow" }],
+    ["without being asked", [], {}],
+  ] as const)("have pulls of width one, %s", (_, constraints, asked) => {
     const protocol = resolveProtocol({
       material: { first_n: 2 },
       lines: { n: [2, 3, 4, 5, 6], domain: "transmittance", constraints },
       tail: { model: "none" },
       background: [{ term: "polynomial", order: 1 }],
-      uncertainty: { systematic: false, profile: false, correlated: "allow" },
+      uncertainty: { systematic: false, profile: false, ...asked },
       window_eV: [0.97, 0.9993],
     });
     if (!protocol.ok) throw new Error(JSON.stringify(protocol.issues));
