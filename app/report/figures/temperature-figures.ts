@@ -20,7 +20,11 @@ function seriesFigure(series: TemperatureSeries, of: string | null): Figure {
     series.quantity === "gap_eV" ? { name: "eV", perElectronvolt: 1 } : energyUnit(Math.max(...values));
   const temperatures = series.points.map(({ temperature_K }) => temperature_K);
   const highest = Math.max(...temperatures);
-  const laws: Mark[] = series.laws.map((law, i) => ({
+  // The preferred law has the plain line, as in the window.
+  const ordered = [...series.laws].sort(
+    (a, b) => Number(b.law === series.preferred) - Number(a.law === series.preferred),
+  );
+  const laws: Mark[] = ordered.map((law, i) => ({
     kind: "line",
     x: series.grid_K,
     y: law.curve.map((value) => (value === null ? null : value * unit.perElectronvolt)),
@@ -42,7 +46,7 @@ function seriesFigure(series: TemperatureSeries, of: string | null): Figure {
     caption: `${what}${of === null ? "" : ` of ${of.replace(/[*_^]/g, " ")}`} against temperature with the laws fitted to it; ${temperatureVerdict(series)}.`,
     width_mm: ONE_COLUMN_MM,
     height_mm: 64,
-    legend: series.laws.map((law, i) => ({
+    legend: ordered.map((law, i) => ({
       text: TEMPERATURE_LAW_NAMES[law.law],
       colour: COLOURS[i % COLOURS.length]!,
       ...(DASHES[i % DASHES.length] !== undefined && { dash: DASHES[i % DASHES.length]! }),
