@@ -12,7 +12,7 @@ import { fitStrengths, fitWidths, type RangeChoice } from "../series/index.ts";
 import { neighbourCorrelation } from "../solve/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { sameWave } from "./fringes.ts";
-import { leastSignificance, significances, type Climbed } from "./climb-ladder.ts";
+import { leastSignificance, significances, withSharedNoise, type Climbed } from "./climb-ladder.ts";
 import { buildModel, stateAfter, withLines, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { covarianceBlock, determinedPlaces, judgeLevels, withLevelRange } from "./level-range.ts";
 import { tiedRange } from "./tied-range.ts";
@@ -176,7 +176,7 @@ function fitFreeLevels(
     const range = judgeLevels(fit, protocol);
     const next = withLevelRange(stateAfter(fit, model.state), range);
     // A first fit that is still poor would widen its errors until no line is left: the plain ones decide what is seen.
-    const seen = significances(plain);
+    const seen = significances(withSharedNoise(plain, points));
     let keep = state.ns.length;
     if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
     const dropped = keep < state.ns.length;
