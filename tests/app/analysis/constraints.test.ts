@@ -136,6 +136,28 @@ describe("tied parameters", () => {
     expect(all.fit!.parameters).toBeLessThan(free.fit!.parameters - 20);
   });
 
+  test("trials of other backgrounds and windows have the ties too", () => {
+    const trial = (choices: object): { result: RunglineResult; count: number } => {
+      const result = fitted({ ...choices, uncertainty: { systematic: true, profile: false } });
+      const { bic, chi2, gap_eV } = result.systematic!.trials[0]!;
+      // Derived: averaged points give the fit's own gap to a part of its error
+      expect(Math.abs(gap_eV! - result.series!.gap_eV.value!)).toBeLessThan(
+        0.5 * result.series!.gap_eV.sigma!,
+      );
+      return { result, count: bic! - chi2! };
+    };
+    const loose = trial({});
+    const tight = trial({
+      width: { mode: "tied" },
+      strength: { mode: "tied" },
+      series: { mode: "tied" },
+    });
+    // Derived: the criterion is chi square + parameters ln(points), and the averaged points are nearly the same
+    const ratio = tight.result.fit!.parameters / loose.result.fit!.parameters;
+    expect(ratio).toBeLessThan(0.5);
+    expect(Math.abs(tight.count / loose.count / ratio - 1)).toBeLessThan(0.03);
+  });
+
   test("a law that the lines do not follow is rejected against the free fit", () => {
     const rolled = bytesOf({ ...clean, share: (n) => (n === 5 ? 1.15 : n === 7 ? 0.9 : 1) });
     const result = fitted({ strength: { mode: "tied" } }, rolled);
