@@ -62,6 +62,70 @@ describe("the stage Batches", () => {
     expect(await rows()).toBe(3);
   });
 
+  it("weighs a figure of quality of parts that are seen, each step undone", async () => {
+    const plots = page.getByRole("group", { name: "Plots" });
+    await plots.getByRole("button", { name: "Quality" }).click();
+    await page.getByRole("heading", { name: "A figure of quality is what you weigh" }).waitFor();
+    expect(await faults()).toEqual([]);
+    await page.getByLabel("Add a part").selectOption("gap_eV");
+    await page.getByLabel("Add a part").selectOption("width_floor_eV");
+    await page.getByLabel("Weight of floor of the widths").fill("-2");
+    await page.keyboard.press("Enter");
+    await page.waitForSelector('.ledger:has-text("--quality gap_eV=1,width_floor_eV=-2")');
+    expect(await page.locator('.batches-table th:has-text("Quality")').count()).toBe(1);
+    expect(await page.locator('[data-entry^="quality-part-"]').count()).toBe(2);
+    await page.emulateMedia({ colorScheme: "dark" });
+    expect(await faults()).toEqual([]);
+    await page.emulateMedia({ colorScheme: "light" });
+    await page.click('[data-action="undo"]');
+    await page.waitForSelector('.ledger:has-text("--quality gap_eV=1,width_floor_eV=-1")');
+    await page.click('[data-action="undo"]');
+    await page.click('[data-action="undo"]');
+    await page.getByRole("heading", { name: "A figure of quality is what you weigh" }).waitFor();
+    await plots.getByRole("button", { name: "Parameters" }).click();
+  });
+
+  it("takes typed temperatures, pasted as a column, and draws the laws over them", async () => {
+    await page.getByRole("button", { name: "Typed columns" }).click();
+    const fields = page.locator('.typed-table input[aria-label^="Temperature"]');
+    const paste = (text: string): Promise<void> =>
+      fields.first().evaluate((field, pasted) => {
+        const clipboardData = new DataTransfer();
+        clipboardData.setData("text", pasted);
+        field.dispatchEvent(new ClipboardEvent("paste", { clipboardData, bubbles: true, cancelable: true }));
+      }, text);
+    expect(await fields.count()).toBe(3);
+    await paste("2\n60\n120\n");
+    await page.waitForFunction(
+      () =>
+        [...document.querySelectorAll<HTMLInputElement>('.typed-table input[aria-label^="Temperature"]')]
+          .map(({ value }) => value)
+          .join() === "2,60,120",
+    );
+    await page.getByLabel("Name of a new column").fill("Growth (mm/h)");
+    await page.keyboard.press("Enter");
+    await page.getByLabel(/^Growth \/ mm\/h of TH-B1/).fill("fast");
+    await page.keyboard.press("Enter");
+    await page.getByRole("alert").filter({ hasText: "a number, with or without its unit" }).waitFor();
+    await page.keyboard.press("Escape");
+    expect(await faults()).toEqual([]);
+    await page.getByLabel("Trend along").selectOption("temperature");
+    const plots = page.getByRole("group", { name: "Plots" });
+    await plots.getByRole("button", { name: "Temperature" }).click();
+    await page.waitForSelector('.law-key:has-text("acoustic phonons")');
+    await page.waitForSelector('.ledger:has-text("Width at 0 K")');
+    expect(await faults()).toEqual([]);
+    await page.click('[data-action="undo"]');
+    await page.click('[data-action="undo"]');
+    await page.waitForFunction(
+      () =>
+        document.querySelector<HTMLInputElement>('.typed-table input[aria-label^="Temperature"]')?.value ===
+        "",
+    );
+    await page.getByRole("button", { name: "Samples", exact: true }).click();
+    await page.waitForSelector(".batches-table");
+  });
+
   it("keeps to WCAG 2.2 AA in light and dark, and is drawn at both sizes", async () => {
     for (const [width, height, colorScheme] of [
       [1920, 1080, "dark"],
