@@ -16,10 +16,14 @@ import {
   ruleOf,
   withRule,
   type Constraint,
+  type LineParameter,
   type LineRule,
 } from "../../renderer/lines/line-rules.ts";
 import { fromPrinted, lineUnits, printed } from "../../renderer/lines/line-units.ts";
 import { lineSection } from "../../renderer/lines/lines-ledger.ts";
+import { protocolToJson } from "../../app/report/index.ts";
+import { editChoices, EMPTY_SESSION, type Session } from "../../renderer/store/session.ts";
+import { fixtureBytes, resultOf } from "../support/analyse-bytes.ts";
 import { isDoubtful, rungLayout } from "../../renderer/rungs/rung-layout.ts";
 import { sampleResult } from "./sample.ts";
 
@@ -260,5 +264,42 @@ describe("every rule", () => {
     expect(ruleInWords(rule, 5, "width", units)).toMatch(
       /held at|not below|not above|between|follows|one value/,
     );
+  });
+});
+
+describe("what the window sets", () => {
+  it("repeats from the protocol of its result to the last bit, as the command line reads it", () => {
+    const bytes = fixtureBytes("demo/TH-A1_transmission.csv");
+    const base = {
+      material: { preset: "cuprous-oxide-yellow-p" },
+      uncertainty: { systematic: false, profile: false },
+    };
+    const first = resultOf(bytes, base);
+    const printedUnits = lineUnits(first);
+    const asked: readonly [number, LineParameter, LineRule["kind"]][] = [
+      [5, "width", "held"],
+      [6, "energy", "bounded"],
+      [7, "area", "held"],
+      [8, "asymmetry", "bounded"],
+      [10, "width", "shared"],
+      [12, "energy", "law"],
+    ];
+    const session = asked.reduce<Session>(
+      (before, [n, parameter, kind]) => {
+        const said = resolveProtocol(before.choices["one"]);
+        const rule = firstRule(kind, first, n, parameter, printedUnits);
+        if (!said.ok || rule === null) throw new Error("no rule");
+        const constraints = withRule(said.value.lines.constraints, n, parameter, rule);
+        return editChoices(before, { lines: { constraints } }, `${parameter} of n = ${n}`);
+      },
+      { ...EMPTY_SESSION, currentId: "one", choices: { one: base } },
+    );
+    const window = resultOf(bytes, session.choices["one"]);
+    const command = resultOf(bytes, JSON.parse(protocolToJson(window.protocol)));
+    expect(window.protocol.lines.constraints).toHaveLength(asked.length);
+    // Derived: the same file, protocol and engine
+    expect({ ...command, run: null }).toEqual({ ...window, run: null });
+    const held = window.lines.find(({ n }) => n === 5)!.width_eV;
+    expect([held.sigma, held.low, held.high]).toEqual([0, held.value, held.value]);
   });
 });
