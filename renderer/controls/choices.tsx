@@ -1,4 +1,5 @@
 import { useId, useState, type ReactNode } from "react";
+import { parseNumber } from "./parse-number.ts";
 
 /** The protocol is written as a sentence; its underlined words are the choices. */
 export function Sentence({ children, label }: { readonly children: ReactNode; readonly label: string }) {
@@ -96,6 +97,44 @@ export function Amount({ label, value, placeholder, width, onCommit }: AmountPro
         </span>
       )}
     </span>
+  );
+}
+
+interface NumberAmountProps {
+  readonly label: string;
+  /** In the unit that stands beside it; null: left open. */
+  readonly value: number | null;
+  readonly placeholder: string;
+  readonly width?: number;
+  readonly accept: (value: number) => boolean;
+  /** What is expected, said where something else was typed. */
+  readonly expected: string;
+  readonly onTake: (value: number | null) => void;
+}
+
+/** An amount that is one number, or is left open. */
+export function NumberAmount({
+  label,
+  value,
+  placeholder,
+  width,
+  accept,
+  expected,
+  onTake,
+}: NumberAmountProps) {
+  return (
+    <Amount
+      label={label}
+      value={value === null ? "" : String(value)}
+      placeholder={placeholder}
+      width={width ?? Math.max(4, placeholder.length)}
+      onCommit={(text) => {
+        const typed = parseNumber(text);
+        if (text !== "" && (typed === null || !accept(typed))) return expected;
+        onTake(typed);
+        return null;
+      }}
+    />
   );
 }
 

@@ -1,6 +1,5 @@
 import { resolveProtocol } from "../../app/protocol/index.ts";
-import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
-import { parseNumber } from "../controls/parse-number.ts";
+import { Amount, Clause, NumberAmount, Pick, Sentence } from "../controls/choices.tsx";
 import { FitButton } from "../controls/fit-button.tsx";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 
@@ -63,20 +62,16 @@ export function LadderChoices() {
             onPick={(base) => controller.change({ width: { base } }, `widths on ${base}`)}
           />{" "}
           to the power −
-          <Amount
+          <NumberAmount
             label="Exponent of the width law, or empty to fit it"
-            value={width.exponent === "free" ? "" : String(width.exponent)}
+            value={width.exponent === "free" ? null : width.exponent}
             placeholder="free"
             width={3}
-            onCommit={(text) => {
-              const value = parseNumber(text);
-              if (text !== "" && (value === null || value < 0 || value > 8)) return "0 to 8, or empty";
-              controller.change(
-                { width: { exponent: value ?? "free" } },
-                `width exponent ${value ?? "free"}`,
-              );
-              return null;
-            }}
+            accept={(value) => value >= 0 && value <= 8}
+            expected="0 to 8, or empty"
+            onTake={(value) =>
+              controller.change({ width: { exponent: value ?? "free" } }, `width exponent ${value ?? "free"}`)
+            }
           />
         </Clause>
         <Clause>

@@ -1,12 +1,14 @@
 import { PRESETS, resolveProtocol, type BackgroundTerm } from "../../app/protocol/index.ts";
-import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
+import { Amount, Clause, NumberAmount, Pick, Sentence } from "../controls/choices.tsx";
 import { parseNumber } from "../controls/parse-number.ts";
 import { FitButton } from "../controls/fit-button.tsx";
 import { ExtraSeriesClauses } from "./extra-series.tsx";
+import { fromPrinted, printed } from "./line-units.ts";
 import { parseList } from "./parse-list.ts";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 
 const NO_PRESET = "";
+const MICRO = { unit: "µeV", scale: 1e6 } as const;
 
 /** How the lines are fitted, as a sentence whose underlined words can be chosen. */
 export function LinesChoices() {
@@ -77,22 +79,19 @@ export function LinesChoices() {
         </Clause>
         <Clause>
           through a slit of{" "}
-          <Amount
+          <NumberAmount
             label="Full width of the slit in µeV, or empty where it is not known"
-            value={
-              lines.slit_fwhm_eV === null ? "" : String(Number((lines.slit_fwhm_eV * 1e6).toPrecision(8)))
-            }
+            value={lines.slit_fwhm_eV === null ? null : Number(printed(lines.slit_fwhm_eV, MICRO))}
             placeholder="unknown"
             width={4}
-            onCommit={(text) => {
-              const value = parseNumber(text);
-              if (text !== "" && (value === null || value <= 0)) return "a width in µeV above zero, or empty";
+            accept={(value) => value > 0}
+            expected="a width in µeV above zero, or empty"
+            onTake={(value) =>
               controller.change(
-                { lines: { slit_fwhm_eV: value === null ? null : value * 1e-6 } },
+                { lines: { slit_fwhm_eV: value === null ? null : fromPrinted(value, MICRO) } },
                 `slit ${value ?? "unknown"} µeV`,
-              );
-              return null;
-            }}
+              )
+            }
           />{" "}
           µeV
         </Clause>

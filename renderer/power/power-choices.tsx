@@ -1,7 +1,6 @@
 import { resolveProtocol, type ProtocolInput } from "../../app/protocol/index.ts";
-import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
+import { Amount, Clause, NumberAmount, Pick, Sentence } from "../controls/choices.tsx";
 import { FitButton } from "../controls/fit-button.tsx";
-import { parseNumber } from "../controls/parse-number.ts";
 import { currentChoices, currentPower, useController, useWindow } from "../store/context.ts";
 import { parsePowers } from "./parse-powers.ts";
 
@@ -216,37 +215,17 @@ interface FieldProps {
   readonly onTake: (value: number | null) => void;
 }
 
-function Positive({ label, value, placeholder, unit, onTake }: FieldProps & { readonly unit: string }) {
-  return (
-    <Amount
-      label={label}
-      value={value === null ? "" : String(value)}
-      placeholder={placeholder}
-      width={Math.max(4, placeholder.length)}
-      onCommit={(text) => {
-        const typed = parseNumber(text);
-        if (text !== "" && (typed === null || typed <= 0))
-          return `a number above zero${unit === "" ? "" : `, in ${unit}`}`;
-        onTake(typed);
-        return null;
-      }}
-    />
-  );
+function Positive({ unit, ...field }: FieldProps & { readonly unit: string }) {
+  const expected = `a number above zero${unit === "" ? "" : `, in ${unit}`}`;
+  return <NumberAmount {...field} accept={(value) => value > 0} expected={expected} />;
 }
 
-function Share({ label, value, placeholder, onTake }: FieldProps) {
+function Share(field: FieldProps) {
   return (
-    <Amount
-      label={label}
-      value={value === null ? "" : String(value)}
-      placeholder={placeholder}
-      width={Math.max(4, placeholder.length)}
-      onCommit={(text) => {
-        const typed = parseNumber(text);
-        if (text !== "" && (typed === null || typed <= 0 || typed >= 1.0000001)) return "above 0, at most 1";
-        onTake(typed);
-        return null;
-      }}
+    <NumberAmount
+      {...field}
+      accept={(value) => value > 0 && value < 1.0000001}
+      expected="above 0, at most 1"
     />
   );
 }

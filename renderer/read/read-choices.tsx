@@ -1,8 +1,7 @@
 import type { ReactNode } from "react";
 import { resolveProtocol, type ProtocolInput } from "../../app/protocol/index.ts";
 import type { Inspection } from "../../app/tasks/index.ts";
-import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
-import { parseNumber } from "../controls/parse-number.ts";
+import { Clause, NumberAmount, Pick, Sentence } from "../controls/choices.tsx";
 import { currentChoices, useController, useWindow } from "../store/context.ts";
 
 type Signal = NonNullable<ProtocolInput["signal"]>;
@@ -200,20 +199,19 @@ export function ReadChoices({
         )}
         <Clause>
           of a crystal{" "}
-          <Amount
+          <NumberAmount
             label="Thickness in micrometres"
-            value={signal.thickness_um === null ? "" : String(signal.thickness_um)}
+            value={signal.thickness_um}
             placeholder={thicknessRead(inspection)}
             width={4}
-            onCommit={(text) => {
-              const value = parseNumber(text);
-              if (text !== "" && (value === null || value <= 0)) return "a thickness in µm above zero";
+            accept={(value) => value > 0}
+            expected="a thickness in µm above zero"
+            onTake={(value) =>
               onSignal(
                 { thickness_um: value },
                 value === null ? "thickness as read" : `thickness ${value} µm`,
-              );
-              return null;
-            }}
+              )
+            }
           />{" "}
           µm thick,
         </Clause>
@@ -233,17 +231,16 @@ export function ReadChoices({
         {signal.surface.model !== "none" && (
           <Clause>
             with R ={" "}
-            <Amount
+            <NumberAmount
               label="Reflectance of one surface, or empty to take it from the index"
-              value={signal.surface.reflectance === null ? "" : String(signal.surface.reflectance)}
+              value={signal.surface.reflectance}
               placeholder="from index"
               width={8}
-              onCommit={(text) => {
-                const value = parseNumber(text);
-                if (text !== "" && (value === null || value < 0 || value >= 1)) return "0 to 1";
-                onSignal({ surface: { reflectance: value } }, `reflectance ${value ?? "from index"}`);
-                return null;
-              }}
+              accept={(value) => value >= 0 && value < 1}
+              expected="0 to 1"
+              onTake={(value) =>
+                onSignal({ surface: { reflectance: value } }, `reflectance ${value ?? "from index"}`)
+              }
             />
           </Clause>
         )}
