@@ -1,3 +1,4 @@
+import { choleskyFactor, choleskySolve } from "../solve/index.ts";
 import type { Peak } from "./find-peaks.ts";
 
 /** How a reading of n is pinned. */
@@ -297,11 +298,12 @@ function refine(
           for (let j = 0; j < p; j++) normal[i * p + j]! += weight * row[i]! * row[j]!;
         }
       }
-      const step = solveSmall(normal, right, p);
-      if (step === null) break;
-      gap += step[0]!;
-      rydberg += step[1]!;
-      if (!held) defect += Math.max(-0.2, Math.min(0.2, step[2]!));
+      const factor = choleskyFactor(normal, p);
+      if (factor === null) break;
+      choleskySolve(factor, p, right);
+      gap += right[0]!;
+      rydberg += right[1]!;
+      if (!held) defect += Math.max(-0.2, Math.min(0.2, right[2]!));
       if (!(rydberg > 0)) break;
     }
     if (!(rydberg > 0) || !Number.isFinite(gap + rydberg + defect)) return best;
@@ -312,28 +314,4 @@ function refine(
     best = again;
   }
   return best;
-}
-
-function solveSmall(matrix: Float64Array, right: Float64Array, p: number): Float64Array | null {
-  const a = Float64Array.from(matrix);
-  const x = Float64Array.from(right);
-  for (let i = 0; i < p; i++) {
-    let pivot = i;
-    for (let r = i + 1; r < p; r++) if (Math.abs(a[r * p + i]!) > Math.abs(a[pivot * p + i]!)) pivot = r;
-    if (!(Math.abs(a[pivot * p + i]!) > 0)) return null;
-    if (pivot !== i) {
-      for (let j = 0; j < p; j++) [a[i * p + j], a[pivot * p + j]] = [a[pivot * p + j]!, a[i * p + j]!];
-      [x[i], x[pivot]] = [x[pivot]!, x[i]!];
-    }
-    for (let r = i + 1; r < p; r++) {
-      const factor = a[r * p + i]! / a[i * p + i]!;
-      for (let j = i; j < p; j++) a[r * p + j]! -= factor * a[i * p + j]!;
-      x[r]! -= factor * x[i]!;
-    }
-  }
-  for (let i = p - 1; i >= 0; i--) {
-    for (let j = i + 1; j < p; j++) x[i]! -= a[i * p + j]! * x[j]!;
-    x[i]! /= a[i * p + i]!;
-  }
-  return x;
 }
