@@ -98,6 +98,77 @@ export function findFringes(energy: Float64Array, residuals: Float64Array): Seen
   return { period_eV: span / periods, periods, amplitude: amplitudes[best]!, prominence };
 }
 
+/** A wave of fewer periods may as well be a background that does not fit. */
+const FEWEST_SAID = 4.5;
+/** Parts of the window that each have to show the wave. */
+const PARTS = 5;
+/** A part shows the wave where it has this much of the amplitude of the whole, in phase with it. */
+const OWN_SHARE = 0.25;
+/** One part may hide it: fringes are weak under strong lines. */
+const PARTS_WITH_WAVE = 4;
+/** A wave gains this many times what waves of half to twice its period gain, so that a misfit of that size is none. */
+const LEAST_CONTRAST = 2.5;
+
+/**
+ * What      Whether a wave found in residuals goes through the whole window with one phase and amplitude, as interference in a
+ *           plate does. A step, an edge, one line that does not fit or a background that is too stiff make a wave of their own
+ *           size at their own place.
+ * Shapes    residuals (m) in standard deviations.
+ */
+export function isSteadyWave(energy: Float64Array, residuals: Float64Array, seen: SeenFringes): boolean {
+  if (seen.periods <= FEWEST_SAID) return false;
+  const m = energy.length;
+  const low = energy[0]!;
+  const span = energy[m - 1]! - low;
+  const { cos, sin, gain } = waveOf(energy, residuals, seen.periods);
+  const top = new Float64Array(PARTS);
+  const bottom = new Float64Array(PARTS);
+  for (let i = 0; i < m; i++) {
+    const at = (energy[i]! - low) / span;
+    const part = Math.min(PARTS - 1, Math.floor(PARTS * at));
+    const phase = 2 * Math.PI * seen.periods * at;
+    const wave = cos * Math.cos(phase) + sin * Math.sin(phase);
+    top[part]! += wave * residuals[i]!;
+    bottom[part]! += wave * wave;
+  }
+  const shares = top.map((sum, k) => sum / bottom[k]!);
+  const others = [];
+  for (let factor = 0.5; factor <= 2.001; factor += 0.05) {
+    const periods = factor * seen.periods;
+    if (Math.abs(periods - seen.periods) > 1.5) others.push(waveOf(energy, residuals, periods).gain);
+  }
+  return (
+    shares.filter((share) => share > OWN_SHARE).length >= PARTS_WITH_WAVE &&
+    gain > LEAST_CONTRAST * Math.max(...others)
+  );
+}
+
+/** Least squares of a cos + b sin with so many periods over the window, and the fall of chi square by them. */
+function waveOf(
+  energy: Float64Array,
+  residuals: Float64Array,
+  periods: number,
+): { readonly cos: number; readonly sin: number; readonly gain: number } {
+  const m = energy.length;
+  const low = energy[0]!;
+  const span = energy[m - 1]! - low;
+  let [cc, cs, ss, yc, ys] = [0, 0, 0, 0, 0];
+  for (let i = 0; i < m; i++) {
+    const phase = (2 * Math.PI * periods * (energy[i]! - low)) / span;
+    const c = Math.cos(phase);
+    const s = Math.sin(phase);
+    cc += c * c;
+    cs += c * s;
+    ss += s * s;
+    yc += residuals[i]! * c;
+    ys += residuals[i]! * s;
+  }
+  const det = cc * ss - cs * cs;
+  const cos = (ss * yc - cs * ys) / det;
+  const sin = (cc * ys - cs * yc) / det;
+  return { cos, sin, gain: cos * yc + sin * ys };
+}
+
 const ROUNDS = 5;
 /** Points this many robust standard deviations off are lines. */
 const CLIPPED = 2.5;
@@ -233,14 +304,13 @@ export function fringeNotes(
     readonly how: "additive" | "multiplicative";
     readonly dispersion: boolean;
   } | null,
-  seen: SeenFringes | null,
+  wave: SeenFringes | null,
   depthRange: number | null,
   swing: number | null,
   state: LadderState,
   protocol: Protocol,
 ): Note[] {
   const notes: Note[] = [];
-  const wave = seen !== null && seen.periods > FEWEST_SAID ? seen : null;
   const period = fitted?.period ?? wave?.period_eV ?? null;
   if (asksForFringes(protocol) && fitted === null)
     notes.push(
@@ -265,8 +335,8 @@ export function fringeNotes(
       doubt(
         "fringes-seen",
         "background",
-        `The residuals carry a wave of period ${meV(wave.period_eV)} (amplitude ${wave.amplitude.toPrecision(2)} standard deviations of a point), as interference in a plate would give: ${opticalThickness(wave.period_eV, protocol)}.`,
-        'add {"term": "fringes"} to the background, and give the index (signal.surface.index)',
+        `The residuals carry a wave of period ${meV(wave.period_eV)} (amplitude ${wave.amplitude.toPrecision(2)} standard deviations of a point) through the whole window, as interference in a plate would leave: if it is that, ${opticalThickness(wave.period_eV, protocol)}.`,
+        'add {"term": "fringes"} to the background, give the index (signal.surface.index), and see whether chi square falls',
       ),
     );
   if (fitted?.how === "additive" && depthRange !== null && depthRange > ADDITIVE_RANGE)
@@ -297,7 +367,7 @@ export function fringeNotes(
         doubt(
           "low-n-coherent",
           "lines",
-          `Fringes show that the light keeps its phase through the crystal, and lines turn that phase by their own index: Beer's law fails for them. ${coherentBias(swing)}`,
+          `${fitted === null ? "If the wave in the residuals is interference, the light keeps" : "Fringes show that the light keeps"} its phase through the crystal, and lines turn that phase by their own index: Beer's law fails for them. ${coherentBias(swing)}`,
           "fit the light with the index of the lines: thickness and index (signal.thickness_um, signal.surface.index), the background term fringes, lines.domain=transmittance",
         ),
       );
@@ -318,6 +388,4 @@ function coherentBias(swing: number | null): string {
 
 /** Fringes may be added to the signal where the optical depth varies by less than this. */
 export const ADDITIVE_RANGE = 0.2;
-/** A wave of fewer periods may as well be a background that does not fit. */
-const FEWEST_SAID = 4.5;
 const NEAR = [0.3, 3] as const;

@@ -1,5 +1,6 @@
 import { describe, expect, test } from "vitest";
 import { makeRandom } from "../../../app/base/index.ts";
+import { findFringes, isSteadyWave } from "../../../app/analysis/fringes.ts";
 import type { RunglineResult } from "../../../app/protocol/index.ts";
 import { doubtsOf, pullOf, resultOf } from "../../support/analyse-bytes.ts";
 import { cleanSignal, widthOf, type SyntheticSeries } from "../../support/make-spectrum.ts";
@@ -178,5 +179,45 @@ describe("stray light", () => {
       for (const n of [2, 3, 4]) expect(Math.abs(areaPull(result, n)), `n = ${n}`).toBeLessThan(4);
       if (stray_light === "free") expect(rowOf(result, "stray").value!).toBeLessThan(0.002);
     }
+  });
+});
+
+describe("a wave in residuals", () => {
+  const energy = Float64Array.from({ length: 6000 }, (_, i) => 2.14 + (0.033 * i) / 5999);
+  const noise = (seed: number): Float64Array => {
+    const random = makeRandom(seed);
+    return energy.map(() => random.normal());
+  };
+  const passes = (residuals: Float64Array): boolean => {
+    const seen = findFringes(energy, residuals);
+    return seen !== null && isSteadyWave(energy, residuals, seen);
+  };
+
+  test("through the whole window counts as fringes, however weak", () => {
+    for (let seed = 1; seed <= 5; seed++)
+      for (const period of [0.0005, 0.002, 0.006])
+        // Derived: an amplitude of 0.3 gains 270 in chi square, and no other period gains as much
+        expect(
+          passes(
+            noise(seed).map((value, i) => value + 0.3 * Math.cos((2 * Math.PI * energy[i]!) / period + seed)),
+          ),
+        ).toBe(true);
+  });
+
+  test.each([
+    ["a step", (u: number) => (u > 0.3 ? 1 : -0.4)],
+    ["an edge that does not fit", (u: number) => 6 * Math.exp(-(((u - 0.97) / 0.01) ** 2))],
+    [
+      "one line that does not fit",
+      (u: number) => 8 * ((u - 0.4) / 0.02) * Math.exp(-(((u - 0.4) / 0.02) ** 2)),
+    ],
+    [
+      "a background that is too stiff",
+      (u: number) => 3 * (5 * (2 * u - 1) ** 3 - 3 * (2 * u - 1)) + 2 * Math.sin(7 * u),
+    ],
+    ["noise", () => 0],
+  ])("%s is none", (_, misfit) => {
+    for (let seed = 1; seed <= 10; seed++)
+      expect(passes(noise(seed).map((value, i) => value + misfit(i / 5999)))).toBe(false);
   });
 });
