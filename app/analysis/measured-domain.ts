@@ -11,6 +11,8 @@ import type { Protocol } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { fitEveryPoint, type FitDomain, type FullFit } from "./fit-full.ts";
 import { ADDITIVE_RANGE, fringePhase, plateReflectance, type FringePhase } from "./fringes.ts";
+import { interpolateColumn } from "../lines/index.ts";
+import { transmittanceFromDepth } from "../units/index.ts";
 import { slitOf, withoutSlit } from "./instrument.ts";
 import { depthPerSignal } from "./light.ts";
 import { modelBackground, type ModelChoices } from "./ladder-model.ts";
@@ -72,6 +74,10 @@ export function fitInDomain(
     },
     points,
   });
+  if (domain === "alpha" && needed) {
+    const masked = withoutDarkness(full, spectrum, points, protocol, choices, watch, report);
+    if (masked !== null) return masked;
+  }
   if (domain === "alpha" || (domain === "auto" && !needed)) return asSignal([]);
   if (depth === null) return asSignal([noDepthNote()]);
 
@@ -161,6 +167,63 @@ function byPhase(phase: FringePhase, fit: (dispersion: boolean) => LightFit): Li
 /** Chi square beyond its expectation, in its standard deviations. */
 const MISFIT_DEVIATIONS = 4;
 const CLEARLY_LESS = 10;
+
+/** Beyond this part of the points the light is noisy everywhere, and a mask would leave too little. */
+const MOST_MASKED = 0.5;
+
+/**
+ * A fit of the absorption that leaves out where the fitted light falls below ten times its noise, whatever single readings
+ * say: readings chosen by their own noise bias what is left, and so does the logarithm of noisy light. Null where nothing,
+ * or too much, is as dark as that.
+ */
+function withoutDarkness(
+  full: FullFit,
+  spectrum: Spectrum,
+  points: SelectedPoints,
+  protocol: Protocol,
+  choices: ModelChoices,
+  watch: Watch,
+  report: (pass: number) => void,
+): DomainFit | null {
+  const { transmittance } = spectrum;
+  if (transmittance === null || protocol.signal.stray_light !== null) return null;
+  const { thickness_cm: depth, reflectance, surface } = transmittance;
+  const all = everyReading(spectrum, points, protocol.mask_eV);
+  const model = new Float64Array(all.energy.length);
+  interpolateColumn(points.energy, full.fit.solution.fitted, all.energy, 0, model.length, model);
+  const noise = model.map(
+    (signal, i) =>
+      transmittance.sigma[all.place[i]!]! / transmittanceFromDepth(depth * signal, reflectance, surface),
+  );
+  const keep = Array.from(noise, (one) => one < NOISY);
+  const masked = keep.filter((one) => !one).length;
+  if (masked === 0 || masked > MOST_MASKED * keep.length) return null;
+  // Ten standard deviations above zero nothing is without a logarithm by chance.
+  const bright = all.signal.map((signal, i) => (keep[i]! && Number.isFinite(signal) ? 1 : 0));
+  const pick = (values: Float64Array): Float64Array => values.filter((_, i) => bright[i] === 1);
+  const lit: SelectedPoints = {
+    place: all.place.filter((_, i) => bright[i] === 1),
+    energy: pick(all.energy),
+    // The mean of -ln T under noise is too large by half the square of sigma_T/T.
+    signal: pick(all.signal.map((signal, i) => signal - (0.5 * noise[i]! * noise[i]!) / depth)),
+    sigma: pick(all.sigma),
+  };
+  const current = fitEveryPoint(lit, full.state, protocol, spectrum.unit, choices, watch, report);
+  if (!current.fit.solution.converged) return null;
+  const note = assumption(
+    "dark-points-masked",
+    ABOUT,
+    `The absorption was fitted without ${countOf(masked)} where the fitted light is below ten times its noise; single readings did not decide.`,
+    "set lines.domain=auto or transmittance, which use these points too",
+  );
+  return {
+    full: {
+      ...current,
+      domain: { name: "alpha", notes: [note], answered: ["saturated-points", "low-transmission"] },
+    },
+    points: lit,
+  };
+}
 
 /** Stray light that is not known starts here. */
 const STRAY_START = 1e-3;
