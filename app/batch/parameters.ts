@@ -1,4 +1,4 @@
-import type { ComparedParameter, RunglineResult } from "../protocol/index.ts";
+import { quotedLevels, type ComparedParameter, type RunglineResult } from "../protocol/index.ts";
 
 /** One number of one result with its two kinds of error. */
 export interface Reading {
@@ -29,8 +29,7 @@ export function readParameter(result: RunglineResult, name: ComparedParameter): 
     case "defect0": {
       if (series === null) return NOT_DETERMINED;
       // Where the law was rejected its errors, scaled by the residuals, are the ones to defend.
-      const quantity = series.scaled?.[name] ?? series[name];
-      return reading({ value: series[name].value, sigma: quantity.sigma }, systematic?.[name] ?? null);
+      return reading(quotedLevels(series)[name], systematic?.[name] ?? null);
     }
     case "width_floor_eV":
       return reading(width_law?.floor_eV);

@@ -2,6 +2,7 @@ export * from "./protocol-schema.ts";
 export * from "./power-protocol.ts";
 export * from "./power-schema.ts";
 export * from "./result-schema.ts";
+export { quotedLevels, type QuotedLevels } from "./quoted-levels.ts";
 export { DEFAULT_PROTOCOL } from "./defaults.ts";
 export { PRESETS, findPreset, type Preset } from "./presets.ts";
 export {

@@ -1,4 +1,5 @@
 import {
+  quotedLevels,
   COMPARISON_CHOICES_SCHEMA,
   type Comparison,
   type Protocol,
@@ -163,18 +164,18 @@ function doubts(result: RunglineResult): number {
 function overview(samples: readonly SampleContents[]): string {
   const rows = samples
     .map(({ result, name }, i) => {
-      const { series } = result;
+      const levels = result.series === null ? null : quotedLevels(result.series);
       const cells = [
         `<a href="#sample-${i + 1}">${escapeMarkup(name)}</a>`,
         escapeMarkup(factText(result, "batch") ?? ""),
         escapeMarkup(factText(result, "temperature") ?? ""),
         escapeMarkup(result.source.file),
         escapeMarkup(result.status.replace("-", " ")),
-        number(series === null ? "" : formatEnergy(series.gap_eV, ELECTRONVOLT, THIN)),
+        number(levels === null ? "" : formatEnergy(levels.gap_eV, ELECTRONVOLT, THIN)),
         number(
-          series === null ? "" : formatEnergy(series.rydberg_eV, energyUnit(series.rydberg_eV.value), THIN),
+          levels === null ? "" : formatEnergy(levels.rydberg_eV, energyUnit(levels.rydberg_eV.value), THIN),
         ),
-        number(series === null ? "" : formatQuantity(series.defect0.value, series.defect0.sigma, "", THIN)),
+        number(levels === null ? "" : formatQuantity(levels.defect0.value, levels.defect0.sigma, "", THIN)),
         String(result.derived?.highest_n ?? ""),
         String(doubts(result)),
       ];
@@ -248,6 +249,8 @@ function sampleSection(sample: SampleContents, i: number, several: boolean, with
 function keyNumbers(result: RunglineResult): string {
   const { series, width_law: width, derived, systematic } = result;
   if (series === null) return "";
+  const levels = quotedLevels(series);
+  const scaled = levels.scaled ? ", error scaled by the scatter" : "";
   const rydberg = energyUnit(series.rydberg_eV.value);
   const bare = (quantity: { value: number | null; sigma: number | null }): string =>
     formatQuantity(quantity.value, quantity.sigma, "", THIN);
@@ -262,11 +265,14 @@ function keyNumbers(result: RunglineResult): string {
     return `, systematic ±${formatNumber(value * unit.perElectronvolt, 2)} ${unit.name}`;
   };
   const entries: [string, string][] = [
-    [`gap${part(systematic?.gap_eV)}`, formatEnergy(plain(series.gap_eV), ELECTRONVOLT, THIN)],
-    [`Rydberg energy${part(systematic?.rydberg_eV)}`, formatEnergy(plain(series.rydberg_eV), rydberg, THIN)],
+    [`gap${scaled}${part(systematic?.gap_eV)}`, formatEnergy(plain(levels.gap_eV), ELECTRONVOLT, THIN)],
     [
-      `quantum defect${systematic?.defect0 === null || systematic === null ? "" : `, systematic ±${formatNumber(systematic.defect0, 2)}`}`,
-      bare(series.defect0),
+      `Rydberg energy${scaled}${part(systematic?.rydberg_eV)}`,
+      formatEnergy(plain(levels.rydberg_eV), rydberg, THIN),
+    ],
+    [
+      `quantum defect${scaled}${systematic?.defect0 === null || systematic === null ? "" : `, systematic ±${formatNumber(systematic.defect0, 2)}`}`,
+      bare(levels.defect0),
     ],
     ...(width === null
       ? []

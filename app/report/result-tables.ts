@@ -1,4 +1,4 @@
-import type { LineResult, RunglineResult } from "../protocol/index.ts";
+import { quotedLevels, type LineResult, type RunglineResult } from "../protocol/index.ts";
 import { areaUnit, signalUnitWords } from "./area-unit.ts";
 import { count, measured, numberColumn, textColumn, words, type Cell, type DataTable } from "./data-table.ts";
 import {
@@ -42,6 +42,7 @@ function seriesTable(result: RunglineResult): DataTable | null {
   const { series, systematic } = result;
   if (series === null) return null;
   const level = result.protocol.uncertainty.level;
+  const levels = quotedLevels(series);
   const rydberg = energyUnit(series.rydberg_eV.value);
   const ritz = series.defect2.value !== null;
   const row = (name: string, quantity: Quantity, unit: EnergyUnit, part: string): Cell[] => [
@@ -59,29 +60,34 @@ function seriesTable(result: RunglineResult): DataTable | null {
     title: `Series *E*_{n} = *E*_{g} − *Ry*/(*n* − *δ*)^{2}, *n* = ${series.fit_n[0]} to ${series.fit_n[1]}`,
     columns: [
       textColumn("quantity"),
-      textColumn("value(standard error)"),
+      textColumn(levels.scaled ? "value(scaled error)" : "value(standard error)"),
       textColumn("systematic"),
       textColumn(`interval at ${percent(level)}`),
     ],
     rows: [
-      row("gap", series.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null, null)),
+      row("gap", levels.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null, null)),
       row(
         "Rydberg energy",
-        series.rydberg_eV,
+        levels.rydberg_eV,
         rydberg,
         systematicWords(systematic?.rydberg_eV ?? null, rydberg),
       ),
-      row(ritz ? "quantum defect, constant part" : "quantum defect", series.defect0, PURE, defectPart),
+      row(ritz ? "quantum defect, constant part" : "quantum defect", levels.defect0, PURE, defectPart),
       ...(ritz ? [row("quantum defect, Ritz term", series.defect2, PURE, "")] : []),
-      ...(series.scaled === null
-        ? []
-        : [
-            row("gap, error scaled since the law is rejected", series.scaled.gap_eV, ELECTRONVOLT, ""),
-            row("Rydberg energy, error scaled", series.scaled.rydberg_eV, rydberg, ""),
-            row("quantum defect, error scaled", series.scaled.defect0, PURE, ""),
-          ]),
+      ...(levels.scaled
+        ? [
+            row("gap, error unscaled", series.gap_eV, ELECTRONVOLT, ""),
+            row("Rydberg energy, error unscaled", series.rydberg_eV, rydberg, ""),
+            row("quantum defect, error unscaled", series.defect0, PURE, ""),
+          ]
+        : []),
     ],
     remarks: [
+      ...(levels.scaled
+        ? [
+            "The law is rejected: errors and intervals are scaled by the root of reduced chi square, and the unscaled ones, which are too small, stand below.",
+          ]
+        : []),
       `Chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, *p* = ${formatNumber(series.p, 3)}. The standard error is statistical; the systematic part is the spread over defensible choices.`,
       ...heldDefectRemark(systematic?.held_defect, rydberg),
       ...correlations(series.correlation),

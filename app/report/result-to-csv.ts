@@ -1,4 +1,4 @@
-import type { LineResult, RunglineResult } from "../protocol/index.ts";
+import { quotedLevels, type LineResult, type RunglineResult } from "../protocol/index.ts";
 import { areaUnit, signalUnitWords } from "./area-unit.ts";
 import { csvLine } from "./csv.ts";
 import { gravestFirst } from "./notes.ts";
@@ -50,8 +50,9 @@ function resultRows(result: RunglineResult): string {
         n,
         quantity.value,
         quantity.sigma,
-        quantity.low,
-        quantity.high,
+        // What is held has no interval.
+        quantity.sigma === 0 ? null : quantity.low,
+        quantity.sigma === 0 ? null : quantity.high,
         unit,
         text,
       ]),
@@ -86,17 +87,19 @@ function resultRows(result: RunglineResult): string {
   const { series, systematic, width_law, strength_law, tail, derived, fit } = result;
   if (series !== null) {
     const range = `n ${series.fit_n[0]} to ${series.fit_n[1]}`;
-    row("series", "gap", null, series.gap_eV, "eV", range);
-    row("series", "rydberg", null, series.rydberg_eV, "eV", range);
-    row("series", "defect0", null, series.defect0, "", range);
+    const levels = quotedLevels(series);
+    const how = levels.scaled ? `${range}, error scaled by the scatter since the law is rejected` : range;
+    row("series", "gap", null, levels.gap_eV, "eV", how);
+    row("series", "rydberg", null, levels.rydberg_eV, "eV", how);
+    row("series", "defect0", null, levels.defect0, "", levels.defect0.sigma === 0 ? `${range}, held` : how);
     row("series", "defect2", null, series.defect2, "", range);
     number("series", "chi2", series.chi2);
     number("series", "dof", series.dof);
     number("series", "p", series.p);
-    if (series.scaled !== null) {
-      row("series_scaled", "gap", null, series.scaled.gap_eV, "eV");
-      row("series_scaled", "rydberg", null, series.scaled.rydberg_eV, "eV");
-      row("series_scaled", "defect0", null, series.scaled.defect0, "");
+    if (levels.scaled) {
+      row("series_unscaled", "gap", null, series.gap_eV, "eV");
+      row("series_unscaled", "rydberg", null, series.rydberg_eV, "eV");
+      row("series_unscaled", "defect0", null, series.defect0, "");
     }
     const { names, matrix } = series.correlation;
     names.forEach((name, i) =>

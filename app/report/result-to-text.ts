@@ -1,5 +1,5 @@
 import { diagnosticsPart } from "./diagnostics-to-text.ts";
-import type { LineResult, RunglineResult } from "../protocol/index.ts";
+import { quotedLevels, type LineResult, type RunglineResult } from "../protocol/index.ts";
 import { areaUnit, signalName, signalUnitWords } from "./area-unit.ts";
 import { cautionsFor } from "./cautions.ts";
 import {
@@ -139,28 +139,34 @@ function seriesPart(result: RunglineResult): string[] {
     return [...heading("Series"), `  gap, Rydberg energy and quantum defect ${NOT_DETERMINED_WORDS}`];
   const level = result.protocol.uncertainty.level;
   const ritz = series.defect2.value !== null;
+  const levels = quotedLevels(series);
   const rydberg = energyUnit(series.rydberg_eV.value);
   const rows: string[][] = [
-    ["", "value(standard error)", "systematic", `interval at ${percent(level)}`],
+    [
+      "",
+      levels.scaled ? "value(scaled error)" : "value(standard error)",
+      "systematic",
+      `interval at ${percent(level)}`,
+    ],
     [
       "gap E_g",
-      energy(series.gap_eV, ELECTRONVOLT, level),
+      energy(levels.gap_eV, ELECTRONVOLT, level),
       systematicWords(systematic?.gap_eV ?? null, null),
-      interval(series.gap_eV, ELECTRONVOLT),
+      interval(levels.gap_eV, ELECTRONVOLT),
     ],
     [
       "Rydberg energy Ry",
-      energy(series.rydberg_eV, rydberg, level),
+      energy(levels.rydberg_eV, rydberg, level),
       systematicWords(systematic?.rydberg_eV ?? null, rydberg),
-      interval(series.rydberg_eV, rydberg),
+      interval(levels.rydberg_eV, rydberg),
     ],
     [
       ritz ? "quantum defect delta_0" : "quantum defect delta",
-      pure(series.defect0),
+      pure(levels.defect0),
       systematic?.defect0 === null || systematic === null
         ? NOT_DETERMINED_WORDS
         : `±${formatNumber(systematic.defect0, 2)}`,
-      interval(series.defect0, PURE),
+      interval(levels.defect0, PURE),
     ],
     ...(ritz ? [["Ritz term delta_2", pure(series.defect2), "", interval(series.defect2, PURE)]] : []),
   ];
@@ -180,11 +186,11 @@ function seriesPart(result: RunglineResult): string[] {
     out.push(
       `  Thickness and reflectance put ±${formatNumber(100 * systematic.area_relative, 2)} % on all areas alike (systematic).`,
     );
-  if (series.scaled !== null) {
+  if (levels.scaled) {
     out.push(
-      "  Scaled by the root of reduced chi square, since the law is rejected: " +
-        `E_g = ${formatEnergy(series.scaled.gap_eV, ELECTRONVOLT)}, ` +
-        `Ry = ${formatEnergy(series.scaled.rydberg_eV, rydberg)}, delta = ${pure(series.scaled.defect0)}`,
+      "  The law is rejected, so errors and intervals above are scaled by the root of reduced chi square. Unscaled (too small): " +
+        `E_g = ${formatEnergy(series.gap_eV, ELECTRONVOLT)}, ` +
+        `Ry = ${formatEnergy(series.rydberg_eV, rydberg)}, delta = ${pure(series.defect0)}`,
     );
   }
   const { names, matrix } = series.correlation;
@@ -283,6 +289,7 @@ export function systematicWords(value_eV: number | null, given: EnergyUnit | nul
 /** Both ends to the place of the standard error, so that they can be laid beside the value. */
 export function interval(quantity: Quantity, unit: EnergyUnit): string {
   const { low, high, sigma } = scaleQuantity(quantity, unit.perElectronvolt);
+  if (sigma === 0) return "held";
   if (low === null || high === null) return NOT_DETERMINED_WORDS;
   const spread = sigma !== null && sigma > 0 ? sigma : (high - low) / 2;
   const digits = Math.min(12, Math.max(0, spread > 0 ? 1 - Math.floor(Math.log10(spread)) : 6));

@@ -1,4 +1,4 @@
-import type { RunglineResult } from "../protocol/index.ts";
+import { quotedLevels, type RunglineResult } from "../protocol/index.ts";
 import { csvLine } from "./csv.ts";
 
 export const SUMMARY_SCHEMA = "rungline-summary/1";
@@ -33,6 +33,7 @@ export const SUMMARY_COLUMNS = [
   "sample",
   "batch",
   "temperature",
+  "level_errors",
 ] as const;
 
 /** By its beginning a file is known as a summary that may be replaced. */
@@ -43,6 +44,7 @@ export type SummaryRow = Readonly<Record<(typeof SUMMARY_COLUMNS)[number], strin
 /** What one result gives to the table over many: small, so that a long run need not keep whole results. */
 export function summaryRow(result: RunglineResult): SummaryRow {
   const { series, systematic, width_law: width, derived, fit } = result;
+  const levels = series === null ? null : quotedLevels(series);
   const fact = (key: string): string | null =>
     result.reading.facts.find((one) => one.key === key)?.text ?? null;
   return {
@@ -51,14 +53,14 @@ export function summaryRow(result: RunglineResult): SummaryRow {
     lines: result.lines.length,
     n_min: series?.fit_n[0] ?? null,
     n_max: series?.fit_n[1] ?? null,
-    gap_eV: series?.gap_eV.value ?? null,
-    gap_sigma_eV: series?.gap_eV.sigma ?? null,
+    gap_eV: levels?.gap_eV.value ?? null,
+    gap_sigma_eV: levels?.gap_eV.sigma ?? null,
     gap_systematic_eV: systematic?.gap_eV ?? null,
-    rydberg_eV: series?.rydberg_eV.value ?? null,
-    rydberg_sigma_eV: series?.rydberg_eV.sigma ?? null,
+    rydberg_eV: levels?.rydberg_eV.value ?? null,
+    rydberg_sigma_eV: levels?.rydberg_eV.sigma ?? null,
     rydberg_systematic_eV: systematic?.rydberg_eV ?? null,
-    defect0: series?.defect0.value ?? null,
-    defect0_sigma: series?.defect0.sigma ?? null,
+    defect0: levels?.defect0.value ?? null,
+    defect0_sigma: levels?.defect0.sigma ?? null,
     defect0_systematic: systematic?.defect0 ?? null,
     width_floor_eV: width?.floor_eV.value ?? null,
     width_floor_sigma_eV: width?.floor_eV.sigma ?? null,
@@ -77,6 +79,8 @@ export function summaryRow(result: RunglineResult): SummaryRow {
     sample: fact("sample"),
     batch: fact("batch"),
     temperature: fact("temperature"),
+    // Scaled by the scatter where the level law was rejected.
+    level_errors: levels === null ? null : levels.scaled ? "scaled" : "plain",
   };
 }
 

@@ -36,11 +36,14 @@ export interface RangeChoice {
 const FEWEST_LINES = 5;
 /** Chi square above this probability: the law holds. */
 const HOLDS_ABOVE = 0.05;
+/** Reduced chi square beyond which errors that are too small are no excuse: lines are off the law. */
+const FLATLY_REJECTED = 25;
 
 /**
  * What      Which lines follow the level law: the lowest n_min with p > 0.05 and at least five lines up to the highest,
  *           and below it the lines that an F test does not tell from those kept.
- *           Where none has it, the n_min whose scaled standard errors of gap and Rydberg energy have the smallest product (low n pin
+ *           Where none has it and all are flatly rejected, four lines that follow the law (one degree of freedom is left then).
+ *           Else the n_min whose scaled standard errors of gap and Rydberg energy have the smallest product (low n pin
  *           the Rydberg energy where they are on the law at all), and a note says so.
  * Units     eV.
  * Domain    fewer than five lines are all used. A range that is asked for is taken as it is.
@@ -86,6 +89,8 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
     }
   }
   if (fallback === null) return failed as Exclude<typeof failed, null | { ok: true }>;
+  const four = fourThatHold(input, tried, highest);
+  if (four !== null) return finish(input, four, factor, skipNotes(input, count - FEWEST_LINES + 1));
   const final = fitWithin(input, fallback.n[0]!, highest);
   if (!final.ok) return final;
   return finish(input, final.value, factor, [
@@ -96,6 +101,18 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
       "name the range (series.fit_n), allow a Ritz term (series.defect=ritz), or look for blends in the residuals",
     ),
   ]);
+}
+
+/** The four highest lines, where they follow the law and no longer range comes near it. */
+function fourThatHold(
+  input: LevelInput,
+  tried: readonly { readonly fit: LevelFit }[],
+  highest: number,
+): LevelFit | null {
+  const flatly = tried.every(({ fit }) => fit.chi2 > FLATLY_REJECTED * Math.max(1, fit.degreesOfFreedom));
+  if (!flatly) return null;
+  const four = fitWithin(input, input.n[input.n.length - FEWEST_LINES + 1]!, highest);
+  return four.ok && four.value.degreesOfFreedom > 0 && four.value.p > HOLDS_ABOVE ? four.value : null;
 }
 
 /**

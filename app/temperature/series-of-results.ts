@@ -1,9 +1,10 @@
 import { doubt, type Note } from "../base/index.ts";
-import type {
-  RunglineResult,
-  TemperatureLaw,
-  TemperatureResult,
-  TemperatureSeries,
+import {
+  quotedLevels,
+  type RunglineResult,
+  type TemperatureLaw,
+  type TemperatureResult,
+  type TemperatureSeries,
 } from "../protocol/index.ts";
 import { fitTemperatureSeries, type TemperaturePoint } from "./fit-series.ts";
 
@@ -64,7 +65,7 @@ export function temperatureSeriesOf(
   };
   add("gap", "gap_eV", null, ({ series: levels, systematic: part }) => {
     if (levels === null) return undefined;
-    const { sigma } = levels.scaled?.gap_eV ?? levels.gap_eV;
+    const { sigma } = quotedLevels(levels).gap_eV;
     const whole = sigma === null ? null : Math.hypot(sigma, systematic ? (part?.gap_eV ?? 0) : 0);
     return { value: levels.gap_eV.value, sigma: whole };
   });

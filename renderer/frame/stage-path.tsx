@@ -1,3 +1,4 @@
+import { quotedLevels } from "../../app/protocol/index.ts";
 import { formatQuantity } from "../../app/report/index.ts";
 import { batchesOf, gather } from "../store/gather.ts";
 import { recorded } from "../record/record-input.ts";
@@ -142,7 +143,8 @@ function ladderState(state: WindowState): string {
   if (fit === null) return "no series yet";
   const { series } = fit.analysed.result;
   if (series === null) return "no series seen";
-  return formatQuantity(series.gap_eV.value, series.gap_eV.sigma, "eV", { groupSpace: "\u2009" });
+  const gap = quotedLevels(series).gap_eV;
+  return formatQuantity(gap.value, gap.sigma, "eV", { groupSpace: "\u2009" });
 }
 
 function powerMarkOf(state: WindowState): Mark {

@@ -1,5 +1,5 @@
 import { NOT_DETERMINED, type Quantity } from "../../app/base/index.ts";
-import type { RunglineResult } from "../../app/protocol/index.ts";
+import { quotedLevels, type RunglineResult } from "../../app/protocol/index.ts";
 import { formatNumber } from "../../app/report/index.ts";
 import { notesAbout, type CardText, type LedgerEntry, type LedgerSection } from "../ledger/ledger-entry.ts";
 
@@ -86,10 +86,10 @@ const CARDS = {
     source: "Schwarz, Ann. Stat. 6, 461 (1978)",
     improve: "longer exposure, lower power, lower temperature",
   },
-  scaled: {
+  unscaled: {
     definition:
-      "The same value where the law is rejected, with its standard error widened by the scatter of the levels around it.",
-    formula: "σ times the root of reduced χ² of the level law",
+      "The same value with the standard error that the errors of the lines give: too small, since the law is rejected. Above it is widened by the scatter of the levels around the law.",
+    formula: "above: σ times the root of reduced χ² of the level law",
     source: "common practice for errors that do not explain the scatter",
     improve: "a range of n that the law describes, or a Ritz quantum defect",
   },
@@ -110,6 +110,7 @@ const CARDS = {
 /** The numbers of the series in the order a paper gives them. */
 export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
   const { series, width_law: width, strength_law: strength, derived, tail, systematic } = result;
+  const levels = series === null ? null : quotedLevels(series);
   const sections: LedgerSection[] = [];
   const entry = (
     id: string,
@@ -143,7 +144,7 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
         "E",
         "g",
         "Gap",
-        series?.gap_eV ?? q,
+        levels?.gap_eV ?? q,
         "eV",
         1,
         CARDS.gap,
@@ -157,7 +158,7 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
         "Ry",
         undefined,
         "Rydberg energy",
-        series?.rydberg_eV ?? q,
+        levels?.rydberg_eV ?? q,
         "meV",
         1e3,
         CARDS.rydberg,
@@ -169,7 +170,7 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
         "δ",
         "0",
         "Quantum defect",
-        series?.defect0 ?? q,
+        levels?.defect0 ?? q,
         "",
         1,
         CARDS.defect,
@@ -183,27 +184,27 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
     ],
     ...(series !== null && {
       remark: `n = ${series.fit_n[0]} to ${series.fit_n[1]}, ${chiText(series.chi2, series.dof, series.p)}${
-        series.scaled === null ? "" : "; the law is rejected"
+        levels?.scaled === true ? "; the law is rejected, errors scaled by the scatter" : ""
       }`,
     }),
   });
-  if (series !== null && series.scaled !== null)
+  if (series !== null && levels?.scaled === true)
     sections.push({
-      title: "With the scatter around the law",
+      title: "Without the scatter around the law",
       entries: [
-        entry("scaled-gap", "E", "g", "Gap", series.scaled.gap_eV, "eV", 1, CARDS.scaled, []),
+        entry("unscaled-gap", "E", "g", "Gap", series.gap_eV, "eV", 1, CARDS.unscaled, []),
         entry(
-          "scaled-rydberg",
+          "unscaled-rydberg",
           "Ry",
           undefined,
           "Rydberg energy",
-          series.scaled.rydberg_eV,
+          series.rydberg_eV,
           "meV",
           1e3,
-          CARDS.scaled,
+          CARDS.unscaled,
           [],
         ),
-        entry("scaled-defect", "δ", "0", "Quantum defect", series.scaled.defect0, "", 1, CARDS.scaled, [], {
+        entry("unscaled-defect", "δ", "0", "Quantum defect", series.defect0, "", 1, CARDS.unscaled, [], {
           exactWord: "held",
         }),
       ],

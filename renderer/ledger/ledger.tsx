@@ -63,7 +63,7 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
       {entry.plain === undefined && entry.quantity.value !== null && entry.quantity.sigma === null && (
         <p className="small">its uncertainty is not known</p>
       )}
-      {entry.plain === undefined && low !== null && high !== null && (
+      {entry.plain === undefined && entry.quantity.sigma !== 0 && low !== null && high !== null && (
         <p className="small">
           interval {endText(low, entry)} to {endText(high, entry)} {unit}
         </p>

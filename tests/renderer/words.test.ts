@@ -49,14 +49,19 @@ describe("the ledger", () => {
     expect(reading.table!.rows.map((row) => row[0])).toEqual(["as read", "+1"]);
   });
 
-  it("gives the errors widened by the scatter where the law is rejected, and only there", () => {
+  it("quotes errors widened by the scatter where the law is rejected, and the plain ones apart", () => {
     const titles = (result: RunglineResult): string[] => ladderLedger(result).map(({ title }) => title);
-    expect(titles(sampleResult())).not.toContain("With the scatter around the law");
+    expect(titles(sampleResult())).not.toContain("Without the scatter around the law");
     const { series } = sampleResult();
-    const scaled = { gap_eV: series!.gap_eV, rydberg_eV: series!.rydberg_eV, defect0: series!.defect0 };
-    expect(titles(sampleResult({ series: { ...series!, scaled } }))).toContain(
-      "With the scatter around the law",
-    );
+    const scaled = {
+      gap_eV: { ...series!.gap_eV, sigma: 0.01 },
+      rydberg_eV: series!.rydberg_eV,
+      defect0: series!.defect0,
+    };
+    const rejected = sampleResult({ series: { ...series!, scaled } });
+    expect(titles(rejected)).toContain("Without the scatter around the law");
+    // Derived: the scaled error put in above
+    expect(ladderLedger(rejected)[0]!.entries[0]!.quantity.sigma).toBe(0.01);
   });
 
   it("says that an exponent was held, not that it is exact", () => {

@@ -179,12 +179,14 @@ describe("a result as text", () => {
       makeResult({
         status: "not-converged",
         fit: { ...result.fit!, termination: "iterationLimit" },
-        series: { ...result.series!, scaled: { gap_eV, rydberg_eV, defect0 } },
+        series: { ...result.series!, scaled: { gap_eV: { ...gap_eV, sigma: 0.01 }, rydberg_eV, defect0 } },
         systematic: null,
       }),
     );
     expect(doubtful).toContain("NOT CONVERGED (stopped by the limit of iterations)");
-    expect(doubtful).toContain("Scaled by the root of reduced chi square");
+    expect(doubtful).toContain("value(scaled error)");
+    expect(doubtful).toMatch(/gap E_g +2\.172\(10\) eV/);
+    expect(doubtful).toContain("Unscaled (too small): E_g = ");
     expect(doubtful).not.toMatch(/null|undefined|NaN/);
   });
 });
