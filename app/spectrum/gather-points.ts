@@ -19,6 +19,8 @@ export interface Points {
   readonly dark: Float64Array | null;
   readonly dropped: number;
   readonly order: string;
+  /** True where the light axis runs in both directions. */
+  readonly turnsRound: boolean;
   readonly notes: readonly Note[];
 }
 
@@ -42,10 +44,11 @@ export function gatherPoints(
   sigmaScale: number,
 ): Points {
   const notes: Note[] = [];
-  const rows = readRows(table, chosen, axis, scale, sigmaScale, notes);
-  const order = describeOrder(rows, axis.scale.reversed, notes);
+  const read = readRows(table, chosen, axis, scale, sigmaScale, notes);
+  const rows = withoutStrays(read, axis, notes);
   const sorted = rows.slice().sort((a, b) => a.energy - b.energy || a.line - b.line);
   const groups = groupRepeated(sorted, notes);
+  const { order, turnsRound } = describeOrder(rows, groups, axis.scale.reversed, notes);
   const m = groups.length;
   const points = {
     energy_eV: new Float64Array(m),
@@ -56,7 +59,7 @@ export function gatherPoints(
     dark: chosen.dark === null ? null : new Float64Array(m),
   };
   for (let i = 0; i < m; i++) averageGroup(groups[i]!, points, i);
-  return { ...points, dropped: table.rows - rows.length, order, notes };
+  return { ...points, dropped: table.rows - rows.length, order, turnsRound, notes };
 }
 
 function readRows(
@@ -109,8 +112,8 @@ function readRows(
       doubt(
         "cells-missing",
         "reading.columns",
-        `${count(blank.length, "row")} without a number in the axis or the signal left out: ${lines(blank)}`,
-        "look at these lines of the file",
+        `${count(blank.length, "row")} without a number in the axis or the signal left out: ${lines(blank)}${firstBadCell(table, blank[0]!)}`,
+        "look at these lines of the file: each cell has to hold one number, with the same decimal mark everywhere",
       ),
     );
   if (outside.length > 0)
@@ -134,7 +137,64 @@ function readRows(
   return rows;
 }
 
-function describeOrder(rows: readonly Row[], reversed: boolean, notes: Note[]): string {
+/** What stands where the first of these rows should have a number. */
+function firstBadCell(table: Table, line: number): string {
+  const cell = table.skipped.find((one) => one.line === line && one.column !== null);
+  if (cell === undefined) return "";
+  return cell.found === ""
+    ? `; column ${cell.column} of line ${line} is empty`
+    : `; column ${cell.column} of line ${line} holds "${cell.found}"`;
+}
+
+/** A row counts as a stray where its energy misses the gap between its neighbours by more than this many steps. */
+const STRAY_STEPS = 20;
+/** More strays than this, or than a thousandth of all rows, are a file in another order and no slips. */
+const MOST_STRAYS = 3;
+
+/**
+ * Rows of a file in order whose energy alone is out of it: a wrong digit or decimal mark. They are left out and said,
+ * since nothing tells where they belong; a file that turns round otherwise is kept as it is.
+ */
+function withoutStrays(rows: readonly Row[], axis: AxisReading, notes: Note[]): readonly Row[] {
+  const steps = rows.slice(1).map((row, i) => row.energy - rows[i]!.energy);
+  const sizes = steps.map(Math.abs).sort((a, b) => a - b);
+  const reach = STRAY_STEPS * (sizes[sizes.length >> 1] ?? 0);
+  const direction = Math.sign(steps.reduce((sum, step) => sum + Math.sign(step), 0));
+  if (direction === 0 || reach === 0) return rows;
+  const strays = new Set<number>();
+  for (let i = 1; i + 1 < rows.length; i++) {
+    const before = direction * rows[i - 1]!.energy;
+    const after = direction * rows[i + 1]!.energy;
+    const here = direction * rows[i]!.energy;
+    if (strays.has(i - 1) || !(before < after)) continue;
+    if (here > after + reach || here < before - reach) strays.add(i);
+  }
+  if (strays.size === 0 || strays.size > Math.max(MOST_STRAYS, rows.length / 1000)) return rows;
+  const kept = rows.filter((_, i) => !strays.has(i));
+  if (kept.some((row, i) => i > 0 && direction * (row.energy - kept[i - 1]!.energy) < 0)) return rows;
+  const first = [...strays][0]!;
+  const say = (i: number): string => short(rows[i]!.energy);
+  notes.push(
+    doubt(
+      "axis-row-out-of-order",
+      "reading.columns",
+      `${count(strays.size, "row")} left out whose light axis does not lie between its neighbours: ${lines([...strays].map((i) => rows[i]!.line))}; line ${rows[first]!.line} gives ${say(first)} eV between ${say(first - 1)} and ${say(first + 1)} eV${axis.scale.unit === "eV" ? "" : ` (read from ${axis.scale.unit})`}`,
+      "correct a wrong digit or decimal mark in that line, or delete the line",
+    ),
+  );
+  return kept;
+}
+
+function short(energy_eV: number): string {
+  return String(Number(energy_eV.toPrecision(8)));
+}
+
+function describeOrder(
+  rows: readonly Row[],
+  groups: readonly (readonly Row[])[],
+  reversed: boolean,
+  notes: Note[],
+): { readonly order: string; readonly turnsRound: boolean } {
   let up = 0;
   let down = 0;
   const turns: number[] = [];
@@ -146,20 +206,28 @@ function describeOrder(rows: readonly Row[], reversed: boolean, notes: Note[]): 
     if (step !== 0 && last !== 0 && step !== last) turns.push(rows[i]!.line);
     if (step !== 0) last = step;
   }
-  if (down === 0) return reversed ? "the file runs down in wavelength" : "ascending in the file";
+  const oneWay = (order: string) => ({ order, turnsRound: false });
+  if (down === 0) return oneWay(reversed ? "the file runs down in wavelength" : "ascending in the file");
   if (up === 0)
-    return reversed
-      ? "ascending wavelengths, reversed to ascending energy"
-      : "descending in the file, reversed to ascending energy";
+    return oneWay(
+      reversed
+        ? "ascending wavelengths, reversed to ascending energy"
+        : "descending in the file, reversed to ascending energy",
+    );
+  const averaged = groups.filter((group) => group.length > 1).length;
+  const together =
+    averaged === 0
+      ? "all rows are sorted into one curve"
+      : `all rows are sorted into one curve, in which the readings of ${count(averaged, "energy", "energies")} that ${averaged === 1 ? "occurs" : "occur"} more than once are averaged`;
   notes.push(
     doubt(
       "axis-not-monotonic",
       "series.gap_eV",
-      `the light axis turns round ${count(turns.length, "time")} (${lines(turns)}): sweeps up and down, or files joined; all rows are sorted into one curve, so hysteresis of the axis would broaden the lines`,
+      `the light axis turns round ${count(turns.length, "time")} (${lines(turns)}): sweeps up and down, or files joined; ${together}, so hysteresis of the axis would broaden the lines, and whatever changed between the sweeps (power, temperature, place) is mixed`,
       "fit each sweep from a file of its own and compare",
     ),
   );
-  return "not in order, sorted to ascending energy";
+  return { order: "not in order, sorted to ascending energy", turnsRound: true };
 }
 
 function groupRepeated(sorted: readonly Row[], notes: Note[]): Row[][] {
@@ -185,7 +253,7 @@ function groupRepeated(sorted: readonly Row[], notes: Note[]): Row[][] {
         "repeated-axis-averaged",
         "reading.columns",
         `${count(repeated.length, "place")} of the light axis stand more than once (${sorted.length} rows, ${groups.length} points) and are averaged, with weights where a standard deviation is given; first at ${lines(repeated)}`,
-        "write the light axis with more digits where neighbouring readings fell together",
+        "where these are sweeps or measurements joined in one file, split it and fit each alone; else write the light axis with more digits, so that neighbouring readings do not fall together",
       ),
     );
   return groups;
@@ -227,8 +295,8 @@ function averageGroup(group: readonly Row[], points: Arrays, i: number): void {
   }
 }
 
-export function count(number: number, word: string): string {
-  return `${number} ${word}${number === 1 ? "" : "s"}`;
+export function count(number: number, word: string, plural = `${word}s`): string {
+  return `${number} ${number === 1 ? word : plural}`;
 }
 
 /** `line 7`, `lines 7, 9, 12`, and how many more. */

@@ -7,6 +7,8 @@ export type SpectrumIssueCode =
   | "spectrum/pixel-axis"
   | "spectrum/unknown-axis-unit"
   | "spectrum/constant-axis"
+  | "spectrum/implausible-energy"
+  | "spectrum/several-measurements"
   | "spectrum/no-light"
   | "spectrum/no-signal"
   | "spectrum/reflectance"

@@ -6,8 +6,11 @@ import { describeColumn } from "./find-column.ts";
 import { count, gatherPoints } from "./gather-points.ts";
 import type { SpectrumIssue } from "./issue.ts";
 import { median, pointNoise } from "./point-noise.ts";
+import { implausibleEnergy } from "./plausible-energy.ts";
 import { readAxis } from "./read-axis.ts";
 import { readQuantity, type QuantityReading } from "./read-quantity.ts";
+import { repeatedFacts } from "./repeated-facts.ts";
+import { skippedRows } from "./skipped-rows.ts";
 import type { ColumnRole, ReadingChoices, Spectrum } from "./spectrum.ts";
 
 /** Fewer points than this are no spectrum: a line alone needs four numbers, and a background. */
@@ -57,6 +60,17 @@ export function readSpectrum(
       },
     });
 
+  const energies = implausibleEnergy(
+    table.file,
+    points.energy_eV[0]!,
+    points.energy_eV[m - 1]!,
+    axis.value,
+    choices,
+  );
+  const facts = repeatedFacts(table, points.turnsRound);
+  const refused = [energies.issue, facts.issue].filter((issue) => issue !== null);
+  if (refused.length > 0) return failure(...refused);
+
   const fixed = choices.noise.sigma === null ? null : choices.noise.sigma * read.scale;
   const noise = pointNoise(
     points,
@@ -68,7 +82,10 @@ export function readSpectrum(
   const notes: Note[] = [
     ...chosen.value.notes,
     ...axis.value.notes,
+    ...energies.notes,
     ...read.notes,
+    ...facts.notes,
+    ...skippedRows(table),
     ...points.notes,
     ...noise.notes,
   ];

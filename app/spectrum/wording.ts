@@ -42,6 +42,20 @@ export function wordSpectrumIssue(issue: SpectrumIssue): Wording {
         message: `${file}: the light axis in column ${say("column")} is ${say("found")} in every row`,
         remedy: "name the light axis with axis.column",
       };
+    case "spectrum/implausible-energy":
+      return {
+        message: `${file}: read in ${say("unit")} the photon energies run from ${say("found")}, where no absorption edge is expected${say("likely") === "" ? "" : `; ${say("likely")}`}`,
+        remedy:
+          issue.facts["suggestion"] === null
+            ? "check the heading of the light axis, or set axis.unit (the protocol's word is taken, with a doubt)"
+            : `is the axis in ${say("suggestion")}? Correct the heading, or set axis.unit=${say("suggestion")}`,
+      };
+    case "spectrum/several-measurements":
+      return {
+        message: `${file}: line ${say("line")} says ${say("found")} where line ${say("first_line")} said ${say("first")}, and the light axis starts again: several measurements in one file`,
+        remedy:
+          "split the file there, one file a measurement; spectra at several powers then go together into rungline power",
+      };
     case "spectrum/no-light":
       return {
         message: `${file}: no point of ${say("found")} has transmitted light above zero`,

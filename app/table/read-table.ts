@@ -287,11 +287,9 @@ function noTable(
       first,
       `${Math.max(alone, shape?.fitting ?? 0)} lines with one number each`,
     );
-  const spoilt = cellWithMore(lines);
-  if (spoilt !== null)
-    return refuse("table/only-text", spoilt.line, `${spoilt.cell} where a number should be`, {
-      spoilt: true,
-    });
+  const failing = failingCell(lines);
+  if (failing !== null)
+    return refuse("table/only-text", failing.line, failing.found, { reason: failing.reason });
   if (shape !== null && shape.score >= 0.9)
     return refuse(
       "table/too-few-rows",
@@ -308,21 +306,42 @@ function noTable(
   );
 }
 
-/** A line that begins with a number and goes on with cells like `50 %` or `2.1 eV`: the first such cell. */
-function cellWithMore(lines: TextLines): { line: number; cell: string } | null {
+/** The first line that begins with a number and has a cell that is none, or one with another decimal mark. */
+function failingCell(lines: TextLines): { line: number; found: string; reason: "spoilt" | "mixed" } | null {
   for (let i = 0; i < Math.min(lines.count, 1000); i++) {
     const text = lineText(lines, i);
     if (!/^\s*[+-]?\d/.test(text) || text.length > 2000) continue;
     for (const delimiter of ["\t", ";", ","] as const) {
       const cells = splitOne(text, delimiter).map((cell) => cell.trim());
-      if (cells.length < 2) continue;
-      const cell = cells.find((part) => /^[+-]?\d[\d.,]*\s*[^\d\s.,:/-]\S*$/.test(part));
-      if (cell !== undefined && !Number.isFinite(parseNumber(cell, ".", "")))
-        return { line: i + 1, cell: quote(cell) };
+      if (cells.length < 2 || markOf(cells[0]!) === null) continue;
+      const marks = cells.map(markOf);
+      const bad = marks.findIndex((mark, j) => mark === null && cells[j] !== "");
+      if (bad > 0)
+        return {
+          line: i + 1,
+          found: `${quote(cells[bad]!)} in column ${bad + 1} where a number should be`,
+          reason: "spoilt",
+        };
+      const point = marks.indexOf(".");
+      const comma = marks.indexOf(",");
+      if (delimiter !== "," && point >= 0 && comma >= 0)
+        return {
+          line: i + 1,
+          found: `${quote(cells[point]!)} with a decimal point in column ${point + 1} and ${quote(cells[comma]!)} with a decimal comma in column ${comma + 1}`,
+          reason: "mixed",
+        };
       break;
     }
   }
   return null;
+}
+
+/** The decimal mark of a number, "" where it has none; null where the cell is no number. */
+function markOf(cell: string): "." | "," | "" | null {
+  const point = Number.isFinite(parseNumber(cell, ".", ""));
+  const comma = Number.isFinite(parseNumber(cell, ",", ""));
+  if (point && comma) return "";
+  return point ? "." : comma ? "," : null;
 }
 
 function looksLikeHeading(sample: readonly string[]): boolean {

@@ -26,9 +26,11 @@ const REMEDIES: Readonly<Record<TableIssue["code"], (issue: TableIssue) => strin
     "A JCAMP-DX file has to hold one curve, in ##XYDATA=(X++(Y..Y)) or ##XYPOINTS=(XY..XY), whole as it was written: export it again, a spectrum a file, or as text with one row a point.",
   "table/too-large": () => "Split the file, or export fewer points.",
   "table/only-text": (issue) =>
-    issue.facts["spoilt"] === true
-      ? "Export numbers without a unit or a sign of per cent in the cell; the unit belongs into the heading."
-      : `${EXPORT} If the numbers are there but were not seen, name the delimiter and the decimal mark.`,
+    issue.facts["reason"] === "spoilt"
+      ? "Export numbers with nothing else in the cell, no unit, sign of per cent or remark; the unit belongs into the heading, a remark into a line of its own after #."
+      : issue.facts["reason"] === "mixed"
+        ? "Write all numbers of the file with the same decimal mark."
+        : `${EXPORT} If the numbers are there but were not seen, name the delimiter and the decimal mark.`,
   "table/only-header": () =>
     "The heading is there but no numbers follow: check that the measurement was stored.",
   "table/one-column": () =>

@@ -9,9 +9,24 @@ describe("what is no table is refused where it stands", () => {
     expect(issue.facts).toMatchObject({
       file: "test.csv",
       line: 2,
-      found: '"50 %" where a number should be',
+      found: '"50 %" in column 2 where a number should be',
     });
     expect(wordTableIssue(issue).remedy).toMatch(/heading/);
+  });
+
+  it("a remark behind the number is named where it first stands", () => {
+    const issue = issueOf("E,T\n2.1,0.5  ; ok\n2.2,0.4  ; ok\n");
+    expect(issue.facts).toMatchObject({
+      line: 2,
+      found: '"0.5 ; ok" in column 2 where a number should be',
+    });
+  });
+
+  it("two decimal marks in one row are named with both cells", () => {
+    const issue = issueOf("E;T\n2.1;0,5\n2.2;0,4\n");
+    expect(issue.facts).toMatchObject({ line: 2 });
+    expect(issue.facts["found"]).toMatch(/"2\.1" with a decimal point .* "0,5" with a decimal comma/);
+    expect(wordTableIssue(issue).remedy).toMatch(/same decimal mark/);
   });
 
   it("sentences with commas and numbers are text", () => {
