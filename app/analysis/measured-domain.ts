@@ -353,7 +353,7 @@ function noiseOfLight(spectrum: Spectrum, points: SelectedPoints): Noise {
   const last = points.place.length - 1;
   let dark = 0;
   for (let i = points.place[0]!; i <= points.place[last]!; i++)
-    if (!(spectrum.transmittance.value[i]! > 0)) dark++;
+    if (spectrum.transmittance.sigma[i]! > 0 && !(spectrum.transmittance.value[i]! > 0)) dark++;
   return { noisy, largest, dark };
 }
 
@@ -377,6 +377,7 @@ function everyReading(
     energy: pick(spectrum.energy_eV),
     signal: pick(spectrum.signal),
     sigma: pick(spectrum.sigma),
+    ...(points.pointsAsOne === undefined ? {} : { pointsAsOne: points.pointsAsOne }),
   };
 }
 

@@ -28,7 +28,13 @@ export const DEFAULT_PROTOCOL: Protocol = {
   },
   window_eV: null,
   mask_eV: [],
-  noise: { sigma: null, gain_e_per_count: null, read_counts: 0, accumulations: 1 },
+  noise: {
+    sigma: null,
+    gain_e_per_count: null,
+    read_counts: 0,
+    accumulations: 1,
+    faulty_points: "leave-out",
+  },
   material: {
     preset: null,
     dimension: 3,

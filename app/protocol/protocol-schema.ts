@@ -140,6 +140,8 @@ export const protocolSchema = z.strictObject({
     gain_e_per_count: positive.nullable().default(null),
     read_counts: z.number().min(0).default(0),
     accumulations: z.number().min(1).default(1),
+    /** Isolated spikes, dead and clipped stretches that the data themselves show: named in any case, and left out or kept. */
+    faulty_points: z.enum(["leave-out", "keep"]).default("leave-out"),
   }),
   material: z.strictObject({
     preset: z.string().nullable(),

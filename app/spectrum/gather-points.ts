@@ -17,6 +17,8 @@ export interface Points {
   readonly divisor: Float64Array;
   /** D of each point; null where there is no dark reading. */
   readonly dark: Float64Array | null;
+  /** Line of the file of each point; the first where several rows were averaged. */
+  readonly line: Int32Array;
   readonly dropped: number;
   readonly order: string;
   /** True where the light axis runs in both directions. */
@@ -59,7 +61,8 @@ export function gatherPoints(
     dark: chosen.dark === null ? null : new Float64Array(m),
   };
   for (let i = 0; i < m; i++) averageGroup(groups[i]!, points, i);
-  return { ...points, dropped: table.rows - rows.length, order, turnsRound, notes };
+  const line = Int32Array.from(groups, (group) => group[0]!.line);
+  return { ...points, line, dropped: table.rows - rows.length, order, turnsRound, notes };
 }
 
 function readRows(

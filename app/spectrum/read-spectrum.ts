@@ -5,6 +5,7 @@ import { chooseColumns } from "./choose-columns.ts";
 import { describeColumn } from "./find-column.ts";
 import { count, gatherPoints } from "./gather-points.ts";
 import type { SpectrumIssue } from "./issue.ts";
+import { judgePoints } from "./judge-points.ts";
 import { median, pointNoise } from "./point-noise.ts";
 import { implausibleEnergy } from "./plausible-energy.ts";
 import { readAxis } from "./read-axis.ts";
@@ -78,6 +79,8 @@ export function readSpectrum(
     chosen.value.reference !== null,
     read.quantity === "counts" ? choices.noise : null,
   );
+  const judged = judgePoints(points, noise, ratio, read.scale, choices.noise.faulty_points === "keep");
+  const { leftOut } = judged;
   const thickness_cm = read.thickness_um === null ? 1 : read.thickness_um * CM_PER_UM;
   const notes: Note[] = [
     ...chosen.value.notes,
@@ -88,22 +91,25 @@ export function readSpectrum(
     ...skippedRows(table),
     ...points.notes,
     ...noise.notes,
+    ...judged.notes,
   ];
-  const used = new Uint8Array(m).fill(1);
+  const used = leftOut.map((out) => 1 - out);
+  const without = (values: Float64Array): Float64Array =>
+    judged.notes.length === 0 ? values : values.map((one, i) => (leftOut[i] === 1 ? NaN : one));
   let signal = points.value;
-  let sigma = noise.sigma;
+  let sigma = without(noise.sigma);
   let transmittance: Spectrum["transmittance"] = null;
   if (ratio) {
-    const depth = toDepth(points.value, noise.smooth, noise.sigma, read, used, notes);
-    signal = depth.signal;
-    sigma = depth.sigma;
+    const depth = toDepth(points.value, judged.smooth, sigma, read, used, notes);
     transmittance = {
       value: points.value,
-      sigma: noise.sigma,
+      sigma,
       surface: read.surface,
       reflectance: read.reflectance,
       thickness_cm,
     };
+    signal = depth.signal;
+    sigma = depth.sigma;
   }
   if (thickness_cm !== 1) {
     signal = signal.map((value) => value / thickness_cm);
@@ -119,6 +125,7 @@ export function readSpectrum(
     file: table.file,
     sha256,
     energy_eV: points.energy_eV,
+    line: points.line,
     signal,
     unit: read.quantity === "alpha" || read.thickness_um !== null ? "1/cm" : "1",
     thickness_cm: read.knownThickness_um === null ? null : read.knownThickness_um * CM_PER_UM,
@@ -158,6 +165,7 @@ function toDepth(
   let saturated = 0;
   let noisy = 0;
   for (let i = 0; i < m; i++) {
+    const leftOut = used[i] === 0;
     // A smoothed T below its own noise tells no more than that: the weight stays finite.
     const level = Math.max(smooth[i]!, sigmaT[i]!);
     if (sigmaT[i]! > NOISY * level) noisy++;
@@ -167,7 +175,7 @@ function toDepth(
       signal[i] = NaN;
       sigma[i] = NaN;
       used[i] = 0;
-      saturated++;
+      if (!leftOut) saturated++;
     }
   }
   if (saturated > 0)

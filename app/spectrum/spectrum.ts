@@ -33,6 +33,7 @@ export interface ReadingChoices {
     readonly gain_e_per_count: number | null;
     readonly read_counts: number;
     readonly accumulations: number;
+    readonly faulty_points: "leave-out" | "keep";
   };
   /** Refractive index of the material, offered by a preset for the surface correction. */
   readonly material: { readonly index: number | null };
@@ -59,6 +60,8 @@ export interface Spectrum {
   readonly file: string;
   readonly sha256: string;
   readonly energy_eV: Float64Array;
+  /** Line of the file of each point, 1-based. */
+  readonly line?: Int32Array;
   /** Absorption coefficient alpha (1/cm) where the thickness is known or alpha was read, else optical depth alpha d (1). */
   readonly signal: Float64Array;
   readonly unit: "1/cm" | "1";

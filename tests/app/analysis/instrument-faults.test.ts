@@ -56,3 +56,57 @@ describe("noise that neighbours share", () => {
     expect(worstPull(result)).toBeLessThan(4);
   });
 });
+
+describe("readings that no light made", () => {
+  const spikes: readonly (readonly [number, number])[] = [
+    [3000, 1.5],
+    [5000, -0.3],
+    [7000, 5],
+  ];
+
+  test("spikes and a dead stretch are named with their lines and left out; the series is right", () => {
+    const T = noisy(0.001, 3);
+    for (const [i, value] of spikes) T[i] = value;
+    T.fill(0, 4000, 4020);
+    const result = resultOf(file(T), choices);
+    const text = (code: string): string => result.notes.find((note) => note.code === code)!.text;
+    // Derived: point i stands in line i + 2, below one line of header
+    for (const [i, value] of spikes)
+      expect(text("isolated-readings")).toContain(
+        `line ${i + 2} (${energy[i]!.toFixed(6)} eV, T = ${value})`,
+      );
+    expect(text("dead-readings")).toContain("lines 4002 to 4021");
+    expect(doubtsOf(result)).not.toContain("misfit");
+    expect(worstPull(result)).toBeLessThan(4);
+    // Derived: all points but the 3 spikes and the 20 dead ones, some of them outside the fitted window
+    expect(result.reading.used_points).toBeLessThanOrEqual(POINTS - 23);
+  });
+
+  test("noise.faulty_points=keep fits them, and gives the masks", () => {
+    const T = noisy(0.001, 3);
+    T[5000] = 1.5;
+    const result = resultOf(file(T), { ...choices, noise: { faulty_points: "keep" } });
+    const note = result.notes.find(({ code }) => code === "isolated-readings")!;
+    const mask = JSON.parse(/mask_eV=(\[\[.*?\]\])/.exec(note.remedy)![1]!) as [number, number][];
+    expect(mask).toHaveLength(1);
+    expect(energy.filter((E) => E >= mask[0]![0] && E <= mask[0]![1])).toEqual(energy.slice(5000, 5001));
+    expect(doubtsOf(result)).toContain("misfit");
+  });
+
+  test("an absorbance that stops at 2 is masked around its limit, and the series is right", () => {
+    const strong = cleanSignal(energy, series).map((alpha) => 160e-4 * Math.LOG10E * alpha);
+    const random = makeRandom(4);
+    const rows = Array.from(
+      energy,
+      (E, i) => `${E.toFixed(7)},${Math.min(2, strong[i]! + 0.004 * random.normal()).toFixed(4)}`,
+    );
+    const bytes = new TextEncoder().encode(["Photon energy (eV),Absorbance", ...rows, ""].join("\n"));
+    const result = resultOf(bytes, { ...choices, signal: { thickness_um: 160 } });
+    const cut = Array.from(strong).filter((value) => value > 2).length;
+    // Derived: the spectrum was made to go beyond the limit
+    expect(cut).toBeGreaterThan(100);
+    expect(result.notes.find(({ code }) => code === "clipped-readings")!.text).toContain("reading 2,");
+    expect(doubtsOf(result)).not.toContain("misfit");
+    expect(worstPull(result)).toBeLessThan(4);
+  });
+});
