@@ -160,15 +160,10 @@ export const protocolSchema = z.strictObject({
   }),
   lines: z
     .strictObject({
-      n: z.union([
-        z.literal("auto"),
-        z
-          .array(z.int().min(1).max(99))
-          .min(1)
-          .refine((all) => new Set(all).size === all.length, "every n once"),
-      ]),
+      n: z.union([z.literal("auto"), z.array(z.int().min(1).max(99)).min(1)]),
       max_n: z.int().min(2).max(60),
-      slit_fwhm_eV: positive.nullable(),
+      /** 0: none, whatever the header says. */
+      slit_fwhm_eV: z.number().min(0).nullable(),
       /** The same in nm (a grating: constant in wavelength, so the energy width grows as E^2) or in cm^-1; one of the three. */
       slit_fwhm_nm: positive.nullable().default(null),
       slit_fwhm_cm1: positive.nullable().default(null),

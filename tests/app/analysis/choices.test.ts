@@ -131,7 +131,6 @@ test("the ladder ends where the user says, and the lines above it are tail", () 
 
 test.each([
   ["a range of n without lines", { series: { fit_n: [20, 30] } }],
-  ["a range of n upside down", { series: { fit_n: [9, 3] } }],
   ["a single line", { lines: { n: [5] } }],
 ])("%s gives no series, and a doubt says why", (_, chosen) => {
   const result = resultOf(bytes, { material, ...chosen });

@@ -77,7 +77,6 @@ describe("a protocol", () => {
     const remedies = (input: unknown) => refused(input).map((issue) => wordProtocolIssue(issue).remedy);
     expect(remedies({ lines: { n: "5-9" } })).toEqual(["expected auto or a list, for example [2, 3, 4]"]);
     expect(remedies({ series: { fit_n: [9, 5] } })).toEqual(["the lowest n first, then a higher one"]);
-    expect(remedies({ lines: { n: [2, 2, 3] } })).toEqual(["every n once"]);
     expect(remedies({ width: { exponent: "x" } })).toEqual(["expected a number or free"]);
     expect(remedies({ noise: { sigma: 0 } })).toEqual(["expected a number above 0"]);
     expect(remedies({ table: { delimiter: "|" } })).toEqual(['expected ",", ";", "\\t" or " "']);
