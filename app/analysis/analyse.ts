@@ -17,10 +17,12 @@ import { describeReading, describeResult, sortNotes } from "./describe-result.ts
 import { presetNotes } from "./find-doubts.ts";
 import { findPeaks, type Peak } from "./find-peaks.ts";
 import { fitEveryPoint, type FullFit } from "./fit-full.ts";
+import { slitOf, withHeaderSlit } from "./instrument.ts";
 import { buildModel, type LadderState, type ModelChoices } from "./ladder-model.ts";
 import { judgeLevels } from "./level-range.ts";
 import { asksForFringes, findFringes, givenPeriod, startWave, withoutWave } from "./fringes.ts";
-import { fitInDomain } from "./measured-domain.ts";
+import { depthPerSignal } from "./light.ts";
+import { fitInDomain, type DomainFit } from "./measured-domain.ts";
 import {
   drawingProgress,
   drawSpectra,
@@ -68,10 +70,16 @@ export interface AnalyseOptions {
  */
 export function analyse(
   spectrum: Spectrum,
-  protocol: Protocol,
+  asked: Protocol,
   whole: Watch,
   options: AnalyseOptions = {},
 ): Analysis {
+  const protocol = withHeaderSlit(asked, spectrum.slit);
+  const analysis = analyseAs(spectrum, protocol, whole, options);
+  return { ...analysis, result: { ...analysis.result, protocol: asked } };
+}
+
+function analyseAs(spectrum: Spectrum, protocol: Protocol, whole: Watch, options: AnalyseOptions): Analysis {
   const watch = partOfWatch(whole, 0, shareBeforeDraws(protocol.uncertainty));
   const began = watch.seconds();
   watch.report(0.05, "looking for lines");
@@ -118,15 +126,17 @@ export function analyse(
   const guessSeconds = watch.seconds() - began;
   if (pair !== null && !thirdLineStands(chosen.full))
     return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began);
-  const { full, points: fitted } = fitInDomain(
-    chosen.full,
-    spectrum,
-    chosen.points,
-    protocol,
-    chosen.choices,
-    watch,
-    (pass) => watch.report(Math.min(0.8, 0.7 + 0.02 * pass), `fitting the light, pass ${pass + 1}`),
-  );
+  const inDomain = (one: ChosenFit): DomainFit =>
+    fitInDomain(one.full, spectrum, one.points, protocol, one.choices, watch, (pass) =>
+      watch.report(Math.min(0.8, 0.7 + 0.02 * pass), `fitting the light, pass ${pass + 1}`),
+    );
+  const plain = inDomain(chosen);
+  const smeared = slitActs(spectrum, protocol)
+    ? lookBetweenLines(chosen, plain.full, spectrum, protocol, watch, fitEvery(spectrum, protocol, watch))
+    : null;
+  const other = smeared === null ? null : inDomain(smeared);
+  const { full, points: fitted } =
+    other !== null && isExplained(plain.full, other.full, chosen.points) ? other : plain;
   watch.report(0.8, "uncertainties");
   const uncertaintyBegan = watch.seconds();
   const described = describeResult(spectrum, protocol, fitted, peaks, assignment, full, watch);
@@ -169,9 +179,9 @@ export function withResampling(
   };
 }
 
-/** Which lines there are is decided with every energy free. */
+/** Which lines there are is decided with every energy free, and by the range of n that the lines support. */
 function withFreeLevels(protocol: Protocol): Protocol {
-  return { ...protocol, series: { ...protocol.series, mode: "free" } };
+  return { ...protocol, series: { ...protocol.series, mode: "free", fit_n: "auto" } };
 }
 
 interface JudgedReading {
@@ -348,15 +358,12 @@ function fitWithTailOrWithout(
   choices: ModelChoices,
   watch: Watch,
 ): ChosenFit {
-  const fit = (on: SelectedPoints, state: LadderState, how: ModelChoices, from: number): ChosenFit => ({
-    points: on,
-    choices: how,
-    full: fitEveryPoint(on, state, protocol, spectrum.unit, how, watch, (pass) =>
-      watch.report(from + 0.02 * Math.min(pass, 5), `fitting every point, pass ${pass + 1}`),
-    ),
-  });
+  const fit = fitEvery(spectrum, protocol, watch);
   const plain = fit(points, climbed.state, choices, 0.4);
-  const first = lookBetweenLines(plain, spectrum, protocol, watch, fit);
+  const smeared = slitActs(spectrum, protocol)
+    ? null
+    : lookBetweenLines(plain, plain.full, spectrum, protocol, watch, fit);
+  const first = smeared !== null && isExplained(plain.full, smeared.full, points) ? smeared : plain;
   const reduced = reducedChi2(first.full);
   if (!choices.tail || reduced < GROSS_MISFIT || followsStrengthLaw(first.full)) return first;
   watch.report(0.6, "trying without a tail");
@@ -366,33 +373,56 @@ function fitWithTailOrWithout(
   return reducedChi2(second.full) < reduced / GROSS_MISFIT ? second : first;
 }
 
+type FitEvery = (on: SelectedPoints, state: LadderState, how: ModelChoices, from: number) => ChosenFit;
+
+function fitEvery(spectrum: Spectrum, protocol: Protocol, watch: Watch): FitEvery {
+  return (on, state, how, from) => ({
+    points: on,
+    choices: how,
+    full: fitEveryPoint(on, state, protocol, spectrum.unit, how, watch, (pass) =>
+      watch.report(from + 0.02 * Math.min(pass, 5), `fitting every point, pass ${pass + 1}`),
+    ),
+  });
+}
+
+/** A slit averages light: what it leaves over in a fit of the absorption says nothing before the light is fitted. */
+function slitActs(spectrum: Spectrum, protocol: Protocol): boolean {
+  return slitOf(protocol).given && protocol.lines.domain !== "alpha" && depthPerSignal(spectrum) !== null;
+}
+
 /**
- * Where the lines on their own leave a misfit: what high lines have lost may be smeared over their surroundings. Taken when
- * it explains at least half of what was left over and the information criterion prefers it.
+ * Where the lines on their own leave a misfit: what high lines have lost may be smeared over their surroundings. The fit
+ * with that; null where there is no misfit (in `judged`), or no question.
  */
 function lookBetweenLines(
   plain: ChosenFit,
+  judged: FullFit,
   spectrum: Spectrum,
   protocol: Protocol,
   watch: Watch,
-  fit: (on: SelectedPoints, state: LadderState, how: ModelChoices, from: number) => ChosenFit,
-): ChosenFit {
+  fit: FitEvery,
+): ChosenFit | null {
   const { points, choices, full } = plain;
-  const { chi2, degreesOfFreedom } = full.fit.solution;
+  const { chi2, degreesOfFreedom } = judged.fit.solution;
   const { smeared, cutoff_n } = protocol.tail;
   const enough = full.state.ns.length >= FEWEST_TO_FADE && cutoff_n === null && smeared === "auto";
-  if (!choices.tail || !enough || chi2 < LEAST_MISFIT * degreesOfFreedom) return plain;
+  if (!choices.tail || !enough || chi2 < LEAST_MISFIT * degreesOfFreedom) return null;
   watch.report(0.5, "looking between the lines");
   const how: ModelChoices = { ...choices, smeared: true };
   const free = withFreeLevels(protocol);
   const thinned = thinPoints(points, linesForThinning(full.state, protocol));
   const climbed = climbLadder(thinned, full.state, free, spectrum.unit, how, watch);
-  const other = fit(points, climbed.state, how, 0.5);
-  const { solution } = other.full.fit;
+  return fit(points, climbed.state, how, 0.5);
+}
+
+/** Whether what is smeared explains at least half of what was left over and the information criterion prefers it. */
+function isExplained(plain: FullFit, other: FullFit, points: SelectedPoints): boolean {
+  const { chi2, degreesOfFreedom } = plain.fit.solution;
+  const { solution } = other.fit;
   const more = degreesOfFreedom - solution.degreesOfFreedom;
   const gain = (chi2 - solution.chi2) / (points.pointsAsOne ?? 1) - more * Math.log(points.energy.length);
   const explained = solution.chi2 - degreesOfFreedom < 0.5 * (chi2 - degreesOfFreedom);
-  return solution.converged && gain > LEAST_BIC_GAIN && explained ? other : plain;
+  return solution.converged && gain > LEAST_BIC_GAIN && explained;
 }
 
 const FEWEST_TO_FADE = 6;
@@ -448,6 +478,15 @@ const WINDOW_BELOW_WIDTHS = 6;
 /** 1 meV for cuprous oxide. */
 const WINDOW_ABOVE_RYDBERGS = 0.011;
 
+/** In words, where the window that was asked for holds nothing of the file. */
+function windowOutside(spectrum: Spectrum, protocol: Protocol): string | null {
+  const first = spectrum.energy_eV[0]!;
+  const last = spectrum.energy_eV[spectrum.energy_eV.length - 1]!;
+  const [low, high] = protocol.window_eV ?? [first, last];
+  if (low <= last && high >= first) return null;
+  return `The window from ${low} to ${high} eV lies outside the file, which runs from ${first.toPrecision(7)} to ${last.toPrecision(7)} eV: nothing was fitted.`;
+}
+
 function noSeries(
   spectrum: Spectrum,
   protocol: Protocol,
@@ -456,13 +495,18 @@ function noSeries(
   seconds: number,
 ): Analysis {
   const seen = peaks.map((peak) => `${(1e3 * peak.energy_eV).toPrecision(6)} meV`).join(", ");
+  const outside = points.energy.length === 0 ? windowOutside(spectrum, protocol) : null;
   const note = doubt(
     "no-series",
     "series",
-    peaks.length === 0
-      ? "No significant line was found on the background."
-      : `${peaks.length} significant line${peaks.length === 1 ? "" : "s"} (${seen}), but no level law with at least three of them was found.`,
-    "check axis, unit and window; name the lines (lines.n) and the material, or measure with less noise",
+    outside !== null
+      ? outside
+      : peaks.length === 0
+        ? "No significant line was found on the background."
+        : `${peaks.length} significant line${peaks.length === 1 ? "" : "s"} (${seen}), but no level law with at least three of them was found.`,
+    outside !== null
+      ? "correct window_eV, or leave it out"
+      : "check axis, unit and window; name the lines (lines.n) and the material, or measure with less noise",
   );
   return {
     result: {

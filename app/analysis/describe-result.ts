@@ -388,6 +388,7 @@ export function describeReading(spectrum: Spectrum, usedPoints: number): Runglin
     range_eV: [spectrum.energy_eV[0]!, spectrum.energy_eV[last]!],
     used_points: usedPoints,
     noise: { source: spectrum.noise.source, median_sigma: spectrum.noise.medianSigma },
+    ...(spectrum.slit === undefined ? {} : { slit: spectrum.slit }),
   };
 }
 

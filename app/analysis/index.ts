@@ -7,6 +7,7 @@ export {
 } from "./analyse.ts";
 export { drawCurves, type Curves } from "./curves.ts";
 export { lineCurve } from "./line-curves.ts";
+export { withHeaderSlit } from "./instrument.ts";
 export { intervalFactor } from "./interval.ts";
 export { buildModel, energyOf, stateAfter, withLines } from "./ladder-model.ts";
 export type { LadderState, ModelChoices } from "./ladder-model.ts";

@@ -20,11 +20,21 @@ export function slitOf(protocol: Protocol): Slit {
   const fwhmAt = (energy: number): number =>
     constant ?? (slit_fwhm_nm === null ? 0 : (energy * energy * slit_fwhm_nm) / HC_EV_NM);
   return {
-    given: constant !== null || slit_fwhm_nm !== null,
+    given: fwhmAt(1) > 0,
     grows: constant === null && slit_fwhm_nm !== null,
     fwhmAt,
     stdAt: (energy) => STD_OF_FWHM * fwhmAt(energy),
   };
+}
+
+/** The protocol as it acts on a spectrum: with the slit of the header, which is there only where the protocol names none. */
+export function withHeaderSlit(
+  protocol: Protocol,
+  slit: { readonly value: number; readonly unit: "eV" | "nm" | "cm-1" } | undefined,
+): Protocol {
+  if (slit === undefined) return protocol;
+  const key = ({ eV: "slit_fwhm_eV", nm: "slit_fwhm_nm", "cm-1": "slit_fwhm_cm1" } as const)[slit.unit];
+  return { ...protocol, lines: { ...protocol.lines, [key]: slit.value } };
 }
 
 /** The same protocol without a slit, for a model on which the slit acts afterwards. */

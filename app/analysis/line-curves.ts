@@ -1,6 +1,6 @@
 import { linePair } from "../lines/index.ts";
 import type { LineResult, RunglineResult } from "../protocol/index.ts";
-import { slitOf } from "./instrument.ts";
+import { slitOf, withHeaderSlit } from "./instrument.ts";
 
 /**
  * One line of a result alone, at given energies (eV, ascending), in the unit of the signal: A (L + 2 q D) with the instrument
@@ -14,7 +14,10 @@ export function lineCurve(
 ): Float64Array | null {
   const [energy, width, area] = [line.energy_eV.value, line.width_eV.value, line.area.value];
   if (energy === null || width === null || area === null) return null;
-  const slit = result.fit?.domain === "transmittance" ? 0 : slitOf(result.protocol).stdAt(energy);
+  const slit =
+    result.fit?.domain === "transmittance"
+      ? 0
+      : slitOf(withHeaderSlit(result.protocol, result.reading.slit)).stdAt(energy);
   const even = new Float64Array(energies.length);
   const odd = new Float64Array(energies.length);
   const whole = width + result.protocol.lines.instrument_lorentz_fwhm_eV;

@@ -15,6 +15,7 @@ import {
   drawCurves,
   intervalFactor,
   sortNotes,
+  withHeaderSlit,
   type AnalysisResult,
   type Curves,
 } from "../analysis/index.ts";
@@ -62,7 +63,7 @@ export function analyseSeries(
   const fitted = fitPowerSeries(
     series.members,
     base.result,
-    protocol,
+    withHeaderSlit(protocol, reference.spectrum.slit),
     partOfWatch(watch, 0.4, control === null ? 0.9 : 0.82),
   );
   if (fitted === null)
@@ -189,7 +190,12 @@ function fitControl(
 ): { fitted: FittedSeries | null; notes: Note[] } {
   const { spectrum } = control.members[0]!;
   const base = analyse(spectrum, protocol, partOfWatch(watch, 0, 0.5));
-  const fitted = fitPowerSeries(control.members, base.result, protocol, partOfWatch(watch, 0.5, 1));
+  const fitted = fitPowerSeries(
+    control.members,
+    base.result,
+    withHeaderSlit(protocol, spectrum.slit),
+    partOfWatch(watch, 0.5, 1),
+  );
   const powers = new Set(fitted?.members.map(({ member }) => member.power_uW)).size;
   if (fitted !== null && powers >= 2) return { fitted, notes: [] };
   return {

@@ -154,6 +154,8 @@ export const resultSchema = z.strictObject({
     range_eV: z.tuple([z.number(), z.number()]),
     used_points: z.int(),
     noise: z.strictObject({ source: z.string(), median_sigma: number }),
+    /** Full width of the instrument by the header, where the protocol names none. */
+    slit: z.strictObject({ value: z.number(), unit: z.enum(["eV", "nm", "cm-1"]) }).optional(),
   }),
   protocol: protocolSchema,
   status: z.enum(["converged", "not-converged", "no-series"]),

@@ -3,6 +3,7 @@ import type { Table } from "../table/index.ts";
 import { CM_PER_UM, depthFromTransmittance, depthSigma } from "../units/index.ts";
 import { chooseColumns } from "./choose-columns.ts";
 import { describeColumn } from "./find-column.ts";
+import { findSlit } from "./find-slit.ts";
 import { count, gatherPoints } from "./gather-points.ts";
 import type { SpectrumIssue } from "./issue.ts";
 import { judgePoints } from "./judge-points.ts";
@@ -93,6 +94,7 @@ export function readSpectrum(
     ...noise.notes,
     ...judged.notes,
   ];
+  const slit = findSlit(table, choices, notes);
   const used = leftOut.map((out) => 1 - out);
   const without = (values: Float64Array): Float64Array =>
     judged.notes.length === 0 ? values : values.map((one, i) => (leftOut[i] === 1 ? NaN : one));
@@ -129,6 +131,7 @@ export function readSpectrum(
     signal,
     unit: read.quantity === "alpha" || read.thickness_um !== null ? "1/cm" : "1",
     thickness_cm: read.knownThickness_um === null ? null : read.knownThickness_um * CM_PER_UM,
+    ...(slit === null ? {} : { slit }),
     sigma,
     noise: {
       source: noise.source,

@@ -35,6 +35,12 @@ export interface ReadingChoices {
     readonly accumulations: number;
     readonly faulty_points: "leave-out" | "keep";
   };
+  /** Widths of the instrument that the protocol names, which overrule the header's; absent: none is named. */
+  readonly lines?: {
+    readonly slit_fwhm_eV: number | null;
+    readonly slit_fwhm_nm: number | null;
+    readonly slit_fwhm_cm1: number | null;
+  };
   /** Refractive index of the material, offered by a preset for the surface correction. */
   readonly material: { readonly index: number | null };
 }
@@ -67,6 +73,8 @@ export interface Spectrum {
   readonly unit: "1/cm" | "1";
   /** d where it is known (protocol or header), also where alpha was read; null where not. */
   readonly thickness_cm: number | null;
+  /** Full width of the instrument by the header, where the protocol names none. */
+  readonly slit?: { readonly value: number; readonly unit: "eV" | "nm" | "cm-1" };
   /** One standard deviation of `signal` per point; NaN where a given sigma is missing (zero or blank). */
   readonly sigma: Float64Array;
   /** `column`, `protocol` or `estimated` (from the data, white part). */

@@ -99,8 +99,9 @@ describe.each(FILES)("%s", (file, firstOnLaw) => {
   });
 });
 
-test("TH-B2, taken through a slit that the protocol does not name, says that the widths are not those of the lines", () => {
-  const result = resultOf(fixtureBytes("demo/TH-B2_absorbance.csv"), YELLOW);
+test("TH-B2, whose slit is said to be none, says that the widths are not those of the lines", () => {
+  const told = { ...YELLOW, lines: { slit_fwhm_eV: 0 } };
+  const result = resultOf(fixtureBytes("demo/TH-B2_absorbance.csv"), told);
   const doubts = doubtsOf(result);
   // Derived: a slit of 60 ueV broadens the lines n > 8, as wide as 170 ueV, by a tenth and more: no floor explains that.
   expect(doubts.some((code) => code === "width-law-rejected" || code.startsWith("slit"))).toBe(true);
@@ -108,4 +109,13 @@ test("TH-B2, taken through a slit that the protocol does not name, says that the
   // Derived: the slit is nearly symmetric about each line, so energies stay; the bar is the same.
   for (const key of KEYS)
     expect(Math.abs(pullOf(result.series![key], truth.series[key])), key).toBeLessThan(4);
+});
+
+test("TH-B2, with the slit that its header names, has the widths of its lines and no doubt of them", () => {
+  const result = resultOf(fixtureBytes("demo/TH-B2_absorbance.csv"), YELLOW);
+  expect(result.fit?.domain).toBe("transmittance");
+  expect(result.notes.map(({ code }) => code)).toContain("slit-from-header");
+  expect(doubtsOf(result).filter((code) => code !== "low-n-off-law")).toEqual(["highest-line-blended"]);
+  // Derived: the exponent and the floor that the file was made with, to 4 standard errors.
+  expect(Math.abs(pullOf(result.width_law!.floor_eV, 140e-6))).toBeLessThan(4);
 });

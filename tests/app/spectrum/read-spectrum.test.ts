@@ -197,6 +197,32 @@ describe("transmission", () => {
     expect(codes(spectrum)).not.toContain("thickness-from-header");
   });
 
+  it.each([
+    ["# Slit: 30 µeV", { value: 3e-5, unit: "eV" }],
+    ["# Spaltbreite: 0,02 meV", { value: 2e-5, unit: "eV" }],
+    ["# Slit (nm): 0.02", { value: 0.02, unit: "nm" }],
+    ["# Slit = 0.5 cm-1", { value: 0.5, unit: "cm-1" }],
+  ])("%s is the width of the instrument, and said", (line, slit) => {
+    const spectrum = spectrumOf(file([line]));
+    expect(spectrum.slit).toEqual(slit);
+    expect(codes(spectrum)).toContain("slit-from-header");
+  });
+
+  it.each(["# Slit: 100 µm", "# Slit width: 0.1 mm", "# Slit: 5"])("%s is no spectral width", (line) => {
+    const spectrum = spectrumOf(file([line]));
+    expect(spectrum.slit).toBeUndefined();
+    expect(codes(spectrum)).toContain("slit-not-taken");
+  });
+
+  it("a slit of zero is none, and the protocol's overrules the header's", () => {
+    const plain = codes(spectrumOf(file([])));
+    expect(codes(spectrumOf(file(["# Slit: 0 ueV"])))).toEqual(plain);
+    const lines = { slit_fwhm_eV: 0, slit_fwhm_nm: null, slit_fwhm_cm1: null };
+    const overruled = spectrumOf(file(["# Slit: 30 ueV"]), { lines });
+    expect(overruled.slit).toBeUndefined();
+    expect(codes(overruled)).toEqual(plain);
+  });
+
   it("is corrected for surfaces with a reflectance, an index, or the preset's index (with a note)", () => {
     const R = reflectance(2.95);
     const expected = (spectrum: ReturnType<typeof spectrumOf>): number =>
