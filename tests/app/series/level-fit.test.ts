@@ -137,6 +137,23 @@ describe("the range of n", () => {
     expect(asked.notes.map((note) => note.code)).toContain("law-rejected");
   });
 
+  test("takes four lines where they follow the law and every longer range is flatly rejected", () => {
+    const { n, energy_eV, covariance } = withOffsets(5);
+    const k = n.length;
+    const seven = {
+      n: n.slice(0, 7),
+      energy_eV: energy_eV.slice(0, 7),
+      covariance: Float64Array.from({ length: 49 }, (_, i) => covariance[Math.floor(i / 7) * k + (i % 7)]!),
+    };
+    const choice = mustBe(chooseLevelRange({ ...seven, defect: "constant", fit_n: "auto" }));
+    // Derived: the lines end at n = 8, and n = 2, 3, 4 were moved by hundreds of standard errors.
+    expect(choice.fit_n).toEqual([5, 8]);
+    expect(choice.fit.errorScale).toBeNull();
+    expect(choice.notes.map(({ code }) => code)).toEqual(
+      expect.arrayContaining(["low-n-off-law", "one-degree-left"]),
+    );
+  });
+
   test("lists gap, Rydberg energy and defect for every lowest and every highest n", () => {
     const choice = mustBe(chooseLevelRange({ ...lineEnergies(8), defect: "constant", fit_n: "auto" }));
     const lows = choice.ranges.filter((step) => step.n_max === 12).map((step) => step.n_min);
