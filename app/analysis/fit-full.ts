@@ -148,7 +148,22 @@ function tieLines(free: FullFit, tied: FullFit): FullFit {
   };
 }
 
-/** Energies of all lines free, whatever the protocol says: what decides over the range of n. */
+/**
+ * A range of n that is named speaks for the lines above the last one told apart where it has this many lines and its
+ * law comes near them.
+ */
+const FEWEST_TO_LEAD = 5;
+const WORST_TO_LEAD = 25;
+
+function canLead({ fit }: RangeChoice): boolean {
+  return fit.n.length >= FEWEST_TO_LEAD && fit.chi2 <= WORST_TO_LEAD * Math.max(1, fit.degreesOfFreedom);
+}
+
+/**
+ * Energies of all lines free, whatever the protocol says: what decides over the range of n.
+ * A range that is named changes the law and the tail that follows it, never which lines are found: those come from the
+ * range that the lines support. A range of a few lines, or one that its law does not hold for, cannot speak for the tail.
+ */
 function fitFreeLevels(
   points: FitPoints,
   initial: LadderState,
@@ -159,7 +174,28 @@ function fitFreeLevels(
   report: (pass: number) => void,
   fitPass: FitPass,
 ): FullFit {
-  const protocol: Protocol = { ...asked, series: { ...asked.series, mode: "free" } };
+  const free: Protocol = { ...asked, series: { ...asked.series, mode: "free" } };
+  const own: Protocol = { ...free, series: { ...free.series, fit_n: "auto" } };
+  const found = passesUntilSettled(points, initial, own, false, unit, choices, watch, report, fitPass);
+  if (asked.series.fit_n === "auto") return found;
+  const range = judgeLevels(found.fit, free);
+  if (range === null || !canLead(range)) return { ...found, range };
+  const start = withLevelRange(found.state, range);
+  return passesUntilSettled(points, start, free, true, unit, choices, watch, report, fitPass);
+}
+
+/** `held`: the lines are known, and none is dropped. */
+function passesUntilSettled(
+  points: FitPoints,
+  initial: LadderState,
+  protocol: Protocol,
+  held: boolean,
+  unit: Spectrum["unit"],
+  choices: ModelChoices,
+  watch: Watch,
+  report: (pass: number) => void,
+  fitPass: FitPass,
+): FullFit {
   const needed = leastSignificance(points.energy.length);
   let state = initial;
   let result: FullFit | null = null;
@@ -178,7 +214,7 @@ function fitFreeLevels(
     // A first fit that is still poor would widen its errors until no line is left: the plain ones decide what is seen.
     const seen = significances(withSharedNoise(plain, points));
     let keep = state.ns.length;
-    if (protocol.lines.n === "auto") while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
+    if (protocol.lines.n === "auto" && !held) while (keep > 3 && !(seen[keep - 1]! > needed)) keep--;
     const dropped = keep < state.ns.length;
     settled =
       !dropped &&

@@ -121,6 +121,23 @@ test("a range of n named by the user is the range of the level fit", () => {
   for (const key of KEYS) expect(Math.abs(pullOf(named.series![key], clean[key])), key).toBeLessThan(4);
 });
 
+test("a range of n changes the law, never which lines are found or what they are", () => {
+  const two = resultOf(bytes, { material, series: { fit_n: [5, 6] } });
+  expect(two.series!.fit_n).toEqual([5, 6]);
+  const parts = ({ lines }: RunglineResult): unknown =>
+    lines.map(({ n, energy_eV, width_eV, area }) => ({ n, energy_eV, width_eV, area }));
+  // Derived: two lines cannot speak for the tail, so the fit of the spectrum is the same to the bit.
+  expect(parts(two)).toEqual(parts(plain));
+  const more = resultOf(bytes, { material, series: { fit_n: [3, 9] } });
+  expect(more.lines.map(({ n }) => n)).toEqual(plain.lines.map(({ n }) => n));
+});
+
+test("a window beside the file is named with what the file holds", () => {
+  const outside = resultOf(bytes, { material, window_eV: [3, 4] });
+  expect(outside.status).toBe("no-series");
+  expect(outside.notes.find(({ code }) => code === "no-series")!.text).toMatch(/lies outside the file/);
+});
+
 test("the ladder ends where the user says, and the lines above it are tail", () => {
   const short = resultOf(bytes, { material, lines: { max_n: 7 } });
   expect(short.lines.map((line) => line.n)).toEqual([2, 3, 4, 5, 6, 7]);
