@@ -32,6 +32,7 @@ import {
   type ResampledDraw,
   type ResamplingPlan,
 } from "./resample.ts";
+import { readByChance } from "./read-by-chance.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 import {
@@ -126,6 +127,9 @@ function analyseAs(spectrum: Spectrum, protocol: Protocol, whole: Watch, options
   const guessSeconds = watch.seconds() - began;
   if (pair !== null && !thirdLineStands(chosen.full))
     return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began);
+  const chance = protocol.lines.n === "auto" ? readByChance(chosen.full, peaks) : null;
+  if (chance !== null)
+    return noSeries(spectrum, protocol, everything, peaks, watch.seconds() - began, chance);
   const inDomain = (one: ChosenFit): DomainFit =>
     fitInDomain(one.full, spectrum, one.points, protocol, one.choices, watch, (pass) =>
       watch.report(Math.min(0.8, 0.7 + 0.02 * pass), `fitting the light, pass ${pass + 1}`),
@@ -493,6 +497,7 @@ function noSeries(
   points: SelectedPoints,
   peaks: readonly Peak[],
   seconds: number,
+  tried = "",
 ): Analysis {
   const seen = peaks.map((peak) => `${(1e3 * peak.energy_eV).toPrecision(6)} meV`).join(", ");
   const outside = points.energy.length === 0 ? windowOutside(spectrum, protocol) : null;
@@ -503,7 +508,7 @@ function noSeries(
       ? outside
       : peaks.length === 0
         ? "No significant line was found on the background."
-        : `${peaks.length} significant line${peaks.length === 1 ? "" : "s"} (${seen}), but no level law with at least three of them was found.`,
+        : `${peaks.length} significant line${peaks.length === 1 ? "" : "s"} (${seen}), but no level law with at least three of them was found.${tried}`,
     outside !== null
       ? "correct window_eV, or leave it out"
       : "check axis, unit and window; name the lines (lines.n) and the material, or measure with less noise",
