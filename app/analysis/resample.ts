@@ -33,8 +33,14 @@ export interface ResamplingPlan {
     /** Standard errors of gap, Rydberg energy and defect that the intervals are compared with. */
     readonly sigma: readonly number[];
   };
-  /** Covariances of the energies and widths of `law.n` where they allow for correlated noise; null: those of each draw. */
-  readonly weights: { readonly energy: Float64Array; readonly width: Float64Array } | null;
+  /** Covariances where they allow for correlated noise; null: those of each draw. */
+  readonly weights: {
+    /** Of the energies of `law.n`. */
+    readonly energy: Float64Array;
+    /** Of the widths of the lines at these places of `ns`. */
+    readonly width: Float64Array;
+    readonly widthPlaces: readonly number[];
+  } | null;
 }
 
 /** What one drawn spectrum gave; lines run with `ns` of the plan. */
@@ -57,7 +63,7 @@ export interface ResampledDraw {
  * Units     as in the result.
  * Domain    n and the range of the level law stay those of the fit. Where the light was fitted, the draws are of the light
  *           linearised about its fit.
- * Accuracy  the 68 % interval of N draws has a relative error of about 1.2/sqrt(N); tests/app/analysis/resample.test.ts.
+ * Accuracy  the 68 % interval of N draws has a relative error of about 1/sqrt(N); tests/app/analysis/resample.test.ts.
  * Source    Efron and Tibshirani, An Introduction to the Bootstrap (1993), 9.4 and 13.3; blocks: Kunsch, Ann. Stat. 17, 1217
  *           (1989); autoregression: Buhlmann, Bernoulli 3, 123 (1997).
  */
@@ -112,6 +118,7 @@ export function planResampling(
       ? {
           energy: covarianceBlock(full.fit, 0, determinedLawPlaces(full.fit, law.n)),
           width: covarianceBlock(full.fit, 1, widthPlaces),
+          widthPlaces,
         }
       : null,
   };
@@ -299,6 +306,8 @@ function exponentOf(fit: SpectrumFit, { protocol, weights }: ResamplingPlan, def
   const tied = fit.constrained?.widthLaw ?? null;
   if (tied !== null) return tied.values[2]!;
   const places = determinedPlaces(fit, 1);
+  // Weights of other lines would be another law.
+  if (weights !== null && places.join() !== weights.widthPlaces.join()) return null;
   const widths = fitWidths({
     n: places.map((j) => fit.lines.ns[j]!),
     width_eV: Float64Array.from(places, (j) => fit.lines.width[j]!),
