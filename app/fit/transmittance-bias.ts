@@ -15,7 +15,7 @@ const STD_OF_FWHM = 1 / (2 * Math.sqrt(2 * Math.LN2));
  * Units     all without unit; peakDepth is the line's own optical depth at its centre without slit (background only
  *           multiplies T and drops out), slitOverWidth both FWHM.
  * Domain    0 <= slitOverWidth <= 3, 0 <= peakDepth <= 5.
- * Accuracy  window of 12 widths on each side, to 0.1 % of the area: tests/app/fit/transmittance-bias.test.ts.
+ * Accuracy  window of 12 widths on each side, to 0.1 % of the area: tests/app/fit/transmittance-grid.test.ts.
  * Source    design notes of this project on the physics: depth 1 gives -0.55, -2.6, -6.3 % of the area at slit/G = 0.2, 0.5, 1.
  */
 export function slitBias(peakDepth: number, slitOverWidth: number): { area: number; width: number } {

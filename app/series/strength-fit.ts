@@ -47,7 +47,7 @@ const FEWEST_LINES = 3;
  *           is taken from all lines unless these reject it (p < 0.01), else from the longest run of neighbouring lines that follow it (p > 0.05, three lines or more, the lowest
  *           run first); lines that have fallen off at high n, or a lowest line that stands out, are then compared with it.
  * Units     area in eV times the unit of the signal; C likewise.
- * Accuracy  tests/app/series/strength-fit.test.ts.
+ * Accuracy  tests/app/series/width-and-strength.test.ts.
  */
 export function fitStrengths(input: StrengthInput): Result<StrengthFit, SeriesIssue> {
   const count = input.n.length;

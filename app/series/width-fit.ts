@@ -65,7 +65,7 @@ const MOST_EXPONENT = 10;
  *           kept at or above zero. The lowest line is left out where the others reject it by three standard errors.
  * Units     eV.
  * Domain    one line more than the coefficient needs, else the exponent, then the floor, is held and a note says so.
- * Accuracy  tests/app/series/width-fit.test.ts.
+ * Accuracy  tests/app/series/width-and-strength.test.ts.
  */
 export function fitWidths(given: WidthInput): Result<WidthFit, SeriesIssue> {
   const input = withModelErrors(given);

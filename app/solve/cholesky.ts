@@ -4,7 +4,7 @@
  * Shapes    matrices (n x n, row-major); the factor is lower triangular, entries above the diagonal are zero.
  * Units     any; the factor carries the square root of the matrix's unit.
  * Domain    `null` where a pivot is not positive or not finite: the matrix is not positive definite.
- * Accuracy  backward stable, |A - L L'| <= n eps |A|; tests/app/solve/cholesky.test.ts.
+ * Accuracy  backward stable, |A - L L'| <= n eps |A|; tests/app/solve/factor.test.ts.
  * Source    Golub and Van Loan, Matrix Computations, 4th ed. (2013), algorithm 4.2.1.
  */
 export function choleskyFactor(matrix: Float64Array, n: number): Float64Array | null {

@@ -8,7 +8,7 @@
  * Units     all without unit.
  * Domain    0 <= R < 1. T above 1 and above (1-R)/(1+R) are kept (a < 0); T = 0 gives +Infinity, T < 0 gives NaN.
  * Accuracy  a few units in the last place; round trips in tests/app/units/transmission.test.ts.
- * Source    standard plate formulas (methods.md 6); the stable inverse by rationalising the root.
+ * Source    geometric sum of the intensities of all internal reflections; the stable inverse by rationalising the root.
  */
 export type SurfaceModel = "none" | "single" | "all";
 

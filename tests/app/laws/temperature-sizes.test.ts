@@ -76,7 +76,7 @@ function phonon(temperature: number, energy: number): number {
 
 describe("sizes", () => {
   test("Bohr radius, Rydberg energy and permittivity belong together", () => {
-    // Source: methods.md section 1, 719.982274 meV nm (CODATA 2018)
+    // Derived: e^2/(8 pi eps_0) from the CODATA 2018 constants, in meV nm
     expect(RYDBERG_TIMES_BOHR * 1000).toBeCloseTo(719.982274, 6);
     // Source: design notes of this project on the physics, section 8: 92 meV and 7.5 give 1.043 nm; 1.11 nm and 7.5 imply 86.5 meV
     expect(bohrRadiusFromRydberg(0.092, 7.5)).toBeCloseTo(1.043, 3);

@@ -103,7 +103,7 @@ describe("strength law", () => {
   });
 
   test("p lines 2, 3, 4 stand as 3/32 to 8/243 to 15/1024", () => {
-    // Source: methods.md section 3 (Elliott 1957)
+    // Derived: (n^2 - 1)/n^5 of Elliott, Phys. Rev. 108, 1384 (1957), in whole numbers
     expect(strength(2, 0, "p-envelope", "n")).toBeCloseTo(3 / 32, 15);
     expect(strength(3, 0, "p-envelope", "n")).toBeCloseTo(8 / 243, 15);
     expect(strength(4, 0, "p-envelope", "n")).toBeCloseTo(15 / 1024, 15);

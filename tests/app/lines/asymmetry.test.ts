@@ -28,7 +28,7 @@ describe("asymmetric line", () => {
       fc.property(asymmetry, (q) => {
         const top = peakPosition(2, 0.3, q);
         const bottom = dipPosition(2, 0.3, q);
-        // Derived: methods.md section 2, checked there; the slope vanishes at both
+        // Derived: the slope vanishes at top and bottom
         const slope = (e: number): number => derivative((x) => line(x, 2, 0.3, 1.7, q), e, 0.002);
         const dip = dipHeight(1.7, 0.3, q);
         expect(Math.abs(slope(top)) / peakHeight(1.7, 0.3, q)).toBeLessThan(1e-8);
@@ -60,7 +60,7 @@ describe("asymmetric line", () => {
           const qf = fanoFromAsymmetry(q, area);
           const height = fanoHeight(area, width, q);
           const fano = height * ((qf + e) ** 2 / (1 + e * e) - 1);
-          // Derived: identity of methods.md section 2; the Fano height is positive by the choice of root
+          // Derived: (F - 1)/(q_F^2 - 1) = (1 + 2 q eps)/(1 + eps^2) with q = q_F/(q_F^2 - 1); the Fano height is positive by the choice of root
           expect(height).toBeGreaterThan(0);
           const scale = peakHeight(Math.abs(area), width, q);
           expect(

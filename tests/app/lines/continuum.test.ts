@@ -53,7 +53,7 @@ describe("continuum above the gap", () => {
     "%s without broadening is Elliott's curve above the gap and nothing below",
     (envelope) => {
       for (const t of [1e-4, 0.01, 0.3, 2, 30]) {
-        // Derived: methods.md section 3, divided by its value at the gap, times 1/(2 Ry)
+        // Derived: Elliott, Phys. Rev. 108, 1384 (1957), divided by its value at the gap, times 1/(2 Ry)
         expect(value(1 + 0.05 * t, 1, 0.05, envelope, 0) / (10 * elliott(t, envelope))).toBeCloseTo(1, 11);
       }
       expect(Math.abs(value(0.99, 1, 0.05, envelope, 0))).toBeLessThan(1e-15);
@@ -168,7 +168,7 @@ describe("continuum above the gap", () => {
         lines += y / (n ** 3 * Math.PI * (u * u + y * y));
       }
       // Source: Tanguy, Phys. Rev. Lett. 75, 4090 (1995): Im{2 ln k - 2 pi cot(pi k) - 2 psi(k) - 1/k}, k = (-z)^(-1/2), z in
-      // units of Ry from the gap (from memory); lines weigh 4 pi/n^3 and the continuum 2 pi (methods.md section 3)
+      // units of Ry from the gap (from memory); lines weigh 4 pi/n^3 and the continuum 2 pi
       const parts = 4 * Math.PI * lines + 2 * Math.PI * 2 * value(x, 0, 1, "allowed-3d", 2 * y);
       expect(Math.abs(parts / whole - 1)).toBeLessThan(1e-6);
     },

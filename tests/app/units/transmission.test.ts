@@ -44,7 +44,7 @@ describe("transmittance and optical depth", () => {
     const T = 0.3;
     const through = (1 - R) ** 2;
     const x = (-through + Math.sqrt(through ** 2 + 4 * T * T * R * R)) / (2 * T * R * R);
-    // Source: methods.md 6, inverse of the incoherent plate
+    // Derived: the root of T = (1-R)^2 x/(1 - R^2 x^2), incoherent reflections summed
     expect(depthFromTransmittance(T, R, "all")).toBeCloseTo(-Math.log(x), 13);
   });
 
@@ -77,7 +77,7 @@ describe("transmittance and optical depth", () => {
   });
 
   it("converts decadic and natural logarithms and units of alpha", () => {
-    // Source: methods.md 6, 1 absorbance = 2.302585 nepers
+    // Derived: ln 10, 1 absorbance = 2.302585 nepers
     expect(depthFromAbsorbance(1)).toBeCloseTo(2.302585, 6);
     // Derived: identity
     expect(absorbanceFromDepth(depthFromAbsorbance(0.7))).toBeCloseTo(0.7, 15);
