@@ -92,14 +92,6 @@ export function listAssignments(
   return [...readings.values()].sort((a, b) => b.score - a.score).slice(0, most);
 }
 
-/** The best reading alone; null where there is none. */
-export function assignPrincipalNumbers(
-  peaks: readonly Peak[],
-  choices: AssignmentChoices,
-): Assignment | null {
-  return listAssignments(peaks, choices, 1)[0] ?? null;
-}
-
 /**
  * Two peaks as the two lowest lines, the defect held: no more than a start, which stands only if the fit finds a third
  * line where this says it must be.

@@ -1,4 +1,4 @@
-import { assumption, doubt, symmetric, type Note, type Quantity } from "../base/index.ts";
+import { assumption, doubt, type Note } from "../base/index.ts";
 import type {
   ComparedParameter,
   ComparedSample,
@@ -375,9 +375,4 @@ function aboutAll(results: readonly NamedResult[], choices: ComparisonChoices): 
       );
   }
   return notes;
-}
-
-/** Interval at the level of the comparison. */
-export function intervalOf(value: number, sigma: number, factor: number): Quantity {
-  return symmetric(value, Number.isFinite(sigma) ? sigma : null, factor);
 }

@@ -95,23 +95,6 @@ export function seriesOf(table: LineTable, quantity: LineQuantity, line: number)
   };
 }
 
-/** Cross covariance (rows x columns) of two series of the same table. */
-export function crossOf(
-  table: LineTable,
-  first: { quantity: LineQuantity; line: number; spectra: readonly number[] },
-  second: { quantity: LineQuantity; line: number; spectra: readonly number[] },
-): Float64Array {
-  const out = new Float64Array(first.spectra.length * second.spectra.length);
-  first.spectra.forEach((i, a) =>
-    second.spectra.forEach((j, b) => {
-      const row = placeOf(table, first.quantity, i, first.line);
-      out[a * second.spectra.length + b] =
-        table.covariance[row * table.values.length + placeOf(table, second.quantity, j, second.line)]!;
-    }),
-  );
-  return out;
-}
-
 /** A number that depends linearly on the table's values, near the values that were found. */
 export interface LinearForm {
   readonly places: readonly number[];

@@ -294,8 +294,3 @@ export const comparisonSchema = z.strictObject({
   run: z.strictObject({ version: z.string(), node: z.string(), started: z.string() }),
 });
 export type Comparison = z.output<typeof comparisonSchema>;
-
-/** The comparison schema as JSON Schema. */
-export function comparisonJsonSchema(): object {
-  return z.toJSONSchema(comparisonSchema, { io: "output" });
-}

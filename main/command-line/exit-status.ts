@@ -9,8 +9,6 @@ export const EXIT = {
   cancelled: 130,
 } as const;
 
-export type ExitStatus = (typeof EXIT)[keyof typeof EXIT];
-
 /** The user asked for something that cannot be: told in one line, with the remedy. */
 export class UsageError extends Error {
   constructor(message: string) {
