@@ -29,7 +29,7 @@ export interface DoubtInput {
 }
 
 const meV = (value: number): string => `${(1e3 * value).toPrecision(6)} meV`;
-const ueV = (value: number): string => `${(1e6 * value).toPrecision(3)} ueV`;
+const ueV = (value: number): string => `${(1e6 * value).toPrecision(3)} µeV`;
 
 /** Everything that the fit itself gives reason to doubt; each note names its number and a remedy. */
 export function findDoubts(input: DoubtInput): Note[] {

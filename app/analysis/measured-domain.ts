@@ -412,7 +412,7 @@ function lightOf(
 }
 
 const percent = (part: number): string => `${(100 * part).toPrecision(2)} %`;
-const ueV = (value: number): string => `${Number((1e6 * value).toPrecision(4))} ueV`;
+const ueV = (value: number): string => `${Number((1e6 * value).toPrecision(4))} µeV`;
 const countOf = (number: number): string => `${number} point${number === 1 ? "" : "s"}`;
 
 function domainNote(

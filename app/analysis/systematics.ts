@@ -100,7 +100,7 @@ export function systematicNotes(systematic: Systematic | null): Note[] {
       "background-better",
       "background",
       `Another background describes the spectrum clearly better: ${best.name} (BIC lower by ${(chosen.bic - best.bic!).toFixed(0)}, p of runs ${best.runs_p?.toPrecision(2) ?? "unknown"} against ${chosen.runs_p?.toPrecision(2) ?? "unknown"})${
-        moved === null ? "" : `; it moves the gap by ${(1e6 * moved).toPrecision(3)} ueV`
+        moved === null ? "" : `; it moves the gap by ${(1e6 * moved).toPrecision(3)} µeV`
       }.`,
       "set background (or tail.model) in the protocol to it, or say why not",
     ),

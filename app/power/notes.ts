@@ -143,7 +143,7 @@ function inputNotes({ input, beam, inputs }: Findings): Note[] {
       assumption(
         "coefficient-assumed",
         "power.lines",
-        "The dipole-dipole coefficient is an order of magnitude (2.37e-4 n^4 ueV um^3, Bohr radius 1.11 nm, permittivity 7.5), so expected volumes hold within a factor 3.",
+        "The dipole-dipole coefficient is an order of magnitude (2.37e-4 n^4 µeV µm^3, Bohr radius 1.11 nm, permittivity 7.5), so expected volumes hold within a factor 3.",
         "set power.c3_ueV_um3; power.c6_ueV_um6 for van der Waals, which is not determined without",
       ),
     );
@@ -481,7 +481,7 @@ function otherNotes({ power }: Findings): Note[] {
       doubt(
         "lines-shift-with-power",
         "power.other.gap_shift_eV",
-        `The lines move together by ${short(1e6 * (shift.at_highest.value ?? 0))} ueV up to the highest power, which blockade does not do.`,
+        `The lines move together by ${short(1e6 * (shift.at_highest.value ?? 0))} µeV up to the highest power, which blockade does not do.`,
         "look for heating or a drift of the light axis",
       ),
     );

@@ -4,7 +4,7 @@ import type { ProtocolInput } from "./protocol-schema.ts";
 export interface Preset {
   readonly id: string;
   readonly title: string;
-  /** Where the figures come from; (m) marks a figure from memory. */
+  /** Where the figures come from; figures from memory say so. */
   readonly source: string;
   readonly protocol: ProtocolInput;
 }
@@ -14,7 +14,7 @@ export const PRESETS: readonly Preset[] = [
     id: "cuprous-oxide-yellow-p",
     title: "Cuprous oxide, yellow P series",
     source:
-      "Kazimierczuk et al., Nature 514, 343 (2014) (m): gap, Rydberg energy, defect, Bohr radius; published Rydberg energies 86-98 meV; width start 16 meV/n^3 (m); onset 1S ortho 2.0328 eV + phonon 13.6 meV (m)",
+      "Kazimierczuk et al., Nature 514, 343 (2014): gap, Rydberg energy, defect, Bohr radius (values from memory); published Rydberg energies 86-98 meV; width start 16 meV/n^3 (value from memory); onset 1S ortho 2.0328 eV + phonon 13.6 meV (values from memory)",
     protocol: {
       material: {
         preset: "cuprous-oxide-yellow-p",
@@ -40,7 +40,7 @@ export const PRESETS: readonly Preset[] = [
     id: "gallium-arsenide",
     title: "Gallium arsenide, free exciton",
     source:
-      "Sell, Phys. Rev. B 6, 3750 (1972) (m): 1.5192 eV, 4.2(2) meV; permittivity 12.6 (m); Nam et al. 1976 read 3.77(5) meV",
+      "Sell, Phys. Rev. B 6, 3750 (1972): 1.5192 eV, 4.2(2) meV (values from memory); permittivity 12.6 (value from memory); Nam et al. 1976 read 3.77(5) meV",
     protocol: {
       material: {
         preset: "gallium-arsenide",

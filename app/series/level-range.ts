@@ -198,7 +198,7 @@ function movingNotes(fit: LevelFit, ranges: readonly RangeStep[]): Note[] {
     doubt(
       "gap-depends-on-range",
       "series.gap_eV",
-      `Leaving out n = ${fit.n[0]} moves the gap by ${format(change * 1e6)} ueV, ${format(change / expected)} times what chance allows.`,
+      `Leaving out n = ${fit.n[0]} moves the gap by ${format(change * 1e6)} µeV, ${format(change / expected)} times what chance allows.`,
       "look at the table of ranges, and start higher (series.fit_n)",
     ),
   ];

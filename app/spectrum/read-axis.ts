@@ -180,7 +180,7 @@ function readMedium(
         assumption(
           standard ? "standard-air-assumed" : "air-assumed",
           ABOUT,
-          `the light axis (${unit}) is converted with the index of ${state}: ${why}; near 571 nm read as vacuum every energy would be 0.60 meV higher, and each kelvin counts 2.1 ueV, each hPa 0.59 ueV`,
+          `the light axis (${unit}) is converted with the index of ${state}: ${why}; near 571 nm read as vacuum every energy would be 0.60 meV higher, and each kelvin counts 2.1 µeV, each hPa 0.59 µeV`,
           "set axis.medium to air or vacuum, and axis.air.temperature_C, axis.air.pressure_Pa",
         ),
       );

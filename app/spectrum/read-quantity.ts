@@ -81,13 +81,21 @@ export function readQuantity(
   if (ratio) {
     surface = choices.signal.surface.model;
     if (surface === "none") {
+      const corrected = reflectionCorrected(table);
       notes.push(
-        assumption(
-          "surface-not-corrected",
-          ABOUT,
-          "the losses by reflection at the surfaces are not taken off: they stand in the background, and the lines' areas are slightly off where all reflections count",
-          "set signal.surface.model to single or all, with signal.surface.reflectance or .index",
-        ),
+        corrected === null
+          ? assumption(
+              "surface-not-corrected",
+              ABOUT,
+              "the losses by reflection at the surfaces are not taken off: they stand in the background, and the lines' areas are slightly off where all reflections count",
+              "set signal.surface.model to single or all, with signal.surface.reflectance or .index",
+            )
+          : assumption(
+              "surface-corrected-by-header",
+              ABOUT,
+              `the file says that losses by reflection are corrected ("${corrected}"): none are taken off`,
+              "set signal.surface.model to single or all where they still stand in the readings",
+            ),
       );
     } else {
       const found = findReflectance(choices, notes);
@@ -149,6 +157,19 @@ function findQuantity(
     ),
   );
   return success({ quantity: guess.quantity, reason: `${guess.quantity} because ${guess.because}` });
+}
+
+/** What the file says where it says that losses by reflection are corrected already; null where it does not. */
+function reflectionCorrected(table: Table): string | null {
+  const texts = [...table.facts.map(({ label, text }) => `${label}: ${text}`), ...table.comments];
+  return (
+    texts.find(
+      (text) =>
+        /reflect|reflex|r\u00e9flex|fresnel/i.test(text) &&
+        /correct|korrig|corrig|removed|subtracted/i.test(text) &&
+        !/\bnot?\b|\bnone\b|\bun-?corr|\bnicht\b|\bkein|\bnon\b|\bsans\b/i.test(text),
+    ) ?? null
+  );
 }
 
 /** Dips or peaks, and how large: null where the numbers look like bare counts. */
@@ -265,8 +286,25 @@ const MICROMETRES: Readonly<Record<string, number>> = {
   angstrom: 1e-4,
 };
 
+/** A thickness without an error is exact as far as the areas go: half of its last digit is the least it may be off. */
+function exactThickness(thickness_um: number, written: string, inMicrometres: number): Note {
+  const digits = /[.,](\d+)/.exec(written)?.[1]?.length ?? 0;
+  const half = Number((0.5 * 10 ** -digits * inMicrometres).toPrecision(1));
+  return assumption(
+    "thickness-exact",
+    ABOUT,
+    `the thickness ${thickness_um} µm has no stated error and is taken as exact: its error is in no area and no strength`,
+    `set signal.thickness_sigma_um (half of the last digit is ${half}), which goes into the systematic part of all areas`,
+  );
+}
+
 function findThickness(table: Table, choices: ReadingChoices, notes: Note[]): number | null {
-  if (choices.signal.thickness_um !== null) return choices.signal.thickness_um;
+  const exact = choices.signal.thickness_sigma_um === 0;
+  const given = choices.signal.thickness_um;
+  if (given !== null) {
+    if (exact) notes.push(exactThickness(given, String(given), 1));
+    return given;
+  }
   const facts = table.facts.filter((fact) => fact.key === "thickness");
   for (const fact of facts) {
     const unit = (fact.unit ?? "")
@@ -281,10 +319,11 @@ function findThickness(table: Table, choices: ReadingChoices, notes: Note[]): nu
       assumption(
         "thickness-from-header",
         ABOUT,
-        `the thickness ${thickness} um is read from line ${fact.line} ("${fact.label}: ${fact.text}")`,
+        `the thickness ${thickness} µm is read from line ${fact.line} ("${fact.label}: ${fact.text}")`,
         "set signal.thickness_um where the header is wrong",
       ),
     );
+    if (exact) notes.push(exactThickness(thickness, /^[\d.,]+/.exec(fact.text)?.[0] ?? "", factor));
     return thickness;
   }
   const unread = facts[0];

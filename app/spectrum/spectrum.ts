@@ -21,6 +21,8 @@ export interface ReadingChoices {
     readonly reference_column: number | string | null;
     readonly dark_column: number | string | null;
     readonly thickness_um: number | null;
+    /** 0: the thickness is taken as exact. */
+    readonly thickness_sigma_um: number;
     readonly surface: {
       readonly model: "none" | "single" | "all";
       readonly reflectance: number | null;

@@ -93,3 +93,26 @@ describe("energies where no edge lies", () => {
     expect(note(spectrum, "energy-implausible")).toContain("as nm the same numbers are 2.1");
   });
 });
+
+describe("what the header says is not contradicted", () => {
+  const withFacts = (...facts: string[]): ReturnType<typeof spectrumOf> =>
+    spectrumOf(fileText(HEADER, rows(), facts));
+
+  it("reflection losses that the instrument corrected are not said to stand in the background", () => {
+    const corrected = withFacts("# Reflection losses: corrected by the instrument");
+    expect(codes(corrected)).toContain("surface-corrected-by-header");
+    expect(codes(corrected)).not.toContain("surface-not-corrected");
+    expect(codes(withFacts("# Reflection losses: not corrected"))).toContain("surface-not-corrected");
+  });
+
+  it("a thickness without an error is said to be taken as exact, with half of its last digit", () => {
+    const spectrum = withFacts("# Thickness: 0.34 mm");
+    const exact = spectrum.notes.find(({ code }) => code === "thickness-exact")!;
+    // Derived: half of a hundredth of a millimetre is 5 µm
+    expect(exact.remedy).toContain("half of the last digit is 5)");
+    const known = { signal: { thickness_sigma_um: 3 } };
+    expect(codes(spectrumOf(fileText(HEADER, rows(), ["# Thickness: 0.34 mm"]), known))).not.toContain(
+      "thickness-exact",
+    );
+  });
+});
