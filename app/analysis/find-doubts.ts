@@ -1,5 +1,5 @@
 import { assumption, doubt, type Note } from "../base/index.ts";
-import { SMEARED, type FitPoints } from "../fit/index.ts";
+import { SMEARED } from "../fit/index.ts";
 import { findPreset, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { normalCdf } from "../solve/index.ts";
@@ -7,18 +7,21 @@ import type { Assignment } from "./assign-n.ts";
 import { LEAST_SIGNIFICANCE } from "./climb-ladder.ts";
 import type { Peak } from "./find-peaks.ts";
 import { pointJitter } from "./axis-jitter.ts";
+import { findSteps } from "./find-steps.ts";
 import { CORRELATED_ABOVE, type FullFit } from "./fit-full.ts";
 import { findFringes, fringeNotes, isSteadyWave, plateReflectance } from "./fringes.ts";
 import { energyOf } from "./ladder-model.ts";
+
 import { depthPerSignal } from "./light.ts";
-import { findSatellites } from "./satellites.ts";
+import { atTheEdge, findSatellites } from "./satellites.ts";
+import type { SelectedPoints } from "./select-points.ts";
 
 type Fit = NonNullable<RunglineResult["fit"]>;
 
 export interface DoubtInput {
   readonly spectrum: Spectrum;
   readonly protocol: Protocol;
-  readonly points: FitPoints;
+  readonly points: SelectedPoints;
   readonly peaks: readonly Peak[];
   readonly assignment: Assignment;
   readonly full: FullFit;
@@ -39,6 +42,7 @@ export function findDoubts(input: DoubtInput): Note[] {
     ...doubtsOfLines(input),
     ...doubtsOfTail(input),
     ...doubtsOfSampling(input),
+    ...doubtsOfSteps(input),
     ...doubtsOfUnexplained(input),
     ...doubtsOfFringes(input),
     ...presetNotes(input.protocol),
@@ -220,6 +224,7 @@ function doubtsOfLines({ full, lines, protocol, assignment, points, peaks }: Dou
     .map((i) => peaks[i]!)
     .filter((peak) => energyOf(ns[0]!, full.state.levels) < peak.energy_eV);
   for (const peak of strays) {
+    if (atTheEdge(peak.energy_eV, peak.width_eV, full.state)) continue;
     const owner = ns.some(
       (_, j) => Math.abs(full.state.energy[j]! - peak.energy_eV) < 1.5 * full.state.width[j]!,
     );
@@ -359,6 +364,39 @@ function doubtsOfFringes({ points, full, protocol, spectrum }: DoubtInput): Note
   }
 }
 
+const LINE_REACH = 0.7;
+
+/** A jump from one reading to the next is no line. */
+function doubtsOfSteps({ points, full, spectrum }: DoubtInput): Note[] {
+  const { ns, energy, width } = full.state;
+  // What a line leaves that does not fit turns over at its centre.
+  const inLine = (at: number): boolean =>
+    at > energy[ns.length - 1]! || ns.some((_, j) => Math.abs(at - energy[j]!) < LINE_REACH * width[j]!);
+  const steps = findSteps(full.fit.solution.residuals, points.pointsAsOne ?? 1).filter(
+    ({ place }) => !inLine(points.energy[place]!),
+  );
+  if (steps.length === 0) return [];
+  const depth = depthPerSignal(spectrum);
+  const told = steps.map(({ place, height }) => {
+    const jump = Math.abs(height) * points.sigma[place]!;
+    const size =
+      depth === null
+        ? `${jump.toPrecision(2)} in the signal`
+        : `${(100 * Math.expm1(depth * jump)).toPrecision(2)} % of the transmitted light`;
+    const line = spectrum.line?.[points.place[place]!];
+    const middle = (points.energy[place - 1]! + points.energy[place]!) / 2;
+    return `${middle.toFixed(6)} eV (${size}${line === undefined ? "" : `, line ${line} of the file`})`;
+  });
+  return [
+    doubt(
+      "step-seen",
+      "fit",
+      `The residuals jump from one reading to the next at ${told.join(", ")}: no line and no smooth background does that.`,
+      "measure again where the lamp, the gain or the sample moved, or end the window there (window_eV)",
+    ),
+  ];
+}
+
 /** Refractive index where the protocol names neither index nor permittivity; common practice, no source. */
 const USUAL_INDEX = 2.5;
 
@@ -368,7 +406,7 @@ function doubtsOfUnexplained({ points, full, fit, spectrum, protocol }: DoubtInp
     points,
     full.fit.solution.residuals,
     full.state,
-    fit.chi2 / Math.max(1, fit.dof),
+    (fit.chi2 / Math.max(1, fit.dof)) * (full.correlated ? points.energy.length / fit.effective_points! : 1),
   );
   if (found.length > 0) {
     const worst = [...found].sort((a, b) => Math.abs(b.significance) - Math.abs(a.significance));

@@ -8,6 +8,19 @@ export interface Satellite {
   readonly significance: number;
 }
 
+/**
+ * What stands within its own width, or that of the edge, of the gap belongs to the edge: what the model misses there has no
+ * shape of its own.
+ */
+export function atTheEdge(energy: number, width: number, { levels, widths }: LadderState): boolean {
+  const out = new Float64Array(WIDTH.size);
+  widthLaw(HIGHEST_N, levels.defect0, widths, out);
+  return Math.abs(energy - levels.gap) < Math.max(width, out[WIDTH.width]!);
+}
+
+/** The width law has come to its limit there. */
+const HIGHEST_N = 60;
+
 /** Residuals of this many standard errors, in a filter as wide as the lines there, want an explanation. */
 export const LEAST_SATELLITE = 5;
 
@@ -33,7 +46,7 @@ export function findSatellites(
   let from = 0;
   for (let at = Math.max(energy[0]!, low); at < Math.min(gap, energy[m - 1]!);) {
     const n = Math.sqrt(rydberg / (gap - at)) + defect0;
-    widthLaw(Math.min(n, 60), defect0, state.widths, out);
+    widthLaw(Math.min(n, HIGHEST_N), defect0, state.widths, out);
     const width = Math.max(out[WIDTH.width]!, 1e-9);
     while (from < m && energy[from]! < at - 2 * width) from++;
     let top = 0;
@@ -47,7 +60,7 @@ export function findSatellites(
       count++;
     }
     const significance = count >= 5 && bottom > 0 ? top / Math.sqrt(bottom) / scale : 0;
-    if (Math.abs(significance) > LEAST_SATELLITE) {
+    if (Math.abs(significance) > LEAST_SATELLITE && !atTheEdge(at, width, state)) {
       const last = found[found.length - 1];
       if (last !== undefined && at - last.energy_eV < 2 * width) {
         if (Math.abs(significance) > Math.abs(last.significance))
