@@ -170,29 +170,34 @@ function wire(
   element.on?.("plotly_relayouting", moved);
 }
 
-/** Style-only changes: a few milliseconds, while a redraw of a long spectrum takes fifty. */
+/** Only what changes is restyled, in one call a kind: every call draws the whole figure again. */
 async function light(
   element: HTMLElement,
   data: readonly Trace[],
   before: number | null,
   now: number | null,
 ): Promise<void> {
+  // As drawn, nothing is lit.
+  if (before === null && now === null) return;
   const component = (n: number): number[] =>
     data.flatMap((trace, i) => (trace.meta.n === n && trace.meta.part === "line" ? [i] : []));
-  const ring = (n: number | null): void => {
-    data.forEach((trace, i) => {
-      const numbers = trace["customdata"];
-      if (trace.meta.part !== "levels" || !Array.isArray(numbers)) return;
-      const rest = (trace["marker"] as { readonly size?: readonly number[] } | undefined)?.size;
-      const sizes = numbers.map((one, k) => (one === n ? 13 : (rest?.[k] ?? 8)));
-      void Plotly.restyle(element, { "marker.size": [sizes] }, [i]);
-    });
-  };
   if (before !== null && component(before).length > 0)
     await Plotly.restyle(element, { opacity: 0.55, "line.width": 1.1 }, component(before));
   if (now !== null && component(now).length > 0)
     await Plotly.restyle(element, { opacity: 1, "line.width": 3 }, component(now));
-  ring(now);
+  const rings = data.flatMap((trace, i) => {
+    const numbers = trace["customdata"];
+    if (trace.meta.part !== "levels" || !Array.isArray(numbers)) return [];
+    if (!numbers.includes(before) && !numbers.includes(now)) return [];
+    const rest = (trace["marker"] as { readonly size?: readonly number[] } | undefined)?.size;
+    return [{ i, sizes: numbers.map((one, k) => (one === now ? 13 : (rest?.[k] ?? 8))) }];
+  });
+  if (rings.length > 0)
+    await Plotly.restyle(
+      element,
+      { "marker.size": rings.map(({ sizes }) => sizes) },
+      rings.map(({ i }) => i),
+    );
 }
 
 function bytesOf(address: string): Uint8Array {
