@@ -16,6 +16,8 @@ export interface HeldDefect {
 
 /** Defects of one series differ by about this from crystal to crystal and from reading to reading. */
 const ASSUMED_SIGMA = 0.1;
+/** Where nothing says what kind of series it is, all defects that the convention allows (half to either side) are alike. */
+const UNKNOWN_SIGMA = 1 / Math.sqrt(12);
 
 /**
  * What      Half the difference of gap and Rydberg energy between the defect held one standard uncertainty higher and lower, all
@@ -25,7 +27,7 @@ const ASSUMED_SIGMA = 0.1;
  */
 export function heldDefect(fit: SpectrumFit, law: LevelFit, protocol: Protocol): HeldDefect | null {
   if (law.defect !== "none" || protocol.series.defect === "none") return null;
-  const sigma = protocol.material.defect0_sigma ?? ASSUMED_SIGMA;
+  const sigma = protocol.material.defect0_sigma ?? (isKnown(protocol) ? ASSUMED_SIGMA : UNKNOWN_SIGMA);
   if (!(sigma > 0)) return null;
   const defect0 = law.estimates.values[2]!;
   const [gap, rydberg] = spread(fit, law, protocol, defect0, sigma);
@@ -36,6 +38,10 @@ export function heldDefect(fit: SpectrumFit, law: LevelFit, protocol: Protocol):
     gap_eV: Math.abs(gap),
     rydberg_eV: Math.abs(rydberg),
   };
+}
+
+function isKnown({ material }: Protocol): boolean {
+  return material.preset !== null || material.defect0 !== null;
 }
 
 function spread(
@@ -82,7 +88,7 @@ export function heldDefectNotes(held: HeldDefect | null): Note[] {
     assumption(
       "held-defect-uncertain",
       "systematic",
-      `The held defect ${defect0} is known to ±${sigma}${assumed ? " (assumed, since the protocol does not say)" : ""}, which puts ±${(1e3 * gap_eV).toPrecision(2)} meV on the gap and ±${(1e3 * rydberg_eV).toPrecision(2)} meV on the Rydberg energy: part of the systematic errors, not of the statistical ones.`,
+      `The held defect ${defect0} is known to ±${Number(sigma.toPrecision(2))}${assumed ? " (assumed, since the protocol does not say)" : ""}, which puts ±${(1e3 * gap_eV).toPrecision(2)} meV on the gap and ±${(1e3 * rydberg_eV).toPrecision(2)} meV on the Rydberg energy: part of the systematic errors, not of the statistical ones.`,
       "give its uncertainty (material.defect0_sigma), or measure a fourth line",
     ),
   ];

@@ -7,7 +7,7 @@ const FEW_LINES = 4;
 const FLATLY_REJECTED = 100;
 /** A peak this high over the median line of the reading is one of its kind. */
 const OF_ITS_KIND = 1 / 3;
-const LEAST_SHARE_LEFT_OUT = 1 / 3;
+const LEAST_SHARE_LEFT_OUT = 1 / 5;
 
 /**
  * Whether few lines that flatly reject their law were picked out of many of the same kind: then there is no series, since
@@ -26,5 +26,5 @@ export function readByChance({ range, state }: FullFit, peaks: readonly Peak[]):
   const least = OF_ITS_KIND * (heights[heights.length >> 1] ?? Infinity);
   const others = peaks.filter((peak) => !owned.includes(peak) && peak.height > least);
   if (others.length < LEAST_SHARE_LEFT_OUT * (others.length + owned.length)) return null;
-  return ` The best reading, n = ${state.ns.join(", ")}, leaves out ${others.length} lines as strong, and its law misses the others by ${Math.sqrt(chi2 / degreesOfFreedom).toPrecision(3)} standard errors.`;
+  return ` The best reading, n = ${state.ns.join(", ")}, leaves out ${others.length} ${others.length === 1 ? "line" : "lines"} as strong, and its law misses the others by ${Math.sqrt(chi2 / degreesOfFreedom).toPrecision(3)} standard errors.`;
 }

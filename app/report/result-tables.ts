@@ -45,6 +45,7 @@ function seriesTable(result: RunglineResult): DataTable | null {
   const levels = quotedLevels(series);
   const rydberg = energyUnit(series.rydberg_eV.value);
   const ritz = series.defect2.value !== null;
+  const given = systematic?.held_defect === undefined ? "" : ", for the held defect";
   const row = (name: string, quantity: Quantity, unit: EnergyUnit, part: string): Cell[] => [
     words(name),
     energyCell(quantity, unit, level),
@@ -65,9 +66,9 @@ function seriesTable(result: RunglineResult): DataTable | null {
       textColumn(`interval at ${percent(level)}`),
     ],
     rows: [
-      row("gap", levels.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null, null)),
+      row(`gap${given}`, levels.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null, null)),
       row(
-        "Rydberg energy",
+        `Rydberg energy${given}`,
         levels.rydberg_eV,
         rydberg,
         systematicWords(systematic?.rydberg_eV ?? null, rydberg),
@@ -101,7 +102,7 @@ function heldDefectRemark(
 ): string[] {
   if (held === undefined) return [];
   return [
-    `The defect is held at ${held.defect0} ± ${held.sigma}${held.assumed ? " (assumed)" : ""}, which puts ${systematicWords(held.gap_eV, null)} on the gap and ${systematicWords(held.rydberg_eV, rydberg)} on the Rydberg energy (systematic).`,
+    `The defect is held at ${held.defect0} ± ${Number(held.sigma.toPrecision(2))}${held.assumed ? " (assumed)" : ""}: values, errors and intervals of gap and Rydberg energy hold for that defect only; its uncertainty puts ${systematicWords(held.gap_eV, null)} on the gap and ${systematicWords(held.rydberg_eV, rydberg)} on the Rydberg energy (systematic).`,
   ];
 }
 

@@ -86,8 +86,9 @@ function resultRows(result: RunglineResult): string {
 
   const { series, systematic, width_law, strength_law, tail, derived, fit } = result;
   if (series !== null) {
-    const range = `n ${series.fit_n[0]} to ${series.fit_n[1]}`;
     const levels = quotedLevels(series);
+    const defect = systematic?.held_defect;
+    const range = `n ${series.fit_n[0]} to ${series.fit_n[1]}${defect === undefined ? "" : `, for the defect held at ${defect.defect0}`}`;
     const how = levels.scaled ? `${range}, error scaled by the scatter since the law is rejected` : range;
     row("series", "gap", null, levels.gap_eV, "eV", how);
     row("series", "rydberg", null, levels.rydberg_eV, "eV", how);

@@ -141,6 +141,7 @@ function seriesPart(result: RunglineResult): string[] {
   const ritz = series.defect2.value !== null;
   const levels = quotedLevels(series);
   const rydberg = energyUnit(series.rydberg_eV.value);
+  const given = systematic?.held_defect === undefined ? "" : ", for the held defect";
   const rows: string[][] = [
     [
       "",
@@ -149,13 +150,13 @@ function seriesPart(result: RunglineResult): string[] {
       `interval at ${percent(level)}`,
     ],
     [
-      "gap E_g",
+      `gap E_g${given}`,
       energy(levels.gap_eV, ELECTRONVOLT, level),
       systematicWords(systematic?.gap_eV ?? null, null),
       interval(levels.gap_eV, ELECTRONVOLT),
     ],
     [
-      "Rydberg energy Ry",
+      `Rydberg energy Ry${given}`,
       energy(levels.rydberg_eV, rydberg, level),
       systematicWords(systematic?.rydberg_eV ?? null, rydberg),
       interval(levels.rydberg_eV, rydberg),
@@ -179,7 +180,7 @@ function seriesPart(result: RunglineResult): string[] {
   if (systematic?.held_defect !== undefined) {
     const { defect0, sigma, assumed, gap_eV, rydberg_eV } = systematic.held_defect;
     out.push(
-      `  The defect is held at ${defect0} ± ${sigma}${assumed ? " (assumed)" : ""}, which puts ${systematicWords(gap_eV, null)} on E_g and ${systematicWords(rydberg_eV, rydberg)} on Ry (systematic).`,
+      `  The defect is held at ${defect0} ± ${Number(sigma.toPrecision(2))}${assumed ? " (assumed)" : ""}: values, errors and intervals of E_g and Ry hold for that defect only; its uncertainty puts ${systematicWords(gap_eV, null)} on E_g and ${systematicWords(rydberg_eV, rydberg)} on Ry (systematic).`,
     );
   }
   if (systematic?.area_relative !== undefined && systematic.area_relative !== null)

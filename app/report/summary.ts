@@ -79,8 +79,14 @@ export function summaryRow(result: RunglineResult): SummaryRow {
     sample: fact("sample"),
     batch: fact("batch"),
     temperature: fact("temperature"),
-    // Scaled by the scatter where the level law was rejected.
-    level_errors: levels === null ? null : levels.scaled ? "scaled" : "plain",
+    // Scaled by the scatter where the level law was rejected; true for one defect only where that was held.
+    level_errors:
+      levels === null
+        ? null
+        : [
+            levels.scaled ? "scaled" : "plain",
+            ...(systematic?.held_defect === undefined ? [] : ["for the held defect"]),
+          ].join(", "),
   };
 }
 

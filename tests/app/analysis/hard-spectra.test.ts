@@ -1,4 +1,5 @@
 import { describe, expect, test } from "vitest";
+import { makeRandom } from "../../../app/base/index.ts";
 import type { RunglineResult } from "../../../app/protocol/index.ts";
 import { doubtsOf, pullOf, resultOf } from "../../support/analyse-bytes.ts";
 import {
@@ -184,6 +185,21 @@ describe("no series is claimed", () => {
       expect(result.series).toBeNull();
       expect(result.lines).toEqual([]);
       expect(doubtsOf(result)).toContain("no-series");
+    }
+  });
+
+  test.each([1, 2, 4, 5, 7, 10])("on five lines that follow no law, seed %i", (seed) => {
+    const random = makeRandom(seed);
+    const extraLines = Array.from({ length: 5 }, () => ({
+      energy_eV: 2.143 + 0.027 * random.uniform(),
+      width_eV: 2e-4 + 2e-4 * random.uniform(),
+      area: 0.2,
+    }));
+    for (const choices of [{}, { material: { preset: null } }]) {
+      const grid = [[2.14, 2.173, 4000]] as const;
+      const result = analyseYellow({ ...empty, extraLines }, { seed, sigma: 3, grid, choices });
+      expect(result.status).toBe("no-series");
+      expect(result.notes.find(({ code }) => code === "no-series")?.text).toMatch(/[45] significant lines/);
     }
   });
 

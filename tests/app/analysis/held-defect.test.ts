@@ -1,6 +1,7 @@
 import { describe, expect, it } from "vitest";
 import type { RunglineResult } from "../../../app/protocol/index.ts";
 import { resultSchema } from "../../../app/protocol/index.ts";
+import { resultToCsv, resultToText } from "../../../app/report/index.ts";
 import { resultOf } from "../../support/analyse-bytes.ts";
 import { makeSpectrum, spectrumFile, type SyntheticSeries } from "../../support/make-spectrum.ts";
 
@@ -58,6 +59,21 @@ describe("a defect that three lines leave held", () => {
     expect(held.gap_eV).toBeGreaterThan(5 * series!.gap_eV.sigma!);
     expect(result.notes.map(({ code }) => code)).toContain("held-defect-uncertain");
     expect(() => resultSchema.parse(result)).not.toThrow();
+  });
+
+  it("is not held against the reader: files say that gap and Rydberg energy hold for it, and give it no interval", () => {
+    expect(resultToText(result)).toMatch(/quantum defect delta +0\.23 \(held\) +\S+ +held\n/);
+    expect(resultToText(result)).toContain("gap E_g, for the held defect");
+    const defect = resultToCsv(result)
+      .split("\r\n")
+      .find((line) => line.includes(",series,defect0,"));
+    expect(defect).toMatch(/,0\.23,0,,,,.*held/);
+  });
+
+  it("is known to the whole range of the convention where no material is named", () => {
+    const unnamed = fitted({ material: { preset: null } }).systematic!.held_defect!;
+    // Derived: standard deviation of a uniform distribution from -1/2 to 1/2
+    expect(unnamed.sigma).toBeCloseTo(0.288675, 6);
   });
 
   it("is as uncertain as the protocol says, and exact where it says so", () => {
