@@ -5,6 +5,7 @@ export {
   type AnalyseOptions,
   type AnalysisResult,
 } from "./analyse.ts";
+export { leastSignificance, significances } from "./climb-ladder.ts";
 export { drawCurves, type Curves } from "./curves.ts";
 export { lineCurve } from "./line-curves.ts";
 export { withHeaderSlit } from "./instrument.ts";

@@ -2,8 +2,10 @@ import { doubt, assumption, stopIfCancelled, type Note, type Watch } from "../ba
 import {
   buildModel,
   energyOf,
+  leastSignificance,
   linesForThinning,
   selectPoints,
+  significances,
   stateAfter,
   thinPoints,
   withLines,
@@ -80,6 +82,8 @@ interface Work {
   area: Float64Array;
   /** Areas of the reference, by n. */
   readonly reference: ReadonlyMap<number, number>;
+  /** Areas by n that bleaching has taken from; null for the reference, whose own follow from the strength law. */
+  readonly whole: ReadonlyMap<number, number> | null;
   /** By n, from the width at the power before. */
   readonly widthRange: ReadonlyMap<number, readonly [number, number]>;
   /** Whether the tail of tied lines bleaches on as n^10 or is all of one factor. */
@@ -119,12 +123,13 @@ export function fitPowerSeries(
   const notes: Note[] = [];
   const works: Work[] = [];
   let before = start;
-  const whole = new Map(reference.lines.map((line) => [line.n, line.area.value ?? 0]));
-  const areas = new Map(reference.lines.map((line) => [line.n, line.area.value ?? 0]));
+  const seen = new Map(reference.lines.map((line) => [line.n, line.area.value ?? 0]));
+  const areas = new Map(seen);
+  let whole: ReadonlyMap<number, number> | null = null;
   for (const [i, member] of series.entries()) {
     stopIfCancelled(watch);
     watch.report(0.3 * (i / series.length), `starting at ${member.power_uW} uW`);
-    const work = prepare(member, before, start, areas, whole, reference.fit.window_eV, tied);
+    let work = prepare(member, before, start, areas, { seen, whole }, reference.fit.window_eV, tied);
     if (typeof work === "number") {
       failed.push({
         label: member.label,
@@ -133,6 +138,18 @@ export function fitPowerSeries(
       continue;
     }
     warmUp(work, settings);
+    if (whole === null) {
+      const { ns } = work.state;
+      if (work.rolls) {
+        work = climbBleached(work, settings);
+        notes.push(bleachedReference(work, ns[ns.length - 1]!, tied));
+        before = withLines(
+          before,
+          [...new Set([...before.ns, ...work.state.ns])].sort((a, b) => a - b),
+        );
+      }
+      whole = work.rolls ? wholeByLaw(work, tied).areas : seen;
+    }
     // What the next power starts from; lines outside this spectrum keep what they had.
     before = mergeStates(before, work.state);
     work.state.ns.forEach((n, j) => areas.set(n, work.area[j]!));
@@ -197,7 +214,7 @@ function prepare(
   before: LadderState,
   start: LadderState,
   beforeArea: ReadonlyMap<number, number>,
-  reference: ReadonlyMap<number, number>,
+  { seen, whole }: { readonly seen: Work["reference"]; readonly whole: Work["whole"] },
   window: readonly [number, number],
   protocol: Protocol,
 ): Work | number {
@@ -219,14 +236,19 @@ function prepare(
     thin: thinPoints(points, linesForThinning(state, protocol)),
     state,
     area,
-    reference,
-    widthRange: new Map(
-      state.ns.map((n, j) => [n, [state.width[j]! / WIDTH_CHANGE, state.width[j]! * WIDTH_CHANGE]]),
-    ),
+    reference: seen,
+    whole,
+    widthRange: widthRange(state),
     rolls: false,
     held: [],
     leans: new Map(),
   };
+}
+
+function widthRange(state: LadderState): Work["widthRange"] {
+  return new Map(
+    state.ns.map((n, j) => [n, [state.width[j]! / WIDTH_CHANGE, state.width[j]! * WIDTH_CHANGE]]),
+  );
 }
 
 /**
@@ -239,23 +261,13 @@ function warmUp(work: Work, settings: Settings): void {
   const trials: SpectrumFit[] = [];
   for (const rolls of choices.tail ? [false, true] : [false]) {
     work.rolls = rolls;
-    const model = withBleachedTail(buildModel(work.thin, work.state, protocol, unit, choices), work);
-    if (rolls && model.spec.tail?.rollOff === undefined) continue;
-    const { fits } = fitJointly(
-      [
-        {
-          points: work.thin,
-          // No law parameters: the lines stand where the reference has them.
-          spec: { ...model.spec, tiedLevels: { ...model.spec.tiedLevels!, count: 0 } },
-          start: model.start,
-          widthRange: work.widthRange,
-        },
-      ],
-      { gap: true, rydberg: true, defect: true, asymmetry: true },
-      { watch, maxIterations: 30, gradientTolerance: 1e-4, costTolerance: 1e-6, answer: "condensed" },
+    const model = withBleachedTail(
+      buildModel(work.thin, work.state, protocol, unit, choices),
+      work,
+      protocol,
     );
-    stopIfCancelled(watch);
-    const fit = fits[0]!;
+    if (rolls && model.spec.tail?.rollOff === undefined) continue;
+    const fit = fitOnLaw(work, model, watch);
     trials.push(fit);
     // Areas tell how far bleaching has gone before the second trial asks for it.
     if (!rolls) adopt(work, fit, model.state);
@@ -266,6 +278,24 @@ function warmUp(work: Work, settings: Settings): void {
   if (trials.length === 2) work.leans = leansOf(trials[0]!, trials[1]!);
   work.rolls = best.rolls;
   adopt(work, best.fit, best.state);
+}
+
+/** One spectrum on thinned points, its lines where the reference has them: no parameter of the level law. */
+function fitOnLaw(work: Work, model: Model, watch: Watch): SpectrumFit {
+  const { fits } = fitJointly(
+    [
+      {
+        points: work.thin,
+        spec: { ...model.spec, tiedLevels: { ...model.spec.tiedLevels!, count: 0 } },
+        start: model.start,
+        widthRange: work.widthRange,
+      },
+    ],
+    { gap: true, rydberg: true, defect: true, asymmetry: true },
+    { watch, maxIterations: 30, gradientTolerance: 1e-4, costTolerance: 1e-6, answer: "condensed" },
+  );
+  stopIfCancelled(watch);
+  return fits[0]!;
 }
 
 /** Change of each area from one fit to the other in standard errors of the larger one. */
@@ -391,38 +421,161 @@ type Model = ReturnType<typeof buildModel>;
 
 function modelsOf(works: readonly Work[], { protocol, unit, choices }: Settings): Model[] {
   return works.map((work) =>
-    withBleachedTail(buildModel(work.points, work.state, protocol, unit, choices), work),
+    withBleachedTail(buildModel(work.points, work.state, protocol, unit, choices), work, protocol),
   );
 }
 
 /** Above the last line that can be told apart bleaching goes on as it began: S_n ~ n^10 (ideal blockade). */
 const BLEACHING_EXPONENT = 10;
 
-/** n at which 1/(1 + (n/h)^10) of the reference's areas is left, by least squares over the lines; null where none bleaches. */
-function halfBleachedN(work: Work): number | null {
-  const { state, area, reference } = work;
-  const cost = (half: number): number => {
-    let sum = 0;
-    state.ns.forEach((n, j) => {
-      const whole = reference.get(n);
-      if (whole === undefined || !(whole > 0) || !state.include[j]!) return;
-      const left = 1 / (1 + (n / half) ** BLEACHING_EXPONENT);
-      sum += ((area[j]! - whole * left) / state.areaSigma[j]!) ** 2;
-    });
-    return sum;
-  };
-  const last = state.ns[state.ns.length - 1]!;
-  let best = 4 * last;
-  const unbleached = cost(best);
-  for (let half = best; half > state.ns[0]!; half *= 0.99) if (cost(half) < cost(best)) best = half;
+/** n at which 1/(1 + (n/h)^10) of the whole areas is left, by least squares over the lines; null where none bleaches. */
+function halfBleachedN(work: Work, protocol: Protocol): number | null {
+  const { whole } = work;
+  if (whole === null) return wholeByLaw(work, protocol).halfN;
+  const { best, unbleached, halfN } = leastHalf(work.state.ns, (half) =>
+    overLines(work, (n) => (whole.get(n) ?? 0) / (1 + (n / half) ** BLEACHING_EXPONENT)),
+  );
   // Two standard errors: below that the tail of the reference stands.
-  return unbleached - cost(best) > 4 ? best : null;
+  return unbleached - best > 4 ? halfN : null;
 }
 
+/** Sum over the lines on the law of (area - model)^2/sigma^2; a model of zero is none. */
+function overLines({ state, area }: Work, model: (n: number) => number): number {
+  let sum = 0;
+  state.ns.forEach((n, j) => {
+    const value = model(n);
+    if (value > 0 && state.include[j]!) sum += ((area[j]! - value) / state.areaSigma[j]!) ** 2;
+  });
+  return sum;
+}
+
+function leastHalf(
+  ns: readonly number[],
+  cost: (half: number) => number,
+): { best: number; unbleached: number; halfN: number } {
+  let halfN = 4 * ns[ns.length - 1]!;
+  const unbleached = cost(halfN);
+  let best = unbleached;
+  for (let half = halfN; half > ns[0]!; half *= 0.99) {
+    const here = cost(half);
+    if (here < best) [best, halfN] = [here, half];
+  }
+  return { best, unbleached, halfN };
+}
+
+/**
+ * What the lines of the reference would have if its own power took nothing from them: the strength law times
+ * 1/(1 + (n/h)^10), by least squares over the lines, each good to a part of its area that the law itself may be off by.
+ */
+function wholeByLaw(
+  work: Work,
+  protocol: Protocol,
+): { areas: ReadonlyMap<number, number>; halfN: number | null } {
+  const { state, area } = work;
+  const { law, base } = protocol.strength;
+  const lines = state.ns.flatMap((n, j) =>
+    state.include[j]!
+      ? [
+          {
+            n,
+            area: area[j]!,
+            law: strength(n, state.levels.defect0, law, base),
+            weight: 1 / (state.areaSigma[j]! ** 2 + (LAW_OFF * area[j]!) ** 2),
+          },
+        ]
+      : [],
+  );
+  const height = (half: number): number => {
+    let [up, down] = [0, 0];
+    for (const line of lines) {
+      const left = line.law / (1 + (line.n / half) ** BLEACHING_EXPONENT);
+      up += line.weight * line.area * left;
+      down += line.weight * left * left;
+    }
+    return up / down;
+  };
+  const { best, unbleached, halfN } = leastHalf(state.ns, (half) => {
+    const c = height(half);
+    return lines.reduce(
+      (sum, line) =>
+        sum + line.weight * (line.area - (c * line.law) / (1 + (line.n / half) ** BLEACHING_EXPONENT)) ** 2,
+      0,
+    );
+  });
+  const c = height(halfN);
+  return {
+    areas: new Map(state.ns.map((n) => [n, c * strength(n, state.levels.defect0, law, base)])),
+    halfN: unbleached - best > 4 ? halfN : null,
+  };
+}
+
+/** Part of its area by which a line may be off the strength law. */
+const LAW_OFF = 0.02;
+
+/**
+ * The main job ties the lines above the last one with one factor. Where the lowest power bleaches them as n^10 already,
+ * that tail is wrong right above the last line and hides the next ones: with the tail that bleaches on they are added as
+ * long as each is seen.
+ */
+function climbBleached(reference: Work, settings: Settings): Work {
+  const { protocol, unit, choices, watch } = settings;
+  const { energy } = reference.points;
+  const end = energy[energy.length - 1]!;
+  let work = reference;
+  while (protocol.lines.n === "auto") {
+    const { ns, levels } = work.state;
+    const next = ns[ns.length - 1]! + 1;
+    if (next > protocol.lines.max_n || !(energyOf(next, levels) < end)) break;
+    const state = withLines(work.state, [...ns, next]);
+    const { areas, halfN } = wholeByLaw(work, protocol);
+    const left = 1 / (1 + (next / (halfN ?? Infinity)) ** BLEACHING_EXPONENT);
+    const lowest = ns[0]!;
+    const law = strength(next, levels.defect0, protocol.strength.law, protocol.strength.base);
+    const first = strength(lowest, levels.defect0, protocol.strength.law, protocol.strength.base);
+    const trial: Work = {
+      ...work,
+      thin: thinPoints(work.points, linesForThinning(state, protocol)),
+      state,
+      area: Float64Array.from([...work.area, (areas.get(lowest)! * left * law) / first]),
+      widthRange: widthRange(state),
+    };
+    const model = withBleachedTail(buildModel(trial.thin, state, protocol, unit, choices), trial, protocol);
+    const fit = fitOnLaw(trial, model, watch);
+    if (!(significances(fit)[ns.length]! > leastSignificance(energy.length))) break;
+    adopt(trial, fit, model.state);
+    work = trial;
+  }
+  return work;
+}
+
+/** What the lowest power takes already, in words. */
+function bleachedReference(work: Work, before: number, protocol: Protocol): Note {
+  const { ns } = work.state;
+  const { areas } = wholeByLaw(work, protocol);
+  const weak = ns.filter((n, j) => work.area[j]! < HALF * areas.get(n)!);
+  const top = ns[ns.length - 1]!;
+  const left = Math.max(0, work.area[ns.length - 1]! / areas.get(top)!);
+  const added =
+    top === before
+      ? ""
+      : ` With a tail that bleaches on, n = ${top === before + 1 ? top : `${before + 1} to ${top}`} could be told beside those of the lowest spectrum on its own.`;
+  const saturated =
+    weak.length === 0 ? "" : ` S of n = ${weak.join(", ")} rests on little of the line and is loose.`;
+  return doubt(
+    "reference-bleached",
+    "power.spectra",
+    `The lowest power, ${work.member.power_uW} uW, bleaches the highest lines already: n = ${top} has ${left.toFixed(2)} of what the strength law of the lower lines gives it.${saturated}${added} Lines above n = ${top} may be hidden by that light.`,
+    "add a spectrum at a much lower power",
+  );
+}
+
+/** Less than this part of a line is too little to say how much there was. */
+const HALF = 0.5;
+
 /** Tail and continuum where light has bleached the highest lines. */
-function withBleachedTail(model: Model, work: Work): Model {
+function withBleachedTail(model: Model, work: Work, protocol: Protocol): Model {
   const { tail } = model.spec;
-  const halfN = work.rolls ? halfBleachedN(work) : null;
+  const halfN = work.rolls ? halfBleachedN(work, protocol) : null;
   if (tail === null || halfN === null) return withUnbleachedStrength(model, work);
   const rollOff = { halfN, exponent: BLEACHING_EXPONENT };
   return withUnbleachedStrength({ ...model, spec: { ...model.spec, tail: { ...tail, rollOff } } }, work);

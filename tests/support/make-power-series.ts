@@ -12,6 +12,8 @@ export interface SyntheticPowerSeries {
   readonly points: number;
   readonly sigma: number;
   readonly seed: number;
+  /** Lines above it bleach like it; 20 where not given. */
+  readonly lastBleachingN?: number;
   readonly change?: (power_uW: number) => Partial<SyntheticSeries>;
 }
 
@@ -40,11 +42,14 @@ export const SERIES: SyntheticPowerSeries = {
   seed: 11,
 };
 
-/** Above it lines bleach alike: nothing is known of them, and a law of n^10 would empty the edge at any power. */
+/** Nothing is known of the lines above it, and a law of n^10 would empty the edge at any power. */
 const LAST_BLEACHING_N = 20;
 
 export function saturationOf(series: SyntheticPowerSeries, n: number): number {
-  return series.saturation10_per_uW * (Math.min(n, LAST_BLEACHING_N) / 10) ** series.exponent;
+  return (
+    series.saturation10_per_uW *
+    (Math.min(n, series.lastBleachingN ?? LAST_BLEACHING_N) / 10) ** series.exponent
+  );
 }
 
 /** Energies denser towards the gap, as a careful experimenter takes them. */
