@@ -13,7 +13,7 @@ import {
   type Climbed,
 } from "./climb-ladder.ts";
 import { drawCurves, emptyCurves, type Curves } from "./curves.ts";
-import { describeReading, describeResult, sortNotes } from "./describe-result.ts";
+import { describeReading, describeResult } from "./describe-result.ts";
 import { presetNotes } from "./find-doubts.ts";
 import { findPeaks, type Peak } from "./find-peaks.ts";
 import { fitEveryPoint, type FullFit } from "./fit-full.ts";
@@ -34,6 +34,7 @@ import {
 } from "./resample.ts";
 import { readByChance } from "./read-by-chance.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
+import { sortNotes } from "./sort-notes.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 import {
   CLEARLY_BETTER,

@@ -45,6 +45,7 @@ import { heldDefect, heldDefectNotes } from "./held-defect.ts";
 import { intervalFactor } from "./interval.ts";
 import { covarianceBlock, determinedPlaces, levelInput } from "./level-range.ts";
 import type { SelectedPoints } from "./select-points.ts";
+import { sortNotes } from "./sort-notes.ts";
 import { profileSpectrum, type SpectrumProfile } from "./spectrum-profile.ts";
 import { judgeSystematics, systematicNotes } from "./systematics.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
@@ -396,15 +397,4 @@ function finiteOnly(record: object): Record<string, number | null> {
   return Object.fromEntries(
     Object.entries(record).map(([key, value]) => [key, Number.isFinite(value) ? (value as number) : null]),
   );
-}
-
-/** The gravest first, each once. */
-export function sortNotes(notes: readonly Note[]): Note[] {
-  const once = notes.filter(
-    (note, i) => notes.findIndex((other) => other.code === note.code && other.about === note.about) === i,
-  );
-  return [
-    ...once.filter((note) => note.level === "doubt"),
-    ...once.filter((note) => note.level === "assumption"),
-  ];
 }

@@ -14,5 +14,5 @@ export { buildModel, energyOf, stateAfter, withLines } from "./ladder-model.ts";
 export type { LadderState, ModelChoices } from "./ladder-model.ts";
 export { selectPoints, type SelectedPoints } from "./select-points.ts";
 export { linesForThinning, thinPoints } from "./thin-points.ts";
-export { sortNotes } from "./describe-result.ts";
+export { sortNotes } from "./sort-notes.ts";
 export { drawingProgress, drawSpectra, type ResampledDraw, type ResamplingPlan } from "./resample.ts";
