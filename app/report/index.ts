@@ -67,5 +67,5 @@ export {
   type FigurePress,
 } from "./figures/figure-files.ts";
 export type { FontFiles } from "./figures/typefaces.ts";
-export { colourOfN, colourOfPower, type Mode } from "./figures/colours.ts";
+export { batchLook, colourOfN, colourOfPower, type Mode, type Shape } from "./figures/colours.ts";
 export { comparisonToCsv, comparisonToJson, COMPARISON_CSV_MARK } from "./comparison-to-csv.ts";

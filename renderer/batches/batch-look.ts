@@ -1,43 +1,30 @@
+import { batchLook as lookOf, type Shape } from "../../app/report/index.ts";
 import type { Mode } from "../plot/colours.ts";
 
-/**
- * What      Colour and mark of each batch, told apart with any kind of colour sight and without colour; the same order of
- *           colours and marks as in the report.
- * Source    Okabe and Ito, "Color Universal Design" (2008); its black is white on a dark ground.
- */
-const COLOURS: readonly { readonly light: string; readonly dark: string }[] = [
-  { light: "#0072b2", dark: "#2f9be0" },
-  { light: "#d55e00", dark: "#f07f2e" },
-  { light: "#009e73", dark: "#21c598" },
-  { light: "#cc79a7", dark: "#d98fb8" },
-  { light: "#e69f00", dark: "#e69f00" },
-  { light: "#56b4e9", dark: "#7cc6f0" },
-  { light: "#1c2126", dark: "#e8eaec" },
-  { light: "#9a8f00", dark: "#d6cb3c" },
-];
-
+/** Marks as the plot library names them. */
 export type BatchMark =
   "circle" | "square" | "triangle-up" | "diamond" | "triangle-down" | "x" | "cross" | "star";
-const MARKS: readonly BatchMark[] = [
-  "circle",
-  "square",
-  "triangle-up",
-  "diamond",
-  "triangle-down",
-  "x",
-  "cross",
-  "star",
-];
+
+const MARKS: Readonly<Record<Shape, BatchMark>> = {
+  circle: "circle",
+  square: "square",
+  triangle: "triangle-up",
+  diamond: "diamond",
+  down: "triangle-down",
+  cross: "x",
+  plus: "cross",
+  star: "star",
+};
 
 export interface BatchLook {
   readonly colour: string;
   readonly mark: BatchMark;
 }
 
-/** From the ninth batch on colours and marks pair up anew. */
+/** Colour and mark of each batch, those of the report. */
 export function batchLook(i: number, mode: Mode): BatchLook {
-  const round = Math.floor(i / COLOURS.length);
-  return { colour: COLOURS[i % COLOURS.length]![mode], mark: MARKS[(i + round) % MARKS.length]! };
+  const { colour, shape } = lookOf(i, mode);
+  return { colour, mark: MARKS[shape] };
 }
 
 /** The mark in a box of twelve, for keys and tables. */

@@ -1,12 +1,11 @@
-import { Button } from "react-aria-components";
 import { dayNumber } from "../../app/batch/index.ts";
 import type { ComparedSample } from "../../app/protocol/index.ts";
-import { Amount, Clause, Pick, Sentence } from "../controls/choices.tsx";
-import { parseNumber } from "../controls/parse-number.ts";
+import { Amount, Clause, NumberAmount, Pick, Sentence } from "../controls/choices.tsx";
+import { FitAllButton } from "../controls/fit-all-button.tsx";
 import { useController, useWindow } from "../store/context.ts";
 import type { CompareView } from "../store/session.ts";
 import { typedColumns, typeFacts } from "../store/typed-facts.ts";
-import { batchesOf, gather, unfittedFiles } from "../store/gather.ts";
+import { batchesOf, gather } from "../store/gather.ts";
 
 const NONE = "";
 
@@ -32,17 +31,13 @@ export function BatchesChoices({ chosen }: { readonly chosen: ComparedSample | n
     change({ [key]: pair } as Partial<CompareView>, step);
   };
   const temperature = (at: 0 | 1, label: string, placeholder: string) => (
-    <Amount
+    <NumberAmount
       label={label}
-      value={view.temperature[at] === null ? "" : String(view.temperature[at])}
+      value={view.temperature[at]}
       placeholder={placeholder}
-      width={4}
-      onCommit={(text) => {
-        const value = text === "" ? null : parseNumber(text);
-        if (text !== "" && (value === null || value < 0)) return "a temperature in kelvin, or nothing";
-        bound("temperature", at, value, "temperatures shown");
-        return null;
-      }}
+      accept={(value) => value >= 0}
+      expected="a temperature in kelvin, or nothing"
+      onTake={(value) => bound("temperature", at, value, "temperatures shown")}
     />
   );
   const date = (at: 0 | 1, label: string, placeholder: string) => (
@@ -149,29 +144,4 @@ function factLabels(session: Parameters<typeof gather>[0]): readonly string[] {
     }
   const told = [...texts].flatMap(([name, different]) => (different.size > 1 ? [name] : []));
   return [...new Set([...told, ...typedColumns(session.compare.choices.values ?? [])])];
-}
-
-/** Fit every file without a fit of its present choices, with progress and a way out. */
-export function FitAllButton() {
-  const controller = useController();
-  const job = useWindow((state) => state.job);
-  const left = useWindow((state) => unfittedFiles(state.session).length);
-  if (job !== null)
-    return (
-      <div className="fit-place fit-job" data-state={job.cancelling ? "cancelling" : "running"}>
-        <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
-          Cancel
-        </Button>
-        <progress className="fit-all-progress" max={1} value={job.fraction} aria-label="Fit all" />
-        <span className="small progress-step">{job.cancelling ? "stopping" : job.step}</span>
-      </div>
-    );
-  return (
-    <div className="fit-place">
-      <Button className="button button-main" isDisabled={left === 0} onPress={() => void controller.fitAll()}>
-        Fit all
-      </Button>
-      <span className="small">{left === 0 ? "all are fitted" : `${left} to fit`}</span>
-    </div>
-  );
 }

@@ -2,7 +2,7 @@ import { useEffect, useRef, useState } from "react";
 import { Button } from "react-aria-components";
 import { CRYOGEN_CAUTION, LASER_CAUTION, gravestFirst } from "../../app/report/index.ts";
 import type { RecordPart } from "../../app/tasks/index.ts";
-import { FitAllButton } from "../batches/batches-choices.tsx";
+import { FitAllButton } from "../controls/fit-all-button.tsx";
 import { gather } from "../store/gather.ts";
 import { Clause, Pick, Sentence } from "../controls/choices.tsx";
 import { EmptyPlace } from "../frame/empty-place.tsx";

@@ -3,7 +3,7 @@
  *           log n, the same for every sample, on each ground by the stretch that stands out from it; power by lightness;
  *           batches by a set that colour-blind readers tell apart, each with a mark of its own.
  * Source    viridis: van der Walt and Smith, "A better default colormap for Matplotlib", SciPy 2015 (CC0), anchors of the
- *           published map; batches: Okabe and Ito, "Color Universal Design" (2008).
+ *           published map; batches: Okabe and Ito, "Color Universal Design" (2008), lightened on a dark ground.
  */
 const SCALE: readonly (readonly [number, number, number])[] = [
   [68, 1, 84],
@@ -51,28 +51,30 @@ function hexOf(channels: readonly number[]): string {
   return `#${channels.map((channel) => channel.toString(16).padStart(2, "0")).join("")}`;
 }
 
-export type Shape = "circle" | "square" | "triangle" | "diamond" | "down" | "cross" | "plus" | "bar";
+export type Shape = "circle" | "square" | "triangle" | "diamond" | "down" | "cross" | "plus" | "star";
 
 export interface BatchLook {
   readonly colour: string;
   readonly shape: Shape;
 }
-const BATCHES: readonly BatchLook[] = [
-  { colour: "#0072b2", shape: "circle" },
-  { colour: "#d55e00", shape: "square" },
-  { colour: "#009e73", shape: "triangle" },
-  { colour: "#cc79a7", shape: "diamond" },
-  { colour: "#e69f00", shape: "down" },
-  { colour: "#56b4e9", shape: "cross" },
-  { colour: "#000000", shape: "plus" },
-  { colour: "#9a8f00", shape: "bar" },
+const BATCHES: readonly (Readonly<Record<Mode, string>> & { readonly shape: Shape })[] = [
+  { light: "#0072b2", dark: "#2f9be0", shape: "circle" },
+  { light: "#d55e00", dark: "#f07f2e", shape: "square" },
+  { light: "#009e73", dark: "#21c598", shape: "triangle" },
+  { light: "#cc79a7", dark: "#d98fb8", shape: "diamond" },
+  { light: "#e69f00", dark: "#e69f00", shape: "down" },
+  { light: "#56b4e9", dark: "#7cc6f0", shape: "cross" },
+  { light: "#1c2126", dark: "#e8eaec", shape: "plus" },
+  { light: "#9a8f00", dark: "#d6cb3c", shape: "star" },
 ];
 
 /** From the ninth batch on colours and marks pair up anew. */
-export function batchLook(i: number): BatchLook {
+export function batchLook(i: number, mode: Mode = "light"): BatchLook {
   const round = Math.floor(i / BATCHES.length);
-  const { colour } = BATCHES[i % BATCHES.length]!;
-  return { colour, shape: BATCHES[(i + round) % BATCHES.length]!.shape };
+  return {
+    colour: BATCHES[i % BATCHES.length]![mode],
+    shape: BATCHES[(i + round) % BATCHES.length]!.shape,
+  };
 }
 
 export const PAPER = "#ffffff";

@@ -64,6 +64,20 @@ export function scriptShift(style: "plain" | "italic" | "sub" | "sup"): number {
   return style === "sub" ? 0.22 : style === "sup" ? -0.36 : 0;
 }
 
+/** Points at 1.3 and 0.52 of the size in turn, clockwise from the top. */
+const STAR = [
+  [0, -1.3],
+  [0.31, -0.42],
+  [1.24, -0.4],
+  [0.49, 0.16],
+  [0.76, 1.05],
+  [0, 0.52],
+  [-0.76, 1.05],
+  [-0.49, 0.16],
+  [-1.24, -0.4],
+  [-0.31, -0.42],
+] as const;
+
 /** The outline of a sign as path data, and whether it is an area or strokes of a width. */
 export function signPath(
   shape: Shape,
@@ -90,8 +104,8 @@ export function signPath(
       return { path: `M${p(-1, -1)}L${p(1, 1)}M${p(1, -1)}L${p(-1, 1)}`, strokes: 1.1 };
     case "plus":
       return { path: `M${p(-1.2, 0)}L${p(1.2, 0)}M${p(0, -1.2)}L${p(0, 1.2)}`, strokes: 1.1 };
-    case "bar":
-      return { path: `M${p(-1.2, 0)}L${p(1.2, 0)}`, strokes: 1.8 };
+    case "star":
+      return { path: `M${STAR.map(([dx, dy]) => p(dx, dy)).join("L")}Z`, strokes: null };
   }
 }
 
