@@ -34,7 +34,7 @@ export function weighReading(reading: FittedReading, points: number, scale: numb
   const absent = ns[ns.length - 1]! - ns[0]! + 1 - ns.length;
   const outside =
     range === null ? ns.length : ns.filter((n) => n < range.fit_n[0] || n > range.fit_n[1]).length;
-  const law = range === null ? 0 : range.fit.chi2;
+  const law = range === null ? 0 : Math.max(range.fit.chi2, range.passedOver);
   return (
     (reduced * points) / scale +
     law +

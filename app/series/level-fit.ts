@@ -311,7 +311,7 @@ function describeFit(
       doubt(
         "law-rejected",
         "series",
-        `The level law does not describe these lines within their errors (chi square ${format(solution.chi2)} for ${solution.degreesOfFreedom} degrees of freedom, p = ${solution.p.toExponential(1)}). Standard errors times ${format(factor)} are given beside the plain ones.`,
+        `The level law does not describe these lines within their errors (chi square ${format(solution.chi2)} for ${solution.degreesOfFreedom} degrees of freedom, ${sayProbability(solution.p)}). Standard errors times ${format(factor)} are given beside the plain ones.`,
         "start at a higher n (series.fit_n), allow a Ritz term (series.defect=ritz), or look for blends and satellites",
       ),
     );
@@ -330,6 +330,11 @@ function describeFit(
 }
 
 /** Four significant digits, for sentences. */
+/** `p = 0.0027`, `p < 1e-16`. */
+export function sayProbability(p: number): string {
+  return p < 1e-16 ? "p < 1e-16" : `p = ${Number(p.toPrecision(2))}`;
+}
+
 export function format(value: number): string {
   return String(Number(value.toPrecision(4)));
 }

@@ -1,6 +1,6 @@
 import { doubt, failure, success, symmetric, type Note, type Quantity, type Result } from "../base/index.ts";
 import { fSurvival } from "../solve/index.ts";
-import { fitLevels, format, type LevelFit, type LevelInput } from "./level-fit.ts";
+import { fitLevels, format, sayProbability, type LevelFit, type LevelInput } from "./level-fit.ts";
 import { placesWithin, selectMatrix, selectVector } from "./select-lines.ts";
 import type { SeriesIssue } from "./wording.ts";
 
@@ -29,6 +29,11 @@ export interface RangeChoice {
   readonly fit_n: readonly [number, number];
   /** Every lowest n with the highest n of the fit, then every highest n with its lowest. */
   readonly ranges: readonly RangeStep[];
+  /**
+   * Least chi square of a range of five lines where all of them are flatly rejected and four were taken; else 0. Three
+   * parameters follow four lines easily, so this is what the choice of four hides.
+   */
+  readonly passedOver: number;
   readonly notes: readonly Note[];
 }
 
@@ -90,14 +95,17 @@ export function chooseLevelRange(input: RangeInput): Result<RangeChoice, SeriesI
   }
   if (fallback === null) return failed as Exclude<typeof failed, null | { ok: true }>;
   const four = fourThatHold(input, tried, highest);
-  if (four !== null) return finish(input, four, factor, skipNotes(input, count - FEWEST_LINES + 1));
+  if (four !== null) {
+    const passedOver = Math.min(...tried.map(({ fit }) => fit.chi2));
+    return finish(input, four, factor, skipNotes(input, count - FEWEST_LINES + 1), passedOver);
+  }
   const final = fitWithin(input, fallback.n[0]!, highest);
   if (!final.ok) return final;
   return finish(input, final.value, factor, [
     doubt(
       "no-range-follows-law",
       "series.fit_n",
-      `No range of five lines or more follows the level law with p > 0.05. Taken: n = ${fallback.n[0]} to ${highest}, where gap and Rydberg energy have the smallest scaled errors (p = ${fallback.p.toExponential(1)}).`,
+      `No range of five lines or more follows the level law with p > 0.05. Taken: n = ${fallback.n[0]} to ${highest}, where gap and Rydberg energy have the smallest scaled errors (${sayProbability(fallback.p)}).`,
       "name the range (series.fit_n), allow a Ritz term (series.defect=ritz), or look for blends in the residuals",
     ),
   ]);
@@ -165,6 +173,7 @@ function finish(
   fit: LevelFit,
   factor: number,
   notes: readonly Note[],
+  passedOver = 0,
 ): Result<RangeChoice, SeriesIssue> {
   const min = fit.n[0]!;
   const max = fit.n[fit.n.length - 1]!;
@@ -179,6 +188,7 @@ function finish(
     fit,
     fit_n: [min, max],
     ranges,
+    passedOver,
     notes: [...notes, ...fit.notes, ...movingNotes(fit, ranges)],
   });
 }
