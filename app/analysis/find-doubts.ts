@@ -42,6 +42,7 @@ export function findDoubts(input: DoubtInput): Note[] {
     ...doubtsOfLines(input),
     ...doubtsOfTail(input),
     ...doubtsOfSampling(input),
+    ...doubtsOfAxisDigits(input),
     ...doubtsOfSteps(input),
     ...doubtsOfUnexplained(input),
     ...doubtsOfFringes(input),
@@ -362,6 +363,37 @@ function doubtsOfFringes({ points, full, protocol, spectrum }: DoubtInput): Note
     const sigma = points.sigma.slice().sort()[points.sigma.length >> 1]!;
     return perSignal * seen.amplitude * sigma;
   }
+}
+
+/** Part of a line's standard error that the rounding of the axis may have before it is said. */
+const ROUNDING_SAID = 0.3;
+
+/** A uniform error of one digit has the standard deviation digit/sqrt(12); a line averages it over the points of its width. */
+function doubtsOfAxisDigits({ points, full, spectrum, protocol }: DoubtInput): Note[] {
+  const { axisRounding } = spectrum;
+  if (axisRounding === undefined) return [];
+  const { ns, energy, width } = full.state;
+  const { covariance } = full.fit.lines;
+  const size = 4 * ns.length;
+  const rounded = ns.flatMap((n, j) => {
+    const sigma = Math.sqrt(covariance[j * size + j]!);
+    if (!(sigma > 0)) return [];
+    let count = 0;
+    for (const at of points.energy) if (Math.abs(at - energy[j]!) < width[j]! / 2) count++;
+    const error = axisRounding.digit_eV / Math.sqrt(12 * Math.max(1, count));
+    return error > ROUNDING_SAID * sigma && error > protocol.axis.jitter_eV ? [{ n, error, sigma }] : [];
+  });
+  if (rounded.length === 0) return [];
+  const worst = rounded.reduce((a, b) => (b.error / b.sigma > a.error / a.sigma ? b : a));
+  const most = Math.max(...rounded.map(({ error }) => error));
+  return [
+    doubt(
+      "axis-rounded",
+      `lines[n=${rounded.map(({ n }) => n).join(",")}]`,
+      `The light axis is written to ${axisRounding.digit} of its unit (${ueV(axisRounding.digit_eV)}): rounding alone puts a reading off by ${ueV(axisRounding.digit_eV / Math.sqrt(12))} (one standard deviation), and n = ${worst.n} by ${ueV(worst.error)} averaged over its points, beside a stated ${ueV(worst.sigma)}.`,
+      `write the axis with more digits, or set axis.jitter_eV=${most.toPrecision(2)}, which widens every line's energy by that`,
+    ),
+  ];
 }
 
 const LINE_REACH = 0.7;

@@ -1,6 +1,7 @@
 import { doubt, failure, success, type Note, type Result } from "../base/index.ts";
 import type { Table } from "../table/index.ts";
 import { CM_PER_UM, depthFromTransmittance, depthSigma } from "../units/index.ts";
+import { axisRounding } from "./axis-rounding.ts";
 import { chooseColumns } from "./choose-columns.ts";
 import { describeColumn } from "./find-column.ts";
 import { findSlit } from "./find-slit.ts";
@@ -117,6 +118,7 @@ export function readSpectrum(
     signal = signal.map((value) => value / thickness_cm);
     sigma = sigma.map((value) => value / thickness_cm);
   }
+  const rounding = axisRounding(chosen.value.axis.column.values, axis.value);
   if (used.every((flag) => flag === 0))
     return failure({
       code: "spectrum/no-light",
@@ -128,6 +130,7 @@ export function readSpectrum(
     sha256,
     energy_eV: points.energy_eV,
     line: points.line,
+    ...(rounding === null ? {} : { axisRounding: rounding }),
     signal,
     unit: read.quantity === "alpha" || read.thickness_um !== null ? "1/cm" : "1",
     thickness_cm: read.knownThickness_um === null ? null : read.knownThickness_um * CM_PER_UM,

@@ -68,6 +68,8 @@ export interface Spectrum {
   readonly file: string;
   readonly sha256: string;
   readonly energy_eV: Float64Array;
+  /** The last digit of the light axis in its own unit and in eV, where values may have been rounded to it. */
+  readonly axisRounding?: { readonly digit: number; readonly digit_eV: number };
   /** Line of the file of each point, 1-based. */
   readonly line?: Int32Array;
   /** Absorption coefficient alpha (1/cm) where the thickness is known or alpha was read, else optical depth alpha d (1). */
