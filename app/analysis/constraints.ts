@@ -143,6 +143,8 @@ function extraSeries(
         defect: one.defect,
         defectHeld: one.hold_defect,
         width: one.width,
+        // One line alone cannot tell its asymmetry from the background.
+        ownAsymmetry: one.asymmetry === "own" && ns.length > 1,
         startWidth: Float64Array.from(ns, (n) => {
           widthLaw(n, state.levels.defect0, state.widths, out);
           return Math.max(1e-9, out[WIDTH.width]!);

@@ -85,6 +85,7 @@ export function describeExtra(fit: SpectrumFit, factor: number): NonNullable<Run
     defect: series.defect.atBound
       ? { value: series.defect.value, sigma: null, low: null, high: null }
       : quantityOf(series.defect, factor),
+    ...(series.asymmetry === null ? {} : { asymmetry: quantityOf(series.asymmetry, factor) }),
     lines: series.lines.map((line) => ({
       n: line.n,
       energy_eV: quantityOf(line.energy, factor),

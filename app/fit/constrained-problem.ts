@@ -64,6 +64,8 @@ export class ConstrainedProblem implements SeparableProblem {
   private readonly widthLawAt: readonly number[];
   private readonly asymmetryLawAt: number;
   private readonly defectAt: Int32Array;
+  /** Place in u of the asymmetry of an extra series, or -1: that of the main series. */
+  private readonly extraOddAt: Int32Array;
   /** By line: place in u of its own q, or -1; place in u of a bounded area, or -1; place in c' of its area, or -1. */
   private readonly qAt: Int32Array;
   private readonly areaAt: Int32Array;
@@ -193,6 +195,10 @@ export class ConstrainedProblem implements SeparableProblem {
     this.defectAt = Int32Array.from(spec.extra, (series) =>
       series.defectHeld ? -1 : add(series.defect, series.defect - DEFECT_REACH, series.defect + DEFECT_REACH),
     );
+    const odd = inner.spec.asymmetry !== "zero";
+    this.extraOddAt = Int32Array.from(spec.extra, (series) =>
+      odd && series.ownAsymmetry ? add(q >= 0 ? start[q]! : 0, -ASYMMETRY_BOUND, ASYMMETRY_BOUND) : -1,
+    );
     for (const line of extraLines) {
       const series = spec.extra[line.series]!;
       if (series.width === "law") continue;
@@ -291,9 +297,11 @@ export class ConstrainedProblem implements SeparableProblem {
       coefficients.subarray(0, inner.linear),
       wideDerivative.subarray(0, m * p),
     );
-    const q = inner.asymmetryOf(theta);
     const qAt = inner.layout.asymmetryAt;
+    out.fill(0);
     extraLines.forEach((line, x) => {
+      const ownAt = this.extraOddAt[line.series]!;
+      const q = ownAt >= 0 ? u[ownAt]! : inner.asymmetryOf(theta);
       const [l, d, lE, lG, dE, dG] = this.scratch as [
         Float64Array,
         Float64Array,
@@ -315,10 +323,10 @@ export class ConstrainedProblem implements SeparableProblem {
       for (let i = 0; i < m; i++) {
         wideDerivative[line.energyAt * m + i] = a * (lE[i]! + 2 * q * dE[i]!);
         wideDerivative[line.widthAt * m + i] = a * (lG[i]! + 2 * q * dG[i]!);
-        if (qAt >= 0) wideDerivative[qAt * m + i]! += 2 * a * d[i]!;
+        if (ownAt >= 0) out[ownAt * m + i]! += 2 * a * d[i]!;
+        else if (qAt >= 0) wideDerivative[qAt * m + i]! += 2 * a * d[i]!;
       }
     });
-    out.fill(0);
     const n = this.nonlinear;
     for (let i = 0; i < this.wideNonlinear; i++)
       for (let a = 0; a < n; a++) addScaled(out, a * m, wideDerivative, i * m, jacobian[i * n + a]!, m);
@@ -478,6 +486,11 @@ export class ConstrainedProblem implements SeparableProblem {
     return this.defectAt[series]!;
   }
 
+  /** Place in u of the asymmetry of an extra series, or -1. */
+  extraAsymmetryPlace(series: number): number {
+    return this.extraOddAt[series]!;
+  }
+
   /** Bounds that the caller knows better, by wide theta. */
   narrowed(lower: Float64Array, upper: Float64Array): { lower: Float64Array; upper: Float64Array } {
     const low = Float64Array.from(this.own, (one) => one.low);
@@ -613,8 +626,9 @@ export class ConstrainedProblem implements SeparableProblem {
     const { inner, rows: m, wide, points } = this;
     const theta = this.thetaOf(u);
     inner.columns(theta.subarray(0, inner.nonlinear), this.innerColumns());
-    const q = inner.asymmetryOf(theta);
     this.extraLines.forEach((line, x) => {
+      const ownAt = this.extraOddAt[line.series]!;
+      const q = ownAt >= 0 ? u[ownAt]! : inner.asymmetryOf(theta);
       const [l, d] = this.scratch as [Float64Array, Float64Array];
       const { energy, width } = this.extraPlace(line, theta);
       linePair(points.energy, 0, m, energy, width, inner.spec.gaussStd, l, d);

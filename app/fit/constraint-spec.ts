@@ -32,6 +32,8 @@ export interface ExtraSeries {
   readonly defectHeld: boolean;
   /** `law`: the width law of the main series at this n. */
   readonly width: "free" | "law";
+  /** One asymmetry for the lines of this series; else that of the main series. */
+  readonly ownAsymmetry: boolean;
   /** FWHM to start from where widths are free (lines). */
   readonly startWidth: Float64Array;
 }

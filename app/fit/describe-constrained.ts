@@ -19,6 +19,8 @@ export interface LimitedParameter {
 export interface ExtraFit {
   readonly name: string;
   readonly defect: FittedValue & { readonly atBound: boolean };
+  /** Null where it is that of the main series. */
+  readonly asymmetry: FittedValue | null;
   readonly lines: readonly {
     readonly n: number;
     readonly energy: FittedValue;
@@ -167,6 +169,7 @@ export function expandSolution(
           },
     extra: spec.extra.map((series, s) => {
       const at = problem.defectPlace(s);
+      const oddAt = problem.extraAsymmetryPlace(s);
       return {
         name: series.name,
         defect: {
@@ -174,6 +177,7 @@ export function expandSolution(
           sigma: at >= 0 ? sigmaOf(at) : 0,
           atBound: at >= 0 && solution.activeBounds[at] !== 0,
         },
+        asymmetry: oddAt < 0 ? null : { value: u[oddAt]!, sigma: sigmaOf(oddAt) },
         lines: problem.extraLines.flatMap((line, x) =>
           line.series !== s
             ? []

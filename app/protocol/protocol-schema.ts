@@ -76,6 +76,8 @@ export const extraSeriesSchema = z.strictObject({
   hold_defect: z.boolean().default(false),
   /** `law`: widths by the width law of the main series; `free`: one of its own for every line. */
   width: z.enum(["law", "free"]).default("law"),
+  /** `own`: one for all lines of this series, from two lines on; `shared`: that of the main series. */
+  asymmetry: z.enum(["own", "shared"]).default("own"),
 });
 
 /**

@@ -164,7 +164,8 @@ export const resultSchema = z.strictObject({
     .strictObject({
       domain: z.enum(["alpha", "transmittance"]),
       termination: z.enum(["gradient", "step", "cost", "iterationLimit", "cancelled", "notFinite"]),
-      sigma_from: z.enum(["given", "residuals"]),
+      /** Noise of the file or protocol, noise estimated from the data, or the residuals of the fit. */
+      sigma_from: z.enum(["given", "estimated", "residuals"]),
       chi2: z.number(),
       dof: z.int(),
       reduced_chi2: number,
@@ -190,6 +191,8 @@ export const resultSchema = z.strictObject({
       z.strictObject({
         name: z.string(),
         defect: quantitySchema,
+        /** Where it is not that of the main series. */
+        asymmetry: quantitySchema.optional(),
         lines: z.array(
           z.strictObject({
             n: z.int(),

@@ -63,6 +63,7 @@ export function firstExtra(extra: readonly Extra[], result: RunglineResult | nul
     defect: defect === null ? 0 : Number((defect - 0.1).toFixed(2)),
     hold_defect: false,
     width: "law",
+    asymmetry: "own",
   };
 }
 

@@ -140,8 +140,24 @@ function makeModel(points: FitPoints, asked: Asked) {
 }
 
 const EXTRA: ConstraintSpec["extra"] = [
-  { name: "F", ns: [4, 5], defect: 0.35, defectHeld: false, width: "law", startWidth: new Float64Array(2) },
-  { name: "S", ns: [4], defect: 0.6, defectHeld: true, width: "free", startWidth: Float64Array.from([2e-4]) },
+  {
+    name: "F",
+    ns: [4, 5],
+    defect: 0.35,
+    defectHeld: false,
+    width: "law",
+    ownAsymmetry: true,
+    startWidth: new Float64Array(2),
+  },
+  {
+    name: "S",
+    ns: [4],
+    defect: 0.6,
+    defectHeld: true,
+    width: "free",
+    ownAsymmetry: false,
+    startWidth: Float64Array.from([2e-4]),
+  },
 ];
 
 const CASES: readonly (readonly [string, Asked])[] = [
