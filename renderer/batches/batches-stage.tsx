@@ -414,10 +414,15 @@ function TooFew() {
         <h2>Two samples or more stand here side by side</h2>
         <p>
           {left > 0 && session.files.length > 1
-            ? `${left} ${left === 1 ? "file waits" : "files wait"} in the drawer: fit all.`
+            ? `${left} ${left === 1 ? "file waits" : "files wait"} in the drawer.`
             : "Drop spectra of other crystals on the window and fit all, or drop results of earlier fits (JSON)."}
         </p>
         <div className="message-buttons">
+          {left > 0 && session.files.length > 1 && (
+            <Button className="button button-main" onPress={() => void controller.fitAll()}>
+              {left === 1 ? "Fit it" : "Fit them"}
+            </Button>
+          )}
           <Button className="button" onPress={() => void controller.open()}>
             Open spectra or results
           </Button>

@@ -130,6 +130,7 @@ function FilesButton({
 }) {
   const file = useWindow(currentFile);
   const count = useWindow((state) => state.session.files.length);
+  const place = useWindow(({ session }) => session.files.findIndex(({ id }) => id === session.currentId));
   return (
     <button
       ref={ref}
@@ -140,7 +141,7 @@ function FilesButton({
       onClick={onToggle}
     >
       <span className="files-name">{file?.name ?? "No file"}</span>
-      <span className="small">{count > 1 ? `1 of ${count} files` : "files"} ▾</span>
+      <span className="small">{count > 1 ? `${place + 1} of ${count} files` : "files"} ▾</span>
     </button>
   );
 }

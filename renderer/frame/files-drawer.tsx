@@ -121,7 +121,9 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
               onClose();
             }}
           >
-            One power series{marked.length > 1 ? ` of ${marked.length}` : ""}
+            {marked.length > 1
+              ? `One power series of ${marked.length}`
+              : "One power series of the ticked files"}
           </Button>
           <Button
             className="button"

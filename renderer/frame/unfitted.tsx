@@ -38,7 +38,7 @@ export function Unfitted({
           <p className="hint ledger-hint" data-state={fitting ? "fitting" : "not-yet"}>
             {fitting
               ? "The numbers stand here once the fit is done."
-              : "Not fitted yet. Choose the material on the left and press Fit."}
+              : "Not fitted yet. Choose the material above and press Fit."}
           </p>
         }
       />

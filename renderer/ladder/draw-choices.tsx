@@ -66,21 +66,19 @@ export function DrawChoices() {
           />
         </Clause>
       </Sentence>
-      {job === null ? (
+      {/* One button for both, so that the keyboard stays where it was. */}
+      <div className="draw-job">
         <Button
-          className="button button-main"
-          onPress={() => void controller.drawAnew({ resample: kind, resamples: count, seed })}
+          className={busy ? "button" : "button button-main"}
+          onPress={() => {
+            if (busy) controller.cancel();
+            else void controller.drawAnew({ resample: kind, resamples: count, seed });
+          }}
         >
-          Draw and fit them
+          {busy ? "Stop" : "Draw and fit them"}
         </Button>
-      ) : (
-        <div className="draw-job">
-          <Button className="button" isDisabled={job.cancelling} onPress={() => controller.cancel()}>
-            Stop
-          </Button>
-          <span className="small">{job.cancelling ? "stopping" : job.step}</span>
-        </div>
-      )}
+        {busy && <span className="small">{job.cancelling ? "stopping" : job.step}</span>}
+      </div>
       {asked !== "none" && (
         <p className="small draw-again">
           The protocol asks for them: every fit draws them again.{" "}

@@ -166,7 +166,7 @@ function widths(result: RunglineResult, palette: Palette): { data: Trace[]; x: A
 }
 
 function strengths(result: RunglineResult, palette: Palette): { data: Trace[]; x: Axis; y: Axis } {
-  const unit = result.reading.signal_unit === "1/cm" ? "meV cm⁻¹" : "meV";
+  const unit = result.reading.signal_unit === "1/cm" ? "meV/cm" : "meV";
   const law = result.strength_law;
   const data: Trace[] = [];
   const n = range(result);
@@ -202,7 +202,11 @@ function strengths(result: RunglineResult, palette: Palette): { data: Trace[]; x
   return {
     data,
     x: logN(palette, result),
-    y: axis(palette, `Area / ${unit}`, logarithmic(shownValues(result, "area", 1e3))),
+    y: axis(
+      palette,
+      `Area / ${unit === "meV" ? unit : `(${unit})`}`,
+      logarithmic(shownValues(result, "area", 1e3)),
+    ),
   };
 }
 

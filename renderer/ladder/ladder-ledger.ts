@@ -34,19 +34,19 @@ const CARDS = {
   },
   floor: {
     definition: "The width that is left at high n: strain, charges, the instrument.",
-    formula: "Γ_n = floor + Γ₁ b⁻ᵏ",
+    formula: "Γ_n = Γ₀ + Γ₁ b⁻ᵏ",
     source: "common practice; see the result's protocol for the base b and the kind of floor",
     improve: "state the slit width, and measure colder and at lower power",
   },
   width: {
     definition: "The coefficient of the width law: the width that n = 1 would have.",
-    formula: "Γ_n = floor + Γ₁ b⁻ᵏ",
+    formula: "Γ_n = Γ₀ + Γ₁ b⁻ᵏ",
     source: "Toyozawa, J. Phys. Chem. Solids 25, 59 (1964)",
     improve: "widths of low n with the slit width known",
   },
   exponent: {
     definition: "The power with which the widths fall.",
-    formula: "k in Γ_n = floor + Γ₁ b⁻ᵏ; 3 for radiative and phonon widths",
+    formula: "k in Γ_n = Γ₀ + Γ₁ b⁻ᵏ; 3 for radiative and phonon widths",
     source: "hydrogen-like wave functions scale as n⁻³",
     improve: "set the exponent free and compare; floor and exponent are strongly correlated",
   },
@@ -238,7 +238,7 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
           ["width_law.exponent"],
           { exactWord: "held" },
         ),
-        entry("floor", "Γ", "∞", "Floor", width.floor_eV, "µeV", 1e6, CARDS.floor, ["width_law.floor_eV"], {
+        entry("floor", "Γ", "0", "Floor", width.floor_eV, "µeV", 1e6, CARDS.floor, ["width_law.floor_eV"], {
           exactWord: "held",
         }),
       ],
@@ -330,7 +330,7 @@ export function ladderLedger(result: RunglineResult): readonly LedgerSection[] {
     const sign = (shift: number): string =>
       shift === 0 ? "as read" : `${shift > 0 ? "+" : "−"}${Math.abs(shift)}`;
     return entry("reading", "n", undefined, "Reading of n", q, "", 1, CARDS.reading, ["series.readings"], {
-      plain: chosen === undefined ? "not determined" : `${sign(chosen.shift)}, of ${known.length}`,
+      plain: chosen === undefined ? "not determined" : `${sign(chosen.shift)}; ${known.length} ranked`,
       table: {
         caption: "Readings",
         head: ["shift of n", "δ₀", "χ² strengths", "χ² widths", ""],

@@ -32,6 +32,7 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
           : ladderFigure(analysed.result, palette, panel, ranged),
     [analysed, palette, panel, ranged, view],
   );
+  const working = useWindow((state) => state.job !== null);
   const sections = useMemo(() => (analysed === null ? [] : ladderLedger(analysed.result)), [analysed]);
   if (analysed === null || figure === null)
     return <Unfitted choices={<LadderChoices />} figureRef={figureRef} />;
@@ -97,8 +98,14 @@ export function LadderStage({ figureRef }: { readonly figureRef: Ref<FigureHandl
       figure={
         figure.data.length === 0 ? (
           <div className="figure-empty" data-state="empty">
-            <p>{figure.summary}.</p>
-            {view === "draws" && <p>Choose their number and seed beside this, and draw them.</p>}
+            {view === "draws" && working ? (
+              <p>The scatter of the spectra stands here once they are drawn and fitted.</p>
+            ) : (
+              <>
+                <p>{figure.summary}.</p>
+                {view === "draws" && <p>Choose their number and seed beside this, and draw them.</p>}
+              </>
+            )}
           </div>
         ) : (
           <Figure

@@ -1,6 +1,6 @@
 import { Button, Dialog, DialogTrigger, Popover } from "react-aria-components";
 import { roundSigma, scaleQuantity } from "../../app/report/index.ts";
-import { THIN, valueText } from "./value-text.ts";
+import { plainText, valueText, withMinus } from "./value-text.ts";
 import type { LedgerEntry, LedgerSection, LedgerSymbol } from "./ledger-entry.ts";
 
 /** The numbers of a stage in the order a paper would give them; each opens its card. */
@@ -65,7 +65,7 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
       )}
       {entry.plain === undefined && entry.quantity.sigma !== 0 && low !== null && high !== null && (
         <p className="small">
-          interval {endText(low, entry)} to {endText(high, entry)} {unit}
+          interval {withMinus(endText(low, entry))} to {withMinus(endText(high, entry))} {unit}
         </p>
       )}
       <dl>
@@ -81,7 +81,7 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
           <>
             <dt>Correlation</dt>
             <dd className="tabular">
-              {entry.correlations.map((one) => `${one.with} ${one.value.toFixed(2)}`).join(", ")}
+              {entry.correlations.map((one) => `${one.with} ${withMinus(one.value.toFixed(2))}`).join(", ")}
             </dd>
           </>
         )}
@@ -116,18 +116,15 @@ function Card({ entry }: { readonly entry: LedgerEntry }) {
           <div key={note.code + note.about}>
             <dt>{note.level === "doubt" ? "▲ Doubt" : "Assumed"}</dt>
             <dd>
-              {note.text}
-              {note.remedy !== "" && <> Remedy: {note.remedy}.</>}
+              {note.text.replace(/\.$/, "")}.
+              {note.remedy !== "" && <> Remedy: {note.remedy.replace(/\.$/, "")}.</>}
             </dd>
           </div>
         ))}
         <dt>To better it</dt>
         <dd>{entry.card.improve}</dd>
       </dl>
-      <Button
-        className="button"
-        onPress={() => void navigator.clipboard?.writeText(whole.replaceAll(THIN, " "))}
-      >
+      <Button className="button" onPress={() => void navigator.clipboard?.writeText(plainText(whole))}>
         Copy
       </Button>
     </>

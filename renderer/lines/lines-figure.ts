@@ -152,6 +152,7 @@ export function linesFigure(
         },
         ...gapMark(result, palette),
       ],
+      annotations: gapName(result, palette),
     },
   };
 }
@@ -222,6 +223,26 @@ function gapMark(result: RunglineResult, palette: Palette): object[] {
   ];
 }
 
+/** Left of its line: on the right the end of the window may stand close. */
+function gapName(result: RunglineResult, palette: Palette): object[] {
+  const gap = result.series?.gap_eV.value ?? null;
+  if (gap === null) return [];
+  return [
+    {
+      xref: "x",
+      yref: "paper",
+      x: gap,
+      y: 1,
+      xanchor: "right",
+      yanchor: "top",
+      xshift: -2,
+      showarrow: false,
+      text: "gap",
+      font: { size: 12, color: palette.ink },
+    },
+  ];
+}
+
 /** Share of the shown range that the number of a line takes. */
 const LABEL_ROOM = 0.022;
 
@@ -242,12 +263,11 @@ function labels(
   for (const line of result.lines) {
     const energy = line.energy_eV.value;
     if (energy === null || energy - taken < room) continue;
-    const at = nearestIndex(curves.energy_eV, energy);
-    const top = curves.model[at]!;
-    if (!Number.isFinite(top)) continue;
+    const top = highestNear(curves, energy, 0.5 * (line.width_eV.value ?? 0));
+    if (!Number.isFinite(top.value)) continue;
     taken = energy;
-    x.push(energy);
-    y.push(top + lift);
+    x.push(top.energy);
+    y.push(top.value + lift);
     text.push(String(line.n));
     colours.push(colourOfN(line.n, palette.mode));
   }
@@ -264,6 +284,28 @@ function labels(
     cliponaxis: true,
     meta: { part: "labels" },
   };
+}
+
+/** The peak of data and model within a reach: an asymmetric line has it beside its energy, and noise stands above it. */
+function highestNear(
+  { energy_eV, model, signal, used }: Curves,
+  energy: number,
+  reach: number,
+): { readonly energy: number; readonly value: number } {
+  let at = nearestIndex(energy_eV, energy);
+  let value = model[at]!;
+  const from = nearestIndex(energy_eV, energy - reach);
+  const to = nearestIndex(energy_eV, energy + reach);
+  let peak = -Infinity;
+  for (let i = from; i <= to; i++) {
+    if (model[i]! > peak) {
+      peak = model[i]!;
+      at = i;
+    }
+    const higher = used[i] === 1 ? Math.max(model[i]!, signal[i]!) : model[i]!;
+    if (higher > value) value = higher;
+  }
+  return { energy: energy_eV[at]!, value };
 }
 
 /** A line alone, standing on the background; nothing where there is none. */

@@ -109,7 +109,7 @@ export function lineSection(result: RunglineResult, n: number): LedgerSection | 
       entry("width", "Γ", sub, "Width", line.width_eV, "µeV", 1e6, "width_eV"),
       entry("area", "A", sub, "Area", line.area, areaUnit, areaScale, "area"),
       entry("asymmetry", "q", sub, "Asymmetry", line.asymmetry, "", 1, "asymmetry"),
-      entry("peak", "α", sub, "Peak", line.peak, perCm ? "1/cm" : "", 1, "peak"),
+      entry("peak", "α", sub, "Peak", line.peak, perCm ? "cm⁻¹" : "", 1, "peak"),
       entry("offset", "Δ", sub, "From the law", line.law_offset_eV, "µeV", 1e6, "law_offset_eV"),
       entry("lifetime", "τ", sub, "Lifetime", line.lifetime_ps, "ps", 1, "lifetime_ps"),
       entry(
@@ -206,15 +206,29 @@ export function backgroundSection(result: RunglineResult): LedgerSection | null 
     entries: result.background.map(({ term, name, unit, quantity }, i) => ({
       id: `background-${i}`,
       symbol: { letter: "b", below: String(i) },
-      name: `${term}, ${name}`,
+      name: termWords(term, name),
       quantity,
-      unit: unit === "1" ? "" : unit,
+      unit: unitWords(unit),
       scale: 1,
       notes: result.notes.filter((note) => note.about.startsWith(`background[${i}]`)),
       card: BACKGROUND_CARD,
       correlations: [],
     })),
   };
+}
+
+/** `legendre2` of a polynomial is its order; other names are words already. */
+function termWords(term: string, name: string): string {
+  const order = /^legendre(\d+)$/.exec(name)?.[1];
+  return order === undefined ? `${term}, ${name}` : `${term}, order ${order}`;
+}
+
+/** A unit of the result as the figures print it. */
+function unitWords(unit: string): string {
+  const [signal, per] = unit.split(" ");
+  const first = signal === "1/cm" ? "cm⁻¹" : signal === "1" ? "" : (signal ?? "");
+  if (per === undefined) return first;
+  return per === "eV^-1/2" ? `${first === "" ? "1" : first}/√eV` : `${first} ${per}`.trim();
 }
 
 const EXTRA_CARDS = {

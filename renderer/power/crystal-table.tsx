@@ -1,11 +1,18 @@
 import type { Quantity } from "../../app/base/index.ts";
 import type { PowerResult } from "../../app/protocol/index.ts";
 import { useMode } from "../frame/theme.ts";
+import { formatNumber } from "../../app/report/index.ts";
 import { valueText } from "../ledger/value-text.ts";
 import { colourOfN } from "../plot/colours.ts";
 import { useController, useWindow } from "../store/context.ts";
 
 const shown = (quantity: Quantity, scale = 1): string => valueText({ quantity, scale, unit: "" }).value;
+
+/** From a given Bohr radius an orbit has no error of its own: four digits are enough, and alike in every row. */
+function orbitText(radius: Quantity): string {
+  const exact = radius.value !== null && (radius.sigma === null || radius.sigma === 0);
+  return exact ? formatNumber(radius.value! * 1e3, 4) : shown(radius, 1e3);
+}
 
 /** What each n of this crystal is good for. */
 export function CrystalTable({ crystal }: { readonly crystal: PowerResult["crystal"] }) {
@@ -77,7 +84,7 @@ export function CrystalTable({ crystal }: { readonly crystal: PowerResult["cryst
               <td>{shown(one.width_eV, 1e6)}</td>
               <td>{shown(one.addressability)}</td>
               <td>{shown(one.lifetime_ps)}</td>
-              <td>{shown(one.orbit_radius_um, 1e3)}</td>
+              <td>{orbitText(one.orbit_radius_um)}</td>
               <td>
                 {shown(one.blockade_radius_um)}
                 {one.blockade_from === "expected" && " expected"}

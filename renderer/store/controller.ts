@@ -371,6 +371,7 @@ export class Controller {
     const choices = choose(session.choices[file.id] ?? NO_CHOICES);
     this.#set({
       job: { fileId: file.id, what: "fit", fraction: 0, step: "starting", cancelling: false },
+      messages: this.#lasting(),
       refusals: without(this.store.getState().refusals, file.id),
     });
     const running = this.#fitter.analyse(
@@ -489,6 +490,7 @@ export class Controller {
     const name = files.length === 1 ? files[0]!.name : `${files.length} files`;
     this.#set({
       job: { fileId: id, what: "power", fraction: 0, step: "starting", cancelling: false },
+      messages: this.#lasting(),
       powerRefusals: without(this.store.getState().powerRefusals, id),
     });
     const running = this.#fitter.analysePower(
@@ -564,6 +566,11 @@ export class Controller {
   say(grave: boolean, text: string, remedy: string): void {
     const message: Message = { id: this.#messageId++, grave, text, remedy };
     this.#set({ messages: [message, ...this.store.getState().messages].slice(0, 20) });
+  }
+
+  /** What was said in passing, such as that a fit was cancelled, is over when the next one starts. */
+  #lasting(): readonly Message[] {
+    return this.store.getState().messages.filter(({ grave }) => grave);
   }
 
   dismiss(id: number): void {

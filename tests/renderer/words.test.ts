@@ -44,7 +44,7 @@ describe("the ledger", () => {
 
   it("has the readings of n on a card of their own, and says which was chosen", () => {
     const reading = ladderLedger(sampleResult())[0]!.entries.find((entry) => entry.id === "reading")!;
-    expect(reading.plain).toBe("as read, of 2");
+    expect(reading.plain).toBe("as read; 2 ranked");
     // Derived: the sample's two readings
     expect(reading.table!.rows.map((row) => row[0])).toEqual(["as read", "+1"]);
   });
