@@ -8,10 +8,11 @@ export {
 export { leastSignificance, significances } from "./climb-ladder.ts";
 export { drawCurves, type Curves } from "./curves.ts";
 export { lineCurve } from "./line-curves.ts";
-export { withHeaderSlit } from "./instrument.ts";
+export { slitOf, withHeaderSlit } from "./instrument.ts";
 export { intervalFactor } from "./interval.ts";
 export { buildModel, energyOf, stateAfter, withLines } from "./ladder-model.ts";
 export type { LadderState, ModelChoices } from "./ladder-model.ts";
+export { depthPerSignal } from "./light.ts";
 export { selectPoints, type SelectedPoints } from "./select-points.ts";
 export { linesForThinning, thinPoints } from "./thin-points.ts";
 export { sortNotes } from "./sort-notes.ts";

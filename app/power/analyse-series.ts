@@ -21,6 +21,7 @@ import {
 } from "../analysis/index.ts";
 import type { PowerResult, Protocol } from "../protocol/index.ts";
 import { fitPowerSeries, type FittedMember, type FittedSeries } from "./fit-series.ts";
+import { lightBias } from "./light-bias.ts";
 import { judgePower } from "./judge-power.ts";
 import type { PowerSeries, SeriesIssue } from "./read-series.ts";
 import { wordPowerSeriesIssue, type PowerSeriesIssue } from "./series-issue.ts";
@@ -60,10 +61,11 @@ export function analyseSeries(
   const alone = withoutSmeared(protocol);
   const base = analyse(reference.spectrum, alone, partOfWatch(watch, 0.08, 0.4));
   const unread = series.failed.map(({ label, issues }) => ({ label, wordings: issues.map(wordIssue) }));
+  const acting = withHeaderSlit(protocol, reference.spectrum.slit);
   const fitted = fitPowerSeries(
     series.members,
     base.result,
-    withHeaderSlit(protocol, reference.spectrum.slit),
+    acting,
     partOfWatch(watch, 0.4, control === null ? 0.9 : 0.82),
   );
   if (fitted === null)
@@ -96,6 +98,7 @@ export function analyseSeries(
     ...(beside?.notes ?? []),
     ...judged.value.notes,
     ...fitted.notes,
+    ...lightBias(fitted, base.result, acting),
     ...series.notes,
     ...facts.notes,
     ...base.result.notes,

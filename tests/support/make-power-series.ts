@@ -93,9 +93,10 @@ export function seriesFile(
   series: SyntheticPowerSeries,
   curves: SeriesCurves,
   header = (power: number): string => `alpha (1/cm) ${power} uW`,
+  digits = 3,
 ): Uint8Array {
   const rows = Array.from(curves.energy, (energy, i) =>
-    [energy.toFixed(8), ...curves.signals.map((signal) => signal[i]!.toFixed(3))].join(","),
+    [energy.toFixed(8), ...curves.signals.map((signal) => signal[i]!.toFixed(digits))].join(","),
   );
   return encode([["Photon energy (eV)", ...series.powers_uW.map(header)].join(","), ...rows]);
 }
