@@ -139,11 +139,9 @@ describe("a report", () => {
     expect(text).not.toContain("<figure");
   });
 
-  it("of 20 samples with spectra of 9,000 points is made in 5 s and smaller than 5 MB", () => {
-    const twenty = input(20, true, { quality: { gap_eV: 1, rydberg_eV: -1 } });
-    const began = performance.now();
-    const text = reportToHtml(twenty);
-    expect(performance.now() - began).toBeLessThan(5000);
+  it("of 20 samples with spectra of 9,000 points is smaller than 5 MB", () => {
+    const text = reportToHtml(input(20, true, { quality: { gap_eV: 1, rydberg_eV: -1 } }));
+    // Derived: what goes as an attachment; its time is a matter of tests/bench/report-bench.ts
     expect(new TextEncoder().encode(text).length).toBeLessThan(5e6);
   });
 });

@@ -1,6 +1,6 @@
 import { describe, expect, test } from "vitest";
 import { chooseLevelRange, fitLevels, profileLevels } from "../../../app/series/index.ts";
-import { energyOf, lineEnergies, LINES, mustBe, TRUTH } from "./synthetic-series.ts";
+import { energyOf, lineEnergies, mustBe, TRUTH } from "./synthetic-series.ts";
 
 describe("the level law", () => {
   test("comes back exactly from exact energies, without any start value", () => {
@@ -170,18 +170,5 @@ describe("the range of n", () => {
     const codes = choice.notes.map((note) => note.code);
     expect(codes).toContain("no-range-follows-law");
     expect(codes).toContain("law-rejected");
-  });
-
-  test("is quick: law, ranges and profiles of twelve lines together", () => {
-    const lines = lineEnergies(9, [...LINES, 13]);
-    const input = { ...lines, defect: "constant" as const, fit_n: "auto" as const };
-    for (let i = 0; i < 5; i++) mustBe(chooseLevelRange(input));
-    const begin = performance.now();
-    const choice = mustBe(chooseLevelRange(input));
-    profileLevels(input, choice.fit);
-    const milliseconds = performance.now() - begin;
-    // Derived: budget of the main job; ten times what an idle machine of two cores takes.
-    expect(milliseconds).toBeLessThan(150);
-    process.stdout.write(`level law with ranges and profiles: ${milliseconds.toFixed(1)} ms\n`);
   });
 });
