@@ -170,9 +170,9 @@ function repeatedRuns(value: Float64Array, sigma: Float64Array): [number, number
     while (last + 1 < m && value[last + 1] === value[first]) last++;
     const length = last - first + 1;
     if (length >= SHORTEST_RUN && step < COARSEST * sigma[first]!) {
-      // Two normal numbers round to the same value with this probability.
-      const equal = step / (2 * Math.sqrt(Math.PI) * sigma[first]!);
-      if (m * equal ** (length - 1) < CHANCE) runs.push([first, last]);
+      // k normal numbers round to one value with the probability step^(k-1) times the integral of their density to the k.
+      const peak = step / (Math.sqrt(2 * Math.PI) * sigma[first]!);
+      if ((m * peak ** (length - 1)) / Math.sqrt(length) < CHANCE) runs.push([first, last]);
     }
     first = last + 1;
   }

@@ -50,6 +50,7 @@ test("drawn sequences have unit variance from their first point and the correlat
 test("white residuals and none give a white process", () => {
   const random = makeRandom(5);
   const { stages } = autoregression(Float64Array.from({ length: 5000 }, () => random.normal()));
+  // Derived: a coefficient of white noise scatters by 1/sqrt(5000) = 0.014; five of it
   for (const small of stages[stages.length - 1]!.coefficients) expect(Math.abs(small)).toBeLessThan(0.07);
   expect(autoregression(new Float64Array(300)).stages).toHaveLength(1);
   expect(autoregression(new Float64Array(0)).stages).toHaveLength(1);

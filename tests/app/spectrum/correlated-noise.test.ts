@@ -49,6 +49,7 @@ describe("whether neighbours share their noise", () => {
     // Derived: the mean of k independent readings scatters by sigma/sqrt(k); k of them count as one
     expect(scale / (SIGMA / Math.sqrt(size))).toBeGreaterThan(0.75);
     expect(scale / (SIGMA / Math.sqrt(size))).toBeLessThan(1.35);
+    // Derived: the length is known to a factor of two and a little
     expect(length).toBeGreaterThan(size / 2.5);
     expect(length).toBeLessThan(size * 2.5);
   });
