@@ -86,8 +86,6 @@ export function listAssignments(
     const key = judge.ownership();
     const known = readings.get(key);
     if (known === undefined || refined.score > known.score) readings.set(key, refined);
-    // The best hypothesis alone is enough where one reading is wanted.
-    if (most === 1) break;
   }
   return [...readings.values()].sort((a, b) => b.score - a.score).slice(0, most);
 }
