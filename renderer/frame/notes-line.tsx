@@ -64,7 +64,8 @@ export function NotesLine() {
     if (open) panel.current?.focus();
   }, [open]);
   const first = lines[0];
-  const doubts = lines.filter(({ mark }) => mark === "doubt" || mark === "refused").length;
+  const doubts = lines.filter(({ mark }) => mark === "doubt").length;
+  const refused = lines.filter(({ mark }) => mark === "refused").length;
   return (
     <footer className="notes" data-state={open ? "open" : "closed"} data-count={lines.length}>
       {open && (
@@ -126,6 +127,7 @@ export function NotesLine() {
         )}
         <span className="notes-count">
           {lines.length} {lines.length === 1 ? "note" : "notes"}
+          {refused > 0 && `, ${refused} in the way`}
           {doubts > 0 && `, ${doubts} in doubt`} {open ? "▾" : "▴"}
         </span>
       </button>
