@@ -1,11 +1,10 @@
 export { compareResults, wordBatchIssue, type BatchIssue } from "./compare.ts";
 export { compareParameter, homogeneityOf } from "./compare-parameter.ts";
 export { dayNumber, factValue, temperatureIn } from "./fact-value.ts";
-export { readSamples, nameResult, type NamedResult } from "./read-samples.ts";
-export { readParameter } from "./parameters.ts";
+export { nameResult, type NamedResult } from "./read-samples.ts";
 export * from "./random-effects.ts";
 export * from "./weighted-fit.ts";
 export { holm } from "./holm.ts";
 export { detectableDifference, effectiveDegrees } from "./detectable.ts";
-export { chiSquareQuantile, twoSided, twoSidedQuantile } from "./quantiles.ts";
+export { chiSquareQuantile, twoSidedQuantile } from "./quantiles.ts";
 export { columnHead, typedValues } from "./typed-values.ts";

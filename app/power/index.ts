@@ -10,7 +10,6 @@ export {
   INTERACTIONS,
   shrinkage,
   slabFactor,
-  sphereRadius,
   sphereVolume,
   type Interaction,
 } from "./blockade.ts";
@@ -24,5 +23,5 @@ export {
 } from "./read-series.ts";
 export { powerByPattern, powerInFileName, powerInText } from "./power-text.ts";
 export { wordPowerSeriesIssue, type PowerSeriesIssue } from "./series-issue.ts";
-export { fitPowerSeries, type FittedMember, type FittedSeries } from "./fit-series.ts";
+export type { FittedMember, FittedSeries } from "./fit-series.ts";
 export { analyseSeries, type SeriesAnalysis, type SeriesCurve } from "./analyse-series.ts";

@@ -3,15 +3,13 @@ export { csvLine } from "./csv.ts";
 export { cautionsFor, CRYOGEN_CAUTION, LASER_CAUTION } from "./cautions.ts";
 export { besideN } from "./beside-n.ts";
 export { gravestFirst, noteLine } from "./notes.ts";
-export { protocolInWords } from "./protocol-in-words.ts";
-export { areaUnit, signalUnitWords, signalName } from "./area-unit.ts";
+export { areaUnit } from "./area-unit.ts";
 export { resultToText, RESULT_TEXT_MARK } from "./result-to-text.ts";
 export { resultToCsv, RESULT_CSV_MARK } from "./result-to-csv.ts";
 export {
   summaryRow,
   summaryToCsv,
   summaryToJson,
-  SUMMARY_COLUMNS,
   SUMMARY_MARK,
   SUMMARY_SCHEMA,
   type SummaryRow,
@@ -24,7 +22,6 @@ export {
   COMPARISON_TEXT_MARK,
   LAW_FORMULAS,
   PARAMETER_TITLES,
-  powerPairInWords,
   powerScatterInWords,
   powerTitle,
   sampleLabels,

@@ -16,7 +16,7 @@ export {
 } from "./readings.ts";
 export { exponentCurve, fitWidths, type WidthFit, type WidthInput } from "./width-fit.ts";
 export { fitStrengths, type StrengthFit, type StrengthInput } from "./strength-fit.ts";
-export { bindingOf, lawAt, offsetFromLaw, type Derived, type LineEnergies } from "./relation.ts";
+export type { Derived, LineEnergies } from "./relation.ts";
 export {
   deriveQuantities,
   type DeriveInput,
@@ -24,7 +24,7 @@ export {
   type DerivedLineInput,
   type DerivedQuantities,
 } from "./derive.ts";
-export { wordSeriesIssue, type SeriesIssue } from "./wording.ts";
+export type { SeriesIssue } from "./series-issue.ts";
 export { jointRegion, type JointRegion, type LevelName } from "./joint-region.ts";
 export { levelInfluence, type LineInfluence } from "./influence.ts";
 export { levelProfileCurves, profileLevels, type LevelProfile, type ProfileCurve } from "./level-profile.ts";

@@ -11,7 +11,7 @@ import {
 import { LEVEL, levelLaw } from "../laws/index.ts";
 import { choleskyFactor, forwardSubstitute } from "../solve/index.ts";
 import { fitToLaw, type LawProblem, type LawSolution } from "./law-fit.ts";
-import type { SeriesIssue } from "./wording.ts";
+import type { SeriesIssue } from "./series-issue.ts";
 
 export type DefectChoice = "none" | "constant" | "ritz";
 

@@ -2,7 +2,7 @@ import { doubt, failure, success, symmetric, type Note, type Quantity, type Resu
 import { fSurvival } from "../solve/index.ts";
 import { fitLevels, format, sayProbability, type LevelFit, type LevelInput } from "./level-fit.ts";
 import { placesWithin, selectMatrix, selectVector } from "./select-lines.ts";
-import type { SeriesIssue } from "./wording.ts";
+import type { SeriesIssue } from "./series-issue.ts";
 
 export interface RangeInput extends LevelInput {
   readonly fit_n: "auto" | readonly [number, number];

@@ -3,7 +3,7 @@ import { defectAt, strength, type StrengthBase, type StrengthEnvelope } from "..
 import { fitToLaw, type LawSolution } from "./law-fit.ts";
 import { format, REJECTED_BELOW } from "./level-fit.ts";
 import { selectMatrix, selectVector } from "./select-lines.ts";
-import type { SeriesIssue } from "./wording.ts";
+import type { SeriesIssue } from "./series-issue.ts";
 
 export interface StrengthInput {
   readonly n: readonly number[];

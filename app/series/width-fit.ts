@@ -4,7 +4,7 @@ import { profileInterval } from "../solve/index.ts";
 import { fitToLaw, type LawSolution } from "./law-fit.ts";
 import { format, REJECTED_BELOW } from "./level-fit.ts";
 import { selectMatrix, selectVector } from "./select-lines.ts";
-import type { SeriesIssue } from "./wording.ts";
+import type { SeriesIssue } from "./series-issue.ts";
 
 export interface WidthInput {
   readonly n: readonly number[];

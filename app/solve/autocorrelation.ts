@@ -27,7 +27,7 @@ function product(d: Float64Array, lag: number): number {
 }
 
 /** Lags after which white noise would show no more: the rule 4 (m/100)^(2/9) of the Newey-West estimate, at least 1. */
-export function defaultLags(points: number): number {
+function defaultLags(points: number): number {
   return Math.max(1, Math.floor(4 * (points / 100) ** (2 / 9)));
 }
 
