@@ -10,18 +10,20 @@ import { mkdir, readdir, readFile, rename, rm, stat, writeFile } from "node:fs/p
 import { existsSync, readdirSync, readFileSync, statSync } from "node:fs";
 import { basename, dirname, join, relative } from "node:path";
 import { fileURLToPath } from "node:url";
+import { collectFiles, noticesText, packageFolders } from "./notices.mjs";
 import { DRAWING_FILES } from "./services/drawing-files.mjs";
 
 export const ROOT = dirname(dirname(fileURLToPath(import.meta.url)));
 const DIST = join(ROOT, "dist");
+const NOTICES = "THIRD-PARTY-NOTICES.txt";
 
-/** What each part is made of, and how. */
+/** What each part is made of, and how; a build returns the files that went into its bundles. */
 const PARTS = {
   "command-line": { sources: ["app", "main"], build: buildCommandLine },
   electron: { sources: ["app", "main"], build: buildElectron },
   window: { sources: ["app", "renderer"], build: buildWindow },
 };
-const SHARED_SOURCES = ["package.json", "package-lock.json", "main/build.mjs"];
+const SHARED_SOURCES = ["package.json", "package-lock.json", "main/build.mjs", "main/notices.mjs"];
 
 export const PART_NAMES = Object.keys(PARTS);
 
@@ -38,10 +40,23 @@ export async function buildParts(parts) {
     const stamp = stampOf(part);
     const began = Date.now();
     process.stderr.write(`rungline: building ${part} ...\n`);
-    await PARTS[part].build();
+    const files = await PARTS[part].build();
+    await putFile(packagesFile(part), JSON.stringify(packageFolders(files, ROOT)));
+    await writeNotices();
     await putFile(stampFile(part), stamp);
     process.stderr.write(`rungline: built ${part} in ${((Date.now() - began) / 1000).toFixed(1)} s\n`);
   }
+}
+
+/** The licences of every package in the parts that stand in dist. */
+async function writeNotices() {
+  const lists = PART_NAMES.map(packagesFile).filter((file) => existsSync(file));
+  const folders = lists.flatMap((file) => JSON.parse(readFileSync(file, "utf8")));
+  await putFile(join(DIST, NOTICES), noticesText(folders));
+}
+
+function packagesFile(part) {
+  return join(DIST, `.${part}.packages.json`);
 }
 
 function stampFile(part) {
@@ -74,7 +89,7 @@ function version() {
 
 async function bundle(options) {
   const { build } = await import("esbuild");
-  const { outputFiles } = await build({
+  const { outputFiles, metafile } = await build({
     absWorkingDir: ROOT,
     bundle: true,
     minify: true,
@@ -86,9 +101,12 @@ async function bundle(options) {
     logOverride: { "empty-import-meta": "silent" },
     define: { RUNGLINE_VERSION: JSON.stringify(version()) },
     ...options,
+    metafile: true,
     write: false,
   });
-  return outputFiles;
+  // What was read but left out, as it is not used, is in no output.
+  const inputs = Object.values(metafile.outputs).flatMap((output) => Object.keys(output.inputs));
+  return { files: outputFiles, inputs };
 }
 
 /** Of zod's messages in forty languages only the English ones are used; the rest would be a third of the program. */
@@ -116,7 +134,7 @@ const POOL_THREAD = {
 
 async function buildCommandLine() {
   const folder = join(DIST, "main");
-  const files = await bundle({
+  const { files, inputs } = await bundle({
     entryPoints: {
       "command-line": "main/command-line/main.ts",
       "fit-thread": "main/services/fit-thread.ts",
@@ -149,23 +167,34 @@ async function buildCommandLine() {
   for (const file of files) if (!isEntry(file.path)) await putFile(file.path, file.contents);
   for (const file of files) if (isEntry(file.path)) await putFile(file.path, file.contents);
   await removeOthers(join(folder, "parts"), new Set(files.map((file) => file.path)));
+  const drawing = Object.values(DRAWING_FILES).flat();
+  return [...inputs, ...drawing.map((file) => `node_modules/${file}`)];
 }
 
 async function buildElectron() {
   const { electronBuildOptions } = await import("./electron/build-options.mjs");
-  for (const options of electronBuildOptions(ROOT))
-    for (const file of await bundle(options)) await putFile(file.path, file.contents);
+  const from = [];
+  for (const options of electronBuildOptions(ROOT)) {
+    const { files, inputs } = await bundle(options);
+    for (const file of files) await putFile(file.path, file.contents);
+    from.push(...inputs);
+  }
+  return from;
 }
 
 async function buildWindow() {
   const { build } = await import("vite");
   const beside = join(DIST, `.renderer-${process.pid}`);
   const folder = join(DIST, "renderer");
+  const from = new Set();
   try {
     await build({
       root: join(ROOT, "renderer"),
       configFile: join(ROOT, "renderer", "vite.config.ts"),
       logLevel: "error",
+      plugins: [collectFiles(from)],
+      // Workers are bundles of their own.
+      worker: { plugins: () => [collectFiles(from)] },
       build: { outDir: beside, emptyOutDir: true },
     });
     const built = await listFiles(beside);
@@ -177,6 +206,7 @@ async function buildWindow() {
       await rename(join(beside, path), join(folder, path));
     }
     await removeOthers(folder, new Set(built.map((path) => join(folder, path))));
+    return [...from];
   } finally {
     await rm(beside, { recursive: true, force: true });
   }

@@ -45,11 +45,44 @@ function archivedFiles(path: string): string[] {
 }
 
 describe("the packed application", () => {
+  it("carries name, version, licence and its text of every package that was bundled", () => {
+    const dist = join(ROOT, "dist");
+    const notices = readFileSync(join(dist, "THIRD-PARTY-NOTICES.txt"), "utf8");
+    const sections = notices.split(`${"=".repeat(78)}\n`).slice(1);
+    const folders = ["command-line", "electron", "window"].flatMap(
+      (part) => JSON.parse(readFileSync(join(dist, `.${part}.packages.json`), "utf8")) as string[],
+    );
+    const bundled = folders.map((folder) => {
+      const { name, version } = JSON.parse(readFileSync(join(folder, "package.json"), "utf8")) as {
+        name: string;
+        version: string;
+      };
+      return `${name} ${version}`;
+    });
+    for (const needed of ["plotly.js", "react", "zod", "@resvg/resvg-wasm", "@fontsource/ibm-plex-sans"])
+      expect(bundled.map((one) => one.slice(0, one.lastIndexOf(" ")))).toContain(needed);
+    for (const one of bundled) {
+      const section = sections.find((text) => text.startsWith(`${one}\n`)) ?? "";
+      expect(section).toMatch(/^Licence: \S+$/m);
+      // A name alone is no text: the shortest licence here, in full, has more than this.
+      expect(section.length, one).toBeGreaterThan(600);
+      expect(section, one).toMatch(/permission|permitted|licensed|redistribution|rights/i);
+    }
+    expect(sections).toHaveLength(new Set(bundled).size);
+    expect(sections.find((text) => text.startsWith("@resvg/"))).toContain(
+      "Mozilla Public License Version 2.0",
+    );
+    expect(sections.find((text) => text.startsWith("@fontsource/ibm-plex-sans"))).toContain(
+      "SIL OPEN FONT LICENSE",
+    );
+  });
+
   it("holds what is built and the demo spectra, no sources and no packages", () => {
     const files = archivedFiles(join(folder, "linux-unpacked", "resources", "app.asar"));
     for (const needed of [
       "package.json",
       "LICENSE",
+      "dist/THIRD-PARTY-NOTICES.txt",
       "dist/main/electron.js",
       "dist/main/preload.cjs",
       "dist/renderer/index.html",
@@ -60,7 +93,7 @@ describe("the packed application", () => {
     }
     const others = files.filter(
       (file) =>
-        !/^(package\.json|LICENSE|dist\/main\/(electron\.js|preload\.cjs)|dist\/renderer\/.+|fixtures\/demo\/(power\/)?[^/]+\.(csv|tsv|txt))$/.test(
+        !/^(package\.json|LICENSE|dist\/THIRD-PARTY-NOTICES\.txt|dist\/main\/(electron\.js|preload\.cjs)|dist\/renderer\/.+|fixtures\/demo\/(power\/)?[^/]+\.(csv|tsv|txt))$/.test(
           file,
         ),
     );
