@@ -12,5 +12,6 @@ export { levelLink, strengthShare, widthLink, type LinkData } from "./law-link.t
 export { fitTransmittance, type TransmittanceFit } from "./transmittance-fit.ts";
 export { TransmittanceProblem, type MeasuredLight } from "./transmittance-problem.ts";
 export { applySlit, makeSlitGrid, type Feature, type SlitGrid } from "./transmittance-grid.ts";
+export { withCorrelatedJoint } from "./joint-correlated.ts";
 export { slitBias } from "./transmittance-bias.ts";
 export { SMEARED, smearedColumns, smearedKnots } from "./smeared-series.ts";

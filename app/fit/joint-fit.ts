@@ -39,6 +39,8 @@ export interface JointFit {
   readonly solution: SharedSolution;
   /** What the shared parameters are, in the order of `solution.shared`. */
   readonly names: readonly SharedName[];
+  /** What own parameters have in common with shared ones beside T C, where noise is correlated (joint-correlated.ts; n x q). */
+  readonly mixed?: readonly Float64Array[];
 }
 
 /**
@@ -137,8 +139,8 @@ export function fitJointly(
 export function jointCovariance(joint: JointFit, a: number, b: number): Float64Array {
   const first = joint.fits[a]!;
   if (a === b) return first.lines.covariance;
-  const rows = toShared(joint, a);
-  const columns = toShared(joint, b);
+  const rows = toShared(joint, a, joint.solution.sensitivity[a]!);
+  const columns = toShared(joint, b, joint.solution.sensitivity[b]!);
   const q = joint.names.length;
   const height = 4 * first.lines.ns.length;
   const width = 4 * joint.fits[b]!.lines.ns.length;
@@ -157,13 +159,23 @@ export function jointCovariance(joint: JointFit, a: number, b: number): Float64A
       out[i * width + j] = sum;
     }
   }
+  if (joint.mixed === undefined) return out;
+  const rowsMixed = toShared(joint, a, joint.mixed[a]!);
+  const columnsMixed = toShared(joint, b, joint.mixed[b]!);
+  for (let i = 0; i < height; i++)
+    for (let j = 0; j < width; j++)
+      for (let g = 0; g < q; g++)
+        out[i * width + j]! +=
+          rowsMixed[i * q + g]! * columns[j * q + g]! + rows[i * q + g]! * columnsMixed[j * q + g]!;
   return out;
 }
 
-/** d(energies, widths, areas, asymmetries)/d(shared) of spectrum a, everything else refitted (4k x q, row-major). */
-function toShared(joint: JointFit, a: number): Float64Array {
+/**
+ * From (theta, c) of spectrum a to its energies, widths, areas and asymmetries: with its sensitivity, their derivatives by the
+ * shared parameters, everything else refitted (4k x q, row-major).
+ */
+function toShared(joint: JointFit, a: number, sensitivity: Float64Array): Float64Array {
   const { problem, solution } = joint.fits[a]!;
-  const sensitivity = joint.solution.sensitivity[a]!;
   const q = joint.names.length;
   const rows = lineRows(problem, solution.theta, solution.coefficients);
   const out = new Float64Array(rows.length * q);

@@ -9,11 +9,17 @@ import {
   SpectrumProblem,
   strengthShare,
   widthLink,
+  withCorrelatedJoint,
   type JointMember,
   type ModelSpec,
 } from "../../../app/fit/index.ts";
 import { levelEnergy } from "../../../app/laws/index.ts";
-import { solveSeparable, type SeparableProblem } from "../../../app/solve/index.ts";
+import {
+  autocorrelation,
+  correlationTime,
+  solveSeparable,
+  type SeparableProblem,
+} from "../../../app/solve/index.ts";
 
 const LEVELS = { gap: 2.172, rydberg: 0.0912, defect0: 0.21, defect2: 0 };
 const NS = [3, 4, 5, 6, 7, 8];
@@ -226,6 +232,79 @@ describe("several spectra in one fit", () => {
           close(block[(2 * k + i) * 4 * k + k + j]!, area, width);
         }
     }
+  });
+
+  it("has the errors of the dense fit under noise that neighbours share, each spectrum its own", () => {
+    const allowed = [true, false, true];
+    const wider = withCorrelatedJoint(joint, allowed);
+    const rows = dense.rows;
+    const jacobian = new Float64Array(size * rows);
+    dense.columns(whole.theta, jacobian.subarray(dense.nonlinear * rows));
+    dense.derivatives(whole.theta, whole.coefficients, jacobian.subarray(0, dense.nonlinear * rows));
+    for (let i = 0; i < jacobian.length; i++) jacobian[i] = jacobian[i]! * dense.weights[i % rows]!;
+    // S J, spectrum by spectrum.
+    const filtered = new Float64Array(size * rows);
+    let top = 0;
+    joint.fits.forEach(({ problem, solution }, a) => {
+      const { residuals, chi2, degreesOfFreedom } = solution;
+      const { lags } = correlationTime(residuals);
+      const rho = autocorrelation(residuals, lags);
+      for (let j = 0; j < size; j++)
+        for (let r = 0; r < problem.rows; r++) {
+          let sum = 0;
+          for (let s = 0; s < problem.rows; s++) {
+            const lag = Math.abs(r - s);
+            const share = lag > lags ? 0 : (1 - lag / (lags + 1)) * rho[lag]!;
+            const weight = allowed[a]! ? (chi2 / degreesOfFreedom) * share : Number(lag === 0);
+            if (weight !== 0) sum += weight * jacobian[j * rows + top + s]!;
+          }
+          filtered[j * rows + top + r] = sum;
+        }
+      top += problem.rows;
+    });
+    // Columns C J' and C J' S J C of single parameters.
+    const influence = (i: number): Float64Array =>
+      Float64Array.from({ length: rows }, (_, r) => {
+        let sum = 0;
+        for (let j = 0; j < size; j++) sum += whole.covariance[i * size + j]! * jacobian[j * rows + r]!;
+        return sum;
+      });
+    const smoothed = (i: number): Float64Array =>
+      Float64Array.from({ length: rows }, (_, r) => {
+        let sum = 0;
+        for (let j = 0; j < size; j++) sum += whole.covariance[i * size + j]! * filtered[j * rows + r]!;
+        return sum;
+      });
+    const expected = (i: number, j: number): number => {
+      const right = smoothed(j);
+      return influence(i).reduce((sum, one, r) => sum + one * right[r]!, 0);
+    };
+    const near = (found: number, i: number, j: number): void => {
+      const error = Math.sqrt(expected(i, i) * expected(j, j));
+      // Derived: the same sandwich, eliminated in blocks; the two fits stand 1e-7 standard errors apart.
+      expect(Math.abs(found - expected(i, j)) / error).toBeLessThan(1e-5);
+    };
+    for (let g = 0; g < 4; g++) near(wider.solution.sharedCovariance[g * 4 + 1]!, g, 1);
+    const k = NS.length;
+    const areaAt = (a: number, j: number): number =>
+      dense.nonlinear + problems.slice(0, a).reduce((sum, problem) => sum + problem.linear, 0) + j;
+    for (const [a, b] of [
+      [0, 0],
+      [1, 1],
+      [0, 1],
+      [2, 0],
+    ] as const) {
+      const block = jointCovariance(wider, a, b);
+      for (const [i, j] of [
+        [1, 1],
+        [5, 4],
+      ] as const) {
+        const width = at[b]![problems[b]!.layout.widthAt[j]!]!;
+        near(block[(2 * k + i) * 4 * k + 2 * k + j]!, areaAt(a, i), areaAt(b, j));
+        near(block[(2 * k + i) * 4 * k + k + j]!, areaAt(a, i), width);
+      }
+    }
+    expect(withCorrelatedJoint(joint, [false, false, false])).toBe(joint);
   });
 
   it("is the tied fit of one spectrum where there is one alone", () => {
