@@ -165,7 +165,12 @@ export function describeResult(
   const fitPart: NonNullable<RunglineResult["fit"]> = {
     domain: full.domain.name,
     termination: solution.termination,
-    sigma_from: protocol.uncertainty.scale_by_residuals || full.correlated ? "residuals" : "given",
+    sigma_from:
+      protocol.uncertainty.scale_by_residuals || full.correlated
+        ? "residuals"
+        : spectrum.noise.source === "estimated"
+          ? "estimated"
+          : "given",
     chi2: solution.chi2,
     dof: solution.degreesOfFreedom,
     reduced_chi2: reduced,

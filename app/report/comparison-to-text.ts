@@ -60,7 +60,7 @@ export function comparisonToText(comparison: Comparison): string {
     ...(choices.reference === null ? [] : labelled("Reference", `batch ${choices.reference}`)),
     ...labelled(
       "Made by",
-      `Rungline ${comparison.run.version} on ${comparison.run.node}, ${comparison.run.started}`,
+      `Rungline ${comparison.run.version} on Node ${comparison.run.node}, ${comparison.run.started}`,
     ),
     ...heading("Samples"),
     ...samplesTable(comparison),

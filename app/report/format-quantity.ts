@@ -23,7 +23,8 @@ export const NOT_DETERMINED_WORDS = "not determined";
 
 /** Below this share of their mean, the two sides of an interval count as equal. */
 const ASYMMETRY_SHOWN = 0.1;
-const DIGITS_WITHOUT_SIGMA = 6;
+/** No more than a reader could believe of a number whose error nobody knows. */
+const DIGITS_WITHOUT_SIGMA = 4;
 const DIGITS_IF_EXACT = 10;
 
 export function formatQuantity(
@@ -36,7 +37,7 @@ export function formatQuantity(
   const space = options.groupSpace ?? " ";
   const after = unit === "" ? "" : ` ${unit}`;
   if (sigma === null || !Number.isFinite(sigma)) {
-    return `${plain(value, DIGITS_WITHOUT_SIGMA, space)}${after} (uncertainty unknown)`;
+    return `${withoutError(value, space)}${after} (uncertainty unknown)`;
   }
   if (sigma <= 0) {
     return `${plain(value, DIGITS_IF_EXACT, space)}${after} (${options.exactWord ?? "exact"})`;
@@ -54,6 +55,11 @@ export function formatQuantity(
           .join("/");
   const tens = power === 0 ? "" : ` × 10${superscript(power)}`;
   return `${fixed(scaled(value), place, space)}(${bracket})${tens}${after}`;
+}
+
+/** A number whose error is not known. */
+export function withoutError(value: number, space = ""): string {
+  return plain(value, DIGITS_WITHOUT_SIGMA, space);
 }
 
 /**
@@ -74,6 +80,26 @@ export function roundSigma(sigma: number): { readonly rounded: number; readonly 
 export function formatNumber(value: number | null, digits = 4): string {
   if (value === null || !Number.isFinite(value)) return NOT_DETERMINED_WORDS;
   return plain(value, digits, "");
+}
+
+/** Below this a probability is a matter of rounding, and no one needs its power of ten. */
+const LEAST_PROBABILITY = 1e-16;
+
+/** A probability for a cell: `0.42`, `< 1e-16`. */
+export function formatProbability(p: number | null, digits = 2): string {
+  if (p !== null && p < LEAST_PROBABILITY) return "< 1e-16";
+  return formatNumber(p, digits);
+}
+
+/** A probability in a sentence: `p = 0.42`, `p < 1e-16`, `p not determined`. */
+export function probabilityInWords(p: number | null, digits = 2): string {
+  if (p === null || !Number.isFinite(p)) return `p ${NOT_DETERMINED_WORDS}`;
+  return p < LEAST_PROBABILITY ? "p < 1e-16" : `p = ${formatNumber(p, digits)}`;
+}
+
+/** Chi square; where nothing is left to test it is a matter of rounding, and 0. */
+export function formatChiSquare(chi2: number | null, dof: number, digits = 4): string {
+  return dof === 0 && chi2 !== null && chi2 < 1e-6 ? "0" : formatNumber(chi2, digits);
 }
 
 /** The prefix that prints an energy without long rows of zeros. */

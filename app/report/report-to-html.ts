@@ -11,7 +11,14 @@ import { comparisonTables } from "./comparison-tables.ts";
 import { comparisonNotes } from "./comparison-to-text.ts";
 import type { FittedCurves } from "./curves-csv.ts";
 import type { DataTable } from "./data-table.ts";
-import { ELECTRONVOLT, energyUnit, formatEnergy, formatNumber, formatQuantity } from "./format-quantity.ts";
+import {
+  ELECTRONVOLT,
+  energyUnit,
+  formatEnergy,
+  formatNumber,
+  formatQuantity,
+  formatProbability,
+} from "./format-quantity.ts";
 import { comparisonFigures } from "./figures/comparison-figures.ts";
 import { figureToSvg } from "./figures/figure-to-svg.ts";
 import { FULL_WIDTH_MM, type Figure } from "./figures/figure.ts";
@@ -28,7 +35,14 @@ import { protocolInWords } from "./protocol-in-words.ts";
 import { REPORT_STYLE } from "./report-style.ts";
 import { resultTables } from "./result-tables.ts";
 import { protocolToJson } from "./result-to-json.ts";
-import { columnsInWords, noiseInWords, statusInWords, TERMINATION_WORDS } from "./result-to-text.ts";
+import {
+  columnsInWords,
+  ERRORS_FROM_WORDS,
+  noiseInWords,
+  statusInWords,
+  systematicWords,
+  TERMINATION_WORDS,
+} from "./result-to-text.ts";
 import { escapeMarkup, richToHtml } from "./rich-text.ts";
 import { tableToHtml } from "./table-to-html.ts";
 
@@ -143,7 +157,7 @@ function lead({ results, run }: ReportInput): string {
   const files = results.length === 1 ? "one spectrum" : `${results.length} results`;
   return escapeMarkup(
     `Gap, Rydberg energy, quantum defect and linewidth law from ${files}, each number with one standard error in brackets in units of its last place. ` +
-      `Report by Rungline ${run.version} on ${run.node}, ${run.started}.`,
+      `Report by Rungline ${run.version} on Node ${run.node}, ${run.started}.`,
   );
 }
 
@@ -261,8 +275,7 @@ function keyNumbers(result: RunglineResult): string {
   });
   const part = (value: number | null | undefined): string => {
     if (value === null || value === undefined) return "";
-    const unit = energyUnit(value);
-    return `, systematic ±${formatNumber(value * unit.perElectronvolt, 2)} ${unit.name}`;
+    return `, systematic ${systematicWords(value)}`;
   };
   const entries: [string, string][] = [
     [`gap${scaled}${part(systematic?.gap_eV)}`, formatEnergy(plain(levels.gap_eV), ELECTRONVOLT, THIN)],
@@ -318,7 +331,7 @@ function readingToHtml(result: RunglineResult): string {
     ["Noise", noiseInWords(result)],
     ["Dialect", dialectInWords(result)],
     ["Protocol", protocolInWords(result.protocol).join("; ")],
-    ["Fitted by", `Rungline ${run.version} on ${run.node}, ${run.started}`],
+    ["Fitted by", `Rungline ${run.version} on Node ${run.node}, ${run.started}`],
   ])}`;
 }
 
@@ -360,13 +373,10 @@ function fitToHtml(result: RunglineResult): string {
     ["AIC, BIC", `${fit.aic?.toFixed(1) ?? "–"}, ${fit.bic?.toFixed(1) ?? "–"}`],
     [
       "Residuals",
-      `p of runs ${formatNumber(fit.runs_p, 2)}; Durbin-Watson ${formatNumber(fit.durbin_watson, 3)}; correlation of neighbours ${formatNumber(fit.lag1, 2)}; effective points ${formatNumber(fit.effective_points, 5)}`,
+      `p of runs ${formatProbability(fit.runs_p)}; Durbin-Watson ${formatNumber(fit.durbin_watson, 3)}; correlation of neighbours ${formatNumber(fit.lag1, 2)}; effective points ${formatNumber(fit.effective_points, 5)}`,
     ],
     ["Parameters", `${fit.parameters}, rank ${fit.rank}, condition ${formatNumber(fit.condition, 2)}`],
-    [
-      "Standard errors",
-      fit.sigma_from === "given" ? "from the given or estimated noise" : "from the residuals",
-    ],
+    ["Standard errors", ERRORS_FROM_WORDS[fit.sigma_from]],
   ])}`;
 }
 

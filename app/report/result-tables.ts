@@ -4,13 +4,26 @@ import { count, measured, numberColumn, textColumn, words, type Cell, type DataT
 import {
   ELECTRONVOLT,
   energyUnit,
+  formatChiSquare,
   formatNumber,
+  formatProbability,
+  formatQuantity,
   MICROELECTRONVOLT,
   NOT_DETERMINED_WORDS,
+  probabilityInWords,
   type EnergyUnit,
 } from "./format-quantity.ts";
 import { percent } from "./protocol-in-words.ts";
-import { interval, isOneSigma, smallestUnit, systematicWords } from "./result-to-text.ts";
+import {
+  apparentGapInWords,
+  interval,
+  isOneSigma,
+  sharedAsymmetry,
+  smallestUnit,
+  systematicWords,
+  tailInWords,
+  TRIALS_REMARK,
+} from "./result-to-text.ts";
 
 type Quantity = LineResult["energy_eV"];
 const PURE: EnergyUnit = { name: "", perElectronvolt: 1 };
@@ -66,12 +79,12 @@ function seriesTable(result: RunglineResult): DataTable | null {
       textColumn(`interval at ${percent(level)}`),
     ],
     rows: [
-      row(`gap${given}`, levels.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null, null)),
+      row(`gap${given}`, levels.gap_eV, ELECTRONVOLT, systematicWords(systematic?.gap_eV ?? null)),
       row(
         `Rydberg energy${given}`,
         levels.rydberg_eV,
         rydberg,
-        systematicWords(systematic?.rydberg_eV ?? null, rydberg),
+        systematicWords(systematic?.rydberg_eV ?? null),
       ),
       row(ritz ? "quantum defect, constant part" : "quantum defect", levels.defect0, PURE, defectPart),
       ...(ritz ? [row("quantum defect, Ritz term", series.defect2, PURE, "")] : []),
@@ -89,20 +102,17 @@ function seriesTable(result: RunglineResult): DataTable | null {
             "The law is rejected: errors and intervals are scaled by the root of reduced chi square, and the unscaled ones, which are too small, stand below.",
           ]
         : []),
-      `Chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, *p* = ${formatNumber(series.p, 3)}. The standard error is statistical; the systematic part is the spread over defensible choices.`,
-      ...heldDefectRemark(systematic?.held_defect, rydberg),
+      `Chi square ${formatChiSquare(series.chi2, series.dof)} for ${series.dof} degrees of freedom, ${probabilityInWords(series.p, 3).replace("p", "*p*")}. The standard error is statistical; the systematic part is the spread over defensible choices.`,
+      ...heldDefectRemark(systematic?.held_defect),
       ...correlations(series.correlation),
     ],
   };
 }
 
-function heldDefectRemark(
-  held: NonNullable<RunglineResult["systematic"]>["held_defect"],
-  rydberg: EnergyUnit,
-): string[] {
+function heldDefectRemark(held: NonNullable<RunglineResult["systematic"]>["held_defect"]): string[] {
   if (held === undefined) return [];
   return [
-    `The defect is held at ${held.defect0} ± ${Number(held.sigma.toPrecision(2))}${held.assumed ? " (assumed)" : ""}: values, errors and intervals of gap and Rydberg energy hold for that defect only; its uncertainty puts ${systematicWords(held.gap_eV, null)} on the gap and ${systematicWords(held.rydberg_eV, rydberg)} on the Rydberg energy (systematic).`,
+    `The defect is held at ${held.defect0} ± ${Number(held.sigma.toPrecision(2))}${held.assumed ? " (assumed)" : ""}: values, errors and intervals of gap and Rydberg energy hold for that defect only; its uncertainty puts ${systematicWords(held.gap_eV)} on the gap and ${systematicWords(held.rydberg_eV)} on the Rydberg energy (systematic).`,
   ];
 }
 
@@ -142,7 +152,7 @@ function lawsTable(result: RunglineResult): DataTable | null {
     dof: number;
     p: number | null;
   }): string =>
-    `n = ${law.fit_n[0]} to ${law.fit_n[1]}, chi square ${formatNumber(law.chi2, 3)} for ${law.dof}, p = ${formatNumber(law.p, 2)}`;
+    `n = ${law.fit_n[0]} to ${law.fit_n[1]}, chi square ${formatChiSquare(law.chi2, law.dof, 3)} for ${law.dof}, ${probabilityInWords(law.p)}`;
   if (width !== null)
     rows.push(
       [words("width floor"), held(width.floor_eV, MICROELECTRONVOLT), words(about(width))],
@@ -179,6 +189,7 @@ function lawsTable(result: RunglineResult): DataTable | null {
       measured(tail.factor, 1, ""),
       words(`n = ${tail.from_n} to ${tail.to_n}`),
     ]);
+  const tailRemark = tailInWords(result);
   return rows.length === 0
     ? null
     : {
@@ -186,7 +197,7 @@ function lawsTable(result: RunglineResult): DataTable | null {
         title: "Laws of widths and strengths",
         columns: [textColumn("quantity"), textColumn("value(standard error)"), textColumn("law")],
         rows,
-        remarks: [],
+        remarks: tailRemark === "" ? [] : [`The lines above the last one told apart: ${tailRemark}`],
       };
 }
 
@@ -197,6 +208,7 @@ function linesTable(result: RunglineResult): DataTable | null {
   const area = areaUnit(result.reading.signal_unit);
   const signal = signalUnitWords(result.reading.signal_unit);
   const left = lines.some((line) => !line.in_level_fit);
+  const shared = sharedAsymmetry(result);
   return {
     name: "lines",
     title: "Lines",
@@ -205,19 +217,19 @@ function linesTable(result: RunglineResult): DataTable | null {
       numberColumn("*E*_{n}", "eV"),
       numberColumn("*Γ*_{n}", unit.name),
       numberColumn("*A*_{n}", area.includes("/") ? `(${area})` : area),
-      numberColumn("*q*_{n}"),
+      ...(shared === null ? [numberColumn("*q*_{n}")] : []),
       numberColumn("*A*_{n}/*σ*"),
-      numberColumn("*E*_{n} − law", "µeV"),
+      numberColumn("(*E*_{n} − law)", "µeV"),
       numberColumn("peak", signal === "" ? "" : `(${signal})`),
       numberColumn("*Γ*_{n}/spacing"),
-      numberColumn("lifetime", "ps"),
+      numberColumn("(*ħ*/*Γ*_{n})", "ps"),
     ],
     rows: lines.map((line) => [
       count(line.n),
       measured(line.energy_eV),
       measured(line.width_eV, unit.perElectronvolt),
       measured(line.area),
-      measured(line.asymmetry),
+      ...(shared === null ? [measured(line.asymmetry)] : []),
       count(line.significance, 3),
       measured(line.law_offset_eV, 1e6, null, line.in_level_fit ? "" : " *"),
       measured(line.peak),
@@ -225,7 +237,11 @@ function linesTable(result: RunglineResult): DataTable | null {
       measured(line.lifetime_ps),
     ]),
     remarks: [
-      `*Γ*_{n}: full width at half maximum of the Lorentzian part. *A*_{n}: area. *q*_{n}: asymmetry.${left ? " A star: not in the fit of the level law." : ""}`,
+      `*Γ*_{n}: full width at half maximum of the Lorentzian part. *A*_{n}: area. ${
+        shared === null
+          ? "*q*_{n}: asymmetry."
+          : `Asymmetry *q* = ${formatQuantity(shared.value, shared.sigma, "", { exactWord: "held" })}, shared by all lines.`
+      } *ħ*/*Γ*_{n}: a lower bound of the lifetime, since the width holds dephasing and any floor too.${left ? " A star: not in the fit of the level law." : ""}`,
     ],
   };
 }
@@ -244,13 +260,13 @@ function lineSizesTable(result: RunglineResult): DataTable | null {
       numberColumn("*n*"),
       numberColumn("*A*_{n} *n*^{3}", area.includes("/") ? `(${area})` : area),
       ...(strengths ? [numberColumn("*N f*", "(1/cm^{3})")] : []),
-      numberColumn("mean radius", "µm"),
+      numberColumn("mean radius", "nm"),
     ],
     rows: lines.map((line) => [
       count(line.n),
       measured(line.area_n3),
       ...(strengths ? [measured(line.strength_per_cm3)] : []),
-      measured(derived?.radius_um.find((radius) => radius.n === line.n) ?? notDetermined),
+      measured(derived?.radius_um.find((radius) => radius.n === line.n) ?? notDetermined, 1e3),
     ]),
     remarks: [
       `${strengths ? "*N f*: density of oscillators times their strength. " : ""}A mark of question: error unknown, since the Bohr radius was given without one.`,
@@ -304,9 +320,13 @@ function derivedTable(result: RunglineResult): DataTable | null {
         measured(derived.binding_eV, binding.perElectronvolt, binding.name),
         words(""),
       ],
-      [words("apparent gap"), measured(derived.apparent_gap_eV, 1, "eV"), words("")],
+      [
+        words("apparent gap"),
+        measured(derived.apparent_gap_eV, 1, "eV"),
+        words(derived.highest_n === null ? "" : apparentGapInWords(derived.highest_n)),
+      ],
       [words("highest n seen"), whole(derived.highest_n), words("")],
-      [words("highest n told apart"), whole(derived.highest_resolved_n), words("width below spacing")],
+      [words("highest n resolved"), whole(derived.highest_resolved_n), words("its width below its spacing")],
     ],
     remarks: [],
   };
@@ -333,9 +353,9 @@ function rangesTable(result: RunglineResult): DataTable | null {
       measured(one.gap_eV),
       measured(one.rydberg_eV, rydberg.perElectronvolt),
       measured(one.defect0),
-      count(one.chi2, 4),
+      one.dof === 0 ? count(0) : count(one.chi2, 4),
       count(one.dof),
-      count(one.p, 2),
+      probability(one.p),
     ]),
     remarks: [],
   };
@@ -365,6 +385,12 @@ function readingsTable(result: RunglineResult): DataTable | null {
   };
 }
 
+/** A number, or `< 1e-16` in words. */
+function probability(p: number | null): Cell {
+  const text = formatProbability(p);
+  return text.startsWith("<") ? words(text) : count(p, 2);
+}
+
 function trialsTable(result: RunglineResult): DataTable | null {
   const trials = result.systematic?.trials ?? [];
   if (trials.length === 0) return null;
@@ -390,10 +416,10 @@ function trialsTable(result: RunglineResult): DataTable | null {
       bare(one.defect0, 5),
       count(one.chi2, 5),
       bare(one.bic, 1),
-      count(one.runs_p, 2),
+      probability(one.runs_p),
       words(one.counted === undefined ? "" : one.counted ? "yes" : "no"),
     ]),
-    remarks: [],
+    remarks: [TRIALS_REMARK],
   };
 }
 

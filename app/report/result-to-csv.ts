@@ -178,7 +178,7 @@ function resultRows(result: RunglineResult): string {
     row("line", "peak", line.n, line.peak, signalUnit);
     number("line", "spacing", line.spacing_eV, "eV", line.n);
     number("line", "width_over_spacing", line.width_over_spacing, "", line.n);
-    row("line", "lifetime", line.n, line.lifetime_ps, "ps");
+    row("line", "hbar over width", line.n, line.lifetime_ps, "ps");
     row("line", "law_offset", line.n, line.law_offset_eV, "eV");
     row("line", "area_n3", line.n, line.area_n3, area);
     row("line", "strength", line.n, line.strength_per_cm3, "1/cm^3");

@@ -6,14 +6,18 @@ import {
   ELECTRONVOLT,
   energyUnit,
   ends,
+  formatChiSquare,
   formatEnergy,
   formatNumber,
+  formatProbability,
   formatQuantity,
   MICROELECTRONVOLT,
   MILLIELECTRONVOLT,
   NOT_DETERMINED_WORDS,
+  probabilityInWords,
   scaleQuantity,
   type EnergyUnit,
+  withoutError,
 } from "./format-quantity.ts";
 import { extraPart, lawChi2InWords } from "./extra-to-text.ts";
 import { gravestFirst } from "./notes.ts";
@@ -67,7 +71,7 @@ function header(result: RunglineResult): string[] {
     ),
     ...labelled("Protocol", protocolInWords(result.protocol).join("; ")),
     ...labelled("Status", statusInWords(result)),
-    ...labelled("Made by", `Rungline ${run.version} on ${run.node}, ${run.started}`),
+    ...labelled("Made by", `Rungline ${run.version} on Node ${run.node}, ${run.started}`),
   ];
 }
 
@@ -115,6 +119,13 @@ export const TERMINATION_WORDS: Readonly<Record<NonNullable<RunglineResult["fit"
     notFinite: "a number that is not finite",
   };
 
+/** Where the standard errors of the fit come from. */
+export const ERRORS_FROM_WORDS: Readonly<Record<NonNullable<RunglineResult["fit"]>["sigma_from"], string>> = {
+  given: "from the given noise",
+  estimated: "from the noise estimated from the data",
+  residuals: "from the residuals",
+};
+
 function heading(text: string): string[] {
   return ["", text, "-".repeat(Array.from(text).length)];
 }
@@ -152,13 +163,13 @@ function seriesPart(result: RunglineResult): string[] {
     [
       `gap E_g${given}`,
       energy(levels.gap_eV, ELECTRONVOLT, level),
-      systematicWords(systematic?.gap_eV ?? null, null),
+      systematicWords(systematic?.gap_eV ?? null),
       interval(levels.gap_eV, ELECTRONVOLT),
     ],
     [
       `Rydberg energy Ry${given}`,
       energy(levels.rydberg_eV, rydberg, level),
-      systematicWords(systematic?.rydberg_eV ?? null, rydberg),
+      systematicWords(systematic?.rydberg_eV ?? null),
       interval(levels.rydberg_eV, rydberg),
     ],
     [
@@ -174,13 +185,13 @@ function seriesPart(result: RunglineResult): string[] {
   const out = [
     ...heading(`Series: E_n = E_g - Ry/(n - delta)^2, n = ${series.fit_n[0]} to ${series.fit_n[1]}`),
     ...textTable(rows, ["left", "left", "left", "left"]),
-    `  chi square ${formatNumber(series.chi2)} for ${series.dof} degrees of freedom, p = ${formatNumber(series.p, 3)}`,
+    `  chi square ${formatChiSquare(series.chi2, series.dof)} for ${series.dof} degrees of freedom, ${probabilityInWords(series.p, 3)}`,
     "  The standard error is statistical only; the systematic part is the spread over defensible choices.",
   ];
   if (systematic?.held_defect !== undefined) {
     const { defect0, sigma, assumed, gap_eV, rydberg_eV } = systematic.held_defect;
     out.push(
-      `  The defect is held at ${defect0} ± ${Number(sigma.toPrecision(2))}${assumed ? " (assumed)" : ""}: values, errors and intervals of E_g and Ry hold for that defect only; its uncertainty puts ${systematicWords(gap_eV, null)} on E_g and ${systematicWords(rydberg_eV, rydberg)} on Ry (systematic).`,
+      `  The defect is held at ${defect0} ± ${Number(sigma.toPrecision(2))}${assumed ? " (assumed)" : ""}: values, errors and intervals of E_g and Ry hold for that defect only; its uncertainty puts ${systematicWords(gap_eV)} on E_g and ${systematicWords(rydberg_eV)} on Ry (systematic).`,
     );
   }
   if (systematic?.area_relative !== undefined && systematic.area_relative !== null)
@@ -240,9 +251,9 @@ function rangesTable(ranges: Series["ranges"], rydberg: EnergyUnit): string[] {
           formatEnergy(one.gap_eV, ELECTRONVOLT),
           formatEnergy(one.rydberg_eV, rydberg),
           pure(one.defect0),
-          formatNumber(one.chi2),
+          formatChiSquare(one.chi2, one.dof),
           String(one.dof),
-          formatNumber(one.p, 2),
+          formatProbability(one.p),
         ]),
       ],
       ["left", "left", "left", "left", "right", "right", "right"],
@@ -265,14 +276,19 @@ function trialsTable(trials: NonNullable<RunglineResult["systematic"]>["trials"]
           one.defect0 === null ? NOT_DETERMINED_WORDS : one.defect0.toFixed(5),
           formatNumber(one.chi2, 5),
           criterion(one.bic),
-          formatNumber(one.runs_p, 2),
+          formatProbability(one.runs_p),
         ]),
       ],
       ["left", "right", "right", "right", "right", "right", "right"],
       "    ",
     ),
+    ...wrap(TRIALS_REMARK, "    "),
   ];
 }
+
+/** Why chi square and BIC of the trials are not those of the fit. */
+export const TRIALS_REMARK =
+  "Trials are fitted to readings averaged in bins much narrower than the lines: fewer rows than the fit has, so chi square and BIC compare with each other only.";
 
 const PURE: EnergyUnit = { name: "", perElectronvolt: 1 };
 
@@ -280,10 +296,13 @@ function pure(quantity: Quantity): string {
   return formatQuantity(quantity.value, quantity.sigma, "", { ...ends(quantity), exactWord: "held" });
 }
 
-/** In the unit of its neighbour where that is small enough, else in one of its own. */
-export function systematicWords(value_eV: number | null, given: EnergyUnit | null): string {
+/** meV from this size on, µeV below: the same everywhere, so that 4.3 µeV is never also 0.0043 meV. */
+const LEAST_IN_MEV = 1e-4;
+
+export function systematicWords(value_eV: number | null): string {
   if (value_eV === null) return NOT_DETERMINED_WORDS;
-  const unit = given ?? energyUnit(value_eV);
+  const unit =
+    value_eV >= 0.5 ? ELECTRONVOLT : value_eV >= LEAST_IN_MEV ? MILLIELECTRONVOLT : MICROELECTRONVOLT;
   return `±${formatNumber(value_eV * unit.perElectronvolt, 2)} ${unit.name}`;
 }
 
@@ -371,7 +390,26 @@ function tailPart(result: RunglineResult): string[] {
   return [
     ...heading("Tail: lines above the last one told apart, and the continuum"),
     `  factor on the strength law ${pure(tail.factor)}, n = ${tail.from_n} to ${tail.to_n}`,
+    ...wrap(tailInWords(result), "  "),
   ];
+}
+
+/** Why the tail ends where it does, and whose errors lean on it. */
+export function tailInWords({ tail, lines, protocol }: RunglineResult): string {
+  if (tail === null) return "";
+  const top = lines.slice(-2).map(({ n }) => n);
+  const ends =
+    protocol.tail.cutoff_n !== null
+      ? `tail.cutoff_n ends the series at n = ${protocol.tail.cutoff_n}`
+      : `above n = ${tail.to_n} lines are three times as broad as their spacing or more, and what is left up to the gap stands as one smooth absorption`;
+  return `These follow the laws of the lines below with one free factor; ${ends}. The errors of the highest lines (n = ${top.join(", ")}) lean on that: lines next to a tail whose place and width are tied are better known than free neighbours would leave them, and less where the laws do not hold that far up.`;
+}
+
+/** One asymmetry for all lines, where they share it; null where each has its own. */
+export function sharedAsymmetry(result: RunglineResult): Quantity | null {
+  const [first, ...others] = result.lines.map((line) => line.asymmetry);
+  if (first === undefined || others.length === 0 || first.value === null) return null;
+  return others.every(({ value, sigma }) => value === first.value && sigma === first.sigma) ? first : null;
 }
 
 function linesPart(result: RunglineResult): string[] {
@@ -379,25 +417,26 @@ function linesPart(result: RunglineResult): string[] {
   const widthUnit = smallestUnit(result.lines.map((line) => line.width_eV.value));
   const unit = areaUnit(result.reading.signal_unit);
   const signalUnit = signalUnitWords(result.reading.signal_unit);
+  const shared = sharedAsymmetry(result);
   const rows = [
     [
       "n",
       "E_n/eV",
       `G_n/${widthUnit.name}`,
       `area/(${unit})`,
-      "q",
+      ...(shared === null ? ["q"] : []),
       "area/sigma",
-      "E_n - law/µeV",
+      "(E_n - law)/µeV",
       signalUnit === "" ? "peak" : `peak/(${signalUnit})`,
       "G_n/spacing",
-      "lifetime/ps",
+      "(hbar/G_n)/ps",
     ],
     ...result.lines.map((line) => [
       String(line.n),
       bare(line.energy_eV, 1),
       bare(line.width_eV, widthUnit.perElectronvolt),
       bare(line.area, 1),
-      bare(line.asymmetry, 1),
+      ...(shared === null ? [bare(line.asymmetry, 1)] : []),
       formatNumber(line.significance, 3),
       bare(line.law_offset_eV, 1e6) + (line.in_level_fit ? "" : " *"),
       bare(line.peak, 1),
@@ -405,13 +444,16 @@ function linesPart(result: RunglineResult): string[] {
       bare(line.lifetime_ps, 1),
     ]),
   ];
-  const align: Align[] = ["right", ...Array.from({ length: 9 }, (): Align => "left")];
+  const align: Align[] = ["right", ...Array.from({ length: shared === null ? 9 : 8 }, (): Align => "left")];
   const strengths = result.lines.filter((line) => line.strength_per_cm3.value !== null);
   const left = result.lines.some((line) => !line.in_level_fit);
   return [
     ...heading("Lines"),
     ...textTable(rows, align),
-    "  G_n: full width at half maximum of the Lorentzian part; q: asymmetry.",
+    shared === null
+      ? "  G_n: full width at half maximum of the Lorentzian part; q: asymmetry."
+      : `  G_n: full width at half maximum of the Lorentzian part. Asymmetry q = ${pure(shared)}, shared by all lines.`,
+    "  hbar/G_n: a lower bound of the lifetime, since the width holds dephasing and any floor too.",
     ...(left ? ["  * not in the fit of the level law"] : []),
     ...(strengths.length === 0
       ? []
@@ -439,8 +481,23 @@ export function smallestUnit(values: readonly (number | null)[]): EnergyUnit {
 /** Value and error where the unit stands in the head of the column. */
 function bare(quantity: Quantity, factor: number): string {
   const scaled = scaleQuantity(quantity, factor);
-  if (scaled.value !== null && scaled.sigma === null) return `${formatNumber(scaled.value, 6)}(?)`;
+  if (scaled.value !== null && scaled.sigma === null) return `${withoutError(scaled.value)}(?)`;
   return formatQuantity(scaled.value, scaled.sigma, "", { ...ends(scaled), exactWord: "held" });
+}
+
+/** What is called the apparent gap. */
+export function apparentGapInWords(highestN: number): string {
+  return `the level law at n = ${highestN + 0.5}, half a step above the highest line seen`;
+}
+
+/** A radius in nm while it is below a micrometre. */
+export function inRadiusUnit(radius_um: Quantity): {
+  readonly quantity: Quantity;
+  readonly unit: "nm" | "µm";
+} {
+  return (radius_um.value ?? 1) < 1
+    ? { quantity: { ...radius_um, ...scaleQuantity(radius_um, 1e3) }, unit: "nm" }
+    : { quantity: radius_um, unit: "µm" };
 }
 
 function derivedPart(result: RunglineResult): string[] {
@@ -462,18 +519,25 @@ function derivedPart(result: RunglineResult): string[] {
       formatEnergy(derived.binding_eV, energyUnit(derived.binding_eV.value)),
       "",
     ],
-    ["apparent gap", formatEnergy(derived.apparent_gap_eV, ELECTRONVOLT), ""],
+    [
+      "apparent gap",
+      formatEnergy(derived.apparent_gap_eV, ELECTRONVOLT),
+      derived.highest_n === null ? "" : apparentGapInWords(derived.highest_n),
+    ],
     ["highest n seen", derived.highest_n === null ? NOT_DETERMINED_WORDS : String(derived.highest_n), ""],
     [
-      "highest n told apart",
+      "highest n resolved",
       derived.highest_resolved_n === null ? NOT_DETERMINED_WORDS : String(derived.highest_resolved_n),
-      "width below spacing",
+      "its width below its spacing",
     ],
-    ...derived.radius_um.map((radius) => [
-      `radius of n = ${radius.n}`,
-      formatQuantity(radius.value, radius.sigma, "µm", ends(radius)),
-      "",
-    ]),
+    ...derived.radius_um.map((radius) => {
+      const { quantity, unit } = inRadiusUnit(radius);
+      return [
+        `mean radius of n = ${radius.n}`,
+        formatQuantity(quantity.value, quantity.sigma, unit, ends(quantity)),
+        "",
+      ];
+    }),
   ];
   return [...heading("Derived"), ...textTable(rows, ["left", "left", "left"])];
 }
@@ -516,16 +580,13 @@ function fitPart(result: RunglineResult): string[] {
     ["AIC, BIC", `${criterion(fit.aic)}, ${criterion(fit.bic)}`],
     [
       "residuals",
-      `p of runs ${formatNumber(fit.runs_p, 2)}; Durbin-Watson ${formatNumber(fit.durbin_watson, 3)}; correlation of neighbours ${formatNumber(
+      `p of runs ${formatProbability(fit.runs_p)}; Durbin-Watson ${formatNumber(fit.durbin_watson, 3)}; correlation of neighbours ${formatNumber(
         fit.lag1,
         2,
       )}; effective points ${formatNumber(fit.effective_points, 5)}`,
     ],
     ["parameters", `${fit.parameters}, rank ${fit.rank}, condition ${formatNumber(fit.condition, 2)}`],
-    [
-      "standard errors",
-      fit.sigma_from === "given" ? "from the given or estimated noise" : "from the residuals",
-    ],
+    ["standard errors", ERRORS_FROM_WORDS[fit.sigma_from]],
   ];
   return [...heading("Fit"), ...textTable(rows, ["left", "left"])];
 }

@@ -1,5 +1,5 @@
 import type { Cell, DataColumn, DataTable } from "./data-table.ts";
-import { formatNumber, formatQuantity } from "./format-quantity.ts";
+import { formatNumber, formatQuantity, withoutError } from "./format-quantity.ts";
 import { escapeMarkup, richToHtml } from "./rich-text.ts";
 
 /** A no-break thin space between groups of digits. */
@@ -47,7 +47,7 @@ function quantityToHtml({ quantity, unit, mark }: Cell & { kind: "quantity" }): 
   // In a column the words for an unknown error would be longer than the number.
   const text =
     unit === null && value !== null && sigma === null
-      ? `${formatNumber(value, 6)}(?)`
+      ? `${withoutError(value)}(?)`
       : formatQuantity(value, sigma, unit ?? "", {
           low,
           high,

@@ -48,11 +48,18 @@ function cellToLatex(cell: Cell, column: DataColumn): string {
       if (number === null) return asText(NOT_DETERMINED_WORDS);
       if (inNumbers)
         return cell.mark === "" ? number : `${number}\\textsuperscript{${escapeLatex(cell.mark.trim())}}`;
-      return cell.unit === null || cell.unit === ""
-        ? `\\num{${number}}`
-        : `\\qty{${number}}${unitToLatex(cell.unit, "")}`;
+      const shown =
+        cell.unit === null || cell.unit === ""
+          ? `\\num{${number}}`
+          : `\\qty{${number}}${unitToLatex(cell.unit, "")}`;
+      return `${shown}${heldOrUnknown(cell.quantity.sigma)}`;
     }
   }
+}
+
+/** In a cell of its own a number without an error says why it has none. */
+function heldOrUnknown(sigma: number | null): string {
+  return sigma === null ? " (uncertainty unknown)" : sigma > 0 ? "" : " (held)";
 }
 
 /**

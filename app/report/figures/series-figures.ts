@@ -46,6 +46,7 @@ function linePoints(
   x: (line: LineResult) => number,
   quantity: (line: LineResult) => Quantity,
   factor: number,
+  leftOut: (line: LineResult) => boolean = (line) => !line.in_level_fit,
 ): Mark & { kind: "points" } {
   const quantities = lines.map(quantity);
   return {
@@ -54,12 +55,18 @@ function linePoints(
     y: quantities.map(({ value }) => scaled(value, factor)),
     ...ends(quantities, factor),
     colour: lines.map(({ n }) => paperColourOfN(n)),
-    hollow: lines.map((line) => !line.in_level_fit),
+    hollow: lines.map(leftOut),
   };
 }
 
 const LAW: LegendEntry = { text: "law", colour: INK };
 const HOLLOW = "Hollow: not in the fit of the level law.";
+const HOLLOW_IN_LAW = "Hollow: not in the fit of this law.";
+
+/** Lines outside the range of n of the law that is drawn. */
+function outside(law: { readonly fit_n: readonly [number, number] } | null): (line: LineResult) => boolean {
+  return ({ n }) => law !== null && (n < law.fit_n[0] || n > law.fit_n[1]);
+}
 
 function levelFigure(result: RunglineResult): Figure {
   const { lines } = result;
@@ -183,7 +190,7 @@ function widthFigure(result: RunglineResult): Figure {
     name: "widths",
     caption: `Full widths at half maximum *Γ*_{n} (Lorentzian part) with the width law${
       law === null ? " not determined" : ` fitted to *n* = ${law.fit_n[0]} to ${law.fit_n[1]}`
-    }; both axes logarithmic. ${HOLLOW}`,
+    }; both axes logarithmic.${law === null ? "" : ` ${HOLLOW_IN_LAW}`}`,
     width_mm: ONE_COLUMN_MM,
     height_mm: 62,
     legend,
@@ -201,6 +208,7 @@ function widthFigure(result: RunglineResult): Figure {
             (line) => line.n,
             (line) => line.width_eV,
             1e6,
+            outside(law),
           ),
         ],
         share: 1,
@@ -237,7 +245,7 @@ function strengthFigure(result: RunglineResult): Figure {
     name: "strengths",
     caption: `Areas *A*_{n} of the lines with the strength law${
       law === null ? " not determined" : ` fitted to *n* = ${law.fit_n[0]} to ${law.fit_n[1]}`
-    }; both axes logarithmic. ${HOLLOW}`,
+    }; both axes logarithmic.${law === null ? "" : ` ${HOLLOW_IN_LAW}`}`,
     width_mm: ONE_COLUMN_MM,
     height_mm: 62,
     legend,
@@ -258,6 +266,7 @@ function strengthFigure(result: RunglineResult): Figure {
             (line) => line.n,
             (line) => line.area,
             1e3,
+            outside(law),
           ),
         ],
         share: 1,
@@ -275,10 +284,11 @@ function asymmetryFigure(result: RunglineResult): Figure | null {
     (line) => line.n,
     (line) => line.asymmetry,
     1,
+    () => false,
   );
   return {
     name: "asymmetries",
-    caption: `Asymmetry *q*_{n} of the lines (protocol: ${protocol.lines.asymmetry}). ${HOLLOW}`,
+    caption: `Asymmetry *q*_{n} of the lines (protocol: ${protocol.lines.asymmetry}).`,
     width_mm: ONE_COLUMN_MM,
     height_mm: 55,
     legend: [],

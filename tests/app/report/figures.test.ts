@@ -1,5 +1,6 @@
 import { symmetric } from "../../../app/base/index.ts";
 import type { TemperatureLaw } from "../../../app/protocol/index.ts";
+import { seriesFigures } from "../../../app/report/figures/series-figures.ts";
 import { temperatureFigures } from "../../../app/report/figures/temperature-figures.ts";
 import { describe, expect, it } from "vitest";
 import { figureFile, figureToSvg, reportContents, type Figure } from "../../../app/report/index.ts";
@@ -10,6 +11,7 @@ import {
   quantumNumberAxis,
 } from "../../../app/report/figures/axis.ts";
 import { compareSamples } from "../../../app/tasks/index.ts";
+import { makeResult } from "../../main/make-result.ts";
 import { reportCurves, reportSamples } from "../../support/report-samples.ts";
 
 const RUN = { version: "0.1.0", node: "v20.0.0", started: "2026-01-02T03:04:05.000Z" };
@@ -225,5 +227,23 @@ describe("a figure of laws of temperature", () => {
     expect(wide.y).toBeCloseTo(131, 9);
     expect(width!.panels[0]!.y.title).toBe("*Γ*_{5} / µeV");
     for (const figure of [gap!, width!]) expect(figureToSvg(figure)).not.toMatch(/NaN|undefined/);
+  });
+});
+
+describe("hollow marks", () => {
+  it("of widths and areas are the lines outside the range of the law that is drawn", () => {
+    const result = makeResult();
+    const figures = seriesFigures({
+      ...result,
+      width_law: { ...result.width_law!, fit_n: [6, 14] },
+      strength_law: { ...result.strength_law!, fit_n: [5, 6] },
+    });
+    const hollow = (name: string): readonly boolean[] | undefined =>
+      figures
+        .find((figure) => figure.name === name)!
+        .panels[0]!.marks.flatMap((mark) => (mark.kind === "points" ? [mark.hollow] : []))[0];
+    // Derived: the lines are n = 5, 6, 7
+    expect(hollow("widths")).toEqual([true, false, false]);
+    expect(hollow("strengths")).toEqual([false, false, true]);
   });
 });

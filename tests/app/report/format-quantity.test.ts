@@ -1,9 +1,12 @@
 import { describe, expect, it } from "vitest";
 import {
   energyUnit,
+  formatChiSquare,
   formatEnergy,
   formatNumber,
+  formatProbability,
   formatQuantity,
+  probabilityInWords,
   roundSigma,
 } from "../../../app/report/index.ts";
 
@@ -115,6 +118,17 @@ describe("prefix of an energy", () => {
     expect(formatEnergy({ value: 47e-6, sigma: 0.9e-6, low: null, high: null })).toBe("47.0(9) µeV");
     expect(energyUnit(0).name).toBe("eV");
     expect(energyUnit(null).name).toBe("eV");
+  });
+});
+
+describe("probabilities and chi squares", () => {
+  it("that are a matter of rounding are not printed to their digits", () => {
+    expect(probabilityInWords(0)).toBe("p < 1e-16");
+    expect(probabilityInWords(0.4217)).toBe("p = 0.42");
+    expect(probabilityInWords(null)).toBe("p not determined");
+    expect(formatProbability(1e-30)).toBe("< 1e-16");
+    expect(formatChiSquare(1.9e-20, 0)).toBe("0");
+    expect(formatChiSquare(8.95, 7)).toBe("8.95");
   });
 });
 

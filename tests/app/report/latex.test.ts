@@ -41,6 +41,10 @@ describe("tables for LaTeX", () => {
     expect(text).toContain("\\toprule");
   });
 
+  it("say of a held number that it is held", () => {
+    expect(text).toContain("\\num{3} (held)");
+  });
+
   it("balance their braces and dollars, and have as many cells a row as columns", () => {
     const results = reportSamples(4);
     const compared = compareSamples(results, {}, { version: "0", node: "0", started: "0" });

@@ -132,6 +132,9 @@ describe("a result as text", () => {
     expect(text).toMatch(/gap E_g +2\.172 083\(12\) eV +±20 µeV +2\.172071 to 2\.172095 eV/);
     expect(text).toMatch(/Rydberg energy Ry +92\.13\(31\) meV +±0\.4 meV/);
     expect(text).toMatch(/quantum defect delta +0\.231\(18\) +±0\.02/);
+    // Derived: three lines share one asymmetry, which then stands once
+    expect(text).toContain("Asymmetry q = -0.210(13), shared by all lines.");
+    expect(text).toContain("(hbar/G_n)/ps");
     expect(text).toMatch(/exponent k +3 \(held\)/);
   });
 
