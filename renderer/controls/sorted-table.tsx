@@ -8,6 +8,7 @@ import {
   type ColumnDef,
   type RowData,
 } from "@tanstack/react-table";
+import { rowByKey } from "./row-by-key.ts";
 
 const features = tableFeatures({ rowSortingFeature, sortedRowModel: createSortedRowModel() });
 
@@ -58,14 +59,7 @@ export function SortedTable<Row extends RowData>(props: Props<Row>) {
         }
         const order = rows.map((row) => keyOf(row.original));
         const at = chosen === null ? -1 : order.indexOf(chosen);
-        const last = order.length - 1;
-        const next = {
-          ArrowDown: Math.min(last, at + 1),
-          ArrowUp: at < 0 ? last : Math.max(0, at - 1),
-          Home: 0,
-          End: last,
-          Escape: -1,
-        }[event.key];
+        const next = rowByKey(event.key, at, order.length);
         if (next === undefined) return;
         event.preventDefault();
         onChoose(order[next] ?? null);

@@ -2,6 +2,7 @@ import type { Quantity } from "../../app/base/index.ts";
 import type { PowerResult } from "../../app/protocol/index.ts";
 import { useMode } from "../frame/theme.ts";
 import { formatNumber } from "../../app/report/index.ts";
+import { rowByKey } from "../controls/row-by-key.ts";
 import { valueText } from "../ledger/value-text.ts";
 import { colourOfN } from "../plot/colours.ts";
 import { useController, useWindow } from "../store/context.ts";
@@ -31,14 +32,7 @@ export function CrystalTable({ crystal }: { readonly crystal: PowerResult["cryst
         onKeyDown={(event) => {
           if (event.target !== event.currentTarget) return;
           const at = selected === null ? -1 : numbers.indexOf(selected);
-          const last = numbers.length - 1;
-          const next = {
-            ArrowDown: Math.min(last, at + 1),
-            ArrowUp: at < 0 ? last : Math.max(0, at - 1),
-            Home: 0,
-            End: last,
-            Escape: -1,
-          }[event.key];
+          const next = rowByKey(event.key, at, numbers.length);
           if (next === undefined) return;
           event.preventDefault();
           controller.select(numbers[next] ?? null);
