@@ -35,6 +35,7 @@ import {
 import { readByChance } from "./read-by-chance.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { sortNotes } from "./sort-notes.ts";
+import { strayLightNotes } from "./stray-light.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
 import {
   CLEARLY_BETTER,
@@ -148,7 +149,13 @@ function analyseAs(spectrum: Spectrum, protocol: Protocol, whole: Watch, options
   const plan = planResampling(fitted, full, protocol, spectrum.unit, watch);
   const result: AnalysisResult = {
     ...described,
-    notes: sortNotes([...described.notes, ...judged.notes]),
+    notes: sortNotes([
+      ...described.notes,
+      ...judged.notes,
+      ...(described.notes.some(({ code }) => code === "step-seen")
+        ? []
+        : strayLightNotes(full, fitted, chosen, spectrum, protocol, watch)),
+    ]),
     seconds: {
       guess: guessSeconds,
       solve: full.solveSeconds,

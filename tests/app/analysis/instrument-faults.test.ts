@@ -110,3 +110,14 @@ describe("readings that no light made", () => {
     expect(worstPull(result)).toBeLessThan(4);
   });
 });
+
+describe("light beside the sample", () => {
+  test("not said, it is offered with its part, and the misfit is said to follow from it", () => {
+    const deep = cleanSignal(energy, series).map((alpha) => (Math.exp(-100e-4 * alpha) + 0.03) / 1.03);
+    const result = resultOf(file(noisy(0.0007, 5, deep)), { ...choices, signal: { thickness_um: 100 } });
+    const note = result.notes.find(({ code }) => code === "stray-light-seen")!;
+    // Derived: made with 3 %
+    expect(Math.abs(Number(/with ([\d.]+) %/.exec(note.text)![1]) - 3)).toBeLessThan(0.3);
+    expect(result.notes.find(({ code }) => code === "misfit")!.text).toContain("stray-light-seen");
+  });
+});
