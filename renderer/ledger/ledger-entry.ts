@@ -36,6 +36,8 @@ export interface LedgerEntry {
   readonly main?: boolean;
   /** What a number without an error is called: held by the protocol, given by the user. Default: exact. */
   readonly exactWord?: string;
+  /** Digits of a number without an error. Default: as many as are typed for an energy. */
+  readonly exactDigits?: number;
   /** Shown on the card. */
   readonly table?: CardTable;
 }

@@ -4,7 +4,9 @@ import type { LedgerEntry } from "./ledger-entry.ts";
 export const THIN = "\u2009";
 
 /** Value with its uncertainty, and the unit apart, so that each can have its own type. */
-export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit" | "plain" | "exactWord">): {
+export function valueText(
+  entry: Pick<LedgerEntry, "quantity" | "scale" | "unit" | "plain" | "exactWord" | "exactDigits">,
+): {
   readonly value: string;
   readonly unit: string;
 } {
@@ -13,7 +15,7 @@ export function valueText(entry: Pick<LedgerEntry, "quantity" | "scale" | "unit"
   const { value, sigma, low, high } = scaleQuantity(entry.quantity, entry.scale);
   if (value !== null && (sigma === null || sigma === 0)) {
     // A column of numbers has no room for a clause: a question mark stands for an unknown uncertainty.
-    const plain = withMinus(formatNumber(value, sigma === null ? 4 : 8));
+    const plain = withMinus(formatNumber(value, sigma === null ? 4 : (entry.exactDigits ?? 8)));
     const word = `(${entry.exactWord ?? "exact"})`;
     const exact = entry.unit === "" ? word : `${entry.unit} ${word}`;
     return sigma === null ? { value: `${plain}(?)`, unit: entry.unit } : { value: plain, unit: exact };

@@ -176,7 +176,8 @@ function viewRange(
     const from = energies[Math.floor(energies.length / 2)]!;
     const spacing =
       energies[Math.floor(energies.length / 2)]! - energies[Math.floor(energies.length / 2) - 1]!;
-    return [from - 0.4 * spacing, whole[1]];
+    const low = from - 0.4 * spacing;
+    return [low, window[1] + 0.02 * (window[1] - low)];
   }
   if (view === "line") {
     const line = result.lines.find((one) => one.n === selectedN);
@@ -263,6 +264,7 @@ function labels(
   for (const line of result.lines) {
     const energy = line.energy_eV.value;
     if (energy === null || energy - taken < room) continue;
+    if (energy < from + room / 2 || energy > to - room / 2) continue;
     const top = highestNear(curves, energy, 0.5 * (line.width_eV.value ?? 0));
     if (!Number.isFinite(top.value)) continue;
     taken = energy;

@@ -89,6 +89,7 @@ export function lineSection(result: RunglineResult, n: number): LedgerSection | 
   ): LedgerEntry => ({
     id: `line-${id}`,
     exactWord: EXACT_WORDS[id] ?? "held",
+    ...((id === "peak" || id === "lifetime") && { exactDigits: 4 }),
     symbol: below === undefined ? { letter } : { letter, below },
     name,
     quantity,

@@ -188,7 +188,7 @@ function RungMark({ rung, top, bottom, colour, pointed, selected, onPoint, onCho
           {rung.energy_eV.toFixed(5)}
         </text>
       )}
-      {selected && <path className="rung-pointer" d={`M2 ${y - 5}l7 5l-7 5z`} />}
+      {selected && <path className="rung-pointer" d={`M-5 ${y - 5}l7 5l-7 5z`} />}
     </g>
   );
 }
