@@ -352,7 +352,8 @@ function resamplingNotes(resampled: Resampling, sigmas: readonly number[], level
     const sigma = sigmas[i]!;
     if (low === null || high === null || !(sigma > 0) || level < 0.6 || level > 0.75) return false;
     const ratio = (high - low) / (2 * sigma);
-    return Math.abs(ratio - 1) > DIFFERS + 4 / Math.sqrt(2 * (count - failed));
+    // And three standard errors of an interval from so many draws.
+    return Math.abs(ratio - 1) > DIFFERS + 3 / Math.sqrt(count - failed);
   });
   if (differing.length > 0)
     notes.push(

@@ -32,7 +32,7 @@ const SOLVE = { gradientTolerance: 1e-7, costTolerance: 1e-11 };
  *           white noise (correlation allowed for, jitter of the axis, errors scaled by the residuals), chi square has to rise
  *           by the square of its ratio to that.
  * Accuracy  tests/app/analysis/spectrum-profile.test.ts.
- * Source    Venzon and Moolgavkar, Appl. Stat. 37, 87 (1988).
+ * Source    Venzon and Moolgavkar, Appl. Stat. 37, 87 (1988); the scaled rise: Chandler and Bate, Biometrika 94, 167 (2007).
  */
 export function profileSpectrum(
   points: FitPoints,

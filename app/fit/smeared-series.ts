@@ -35,6 +35,9 @@ export interface SmearedSeries {
  *           about how lines fade. Laws are those of the pass before.
  * Shapes    columns of the length of `energy`.
  * Units     1/eV; coefficients in eV times the unit of the signal.
+ * Accuracy  wings of lines as broad as this reach past the gap: the columns at the gap add up to more than the law's height by
+ *           about 4/(pi n) for coefficients of 1 from line n on. tests/app/analysis/smeared-lines.test.ts.
+ * Source    midpoint rule for the sum over n; continuum: Elliott, Phys. Rev. 108, 1384 (1957).
  */
 export function smearedColumns(
   energy: Float64Array,

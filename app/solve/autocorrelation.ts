@@ -47,7 +47,7 @@ export function correlationTime(residuals: ArrayLike<number>): {
   let lags = Math.min(most, defaultLags(m));
   let died = 0;
   while (died < most && Math.abs((rho[died + 1] = at(died + 1))) > 2 / Math.sqrt(m)) died++;
-  // Bartlett's weights reach zero at L + 1: twice the length of the correlation keeps most of it.
+  // Bartlett's weights reach zero at L + 1: three times the length of the correlation leaves its last lag two thirds.
   lags = Math.min(most, Math.max(lags, 3 * died));
   let time = 1;
   for (let k = 1; k <= lags; k++) time += 2 * (1 - k / (lags + 1)) * (rho[k] ?? at(k));

@@ -15,9 +15,12 @@ export interface Directions {
 
 /**
  * What      The directions of the parameters with the largest variances, in units of standard errors (the eigenvectors of the
- *           correlation matrix with the largest values), by subspace iteration: where two Jacobians give the same |J v|^2
- *           along these they give the same covariance.
+ *           correlation matrix with the largest values), by a few turns of the power method, each direction orthogonal to
+ *           those before. Two Jacobians that differ do so most in |J v|^2 along these.
  * Shapes    covariance (n x n, row-major); a parameter without variance takes no part.
+ * Units     vectors in those of the parameters.
+ * Domain    numbers that are not finite give vectors that agree with nothing.
+ * Source    Golub and Van Loan, Matrix Computations, 4th ed. (2013), 8.2 (power method, orthogonal iteration).
  */
 export function weakDirections(covariance: Float64Array, n: number): Directions {
   const sigma = Float64Array.from({ length: n }, (_, i) => Math.sqrt(covariance[i * n + i]!));
@@ -51,6 +54,7 @@ export function weakDirections(covariance: Float64Array, n: number): Directions 
   return { count, n, vectors };
 }
 
+/** Whether |J v|^2 of all directions are the same in two Jacobians, to the part of a variance that counts. */
 export function agree(squares: Float64Array, others: Float64Array): boolean {
   return squares.every((square, d) => Math.abs(square - others[d]!) <= AGREEMENT * others[d]!);
 }
