@@ -59,6 +59,9 @@ export function compareResults(
   const parameters = choices.parameters.map((name) =>
     compareParameter(name, read.units[name], samples, choices, read.againstUnit),
   );
+  const known = samples.filter((sample) =>
+    Object.values(sample.parameters).some((one) => one !== undefined && one.value !== null),
+  );
   const quality = qualityOf(samples, parameters, choices);
   return success({
     schema: COMPARISON_SCHEMA,
@@ -70,7 +73,7 @@ export function compareResults(
     power: powerOf(read.results, choices),
     notes: [
       ...read.notes,
-      ...aboutNumbers(parameters, batches.length, samples.length),
+      ...aboutNumbers(parameters, new Set(known.map(({ batch }) => batch)).size, known.length),
       ...aboutQuality(quality, choices),
       ...(choices.against !== null && batches.length > 1 ? [trendInBatches(choices.against)] : []),
     ],
@@ -114,6 +117,13 @@ function trendInBatches(against: string): Note {
   );
 }
 
+/** Counted, not measured: no error belongs to them. */
+const WHOLE_NUMBERS: ReadonlySet<string> = new Set(["highest_n", "highest_resolved_n"]);
+
+function timesInWords(factor: number): string {
+  return factor >= 20 ? "more than 20" : String(Number(factor.toPrecision(2)));
+}
+
 function aboutNumbers(
   parameters: Comparison["parameters"],
   batches: number,
@@ -129,17 +139,27 @@ function aboutNumbers(
         "measure at least two crystals of a batch",
       ),
     );
-  for (const part of parameters) {
-    const { p, birge } = part.homogeneity;
-    if (p !== null && p < 0.01 && part.within.dof === 0 && part.batches.length > 1 && birge !== null)
-      notes.push(
-        doubt(
-          "scatter-beyond-errors",
-          `parameters.${part.name}`,
-          `${part.name}: the values scatter ${birge.toPrecision(2)} times as much as their errors say, and without repeated crystals it is open whether batches, crystals or the errors differ.`,
-          "measure several crystals of a batch",
-        ),
-      );
+  const beyond = parameters.filter(
+    ({ homogeneity: { p, birge }, within, batches: compared }) =>
+      p !== null && p < 0.01 && within.dof === 0 && compared.length > 1 && birge !== null,
+  );
+  const whole = beyond.filter(({ name }) => WHOLE_NUMBERS.has(name)).map(({ name }) => name);
+  const scattered = beyond
+    .filter(({ name }) => !WHOLE_NUMBERS.has(name))
+    .map(({ name, homogeneity: { birge } }) => `${name} (${timesInWords(birge!)})`);
+  if (beyond.length > 0) {
+    const parts = [
+      ...(scattered.length === 0
+        ? []
+        : [`Values differ by more than their errors say: ${scattered.join(", ")} times the errors.`]),
+      ...(whole.length === 0
+        ? []
+        : [`${whole.join(" and ")} ${whole.length === 1 ? "differs" : "differ"}, counts without an error.`]),
+      "Without repeated crystals it is open whether batches, crystals or the errors differ.",
+    ];
+    notes.push(
+      doubt("scatter-beyond-errors", "parameters", parts.join(" "), "measure several crystals of a batch"),
+    );
   }
   return notes;
 }

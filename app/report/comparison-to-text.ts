@@ -40,9 +40,15 @@ export const PARAMETER_TITLES: Readonly<Record<ComparedParameter, string>> = {
 /** Samples, batches and differences as tables in a paper, with every doubt. */
 export function comparisonToText(comparison: Comparison): string {
   const { samples, parameters, choices } = comparison;
-  const batches = new Set(samples.map((sample) => sample.batch));
-  const names = new Set(samples.map((sample) => `${sample.batch}\n${sample.sample}`));
-  const title = `${COMPARISON_TEXT_MARK}${count(names.size, "sample", "samples")} in ${count(batches.size, "batch", "batches")}`;
+  // A file without a series is listed, but is no sample that anything is known of.
+  const known = samples.filter((sample) =>
+    Object.values(sample.parameters).some((one) => one?.value !== null && one !== undefined),
+  );
+  const batches = new Set(known.map((sample) => sample.batch));
+  const nameOf = (sample: (typeof samples)[number]): string => `${sample.batch}\n${sample.sample}`;
+  const names = new Set(known.map(nameOf));
+  const without = new Set(samples.map(nameOf)).size - names.size;
+  const title = `${COMPARISON_TEXT_MARK}${count(names.size, "sample", "samples")} in ${count(batches.size, "batch", "batches")}${without === 0 ? "" : `, ${without} without a series`}`;
   const lines = [
     title,
     "=".repeat(title.length),

@@ -35,6 +35,7 @@ import type { CommandLineIo } from "./command-line-io.ts";
 import { EXIT } from "./exit-status.ts";
 import { placeOutput, type Format, type OutputPlace } from "./output-place.ts";
 import { makeProgress } from "./progress-bar.ts";
+import { redoneInWords } from "./redone.ts";
 import { changesInWords, repeatInWords } from "./repeat.ts";
 
 export interface FitOptions extends ChoiceOptions {
@@ -113,7 +114,10 @@ export async function fitCommand(
       io.stderr(failureText(failure, ""));
     }
     io.stderr(changesInWords(choices));
-    if (place.kind === "folder") await writeWhole(place.protocol, protocolToJson(choices.protocol));
+    if (place.kind === "folder") {
+      io.stderr(await redoneInWords(place, choices.protocol));
+      await writeWhole(place.protocol, protocolToJson(choices.protocol));
+    }
 
     // Whole results are kept only where they are printed at the end: a folder of any length takes the same memory.
     const printed: (RunglineResult | undefined)[] = [];
