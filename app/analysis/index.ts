@@ -9,6 +9,7 @@ export { leastSignificance, significances } from "./climb-ladder.ts";
 export { drawCurves, type Curves } from "./curves.ts";
 export { lineCurve } from "./line-curves.ts";
 export { slitOf, withHeaderSlit } from "./instrument.ts";
+export { CORRELATED_ABOVE } from "./fit-full.ts";
 export { intervalFactor } from "./interval.ts";
 export { buildModel, energyOf, stateAfter, withLines } from "./ladder-model.ts";
 export type { LadderState, ModelChoices } from "./ladder-model.ts";

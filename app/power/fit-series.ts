@@ -27,6 +27,7 @@ import type { Protocol } from "../protocol/index.ts";
 import { chiSquareSurvival } from "../solve/index.ts";
 import type { SeriesMember } from "./read-series.ts";
 import { referenceState, type ReferenceResult } from "./reference-state.ts";
+import { allowSharedNoise } from "./shared-noise.ts";
 import type { PowerSeriesIssue } from "./series-issue.ts";
 
 /** One spectrum of the series in the joint fit. */
@@ -172,8 +173,15 @@ export function fitPowerSeries(
     }
   }
   watch.report(0.85, `fitting ${works.length} spectra together, every point`);
-  const fit = finishJoint(works, asked);
+  const { joint: fit, ...shared } = allowSharedNoise(
+    finishJoint(works, asked),
+    works.map(({ member }) => member.power_uW),
+    protocol,
+  );
+  notes.push(...shared.notes);
   if (asked.free.gap) gaps = gapsOf(fit);
+  else if (gaps !== null)
+    gaps = { ...gaps, sigma: gaps.sigma.map((sigma, a) => sigma * shared.widening[a]!) };
   if (!fit.solution.converged)
     notes.push(
       doubt(
@@ -651,7 +659,9 @@ function gapTest(works: readonly Work[], settings: Settings, shared: JointFit): 
   );
   stopIfCancelled(watch);
   const degreesOfFreedom = works.length - 1;
-  const chi2 = Math.max(0, shared.solution.chi2 - own.solution.chi2);
+  // Noise that neighbours share makes differences of chi square larger than those of white noise.
+  const asOne = works.reduce((sum, { points }) => sum + (points.pointsAsOne ?? 1), 0) / works.length;
+  const chi2 = Math.max(0, shared.solution.chi2 - own.solution.chi2) / asOne;
   const decided = own.solution.converged && shared.solution.converged && degreesOfFreedom > 0;
   return {
     gaps: own.solution.converged ? gapsOf(own) : null,
