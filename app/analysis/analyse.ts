@@ -33,6 +33,7 @@ import {
   type ResamplingPlan,
 } from "./resample.ts";
 import { readByChance } from "./read-by-chance.ts";
+import { splitSeries, weakSeriesNotes, withWeakSeries } from "./split-series.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
 import { sortNotes } from "./sort-notes.ts";
 import { strayLightNotes } from "./stray-light.ts";
@@ -82,7 +83,8 @@ export function analyse(
   return { ...analysis, result: { ...analysis.result, protocol: asked } };
 }
 
-function analyseAs(spectrum: Spectrum, protocol: Protocol, whole: Watch, options: AnalyseOptions): Analysis {
+function analyseAs(spectrum: Spectrum, named: Protocol, whole: Watch, options: AnalyseOptions): Analysis {
+  let protocol = named;
   const watch = partOfWatch(whole, 0, shareBeforeDraws(protocol.uncertainty));
   const began = watch.seconds();
   watch.report(0.05, "looking for lines");
@@ -110,6 +112,11 @@ function analyseAs(spectrum: Spectrum, protocol: Protocol, whole: Watch, options
       peaks = findPeaks(everything.energy, flat, noise);
       listed = listAssignments(peaks, assignmentChoices, MOST_READINGS);
     }
+  }
+  const split = splitSeries(peaks, assignmentChoices, MOST_READINGS);
+  if (split !== null) {
+    listed = [...split.assignments];
+    protocol = withWeakSeries(protocol, split.weak);
   }
   const pair =
     listed.length === 0 && protocol.material.first_n !== null
@@ -152,6 +159,7 @@ function analyseAs(spectrum: Spectrum, protocol: Protocol, whole: Watch, options
     notes: sortNotes([
       ...described.notes,
       ...judged.notes,
+      ...(split === null ? [] : weakSeriesNotes(named, split.weak)),
       ...(described.notes.some(({ code }) => code === "step-seen")
         ? []
         : strayLightNotes(full, fitted, chosen, spectrum, protocol, watch)),
