@@ -42,9 +42,9 @@ const CARDS = {
     improve: CLEARER,
   },
   lifetime: {
-    definition: "Lifetime that the width allows at most.",
-    formula: "τ = ħ/Γ, ħ = 658.2119569 µeV ps",
-    source: "CODATA; a floor or slit in the width makes it too short",
+    definition: "ħ/Γ: a lower bound of the lifetime, since the width holds dephasing and any floor too.",
+    formula: "ħ/Γ, ħ = 658.2119569 µeV ps",
+    source: "CODATA; a floor or slit in the width shortens it further",
     improve: "a width free of slit and strain",
   },
   offset: {
@@ -112,7 +112,7 @@ export function lineSection(result: RunglineResult, n: number): LedgerSection | 
       entry("asymmetry", "q", sub, "Asymmetry", line.asymmetry, "", 1, "asymmetry"),
       entry("peak", "α", sub, "Peak", line.peak, perCm ? "cm⁻¹" : "", 1, "peak"),
       entry("offset", "Δ", sub, "From the law", line.law_offset_eV, "µeV", 1e6, "law_offset_eV"),
-      entry("lifetime", "τ", sub, "Lifetime", line.lifetime_ps, "ps", 1, "lifetime_ps"),
+      entry("lifetime", "ħ/Γ", sub, "Lifetime, at least", line.lifetime_ps, "ps", 1, "lifetime_ps"),
       entry(
         "ratio",
         "Γ/Δ",
