@@ -140,7 +140,9 @@ function FilesButton({
       aria-controls="files-drawer"
       onClick={onToggle}
     >
-      <span className="files-name">{file?.name ?? "No file"}</span>
+      <span className="files-name" title={file?.name}>
+        {file?.name ?? "No file"}
+      </span>
       <span className="small">{count > 1 ? `${place + 1} of ${count} files` : "files"} ▾</span>
     </button>
   );

@@ -59,7 +59,9 @@ export function FilesDrawer({ onClose }: { readonly onClose: () => void }) {
                 onClose();
               }}
             >
-              <span className="drawer-name">{name}</span>
+              <span className="drawer-name" title={name}>
+                {name}
+              </span>
               <span className="small">
                 {fileState(state, id)}
                 {memberOf(id) !== null &&

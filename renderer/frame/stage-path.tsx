@@ -190,6 +190,7 @@ function batchesState(state: WindowState): string {
     const found = gather(state.session).length;
     return found === 0 ? "no sample yet" : found === 1 ? "one sample" : "filtered out";
   }
+  if (comparison.samples.length === 1) return "one sample";
   const batches = batchesOf(gather(state.session).filter(({ shown }) => shown)).length;
   return `${comparison.samples.length} in ${batches} ${batches === 1 ? "batch" : "batches"}`;
 }
