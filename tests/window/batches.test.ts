@@ -38,7 +38,8 @@ const rows = (): Promise<number> => page.locator(".batches-table tbody tr").coun
 describe("the stage Batches", () => {
   it("says what to do next, then fits all files and sets them side by side", async () => {
     await page.click('.path-stage[data-stage="batches"]');
-    expect(await page.locator(".stage-message").innerText()).toMatch(/2 files wait in the drawer: fit all/);
+    expect(await page.locator(".stage-message").innerText()).toMatch(/2 files wait in the drawer/);
+    expect(await page.getByRole("button", { name: "Fit them" }).isEnabled()).toBe(true);
     await page.getByRole("button", { name: "Fit all" }).click();
     await page.waitForSelector('.stage[data-stage="batches"] .figure[data-state="drawn"]');
     await page.waitForSelector('.window[data-state="ready"]');
