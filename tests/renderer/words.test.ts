@@ -3,7 +3,7 @@ import { NOT_DETERMINED, symmetric } from "../../app/base/index.ts";
 import type { RunglineResult } from "../../app/protocol/index.ts";
 import { parseNumber } from "../../renderer/controls/parse-number.ts";
 import { ladderLedger } from "../../renderer/ladder/ladder-ledger.ts";
-import { valueText } from "../../renderer/ledger/value-text.ts";
+import { plainText, valueText } from "../../renderer/ledger/value-text.ts";
 import { lineSection } from "../../renderer/lines/lines-ledger.ts";
 import { parseList } from "../../renderer/lines/parse-list.ts";
 import { sampleResult } from "./sample.ts";
@@ -69,6 +69,16 @@ describe("the ledger", () => {
     const exponent = width.entries.find((entry) => entry.id === "exponent")!;
     // Derived: the sample's exponent is 3 with a standard error of zero
     expect(valueText(exponent)).toEqual({ value: "3", unit: "(held)" });
+  });
+
+  it("prints the minus sign of the axes, and copies the hyphen that other programs read", () => {
+    const below = valueText({ quantity: symmetric(-12345.678, 0.011), scale: 1, unit: "" }).value;
+    // Derived: rounding of sigma to two digits, groups of three digits
+    expect(below).toBe("−12\u2009345.678(11)");
+    expect(plainText(below)).toBe("-12 345.678(11)");
+    expect(valueText({ quantity: NOT_DETERMINED, scale: 1, unit: "", plain: "TH-B – TH-A, -3" }).value).toBe(
+      "TH-B – TH-A, −3",
+    );
   });
 
   it("puts the doubt of a number beside it, with its correlations", () => {
