@@ -35,6 +35,7 @@ import {
 import { readByChance } from "./read-by-chance.ts";
 import { splitSeries, weakSeriesNotes, withWeakSeries } from "./split-series.ts";
 import { selectPoints, type SelectedPoints } from "./select-points.ts";
+import { fadesUpward, smearedShares } from "./smeared-shares.ts";
 import { sortNotes } from "./sort-notes.ts";
 import { strayLightNotes } from "./stray-light.ts";
 import { linesForThinning, thinPoints } from "./thin-points.ts";
@@ -442,7 +443,7 @@ function isExplained(plain: FullFit, other: FullFit, points: SelectedPoints): bo
   const more = degreesOfFreedom - solution.degreesOfFreedom;
   const gain = (chi2 - solution.chi2) / (points.pointsAsOne ?? 1) - more * Math.log(points.energy.length);
   const explained = solution.chi2 - degreesOfFreedom < 0.5 * (chi2 - degreesOfFreedom);
-  return solution.converged && gain > LEAST_BIC_GAIN && explained;
+  return solution.converged && gain > LEAST_BIC_GAIN && explained && fadesUpward(smearedShares(other.fit));
 }
 
 const FEWEST_TO_FADE = 6;

@@ -1,5 +1,4 @@
 import { assumption, doubt, type Note } from "../base/index.ts";
-import { SMEARED } from "../fit/index.ts";
 import { findPreset, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import type { Spectrum } from "../spectrum/index.ts";
 import { normalCdf } from "../solve/index.ts";
@@ -15,6 +14,7 @@ import { energyOf } from "./ladder-model.ts";
 import { depthPerSignal } from "./light.ts";
 import { atTheEdge, findSatellites } from "./satellites.ts";
 import type { SelectedPoints } from "./select-points.ts";
+import { smearedShares, type SmearedShare } from "./smeared-shares.ts";
 
 type Fit = NonNullable<RunglineResult["fit"]>;
 
@@ -265,8 +265,8 @@ function doubtsOfTail({ tail, full, protocol }: DoubtInput): Note[] {
     ];
   }
   if (tail === null || full.fit.factor === null) return [];
-  const smeared = full.fit.background.filter((one) => one.term === SMEARED);
-  if (smeared.length > 0) return [smearedNote(full, smeared)];
+  const smeared = smearedShares(full.fit);
+  if (smeared.length > 0) return [smearedNote(smeared)];
   const { value, sigma, atBound } = full.fit.factor;
   if (atBound && value > 1) {
     return [
@@ -291,14 +291,8 @@ function doubtsOfTail({ tail, full, protocol }: DoubtInput): Note[] {
   return [];
 }
 
-/** Shares of the law's strength that stand between the lines. */
-function smearedNote({ fit }: FullFit, smeared: FullFit["fit"]["background"]): Note {
-  const shares = fit.problem.spec.tail?.strengthShare ?? new Float64Array(0);
-  const whole = shares.reduce((sum, share, j) => sum + share * fit.lines.area[j]!, 0);
-  const told = smeared.map(
-    ({ name, value }) =>
-      `${((100 * value) / whole).toFixed(0)} % ${name === "continuum" ? "at the gap" : `at ${name.replace("n", "n = ")}`}`,
-  );
+function smearedNote(shares: readonly SmearedShare[]): Note {
+  const told = shares.map(({ at, share }) => `${(100 * share).toFixed(0)} % at ${at}`);
   return doubt(
     "lines-smeared",
     "tail",

@@ -68,5 +68,11 @@ export function tiedRange(tied: SpectrumFit, free: SpectrumFit, range: RangeChoi
       ),
     );
   }
-  return { fit, fit_n: [ns[0]!, ns[ns.length - 1]!], ranges: range.ranges, passedOver: range.passedOver, notes };
+  return {
+    fit,
+    fit_n: [ns[0]!, ns[ns.length - 1]!],
+    ranges: range.ranges,
+    passedOver: range.passedOver,
+    notes,
+  };
 }
