@@ -7,7 +7,7 @@ import {
   type Quantity,
   type Watch,
 } from "../base/index.ts";
-import type { LineParameterName } from "../fit/index.ts";
+import { SMEARED, type LineParameterName } from "../fit/index.ts";
 import { RESULT_SCHEMA, type Protocol, type RunglineResult } from "../protocol/index.ts";
 import {
   deriveQuantities,
@@ -238,6 +238,8 @@ export function describeResult(
         quantity: quantity(
           column.value + (column.name === FRINGE_PERIOD ? (full.fringesAt ?? 0) : 0),
           column.sigma,
+          // Smeared strength rests on a shape that is assumed: its error by chi square alone would be far too small.
+          column.term === SMEARED,
         ),
       })),
       ...(full.domain.parts ?? []).map(({ term, name, unit, value, sigma }) => ({

@@ -296,7 +296,7 @@ function smearedNote(shares: readonly SmearedShare[]): Note {
   return doubt(
     "lines-smeared",
     "tail",
-    `High lines are weaker than the law, and what they have lost is found between them: of the law's strength ${told.join(", ")} stand as a smooth absorption, which is part of the model. Nothing is assumed about how lines fade.`,
+    `High lines are weaker than the law, and what they have lost is found between them: of the law's strength ${told.join(", ")} stand as a smooth absorption, which is part of the model. Nothing is assumed about how lines fade; the shape of a smeared line is, so no errors are given for these shares, and the areas of the highest lines lean on it.`,
     "charges, fields, strain or too much light smear high lines; tail.smeared=none shows the fit without it",
   );
 }
