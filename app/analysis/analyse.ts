@@ -436,14 +436,19 @@ function lookBetweenLines(
   return fit(points, climbed.state, how, 0.5);
 }
 
-/** Whether what is smeared explains at least half of what was left over and the information criterion prefers it. */
+/**
+ * Whether what is smeared explains all of what was left over, or at least half and looks like a series that fades; and the
+ * information criterion prefers it. Next to the last line shares may swing even where all is explained: there they and the
+ * areas of blended lines describe the same absorption.
+ */
 function isExplained(plain: FullFit, other: FullFit, points: SelectedPoints): boolean {
   const { chi2, degreesOfFreedom } = plain.fit.solution;
   const { solution } = other.fit;
   const more = degreesOfFreedom - solution.degreesOfFreedom;
   const gain = (chi2 - solution.chi2) / (points.pointsAsOne ?? 1) - more * Math.log(points.energy.length);
-  const explained = solution.chi2 - degreesOfFreedom < 0.5 * (chi2 - degreesOfFreedom);
-  return solution.converged && gain > LEAST_BIC_GAIN && explained && fadesUpward(smearedShares(other.fit));
+  const left = (solution.chi2 - solution.degreesOfFreedom) / (chi2 - degreesOfFreedom);
+  const explained = left < 0.05 || (left < 0.5 && fadesUpward(smearedShares(other.fit)));
+  return solution.converged && gain > LEAST_BIC_GAIN && explained;
 }
 
 const FEWEST_TO_FADE = 6;

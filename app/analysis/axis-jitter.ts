@@ -6,6 +6,11 @@ export interface PointJitter {
   readonly jitter_eV: number;
   /** Its variance over the standard error of that. */
   readonly significance: number;
+  /**
+   * Correlation of neighbouring residuals where the curve is steep, weighed by the slopes: about 0 for an axis that jitters
+   * from point to point, towards 1 where the lines have another shape than the model's.
+   */
+  readonly repeats: number;
 }
 
 /**
@@ -48,5 +53,20 @@ export function pointJitter(
   if (!(bottom > 0) || !Number.isFinite(top)) return null;
   const variance = top / bottom;
   const error = Math.sqrt(fourth / m / bottom);
-  return { jitter_eV: Math.sqrt(Math.max(0, variance)), significance: variance / error };
+  return {
+    jitter_eV: Math.sqrt(Math.max(0, variance)),
+    significance: variance / error,
+    repeats: repeats(w, residuals),
+  };
+}
+
+function repeats(w: Float64Array, residuals: Float64Array): number {
+  let pairs = 0;
+  let squares = 0;
+  for (let i = 1; i < w.length; i++) {
+    const both = Math.sqrt(w[i - 1]! * w[i]!);
+    pairs += both * residuals[i - 1]! * residuals[i]!;
+    squares += 0.5 * both * (residuals[i - 1]! ** 2 + residuals[i]! ** 2);
+  }
+  return squares > 0 ? pairs / squares : 0;
 }

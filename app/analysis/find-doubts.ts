@@ -150,6 +150,16 @@ const LEAST_JITTER = 4;
 function doubtsOfJitter({ points, full }: DoubtInput): Note[] {
   const found = pointJitter(points, full.fit.solution.fitted, full.fit.solution.residuals);
   if (found === null || found.significance < LEAST_JITTER) return [];
+  if (found.repeats > CORRELATED_ABOVE) {
+    return [
+      doubt(
+        "line-shape-misfit",
+        "lines",
+        `Residuals are larger where the curve is steep and keep their sign from point to point there (correlation ${found.repeats.toFixed(2)}): the lines have another shape than the model's, and energies and widths are less certain than their errors say. An axis that jitters would change sign at random.`,
+        "a slit or a Gaussian broadening that is not in the protocol (lines.slit_fwhm_eV), asymmetry line by line (lines.asymmetry=free), or lines of another series (series.extra)",
+      ),
+    ];
+  }
   return [
     doubt(
       "axis-jitter-seen",

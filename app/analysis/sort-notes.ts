@@ -57,6 +57,7 @@ const CAUSES: readonly (readonly string[])[] = [
     "tail-stronger-than-law",
     "tail-weaker-than-law",
     "misfit",
+    "line-shape-misfit",
     "axis-jitter-seen",
     "residuals-correlated",
     "tail-not-settled",
@@ -82,7 +83,14 @@ LAST.forEach((code, i) => ORDER.set(code, BETWEEN + 1 + i));
 
 /** Doubts that follow where another one stands: the first of these that is there is named. */
 const LAWS = ["law-rejected", "width-law-rejected", "strength-law-rejected"];
-const SHAPES = ["satellite", "misfit", "residuals-correlated", "axis-jitter-seen", "background-better"];
+const SHAPES = [
+  "satellite",
+  "misfit",
+  "residuals-correlated",
+  "line-shape-misfit",
+  "axis-jitter-seen",
+  "background-better",
+];
 const FOLLOWS: readonly { readonly cause: string; readonly codes: readonly string[] }[] = [
   {
     cause: "step-seen",
@@ -92,7 +100,10 @@ const FOLLOWS: readonly { readonly cause: string; readonly codes: readonly strin
   { cause: "stray-light-seen", codes: [...SHAPES, ...LAWS] },
   { cause: "fit-not-converged", codes: ["misfit", "tail-not-settled", ...LAWS] },
   { cause: "fringes-seen", codes: [...SHAPES, ...LAWS, "fringes-near-lines", "low-n-coherent"] },
-  { cause: "misfit", codes: ["residuals-correlated", "axis-jitter-seen", "tail-not-settled", ...LAWS] },
+  {
+    cause: "misfit",
+    codes: ["residuals-correlated", "line-shape-misfit", "axis-jitter-seen", "tail-not-settled", ...LAWS],
+  },
   { cause: "lines-smeared", codes: ["strength-rolls-off", "strength-law-rejected"] },
   { cause: "tail-weaker-than-law", codes: ["strength-rolls-off", "strength-law-rejected"] },
 ];
