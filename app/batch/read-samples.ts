@@ -97,22 +97,28 @@ export function readSamples(all: readonly RunglineResult[], choices: ComparisonC
   for (const result of all) {
     // A power series is named after its first spectrum, which may be there by itself too.
     const kind = (result.power ?? null) === null ? "spectrum" : "power series";
-    const identity = `${kind} ${result.source.sha256} ${result.source.file}`;
+    // The same bytes are one measurement, whatever their file is called.
+    const identity = `${kind} ${result.source.sha256}`;
     const before = seen.get(identity);
     if (before !== undefined) {
       const same = JSON.stringify(before.protocol) === JSON.stringify(result.protocol);
+      const { file } = result.source;
+      const twice =
+        file === before.source.file
+          ? `${file} is there twice`
+          : `${file} holds the same bytes as ${before.source.file}`;
       notes.push(
         same
           ? assumption(
               "result-twice",
               "samples",
-              `${result.source.file} is there twice, from the same input and protocol: the first is taken.`,
+              `${twice}, with the same protocol: one measurement, the first is taken.`,
               "nothing to do where the outputs of several runs overlap",
             )
           : doubt(
               "result-twice-with-other-protocol",
               "samples",
-              `${result.source.file} is there with two protocols: the first is taken.`,
+              `${twice}, with another protocol: one measurement, the first is taken.`,
               "hand over the one that counts",
             ),
       );

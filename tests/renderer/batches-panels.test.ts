@@ -34,7 +34,7 @@ describe("laws of temperature in Batches", () => {
     const base = crystalResult({ ...CRYSTALS[0]!, temperature: `${kelvin} K` });
     return {
       ...base,
-      source: { ...base.source, file: `${kelvin}.csv`, sha256: String(kelvin).padEnd(64, "0") },
+      source: { ...base.source, file: `${kelvin}.csv`, sha256: `${kelvin} `.padEnd(64, "0") },
       series: { ...base.series!, gap_eV: symmetric(out[0]!, 4e-6) },
     };
   });

@@ -148,6 +148,16 @@ describe("samples and batches", () => {
     expect(codes(compare([...FOUR, other]))).toContain("result-twice-with-other-protocol");
   });
 
+  it("the same bytes under another name are one measurement, not two that agree", () => {
+    const again = { ...FOUR[0]!, source: { ...FOUR[0]!.source, file: "copy.csv" } };
+    const comparison = compare([...FOUR, again]);
+    expect(comparison.samples).toHaveLength(4);
+    expect(comparison.samples[0]!.parameters.gap_eV).toEqual(compare(FOUR).samples[0]!.parameters.gap_eV);
+    expect(comparison.notes.find(({ code }) => code === "result-twice")?.text).toMatch(
+      /^copy\.csv holds the same bytes as a1\.csv/,
+    );
+  });
+
   it("a sample measured twice is combined, with the systematic part kept", () => {
     const again = one("a1", "A", 2.17201, {
       source: { file: "a1-again.csv", sha256: "f".repeat(64), points: 100 },

@@ -14,7 +14,7 @@ function run(sample: string, temperature: number, coupling = 0.03): RunglineResu
   return makeResult({
     source: {
       file: `${sample}-${temperature}.csv`,
-      sha256: `${sample}${temperature}`.padEnd(64, "0"),
+      sha256: `${sample} ${temperature} `.padEnd(64, "0"),
       points: 100,
     },
     reading: {
