@@ -46,7 +46,28 @@ export function findDoubts(input: DoubtInput): Note[] {
     ...doubtsOfSteps(input),
     ...doubtsOfUnexplained(input),
     ...doubtsOfFringes(input),
+    ...doubtsOfMaterial(input),
     ...presetNotes(input.protocol),
+  ];
+}
+
+/** A Rydberg energy this many times the material's, or this part of it, belongs to another material or another reading. */
+const UNLIKE_MATERIAL = 1.5;
+
+/** A preset gives starting values only; far from them its name and the data contradict each other. */
+function doubtsOfMaterial({ full, protocol }: DoubtInput): Note[] {
+  const { preset, rydberg_eV } = protocol.material;
+  if (preset === null || rydberg_eV === null || full.range === null) return [];
+  const found = full.range.fit.estimates.values[1]!;
+  const ratio = found / rydberg_eV;
+  if (ratio < UNLIKE_MATERIAL && ratio > 1 / UNLIKE_MATERIAL) return [];
+  return [
+    doubt(
+      "rydberg-unlike-material",
+      "series.rydberg_eV",
+      `The Rydberg energy is ${Number(ratio.toPrecision(3))} times the ${Number((1000 * rydberg_eV).toPrecision(4))} meV of the material that was named. Two series read as one give four times, a series of which every second line is missing a quarter.`,
+      "compare the readings of n, name the lines (lines.n) or the lines of another series (series.extra), or name the material that it is",
+    ),
   ];
 }
 

@@ -34,6 +34,7 @@ const CAUSES: readonly (readonly string[])[] = [
   // Which lines there are, and whether the fit came to an end.
   [
     "fit-not-converged",
+    "rydberg-unlike-material",
     "reading-disputed",
     "reading-revised",
     "series-not-determined",

@@ -1,6 +1,5 @@
 import { doubt, type Note } from "../base/index.ts";
 import type { Table } from "../table/index.ts";
-import { count } from "./gather-points.ts";
 
 /** Above this part of all rows, or with this many lines in a row, what was not read is no slip any more. */
 const LARGE_PART = 0.05;
@@ -28,13 +27,13 @@ export function skippedRows(table: Table): readonly Note[] {
   const first = skipped[0]!;
   const cells =
     first.reason === "ragged"
-      ? "another number of cells than the other rows"
-      : "no numbers written like those of the other rows";
+      ? "the number of cells of the other rows"
+      : "numbers written like those of the other rows";
   return [
     doubt(
       "rows-not-read",
       "source",
-      `${count(skipped.length, "line")} of ${all} that look like rows were not read, the longest block of ${longest}: they hold ${cells}; the first is line ${first.line}: "${first.found.replaceAll("\t", " ")}"`,
+      `${skipped.length} of ${all} lines that look like rows ${skipped.length === 1 ? "was" : "were"} not read${longest > 1 ? ` (${longest} of them together)` : ""}, for want of ${cells}; the first is line ${first.line}: "${first.found.replaceAll("\t", " ")}"`,
       "write all rows with the same decimal mark, delimiter and number of cells; rungline inspect lists what was left out",
     ),
   ];

@@ -236,3 +236,13 @@ test("a floor that adds in quadrature is found as such where the data have one",
   for (const key of KEYS) expect(Math.abs(pullOf(result.series![key], clean[key])), key).toBeLessThan(4);
   expect(doubtsOf(result)).not.toContain("width-law-rejected");
 });
+
+test("a Rydberg energy that is not the named material's is said", () => {
+  const far = resultOf(bytes, {
+    material: { ...material, rydberg_eV: 0.25 * clean.rydberg_eV },
+    lines: { n: [5, 6, 7, 8, 9] },
+    uncertainty: { systematic: false, profile: false },
+  });
+  expect(doubtsOf(far)).toContain("rydberg-unlike-material");
+  expect(doubtsOf(resultOf(bytes, { material }))).not.toContain("rydberg-unlike-material");
+});

@@ -42,7 +42,7 @@ describe("lines that look like rows and were not read", () => {
     const spectrum = spectrumOf(fileText(HEADER, lines, [], "\t").replaceAll('"', ""));
     const words = note(spectrum, "rows-not-read");
     // Derived: 161 rows of which 100 have a point; a heading stands above
-    expect(words).toContain("61 lines of 161");
+    expect(words).toContain("61 of 161 lines that look like rows were not read (61 of them together)");
     expect(words).toContain(`line 102: "${lines[100]!.join(" ")}"`);
   });
 
