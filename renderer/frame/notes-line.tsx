@@ -34,10 +34,7 @@ export function NotesLine() {
   const panel = useRef<HTMLDivElement>(null);
   const lines = useMemo((): readonly Line[] => {
     if (comparison !== null)
-      return [
-        ...messages.map(ofMessage),
-        ...gravestFirst(comparisonNotes(comparison)).map(ofNote),
-      ];
+      return [...messages.map(ofMessage), ...gravestFirst(comparisonNotes(comparison)).map(ofNote)];
     const read = reading?.state === "read" ? reading.inspection.spectrum.notes : [];
     const fitted = fit?.analysed.result.notes ?? [];
     const known = new Set(fitted.map((note) => note.code));
