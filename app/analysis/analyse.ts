@@ -513,6 +513,9 @@ function windowOutside(spectrum: Spectrum, protocol: Protocol): string | null {
   return `The window from ${low} to ${high} eV lies outside the file, which runs from ${first.toPrecision(7)} to ${last.toPrecision(7)} eV: nothing was fitted.`;
 }
 
+/** Energies that a sentence can hold. */
+const MOST_NAMED = 12;
+
 function noSeries(
   spectrum: Spectrum,
   protocol: Protocol,
@@ -521,7 +524,9 @@ function noSeries(
   seconds: number,
   tried = "",
 ): Analysis {
-  const seen = peaks.map((peak) => `${(1e3 * peak.energy_eV).toPrecision(6)} meV`).join(", ");
+  const named = peaks.slice(0, MOST_NAMED).map((peak) => `${(1e3 * peak.energy_eV).toPrecision(6)} meV`);
+  const more = peaks.length - named.length;
+  const seen = `${named.join(", ")}${more > 0 ? ` and ${more} more` : ""}`;
   const outside = points.energy.length === 0 ? windowOutside(spectrum, protocol) : null;
   const note = doubt(
     "no-series",
@@ -533,7 +538,7 @@ function noSeries(
         : `${peaks.length} significant line${peaks.length === 1 ? "" : "s"} (${seen}), but no level law with at least three of them was found.${tried}`,
     outside !== null
       ? "correct window_eV, or leave it out"
-      : "check axis, unit and window; name the lines (lines.n) and the material, or measure with less noise",
+      : "check axis, unit and window; name the lines (lines.n) and the material; state the noise (noise.sigma) where neighbouring readings share it",
   );
   return {
     result: {
