@@ -3,7 +3,7 @@ import { readFileSync, statSync } from "node:fs";
 import { join } from "node:path";
 import type { Page } from "playwright-core";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
-import { dropFiles, openProgram, showStage, type Opened, type Watched } from "./program.ts";
+import { changeTheme, dropFiles, openProgram, showStage, type Opened, type Watched } from "./program.ts";
 
 let opened: Opened;
 let watched: Watched;
@@ -75,9 +75,9 @@ describe("the stage Batches", () => {
     await page.waitForSelector('.ledger:has-text("--quality gap_eV=1,width_floor_eV=-2")');
     expect(await page.locator('.batches-table th:has-text("Quality")').count()).toBe(1);
     expect(await page.locator('[data-entry^="quality-part-"]').count()).toBe(2);
-    await page.emulateMedia({ colorScheme: "dark" });
+    await changeTheme(page, "dark");
     expect(await faults()).toEqual([]);
-    await page.emulateMedia({ colorScheme: "light" });
+    await changeTheme(page, "light");
     await page.click('[data-action="undo"]');
     await page.waitForSelector('.ledger:has-text("--quality gap_eV=1,width_floor_eV=-1")');
     await page.click('[data-action="undo"]');
@@ -133,8 +133,7 @@ describe("the stage Batches", () => {
       [1280, 800, "light"],
     ] as const) {
       await page.setViewportSize({ width, height });
-      await page.emulateMedia({ colorScheme });
-      await page.waitForSelector(`html[data-theme="${colorScheme}"]`);
+      await changeTheme(page, colorScheme);
       await page.waitForSelector('.figure[data-state="drawn"]');
       expect(await faults()).toEqual([]);
       const path = join(opened.folder, `batches-${width}.png`);
@@ -164,8 +163,7 @@ describe("the stage Record", () => {
     await page.getByRole("heading", { name: "Cautions" }).waitFor();
     await page.getByRole("link", { name: "TH-B1" }).first().click();
     for (const colorScheme of ["dark", "light"] as const) {
-      await page.emulateMedia({ colorScheme });
-      await page.waitForSelector(`html[data-theme="${colorScheme}"]`);
+      await changeTheme(page, colorScheme);
       expect(await faults()).toEqual([]);
     }
     expect(watched.troubles).toEqual([]);

@@ -5,7 +5,7 @@ import { AxeBuilder } from "@axe-core/playwright";
 import type { Locator } from "playwright-core";
 import { afterAll, afterEach, beforeAll, beforeEach, describe, expect, it } from "vitest";
 import type { RunglineResult } from "../../app/protocol/index.ts";
-import { openProgram, settled, type Opened, type Watched } from "./program.ts";
+import { changeTheme, openProgram, settled, type Opened, type Watched } from "./program.ts";
 
 const ROOT = new URL("../..", import.meta.url).pathname;
 
@@ -209,8 +209,7 @@ describe("the choices of a line", () => {
     "keep to WCAG 2.2 AA in %s, with marks and a refusal",
     async (colorScheme) => {
       const { page } = watched;
-      await page.emulateMedia({ colorScheme });
-      await page.waitForSelector(`html[data-theme="${colorScheme}"]`);
+      await changeTheme(page, colorScheme);
       await page.locator("#rung-5").click();
       for (const parameter of ["energy", "area"]) await may(parameter, 5).selectOption("bounded");
       for (const parameter of ["width", "asymmetry"]) await may(parameter, 5).selectOption("held");

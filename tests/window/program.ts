@@ -90,6 +90,16 @@ export async function settled(page: Page): Promise<void> {
   await page.waitForSelector('.figure[data-state="drawn"]');
 }
 
+/** The theme of the system changed, and colours no longer on their way: half way between two themes nothing has contrast. */
+export async function changeTheme(page: Page, colorScheme: "light" | "dark"): Promise<void> {
+  await page.emulateMedia({ colorScheme });
+  await page.waitForSelector(`html[data-theme="${colorScheme}"]`);
+  await page.evaluate(async () => {
+    await new Promise((drawn) => requestAnimationFrame(() => requestAnimationFrame(drawn)));
+    await Promise.allSettled(document.getAnimations().map((one) => one.finished));
+  });
+}
+
 export async function showStage(
   page: Page,
   stage: "read" | "lines" | "ladder" | "power" | "batches",
