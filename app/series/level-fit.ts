@@ -329,12 +329,12 @@ function describeFit(
   return notes;
 }
 
-/** Four significant digits, for sentences. */
 /** `p = 0.0027`, `p < 1e-16`. */
 export function sayProbability(p: number): string {
   return p < 1e-16 ? "p < 1e-16" : `p = ${Number(p.toPrecision(2))}`;
 }
 
+/** Four significant digits, for sentences. */
 export function format(value: number): string {
   return String(Number(value.toPrecision(4)));
 }
